@@ -1,0 +1,38 @@
+//! Runs the stages in order and owns every result. Read this first; nothing is computed here.
+
+use crate::circuit::{self, Circuit};
+use crate::config::Options;
+use crate::finding::{self, Finding};
+use crate::operating::Operating;
+use crate::rules::Skipped;
+use crate::text::{LoadProblem, Loader, Sources};
+use crate::topology::Wiring;
+use std::path::Path;
+
+/// Everything known about one root file.
+#[derive(Debug)]
+pub struct Analysis {
+    /// All files that were opened; number 0 is the root.
+    pub sources: Sources,
+    /// The flat circuit.
+    pub circuit: Circuit,
+    /// Facts of its wiring.
+    pub wiring: Wiring,
+    /// States for each condition, where asked for.
+    pub operating: Option<Operating>,
+    /// All findings, sorted.
+    pub findings: Vec<Finding>,
+    /// Rules that could not judge.
+    pub skipped: Vec<Skipped>,
+}
+
+/// Analyses the file at `root`.
+///
+/// # Errors
+/// Only where the root file itself cannot be had; everything else is a finding.
+pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Result<Analysis, LoadProblem> {
+    let circuit::Reading { sources, circuit, mut findings } = circuit::read(loader, root, options)?;
+    let wiring = Wiring::of(&circuit);
+    finding::sort(&mut findings);
+    Ok(Analysis { sources, circuit, wiring, operating: None, findings, skipped: Vec::new() })
+}

@@ -1,0 +1,2 @@
+//! The command line program; everything it does is in `cli`.
+fn main() {}

@@ -1,0 +1,139 @@
+//! The results as plain data, in SI units. Voltages and currents of a diode count from anode to cathode.
+
+use crate::circuit::{ElementId, NodeId, State};
+use crate::complementarity::{Quantity, Verdict, View};
+
+/// Everything found about the operating point.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Operating {
+    /// One for each condition, nominal first.
+    pub cases: Vec<Case>,
+}
+
+/// One condition and what holds in it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Case {
+    /// `nominal`, `VIN=9`, `V1=max`.
+    pub name: String,
+    /// Independent sources and their values, volts or amperes, in the order of the text.
+    pub sources: Vec<(ElementId, f64)>,
+    /// Degrees Celsius.
+    pub temperature: f64,
+    /// The most serious of the parts' verdicts.
+    pub verdict: Verdict,
+    /// What makes the verdict other than unique, one for each cause.
+    pub contradictions: Vec<Contradiction>,
+    /// More solutions exist than are listed.
+    pub truncated: bool,
+    /// Factorizations done.
+    pub solves: usize,
+    /// How well the solutions satisfy the circuit laws.
+    pub residual: Residual,
+    /// Every consistent set; empty only where nothing could be solved.
+    pub solutions: Vec<Solution>,
+}
+
+/// A cause: which loop, cut set, unknown elements or residual.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Contradiction {
+    /// The verdict it leads to.
+    pub verdict: Verdict,
+    /// In words with numbers: `V1, D1 and D2 form a loop …`.
+    pub text: String,
+    /// The elements concerned, in the order of the loop or cut set.
+    pub elements: Vec<ElementId>,
+}
+
+/// Largest absolute misses of the laws.
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
+pub struct Residual {
+    /// Of Kirchhoff's current law and current laws, amperes.
+    pub current: f64,
+    /// Of voltage laws, volts.
+    pub voltage: f64,
+    /// The larger of both as a share of the largest term at its node or loop.
+    pub relative: f64,
+}
+
+/// One consistent set of everything.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Solution {
+    /// All diodes in the order of the text.
+    pub diodes: Vec<DiodeResult>,
+    /// All nodes but ground, in order.
+    pub nodes: Vec<NodeResult>,
+    /// Every other two-terminal element that is evaluated (R L V I E F G H).
+    pub branches: Vec<BranchResult>,
+}
+
+/// Where a drop comes from.
+#[derive(Debug, Clone, PartialEq)]
+pub enum DropOrigin {
+    /// `--drop`.
+    Option,
+    /// A `drop` note.
+    Note,
+    /// IS and N of the model at a decade of current in amperes: `model DSIG at 10mA`.
+    Model { model: String, decade: f64 },
+    /// A `made-of` note.
+    Material(&'static str),
+    /// Silicon, since nothing else is said.
+    Default,
+}
+
+/// The constant drop of a diode.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Drop {
+    /// Volts at the case's temperature, series resistance not included.
+    pub volts: f64,
+    /// Whether it is a written number.
+    pub written: bool,
+    /// Where it comes from.
+    pub origin: DropOrigin,
+}
+
+/// One diode in one solution.
+#[derive(Debug, Clone, PartialEq)]
+pub struct DiodeResult {
+    /// The element.
+    pub element: ElementId,
+    /// Its state.
+    pub state: State,
+    /// Why it was not evaluated, where so.
+    pub not_evaluated: Option<String>,
+    /// At its terminals, series resistance included.
+    pub voltage: Quantity,
+    /// From anode to cathode.
+    pub current: Quantity,
+    /// Dissipated, watts; where voltage and current are known.
+    pub power: Option<f64>,
+    /// Its drop.
+    pub drop: Drop,
+    /// Breakdown voltage of the model, a magnitude.
+    pub breakdown: Option<f64>,
+    /// Series resistance, ohms.
+    pub series: f64,
+    /// What it sees of the rest, where finite.
+    pub view: Option<View>,
+    /// Distance from the open-circuit voltage to the nearest level that would change the state, positive where
+    /// the state holds.
+    pub margin: Option<f64>,
+}
+
+/// One node in one solution.
+#[derive(Debug, Clone, PartialEq)]
+pub struct NodeResult {
+    /// The node.
+    pub node: NodeId,
+    /// Against ground.
+    pub voltage: Quantity,
+}
+
+/// One other element in one solution.
+#[derive(Debug, Clone, PartialEq)]
+pub struct BranchResult {
+    /// The element.
+    pub element: ElementId,
+    /// From first to second node through it.
+    pub current: Quantity,
+}

@@ -1,0 +1,58 @@
+//! The rules. One file a rule: its description, its failing and passing example, its check. The list is made
+//! from the files by the build script, so adding a rule is adding a file.
+
+use crate::circuit::Circuit;
+use crate::finding::{Finding, Severity};
+use crate::operating::Operating;
+use crate::topology::Wiring;
+
+/// What a rule needs before it can judge, and its check.
+pub enum Check {
+    /// The findings are made while reading (`syntax`, `circuit`); the file documents them.
+    Reading,
+    /// Judges the wiring.
+    Wiring(fn(&Evidence<'_>) -> Vec<Finding>),
+    /// Judges the states.
+    States(fn(&Evidence<'_>, &Operating) -> Vec<Finding>),
+}
+
+/// One rule.
+pub struct Rule {
+    /// Name, in words joined by hyphens.
+    pub name: &'static str,
+    /// Group in the listing: `reading`, `wiring`, `orientation`, `states`, `notes`.
+    pub group: &'static str,
+    /// Its severity.
+    pub severity: Severity,
+    /// One line.
+    pub summary: &'static str,
+    /// Why it matters.
+    pub why: &'static str,
+    /// What to do.
+    pub remedy: &'static str,
+    /// The published result it rests on, where it does.
+    pub source: Option<&'static str>,
+    /// A netlist that gives exactly one finding of this rule and no other finding of warning or error.
+    pub failing: &'static str,
+    /// A netlist that gives no finding at all.
+    pub passing: &'static str,
+    /// The check.
+    pub check: Check,
+}
+
+/// What rules judge.
+pub struct Evidence<'a> {
+    /// The circuit.
+    pub circuit: &'a Circuit,
+    /// Its wiring.
+    pub wiring: &'a Wiring,
+}
+
+/// A rule that could not judge.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Skipped {
+    /// The rule's name.
+    pub rule: &'static str,
+    /// Why.
+    pub reason: String,
+}

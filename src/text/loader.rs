@@ -1,0 +1,78 @@
+//! Where bytes come from: the disk, or memory (tests, standard input, two revisions side by side).
+
+use std::collections::BTreeMap;
+use std::path::{Path, PathBuf};
+
+/// Why a file could not be had, in words for a person.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct LoadProblem(pub String);
+
+/// Something that files can be read from.
+pub trait Loader {
+    /// The bytes of the file at `path`.
+    ///
+    /// # Errors
+    /// [`LoadProblem`] says in words why there are none.
+    fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem>;
+    /// Whether there is a file at `path`.
+    fn exists(&self, path: &Path) -> bool;
+    /// The path with links and `..` resolved, to tell two files apart and to confine includes.
+    fn resolve(&self, path: &Path) -> PathBuf;
+}
+
+/// The file system.
+#[derive(Debug, Default, Clone, Copy)]
+pub struct Disk;
+
+impl Loader for Disk {
+    fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
+        std::fs::read(path).map_err(|e| LoadProblem(e.to_string()))
+    }
+    fn exists(&self, path: &Path) -> bool {
+        path.is_file()
+    }
+    fn resolve(&self, path: &Path) -> PathBuf {
+        path.canonicalize().unwrap_or_else(|_| path.to_path_buf())
+    }
+}
+
+/// Files held in memory, by path.
+#[derive(Debug, Default, Clone)]
+pub struct Memory {
+    files: BTreeMap<PathBuf, Vec<u8>>,
+}
+
+impl Memory {
+    /// One file.
+    pub fn with(path: impl Into<PathBuf>, bytes: impl Into<Vec<u8>>) -> Self {
+        let mut memory = Memory::default();
+        memory.insert(path, bytes);
+        memory
+    }
+    /// Adds or replaces a file.
+    pub fn insert(&mut self, path: impl Into<PathBuf>, bytes: impl Into<Vec<u8>>) {
+        self.files.insert(path.into(), bytes.into());
+    }
+}
+
+impl Loader for Memory {
+    fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
+        self.files.get(&self.resolve(path)).cloned().ok_or_else(|| LoadProblem("no such file".into()))
+    }
+    fn exists(&self, path: &Path) -> bool {
+        self.files.contains_key(&self.resolve(path))
+    }
+    fn resolve(&self, path: &Path) -> PathBuf {
+        let mut clean = PathBuf::new();
+        for part in path.components() {
+            match part {
+                std::path::Component::CurDir => {}
+                std::path::Component::ParentDir if clean.file_name().is_some() => {
+                    clean.pop();
+                }
+                other => clean.push(other),
+            }
+        }
+        clean
+    }
+}

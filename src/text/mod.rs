@@ -1,0 +1,10 @@
+//! Files, spans and positions. The only place that decodes bytes and the only place that counts lines and
+//! columns from 1. Nothing here knows what a netlist is.
+
+mod decode;
+mod loader;
+mod span;
+
+pub use decode::{Encoding, decode};
+pub use loader::{Disk, LoadProblem, Loader, Memory};
+pub use span::{FileId, Position, SourceFile, Sources, Span};
