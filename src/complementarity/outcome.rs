@@ -24,6 +24,22 @@ pub enum Verdict {
     Unverified,
 }
 
+impl Verdict {
+    /// The word used in every output.
+    pub fn word(self) -> &'static str {
+        match self {
+            Verdict::Unique => "unique",
+            Verdict::Shared => "shared",
+            Verdict::Floating => "floating",
+            Verdict::SharedFloating => "shared+floating",
+            Verdict::Partial => "partial",
+            Verdict::Several => "several",
+            Verdict::None => "none",
+            Verdict::Unverified => "unverified",
+        }
+    }
+}
+
 /// A feasible interval; infinite ends are unbounded.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Interval {

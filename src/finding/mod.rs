@@ -2,6 +2,10 @@
 //! `report/` turns them into text. Message style: the message says what is wrong here with its numbers, the
 //! label says what the marked text is, the help says what to do.
 
+mod quantity;
+
+pub use quantity::{Figure, compact, figure, interval, quantity};
+
 use crate::text::Span;
 
 /// How serious a finding is; means the same everywhere.

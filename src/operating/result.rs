@@ -81,6 +81,21 @@ pub enum DropOrigin {
     Default,
 }
 
+impl std::fmt::Display for DropOrigin {
+    /// `option`, `note`, `model DSIG at 10mA`, `material red-led`, `default`.
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        match self {
+            DropOrigin::Option => f.write_str("option"),
+            DropOrigin::Note => f.write_str("note"),
+            DropOrigin::Model { model, decade } => {
+                write!(f, "model {model} at {}", crate::finding::compact(*decade, "A"))
+            }
+            DropOrigin::Material(material) => write!(f, "material {material}"),
+            DropOrigin::Default => f.write_str("default"),
+        }
+    }
+}
+
 /// The constant drop of a diode.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Drop {
