@@ -5,6 +5,7 @@ mod behaviour;
 mod build;
 mod ids;
 mod note;
+mod shape;
 
 pub use behaviour::{Behaviour, Model, ModelKind, Shape, Source, Value};
 pub use build::{Reading, read};

@@ -4,8 +4,8 @@
 mod result;
 
 pub use result::{
-    BranchResult, Case, Contradiction, DiodeResult, Drop, DropOrigin, NodeResult, Operating, Residual,
-    Solution,
+    BranchResult, Case, Contradiction, DiodeResult, Drop, DropOrigin, Flip, NodeResult, Operating, Reasoning,
+    Residual, Solution, Why,
 };
 
 pub use crate::circuit::State;

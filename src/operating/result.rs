@@ -8,6 +8,48 @@ use crate::complementarity::{Quantity, Verdict, View};
 pub struct Operating {
     /// One for each condition, nominal first.
     pub cases: Vec<Case>,
+    /// Diodes in parts that a moving source reaches through a capacitor, an inductor or a coupling, in order:
+    /// the operating point says nothing final about them, so rules of the kind "never" leave them out.
+    pub left_to_time: Vec<ElementId>,
+    /// The reasoning about the diode that `--why` asks about.
+    pub why: Option<Why>,
+}
+
+/// Why a diode is in its state.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Why {
+    /// The diode.
+    pub element: ElementId,
+    /// One for each line of reasoning; conditions that share one stand together.
+    pub reasonings: Vec<Reasoning>,
+}
+
+/// One line of reasoning.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Reasoning {
+    /// Names of the conditions in which it holds.
+    pub cases: Vec<String>,
+    /// The state.
+    pub state: State,
+    /// Whole sentences, in order: assumptions, what follows from them, the margin.
+    pub sentences: Vec<String>,
+    /// Source values that alone would change the state, nearest (relative to the source's value) first.
+    pub flips: Vec<Flip>,
+    /// The search for such a value, in one sentence.
+    pub flip_sentence: String,
+}
+
+/// A source value at which the state changes, every other source keeping its own.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Flip {
+    /// Name of the source, or of the node that a `supply` note holds.
+    pub source: String,
+    /// What it is now, volts or amperes.
+    pub from: f64,
+    /// Where the state changes.
+    pub to: f64,
+    /// The state beyond; `NotEvaluated` where nothing consistent is beyond.
+    pub state: State,
 }
 
 /// One condition and what holds in it.
@@ -17,6 +59,10 @@ pub struct Case {
     pub name: String,
     /// Independent sources and their values, volts or amperes, in the order of the text.
     pub sources: Vec<(ElementId, f64)>,
+    /// Nodes that `supply` notes hold, and their volts.
+    pub supplies: Vec<(NodeId, f64)>,
+    /// One of the two instants of a moving source; diodes of [`Operating::left_to_time`] are not judged here.
+    pub instant: bool,
     /// Degrees Celsius.
     pub temperature: f64,
     /// The most serious of the parts' verdicts.
