@@ -4,7 +4,7 @@ use crate::circuit::{self, Circuit};
 use crate::config::Options;
 use crate::finding::{self, Finding};
 use crate::operating::Operating;
-use crate::rules::Skipped;
+use crate::rules::{self, Evidence, Skipped};
 use crate::text::{LoadProblem, Loader, Sources};
 use crate::topology::Wiring;
 use std::path::Path;
@@ -33,6 +33,10 @@ pub struct Analysis {
 pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Result<Analysis, LoadProblem> {
     let circuit::Reading { sources, circuit, mut findings } = circuit::read(loader, root, options)?;
     let wiring = Wiring::of(&circuit);
+    let operating = None;
+    let evidence = Evidence { sources: &sources, circuit: &circuit, wiring: &wiring };
+    let (judged, skipped) = rules::run(&evidence, operating.as_ref());
+    findings.extend(judged);
     finding::sort(&mut findings);
-    Ok(Analysis { sources, circuit, wiring, operating: None, findings, skipped: Vec::new() })
+    Ok(Analysis { sources, circuit, wiring, operating, findings, skipped })
 }

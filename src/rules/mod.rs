@@ -1,58 +1,51 @@
 //! The rules. One file a rule: its description, its failing and passing example, its check. The list is made
-//! from the files by the build script, so adding a rule is adding a file.
+//! from the files by the build script, so adding a rule is adding a file. What rules share is in `support/`;
+//! facts belong in `topology`, results in `operating`: a rule only judges.
 
-use crate::circuit::Circuit;
-use crate::finding::{Finding, Severity};
-use crate::operating::Operating;
-use crate::topology::Wiring;
+mod support;
 
-/// What a rule needs before it can judge, and its check.
-pub enum Check {
-    /// The findings are made while reading (`syntax`, `circuit`); the file documents them.
-    Reading,
-    /// Judges the wiring.
-    Wiring(fn(&Evidence<'_>) -> Vec<Finding>),
-    /// Judges the states.
-    States(fn(&Evidence<'_>, &Operating) -> Vec<Finding>),
+pub use support::{Check, Evidence, Rule, Skipped, run};
+
+include!(concat!(env!("OUT_DIR"), "/rules.rs"));
+
+/// All rules, sorted by name.
+pub fn all() -> &'static [&'static Rule] {
+    ALL
 }
 
-/// One rule.
-pub struct Rule {
-    /// Name, in words joined by hyphens.
-    pub name: &'static str,
-    /// Group in the listing: `reading`, `wiring`, `orientation`, `states`, `notes`.
-    pub group: &'static str,
-    /// Its severity.
-    pub severity: Severity,
-    /// One line.
-    pub summary: &'static str,
-    /// Why it matters.
-    pub why: &'static str,
-    /// What to do.
-    pub remedy: &'static str,
-    /// The published result it rests on, where it does.
-    pub source: Option<&'static str>,
-    /// A netlist that gives exactly one finding of this rule and no other finding of warning or error.
-    pub failing: &'static str,
-    /// A netlist that gives no finding at all.
-    pub passing: &'static str,
-    /// The check.
-    pub check: Check,
+/// The rule of that name.
+pub fn find(name: &str) -> Option<&'static Rule> {
+    ALL.iter().copied().find(|rule| rule.name == name)
 }
 
-/// What rules judge.
-pub struct Evidence<'a> {
-    /// The circuit.
-    pub circuit: &'a Circuit,
-    /// Its wiring.
-    pub wiring: &'a Wiring,
-}
+#[cfg(test)]
+mod tests {
+    use super::*;
 
-/// A rule that could not judge.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub struct Skipped {
-    /// The rule's name.
-    pub rule: &'static str,
-    /// Why.
-    pub reason: String,
+    #[test]
+    fn every_rule_is_named_like_its_file_and_says_everything() {
+        for (stem, rule) in FILES.iter().zip(ALL) {
+            assert_eq!(stem.replace('_', "-"), rule.name, "file and rule must have one name");
+            for (what, text) in [
+                ("summary", rule.summary),
+                ("why", rule.why),
+                ("remedy", rule.remedy),
+                ("failing", rule.failing),
+                ("passing", rule.passing),
+            ] {
+                assert!(!text.trim().is_empty(), "{}: no {what}", rule.name);
+            }
+            assert!(!rule.summary.contains('\n'), "{}: the summary is one line", rule.name);
+            assert!(
+                ["reading", "wiring", "orientation", "states", "notes", "caution"].contains(&rule.group),
+                "{}: group {}",
+                rule.name,
+                rule.group
+            );
+        }
+        let names: Vec<_> = all().iter().map(|r| r.name).collect();
+        assert!(names.is_sorted(), "{names:?}");
+        assert!(names.iter().all(|n| find(n).is_some()));
+        assert!(find("no such rule").is_none());
+    }
 }

@@ -1,0 +1,65 @@
+//! What rules look at, and the words and places they share.
+
+use super::rule::Rule;
+use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
+use crate::finding::{Finding, TrailStep};
+use crate::text::{Sources, Span};
+use crate::topology::Wiring;
+
+/// What rules judge.
+pub struct Evidence<'a> {
+    /// The text the circuit was read from.
+    pub sources: &'a Sources,
+    /// The circuit.
+    pub circuit: &'a Circuit,
+    /// Its wiring.
+    pub wiring: &'a Wiring,
+}
+
+impl Evidence<'_> {
+    /// A finding of `rule` about an element: marks its statement, names it, and tells the way to its instance.
+    pub fn about(&self, rule: &Rule, element: ElementId, message: impl Into<String>) -> Finding {
+        let place = self.circuit.element(element);
+        self.at(rule, place.scope, place.statement, message).about(self.circuit.element_name(element))
+    }
+
+    /// A finding of `rule` at a place inside an instance.
+    pub fn at(&self, rule: &Rule, scope: ScopeId, span: Span, message: impl Into<String>) -> Finding {
+        let mut finding = Finding::new(rule.name, rule.severity, span, message);
+        finding.trail = self.trail(scope);
+        finding
+    }
+
+    /// The way from the root to an instance, outermost first.
+    pub fn trail(&self, scope: ScopeId) -> Vec<TrailStep> {
+        let mut steps = Vec::new();
+        let mut at = self.circuit.scopes.get(scope.index());
+        while let Some(here) = at {
+            let Some(parent) = here.parent else { break };
+            let what = format!(
+                "instance {} of {}",
+                self.circuit.text(here.name),
+                self.circuit.text(here.subcircuit)
+            );
+            steps.push(TrailStep { span: here.call, what });
+            at = self.circuit.scopes.get(parent.index());
+        }
+        steps.reverse();
+        steps
+    }
+
+    /// Full name of an element.
+    pub fn name(&self, element: ElementId) -> String {
+        self.circuit.element_name(element)
+    }
+
+    /// Full name of a node.
+    pub fn node(&self, node: NodeId) -> String {
+        self.circuit.node_name(node)
+    }
+
+    /// The element's statement.
+    pub fn statement(&self, element: ElementId) -> Span {
+        self.circuit.element(element).statement
+    }
+}

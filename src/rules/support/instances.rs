@@ -1,0 +1,55 @@
+//! One finding for a definition, not one for each of its instances.
+
+use crate::circuit::Circuit;
+use crate::finding::Finding;
+use crate::text::Span;
+use rustc_hash::FxHashMap as HashMap;
+
+/// Folds findings of one rule at one place inside several instances into the first of them, which then says in
+/// how many instances the same is found. Order is kept.
+pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
+    let mut kept: Vec<(Finding, usize)> = Vec::with_capacity(findings.len());
+    let mut seen: HashMap<(&'static str, Span, Vec<Span>), usize> = HashMap::default();
+    for finding in findings {
+        if finding.trail.is_empty() {
+            kept.push((finding, 1));
+            continue;
+        }
+        let key = (finding.rule, finding.span, finding.labels.iter().map(|l| l.span).collect());
+        let at = *seen.entry(key).or_insert(kept.len());
+        match kept.get_mut(at) {
+            Some((_, count)) => *count += 1,
+            None => kept.push((finding, 1)),
+        }
+    }
+    let instances = count_instances(circuit);
+    kept.into_iter().map(|(finding, count)| with_count(finding, count, &instances)).collect()
+}
+
+/// How many instances each subcircuit has, by the span of the call's last step: all calls of one definition.
+fn count_instances(circuit: &Circuit) -> HashMap<Span, (String, usize)> {
+    let mut by_definition: HashMap<Span, usize> = HashMap::default();
+    for scope in circuit.scopes.iter().filter(|s| s.parent.is_some()) {
+        *by_definition.entry(scope.definition).or_insert(0) += 1;
+    }
+    let mut by_call = HashMap::default();
+    for scope in circuit.scopes.iter().filter(|s| s.parent.is_some()) {
+        let count = by_definition.get(&scope.definition).copied().unwrap_or(1);
+        by_call.entry(scope.call).or_insert_with(|| (circuit.text(scope.subcircuit).to_owned(), count));
+    }
+    by_call
+}
+
+fn with_count(mut finding: Finding, count: usize, instances: &HashMap<Span, (String, usize)>) -> Finding {
+    let known = finding.trail.last().and_then(|step| instances.get(&step.span));
+    if let Some((name, all)) = known
+        && *all > 1
+    {
+        finding.message.push_str(&match count {
+            _ if count == *all => format!(" (the same in all {all} instances of {name})"),
+            1 => format!(" (in this one of {all} instances of {name})"),
+            _ => format!(" (the same in {count} of {all} instances of {name})"),
+        });
+    }
+    finding
+}

@@ -1,0 +1,50 @@
+//! What a rule is, as plain data.
+
+use super::Evidence;
+use crate::finding::{Finding, Severity};
+use crate::operating::Operating;
+
+/// What a rule needs before it can judge, and its check.
+pub enum Check {
+    /// The findings are made while reading (`syntax`, `circuit`); the file documents them.
+    Reading,
+    /// Judges the wiring.
+    Wiring(fn(&Evidence<'_>) -> Vec<Finding>),
+    /// Judges the states.
+    States(fn(&Evidence<'_>, &Operating) -> Vec<Finding>),
+    /// Judges the notes against all other findings; made by `run` after the other rules.
+    Notes,
+}
+
+/// One rule.
+pub struct Rule {
+    /// Name, in words joined by hyphens.
+    pub name: &'static str,
+    /// Group in the listing: `reading`, `wiring`, `orientation`, `states`, `notes`, `caution`.
+    pub group: &'static str,
+    /// Its severity.
+    pub severity: Severity,
+    /// One line.
+    pub summary: &'static str,
+    /// Why it matters.
+    pub why: &'static str,
+    /// What to do.
+    pub remedy: &'static str,
+    /// The published result it rests on, where it does.
+    pub source: Option<&'static str>,
+    /// A netlist that gives exactly one finding of this rule and no other finding of warning or error.
+    pub failing: &'static str,
+    /// A netlist that gives no finding at all.
+    pub passing: &'static str,
+    /// The check.
+    pub check: Check,
+}
+
+/// A rule that could not judge.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Skipped {
+    /// The rule's name.
+    pub rule: &'static str,
+    /// Why.
+    pub reason: String,
+}

@@ -1,0 +1,3 @@
+//! All tests that use the library from outside, in one binary: linking is what costs.
+
+mod rule_examples;

@@ -1,0 +1,52 @@
+//! Every rule's failing example gives exactly one finding of that rule and no other warning or error; its
+//! passing example gives nothing at all.
+
+use kneewise::analysis::{Analysis, analyse};
+use kneewise::config::Options;
+use kneewise::finding::{Finding, Severity};
+use kneewise::rules::{self, Rule};
+use kneewise::text::Memory;
+use std::path::Path;
+
+fn check(rule: &Rule, which: &str, text: &str) -> Analysis {
+    let name = format!("{}-{which}.cir", rule.name);
+    let mut files = Memory::with(name.as_str(), text);
+    let options = Options { states: true, ..Options::default() };
+    analyse(&mut files, Path::new(&name), &options).unwrap()
+}
+
+fn tell(analysis: &Analysis) -> String {
+    let line = |f: &Finding| {
+        let at = analysis.sources.positions(f.span).0;
+        format!("  {} {} at {}:{}: {}", f.severity.word(), f.rule, at.line, at.column, f.message)
+    };
+    analysis.findings.iter().map(line).collect::<Vec<_>>().join("\n")
+}
+
+/// What is wrong with a rule's examples.
+fn complaints(rule: &Rule) -> Vec<String> {
+    let mut wrong = Vec::new();
+    let failing = check(rule, "failing", rule.failing);
+    let own = failing.findings.iter().filter(|f| f.rule == rule.name).count();
+    let others =
+        failing.findings.iter().filter(|f| f.rule != rule.name && f.severity > Severity::Note).count();
+    if own != 1 || others != 0 {
+        wrong.push(format!("{}, failing example: {own} of its own\n{}", rule.name, tell(&failing)));
+    }
+    let passing = check(rule, "passing", rule.passing);
+    if !passing.findings.is_empty() {
+        wrong.push(format!("{}, passing example:\n{}", rule.name, tell(&passing)));
+    }
+    for finding in failing.findings.iter().chain(&passing.findings) {
+        if rules::find(finding.rule).is_none() {
+            wrong.push(format!("no rule file for {}", finding.rule));
+        }
+    }
+    wrong
+}
+
+#[test]
+fn examples_of_every_rule_give_what_they_promise() {
+    let wrong: Vec<String> = rules::all().iter().flat_map(|rule| complaints(rule)).collect();
+    assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
