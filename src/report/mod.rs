@@ -1,1 +1,18 @@
-//! (to be written)
+//! Results as text: findings and states for a person, and both as JSON for a pipeline. Nothing is computed or
+//! judged here, and nothing is printed: every report is handed back as a string.
+
+mod excerpt;
+pub mod json;
+mod paint;
+mod states;
+mod summary;
+mod table;
+mod terminal;
+mod why;
+
+pub use crate::finding::{compact, figure, interval, quantity};
+pub use paint::Page;
+pub use states::states;
+pub use summary::Summary;
+pub use terminal::{findings, skipped};
+pub use why::why;

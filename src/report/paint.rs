@@ -1,0 +1,156 @@
+//! Colour and clean text: the page that reports are written on, the few inks it knows, and the filter that
+//! keeps control characters of the input off the terminal. Says nothing about what is written.
+
+/// What a stretch of text means; the page turns it into colour, or into nothing.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Ink {
+    /// Cannot be right.
+    Error,
+    /// Very likely a mistake; open quantities.
+    Warning,
+    /// Worth knowing.
+    Note,
+    /// The sentence to read first.
+    Strong,
+    /// What may be skipped.
+    Faint,
+    /// Related places.
+    Second,
+    /// A diode that conducts, a verdict that holds.
+    Live,
+    /// A diode in breakdown.
+    Reverse,
+}
+
+impl Ink {
+    /// ANSI (ECMA-48) sequence that starts it.
+    fn start(self) -> &'static str {
+        match self {
+            Ink::Error => "\x1b[1;31m",
+            Ink::Warning => "\x1b[1;33m",
+            Ink::Note => "\x1b[1;34m",
+            Ink::Strong => "\x1b[1m",
+            Ink::Faint => "\x1b[2m",
+            Ink::Second => "\x1b[36m",
+            Ink::Live => "\x1b[32m",
+            Ink::Reverse => "\x1b[35m",
+        }
+    }
+}
+
+/// Text under way to a terminal or a file.
+#[derive(Debug, Clone, Default)]
+pub struct Page {
+    text: String,
+    colour: bool,
+}
+
+impl Page {
+    /// An empty page, with colour or without.
+    pub fn new(colour: bool) -> Self {
+        Page { text: String::new(), colour }
+    }
+
+    /// The text written so far.
+    pub fn text(&self) -> &str {
+        &self.text
+    }
+
+    /// Adds text as it is.
+    pub fn plain(&mut self, text: &str) -> &mut Self {
+        self.text.push_str(text);
+        self
+    }
+
+    /// Adds text in an ink.
+    pub(super) fn ink(&mut self, ink: Ink, text: &str) -> &mut Self {
+        self.start(ink);
+        self.text.push_str(text);
+        self.stop();
+        self
+    }
+
+    /// Ends the line.
+    pub fn end(&mut self) -> &mut Self {
+        self.text.push('\n');
+        self
+    }
+
+    pub(super) fn start(&mut self, ink: Ink) {
+        if self.colour {
+            self.text.push_str(ink.start());
+        }
+    }
+
+    pub(super) fn stop(&mut self) {
+        if self.colour {
+            self.text.push_str("\x1b[0m");
+        }
+    }
+}
+
+/// A character that may move the cursor, colour the screen or turn the reading direction.
+fn unfit(c: char) -> bool {
+    c.is_control() || matches!(c, '\u{200E}' | '\u{200F}' | '\u{2028}'..='\u{202E}' | '\u{2066}'..='\u{2069}')
+}
+
+/// The character to show: unfit ones become the replacement character, a tab one space.
+pub(super) fn fit(c: char) -> char {
+    match c {
+        '\t' => ' ',
+        c if unfit(c) => char::REPLACEMENT_CHARACTER,
+        c => c,
+    }
+}
+
+/// Text of the input made fit for a terminal.
+pub(super) fn clean(text: &str) -> String {
+    text.chars().map(fit).collect()
+}
+
+/// Breaks text into lines of at most `width` columns, at spaces; a longer word stays whole.
+pub(super) fn wrap(text: &str, width: usize) -> Vec<String> {
+    let mut lines = Vec::new();
+    for paragraph in text.lines() {
+        let mut line = String::new();
+        for word in clean(paragraph).split_whitespace() {
+            if !line.is_empty() && columns(&line) + 1 + columns(word) > width {
+                lines.push(std::mem::take(&mut line));
+            }
+            if !line.is_empty() {
+                line.push(' ');
+            }
+            line.push_str(word);
+        }
+        lines.push(line);
+    }
+    lines
+}
+
+/// Columns that a text takes on a terminal.
+pub(super) fn columns(text: &str) -> usize {
+    unicode_width::UnicodeWidthStr::width(text)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn control_characters_never_reach_the_page() {
+        assert_eq!(clean("R1\x1b[31m\u{202E}\ta"), "R1\u{FFFD}[31m\u{FFFD} a");
+    }
+
+    #[test]
+    fn lines_break_at_spaces() {
+        assert_eq!(wrap("one two three", 8), ["one two", "three"]);
+        assert_eq!(wrap("unbreakable", 3), ["unbreakable"]);
+    }
+
+    #[test]
+    fn colour_only_where_asked_for() {
+        let mut page = Page::new(false);
+        page.ink(Ink::Error, "x");
+        assert_eq!(page.text(), "x");
+    }
+}

@@ -1,0 +1,90 @@
+//! The counts at the end of a run.
+
+use super::paint::{Ink, Page};
+use crate::analysis::Analysis;
+use crate::finding::{Finding, Severity};
+use serde::Serialize;
+
+/// Counts over all root files of a run; accepted findings count nowhere else.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default, Serialize)]
+pub struct Summary {
+    /// Root files.
+    pub files: usize,
+    /// Findings that are errors.
+    pub errors: usize,
+    /// Findings that are warnings.
+    pub warnings: usize,
+    /// Findings that are notes.
+    pub notes: usize,
+    /// Elements after expansion.
+    pub elements: usize,
+    /// Diodes after expansion.
+    pub diodes: usize,
+    /// Findings that a note of the netlist accepts.
+    #[serde(skip)]
+    pub accepted: usize,
+}
+
+impl Summary {
+    /// Counts one more file.
+    pub fn add(&mut self, analysis: &Analysis) {
+        self.files += 1;
+        self.elements += analysis.circuit.elements.len();
+        self.diodes += analysis.circuit.elements.iter().filter(|e| e.letter == b'D').count();
+        for finding in &analysis.findings {
+            self.count(finding);
+        }
+    }
+
+    fn count(&mut self, finding: &Finding) {
+        let counter = match finding.severity {
+            _ if finding.accepted.is_some() => &mut self.accepted,
+            Severity::Error => &mut self.errors,
+            Severity::Warning => &mut self.warnings,
+            Severity::Note => &mut self.notes,
+        };
+        *counter += 1;
+    }
+
+    /// The most serious severity that occurs, accepted findings left out.
+    pub fn worst(&self) -> Option<Severity> {
+        match self {
+            Summary { errors: 1.., .. } => Some(Severity::Error),
+            Summary { warnings: 1.., .. } => Some(Severity::Warning),
+            Summary { notes: 1.., .. } => Some(Severity::Note),
+            _ => None,
+        }
+    }
+
+    /// `1 file, 12 elements, 3 diodes: no errors, 1 warning, no notes`
+    pub fn write(&self, page: &mut Page) {
+        let scope =
+            [counted(self.files, "file"), counted(self.elements, "element"), counted(self.diodes, "diode")];
+        page.plain(&scope.join(", ")).plain(": ");
+        let results = [
+            (self.errors, "error", Ink::Error),
+            (self.warnings, "warning", Ink::Warning),
+            (self.notes, "note", Ink::Note),
+        ];
+        for (n, (count, noun, ink)) in results.into_iter().enumerate() {
+            page.plain(if n == 0 { "" } else { ", " });
+            match count {
+                0 => page.plain(&counted(count, noun)),
+                _ => page.ink(ink, &counted(count, noun)),
+            };
+        }
+        if self.accepted > 0 {
+            page.plain(&format!(" ({} accepted)", self.accepted));
+        }
+        page.end();
+    }
+}
+
+/// `no diodes`, `1 diode`, `12 diodes`.
+pub(super) fn counted(count: usize, noun: &str) -> String {
+    match count {
+        0 => format!("no {noun}s"),
+        1 => format!("1 {noun}"),
+        n => format!("{n} {noun}s"),
+    }
+}

@@ -1,0 +1,71 @@
+//! The reasoning about one diode, for a person: what it would see if it blocked, why the state follows, and
+//! which source would change it. The sentences come from `operating`; only their layout is made here.
+
+use super::paint::{Ink, Page, clean, wrap};
+use super::states::state_ink;
+use crate::analysis::Analysis;
+use crate::finding::quantity;
+use crate::operating::{Flip, Reasoning, State};
+
+/// Running text is broken at this width.
+const WIDTH: usize = 96;
+
+/// Writes the reasoning about the diode that was asked for, if there is any.
+pub fn why(page: &mut Page, analysis: &Analysis) {
+    let Some(why) = analysis.operating.as_ref().and_then(|o| o.why.as_ref()) else { return };
+    let circuit = &analysis.circuit;
+    let name = clean(&circuit.element_name(why.element));
+    let span = circuit.element(why.element).statement;
+    let (start, _) = analysis.sources.positions(span);
+    let line = analysis.sources.slice(span).lines().next().unwrap_or("");
+    page.ink(Ink::Strong, &format!("why {name}")).plain("   ");
+    let place = format!("{}:{}  {}", analysis.sources.name(span.file), start.line, line);
+    page.ink(Ink::Faint, &clean(&place)).end();
+    for reasoning in &why.reasonings {
+        write_reasoning(page, &name, reasoning);
+    }
+    page.end();
+}
+
+fn write_reasoning(page: &mut Page, name: &str, reasoning: &Reasoning) {
+    let state = reasoning.state.word();
+    page.plain("  ").plain(name).plain(" is ");
+    match state_ink(reasoning.state) {
+        Some(ink) => page.ink(ink, state),
+        None => page.plain(state),
+    };
+    page.plain(" in ").plain(&clean(&reasoning.cases.join(", "))).end();
+    for (n, sentence) in reasoning.sentences.iter().enumerate() {
+        item(page, &format!("{:>4}. ", n + 1), sentence);
+    }
+    item(page, "      ", &reasoning.flip_sentence);
+    for flip in &reasoning.flips {
+        item(page, "      ", &flip_words(name, flip));
+    }
+}
+
+/// A sentence behind its number, further lines under its first word.
+fn item(page: &mut Page, lead: &str, sentence: &str) {
+    if sentence.is_empty() {
+        return;
+    }
+    let room = lead.chars().count();
+    for (n, line) in wrap(sentence, WIDTH - room).iter().enumerate() {
+        match n {
+            0 => page.ink(Ink::Faint, lead),
+            _ => page.plain(&" ".repeat(room)),
+        };
+        page.plain(line).end();
+    }
+}
+
+/// `V1 from 5 V to 0.7 V: D1 is blocking beyond`
+fn flip_words(name: &str, flip: &Flip) -> String {
+    let unit =
+        if flip.source.rsplit(':').next().is_some_and(|n| n.starts_with(['I', 'i'])) { "A" } else { "V" };
+    let beyond = match flip.state {
+        State::NotEvaluated => "no consistent state beyond".to_owned(),
+        state => format!("beyond, {name} is {}", state.word()),
+    };
+    format!("{} from {} to {}: {beyond}", flip.source, quantity(flip.from, unit), quantity(flip.to, unit))
+}
