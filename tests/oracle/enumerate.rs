@@ -1,0 +1,194 @@
+//! Tries every assignment of states, depth first, each diode fixing one of its two variables.
+
+use super::Rat;
+use super::affine::{Equation, Form, Step, equate};
+use super::answer::{Answer, Point, Range};
+use super::cone::{self, Shape};
+use super::laws::{Junction, Laws, laws};
+use crate::circuits::Circuit;
+use num_traits::{Signed, Zero};
+use std::collections::HashSet;
+
+/// The solution set of a circuit.
+pub fn solve(circuit: &Circuit) -> Answer {
+    let laws = laws(circuit);
+    let mut answer = Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
+    if laws.impossible {
+        return answer;
+    }
+    let mut search = Search { laws: &laws, seen: HashSet::new(), answer: &mut answer };
+    search.assign(0, laws.junctions.clone(), &mut Vec::new(), &mut Vec::new());
+    answer
+}
+
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Assumed {
+    Conducting,
+    Blocking,
+    Breakdown,
+}
+
+struct Search<'a> {
+    laws: &'a Laws,
+    seen: HashSet<Point>,
+    answer: &'a mut Answer,
+}
+
+impl Search<'_> {
+    fn assign(
+        &mut self,
+        at: usize,
+        junctions: Vec<Junction>,
+        assumed: &mut Vec<Assumed>,
+        steps: &mut Vec<Step>,
+    ) {
+        let Some(junction) = junctions.get(at) else {
+            return self.leaf(&junctions, assumed, steps);
+        };
+        for state in [Assumed::Conducting, Assumed::Blocking, Assumed::Breakdown] {
+            let equation = match (state, &junction.reverse) {
+                (Assumed::Conducting, _) => junction.inner.plus(&-&junction.forward),
+                (Assumed::Blocking, _) => junction.current.clone(),
+                (Assumed::Breakdown, Some(reverse)) => junction.inner.plus(reverse),
+                (Assumed::Breakdown, None) => continue,
+            };
+            assumed.push(state);
+            let depth = steps.len();
+            let mut next = junctions.clone();
+            let possible = match equate(&equation) {
+                Equation::Fails => false,
+                Equation::Holds => true,
+                Equation::Fixes(step) => {
+                    for junction in &mut next {
+                        junction.inner.substitute(&step);
+                        junction.current.substitute(&step);
+                    }
+                    steps.push(step);
+                    true
+                }
+            };
+            if possible && !refuted(&next, assumed) && !circulates(&next, assumed) {
+                self.assign(at + 1, next, assumed, steps);
+            }
+            steps.truncate(depth);
+            assumed.pop();
+        }
+    }
+
+    /// All states assumed: what is left of the parameters, and within which bounds.
+    fn leaf(&mut self, junctions: &[Junction], assumed: &[Assumed], steps: &[Step]) {
+        let conditions: Vec<Form> =
+            junctions.iter().zip(assumed).flat_map(|(junction, state)| conditions(junction, *state)).collect();
+        let mut quantities = self.laws.quantities.clone();
+        for step in steps {
+            quantities.iter_mut().for_each(|form| form.substitute(step));
+        }
+        let free: Vec<usize> = (0..self.laws.parameters)
+            .filter(|&p| quantities.iter().any(|form| !form.coefficients[p].is_zero()))
+            .collect();
+        let conditions: Vec<Form> =
+            conditions.iter().map(|form| only(form, &free)).filter(|form| form.first().is_some()).collect();
+        let quantities: Vec<Form> = quantities.iter().map(|form| only(form, &free)).collect();
+        if let Some(shape) = cone::shape(&conditions, free.len()) {
+            self.record(&quantities, &shape);
+        }
+    }
+
+    fn record(&mut self, quantities: &[Form], shape: &Shape) {
+        let ranges: Vec<Range> = quantities.iter().map(|form| range(form, shape)).collect();
+        let answer = &mut *self.answer;
+        if answer.ranges.is_empty() {
+            answer.ranges = ranges;
+        } else {
+            answer.ranges.iter_mut().zip(&ranges).for_each(|(all, one)| all.widen(one));
+        }
+        if shape.corners.len() + shape.directions.len() + shape.lines.len() > 1 {
+            answer.continuum = true;
+        }
+        for corner in &shape.corners {
+            let point: Point = quantities.iter().map(|form| value(form, corner)).collect();
+            if self.seen.insert(point.clone()) {
+                self.answer.points.push(point);
+            }
+        }
+    }
+}
+
+/// What must be ≥ 0 for an assumption to hold.
+fn conditions(junction: &Junction, assumed: Assumed) -> Vec<Form> {
+    let negated = |form: &Form| {
+        let mut zero = Form { coefficients: vec![Rat::zero(); form.coefficients.len()], constant: Rat::zero() };
+        zero.add(form, &-Rat::from_integer(1.into()));
+        zero
+    };
+    match assumed {
+        Assumed::Conducting => vec![junction.current.clone()],
+        Assumed::Breakdown => vec![negated(&junction.current)],
+        Assumed::Blocking => {
+            let mut both = vec![negated(&junction.inner).plus(&junction.forward)];
+            both.extend(junction.reverse.as_ref().map(|reverse| junction.inner.plus(reverse)));
+            both
+        }
+    }
+}
+
+/// Whether an assumption already fails whatever the rest does.
+fn refuted(junctions: &[Junction], assumed: &[Assumed]) -> bool {
+    let decided = junctions.iter().zip(assumed);
+    decided
+        .flat_map(|(junction, state)| conditions(junction, *state))
+        .any(|form| form.first().is_none() && form.constant.is_negative())
+}
+
+/// Whether all diodes of some directed loop of diodes without drop and series resistance conduct.
+fn circulates(junctions: &[Junction], assumed: &[Assumed]) -> bool {
+    let mut arcs: Vec<(usize, usize)> = (junctions.iter().zip(assumed))
+        .filter(|(junction, state)| junction.ideal && **state == Assumed::Conducting)
+        .map(|(junction, _)| junction.ends)
+        .collect();
+    // take away arcs that lead nowhere until none does; a loop stays
+    loop {
+        let before = arcs.len();
+        let leads_on: Vec<bool> = arcs.iter().map(|arc| arcs.iter().any(|next| next.0 == arc.1)).collect();
+        let mut leads_on = leads_on.into_iter();
+        arcs.retain(|_| leads_on.next() == Some(true));
+        if arcs.len() == before {
+            return before > 0;
+        }
+    }
+}
+
+/// A form written in the free parameters alone.
+fn only(form: &Form, free: &[usize]) -> Form {
+    let coefficients = free.iter().map(|&p| form.coefficients[p].clone()).collect();
+    Form { coefficients, constant: form.constant.clone() }
+}
+
+fn slope(form: &Form, direction: &[Rat]) -> Rat {
+    let terms = form.coefficients.iter().zip(direction);
+    terms.filter(|(c, d)| !c.is_zero() && !d.is_zero()).fold(Rat::zero(), |sum, (c, d)| sum + c * d)
+}
+
+fn value(form: &Form, point: &[Rat]) -> Rat {
+    slope(form, point) + &form.constant
+}
+
+fn range(form: &Form, shape: &Shape) -> Range {
+    let values: Vec<Rat> = shape.corners.iter().map(|corner| value(form, corner)).collect();
+    let mut range = Range { low: values.iter().min().cloned(), high: values.iter().max().cloned() };
+    if form.first().is_none() {
+        return range;
+    }
+    for direction in &shape.directions {
+        let slope = slope(form, direction);
+        if slope.is_negative() {
+            range.low = None;
+        } else if slope.is_positive() {
+            range.high = None;
+        }
+    }
+    if shape.lines.iter().any(|line| !slope(form, line).is_zero()) {
+        range = Range { low: None, high: None };
+    }
+    range
+}

@@ -1,0 +1,45 @@
+//! Every solution of a small network, found from the definitions alone and in exact rational arithmetic: each
+//! assignment of states is tried, and what the laws then leave is described by its corners and directions.
+//! Independent of the library under test: it sees only the made-up circuit, never the netlist or kneewise.
+//!
+//! Readings of the definitions where words leave room:
+//! - The solution set is the union over all assignments of the polyhedron {conducting: u = drop, i ≥ 0; blocking:
+//!   i = 0, −BV ≤ u ≤ drop; breakdown: u = −BV, i ≤ 0}, u the voltage without the series resistance.
+//! - "Current that merely circulates in a loop of forward arcs with total voltage zero": a directed loop of diodes
+//!   without drop and series resistance, nothing else in it. Assignments in which all diodes of such a loop
+//!   conduct are left out; every current without circulation appears in another one. A loop through a voltage
+//!   source is a loop "of conducting diodes and voltage sources" and stays open, even at 0 V.
+//! - Shorts (inductors, 0 Ω) are treated like 0 V sources; the generators make no loop of shorts alone and join no
+//!   short with ideal diodes.
+
+// each test binary takes its own share of this
+#![allow(dead_code)]
+
+mod affine;
+mod answer;
+mod cone;
+mod enumerate;
+mod laws;
+mod parts;
+
+pub use answer::{Answer, Range, StateWord, Verdict};
+pub use enumerate::solve;
+pub use parts::{Division, acceptable_verdicts, divide};
+
+use num_rational::BigRational;
+use num_traits::{ToPrimitive, Zero};
+
+/// An exact number.
+pub type Rat = BigRational;
+
+/// The exact value of a decimal.
+pub fn exact(value: crate::circuits::decimal::Dec) -> Rat {
+    let power = num_traits::pow(Rat::from_integer(10.into()), value.exponent.unsigned_abs() as usize);
+    let digits = Rat::from_integer(value.digits.into());
+    if value.exponent < 0 { digits / power } else { digits * power }
+}
+
+/// The nearest double, near enough for comparisons to 1e-12.
+pub fn float(value: &Rat) -> f64 {
+    if value.is_zero() { 0.0 } else { value.to_f64().unwrap_or(f64::NAN) }
+}

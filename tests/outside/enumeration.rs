@@ -1,0 +1,71 @@
+//! Random networks against the exhaustive enumeration.
+
+use crate::circuits::{Circuit, random};
+use crate::compare::{CLOSE, both, differences};
+use crate::oracle::{self, Verdict, acceptable_verdicts};
+use crate::run;
+use crate::shrink::shrink;
+use std::collections::BTreeMap;
+
+/// Networks in an ordinary run; `KNEEWISE_NETWORKS=20000` asks for more, `KNEEWISE_SEED=…` for others.
+pub fn wanted(ordinary: u64) -> (u64, u64) {
+    let number = |name: &str| std::env::var(name).ok().and_then(|text| text.parse().ok());
+    (number("KNEEWISE_SEED").unwrap_or(0), number("KNEEWISE_NETWORKS").unwrap_or(ordinary))
+}
+
+/// Stops with the smallest failing form of each of the first few networks that fail.
+pub fn all_agree(make: &dyn Fn(u64) -> Option<Circuit>, seeds: std::ops::Range<u64>) {
+    let mut failures = Vec::new();
+    let mut checked = 0;
+    for seed in seeds {
+        let Some(circuit) = make(seed) else { continue };
+        checked += 1;
+        if fails(&circuit) {
+            failures.push(seed);
+        }
+    }
+    let shown: Vec<String> = failures.iter().take(5).filter_map(|&seed| make(seed)).map(|c| report(&c)).collect();
+    assert!(
+        failures.is_empty(),
+        "{} of {checked} networks differ from the enumeration (seeds {:?}); the first, made as small as they still differ:\n\n{}",
+        failures.len(),
+        &failures[..failures.len().min(40)],
+        shown.join("\n\n")
+    );
+}
+
+fn fails(circuit: &Circuit) -> bool {
+    !differences(circuit, &oracle::solve(circuit), &run::states(&circuit.text()), CLOSE).is_empty()
+}
+
+fn report(circuit: &Circuit) -> String {
+    let least = shrink(circuit, &fails);
+    let answer = oracle::solve(&least);
+    let analysis = run::states(&least.text());
+    let list = differences(&least, &answer, &analysis, CLOSE);
+    format!("{}differences:\n  {}", both(&least, &answer, &analysis), list.join("\n  "))
+}
+
+#[test]
+fn random_networks_agree_with_the_enumeration() {
+    let (first, count) = wanted(2000);
+    all_agree(&|seed| Some(random::network(seed)), first..first + count);
+}
+
+#[test]
+fn the_random_networks_hold_every_verdict_in_good_number() {
+    let mut shares: BTreeMap<Verdict, usize> = BTreeMap::new();
+    let (first, count) = (0, 1000);
+    for seed in first..first + count {
+        let circuit = random::network(seed);
+        let verdicts = acceptable_verdicts(&circuit, &oracle::solve(&circuit));
+        *shares.entry(*verdicts.last().expect("there is always one")).or_default() += 1;
+    }
+    eprintln!("shares in {count} networks: {shares:?}");
+    for verdict in
+        [Verdict::Unique, Verdict::Shared, Verdict::Floating, Verdict::SharedFloating, Verdict::None]
+    {
+        let share = shares.get(&verdict).copied().unwrap_or(0);
+        assert!(share >= 40, "only {share} of {count} random networks are {verdict:?}: {shares:?}");
+    }
+}
