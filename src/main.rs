@@ -1,2 +1,7 @@
 //! The command line program; everything it does is in `cli`.
-fn main() {}
+
+mod cli;
+
+fn main() -> std::process::ExitCode {
+    cli::run()
+}

@@ -2,6 +2,8 @@
 //! module opens with its purpose, and library code does not give up on input.
 //! The scan knows just enough Rust for that: comments, strings, nested modules and `use` trees.
 
+#![allow(clippy::unwrap_used)]
+
 use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 

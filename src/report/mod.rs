@@ -4,6 +4,7 @@
 mod excerpt;
 pub mod json;
 mod paint;
+mod rules;
 mod states;
 mod summary;
 mod table;
@@ -12,6 +13,7 @@ mod why;
 
 pub use crate::finding::{compact, figure, interval, quantity};
 pub use paint::Page;
+pub use rules::{rule, rule_list};
 pub use states::states;
 pub use summary::Summary;
 pub use terminal::{findings, skipped};

@@ -41,7 +41,7 @@ pub fn skipped(page: &mut Page, skipped: &[Skipped]) {
 }
 
 /// The ink of a severity.
-fn ink(severity: Severity) -> Ink {
+pub(super) fn ink(severity: Severity) -> Ink {
     match severity {
         Severity::Error => Ink::Error,
         Severity::Warning => Ink::Warning,

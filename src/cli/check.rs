@@ -1,0 +1,67 @@
+//! `kneewise check`: all findings of all files.
+
+use super::End;
+use super::args::{Check, Format};
+use super::input::{Input, wanted};
+use super::output::Console;
+use kneewise::analysis::{Analysis, analyse};
+use kneewise::report::{self, Summary};
+
+pub fn run(console: &mut Console, command: &Check) -> End {
+    let wanted = wanted(&command.paths);
+    let mut failed = !wanted.problems.is_empty();
+    for problem in &wanted.problems {
+        console.say(problem);
+    }
+    let options = command.common.options(None);
+    let (mut input, mut summary, mut kept) = (Input::default(), Summary::default(), Vec::new());
+    for (n, file) in wanted.files.iter().enumerate() {
+        console.progress(n, wanted.files.len());
+        match analyse(&mut input, file, &options) {
+            Err(problem) => {
+                console.say(&format!("{}: {}", file.display(), problem.0));
+                failed = true;
+            }
+            Ok(analysis) => {
+                summary.add(&analysis);
+                match command.common.format {
+                    Format::Text => failed |= !console.result(&text(console, &analysis)),
+                    Format::Json => kept.push(analysis),
+                }
+            }
+        }
+    }
+    failed |= !finish(console, command.common.format, &kept, summary);
+    match failed {
+        true => End::Failed,
+        false if command.common.fail_on.reached_by(summary.worst()) => End::Found,
+        false => End::Clean,
+    }
+}
+
+/// The findings of one file.
+fn text(console: &Console, analysis: &Analysis) -> String {
+    let mut page = console.page();
+    report::findings(&mut page, &analysis.sources, &analysis.findings);
+    report::skipped(&mut page, &analysis.skipped);
+    page.text().to_owned()
+}
+
+/// What stands at the end: the counts, or the whole document.
+fn finish(console: &mut Console, format: Format, kept: &[Analysis], summary: Summary) -> bool {
+    match format {
+        Format::Text if summary.files == 0 => true,
+        Format::Text => {
+            let mut page = console.page();
+            summary.write(&mut page);
+            console.result(page.text())
+        }
+        Format::Json => match report::json::findings(kept, summary) {
+            Ok(text) => console.result(&text),
+            Err(problem) => {
+                console.say(&format!("the findings could not be written as JSON: {problem}"));
+                false
+            }
+        },
+    }
+}

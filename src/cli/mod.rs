@@ -1,0 +1,48 @@
+//! Arguments, dispatch, exit code. The library is seen through its public interface only; what is said about
+//! the run goes to standard error, results go to standard output.
+
+mod args;
+mod check;
+mod input;
+mod output;
+mod rules;
+mod states;
+
+use args::{Args, Command};
+use clap::Parser;
+use output::Console;
+use std::process::ExitCode;
+
+/// How a run ends.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum End {
+    /// Done, nothing at or above `--fail-on`.
+    Clean,
+    /// Done, something at or above it.
+    Found,
+    /// The job could not be done.
+    Failed,
+}
+
+/// Reads the arguments, does what they ask for, and gives the exit code.
+pub fn run() -> ExitCode {
+    let args = match Args::try_parse() {
+        Ok(args) => args,
+        Err(problem) => {
+            // help and version come this way too; a closed pipe is no error
+            let _ = problem.print();
+            return ExitCode::from(u8::try_from(problem.exit_code()).unwrap_or(2));
+        }
+    };
+    let mut console = Console::new(args.color);
+    let end = match &args.command {
+        Command::Check(command) => check::run(&mut console, command),
+        Command::States(command) => states::run(&mut console, command),
+        Command::Rules(command) => rules::run(&mut console, command),
+    };
+    ExitCode::from(match end {
+        End::Clean => 0,
+        End::Found => 1,
+        End::Failed => 2,
+    })
+}

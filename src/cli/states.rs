@@ -1,0 +1,76 @@
+//! `kneewise states`: every diode's state, and on request the reasoning about one.
+
+use super::End;
+use super::args::{Format, States};
+use super::input::Input;
+use super::output::Console;
+use kneewise::analysis::{Analysis, analyse};
+use kneewise::finding::Severity;
+use kneewise::operating::Verdict;
+use kneewise::report::{self, Summary};
+
+pub fn run(console: &mut Console, command: &States) -> End {
+    let options = command.common.options(command.why.as_deref());
+    let analysis = match analyse(&mut Input::default(), &command.file, &options) {
+        Ok(analysis) => analysis,
+        Err(problem) => {
+            console.say(&format!("{}: {}", command.file.display(), problem.0));
+            return End::Failed;
+        }
+    };
+    if let Some(name) = missing_diode(&analysis, command.why.as_deref()) {
+        console.say(&format!("there is no diode `{name}` in {}", command.file.display()));
+        return End::Failed;
+    }
+    let written = match command.common.format {
+        Format::Text => {
+            let mut page = console.page();
+            match command.why {
+                Some(_) => report::why(&mut page, &analysis),
+                None => report::states(&mut page, &analysis),
+            }
+            console.result(page.text())
+        }
+        Format::Json => match report::json::states(&analysis) {
+            Ok(text) => console.result(&text),
+            Err(problem) => {
+                console.say(&format!("the states could not be written as JSON: {problem}"));
+                false
+            }
+        },
+    };
+    let worst = worst(console, command, &analysis);
+    match written {
+        false => End::Failed,
+        true if command.common.fail_on.reached_by(worst) => End::Found,
+        true => End::Clean,
+    }
+}
+
+/// The name that `--why` asks about, where no diode has it.
+fn missing_diode<'a>(analysis: &Analysis, why: Option<&'a str>) -> Option<&'a str> {
+    let circuit = &analysis.circuit;
+    why.filter(|name| {
+        !circuit.elements().any(|(id, element)| {
+            element.letter == b'D' && circuit.element_name(id).eq_ignore_ascii_case(name)
+        })
+    })
+}
+
+/// The most serious of the findings and the verdicts; says on standard error that there are findings, since
+/// this command does not show them.
+fn worst(console: &mut Console, command: &States, analysis: &Analysis) -> Option<Severity> {
+    let mut summary = Summary::default();
+    summary.add(analysis);
+    if summary.errors + summary.warnings > 0 {
+        let file = command.file.display();
+        console.say(&format!(
+            "{file} has findings ({} errors, {} warnings); see `kneewise check {file}`",
+            summary.errors, summary.warnings
+        ));
+    }
+    let hopeless = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
+    let cases = analysis.operating.iter().flat_map(|o| &o.cases);
+    let verdict = cases.map(|c| c.verdict).any(hopeless).then_some(Severity::Error);
+    verdict.max(summary.worst())
+}

@@ -1,0 +1,63 @@
+//! The rules for a person: the list, and one rule in full with its two examples.
+
+use super::paint::{Ink, Page, wrap};
+use super::table::{self, Cell};
+use super::terminal::ink;
+use crate::rules::Rule;
+
+/// Running text is broken at this width.
+const WIDTH: usize = 96;
+/// The groups in the order in which a file meets them; others follow.
+const GROUPS: [&str; 6] = ["reading", "wiring", "orientation", "states", "notes", "caution"];
+
+/// Writes one line for each rule, group by group.
+pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
+    for group in GROUPS {
+        let rows: Vec<Vec<Cell>> = rules
+            .iter()
+            .filter(|rule| rule.group == group)
+            .map(|rule| {
+                vec![
+                    Cell::word(rule.name),
+                    Cell::inked(rule.severity.word(), Some(ink(rule.severity))),
+                    Cell::word(rule.summary),
+                ]
+            })
+            .collect();
+        if !rows.is_empty() {
+            table::write(page, "  ", &[group, "", ""], &rows);
+            page.end();
+        }
+    }
+    page.plain("`kneewise rules NAME` tells one in full, with a netlist that fails it and one that passes.")
+        .end();
+}
+
+/// Writes one rule in full.
+pub fn rule(page: &mut Page, rule: &Rule) {
+    page.ink(Ink::Strong, rule.name).plain("   ");
+    page.ink(ink(rule.severity), rule.severity.word()).plain(", ").plain(rule.group).end();
+    paragraph(page, rule.summary);
+    paragraph(page, rule.why);
+    paragraph(page, rule.remedy);
+    if let Some(source) = rule.source {
+        paragraph(page, &format!("Source: {source}"));
+    }
+    example(page, "This is reported:", rule.failing);
+    example(page, "This is not:", rule.passing);
+}
+
+fn paragraph(page: &mut Page, text: &str) {
+    page.end();
+    for line in wrap(text, WIDTH) {
+        page.plain("  ").plain(&line).end();
+    }
+}
+
+fn example(page: &mut Page, title: &str, netlist: &str) {
+    page.end();
+    page.plain("  ").plain(title).end();
+    for line in netlist.trim_matches('\n').lines() {
+        page.plain("      ").ink(Ink::Faint, line).end();
+    }
+}
