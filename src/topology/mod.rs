@@ -1,16 +1,61 @@
-//! Facts of the wiring, computed once from the flat circuit and shared by all rules: islands, loops, cut sets,
-//! one-way reachability, roles of diodes. Facts only: whether one is a mistake is for `rules` to say.
+//! Facts of the wiring, computed once from the flat circuit and shared by all rules: which elements touch a
+//! node, islands, what holds a node, loops of voltages, one-way reachability, names alike. Facts only: whether
+//! one is a mistake is for `rules` to say. All in linear time and without recursion.
+
+mod arcs;
+mod decimal;
+mod groups;
+mod links;
+mod loops;
+mod noted;
+mod similar;
+mod touching;
+
+pub use arcs::OneWay;
+pub use decimal::{Sum, sum};
+pub use groups::Groups;
+pub use links::{Link, can_break_down, is_opaque, is_sensing, links};
+pub use loops::{Loop, Potentials, Step, dc_value, span_of_values};
+pub use noted::Noted;
+pub use similar::{Similar, similar};
+pub use touching::{Touch, Touching};
 
 use crate::circuit::Circuit;
 
 /// The facts.
 #[derive(Debug, Clone, Default)]
-pub struct Wiring {}
+pub struct Wiring {
+    /// Which elements touch each node.
+    pub touching: Touching,
+    /// Nodes that notes name: supplied, watched, expected.
+    pub noted: Noted,
+    /// Nodes joined by elements of any kind that pass a current, capacitors included. Group 0 holds ground and
+    /// whatever may reach it inside elements that are not known.
+    pub islands: Groups,
+    /// Islands that are related: by couplings, sensing inputs and control currents as well.
+    pub related: Groups,
+    /// Nodes joined by paths that pass a direct current. A group other than 0 is held by nothing: only
+    /// capacitors, current sources, gates and sensing inputs lead out of it.
+    pub held: Groups,
+    /// Closed walks of voltage sources, inductors and 0 Ω.
+    pub loops: Vec<Loop>,
+    /// Nodes whose differences of potential are fixed by sources alone.
+    pub potentials: Potentials,
+    /// What the diodes that pass current one way only make of the rest.
+    pub one_way: OneWay,
+}
 
 impl Wiring {
     /// Computes all facts.
     pub fn of(circuit: &Circuit) -> Self {
-        let _ = circuit;
-        Wiring {}
+        let touching = Touching::of(circuit);
+        let noted = Noted::of(circuit);
+        let islands = groups::islands(circuit, &noted);
+        let related = groups::related(circuit, &noted);
+        let held = groups::held(circuit, &noted);
+        let potentials = Potentials::of(circuit);
+        let loops = loops::loops(circuit, &potentials);
+        let one_way = OneWay::of(circuit, &noted, &touching);
+        Wiring { touching, noted, islands, related, held, loops, potentials, one_way }
     }
 }

@@ -1,0 +1,177 @@
+//! Currents that must go one way. Everything but a diode without breakdown passes current both ways and is
+//! contracted; what is left is a directed graph of diodes. A diode whose ends lie in different strongly
+//! connected components of it lies in no directed loop but in a directed cut, so it never carries forward
+//! current whatever the values are (colouring lemma: Minty 1960).
+
+use super::groups::{Groups, by_links};
+use super::links::can_break_down;
+use super::noted::Noted;
+use super::touching::Touching;
+use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
+use petgraph::algo::kosaraju_scc;
+use petgraph::graph::{DiGraph, NodeIndex};
+
+/// What one-way diodes make of the rest.
+#[derive(Debug, Clone, Default)]
+pub struct OneWay {
+    /// Nodes joined by what passes current both ways.
+    pub two_way: Groups,
+    /// Diodes that no closed path lets conduct, in order.
+    pub barred: Vec<Barred>,
+}
+
+/// A diode that no closed path lets conduct.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Barred {
+    /// The diode.
+    pub diode: ElementId,
+    /// Component of its anode and of its cathode: diodes with the same pair share one cause.
+    pub components: (u32, u32),
+    /// It is the only link to a dead end (a bridge): no current of either direction could close its path.
+    pub dead_end: bool,
+    /// In that dead end some node has one connection only.
+    pub loose_end: bool,
+}
+
+/// A diode that passes current one way only.
+fn is_one_way(circuit: &Circuit, id: ElementId) -> bool {
+    matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id)
+}
+
+impl OneWay {
+    pub(super) fn of(circuit: &Circuit, noted: &Noted, touching: &Touching) -> Self {
+        let two_way = Groups::from(by_links(circuit, noted, |id, _| !is_one_way(circuit, id)));
+        let mut graph: DiGraph<(), ElementId> = DiGraph::with_capacity(two_way.count(), 0);
+        for _ in 0..two_way.count() {
+            graph.add_node(());
+        }
+        for (id, _) in circuit.elements().filter(|(id, _)| is_one_way(circuit, *id)) {
+            let (anode, cathode) = (two_way.of(circuit.node(id, 0)), two_way.of(circuit.node(id, 1)));
+            graph.add_edge(NodeIndex::new(anode), NodeIndex::new(cathode), id);
+        }
+        let mut component = vec![0u32; two_way.count()];
+        for (number, members) in kosaraju_scc(&graph).iter().enumerate() {
+            for member in members {
+                component[member.index()] = number as u32;
+            }
+        }
+        let loose = loose_ends(circuit, touching, &two_way);
+        let bridges = Bridges::of(&graph, &loose);
+        let barred = graph
+            .edge_indices()
+            .filter_map(|edge| {
+                let (from, to) = graph.edge_endpoints(edge)?;
+                let components = (component[from.index()], component[to.index()]);
+                let (dead_end, loose_end) = bridges.verdict[edge.index()];
+                (components.0 != components.1).then(|| Barred {
+                    diode: graph[edge],
+                    components,
+                    dead_end,
+                    loose_end,
+                })
+            })
+            .collect();
+        OneWay { two_way, barred }
+    }
+}
+
+/// How many nodes of each group have one connection only.
+fn loose_ends(circuit: &Circuit, touching: &Touching, groups: &Groups) -> Vec<u32> {
+    let mut loose = vec![0; groups.count()];
+    for n in 1..circuit.nodes.len() {
+        let node = NodeId::new(n);
+        if touching.only(node).is_some() {
+            loose[groups.of(node)] += 1;
+        }
+    }
+    loose
+}
+
+/// Edges whose removal parts the graph, directions ignored; parallel edges are told apart by their numbers.
+struct Bridges {
+    /// For each edge: it is a bridge, and beyond it (away from the root) there are loose ends.
+    verdict: Vec<(bool, bool)>,
+}
+
+impl Bridges {
+    /// Depth-first search with the least entry number that a subtree reaches (Tarjan 1974), without recursion.
+    fn of(graph: &DiGraph<(), ElementId>, loose: &[u32]) -> Self {
+        let count = graph.node_count();
+        let adjacent = Adjacent::of(graph);
+        let mut verdict = vec![(false, false); graph.edge_count()];
+        let mut entry = vec![u32::MAX; count];
+        let mut low = vec![u32::MAX; count];
+        let mut beyond = loose.to_vec();
+        let mut clock = 0;
+        // node, the edge that led here, next neighbour to look at
+        let mut stack: Vec<(usize, u32, usize)> = Vec::new();
+        for root in 0..count {
+            if entry[root] != u32::MAX {
+                continue;
+            }
+            stack.push((root, u32::MAX, 0));
+            while let Some(&mut (at, by, ref mut next)) = stack.last_mut() {
+                if entry[at] == u32::MAX {
+                    entry[at] = clock;
+                    low[at] = clock;
+                    clock += 1;
+                }
+                if let Some(&(to, edge)) = adjacent.of_node(at).get(*next) {
+                    *next += 1;
+                    let to = to as usize;
+                    if edge == by {
+                    } else if entry[to] == u32::MAX {
+                        stack.push((to, edge, 0));
+                    } else {
+                        low[at] = low[at].min(entry[to]);
+                    }
+                    continue;
+                }
+                stack.pop();
+                if let Some(&(parent, _, _)) = stack.last() {
+                    low[parent] = low[parent].min(low[at]);
+                    beyond[parent] += beyond[at];
+                    if low[at] > entry[parent] {
+                        verdict[by as usize] = (true, beyond[at] > 0);
+                    }
+                }
+            }
+        }
+        Bridges { verdict }
+    }
+}
+
+/// Neighbours and edge numbers by node, both directions.
+struct Adjacent {
+    starts: Vec<u32>,
+    pairs: Vec<(u32, u32)>,
+}
+
+impl Adjacent {
+    fn of(graph: &DiGraph<(), ElementId>) -> Self {
+        let mut starts = vec![0u32; graph.node_count() + 1];
+        let ends = |edge| graph.edge_endpoints(edge).map_or((0, 0), |(a, b)| (a.index(), b.index()));
+        for edge in graph.edge_indices() {
+            let (a, b) = ends(edge);
+            starts[a + 1] += 1;
+            starts[b + 1] += 1;
+        }
+        for n in 1..starts.len() {
+            starts[n] += starts[n - 1];
+        }
+        let mut next = starts.clone();
+        let mut pairs = vec![(0, 0); 2 * graph.edge_count()];
+        for edge in graph.edge_indices() {
+            let (a, b) = ends(edge);
+            for (from, to) in [(a, b), (b, a)] {
+                pairs[next[from] as usize] = (to as u32, edge.index() as u32);
+                next[from] += 1;
+            }
+        }
+        Adjacent { starts, pairs }
+    }
+
+    fn of_node(&self, node: usize) -> &[(u32, u32)] {
+        &self.pairs[self.starts[node] as usize..self.starts[node + 1] as usize]
+    }
+}
