@@ -30,6 +30,8 @@ struct Style {
     source_loops: usize,
     /// Percent of networks that are joined together by resistors.
     joined: usize,
+    /// Percent of diodes that stand beside the one before, same way round or the other way.
+    twins: usize,
 }
 
 const OHMS: &[i64] = &[100, 200, 500, 1000, 1000, 2000, 3000, 4700, 10_000];
@@ -51,6 +53,7 @@ const STYLES: &[Style] = &[
         grounded: 75,
         source_loops: 2,
         joined: 85,
+        twins: 12,
     },
     Style {
         name: "ties",
@@ -68,6 +71,7 @@ const STYLES: &[Style] = &[
         grounded: 75,
         source_loops: 10,
         joined: 40,
+        twins: 25,
     },
     Style {
         name: "fed by currents",
@@ -85,6 +89,7 @@ const STYLES: &[Style] = &[
         grounded: 80,
         source_loops: 10,
         joined: 55,
+        twins: 25,
     },
     Style {
         name: "ideal diodes",
@@ -102,6 +107,7 @@ const STYLES: &[Style] = &[
         grounded: 80,
         source_loops: 5,
         joined: 70,
+        twins: 25,
     },
     Style {
         name: "loose",
@@ -119,6 +125,25 @@ const STYLES: &[Style] = &[
         grounded: 60,
         source_loops: 5,
         joined: 0,
+        twins: 25,
+    },
+    Style {
+        name: "islands",
+        nodes: (2, 5),
+        diodes: (1, 3),
+        resistors: (0, 2),
+        voltages: (0, 2),
+        currents: (1, 2),
+        drops: &[700, 700, 0],
+        volts: &[700, 1400, 0],
+        amperes: &[10, 20, -10],
+        breakdown: 20,
+        levels: &[700, 1400],
+        series: 8,
+        grounded: 25,
+        source_loops: 20,
+        joined: 0,
+        twins: 50,
     },
     Style {
         name: "larger",
@@ -136,6 +161,7 @@ const STYLES: &[Style] = &[
         grounded: 80,
         source_loops: 0,
         joined: 95,
+        twins: 12,
     },
 ];
 
@@ -145,10 +171,14 @@ pub fn network(seed: u64) -> Circuit {
     let style = &STYLES[dice.below(STYLES.len())];
     let nodes = dice.between(style.nodes.0, style.nodes.1);
     let mut circuit = Circuit::with_nodes(format!("random network {seed}, {}", style.name), nodes);
-    let mut maker = Maker { loops: dice.chance(style.source_loops), dice, style, tree: (0..=nodes).collect() };
+    let mut maker =
+        Maker { loops: dice.chance(style.source_loops), dice, style, tree: (0..=nodes).collect() };
     maker.sources(&mut circuit);
     maker.resistors(&mut circuit);
     maker.diodes(&mut circuit);
+    if style.name == "islands" && maker.dice.chance(65) {
+        maker.island(&mut circuit);
+    }
     maker.trimmings(&mut circuit);
     maker.dice.shuffle(&mut circuit.elements);
     circuit.compact();
@@ -230,9 +260,9 @@ impl Maker {
         let mut last = (0, 0);
         for number in 0..self.count(self.style.diodes) {
             let mut ends = self.ends(circuit);
-            if number > 0 && self.dice.chance(12) {
+            if number > 0 && self.dice.chance(self.style.twins) {
                 ends = last;
-                if self.dice.chance(40) {
+                if self.dice.chance(30) {
                     ends = (last.1, last.0);
                 }
             }
@@ -245,6 +275,30 @@ impl Maker {
                 Dec::ZERO
             };
             circuit.diode(ends.0, ends.1, Diode { drop, breakdown, series });
+        }
+    }
+
+    /// Two nodes of their own with a current source and equal ways for its current, tied to the rest by at most
+    /// two diodes.
+    fn island(&mut self, circuit: &mut Circuit) {
+        let (high, low) = (circuit.node(), circuit.node());
+        let amperes = Dec::new(*self.dice.pick(&[10, 20, 5]), -4);
+        circuit.i(low, high, amperes);
+        let drop = self.milli(self.style.drops);
+        circuit.d(high, low, drop);
+        if self.dice.chance(70) {
+            circuit.d(high, low, drop);
+        } else {
+            let middle = circuit.node();
+            circuit.d(high, middle, drop);
+            circuit.d(middle, low, Dec::ZERO);
+        }
+        for _ in 0..self.dice.between(0, 2) {
+            let inside = *self.dice.pick(&[high, low]);
+            let outside = self.dice.below(circuit.nodes.len());
+            let drop = self.milli(self.style.drops);
+            let ends = if self.dice.chance(50) { (inside, outside) } else { (outside, inside) };
+            circuit.d(ends.0, ends.1, drop);
         }
     }
 

@@ -1,7 +1,6 @@
 //! Quantities as affine forms of free parameters, and what an equation does to them.
 
 use super::Rat;
-use num_traits::{One, Zero};
 
 /// `constant + Σ coefficients · parameters`.
 #[derive(Debug, Clone, PartialEq)]
@@ -44,6 +43,21 @@ impl Form {
     pub fn substitute(&mut self, step: &Step) {
         let factor = std::mem::take(&mut self.coefficients[step.parameter]);
         self.add(&step.form, &factor);
+    }
+
+    /// The form written in some of the parameters, on which alone it depends.
+    pub fn only(&self, live: &[usize]) -> Form {
+        let coefficients = live.iter().map(|&p| self.coefficients[p].clone()).collect();
+        Form { coefficients, constant: self.constant.clone() }
+    }
+
+    /// The sign of its value, where that depends on no parameter; 0 where it does.
+    pub fn sign(&self) -> i8 {
+        match (self.first(), self.constant.is_positive(), self.constant.is_negative()) {
+            (Some(_), _, _) | (None, false, false) => 0,
+            (None, true, _) => 1,
+            (None, _, true) => -1,
+        }
     }
 
     /// The form with another constant added.

@@ -1,7 +1,6 @@
 //! What the enumeration finds, as plain data.
 
 use super::Rat;
-use num_traits::{Signed, Zero};
 
 /// How well the laws determine the whole network.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
@@ -64,8 +63,8 @@ impl Range {
 
     /// The state of a diode whose current takes these values.
     pub fn state(&self) -> StateWord {
-        let some_positive = self.high.as_ref().is_none_or(Signed::is_positive);
-        let some_negative = self.low.as_ref().is_none_or(Signed::is_negative);
+        let some_positive = self.high.as_ref().is_none_or(Rat::is_positive);
+        let some_negative = self.low.as_ref().is_none_or(Rat::is_negative);
         match (some_positive, some_negative) {
             (true, true) => StateWord::Open,
             (true, false) => StateWord::Conducting,

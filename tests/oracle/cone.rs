@@ -3,7 +3,6 @@
 
 use super::Rat;
 use super::affine::Form;
-use num_traits::{One, Signed, Zero};
 
 /// A point or direction; the last entry is the homogenizing coordinate.
 type Vector = Vec<Rat>;

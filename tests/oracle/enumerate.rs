@@ -6,13 +6,13 @@ use super::answer::{Answer, Point, Range};
 use super::cone::{self, Shape};
 use super::laws::{Junction, Laws, laws};
 use crate::circuits::Circuit;
-use num_traits::{Signed, Zero};
 use std::collections::HashSet;
 
 /// The solution set of a circuit.
 pub fn solve(circuit: &Circuit) -> Answer {
     let laws = laws(circuit);
-    let mut answer = Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
+    let mut answer =
+        Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
     if laws.impossible {
         return answer;
     }
@@ -77,8 +77,11 @@ impl Search<'_> {
 
     /// All states assumed: what is left of the parameters, and within which bounds.
     fn leaf(&mut self, junctions: &[Junction], assumed: &[Assumed], steps: &[Step]) {
-        let conditions: Vec<Form> =
-            junctions.iter().zip(assumed).flat_map(|(junction, state)| conditions(junction, *state)).collect();
+        let conditions: Vec<Form> = junctions
+            .iter()
+            .zip(assumed)
+            .flat_map(|(junction, state)| conditions(junction, *state))
+            .collect();
         let mut quantities = self.laws.quantities.clone();
         for step in steps {
             quantities.iter_mut().for_each(|form| form.substitute(step));
@@ -87,8 +90,8 @@ impl Search<'_> {
             .filter(|&p| quantities.iter().any(|form| !form.coefficients[p].is_zero()))
             .collect();
         let conditions: Vec<Form> =
-            conditions.iter().map(|form| only(form, &free)).filter(|form| form.first().is_some()).collect();
-        let quantities: Vec<Form> = quantities.iter().map(|form| only(form, &free)).collect();
+            conditions.iter().map(|form| form.only(&free)).filter(|form| form.first().is_some()).collect();
+        let quantities: Vec<Form> = quantities.iter().map(|form| form.only(&free)).collect();
         if let Some(shape) = cone::shape(&conditions, free.len()) {
             self.record(&quantities, &shape);
         }
@@ -117,8 +120,9 @@ impl Search<'_> {
 /// What must be ≥ 0 for an assumption to hold.
 fn conditions(junction: &Junction, assumed: Assumed) -> Vec<Form> {
     let negated = |form: &Form| {
-        let mut zero = Form { coefficients: vec![Rat::zero(); form.coefficients.len()], constant: Rat::zero() };
-        zero.add(form, &-Rat::from_integer(1.into()));
+        let mut zero =
+            Form { coefficients: vec![Rat::zero(); form.coefficients.len()], constant: Rat::zero() };
+        zero.add(form, &-&Rat::one());
         zero
     };
     match assumed {
@@ -134,10 +138,16 @@ fn conditions(junction: &Junction, assumed: Assumed) -> Vec<Form> {
 
 /// Whether an assumption already fails whatever the rest does.
 fn refuted(junctions: &[Junction], assumed: &[Assumed]) -> bool {
-    let decided = junctions.iter().zip(assumed);
-    decided
-        .flat_map(|(junction, state)| conditions(junction, *state))
-        .any(|form| form.first().is_none() && form.constant.is_negative())
+    let fails = |(junction, state): (&Junction, &Assumed)| match state {
+        Assumed::Conducting => junction.current.sign() < 0,
+        Assumed::Breakdown => junction.current.sign() > 0,
+        Assumed::Blocking => {
+            junction.inner.first().is_none()
+                && (junction.inner.constant > junction.forward
+                    || junction.reverse.as_ref().is_some_and(|reverse| junction.inner.constant < -reverse))
+        }
+    };
+    junctions.iter().zip(assumed).any(fails)
 }
 
 /// Whether all diodes of some directed loop of diodes without drop and series resistance conduct.
@@ -156,12 +166,6 @@ fn circulates(junctions: &[Junction], assumed: &[Assumed]) -> bool {
             return before > 0;
         }
     }
-}
-
-/// A form written in the free parameters alone.
-fn only(form: &Form, free: &[usize]) -> Form {
-    let coefficients = free.iter().map(|&p| form.coefficients[p].clone()).collect();
-    Form { coefficients, constant: form.constant.clone() }
 }
 
 fn slope(form: &Form, direction: &[Rat]) -> Rat {

@@ -3,7 +3,6 @@
 use super::affine::{Equation, Form, Step, equate};
 use super::{Rat, exact};
 use crate::circuits::{Circuit, Kind};
-use num_traits::{One, Zero};
 
 /// A circuit whose diodes may still be in any state.
 pub struct Laws {
@@ -58,10 +57,24 @@ pub fn laws(circuit: &Circuit) -> Laws {
             }
         }
     }
+    laws.compact();
     laws
 }
 
 impl Laws {
+    /// Keeps only the parameters that something still depends on.
+    fn compact(&mut self) {
+        let live: Vec<usize> = (0..self.parameters)
+            .filter(|&p| self.quantities.iter().any(|form| !form.coefficients[p].is_zero()))
+            .collect();
+        self.quantities.iter_mut().for_each(|form| *form = form.only(&live));
+        for junction in &mut self.junctions {
+            junction.inner = junction.inner.only(&live);
+            junction.current = junction.current.only(&live);
+        }
+        self.parameters = live.len();
+    }
+
     fn apply(&mut self, step: &Step) {
         self.quantities.iter_mut().for_each(|form| form.substitute(step));
         for junction in &mut self.junctions {
@@ -105,7 +118,7 @@ impl Unknowns {
 
     fn between(&self, from: usize, to: usize) -> Form {
         let mut form = self.potential(from);
-        form.add(&self.potential(to), &-Rat::one());
+        form.add(&self.potential(to), &-&Rat::one());
         form
     }
 
@@ -145,7 +158,7 @@ impl Unknowns {
             let element = &circuit.elements[at];
             let current = self.current(circuit, at);
             let mut inner = self.between(element.from, element.to);
-            inner.add(&current, &-exact(diode.series));
+            inner.add(&current, &-&exact(diode.series));
             Junction {
                 element: at,
                 ends: (element.from, element.to),
@@ -165,7 +178,7 @@ impl Unknowns {
         for (at, element) in circuit.elements.iter().enumerate() {
             let current = self.current(circuit, at);
             sums[element.from].add(&current, &Rat::one());
-            sums[element.to].add(&current, &-Rat::one());
+            sums[element.to].add(&current, &-&Rat::one());
         }
         sums.split_off(1)
     }
@@ -176,8 +189,8 @@ impl Unknowns {
             let mut law = self.between(element.from, element.to);
             match &element.kind {
                 Kind::V(volts) => law.constant -= exact(*volts),
-                Kind::E { gain, control } => law.add(&self.between(control.0, control.1), &-exact(*gain)),
-                Kind::H { gain, control } => law.add(&self.current_of(circuit, control), &-exact(*gain)),
+                Kind::E { gain, control } => law.add(&self.between(control.0, control.1), &-&exact(*gain)),
+                Kind::H { gain, control } => law.add(&self.current_of(circuit, control), &-&exact(*gain)),
                 Kind::L => {}
                 Kind::R(ohms) if ohms.is_zero() => {}
                 _ => continue,

@@ -22,24 +22,19 @@ mod enumerate;
 mod laws;
 mod parts;
 
+mod rational;
+
 pub use answer::{Answer, Range, StateWord, Verdict};
 pub use enumerate::solve;
 pub use parts::{Division, acceptable_verdicts, divide};
-
-use num_rational::BigRational;
-use num_traits::{ToPrimitive, Zero};
-
-/// An exact number.
-pub type Rat = BigRational;
+pub use rational::Rat;
 
 /// The exact value of a decimal.
 pub fn exact(value: crate::circuits::decimal::Dec) -> Rat {
-    let power = num_traits::pow(Rat::from_integer(10.into()), value.exponent.unsigned_abs() as usize);
-    let digits = Rat::from_integer(value.digits.into());
-    if value.exponent < 0 { digits / power } else { digits * power }
+    &Rat::whole(value.digits.into()) * &Rat::power_of_ten(value.exponent)
 }
 
-/// The nearest double, near enough for comparisons to 1e-12.
+/// The nearest double, near enough for comparisons to 1e-15.
 pub fn float(value: &Rat) -> f64 {
-    if value.is_zero() { 0.0 } else { value.to_f64().unwrap_or(f64::NAN) }
+    value.float()
 }

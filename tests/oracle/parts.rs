@@ -65,7 +65,8 @@ fn held(circuit: &Circuit, division: Division) -> (Vec<bool>, Vec<usize>) {
         Kind::R(ohms) => division == Division::Shorts && ohms.is_zero(),
         _ => false,
     };
-    let sources: Vec<usize> = (0..circuit.elements.len()).filter(|&at| holds(&circuit.elements[at].kind)).collect();
+    let sources: Vec<usize> =
+        (0..circuit.elements.len()).filter(|&at| holds(&circuit.elements[at].kind)).collect();
     if division == Division::Direct {
         let to_ground = |at: &usize| circuit.elements[*at].from == 0 || circuit.elements[*at].to == 0;
         let holders: Vec<usize> = sources.into_iter().filter(to_ground).collect();

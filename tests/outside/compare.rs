@@ -1,7 +1,9 @@
 //! One answer of kneewise against the exact solution set of the same network.
 
 use crate::circuits::{Circuit, Kind};
-use crate::oracle::{Answer, Division, Range, Rat, StateWord, Verdict, acceptable_verdicts, divide, float, solve};
+use crate::oracle::{
+    Answer, Division, Range, Rat, StateWord, Verdict, acceptable_verdicts, divide, float, solve,
+};
 use crate::run::{Named, nominal};
 use kneewise::analysis::Analysis;
 use kneewise::circuit::State;
@@ -23,7 +25,12 @@ pub const CLOSE: Tolerance = Tolerance { relative: 1e-9, of_largest: 1e-12 };
 pub const WIDE: Tolerance = Tolerance { relative: 1e-6, of_largest: 1e-12 };
 
 /// What differs, one line each; empty where everything agrees.
-pub fn differences(circuit: &Circuit, answer: &Answer, analysis: &Analysis, tolerance: Tolerance) -> Vec<String> {
+pub fn differences(
+    circuit: &Circuit,
+    answer: &Answer,
+    analysis: &Analysis,
+    tolerance: Tolerance,
+) -> Vec<String> {
     let case = match nominal(analysis) {
         Ok(case) => case,
         Err(problem) => return vec![problem],
@@ -126,7 +133,9 @@ impl Differences<'_> {
         for &node in nodes {
             let name = self.circuit.nodes[node].clone();
             match named.node(&name) {
-                Ok(result) => self.quantity("v", &name, result.voltage, answer.potential(node), self.scale.volts),
+                Ok(result) => {
+                    self.quantity("v", &name, result.voltage, answer.potential(node), self.scale.volts)
+                }
                 Err(problem) => self.list.push(problem),
             }
         }
@@ -231,7 +240,8 @@ impl Differences<'_> {
                 continue;
             }
             let Some(solution) = case.solutions.first() else {
-                self.list.push(format!("no solution is listed although {} is sound", self.title(&part.elements)));
+                self.list
+                    .push(format!("no solution is listed although {} is sound", self.title(&part.elements)));
                 continue;
             };
             let mut found = Differences {
@@ -241,7 +251,9 @@ impl Differences<'_> {
                 list: Vec::new(),
             };
             let inside: Vec<usize> = (0..alone.elements.len())
-                .filter(|&at| part.elements.iter().any(|&e| self.circuit.elements[e].name == alone.elements[at].name))
+                .filter(|&at| {
+                    part.elements.iter().any(|&e| self.circuit.elements[e].name == alone.elements[at].name)
+                })
                 .collect();
             found.part(&Named::new(analysis, solution), &answer, &part.nodes, &inside);
             self.list.extend(found.list);
@@ -274,7 +286,8 @@ fn show(quantity: Quantity) -> String {
 }
 
 fn shown(range: &Range) -> String {
-    let end = |value: &Option<Rat>| value.as_ref().map_or("unbounded".to_owned(), |v| format!("{:e}", float(v)));
+    let end =
+        |value: &Option<Rat>| value.as_ref().map_or("unbounded".to_owned(), |v| format!("{:e}", float(v)));
     match range.single() {
         Some(_) => end(&range.low),
         None => format!("[{}, {}]", end(&range.low), end(&range.high)),
