@@ -31,7 +31,7 @@ pub struct Analysis {
 /// # Errors
 /// Only where the root file itself cannot be had; everything else is a finding.
 pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Result<Analysis, LoadProblem> {
-    let circuit::Reading { sources, circuit, mut findings } = circuit::read(loader, root, options)?;
+    let circuit::Reading { sources, circuit, mut findings, .. } = circuit::read(loader, root, options)?;
     let wiring = Wiring::of(&circuit);
     let operating = None;
     let evidence = Evidence { sources: &sources, circuit: &circuit, wiring: &wiring };

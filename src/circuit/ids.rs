@@ -53,11 +53,13 @@ impl ScopeId {
     pub const ROOT: ScopeId = ScopeId(0);
 }
 
-/// Spellings, each kept once, case kept as written. Equality of names that ignores case is the caller's.
+/// Spellings, each kept once, case kept as written; spellings that differ only in the case of ASCII letters
+/// know the first of them. All of them share one hash, so that a look-up hashes once and folds nothing.
 #[derive(Debug, Clone, Default)]
 pub struct Names {
     bytes: String,
     ends: Vec<u32>,
+    folded: Vec<u32>,
     table: HashTable<u32>,
 }
 
@@ -68,18 +70,41 @@ impl PartialEq for Names {
 }
 
 impl Names {
+    /// Makes room for so many spellings.
+    pub fn reserve(&mut self, count: usize) {
+        let Names { bytes, ends, folded, table } = self;
+        bytes.reserve(count.saturating_mul(6));
+        ends.reserve(count);
+        folded.reserve(count);
+        table.reserve(count, |&id| hash(slice(bytes, ends, id)));
+    }
+
     /// The number of a spelling, new or known.
     pub fn intern(&mut self, text: &str) -> Symbol {
         let hash = hash(text);
-        let Names { bytes, ends, table } = self;
+        let Names { bytes, ends, folded, table } = self;
         if let Some(&known) = table.find(hash, |&id| slice(bytes, ends, id) == text) {
             return Symbol(known);
         }
+        let first = table.find(hash, |&id| slice(bytes, ends, id).eq_ignore_ascii_case(text)).copied();
         let id = Symbol::new(ends.len()).0;
         bytes.push_str(text);
         ends.push(u32::try_from(bytes.len()).unwrap_or(u32::MAX));
+        folded.push(first.map_or(id, |first| folded.get(first as usize).copied().unwrap_or(first)));
         table.insert_unique(hash, id, |&id| self::hash(slice(bytes, ends, id)));
         Symbol(id)
+    }
+
+    /// The number of a name already known in any case, as [`Names::fold`] gives it.
+    pub fn find(&self, text: &str) -> Option<Symbol> {
+        let Names { bytes, ends, table, .. } = self;
+        let found = table.find(hash(text), |&id| slice(bytes, ends, id).eq_ignore_ascii_case(text))?;
+        Some(self.fold(Symbol(*found)))
+    }
+
+    /// The first spelling of the same name in any case: two names are equal where these are.
+    pub fn fold(&self, symbol: Symbol) -> Symbol {
+        self.folded.get(symbol.index()).map_or(symbol, |&first| Symbol(first))
     }
 
     /// The spelling; empty for a number that is not ours.
@@ -95,9 +120,20 @@ fn slice<'a>(bytes: &'a str, ends: &[u32], id: u32) -> &'a str {
     bytes.get(start..end).unwrap_or("")
 }
 
+/// A hash that is blind to the case of ASCII letters (and, harmlessly, to bit 5 of all other characters).
 fn hash(text: &str) -> u64 {
+    const FOLD: u64 = 0x2020_2020_2020_2020;
     let mut hasher = FxHasher::default();
-    hasher.write(text.as_bytes());
+    let (eights, rest) = text.as_bytes().as_chunks::<8>();
+    for &eight in eights {
+        hasher.write_u64(u64::from_le_bytes(eight) | FOLD);
+    }
+    let mut last = [0; 8];
+    for (to, from) in last.iter_mut().zip(rest) {
+        *to = *from;
+    }
+    hasher.write_u64(u64::from_le_bytes(last) | FOLD);
+    hasher.write_usize(text.len());
     hasher.finish()
 }
 
@@ -114,5 +150,7 @@ mod tests {
         assert_eq!(names.text(ids[1]), "OUT");
         assert_eq!(names.text(ids[2]), "");
         assert_eq!(names.text(ids[3]), "in");
+        assert_eq!(names.fold(ids[1]), ids[0]);
+        assert_eq!(names.find("oUt"), Some(ids[0]));
     }
 }

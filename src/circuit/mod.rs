@@ -3,14 +3,29 @@
 
 mod behaviour;
 mod build;
+mod controlled;
+mod element;
+mod expand;
 mod ids;
+mod instance;
+mod line;
 mod note;
+mod notes;
+mod parsed;
+mod read;
+mod semiconductor;
+mod settings;
 mod shape;
+mod source;
+mod told;
+mod value;
 
 pub use behaviour::{Behaviour, Model, ModelKind, Shape, Source, Value};
 pub use build::{Reading, read};
+pub use expand::{Overrides, expand};
 pub use ids::{ElementId, ModelId, NodeId, ScopeId, Symbol};
-pub use note::{Note, NoteKind, State};
+pub use note::{Expectation, Hold, Note, NoteKind, State};
+pub use parsed::Parsed;
 
 use crate::text::Span;
 

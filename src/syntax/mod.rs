@@ -1,1 +1,15 @@
-//! (to be written)
+//! Text to statements. Never fails: what cannot be read is reported and the next line is read. One function
+//! per grammar production, of the same name. Nothing here knows what an element does.
+
+mod blank;
+mod fields;
+mod lines;
+mod note;
+mod number;
+mod tokens;
+
+pub use fields::{Fields, Pair};
+pub use lines::{Line, LineKind, Lines, lines};
+pub use note::{ExpectText, HoldWord, NOTE_WORDS, NoteProblem, NoteText, NoteWord, note};
+pub use number::{Number, number, plain_number};
+pub use tokens::{Broken, Token, TokenKind, tokens};

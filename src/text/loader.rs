@@ -18,6 +18,10 @@ pub trait Loader {
     fn exists(&self, path: &Path) -> bool;
     /// The path with links and `..` resolved, to tell two files apart and to confine includes.
     fn resolve(&self, path: &Path) -> PathBuf;
+    /// The directory outside which files included by `root` are not opened: its repository, else its directory.
+    fn boundary(&self, root: &Path) -> PathBuf {
+        self.resolve(root).parent().map(Path::to_path_buf).unwrap_or_default()
+    }
 }
 
 /// The file system.
@@ -33,6 +37,11 @@ impl Loader for Disk {
     }
     fn resolve(&self, path: &Path) -> PathBuf {
         path.canonicalize().unwrap_or_else(|_| path.to_path_buf())
+    }
+    fn boundary(&self, root: &Path) -> PathBuf {
+        let root = self.resolve(root);
+        let own = root.parent().unwrap_or(Path::new(""));
+        own.ancestors().find(|dir| dir.join(".git").exists()).unwrap_or(own).to_path_buf()
     }
 }
 

@@ -3,8 +3,10 @@
 
 mod decode;
 mod loader;
+mod nearest;
 mod span;
 
 pub use decode::{Encoding, decode};
 pub use loader::{Disk, LoadProblem, Loader, Memory};
+pub use nearest::nearest;
 pub use span::{FileId, Position, SourceFile, Sources, Span};

@@ -1,0 +1,189 @@
+//! Controlled sources, couplings and switches: elements that look at other nodes or other elements.
+
+use super::behaviour::{Behaviour, Value};
+use super::element::{Problem, Read};
+use super::expand::Expander;
+use super::ids::ElementId;
+use super::line::Line;
+use super::value::Quantity;
+use crate::finding::{Finding, Severity};
+use crate::text::Span;
+
+impl Expander<'_> {
+    /// Pins of an E or G line: four in the linear form, else only its two outputs.
+    pub(super) fn output_nodes(&self, line: &Line<'_>) -> usize {
+        let word = line.word_str(3);
+        let other = ["poly", "value", "table", "laplace", "freq", "vol", "cur", "and", "nand", "or", "nor"];
+        if line.fields.words_before_pairs < 5 && !line.fields.pairs.is_empty() {
+            return 2;
+        }
+        match other.iter().find(|w| word.eq_ignore_ascii_case(w)) {
+            Some(&"poly") if line.is(4, "1") => 2,
+            Some(_) => 2,
+            None => 4,
+        }
+    }
+
+    /// `voltage-by-voltage = name node node node node value`, or `POLY(1)` where that is linear
+    pub(super) fn voltage_by_voltage(&mut self, line: &Line<'_>, rest: usize) -> Read {
+        Ok(self.by_voltage(line, rest)?.map_or(NOT_LINEAR, |gain| Behaviour::VoltageByVoltage { gain }))
+    }
+
+    /// `current-by-voltage`: likewise
+    pub(super) fn current_by_voltage(&mut self, line: &Line<'_>, rest: usize) -> Read {
+        Ok(self.by_voltage(line, rest)?.map_or(NOT_LINEAR, |gain| Behaviour::CurrentByVoltage { gain }))
+    }
+
+    fn by_voltage(&mut self, line: &Line<'_>, rest: usize) -> Result<Option<Value>, Problem> {
+        if rest == 5 {
+            return self.gain(line, rest).map(Some);
+        }
+        if !(line.is(3, "poly") && line.is(4, "1")) {
+            return Ok(None);
+        }
+        self.push_pins(line, 5, 7);
+        Ok(self.linear_polynomial(line, 7))
+    }
+
+    /// The gain of a polynomial of one variable that is a straight line through zero.
+    fn linear_polynomial(&mut self, line: &Line<'_>, first: usize) -> Option<Value> {
+        let mut values = Vec::new();
+        for number in first..line.len() {
+            values.push(self.value(line, line.word(number)?, Quantity::Plain)?);
+        }
+        let straight = values.iter().enumerate().all(|(n, v)| n == 1 || v.number == 0.0);
+        match values.as_slice() {
+            [only] => Some(*only),
+            [_, gain, ..] if straight => Some(*gain),
+            _ => None,
+        }
+    }
+
+    /// `voltage-by-current = name node node element value`
+    pub(super) fn voltage_by_current(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        let gain = self.by_current(line, rest, id)?;
+        Ok(gain.map_or(NOT_LINEAR, |gain| Behaviour::VoltageByCurrent { gain, control: None }))
+    }
+
+    /// `current-by-current`: likewise
+    pub(super) fn current_by_current(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        let gain = self.by_current(line, rest, id)?;
+        Ok(gain.map_or(NOT_LINEAR, |gain| Behaviour::CurrentByCurrent { gain, control: None }))
+    }
+
+    fn by_current(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Result<Option<Value>, Problem> {
+        if !line.fields.pairs.is_empty() && line.fields.words_before_pairs <= rest {
+            return Ok(None);
+        }
+        if line.is(rest, "poly") {
+            if !line.is(rest + 1, "1") {
+                return Ok(None);
+            }
+            self.look_up_later(line, id, rest + 2, rest + 3);
+            return Ok(self.linear_polynomial(line, rest + 3));
+        }
+        let gain = self.gain(line, rest + 1)?;
+        self.look_up_later(line, id, rest, rest + 1);
+        Ok(Some(gain))
+    }
+
+    fn gain(&mut self, line: &Line<'_>, word: usize) -> Result<Value, Problem> {
+        let keyed = line.pair("gain").or_else(|| line.word(word));
+        keyed.and_then(|t| self.value(line, t, Quantity::Plain)).ok_or_else(|| Problem {
+            span: line.word(word).map_or(line.span, |t| line.at(t)),
+            message: match line.word_str(word) {
+                "" => format!("{} has no gain", line.word_str(0)),
+                text => format!("the gain of {}, {text}, is no number", line.word_str(0)),
+            },
+            reason: "a value that could not be read",
+            help: "write the gain as a number behind what controls the source".into(),
+        })
+    }
+
+    /// `coupling = name element 1*element value`
+    pub(super) fn coupling(&mut self, line: &Line<'_>, id: ElementId) -> Read {
+        let last = line.len().saturating_sub(1);
+        let coefficient =
+            line.word(last).filter(|_| last >= 2).and_then(|t| self.value(line, t, Quantity::Plain));
+        let Some(coefficient) = coefficient.filter(|_| last >= 3) else {
+            return Err(Problem {
+                span: line.span,
+                message: format!("{} needs two or more inductors and then one coefficient", line.word_str(0)),
+                reason: "a coupling that could not be read",
+                help: "write it as K1 L1 L2 0.99".into(),
+            });
+        };
+        self.look_up_later(line, id, 1, last);
+        Ok(Behaviour::Coupling { coils: Box::default(), coefficient: coefficient.number })
+    }
+
+    /// `voltage-switch = name node node node node model [state]`
+    pub(super) fn voltage_switch(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        Ok(Behaviour::VoltageSwitch { model: self.model_of(line, rest, id) })
+    }
+
+    /// `current-switch = name node node element model [state]`
+    pub(super) fn current_switch(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        self.look_up_later(line, id, rest, rest + 1);
+        let model = self.model_of(line, rest + 1, id);
+        Ok(Behaviour::CurrentSwitch { model, control: None })
+    }
+
+    fn look_up_later(&mut self, line: &Line<'_>, id: ElementId, first: usize, end: usize) {
+        let spans = (first..end).filter_map(|n| line.word(n)).map(|t| line.at(t)).collect();
+        self.frame().late.push((id, spans));
+    }
+
+    /// Resolves the names of other elements, now that all of the instance are known.
+    pub(super) fn late(&mut self) {
+        for (id, spans) in std::mem::take(&mut self.frame().late) {
+            let found: Vec<ElementId> =
+                spans.iter().filter_map(|&span| self.other_element(id, span)).collect();
+            let complete = found.len() == spans.len();
+            self.attach(id, found, complete);
+        }
+    }
+
+    fn attach(&mut self, id: ElementId, found: Vec<ElementId>, complete: bool) {
+        let Some(element) = self.circuit.elements.get_mut(id.index()) else { return };
+        match &mut element.behaviour {
+            Behaviour::Coupling { coils, .. } if complete => *coils = found.into_boxed_slice(),
+            Behaviour::VoltageByCurrent { control, .. }
+            | Behaviour::CurrentByCurrent { control, .. }
+            | Behaviour::CurrentSwitch { control, .. } => *control = found.first().copied(),
+            _ => {}
+        }
+        if !complete {
+            element.behaviour = Behaviour::Unknown { reason: "it names an element that is not there" };
+            self.circuit.incomplete = true;
+        }
+    }
+
+    fn other_element(&mut self, id: ElementId, span: Span) -> Option<ElementId> {
+        let name = self.sources().slice(span);
+        let coupling = self.circuit.element(id).letter == b'K';
+        let found = self.find_element(name);
+        let fits = found.is_some_and(|f| {
+            let letter = self.circuit.element(f).letter;
+            if coupling { letter == b'L' } else { matches!(letter, b'V' | b'E' | b'H' | b'L') }
+        });
+        if fits {
+            return found;
+        }
+        let user = self.circuit.text(self.circuit.element(id).name).to_owned();
+        let wanted = if coupling { "inductor" } else { "voltage source whose current it could follow" };
+        let message = match found {
+            Some(_) => format!("{user} names {name}, which is no {wanted}"),
+            None => format!("{user} names {name}, and there is no such element here"),
+        };
+        self.tell(
+            Finding::new("missing-element", Severity::Error, span, message)
+                .label(format!("no {wanted}"))
+                .about(user)
+                .help("correct the name; until then the element counts as unknown on its nodes"),
+        );
+        None
+    }
+}
+
+const NOT_LINEAR: Behaviour = Behaviour::Unknown { reason: "a controlled source that is not linear" };

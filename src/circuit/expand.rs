@@ -1,0 +1,261 @@
+//! Blocks to the flat circuit: every instance expanded in place, every line's element made.
+
+use super::ids::{ElementId, NodeId, ScopeId, Symbol};
+use super::line::Line;
+use super::parsed::{Parsed, Statement};
+use super::told::Told;
+use super::{Behaviour, Circuit, Element, Node, Pin, Scope};
+use crate::finding::{Finding, Severity};
+use crate::syntax::{Fields, Token};
+use crate::text::{Sources, Span};
+use rustc_hash::{FxHashMap, FxHashSet};
+
+/// Values that take the place of those in the text for one expansion.
+#[derive(Debug, Clone, Default, PartialEq)]
+pub struct Overrides {
+    /// Root parameters by name.
+    pub parameters: Vec<(String, f64)>,
+    /// Degrees Celsius.
+    pub temperature: Option<f64>,
+}
+
+/// An instance while its lines are read.
+#[derive(Debug, Default)]
+pub(super) struct Frame {
+    pub scope: ScopeId,
+    pub block: usize,
+    /// Nodes by folded name (instances only; the root has a table).
+    pub nodes: FxHashMap<Symbol, NodeId>,
+    /// Elements by folded name (instances only).
+    pub elements: FxHashMap<Symbol, ElementId>,
+    /// Elements that name other elements, resolved when all of the instance are known.
+    pub late: Vec<(ElementId, Vec<Span>)>,
+}
+
+/// The work in progress.
+pub(crate) struct Expander<'a> {
+    pub(super) sources: &'a Sources,
+    pub(super) parsed: &'a Parsed,
+    pub(super) overrides: &'a Overrides,
+    pub(super) circuit: Circuit,
+    pub(super) told: Told,
+    pub(super) frames: Vec<Frame>,
+    /// Root nodes and elements by folded name.
+    root_nodes: Vec<NodeId>,
+    root_elements: Vec<ElementId>,
+    pub(super) globals: FxHashSet<Symbol>,
+    pub(super) model_ids: FxHashMap<(usize, ScopeId), super::ModelId>,
+    pub(super) undefined_models: Vec<(Span, ElementId)>,
+}
+
+const NONE: u32 = u32::MAX;
+
+/// Expands what was read, with other values where `overrides` gives them. Elements, nodes and their numbers are
+/// the same for all overrides; only values differ.
+pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Circuit, Vec<Finding>) {
+    let mut expander = Expander {
+        sources,
+        parsed,
+        overrides,
+        circuit: Circuit { title: parsed.title, incomplete: parsed.incomplete, ..Circuit::default() },
+        told: Told::default(),
+        frames: Vec::new(),
+        root_nodes: Vec::new(),
+        root_elements: Vec::new(),
+        globals: FxHashSet::default(),
+        model_ids: FxHashMap::default(),
+        undefined_models: Vec::new(),
+    };
+    expander.root();
+    let circuit = expander.circuit;
+    (circuit, expander.told.finish())
+}
+
+impl<'a> Expander<'a> {
+    pub(super) fn sources(&self) -> &'a Sources {
+        self.sources
+    }
+
+    pub(super) fn tell(&mut self, finding: Finding) {
+        self.told.tell(finding);
+    }
+
+    fn root(&mut self) {
+        let count = self.parsed.statements.len();
+        let names = &mut self.circuit.names;
+        names.reserve(count + count / 2);
+        let (zero, empty) = (names.intern("0"), names.intern(""));
+        self.circuit.elements.reserve(count);
+        self.circuit.pins.reserve(2 * count);
+        let nowhere = self.parsed.blocks[0].statement;
+        self.circuit.nodes.push(Node { name: zero, scope: ScopeId::ROOT, first: nowhere });
+        self.circuit.scopes.push(Scope {
+            parent: None,
+            name: empty,
+            call: nowhere,
+            subcircuit: empty,
+            definition: nowhere,
+        });
+        self.frames.push(Frame::default());
+        self.settings();
+        self.body(0);
+        self.late();
+        self.frames.pop();
+        self.tell_undefined_models();
+    }
+
+    /// All statements of a block, into the innermost frame.
+    fn body(&mut self, block: usize) {
+        let parsed = self.parsed;
+        let mut fields = Fields::default();
+        for range in &parsed.blocks[block].body {
+            for statement in parsed.statements.get(range.clone()).unwrap_or_default() {
+                fields = self.statement(*statement, fields);
+            }
+        }
+    }
+
+    fn statement(&mut self, statement: Statement, fields: Fields) -> Fields {
+        if statement.is_note {
+            self.note(statement.span);
+            return fields;
+        }
+        let (line, outcome) = Line::read(self.sources, statement.span, fields);
+        if let Err(broken) = outcome {
+            let span = Span { file: line.file(), start: broken.start, end: line.span.end };
+            self.tell(
+                Finding::new(
+                    "unreadable-line",
+                    Severity::Error,
+                    span,
+                    format!("{} cannot be read to its end: {}", line.word_str(0), broken.what),
+                )
+                .label(broken.what)
+                .about(line.word_str(0))
+                .help("close it on this statement; until then the element counts as unknown on its nodes"),
+            );
+        }
+        self.element(&line, outcome.is_err());
+        line.fields
+    }
+
+    pub(super) fn frame(&mut self) -> &mut Frame {
+        if self.frames.is_empty() {
+            self.frames.push(Frame::default());
+        }
+        let last = self.frames.len() - 1;
+        &mut self.frames[last]
+    }
+
+    /// Adds an element whose pins have been pushed from `first_pin` on.
+    pub(super) fn push_element(
+        &mut self,
+        line: &Line<'_>,
+        letter: u8,
+        first_pin: usize,
+        behaviour: Behaviour,
+    ) -> ElementId {
+        let id = ElementId::new(self.circuit.elements.len());
+        let name = self.circuit.names.intern(line.word_str(0));
+        let scope = self.frame().scope;
+        let pin_count = self.circuit.pins.len() - first_pin;
+        self.circuit.elements.push(Element {
+            name,
+            scope,
+            letter,
+            statement: line.span,
+            name_span: line.head(),
+            behaviour,
+            first_pin: u32::try_from(first_pin).unwrap_or(NONE),
+            pin_count: u32::try_from(pin_count).unwrap_or(NONE),
+        });
+        self.register(name, id);
+        id
+    }
+
+    fn register(&mut self, name: Symbol, id: ElementId) {
+        let folded = self.circuit.names.fold(name);
+        let known = if self.frames.len() <= 1 {
+            let slot = slot(&mut self.root_elements, folded, ElementId(NONE));
+            std::mem::replace(slot, if slot.0 == NONE { id } else { *slot })
+        } else {
+            *self.frame().elements.entry(folded).or_insert(id)
+        };
+        if known.0 != NONE && known != id {
+            self.tell_duplicate(known, id);
+        }
+    }
+
+    fn tell_duplicate(&mut self, first: ElementId, second: ElementId) {
+        let (first, second) = (self.circuit.element(first), self.circuit.element(second));
+        let name = self.circuit.text(second.name).to_owned();
+        let finding = Finding::new(
+            "duplicate-name",
+            Severity::Error,
+            second.name_span,
+            format!("{name} is the name of two elements"),
+        )
+        .label("the second of that name")
+        .also(first.name_span, "the first of that name")
+        .about(&name)
+        .help("rename one of them: other tools refuse the file or drop one of the two without a word");
+        self.tell(finding);
+    }
+
+    /// The element of that name in the innermost frame.
+    pub(super) fn find_element(&mut self, name: &str) -> Option<ElementId> {
+        let folded = self.circuit.names.find(name)?;
+        if self.frames.len() <= 1 {
+            self.root_elements.get(folded.index()).copied().filter(|id| id.0 != NONE)
+        } else {
+            self.frame().elements.get(&folded).copied()
+        }
+    }
+
+    /// The node of that name in the innermost frame, new or known.
+    pub(super) fn node(&mut self, name: &str, span: Span) -> NodeId {
+        if name == "0" || name.eq_ignore_ascii_case("gnd") {
+            return NodeId::GROUND;
+        }
+        let symbol = self.circuit.names.intern(name);
+        let folded = self.circuit.names.fold(symbol);
+        let in_root = self.frames.len() <= 1 || self.globals.contains(&folded);
+        let next = NodeId::new(self.circuit.nodes.len());
+        let id = if in_root {
+            let slot = slot(&mut self.root_nodes, folded, NodeId(NONE));
+            if slot.0 == NONE {
+                *slot = next;
+            }
+            *slot
+        } else {
+            *self.frame().nodes.entry(folded).or_insert(next)
+        };
+        if id == next {
+            let scope = if in_root { ScopeId::ROOT } else { self.frame().scope };
+            self.circuit.nodes.push(Node { name: symbol, scope, first: span });
+        }
+        id
+    }
+
+    /// Puts the words from `first` up to but not including `end` down as pins.
+    pub(super) fn push_pins(&mut self, line: &Line<'_>, first: usize, end: usize) {
+        for number in first..end {
+            let Some(token) = line.word(number) else { return };
+            self.push_pin(line, token);
+        }
+    }
+
+    fn push_pin(&mut self, line: &Line<'_>, token: Token) {
+        let span = line.at(token);
+        let node = self.node(line.str(token), span);
+        self.circuit.pins.push(Pin { node, span });
+    }
+}
+
+/// The table's place for a symbol, with the table grown to hold it.
+fn slot<T: Copy>(table: &mut Vec<T>, symbol: Symbol, empty: T) -> &mut T {
+    if table.len() <= symbol.index() {
+        table.resize(symbol.index() + 1, empty);
+    }
+    &mut table[symbol.index()]
+}

@@ -1,0 +1,140 @@
+//! Diodes and transistors, and the models that elements name.
+
+use super::behaviour::{Behaviour, Model, ModelKind, Value};
+use super::element::Read;
+use super::expand::Expander;
+use super::ids::{ElementId, ModelId, ScopeId};
+use super::line::Line;
+use crate::finding::{Finding, Severity};
+use crate::syntax;
+
+impl Expander<'_> {
+    /// `diode = name node node [model] [area] *pair`
+    pub(super) fn diode(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        let model = self.model_of(line, rest, id);
+        let area = line.pair("area").or_else(|| line.word(rest + 1));
+        let area = area.and_then(|t| self.evaluate(line.at(t))).map_or(1.0, |v| v.number);
+        let area = if area > 0.0 { area } else { 1.0 };
+        Ok(Behaviour::Diode { model, area: area * self.multiple(line) })
+    }
+
+    /// `transistor = name 3*4node model [area] *pair`
+    pub(super) fn transistor(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        Ok(Behaviour::Transistor { model: self.model_of(line, rest, id) })
+    }
+
+    /// Nodes of a Q or M line, by where its model stands: behind `few` or `many` nodes.
+    pub(super) fn transistor_nodes(&self, line: &Line<'_>, usual: usize, many: usize) -> usize {
+        let words = line.fields.words_before_pairs;
+        for nodes in [many, 3] {
+            if line.word(nodes + 1).is_some() && self.knows_model(line.word_str(nodes + 1)) {
+                return nodes;
+            }
+        }
+        let behind = line.word_str(5);
+        let is_area = syntax::plain_number(behind.as_bytes()).is_some() || behind.eq_ignore_ascii_case("off");
+        match words {
+            0..=4 if usual == 4 && words < 5 => many,
+            0..=5 => 3,
+            _ if is_area => 3,
+            _ => many,
+        }
+    }
+
+    fn knows_model(&self, name: &str) -> bool {
+        let block = self.frames.last().map_or(0, |f| f.block);
+        self.parsed.find_model(block, &name.to_ascii_lowercase()).is_some()
+    }
+
+    /// The model named by word `word`; told where it is not defined.
+    pub(super) fn model_of(&mut self, line: &Line<'_>, word: usize, id: ElementId) -> Option<ModelId> {
+        let token = line.word(word);
+        let found = token.and_then(|t| self.model_named(line.str(t)));
+        if found.is_none() {
+            let span = token.map_or_else(|| line.head(), |t| line.at(t));
+            self.undefined_models.push((span, id));
+        }
+        found
+    }
+
+    pub(super) fn model_named(&mut self, name: &str) -> Option<ModelId> {
+        let block = self.frame().block;
+        let (_, model) = self.parsed.find_model(block, &name.to_ascii_lowercase())?;
+        let key = (model, ScopeId::ROOT);
+        if let Some(&known) = self.model_ids.get(&key) {
+            return Some(known);
+        }
+        let id = self.make_model(model);
+        self.model_ids.insert(key, id);
+        Some(id)
+    }
+
+    fn make_model(&mut self, number: usize) -> ModelId {
+        let line = &self.parsed.models[number];
+        let name = self.circuit.names.intern(self.sources.slice(line.name_span));
+        let mut parameters = Vec::with_capacity(line.settings.len());
+        for setting in &line.settings {
+            if let Some(value) = self.evaluate(setting.value) {
+                parameters.push((setting.name.clone(), value));
+            }
+        }
+        let id = ModelId::new(self.circuit.models.len());
+        self.circuit.models.push(Model {
+            name,
+            kind: line.kind,
+            parameters,
+            statement: line.statement,
+            name_span: line.name_span,
+        });
+        id
+    }
+
+    /// Value of a resistor, capacitor or inductor that its model gives.
+    pub(super) fn model_value(&mut self, line: &Line<'_>, word: usize, key: &str) -> Option<Value> {
+        let name = line.word(word).map(|t| line.str(t))?;
+        let id = self.model_named(name)?;
+        let model = self.circuit.model(id);
+        matches!(model.kind, ModelKind::Resistor | ModelKind::Capacitor | ModelKind::Inductor)
+            .then(|| model.parameter(key))
+            .flatten()
+    }
+
+    /// One finding for all models that are named and not defined.
+    pub(super) fn tell_undefined_models(&mut self) {
+        let mut spans = std::mem::take(&mut self.undefined_models);
+        if self.parsed.include_missing || spans.is_empty() {
+            return;
+        }
+        let mut seen = Vec::new();
+        spans.retain(|(span, _)| {
+            let name = self.sources.slice(*span).to_ascii_lowercase();
+            let fresh = !seen.contains(&name);
+            if fresh && seen.len() < 1000 {
+                seen.push(name);
+            }
+            fresh
+        });
+        let Some((&(first, id), rest)) = spans.split_first() else { return };
+        let names: Vec<&str> = spans.iter().map(|(s, _)| self.sources.slice(*s)).collect();
+        let without_word = self.circuit.element(id).name_span == first;
+        let message = match (names.as_slice(), without_word) {
+            ([only], true) => format!("{only} names no model, so nothing is known about it"),
+            ([only], false) => format!("the model {only} is not defined"),
+            _ => format!("{} models are named and not defined: {}", names.len(), shortened(&names)),
+        };
+        let mut finding = Finding::new("undefined-model", Severity::Warning, first, message)
+            .label("not defined")
+            .about(names.first().copied().unwrap_or(""))
+            .help("add its .model line or include the file that holds it; until then a diode counts as silicon with the default drop");
+        for &(span, _) in rest.iter().take(7) {
+            finding = finding.also(span, "not defined");
+        }
+        self.tell(finding);
+    }
+}
+
+/// Up to eight names, then how many more.
+pub(super) fn shortened(names: &[&str]) -> String {
+    let shown = names.iter().take(8).copied().collect::<Vec<_>>().join(", ");
+    if names.len() > 8 { format!("{shown} and {} more", names.len() - 8) } else { shown }
+}

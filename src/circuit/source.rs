@@ -1,0 +1,195 @@
+//! Independent sources: DC, AC and the shapes over time, with or without parentheses.
+
+use super::behaviour::{Behaviour, Shape, Source, Value};
+use super::element::{Problem, Read};
+use super::expand::Expander;
+use super::line::Line;
+use super::value::Quantity;
+use crate::text::Span;
+
+impl Expander<'_> {
+    /// `voltage-source = name node node [value] ["DC" value] ["AC" [value [value]]] [shape]`
+    pub(super) fn voltage_source(&mut self, line: &Line<'_>, rest: usize) -> Read {
+        self.source(line, rest, Quantity::Volts).map(|s| Behaviour::VoltageSource(Box::new(s)))
+    }
+
+    /// `current-source`: as a voltage source.
+    pub(super) fn current_source(&mut self, line: &Line<'_>, rest: usize) -> Read {
+        let multiple = self.multiple(line);
+        let mut source = self.source(line, rest, Quantity::Amperes)?;
+        source.dc = source.dc.map(|v| super::element::scaled(v, multiple));
+        Ok(Behaviour::CurrentSource(Box::new(source)))
+    }
+
+    fn source(&mut self, line: &Line<'_>, rest: usize, quantity: Quantity) -> Result<Source, Problem> {
+        let mut source = Source::default();
+        let mut at = rest;
+        if let Some(token) = line.pair("dc") {
+            source.dc = self.value(line, token, quantity);
+        }
+        if let Some(token) = line.pair("ac") {
+            source.ac = self.evaluate(line.at(token)).map(|v| v.number);
+        }
+        while let Some(token) = line.word(at) {
+            let word = line.str(token);
+            if word.eq_ignore_ascii_case("dc") {
+                let value = line.word(at + 1).and_then(|t| self.value(line, t, quantity));
+                source.dc = Some(value.ok_or_else(|| no_number(line, at + 1, "behind DC"))?);
+                at += 2;
+            } else if word.eq_ignore_ascii_case("ac") {
+                let values = self.numbers(line, at + 1, 2);
+                source.ac = Some(values.first().copied().unwrap_or(1.0));
+                at += 1 + values.len();
+            } else if let Some(kind) = shape_word(word) {
+                let limit = if kind == "pwl" { usize::MAX } else { 8 };
+                let values = self.numbers(line, at + 1, limit);
+                source.shape = Some(self.shape(line, at, kind, &values)?);
+                at += 1 + values.len();
+            } else if let Some(range) =
+                line.fields.decimal_comma(line.text, at).filter(|_| source.dc.is_none())
+            {
+                let span = Span { file: line.file(), start: range.0, end: range.1 };
+                source.dc = Some(self.decimal_comma(span)?);
+                at += 2;
+            } else if at == rest || source.dc.is_none() {
+                let value: Option<Value> = self.value(line, token, quantity);
+                source.dc = Some(value.ok_or_else(|| no_number(line, at, "where its value should stand"))?);
+                at += 1;
+            } else {
+                at += 1;
+            }
+        }
+        Ok(source)
+    }
+
+    /// Up to `limit` numbers from word `at` on.
+    fn numbers(&mut self, line: &Line<'_>, at: usize, limit: usize) -> Vec<f64> {
+        let mut out = Vec::new();
+        while out.len() < limit {
+            let Some(token) = line.word(at + out.len()) else { break };
+            if shape_word(line.str(token)).is_some() || is_keyword(line.str(token)) {
+                break;
+            }
+            let Some(value) = self.evaluate(line.at(token)) else { break };
+            out.push(value.number);
+        }
+        out
+    }
+
+    /// `shape = sine / pulse / points / exponential / modulated`, absent parameters by their defaults.
+    fn shape(&mut self, line: &Line<'_>, at: usize, kind: &str, values: &[f64]) -> Result<Shape, Problem> {
+        let get = |n: usize, default: f64| values.get(n).copied().unwrap_or(default);
+        let need = |count: usize| {
+            if values.len() < count { Err(too_few(line, at, count, values.len())) } else { Ok(()) }
+        };
+        let (step, stop) = self.span_of_time();
+        match kind {
+            "sin" => need(2).map(|()| Shape::Sine {
+                offset: get(0, 0.0),
+                amplitude: get(1, 0.0),
+                frequency: if get(2, 0.0) > 0.0 { get(2, 0.0) } else { 1.0 / stop },
+                delay: get(3, 0.0),
+                damping: get(4, 0.0),
+                phase: get(5, 0.0),
+            }),
+            "pulse" => need(2).map(|()| Shape::Pulse {
+                low: get(0, 0.0),
+                high: get(1, 0.0),
+                delay: get(2, 0.0),
+                rise: positive(get(3, step), step),
+                fall: positive(get(4, step), step),
+                width: positive(get(5, stop), stop),
+                period: positive(get(6, stop), stop),
+            }),
+            "exp" => need(2).map(|()| {
+                let delay1 = get(2, 0.0);
+                let tau1 = positive(get(3, step), step);
+                Shape::Exponential {
+                    low: get(0, 0.0),
+                    high: get(1, 0.0),
+                    delay1,
+                    tau1,
+                    delay2: get(4, delay1 + step),
+                    tau2: positive(get(5, step), step),
+                }
+            }),
+            "sffm" => need(2).map(|()| Shape::Modulated {
+                offset: get(0, 0.0),
+                amplitude: get(1, 0.0),
+                carrier: positive(get(2, 1.0 / stop), 1.0 / stop),
+                index: get(3, 0.0),
+                signal: positive(get(4, 1.0 / stop), 1.0 / stop),
+            }),
+            _ => points(line, at, values),
+        }
+    }
+}
+
+/// `points = "PWL" 1*( time value )`
+fn points(line: &Line<'_>, at: usize, values: &[f64]) -> Result<Shape, Problem> {
+    if values.len() < 2 {
+        return Err(too_few(line, at, 2, values.len()));
+    }
+    let (pairs, odd) = values.as_chunks::<2>();
+    let points: Vec<(f64, f64)> = pairs.iter().map(|&[t, v]| (t, v)).collect();
+    let problem = |message: String| Problem {
+        span: line.word(at).map_or(line.span, |t| line.at(t)),
+        message,
+        reason: "a shape that could not be read",
+        help: "give pairs of time and value, times ascending".into(),
+    };
+    if !odd.is_empty() {
+        return Err(problem(format!(
+            "the PWL shape of {} has a time without a value at its end",
+            line.word_str(0)
+        )));
+    }
+    if let Some(pair) = points.windows(2).find(|w| w[1].0 < w[0].0) {
+        let text = format!(
+            "the PWL shape of {} goes back in time, from {:e} s to {:e} s",
+            line.word_str(0),
+            pair[0].0,
+            pair[1].0
+        );
+        return Err(problem(text));
+    }
+    Ok(Shape::Points(points))
+}
+
+fn positive(value: f64, default: f64) -> f64 {
+    if value > 0.0 { value } else { default }
+}
+
+fn shape_word(word: &str) -> Option<&'static str> {
+    ["sin", "pulse", "pwl", "exp", "sffm"].into_iter().find(|s| word.eq_ignore_ascii_case(s))
+}
+
+fn is_keyword(word: &str) -> bool {
+    word.eq_ignore_ascii_case("dc") || word.eq_ignore_ascii_case("ac")
+}
+
+fn no_number(line: &Line<'_>, word: usize, place: &str) -> Problem {
+    let text = line.word_str(word);
+    Problem {
+        span: line.word(word).map_or(line.span, |t| line.at(t)),
+        message: match text {
+            "" => format!("{} has no number {place}", line.word_str(0)),
+            _ => format!("{} has {text} {place}, which is no number", line.word_str(0)),
+        },
+        reason: "a value that could not be read",
+        help: "write a value, DC and a value, or a shape such as SIN(0 5 50)".into(),
+    }
+}
+
+fn too_few(line: &Line<'_>, at: usize, count: usize, given: usize) -> Problem {
+    Problem {
+        span: line.word(at).map_or(line.span, |t| line.at(t)),
+        message: format!(
+            "the {} shape of {} has {given} numbers and needs at least {count}",
+            line.word_str(at),
+            line.word_str(0)
+        ),
+        reason: "a shape that could not be read",
+        help: "complete the shape's parameters".into(),
+    }
+}

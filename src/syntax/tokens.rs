@@ -1,0 +1,187 @@
+//! One logical line to words, expressions, quoted texts and signs.
+
+use super::blank::blank;
+use nom::bytes::complete::take_while1;
+use nom::{IResult, Parser};
+
+/// What a token is.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum TokenKind {
+    /// A name, a number, a word.
+    Word,
+    /// `{…}` or `'…'`, delimiters included.
+    Expression,
+    /// `"…"`, quotes included.
+    Text,
+    /// `=`.
+    Equals,
+    /// `(`.
+    Open,
+    /// `)`.
+    Close,
+}
+
+/// A token as a byte range of its file.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Token {
+    /// First byte.
+    pub start: u32,
+    /// One past the last byte.
+    pub end: u32,
+    /// What it is.
+    pub kind: TokenKind,
+}
+
+/// Where and why a line could not be cut into tokens.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Broken {
+    /// First byte of what could not be read, to the line's end.
+    pub start: u32,
+    /// In a few words.
+    pub what: &'static str,
+}
+
+/// `statement = *( blank token )`: cuts the logical line `from..to` of `text` into `out` (cleared first).
+///
+/// # Errors
+/// [`Broken`] where a brace or quote is never closed; the tokens before it are in `out`.
+pub fn tokens(text: &str, from: u32, to: u32, out: &mut Vec<Token>) -> Result<(), Broken> {
+    out.clear();
+    let bytes = text.as_bytes();
+    let mut rest = bytes.get(from as usize..to as usize).unwrap_or_default();
+    let offset = |rest: &[u8]| to - u32::try_from(rest.len()).unwrap_or(0);
+    loop {
+        if let Ok((next, ())) = separator(rest) {
+            rest = next;
+        }
+        if rest.is_empty() {
+            return Ok(());
+        }
+        let start = offset(rest);
+        match token(rest) {
+            Ok((next, kind)) => {
+                rest = next;
+                out.push(Token { start, end: offset(rest), kind });
+            }
+            Err(_) => return Err(Broken { start, what: unclosed(rest) }),
+        }
+    }
+}
+
+fn unclosed(rest: &[u8]) -> &'static str {
+    match rest.first() {
+        Some(b'{') => "a brace is opened here and never closed",
+        Some(b'}') => "a brace is closed here that was never opened",
+        _ => "a quote is opened here and never closed",
+    }
+}
+
+/// `separator = blank *( "," blank )`: commas between words are blanks.
+fn separator(input: &[u8]) -> IResult<&[u8], (), ()> {
+    let (mut input, ()) = blank(input)?;
+    while let Some(rest) = input.strip_prefix(b",") {
+        (input, ()) = blank(rest)?;
+    }
+    Ok((input, ()))
+}
+
+/// `token = word / expression / quoted / "=" / "(" / ")"`
+fn token(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
+    match input.first() {
+        Some(b'=') => Ok((&input[1..], TokenKind::Equals)),
+        Some(b'(') => Ok((&input[1..], TokenKind::Open)),
+        Some(b')') => Ok((&input[1..], TokenKind::Close)),
+        Some(b'{') => braced(input),
+        Some(b'\'') => quoted(input, b'\'', TokenKind::Expression),
+        Some(b'"') => quoted(input, b'"', TokenKind::Text),
+        _ => word(input),
+    }
+}
+
+/// `word = 1*name-char`
+fn word(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
+    take_while1(is_name_char).map(|_| TokenKind::Word).parse(input)
+}
+
+/// `name-char`: any printable character but white space, `=`, `,`, `;`, parentheses, quotes and braces.
+fn is_name_char(byte: u8) -> bool {
+    const TABLE: [bool; 256] = {
+        let mut table = [true; 256];
+        let mut n = 0;
+        while n < 256 {
+            table[n] =
+                !matches!(n as u8, 0..=b' ' | b'=' | b',' | b';' | b'(' | b')' | b'\'' | b'"' | b'{' | b'}');
+            n += 1;
+        }
+        table
+    };
+    TABLE[byte as usize]
+}
+
+/// `braced = "{" *( any / braced ) "}"`
+fn braced(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
+    let mut depth = 0usize;
+    for (n, byte) in input.iter().enumerate() {
+        match byte {
+            b'{' => depth += 1,
+            b'}' => depth -= 1,
+            _ => {}
+        }
+        if depth == 0 {
+            return Ok((&input[n + 1..], TokenKind::Expression));
+        }
+    }
+    Err(nom::Err::Error(()))
+}
+
+/// `quoted = quote *any quote`
+fn quoted(input: &[u8], quote: u8, kind: TokenKind) -> IResult<&[u8], TokenKind, ()> {
+    match memchr::memchr(quote, &input[1..]) {
+        Some(n) => Ok((&input[n + 2..], kind)),
+        None => Err(nom::Err::Error(())),
+    }
+}
+
+/// Whether two tokens are joined by one comma and nothing else, as in `0,1u`.
+pub(super) fn joined_by_comma(text: &[u8], left: Token, right: Token) -> bool {
+    left.end + 1 == right.start && text.get(left.end as usize) == Some(&b',')
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn cut(text: &str) -> Vec<&str> {
+        let mut out = Vec::new();
+        tokens(text, 0, u32::try_from(text.len()).unwrap(), &mut out).unwrap();
+        out.iter().map(|t| &text[t.start as usize..t.end as usize]).collect()
+    }
+
+    #[test]
+    fn names_keep_their_punctuation() {
+        assert_eq!(
+            cut("R1 +24V a[3] /VOUT y#2 <0> 1k;end"),
+            ["R1", "+24V", "a[3]", "/VOUT", "y#2", "<0>", "1k"]
+        );
+    }
+
+    #[test]
+    fn separators_and_comments() {
+        assert_eq!(cut("E1 (a,b) c\r\n* x\n+ d 2 $ tail"), ["E1", "(", "a", "b", ")", "c", "d", "2"]);
+        assert_eq!(cut("R1 a$b c 1 ; x"), ["R1", "a$b", "c", "1"]);
+    }
+
+    #[test]
+    fn expressions_are_one_token() {
+        assert_eq!(
+            cut("R1 a b {2*{x} + 1} m='y z' \"f g\""),
+            ["R1", "a", "b", "{2*{x} + 1}", "m", "=", "'y z'", "\"f g\""]
+        );
+    }
+
+    #[test]
+    fn an_open_brace_is_reported_where_it_stands() {
+        let text = "R1 a b {1";
+        assert_eq!(tokens(text, 0, 9, &mut Vec::new()).unwrap_err().start, 7);
+    }
+}
