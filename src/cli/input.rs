@@ -44,6 +44,10 @@ impl Loader for Input {
         }
         self.disk.resolve(path)
     }
+
+    fn boundary(&self, root: &Path) -> PathBuf {
+        self.disk.boundary(&self.resolve(root))
+    }
 }
 
 /// Files to read, each once, and what was wrong with the paths.
