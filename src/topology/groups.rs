@@ -58,7 +58,11 @@ pub(super) fn join(circuit: &Circuit, sets: &mut UnionFind<u32>, id: ElementId, 
 }
 
 /// Joins what the links that `wanted` picks join; unknown elements and supplied nodes are joined to ground.
-pub(super) fn by_links(circuit: &Circuit, noted: &Noted, wanted: impl Fn(ElementId, Link) -> bool) -> UnionFind<u32> {
+pub(super) fn by_links(
+    circuit: &Circuit,
+    noted: &Noted,
+    wanted: impl Fn(ElementId, Link) -> bool,
+) -> UnionFind<u32> {
     let mut sets = UnionFind::new(circuit.nodes.len());
     for (id, _) in circuit.elements() {
         for (a, b, link) in links(circuit, id) {

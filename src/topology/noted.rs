@@ -88,9 +88,10 @@ impl Index {
         let (instances, name) = path.rsplit_once(':')?;
         let mut at = scope;
         for step in instances.split(':') {
-            let next = circuit.scopes.iter().position(|s| {
-                s.parent == Some(at) && circuit.text(s.name).eq_ignore_ascii_case(step)
-            })?;
+            let next = circuit
+                .scopes
+                .iter()
+                .position(|s| s.parent == Some(at) && circuit.text(s.name).eq_ignore_ascii_case(step))?;
             at = ScopeId::new(next);
         }
         self.nodes.get(&(at, name.to_lowercase())).copied()

@@ -56,9 +56,6 @@ impl Touching {
 
     /// The pins at a node that pass a current (sensing inputs left out).
     pub fn carrying<'a>(&'a self, circuit: &'a Circuit, node: NodeId) -> impl Iterator<Item = Touch> + 'a {
-        self.at(node)
-            .iter()
-            .copied()
-            .filter(move |t| !links::is_sensing(circuit, t.element, t.pin as usize))
+        self.at(node).iter().copied().filter(move |t| !links::is_sensing(circuit, t.element, t.pin as usize))
     }
 }
