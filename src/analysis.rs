@@ -34,7 +34,7 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     let circuit::Reading { sources, circuit, mut findings, .. } = circuit::read(loader, root, options)?;
     let wiring = Wiring::of(&circuit);
     let operating = None;
-    let evidence = Evidence { sources: &sources, circuit: &circuit, wiring: &wiring };
+    let evidence = Evidence::new(&sources, &circuit, &wiring);
     let (judged, skipped) = rules::run(&evidence, operating.as_ref());
     findings.extend(judged);
     finding::sort(&mut findings);

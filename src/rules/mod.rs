@@ -5,6 +5,7 @@
 mod support;
 
 pub use support::{Check, Evidence, Rule, Skipped, run};
+use support::{LooseEnd, count, list};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 

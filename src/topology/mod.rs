@@ -3,6 +3,7 @@
 //! one is a mistake is for `rules` to say. All in linear time and without recursion.
 
 mod arcs;
+mod cuts;
 mod decimal;
 mod groups;
 mod links;
@@ -11,13 +12,14 @@ mod noted;
 mod similar;
 mod touching;
 
-pub use arcs::OneWay;
+pub use arcs::{Barred, OneWay};
+pub use cuts::{Cut, coupled_coils};
 pub use decimal::{Sum, sum};
 pub use groups::Groups;
 pub use links::{Link, can_break_down, is_opaque, is_sensing, links};
-pub use loops::{Loop, Potentials, Step, dc_value, span_of_values};
+pub use loops::{Loop, Potentials, Step, dc_value, span_of_values, total};
 pub use noted::Noted;
-pub use similar::{Similar, similar};
+pub use similar::{Similar, is_slip, similar};
 pub use touching::{Touch, Touching};
 
 use crate::circuit::Circuit;
@@ -37,6 +39,8 @@ pub struct Wiring {
     /// Nodes joined by paths that pass a direct current. A group other than 0 is held by nothing: only
     /// capacitors, current sources, gates and sensing inputs lead out of it.
     pub held: Groups,
+    /// Groups that no direct current can leave or enter but through current sources.
+    pub cuts: Vec<Cut>,
     /// Closed walks of voltage sources, inductors and 0 Ω.
     pub loops: Vec<Loop>,
     /// Nodes whose differences of potential are fixed by sources alone.
@@ -53,9 +57,10 @@ impl Wiring {
         let islands = groups::islands(circuit, &noted);
         let related = groups::related(circuit, &noted);
         let held = groups::held(circuit, &noted);
+        let cuts = cuts::cuts(circuit, &touching, &held, &islands);
         let potentials = Potentials::of(circuit);
         let loops = loops::loops(circuit, &potentials);
         let one_way = OneWay::of(circuit, &noted, &touching);
-        Wiring { touching, noted, islands, related, held, loops, potentials, one_way }
+        Wiring { touching, noted, islands, related, held, cuts, loops, potentials, one_way }
     }
 }

@@ -1,10 +1,13 @@
 //! What rules look at, and the words and places they share.
 
+use super::loose::{self, LooseEnd};
 use super::rule::Rule;
 use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
 use crate::finding::{Finding, TrailStep};
 use crate::text::{Sources, Span};
 use crate::topology::Wiring;
+use std::cell::OnceCell;
+use std::collections::BTreeSet;
 
 /// What rules judge.
 pub struct Evidence<'a> {
@@ -14,9 +17,31 @@ pub struct Evidence<'a> {
     pub circuit: &'a Circuit,
     /// Its wiring.
     pub wiring: &'a Wiring,
+    loose: OnceCell<Vec<LooseEnd>>,
 }
 
-impl Evidence<'_> {
+impl<'a> Evidence<'a> {
+    /// Of one circuit.
+    pub fn new(sources: &'a Sources, circuit: &'a Circuit, wiring: &'a Wiring) -> Self {
+        Evidence { sources, circuit, wiring, loose: OnceCell::new() }
+    }
+
+    /// Nodes with one connection that are very likely meant to have more; found once.
+    pub(in crate::rules) fn loose_ends(&self) -> &[LooseEnd] {
+        self.loose.get_or_init(|| loose::find(self))
+    }
+
+    /// Nothing in the circuit touches ground.
+    pub(in crate::rules) fn is_groundless(&self) -> bool {
+        self.wiring.touching.at(NodeId::GROUND).is_empty() && self.wiring.noted.supplied.is_empty()
+    }
+
+    /// Full names of elements, each once, in order.
+    pub(in crate::rules) fn names(&self, elements: impl IntoIterator<Item = ElementId>) -> Vec<String> {
+        let elements: BTreeSet<ElementId> = elements.into_iter().collect();
+        elements.into_iter().map(|id| self.name(id)).collect()
+    }
+
     /// A finding of `rule` about an element: marks its statement, names it, and tells the way to its instance.
     pub fn about(&self, rule: &Rule, element: ElementId, message: impl Into<String>) -> Finding {
         let place = self.circuit.element(element);

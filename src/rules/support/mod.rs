@@ -2,9 +2,13 @@
 
 mod evidence;
 mod instances;
+mod loose;
 mod rule;
 mod run;
+mod words;
 
 pub use evidence::Evidence;
+pub use loose::LooseEnd;
 pub use rule::{Check, Rule, Skipped};
 pub use run::run;
+pub use words::{count, list};

@@ -1,0 +1,82 @@
+//! Diodes of one kind in parallel, pointing the same way, without a resistance of their own.
+
+use super::{Check, Evidence, Rule, list};
+use crate::circuit::{Behaviour, ElementId, ModelId, NodeId, NoteKind};
+use crate::finding::{Finding, Severity};
+use rustc_hash::FxHashMap;
+
+pub const RULE: Rule = Rule {
+    name: "parallel-diodes",
+    group: "orientation",
+    severity: Severity::Note,
+    summary: "diodes of one model share a current with nothing that makes them share it evenly",
+    why: "10 mV between two forward voltages parts the currents by nearly 1.5 to 1, 60 mV by ten to one, and \
+          the diode that takes more grows warmer and takes more still.",
+    remedy: "Give each its own series resistance (its drop well above the spread of the forward voltages), or \
+             use one diode of the full rating. If they are a matched pair, say so: `*@ matched D1 D2`.",
+    source: Some(
+        "Ratio exp(dV/(n kT/q)) of the exponential law; a published pair of one type shares 10 A as \
+                  6.7 A and 3.3 A: ST application note AN4381",
+    ),
+    failing: "tide gauge buoy: mooring light\n\
+              VBAT bat 0 12\n\
+              R1 bat lamps 220\n\
+              D1 lamps 0 DWHITE\n\
+              D2 lamps 0 DWHITE\n\
+              .model DWHITE D(IS=1e-26 N=2)\n",
+    passing: "tide gauge buoy: mooring light\n\
+              VBAT bat 0 12\n\
+              R1 bat lamp1 470\n\
+              R2 bat lamp2 470\n\
+              D1 lamp1 0 DWHITE\n\
+              D2 lamp2 0 DWHITE\n\
+              .model DWHITE D(IS=1e-26 N=2)\n",
+    check: Check::Wiring(check),
+};
+
+fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
+    let mut groups: FxHashMap<(NodeId, NodeId, ModelId), Vec<ElementId>> = FxHashMap::default();
+    for (id, element) in evidence.circuit.elements() {
+        if let Behaviour::Diode { model: Some(model), .. } = element.behaviour {
+            let (anode, cathode) = (evidence.circuit.node(id, 0), evidence.circuit.node(id, 1));
+            if anode != cathode {
+                groups.entry((anode, cathode, model)).or_default().push(id);
+            }
+        }
+    }
+    let mut groups: Vec<_> = groups.into_iter().filter(|(_, diodes)| diodes.len() > 1).collect();
+    groups.sort_by_key(|(_, diodes)| diodes[0]);
+    groups.iter().filter(|(_, d)| !is_matched(evidence, d)).map(|(_, d)| judge(evidence, d)).collect()
+}
+
+fn judge(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Finding {
+    let names: Vec<String> = diodes.iter().map(|&id| evidence.name(id)).collect();
+    let (anode, cathode) = (evidence.circuit.node(diodes[0], 0), evidence.circuit.node(diodes[0], 1));
+    let message = format!(
+        "{} lie in parallel from `{}` to `{}` with nothing that makes them share the current evenly",
+        list(&names),
+        evidence.node(anode),
+        evidence.node(cathode)
+    );
+    let mut finding = evidence.about(&RULE, diodes[0], message).label("shares its current with");
+    for (&id, name) in diodes.iter().zip(&names).skip(1).take(8) {
+        finding = finding.also(evidence.statement(id), format!("{name}, of the same model"));
+    }
+    finding.subjects.extend(names.into_iter().skip(1));
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
+}
+
+/// A note says that one of them belongs to a matched set.
+fn is_matched(evidence: &Evidence<'_>, diodes: &[ElementId]) -> bool {
+    let circuit = evidence.circuit;
+    circuit.notes.iter().any(|note| {
+        let NoteKind::Matched(others) = &note.kind else { return false };
+        let mut named = others.iter().chain([&note.subject]).map(|&s| circuit.text(s));
+        named.any(|name| {
+            diodes.iter().any(|&id| {
+                circuit.text(circuit.element(id).name).eq_ignore_ascii_case(name)
+                    || evidence.name(id).eq_ignore_ascii_case(name)
+            })
+        })
+    })
+}

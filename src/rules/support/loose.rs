@@ -1,0 +1,136 @@
+//! Loose ends: nodes with one connection that are very likely meant to have more. Which of them are slips of
+//! the pen in a node's name is found here too, since a slip and its loose end are one cause.
+
+use super::Evidence;
+use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::topology::{Touch, coupled_coils, is_opaque, is_slip, similar};
+use rustc_hash::FxHashSet;
+
+/// A node with one connection.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct LooseEnd {
+    /// The node.
+    pub node: NodeId,
+    /// The only element there, and its first pin there.
+    pub touch: Touch,
+    /// The pin of an instance left open: usual for an unused pin of a part.
+    pub unused_pin: bool,
+    /// The node whose name it probably should bear.
+    pub meant: Option<NodeId>,
+}
+
+/// All loose ends, in the order of the nodes.
+pub fn find(evidence: &Evidence<'_>) -> Vec<LooseEnd> {
+    let circuit = evidence.circuit;
+    let (touching, noted) = (&evidence.wiring.touching, &evidence.wiring.noted);
+    let coupled = coupled_coils(circuit);
+    let mut mentioned: Option<FxHashSet<String>> = None;
+    let mut loose = Vec::new();
+    for n in 1..circuit.nodes.len() {
+        let node = NodeId::new(n);
+        let Some(touch) = touching.only(node) else { continue };
+        if noted.is_supplied(node) || noted.is_watched(node) || may_end_here(evidence, touch, &coupled) {
+            continue;
+        }
+        let mentioned = mentioned.get_or_insert_with(|| mentioned_nodes(evidence));
+        if mentioned.contains(&circuit.text(circuit.nodes[n].name).to_lowercase()) {
+            continue;
+        }
+        let unused_pin = circuit.element(touch.element).scope != circuit.nodes[n].scope;
+        loose.push(LooseEnd { node, touch, unused_pin, meant: None });
+    }
+    find_slips(evidence, &mut loose);
+    loose
+}
+
+/// Elements whose pin may well be left open: unknown ones, outputs of controlled voltage sources, the ends of
+/// an unused winding.
+fn may_end_here(evidence: &Evidence<'_>, touch: Touch, coupled: &FxHashSet<ElementId>) -> bool {
+    let circuit = evidence.circuit;
+    match circuit.element(touch.element).behaviour {
+        Behaviour::VoltageByVoltage { .. } | Behaviour::VoltageByCurrent { .. } => touch.pin < 2,
+        Behaviour::Inductor { .. } if coupled.contains(&touch.element) => {
+            circuit.pins(touch.element).iter().all(|p| evidence.wiring.touching.only(p.node).is_some())
+        }
+        _ => is_opaque(circuit, touch.element),
+    }
+}
+
+/// Folded names of nodes that formulas of unknown elements listen to: `v(a)`, `v(a,b)`.
+fn mentioned_nodes(evidence: &Evidence<'_>) -> FxHashSet<String> {
+    let mut names = FxHashSet::default();
+    let mut seen = FxHashSet::default();
+    for (id, element) in evidence.circuit.elements() {
+        if !is_opaque(evidence.circuit, id) || !seen.insert(element.statement) {
+            continue;
+        }
+        let text = evidence.sources.slice(element.statement).to_lowercase();
+        for part in text.split("v(").skip(1) {
+            let inside = part.split(')').next().unwrap_or("");
+            names.extend(inside.split(',').map(|name| name.trim().to_owned()));
+        }
+    }
+    names
+}
+
+/// Fills in which loose ends bear a name one slip away from another node of the same circuit or subcircuit.
+fn find_slips(evidence: &Evidence<'_>, loose: &mut [LooseEnd]) {
+    let circuit = evidence.circuit;
+    if loose.is_empty() {
+        return;
+    }
+    let folded: Vec<String> =
+        circuit.nodes.iter().map(|node| circuit.text(node.name).to_lowercase()).collect();
+    let place = |n: usize| circuit.nodes[n].scope;
+    let suspects = loose.iter().map(|end| end.node.index());
+    let pairs = similar(
+        suspects.map(|n| (n, place(n), folded[n].as_str())),
+        folded.iter().enumerate().skip(1).map(|(n, name)| (n, place(n), name.as_str())),
+    );
+    let is_loose: FxHashSet<NodeId> = loose.iter().map(|end| end.node).collect();
+    let mut meant_for: FxHashSet<NodeId> = FxHashSet::default();
+    for end in loose.iter_mut() {
+        let node = end.node.index();
+        if is_ground_slip(&folded[node]) && place(node) == circuit.nodes[0].scope {
+            end.meant = Some(NodeId::GROUND);
+            continue;
+        }
+        let from = pairs.partition_point(|p| p.suspect < node);
+        let options: Vec<NodeId> = pairs[from..]
+            .iter()
+            .take_while(|p| p.suspect == node)
+            .map(|p| NodeId::new(p.known))
+            .filter(|&known| {
+                // the same element at both would be shorted, and of a pair only the later one is told
+                let pins = circuit.pins(end.touch.element);
+                !pins.iter().any(|p| p.node == known)
+                    && !(is_loose.contains(&known) && known > end.node)
+                    && !is_series(&folded[node], &folded[known.index()])
+            })
+            .collect();
+        let lonely: Vec<NodeId> = options.iter().copied().filter(|n| is_loose.contains(n)).collect();
+        end.meant = match (lonely.as_slice(), options.as_slice()) {
+            ([one], _) | (_, [one]) => Some(*one),
+            _ => None,
+        };
+        meant_for.extend(end.meant);
+    }
+    // the other half of a pair has the same cause
+    for end in loose.iter_mut() {
+        if meant_for.contains(&end.node) && end.meant.is_none() {
+            end.meant = Some(end.node);
+        }
+    }
+}
+
+/// A slip in `gnd` itself; `o` for `0`.
+fn is_ground_slip(name: &str) -> bool {
+    name == "o" || name == "ground" || name == "grnd" || is_slip(name, "gnd")
+}
+
+/// Names that differ in their last letter only are as often a series (outa, outb) as a slip.
+fn is_series(a: &str, b: &str) -> bool {
+    let mut a = a.chars();
+    let mut b = b.chars();
+    a.next_back() != b.next_back() && a.as_str() == b.as_str()
+}
