@@ -7,7 +7,6 @@ use crate::finding::{Finding, TrailStep};
 use crate::text::{Sources, Span};
 use crate::topology::Wiring;
 use std::cell::OnceCell;
-use std::collections::BTreeSet;
 
 /// What rules judge.
 pub struct Evidence<'a> {
@@ -34,12 +33,6 @@ impl<'a> Evidence<'a> {
     /// Nothing in the circuit touches ground.
     pub(in crate::rules) fn is_groundless(&self) -> bool {
         self.wiring.touching.at(NodeId::GROUND).is_empty() && self.wiring.noted.supplied.is_empty()
-    }
-
-    /// Full names of elements, each once, in order.
-    pub(in crate::rules) fn names(&self, elements: impl IntoIterator<Item = ElementId>) -> Vec<String> {
-        let elements: BTreeSet<ElementId> = elements.into_iter().collect();
-        elements.into_iter().map(|id| self.name(id)).collect()
     }
 
     /// A finding of `rule` about an element: marks its statement, names it, and tells the way to its instance.
