@@ -137,8 +137,8 @@ impl FailOn {
 
 /// A number as netlists write it: `650m`, `4k7`.
 fn value(text: &str) -> Result<f64, String> {
-    let number = text.trim().parse::<f64>().ok().filter(|n| n.is_finite());
-    number.ok_or_else(|| format!("`{text}` is not a number as netlists write it, such as 12, 650m or 4k7"))
+    let number = kneewise::syntax::number(text.trim().as_bytes()).map(|n| n.value);
+    number.filter(|n| n.is_finite()).ok_or_else(|| format!("`{text}` is not a number as netlists write it, such as 12, 650m or 4k7"))
 }
 
 fn drop_volts(text: &str) -> Result<f64, String> {
@@ -168,6 +168,8 @@ mod tests {
     #[test]
     fn settings_name_a_source_and_a_value() {
         assert_eq!(setting("VIN=9"), Ok(("VIN".into(), 9.0)));
+        assert_eq!(setting("RL=4k7"), Ok(("RL".into(), 4700.0)));
+        assert_eq!(setting("v2 = 650mV"), Ok(("v2".into(), 0.65)));
         assert!(setting("VIN").is_err());
         assert!(setting("=9").is_err());
         assert!(setting("VIN=nine").is_err());
