@@ -3,7 +3,7 @@
 use crate::circuit::{self, Circuit};
 use crate::config::Options;
 use crate::finding::{self, Finding};
-use crate::operating::Operating;
+use crate::operating::{self, Operating};
 use crate::rules::{self, Evidence, Skipped};
 use crate::text::{LoadProblem, Loader, Sources};
 use crate::topology::Wiring;
@@ -31,9 +31,14 @@ pub struct Analysis {
 /// # Errors
 /// Only where the root file itself cannot be had; everything else is a finding.
 pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Result<Analysis, LoadProblem> {
-    let circuit::Reading { sources, circuit, mut findings, .. } = circuit::read(loader, root, options)?;
+    let circuit::Reading { sources, parsed, circuit, mut findings } = circuit::read(loader, root, options)?;
     let wiring = Wiring::of(&circuit);
-    let operating = None;
+    let operating = options.states.then(|| {
+        let text = operating::Text { sources: &sources, parsed: &parsed };
+        let (operating, about_notes) = operating::evaluate(&circuit, Some(text), options);
+        findings.extend(about_notes);
+        operating
+    });
     let evidence = Evidence::new(&sources, &circuit, &wiring);
     let (judged, skipped) = rules::run(&evidence, operating.as_ref());
     findings.extend(judged);

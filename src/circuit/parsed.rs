@@ -127,6 +127,11 @@ impl Parsed {
         self.outwards(block).find_map(|at| self.blocks.get(at)?.subcircuits.get(name).copied())
     }
 
+    /// Whether the root circuit declares a parameter of that lower-case name.
+    pub fn has_parameter(&self, name: &str) -> bool {
+        self.blocks.first().is_some_and(|root| root.parameters.iter().any(|s| s.name == name))
+    }
+
     fn outwards(&self, block: usize) -> impl Iterator<Item = usize> + '_ {
         std::iter::successors(Some(block), |&at| {
             let parent = self.blocks.get(at)?.parent;

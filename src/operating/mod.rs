@@ -1,8 +1,26 @@
 //! The DC operating point for each condition: circuit to network, drops, states, the view from each diode, and
 //! the proof by substitution. Solving is `complementarity`'s; judging is `rules`'s.
 
+mod assemble;
+mod case;
+mod condition;
+mod declared;
+mod directory;
+mod drop;
+mod evaluate;
+mod law;
+mod material;
+mod named;
+mod proof;
+mod reach;
 mod result;
+mod switch;
+mod view;
+mod words;
 
+pub use evaluate::{Text, evaluate};
+pub use law::{JunctionLaw, nearest_decade, thermal_voltage};
+pub use material::{MATERIALS, Material};
 pub use result::{
     BranchResult, Case, Contradiction, DiodeResult, Drop, DropOrigin, Flip, NodeResult, Operating, Reasoning,
     Residual, Solution, Why,

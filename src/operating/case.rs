@@ -1,0 +1,332 @@
+//! One condition's answer as plain data: proof first, then diodes, nodes and branches by name.
+
+use super::assemble::{Assembly, NONE, Owner, Setting};
+use super::drop::Diode;
+use super::evaluate::Solved;
+use super::proof::{Claim, Proof, claims_solution, prove};
+use super::result::{BranchResult, Case, Contradiction, DiodeResult, NodeResult, Residual, Solution};
+use super::view::margin;
+use super::words::{causes, list, missed};
+use crate::circuit::{Behaviour, NodeId, State};
+use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
+use crate::config::Options;
+
+/// Largest number of diodes in a part for which every view is computed.
+const MOST_VIEWS: usize = 3000;
+
+/// Builds the case.
+pub(crate) fn case(setting: &Setting<'_>, options: &Options, solved: &Solved) -> Case {
+    let parts = Parts::of(setting, &solved.assembly, &solved.outcome);
+    let (residual, withheld) = check(setting, solved, &parts);
+    let (assembly, outcome) = (&solved.assembly, &solved.outcome);
+    let mut contradictions: Vec<Contradiction> = Vec::new();
+    let mut verdict = outcome.verdict;
+    for (part, miss) in outcome.parts.iter().zip(&withheld.parts) {
+        if let Some(relative) = miss {
+            verdict = Verdict::Unverified;
+            contradictions.push(withheld.contradiction(part, assembly, *relative));
+        } else if part.verdict != Verdict::Unique {
+            contradictions.extend(causes(setting, assembly, part));
+        }
+    }
+    if let Some(relative) = withheld.whole {
+        verdict = Verdict::Unverified;
+        contradictions.push(Contradiction {
+            verdict,
+            text: missed(relative),
+            elements: withheld.elements.clone(),
+        });
+    }
+    let mut maker = Maker { setting, options, solved, parts: &parts, withheld: &withheld };
+    let solutions = if withheld.whole.is_some() {
+        Vec::new()
+    } else {
+        outcome.solutions.iter().map(|s| maker.solution(s)).collect()
+    };
+    let condition = setting.condition;
+    let supplies = setting.plan.supplies.iter().zip(&condition.supplies);
+    Case {
+        name: condition.name.clone(),
+        sources: setting.plan.sources.iter().zip(&condition.sources).map(|(&id, l)| (id, l.value)).collect(),
+        supplies: supplies.map(|(supply, level)| (supply.node, level.value)).collect(),
+        instant: condition.instant,
+        temperature: condition.temperature,
+        verdict,
+        contradictions,
+        truncated: outcome.truncated || outcome.parts.iter().any(|p| p.truncated),
+        solves: outcome.solves,
+        residual,
+        solutions,
+    }
+}
+
+/// Which part each branch and node belongs to, and how many diodes each has.
+struct Parts {
+    of_branch: Vec<u32>,
+    of_node: Vec<u32>,
+    diodes: Vec<usize>,
+    /// Why a part's diodes are not evaluated, where they are not.
+    reasons: Vec<Option<String>>,
+}
+
+impl Parts {
+    fn of(setting: &Setting<'_>, assembly: &Assembly, outcome: &Outcome) -> Self {
+        let mut parts = Parts {
+            of_branch: vec![NONE; assembly.owner.len()],
+            of_node: vec![NONE; setting.circuit.nodes.len().max(1)],
+            diodes: vec![0; outcome.parts.len()],
+            reasons: outcome.parts.iter().map(|p| reason(setting, assembly, p)).collect(),
+        };
+        for (n, part) in outcome.parts.iter().enumerate() {
+            for &branch in &part.branches {
+                if let Some(slot) = parts.of_branch.get_mut(branch as usize) {
+                    *slot = n as u32;
+                }
+            }
+            for &node in &part.nodes {
+                if let Some(slot) = parts.of_node.get_mut(node as usize) {
+                    *slot = n as u32;
+                }
+            }
+        }
+        for diode in setting.diodes {
+            let branch = assembly.branch[diode.element.index()] as usize;
+            if let Some(&part) = parts.of_branch.get(branch)
+                && let Some(count) = parts.diodes.get_mut(part as usize)
+            {
+                *count += 1;
+            }
+        }
+        parts
+    }
+
+    fn branch(&self, number: usize) -> Option<usize> {
+        self.of_branch.get(number).filter(|&&p| p != NONE).map(|&p| p as usize)
+    }
+
+    fn node(&self, node: NodeId) -> Option<usize> {
+        self.of_node.get(node.index()).filter(|&&p| p != NONE).map(|&p| p as usize)
+    }
+}
+
+/// Why nothing of a part could be reached, in a few words; `None` where it could.
+fn reason(setting: &Setting<'_>, assembly: &Assembly, part: &complementarity::Part) -> Option<String> {
+    if claims_solution(part.verdict) {
+        return None;
+    }
+    let texts: Vec<String> = causes(setting, assembly, part).into_iter().map(|c| c.text).collect();
+    Some(match texts.is_empty() {
+        false => texts.join("; "),
+        true => format!("its part has the verdict {}", part.verdict.word()),
+    })
+}
+
+/// What the proof took away.
+struct Withheld {
+    /// For each part the relative miss that rules it out.
+    parts: Vec<Option<f64>>,
+    /// A miss that no part can be blamed for.
+    whole: Option<f64>,
+    /// Elements whose laws are missed.
+    elements: Vec<crate::circuit::ElementId>,
+}
+
+impl Withheld {
+    fn contradiction(
+        &self,
+        part: &complementarity::Part,
+        assembly: &Assembly,
+        relative: f64,
+    ) -> Contradiction {
+        let of_part = |id: &&crate::circuit::ElementId| {
+            part.branches.binary_search(&assembly.branch[id.index()]).is_ok()
+                || part.branches.contains(&assembly.branch[id.index()])
+        };
+        let elements = self.elements.iter().filter(of_part).take(MOST_BLAMED).copied().collect();
+        Contradiction { verdict: Verdict::Unverified, text: missed(relative), elements }
+    }
+}
+
+/// Most elements that one missed law names.
+const MOST_BLAMED: usize = 16;
+
+/// Proves every solution, and says which parts do not stand.
+fn check(setting: &Setting<'_>, solved: &Solved, parts: &Parts) -> (Residual, Withheld) {
+    let mut residual = Residual::default();
+    let mut withheld =
+        Withheld { parts: vec![None; solved.outcome.parts.len()], whole: None, elements: Vec::new() };
+    for solution in &solved.outcome.solutions {
+        let proof = prove_one(setting, solved, solution);
+        residual.current = residual.current.max(proof.residual.current);
+        residual.voltage = residual.voltage.max(proof.residual.voltage);
+        residual.relative = residual.relative.max(proof.residual.relative);
+        for (id, relative) in proof.misses {
+            let branch = solved.assembly.branch[id.index()] as usize;
+            let blamed = match parts.branch(branch) {
+                Some(part) => &mut withheld.parts[part],
+                None => &mut withheld.whole,
+            };
+            // a miss that is not a number is the worst
+            *blamed =
+                Some(blamed.map_or(relative, |worst: f64| if worst >= relative { worst } else { relative }));
+            if withheld.elements.len() < 4 * MOST_BLAMED {
+                withheld.elements.push(id);
+            }
+        }
+        unfinished(solved, solution, &mut withheld);
+    }
+    (residual, withheld)
+}
+
+fn prove_one(setting: &Setting<'_>, solved: &Solved, solution: &complementarity::Solution) -> Proof {
+    let (potentials, currents) = &solution.sample;
+    let owners = solved.assembly.owner.iter().zip(currents);
+    let supplies: Vec<f64> = owners.filter(|(o, _)| matches!(o, Owner::Supply(_))).map(|(_, &i)| i).collect();
+    let claim = Claim {
+        potentials,
+        currents,
+        places: &solution.places,
+        branch: &solved.assembly.branch,
+        supplies: &supplies,
+    };
+    prove(setting, &solved.outcome, &claim)
+}
+
+/// A part that claims to be solved has a number everywhere.
+fn unfinished(solved: &Solved, solution: &complementarity::Solution, withheld: &mut Withheld) {
+    let (potentials, currents) = &solution.sample;
+    for (part, miss) in solved.outcome.parts.iter().zip(&mut withheld.parts) {
+        let finite = |list: &[f64], at: u32| list.get(at as usize).is_some_and(|v| v.is_finite());
+        let whole = part.nodes.iter().all(|&n| finite(potentials, n))
+            && part.branches.iter().all(|&b| finite(currents, b));
+        if claims_solution(part.verdict) && !whole {
+            *miss = Some(f64::INFINITY);
+        }
+    }
+}
+
+struct Maker<'a> {
+    setting: &'a Setting<'a>,
+    options: &'a Options,
+    solved: &'a Solved,
+    parts: &'a Parts,
+    withheld: &'a Withheld,
+}
+
+impl Maker<'_> {
+    fn is_withheld(&self, part: Option<usize>) -> bool {
+        part.is_some_and(|p| self.withheld.parts[p].is_some())
+    }
+
+    fn solution(&mut self, solution: &complementarity::Solution) -> Solution {
+        let circuit = self.setting.circuit;
+        let views = self.views(solution);
+        let diodes =
+            self.setting.diodes.iter().zip(views).map(|(diode, view)| self.diode(solution, diode, view));
+        let nodes = (1..circuit.nodes.len()).map(NodeId::new).map(|node| {
+            let known = solution.potentials.get(node.index()).copied().unwrap_or(Quantity::Unknown);
+            let voltage = if self.is_withheld(self.parts.node(node)) { Quantity::Unknown } else { known };
+            NodeResult { node, voltage }
+        });
+        Solution { diodes: diodes.collect(), nodes: nodes.collect(), branches: self.branches(solution) }
+    }
+
+    fn branches(&self, solution: &complementarity::Solution) -> Vec<BranchResult> {
+        let shown = |b: &Behaviour| {
+            matches!(
+                b,
+                Behaviour::Resistor(_)
+                    | Behaviour::Inductor { .. }
+                    | Behaviour::VoltageSource(_)
+                    | Behaviour::CurrentSource(_)
+                    | Behaviour::VoltageByVoltage { .. }
+                    | Behaviour::CurrentByVoltage { .. }
+                    | Behaviour::VoltageByCurrent { .. }
+                    | Behaviour::CurrentByCurrent { .. }
+            )
+        };
+        let elements = self.setting.circuit.elements().filter(|(_, e)| shown(&e.behaviour));
+        let result = |element: crate::circuit::ElementId| {
+            let branch = self.solved.assembly.branch[element.index()] as usize;
+            let current = solution.currents.get(branch).copied()?;
+            let is_out = current == Quantity::Unknown || self.is_withheld(self.parts.branch(branch));
+            (!is_out).then_some(BranchResult { element, current })
+        };
+        elements.filter_map(|(id, _)| result(id)).collect()
+    }
+
+    /// One view for each diode, where its part is small enough or somebody asks.
+    fn views(&self, solution: &complementarity::Solution) -> Vec<Option<View>> {
+        let asked = self.options.why.as_deref().map(str::to_lowercase);
+        let mut wanted = Vec::new();
+        let mut at = Vec::new();
+        for (n, diode) in self.setting.diodes.iter().enumerate() {
+            let branch = self.solved.assembly.branch[diode.element.index()];
+            let part = self.parts.branch(branch as usize);
+            let is_small = part.is_none_or(|p| self.parts.diodes[p] <= MOST_VIEWS);
+            let is_asked = || {
+                let name = self.setting.circuit.element_name(diode.element).to_lowercase();
+                asked.as_ref().is_some_and(|a| *a == name)
+            };
+            if !self.is_withheld(part) && (is_small || is_asked()) {
+                wanted.push(branch);
+                at.push(n);
+            }
+        }
+        let mut views = vec![None; self.setting.diodes.len()];
+        for (n, view) in at.into_iter().zip(self.solved.assembly.network.views(solution, &wanted)) {
+            views[n] = view;
+        }
+        views
+    }
+
+    fn diode(&self, solution: &complementarity::Solution, diode: &Diode, view: Option<View>) -> DiodeResult {
+        let branch = self.solved.assembly.branch[diode.element.index()] as usize;
+        let part = self.parts.branch(branch);
+        let is_withheld = self.is_withheld(part);
+        let place = match solution.places.get(branch) {
+            Some(&place) if !is_withheld => place,
+            _ => Place::Unknown,
+        };
+        let pick = |list: &[Quantity]| match place {
+            Place::Unknown => Quantity::Unknown,
+            _ => list.get(branch).copied().unwrap_or(Quantity::Unknown),
+        };
+        let (voltage, current) = (pick(&solution.voltages), pick(&solution.currents));
+        let drop = diode.drop(self.setting.circuit, self.setting.condition.temperature);
+        let breakdown = diode.reverse.map(|l| l.value);
+        let power = voltage.known().zip(current.known()).map(|(v, i)| v * i);
+        let view = view.filter(|v| v.open_circuit.is_finite() && v.resistance.is_finite());
+        DiodeResult {
+            element: diode.element,
+            state: state(place),
+            not_evaluated: (place == Place::Unknown).then(|| self.reason(part, is_withheld)),
+            voltage,
+            current,
+            power,
+            margin: view.and_then(|v| margin(v, place, drop.volts, breakdown)),
+            drop,
+            breakdown,
+            series: diode.series,
+            view,
+        }
+    }
+
+    fn reason(&self, part: Option<usize>, is_withheld: bool) -> String {
+        match part.and_then(|p| self.parts.reasons[p].clone()) {
+            _ if is_withheld => "the result of its part does not check".into(),
+            Some(reason) => reason,
+            None => format!("it is in no part that was solved ({})", list(&[])),
+        }
+    }
+}
+
+fn state(place: Place) -> State {
+    match place {
+        Place::Conducting => State::Conducting,
+        Place::Blocking => State::Blocking,
+        Place::Breakdown => State::Breakdown,
+        Place::Open => State::Open,
+        Place::Unknown => State::NotEvaluated,
+    }
+}

@@ -1,0 +1,248 @@
+//! The conditions at which a circuit is examined: nominal, the ends and corners of its ranges, what is held on
+//! and off, and the two extreme instants of each moving source. Which values hold where, nothing solved.
+
+use super::declared::{Declared, Range, Subject};
+use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Source};
+use crate::complementarity::Level;
+
+/// Most corners that are examined.
+pub(crate) const MOST_CORNERS: usize = 64;
+
+/// A node that a `supply` note holds against ground.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct Supply {
+    /// The node.
+    pub node: NodeId,
+    /// Volts in nominal.
+    pub volts: Level,
+}
+
+/// What each thing is worth in one condition.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct Condition {
+    /// `nominal`, `VIN=9`, `V1=max`.
+    pub name: String,
+    /// Value of each independent source, in the order of [`Plan::sources`].
+    pub sources: Vec<Level>,
+    /// Places in the list of the sources that this condition (or `--set`) fixes, whatever the text says.
+    pub fixed: Vec<usize>,
+    /// Value of each supply, in the order of [`Plan::supplies`].
+    pub supplies: Vec<Level>,
+    /// Resistors that differ from the text, sorted by element.
+    pub resistors: Vec<(ElementId, f64)>,
+    /// Parameters that differ from the text.
+    pub parameters: Vec<(String, f64)>,
+    /// Degrees Celsius.
+    pub temperature: f64,
+    /// Transistors and switches held on (true) or off, sorted by element.
+    pub held: Vec<(ElementId, bool)>,
+    /// An extreme instant of a moving source.
+    pub instant: bool,
+}
+
+/// All conditions.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct Plan {
+    /// Independent sources in the order of the text.
+    pub sources: Vec<ElementId>,
+    /// Nodes that notes hold.
+    pub supplies: Vec<Supply>,
+    /// Sources that move over time (and are not set to a constant), in order.
+    pub moving: Vec<ElementId>,
+    /// Nominal first.
+    pub conditions: Vec<Condition>,
+}
+
+/// A number as people write it is exact; one that arithmetic made shows more digits.
+pub(crate) fn level(value: f64) -> Level {
+    let digits =
+        format!("{value:e}").split('e').next().map_or(0, |m| m.chars().filter(char::is_ascii_digit).count());
+    Level { value, exact: digits <= 12 }
+}
+
+/// The independent source of an element, where it is one.
+pub(crate) fn source(circuit: &Circuit, id: ElementId) -> Option<&Source> {
+    match &circuit.element(id).behaviour {
+        Behaviour::VoltageSource(source) | Behaviour::CurrentSource(source) => Some(source),
+        _ => None,
+    }
+}
+
+/// DC value, or where there is none the value at time zero, or 0.
+fn standing(source: &Source) -> Level {
+    match (source.dc, &source.shape) {
+        (Some(dc), _) => Level { value: dc.number, exact: dc.written },
+        (None, Some(shape)) => level(shape.value(0.0)),
+        (None, None) => Level { value: 0.0, exact: true },
+    }
+}
+
+/// Lays out the conditions in their order.
+pub(crate) fn plan(circuit: &Circuit, declared: &Declared) -> Plan {
+    let sources: Vec<ElementId> =
+        circuit.elements().map(|(id, _)| id).filter(|&id| source(circuit, id).is_some()).collect();
+    let fixed = |id: ElementId| declared.set.iter().find(|(set, _)| *set == id).map(|(_, v)| level(*v));
+    let is_moving = |id: ElementId| {
+        fixed(id).is_none() && source(circuit, id).and_then(|s| s.shape.as_ref()).is_some_and(moves)
+    };
+    let moving: Vec<ElementId> = sources.iter().copied().filter(|&id| is_moving(id)).collect();
+    let value = |&id: &ElementId| {
+        fixed(id).or_else(|| source(circuit, id).map(standing)).unwrap_or(Level { value: 0.0, exact: true })
+    };
+    let nominal = Condition {
+        name: "nominal".into(),
+        sources: sources.iter().map(value).collect(),
+        fixed: (0..sources.len()).filter(|&n| fixed(sources[n]).is_some()).collect(),
+        supplies: declared.supplies.iter().map(|s| s.volts).collect(),
+        resistors: Vec::new(),
+        parameters: Vec::new(),
+        temperature: declared.temperature,
+        held: declared.held.clone(),
+        instant: false,
+    };
+    let mut plan = Plan { sources, supplies: declared.supplies.clone(), moving, conditions: vec![nominal] };
+    plan.add_ranges(circuit, declared);
+    plan.add_instants(circuit);
+    plan
+}
+
+impl Condition {
+    /// The same condition of a circuit that was expanded with other parameters: what is not fixed here takes its
+    /// value from there.
+    pub fn of_variant(&self, circuit: &Circuit, sources: &[ElementId]) -> Condition {
+        let mut condition = self.clone();
+        if self.instant {
+            return condition;
+        }
+        for (at, (value, &id)) in condition.sources.iter_mut().zip(sources).enumerate() {
+            if let Some(source) = source(circuit, id).filter(|_| !self.fixed.contains(&at)) {
+                *value = standing(source);
+            }
+        }
+        condition
+    }
+}
+
+/// Whether a shape is worth more than one value.
+fn moves(shape: &crate::circuit::Shape) -> bool {
+    let (most, least) = shape.extremes(None);
+    shape.value(most) != shape.value(least)
+}
+
+impl Plan {
+    /// Each end alone, each held thing on and off, then all corners, and all corners with each thing on.
+    fn add_ranges(&mut self, circuit: &Circuit, declared: &Declared) {
+        let ends: Vec<[Change<'_>; 2]> =
+            declared.ranges.iter().map(|r| [Change::End(r, r.from), Change::End(r, r.to)]).collect();
+        let on: Vec<Change<'_>> = declared.both.iter().map(|&id| Change::Hold(id, true)).collect();
+        for change in ends.iter().flatten() {
+            self.add(circuit, &[*change]);
+        }
+        for &id in &declared.both {
+            self.add(circuit, &[Change::Hold(id, true)]);
+            self.add(circuit, &[Change::Hold(id, false)]);
+        }
+        let corners = corners(&ends);
+        if declared.ranges.len() > 1 {
+            for corner in &corners {
+                self.add(circuit, corner);
+            }
+        }
+        if !ends.is_empty() && corners.len() * on.len() <= MOST_CORNERS {
+            for (corner, held) in corners.iter().flat_map(|c| on.iter().map(move |h| (c, *h))) {
+                self.add(circuit, &[corner.as_slice(), &[held]].concat());
+            }
+        }
+    }
+
+    /// `V1=max` and `V1=min`: every other source stands at its value then, ranges at nominal.
+    fn add_instants(&mut self, circuit: &Circuit) {
+        let stop = circuit.transient.map(|t| t.stop);
+        for id in self.moving.clone() {
+            let Some(shape) = source(circuit, id).and_then(|s| s.shape.as_ref()) else { continue };
+            let (most, least) = shape.extremes(stop);
+            for (word, t) in [("max", most), ("min", least)] {
+                let mut condition = self.conditions[0].clone();
+                condition.name = format!("{}={word}", circuit.element_name(id));
+                condition.instant = true;
+                for (value, &other) in condition.sources.iter_mut().zip(&self.sources) {
+                    let shape = source(circuit, other).and_then(|s| s.shape.as_ref());
+                    if let Some(shape) = shape.filter(|_| self.moving.binary_search(&other).is_ok()) {
+                        *value = level(shape.value(t));
+                    }
+                }
+                self.conditions.push(condition);
+            }
+        }
+    }
+
+    fn add(&mut self, circuit: &Circuit, changes: &[Change<'_>]) {
+        let mut condition = self.conditions[0].clone();
+        let names: Vec<String> = changes.iter().map(|c| c.name(circuit)).collect();
+        condition.name = names.join(",");
+        for change in changes {
+            change.apply(self, &mut condition);
+        }
+        self.conditions.push(condition);
+    }
+}
+
+/// One thing that a condition changes against nominal.
+#[derive(Clone, Copy)]
+enum Change<'a> {
+    End(&'a Range, f64),
+    Hold(ElementId, bool),
+}
+
+impl Change<'_> {
+    fn name(&self, circuit: &Circuit) -> String {
+        match self {
+            Change::End(range, value) => format!("{}={value}", range.name),
+            Change::Hold(id, on) => {
+                format!("{}={}", circuit.element_name(*id), if *on { "on" } else { "off" })
+            }
+        }
+    }
+
+    fn apply(&self, plan: &Plan, condition: &mut Condition) {
+        match self {
+            Change::End(range, value) => match &range.subject {
+                Subject::Source(id) => {
+                    if let Ok(at) = plan.sources.binary_search(id) {
+                        condition.sources[at] = level(*value);
+                        condition.fixed.push(at);
+                    }
+                }
+                Subject::Supply(at) => condition.supplies[*at] = level(*value),
+                Subject::Resistor(id) => put(&mut condition.resistors, *id, *value),
+                Subject::Parameter(name) => condition.parameters.push((name.clone(), *value)),
+                Subject::Temperature => condition.temperature = *value,
+            },
+            Change::Hold(id, on) => put(&mut condition.held, *id, *on),
+        }
+    }
+}
+
+/// Puts a value into a list sorted by element.
+fn put<T>(list: &mut Vec<(ElementId, T)>, id: ElementId, value: T) {
+    match list.binary_search_by_key(&id, |e| e.0) {
+        Ok(at) => list[at].1 = value,
+        Err(at) => list.insert(at, (id, value)),
+    }
+}
+
+/// All combinations, the last declared changing fastest; one empty combination where nothing is declared, none
+/// where there would be too many.
+fn corners<'a>(ends: &[[Change<'a>; 2]]) -> Vec<Vec<Change<'a>>> {
+    if ends.len() >= usize::BITS as usize || 1 << ends.len() > MOST_CORNERS {
+        return Vec::new();
+    }
+    let mut all = vec![Vec::new()];
+    for pair in ends {
+        all = all
+            .iter()
+            .flat_map(|corner| pair.iter().map(move |end| [corner.as_slice(), &[*end]].concat()))
+            .collect();
+    }
+    all
+}

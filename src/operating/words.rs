@@ -1,0 +1,218 @@
+//! What makes a part other than unique, in words with element names and numbers.
+
+use super::assemble::{Assembly, Owner, Setting};
+use super::result::Contradiction;
+use crate::circuit::{ElementId, NodeId};
+use crate::complementarity::{Branch, Law, Part, Reason, Verdict};
+use crate::finding::quantity;
+
+/// Most names that one sentence lists.
+const MOST_NAMES: usize = 8;
+
+/// The causes of a part's verdict; none where it is unique.
+pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) -> Vec<Contradiction> {
+    let words = Words { setting, assembly };
+    part.reasons.iter().map(|reason| words.cause(part.verdict, reason)).collect()
+}
+
+/// `A, B and C`, shortened where there are many.
+pub(crate) fn list(names: &[String]) -> String {
+    let more = names.len().saturating_sub(MOST_NAMES);
+    let mut shown: Vec<String> = names.iter().take(MOST_NAMES).cloned().collect();
+    if more > 0 {
+        shown.push(format!("{more} more"));
+    }
+    match shown.split_last() {
+        None => "nothing".into(),
+        Some((only, [])) => only.clone(),
+        Some((last, others)) => format!("{} and {last}", others.join(", ")),
+    }
+}
+
+struct Words<'a> {
+    setting: &'a Setting<'a>,
+    assembly: &'a Assembly,
+}
+
+impl Words<'_> {
+    fn cause(&self, verdict: Verdict, reason: &Reason) -> Contradiction {
+        match reason {
+            Reason::Loop { branches, gap } => {
+                self.contradiction(verdict, branches, self.closed(branches, *gap))
+            }
+            Reason::CutSet { branches, nodes, excess } => {
+                self.contradiction(verdict, branches, self.cut(branches, nodes, *excess))
+            }
+            Reason::Unknown { branches } => self.contradiction(verdict, branches, self.unknown(branches)),
+            Reason::Residual { relative } => self.contradiction(verdict, &[], missed(*relative)),
+            Reason::Dependent { text } => self.contradiction(verdict, &[], text.clone()),
+        }
+    }
+
+    fn contradiction(&self, verdict: Verdict, branches: &[u32], text: String) -> Contradiction {
+        Contradiction { verdict, text, elements: self.elements(branches) }
+    }
+
+    fn branch(&self, number: u32) -> Option<&Branch> {
+        self.assembly.network.branches.get(number as usize)
+    }
+
+    /// The elements of branches, each once, in their order.
+    fn elements(&self, branches: &[u32]) -> Vec<ElementId> {
+        let mut elements = Vec::new();
+        for &number in branches {
+            if let Some(&Owner::Element(id)) = self.assembly.owner.get(number as usize)
+                && elements.last() != Some(&id)
+                && !(elements.len() < 64 && elements.contains(&id))
+            {
+                elements.push(id);
+            }
+        }
+        elements
+    }
+
+    fn name(&self, number: u32) -> String {
+        match self.assembly.owner.get(number as usize) {
+            Some(&Owner::Element(id)) => self.setting.circuit.element_name(id),
+            Some(&Owner::Supply(n)) => {
+                let node = self.setting.plan.supplies.get(n).map_or(NodeId::GROUND, |s| s.node);
+                format!("the supply at {}", self.setting.circuit.node_name(node))
+            }
+            None => "?".into(),
+        }
+    }
+
+    /// Names of branches, each owner once.
+    fn names(&self, branches: impl IntoIterator<Item = u32>) -> Vec<String> {
+        let mut names = Vec::new();
+        for number in branches {
+            let name = self.name(number);
+            if names.last() != Some(&name) && !(names.len() < 64 && names.contains(&name)) {
+                names.push(name);
+            }
+        }
+        names
+    }
+
+    fn closed(&self, branches: &[u32], gap: f64) -> String {
+        let names = list(&self.names(branches.iter().copied()));
+        let form = if branches.len() == 1 { "closes on itself" } else { "form a loop" };
+        let drops = self.drops_along(branches, gap);
+        let junctions = branches.iter().filter(|&&b| self.is(b, |l| matches!(l, Law::Junction(_)))).count();
+        if gap == 0.0 {
+            return format!(
+                "{names} {form} without resistance whose voltages add up to zero, so how the current splits is open"
+            );
+        }
+        if junctions > 0 {
+            let of_drops = if junctions == 1 { "of drop" } else { "of drops" };
+            return format!(
+                "{names} {form} without resistance: {} drives {} {of_drops}, so the current has no limit",
+                quantity(drops + gap, "V"),
+                quantity(drops, "V"),
+            );
+        }
+        let sources = branches.iter().filter(|&&b| !self.is(b, |l| matches!(l, Law::Short))).count();
+        if sources == 1 {
+            format!(
+                "{names} {form} without resistance: {} drives a short circuit, so the current has no limit",
+                quantity(gap, "V")
+            )
+        } else {
+            format!(
+                "{names} {form} without resistance, but their voltages disagree by {}",
+                quantity(gap, "V")
+            )
+        }
+    }
+
+    fn is(&self, number: u32, test: impl Fn(&Law) -> bool) -> bool {
+        self.branch(number).is_some_and(|b| test(&b.law))
+    }
+
+    /// Sum of the drops that a current along the walk overcomes. Of the two directions, the one that the gap
+    /// drives.
+    fn drops_along(&self, branches: &[u32], gap: f64) -> f64 {
+        let mut best = (f64::INFINITY, 0.0);
+        let reversed: Vec<u32> = branches.iter().rev().copied().collect();
+        for walk in [branches, reversed.as_slice()] {
+            let Some(first) = walk.first().and_then(|&n| self.branch(n)) else { continue };
+            for start in [first.from, first.to] {
+                if let Some((rise, drops)) = self.walk(walk, start) {
+                    let miss = (rise - drops - gap).abs();
+                    if miss < best.0 {
+                        best = (miss, drops);
+                    }
+                }
+            }
+        }
+        best.1
+    }
+
+    /// Rise by sources and fall by junctions along a closed walk; `None` where it does not close or a junction
+    /// bars it.
+    fn walk(&self, branches: &[u32], start: u32) -> Option<(f64, f64)> {
+        let (mut at, mut rise, mut drops) = (start, 0.0, 0.0);
+        for &number in branches {
+            let branch = self.branch(number)?;
+            let along = branch.from == at;
+            if !along && branch.to != at {
+                return None;
+            }
+            at = if along { branch.to } else { branch.from };
+            match branch.law {
+                Law::Voltage(level) => rise += if along { -level.value } else { level.value },
+                Law::Junction(j) => {
+                    drops +=
+                        if along { j.forward.value } else { j.reverse.map_or(f64::INFINITY, |l| l.value) };
+                }
+                _ => {}
+            }
+        }
+        (at == start && drops.is_finite()).then_some((rise, drops))
+    }
+
+    fn cut(&self, branches: &[u32], nodes: &[u32], excess: f64) -> String {
+        let is_source = |&b: &u32| self.is(b, |l| matches!(l, Law::Current(_) | Law::CurrentControlled(..)));
+        let (sources, others): (Vec<u32>, Vec<u32>) = branches.iter().copied().partition(is_source);
+        let circuit = self.setting.circuit;
+        let names: Vec<String> = nodes.iter().map(|&n| circuit.node_name(NodeId(n))).collect();
+        let place = format!("{} {}", if nodes.len() == 1 { "node" } else { "nodes" }, list(&names));
+        let other_names = list(&self.names(others.iter().copied()));
+        let them = if nodes.len() == 1 { "it" } else { "them" };
+        if excess == 0.0 {
+            let potential =
+                if nodes.len() == 1 { "its potential is open" } else { "their potentials are open together" };
+            return match branches.is_empty() {
+                true => format!(
+                    "{place}: nothing that carries direct current joins {them} to the rest, so {potential}"
+                ),
+                false => format!(
+                    "{place}: joined to the rest only through {}, which carry no net current, so {potential}",
+                    list(&self.names(branches.iter().copied()))
+                ),
+            };
+        }
+        let source_names = self.names(sources);
+        let verb = if source_names.len() == 1 { "forces" } else { "force" };
+        let way = if others.is_empty() {
+            "nothing else leads on".to_owned()
+        } else {
+            format!("{other_names} cannot carry it that way")
+        };
+        format!("{} {verb} {} through {place}, and {way}", list(&source_names), quantity(excess, "A"))
+    }
+
+    fn unknown(&self, branches: &[u32]) -> String {
+        let names = self.names(branches.iter().copied());
+        let is_or_are = if names.len() == 1 { "is" } else { "are" };
+        format!("{} {is_or_are} not modelled at the operating point", list(&names))
+    }
+}
+
+/// A result that does not check.
+pub(crate) fn missed(relative: f64) -> String {
+    format!(
+        "the result misses the circuit laws by {relative:.1e} of the largest term, more than 1e-9, and is withheld"
+    )
+}
