@@ -9,6 +9,8 @@ mod oracle;
 
 #[path = "outside/compare.rs"]
 mod compare;
+#[path = "outside/dependent.rs"]
+mod dependent;
 #[path = "outside/enumeration.rs"]
 mod enumeration;
 #[path = "outside/examples.rs"]
