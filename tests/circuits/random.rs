@@ -318,3 +318,46 @@ impl Maker {
         }
     }
 }
+
+/// A connected network of that many diodes, values from a finer grid, hardly any ties: for references that find one
+/// solution at a time.
+pub fn connected(seed: u64, diodes: usize) -> Circuit {
+    const FINE_OHMS: &[i64] = &[120, 270, 330, 560, 910, 1200, 1800, 2700, 4300, 6200, 8200, 13_000];
+    let mut dice = Seed(seed ^ 0x00C0_FFEE);
+    let nodes = diodes / 2 + dice.between(2, diodes / 2 + 2);
+    let mut circuit = Circuit::with_nodes(format!("connected network {seed} of {diodes} diodes"), nodes);
+    for node in 1..=nodes {
+        let other = dice.below(node);
+        circuit.r(node, other, *dice.pick(FINE_OHMS));
+    }
+    for _ in 0..nodes / 2 {
+        let (from, to) = apart(&mut dice, nodes);
+        circuit.r(from, to, *dice.pick(FINE_OHMS));
+    }
+    for node in [1, 1 + nodes / 2, nodes] {
+        let volts = Dec::new(*dice.pick(&[5, 12, 9, -5, -12, 3, 24]), 0);
+        let held = circuit.elements.iter().any(|e| matches!(e.kind, Kind::V(_)) && e.from == node);
+        if !held {
+            circuit.v(node, 0, volts);
+        }
+    }
+    for _ in 0..dice.between(0, 3) {
+        let (from, to) = apart(&mut dice, nodes);
+        circuit.i(from, to, Dec::new(*dice.pick(&[3, 11, -17, 23]), -4));
+    }
+    for _ in 0..diodes {
+        let (from, to) = apart(&mut dice, nodes);
+        let drop = Dec::milli(*dice.pick(&[310, 590, 640, 700, 1830, 2110]));
+        let breakdown = dice.chance(30).then(|| Dec::milli(*dice.pick(&[3300, 5100, 6800])));
+        // a little resistance in most keeps contradictions from being the rule
+        let series = if dice.chance(85) { Dec::from(*dice.pick(&[2, 7, 15])) } else { Dec::ZERO };
+        circuit.diode(from, to, Diode { drop, breakdown, series });
+    }
+    circuit
+}
+
+fn apart(dice: &mut Seed, nodes: usize) -> (usize, usize) {
+    let from = dice.below(nodes + 1);
+    let step = dice.between(1, nodes);
+    (from, (from + step) % (nodes + 1))
+}

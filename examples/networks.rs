@@ -1,0 +1,133 @@
+//! Writes random networks and what is known about them as JSON lines, for references outside Rust:
+//! `cargo run --example networks -- [--exact] [--first SEED] COUNT` (small ones, every verdict), or
+//! `… -- --diodes 12..40 COUNT` (connected ones). `--exact` gives the tests' own enumeration instead of kneewise.
+
+// an example is a program: it may print and stop
+#![allow(clippy::print_stdout, clippy::expect_used, clippy::panic)]
+
+#[path = "../tests/circuits/mod.rs"]
+mod circuits;
+#[path = "../tests/oracle/mod.rs"]
+mod oracle;
+
+use circuits::{Circuit, Kind};
+use kneewise::analysis::analyse;
+use kneewise::complementarity::Quantity;
+use kneewise::config::Options;
+use kneewise::text::Memory;
+use oracle::{Range, float};
+use serde_json::{Map, Value, json};
+use std::path::Path;
+
+struct Request {
+    exact: bool,
+    first: u64,
+    count: u64,
+    diodes: Option<(usize, usize)>,
+}
+
+fn request() -> Request {
+    let mut request = Request { exact: false, first: 0, count: 100, diodes: None };
+    let mut words = std::env::args().skip(1);
+    while let Some(word) = words.next() {
+        let mut next = || words.next().expect("a value follows");
+        match word.as_str() {
+            "--exact" => request.exact = true,
+            "--first" => request.first = next().parse().expect("a seed"),
+            "--diodes" => {
+                let text = next();
+                let (low, high) = text.split_once("..").expect("LOW..HIGH");
+                request.diodes = Some((low.parse().expect("a number"), high.parse().expect("a number")));
+            }
+            count => request.count = count.parse().expect("a count"),
+        }
+    }
+    request
+}
+
+fn main() {
+    let request = request();
+    for seed in request.first..request.first + request.count {
+        let circuit = match request.diodes {
+            Some((low, high)) => {
+                let span = (high - low) as u64 + 1;
+                circuits::random::connected(seed, low + usize::try_from(seed * 7 % span).unwrap_or(0))
+            }
+            None => circuits::random::network(seed),
+        };
+        let answer = if request.exact { exact(&circuit) } else { kneewise(&circuit) };
+        let line = json!({
+            "seed": seed, "text": circuit.text(), "nodes": circuit.nodes, "elements": elements(&circuit),
+            "answer": answer,
+        });
+        println!("{line}");
+    }
+}
+
+fn elements(circuit: &Circuit) -> Vec<Value> {
+    let one = |element: &circuits::Element| {
+        let mut value = json!({"name": element.name, "from": element.from, "to": element.to});
+        match &element.kind {
+            Kind::R(v) | Kind::V(v) | Kind::I(v) => value["value"] = json!(v.float()),
+            Kind::D(diode) => {
+                value["drop"] = json!(diode.drop.float());
+                value["breakdown"] = json!(diode.breakdown.map(|b| b.float()));
+                value["series"] = json!(diode.series.float());
+            }
+            _ => {}
+        }
+        value
+    };
+    circuit.elements.iter().map(one).collect()
+}
+
+/// A range as `[low, high]`, `null` for an end that is unbounded.
+fn ends(range: &Range) -> Value {
+    json!([range.low.as_ref().map(float), range.high.as_ref().map(float)])
+}
+
+fn exact(circuit: &Circuit) -> Value {
+    let answer = oracle::solve(circuit);
+    let verdicts = oracle::acceptable_verdicts(circuit, &answer);
+    let verdict = verdicts.last().map(|v| format!("{v:?}")).unwrap_or_default();
+    let (mut states, mut currents, mut potentials) = (Map::new(), Map::new(), Map::new());
+    if answer.solvable() {
+        for (at, _) in circuit.diodes() {
+            let name = circuit.elements[at].name.clone();
+            states.insert(name.clone(), json!(format!("{:?}", answer.current(at).state()).to_lowercase()));
+            currents.insert(name, ends(answer.current(at)));
+        }
+        for node in 1..circuit.nodes.len() {
+            potentials.insert(circuit.nodes[node].clone(), ends(answer.potential(node)));
+        }
+    }
+    json!({"verdict": verdict, "states": states, "currents": currents, "potentials": potentials})
+}
+
+fn quantity(quantity: Quantity) -> Value {
+    match quantity {
+        Quantity::Known(value) => json!([value, value]),
+        // JSON has no infinity: serde writes null
+        Quantity::Open(interval) => json!([interval.low, interval.high]),
+        Quantity::Unknown => Value::Null,
+    }
+}
+
+fn kneewise(circuit: &Circuit) -> Value {
+    let mut files = Memory::with("network.cir", circuit.text());
+    let options = Options { states: true, ..Options::default() };
+    let analysis = analyse(&mut files, Path::new("network.cir"), &options).expect("the netlist is in memory");
+    let case = analysis.operating.as_ref().and_then(|operating| operating.cases.first());
+    let Some(case) = case else { return json!({"verdict": "missing"}) };
+    let (mut states, mut currents, mut potentials) = (Map::new(), Map::new(), Map::new());
+    for diode in case.solutions.iter().flat_map(|solution| &solution.diodes) {
+        let name = analysis.circuit.element_name(diode.element);
+        states.insert(name.clone(), json!(diode.state.word()));
+        currents.insert(name, quantity(diode.current));
+    }
+    for node in case.solutions.iter().flat_map(|solution| &solution.nodes) {
+        potentials.insert(analysis.circuit.node_name(node.node), quantity(node.voltage));
+    }
+    let verdict = format!("{:?}", case.verdict);
+    json!({"verdict": verdict, "states": states, "currents": currents, "potentials": potentials})
+}
