@@ -127,7 +127,7 @@ impl Expander<'_> {
         let multiple = self.multiple(line);
         if let Some(range) = line.fields.decimal_comma(line.text, rest) {
             let span = Span { file: line.file(), start: range.0, end: range.1 };
-            return self.decimal_comma(span).map(|value| (value, multiple));
+            return self.decimal_comma(line.word_str(0), span).map(|value| (value, multiple));
         }
         let keyed = line.pair(key).or_else(|| line.pair("value"));
         for token in keyed.into_iter().chain([rest, rest + 1].into_iter().filter_map(|n| line.word(n))) {
@@ -160,7 +160,7 @@ impl Expander<'_> {
     }
 
     /// A value whose comma was meant as a decimal point: told, and read as meant.
-    pub(super) fn decimal_comma(&mut self, span: Span) -> Result<Value, Problem> {
+    pub(super) fn decimal_comma(&mut self, name: &str, span: Span) -> Result<Value, Problem> {
         let text = self.sources().slice(span);
         let meant = text.replace(',', ".");
         let value = syntax::number(meant.as_bytes());
@@ -168,10 +168,10 @@ impl Expander<'_> {
             "decimal-comma",
             Severity::Error,
             span,
-            format!("{text} is two words to a reader of netlists: a comma separates, it is no decimal point"),
+            format!("the {text} of {name} is two words to a reader of netlists: a comma separates, it is no decimal point"),
         )
         .label(format!("read here as {meant}"))
-        .about(text)
+        .about(name)
         .help(format!("write {meant}"))
         .fix(format!("write {meant}"), vec![Edit { span, replacement: meant.clone() }]);
         self.tell(finding);

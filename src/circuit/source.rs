@@ -49,7 +49,7 @@ impl Expander<'_> {
                 line.fields.decimal_comma(line.text, at).filter(|_| source.dc.is_none())
             {
                 let span = Span { file: line.file(), start: range.0, end: range.1 };
-                source.dc = Some(self.decimal_comma(span)?);
+                source.dc = Some(self.decimal_comma(line.word_str(0), span)?);
                 at += 2;
             } else if at == rest || source.dc.is_none() {
                 let value: Option<Value> = self.value(line, token, quantity);
