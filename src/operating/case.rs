@@ -7,15 +7,14 @@ use super::proof::{Claim, Proof, claims_solution, prove};
 use super::result::{BranchResult, Case, Contradiction, DiodeResult, NodeResult, Residual, Solution};
 use super::view::margin;
 use super::words::{causes, list, missed};
-use crate::circuit::{Behaviour, NodeId, State};
+use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
-use crate::config::Options;
 
 /// Largest number of diodes in a part for which every view is computed.
 const MOST_VIEWS: usize = 3000;
 
 /// Builds the case.
-pub(crate) fn case(setting: &Setting<'_>, options: &Options, solved: &Solved) -> Case {
+pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solved) -> Case {
     let parts = Parts::of(setting, &solved.assembly, &solved.outcome);
     let (residual, withheld) = check(setting, solved, &parts);
     let (assembly, outcome) = (&solved.assembly, &solved.outcome);
@@ -37,7 +36,7 @@ pub(crate) fn case(setting: &Setting<'_>, options: &Options, solved: &Solved) ->
             elements: withheld.elements.clone(),
         });
     }
-    let mut maker = Maker { setting, options, solved, parts: &parts, withheld: &withheld };
+    let mut maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
     let solutions = if withheld.whole.is_some() {
         Vec::new()
     } else {
@@ -128,7 +127,7 @@ struct Withheld {
     /// A miss that no part can be blamed for.
     whole: Option<f64>,
     /// Elements whose laws are missed.
-    elements: Vec<crate::circuit::ElementId>,
+    elements: Vec<ElementId>,
 }
 
 impl Withheld {
@@ -138,7 +137,7 @@ impl Withheld {
         assembly: &Assembly,
         relative: f64,
     ) -> Contradiction {
-        let of_part = |id: &&crate::circuit::ElementId| {
+        let of_part = |id: &&ElementId| {
             part.branches.binary_search(&assembly.branch[id.index()]).is_ok()
                 || part.branches.contains(&assembly.branch[id.index()])
         };
@@ -207,7 +206,8 @@ fn unfinished(solved: &Solved, solution: &complementarity::Solution, withheld: &
 
 struct Maker<'a> {
     setting: &'a Setting<'a>,
-    options: &'a Options,
+    /// The diode that is asked about: its view is computed in parts of any size.
+    why: Option<ElementId>,
     solved: &'a Solved,
     parts: &'a Parts,
     withheld: &'a Withheld,
@@ -246,7 +246,7 @@ impl Maker<'_> {
             )
         };
         let elements = self.setting.circuit.elements().filter(|(_, e)| shown(&e.behaviour));
-        let result = |element: crate::circuit::ElementId| {
+        let result = |element: ElementId| {
             let branch = self.solved.assembly.branch[element.index()] as usize;
             let current = solution.currents.get(branch).copied()?;
             let is_out = current == Quantity::Unknown || self.is_withheld(self.parts.branch(branch));
@@ -257,18 +257,13 @@ impl Maker<'_> {
 
     /// One view for each diode, where its part is small enough or somebody asks.
     fn views(&self, solution: &complementarity::Solution) -> Vec<Option<View>> {
-        let asked = self.options.why.as_deref().map(str::to_lowercase);
         let mut wanted = Vec::new();
         let mut at = Vec::new();
         for (n, diode) in self.setting.diodes.iter().enumerate() {
             let branch = self.solved.assembly.branch[diode.element.index()];
             let part = self.parts.branch(branch as usize);
             let is_small = part.is_none_or(|p| self.parts.diodes[p] <= MOST_VIEWS);
-            let is_asked = || {
-                let name = self.setting.circuit.element_name(diode.element).to_lowercase();
-                asked.as_ref().is_some_and(|a| *a == name)
-            };
-            if !self.is_withheld(part) && (is_small || is_asked()) {
+            if !self.is_withheld(part) && (is_small || self.why == Some(diode.element)) {
                 wanted.push(branch);
                 at.push(n);
             }
@@ -321,7 +316,7 @@ impl Maker<'_> {
     }
 }
 
-fn state(place: Place) -> State {
+pub(crate) fn state(place: Place) -> State {
     match place {
         Place::Conducting => State::Conducting,
         Place::Blocking => State::Blocking,

@@ -7,12 +7,13 @@ use super::declared::{USUAL_TEMPERATURE, declared};
 use super::directory::Directory;
 use super::drop::{Diode, DropLaw, diodes};
 use super::reach::left_to_time;
-use super::result::{Case, Operating};
-use crate::circuit::{Circuit, Overrides, Parsed, expand};
+use super::result::{Case, Operating, Reasoning, Why};
+use super::why;
+use crate::circuit::{Behaviour, Circuit, ElementId, Overrides, Parsed, ScopeId, expand};
 use crate::complementarity::{Interval, Outcome, Quantity};
 use crate::config::Options;
-use crate::finding::Finding;
-use crate::text::Sources;
+use crate::finding::{Finding, Severity};
+use crate::text::{FileId, Sources, Span};
 
 /// A network and its answer.
 pub(crate) struct Solved {
@@ -55,11 +56,37 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
         slots: &slots,
         first: Vec::new(),
         spent: Vec::new(),
+        why: asked(circuit, directory, options, &mut findings),
+        reasonings: Vec::new(),
     };
     run.first_pass(&mut list);
     let left_to_time = left_to_time(circuit, &plan);
     let cases = (0..plan.conditions.len()).map(|n| run.case(&list, n)).collect();
-    (Operating { cases, left_to_time, why: None }, findings)
+    let reasonings = run.reasonings;
+    let why = run.why.map(|element| Why { element, reasonings });
+    (Operating { cases, left_to_time, why }, findings)
+}
+
+/// The diode that `--why` asks about.
+fn asked(
+    circuit: &Circuit,
+    directory: Option<&Directory>,
+    options: &Options,
+    findings: &mut Vec<Finding>,
+) -> Option<ElementId> {
+    let name = options.why.as_deref()?;
+    let found = directory.and_then(|d| d.element(ScopeId::ROOT, name));
+    let diode = found.filter(|&id| matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }));
+    if diode.is_none() {
+        let place = circuit.title.unwrap_or(Span::new(FileId(0), 0, 0));
+        let message = format!("`--why {name}` names no diode of this circuit");
+        findings.push(
+            Finding::new("unknown-name", Severity::Error, place, message).about(name).help(
+                "Name a diode as the netlist does; inside an instance write the path, such as `X1:D3`.",
+            ),
+        );
+    }
+    diode
 }
 
 struct Run<'a> {
@@ -73,6 +100,10 @@ struct Run<'a> {
     first: Vec<Option<Solved>>,
     /// Factorizations of the first pass that were not kept, by condition.
     spent: Vec<usize>,
+    /// The diode that is asked about.
+    why: Option<ElementId>,
+    /// What was said about it.
+    reasonings: Vec<Reasoning>,
 }
 
 impl Run<'_> {
@@ -109,16 +140,18 @@ impl Run<'_> {
 
     fn case(&mut self, diodes: &[Diode], number: usize) -> Case {
         let condition = &self.plan.conditions[number];
-        let mut case = match self.variant(diodes, condition) {
-            Some(variant) => variant.case(self),
-            None => {
-                let kept = self.first.get_mut(number).and_then(Option::take);
-                let setting = self.setting(diodes, condition);
-                let solved = kept.unwrap_or_else(|| solve(&setting));
-                case(&setting, self.options, &solved)
-            }
+        let variant = self.variant(diodes, condition);
+        let setting = match &variant {
+            Some(variant) => variant.setting(self.plan, self.slots),
+            None => Setting { circuit: self.circuit, plan: self.plan, slots: self.slots, diodes, condition },
         };
+        let kept = self.first.get_mut(number).and_then(Option::take).filter(|_| variant.is_none());
+        let solved = kept.unwrap_or_else(|| solve(&setting));
+        let mut case = case(&setting, self.why, &solved);
         case.solves += self.spent.get(number).copied().unwrap_or(0);
+        if let Some(element) = self.why {
+            why::add(&mut self.reasonings, &setting, &solved, &case, element);
+        }
         case
     }
 
@@ -153,15 +186,8 @@ struct Variant {
 }
 
 impl Variant {
-    fn case(&self, run: &Run<'_>) -> Case {
-        let setting = Setting {
-            circuit: &self.circuit,
-            plan: run.plan,
-            slots: run.slots,
-            diodes: &self.diodes,
-            condition: &self.condition,
-        };
-        case(&setting, run.options, &solve(&setting))
+    fn setting<'a>(&'a self, plan: &'a Plan, slots: &'a Slots) -> Setting<'a> {
+        Setting { circuit: &self.circuit, plan, slots, diodes: &self.diodes, condition: &self.condition }
     }
 }
 

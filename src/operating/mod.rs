@@ -8,6 +8,8 @@ mod declared;
 mod directory;
 mod drop;
 mod evaluate;
+mod excerpt;
+mod flip;
 mod law;
 mod material;
 mod named;
@@ -16,6 +18,7 @@ mod reach;
 mod result;
 mod switch;
 mod view;
+mod why;
 mod words;
 
 pub use evaluate::{Text, evaluate};

@@ -44,6 +44,8 @@ pub struct Reasoning {
 pub struct Flip {
     /// Name of the source, or of the node that a `supply` note holds.
     pub source: String,
+    /// In amperes rather than volts.
+    pub is_current: bool,
     /// What it is now, volts or amperes.
     pub from: f64,
     /// Where the state changes.

@@ -1,0 +1,330 @@
+//! Why a diode is in its state, by the method's own reasoning: assume the other states, see them fail; assume this
+//! one, see it hold; and what would change it. Plain words with the numbers that convince.
+
+use super::assemble::{Owner, Setting};
+use super::case::state;
+use super::evaluate::Solved;
+use super::excerpt::Excerpt;
+use super::flip::{Way, follow};
+use super::result::{Case, DiodeResult, Flip, Reasoning};
+use crate::circuit::{ElementId, State};
+use crate::complementarity::{Interval, Law, Network, Quantity, View};
+use crate::finding::{interval, quantity};
+
+/// How far a source is followed: ten times its value, both ways.
+const FURTHEST: f64 = 10.0;
+/// Most sources that are followed.
+const MOST_SOURCES: usize = 32;
+/// Most work of one search: solves times branches.
+const MOST_WORK: usize = 4_000_000;
+
+/// Adds the reasoning of one case, or its name to the line of reasoning that says the same.
+pub(crate) fn add(
+    reasonings: &mut Vec<Reasoning>,
+    setting: &Setting<'_>,
+    solved: &Solved,
+    case: &Case,
+    element: ElementId,
+) {
+    let count = case.solutions.len();
+    for (n, solution) in case.solutions.iter().enumerate() {
+        let Some(diode) = solution.diodes.iter().find(|d| d.element == element) else { continue };
+        let mut sentences = Vec::new();
+        if count > 1 {
+            sentences.push(format!("This is set {} of {count} that are consistent.", n + 1));
+        }
+        sentences.extend(Speaker { setting, case, diode }.sentences());
+        if let Some(known) =
+            reasonings.iter_mut().find(|r| r.state == diode.state && r.sentences == sentences)
+        {
+            known.cases.push(case.name.clone());
+            continue;
+        }
+        let is_single = count == 1 && diode.state != State::NotEvaluated;
+        let search = if is_single { flips(setting, solved, element) } else { Search::default() };
+        reasonings.push(Reasoning {
+            cases: vec![case.name.clone()],
+            state: diode.state,
+            flip_sentence: if is_single { search.sentence(diode.state) } else { String::new() },
+            sentences,
+            flips: search.flips,
+        });
+    }
+    if case.solutions.is_empty() {
+        let sentences = case.contradictions.iter().map(|c| sentence(&c.text)).collect();
+        reasonings.push(Reasoning {
+            cases: vec![case.name.clone()],
+            state: State::NotEvaluated,
+            sentences,
+            flips: Vec::new(),
+            flip_sentence: String::new(),
+        });
+    }
+}
+
+/// A clause as a sentence.
+fn sentence(clause: &str) -> String {
+    let mut letters = clause.chars();
+    let first: String = letters.next().map(|c| c.to_uppercase().collect()).unwrap_or_default();
+    format!("{first}{}.", letters.as_str())
+}
+
+/// Two quantities with as many digits as it takes to tell them apart.
+fn apart(a: f64, b: f64, unit: &str) -> (String, String) {
+    let plain = (quantity(a, unit), quantity(b, unit));
+    if plain.0 != plain.1 || a == b {
+        return plain;
+    }
+    let digits = |value: f64, digits: usize| {
+        let rounded: f64 = format!("{value:.digits$e}").parse().unwrap_or(value);
+        format!("{rounded} {unit}")
+    };
+    (3..17).map(|n| (digits(a, n), digits(b, n))).find(|(a, b)| a != b).unwrap_or(plain)
+}
+
+struct Speaker<'a> {
+    setting: &'a Setting<'a>,
+    case: &'a Case,
+    diode: &'a DiodeResult,
+}
+
+impl Speaker<'_> {
+    fn name(&self) -> String {
+        self.setting.circuit.element_name(self.diode.element)
+    }
+
+    fn sentences(&self) -> Vec<String> {
+        let origin = format!(
+            "{} has a drop of {} ({}){}{}.",
+            self.name(),
+            quantity(self.diode.drop.volts, "V"),
+            self.diode.drop.origin,
+            self.diode
+                .breakdown
+                .map_or(String::new(), |bv| format!(", breaks down at {}", quantity(bv, "V"))),
+            match self.diode.series {
+                0.0 => String::new(),
+                ohms => format!(", and has {} in series", quantity(ohms, "Ω")),
+            }
+        );
+        let mut all = vec![origin];
+        all.extend(match (self.diode.state, self.diode.view) {
+            (State::Conducting, Some(view)) => self.carries(view, true),
+            (State::Breakdown, Some(view)) => self.carries(view, false),
+            (State::Blocking, Some(view)) => self.blocks(view),
+            (State::NotEvaluated, _) => self.not_evaluated(),
+            (state, _) => self.without_view(state),
+        });
+        all
+    }
+
+    /// Level in the direction that is examined: the drop, or minus the breakdown voltage.
+    fn level(&self, forward: bool) -> f64 {
+        if forward { self.diode.drop.volts } else { -self.diode.breakdown.unwrap_or(f64::INFINITY) }
+    }
+
+    /// `(4.62 V − 700 mV) / 1 kΩ = 3.92 mA`, the current that an assumption leads to, and its value.
+    fn current(&self, view: View, forward: bool) -> (String, f64) {
+        let level = self.level(forward);
+        let (seen, limit) = apart(view.open_circuit, level.abs(), "V");
+        let sign = if forward { "−" } else { "+" };
+        let current = (view.open_circuit - level) / view.resistance;
+        let sum = format!(
+            "({seen} {sign} {limit}) / {} = {}",
+            quantity(view.resistance, "Ω"),
+            quantity(current, "A")
+        );
+        (sum, current)
+    }
+
+    fn carries(&self, view: View, forward: bool) -> Vec<String> {
+        let level = self.level(forward);
+        let (seen, limit) = apart(view.open_circuit, level, "V");
+        let (beyond, what, verb, way) = if forward {
+            ("more than its drop of", "drop", "conducts", "which is forward")
+        } else {
+            ("beyond its breakdown at", "breakdown voltage", "breaks down", "which is backward")
+        };
+        let (sum, _) = self.current(view, forward);
+        let mut all = vec![
+            format!(
+                "Assume {} blocks: with every other diode in its state the rest of the circuit puts {seen} across it, {beyond} {limit}, so that assumption fails.",
+                self.name()
+            ),
+            format!("Assume it {verb}: {sum} flows from anode to cathode, {way}, so this holds."),
+        ];
+        if let Some(margin) = self.diode.margin {
+            all.push(format!(
+                "Margin: its {what} would have to exceed {}, {} more, to change the state.",
+                quantity(view.open_circuit.abs(), "V"),
+                quantity(margin, "V")
+            ));
+        }
+        all
+    }
+
+    fn blocks(&self, view: View) -> Vec<String> {
+        let drop = self.diode.drop.volts;
+        let (seen, limit) = apart(view.open_circuit, drop, "V");
+        let mut all = Vec::new();
+        if self.diode.margin == Some(0.0) {
+            all.push(format!(
+                "{} stands exactly at a corner: the rest of the circuit puts {seen} across it and it carries nothing. The smallest change decides.",
+                self.name()
+            ));
+            return all;
+        }
+        if view.resistance > 0.0 {
+            let (sum, _) = self.current(view, true);
+            all.push(format!("Assume {} conducts: {sum} would have to flow from anode to cathode, which is backward, so that assumption fails.", self.name()));
+            if self.diode.breakdown.is_some() {
+                let (sum, _) = self.current(view, false);
+                all.push(format!("Assume it breaks down: {sum} would have to flow, which is forward, so that assumption fails."));
+            }
+        }
+        let floor = self
+            .diode
+            .breakdown
+            .map_or(String::new(), |bv| format!(" and above its breakdown at {}", quantity(-bv, "V")));
+        all.push(format!("Assume it blocks: with every other diode in its state the rest of the circuit puts {seen} across it, less than its drop of {limit}{floor}, so this holds."));
+        if let Some(margin) = self.diode.margin {
+            let is_reverse =
+                self.diode.breakdown.is_some_and(|bv| view.open_circuit + bv < drop - view.open_circuit);
+            let what = if is_reverse { "it would break down" } else { "it would conduct" };
+            let direction = if is_reverse { "less" } else { "more" };
+            all.push(format!("Margin: with {} {direction} across it {what}.", quantity(margin, "V")));
+        }
+        all
+    }
+
+    /// No finite open-circuit voltage: fed by currents, floating, or part of an open split.
+    fn without_view(&self, state: State) -> Vec<String> {
+        let name = self.name();
+        let causes = || self.case.contradictions.iter().filter(|c| c.elements.contains(&self.diode.element));
+        let mut all = match (state, self.diode.current, self.diode.voltage) {
+            (State::Conducting | State::Breakdown, Quantity::Known(current), _) => vec![format!(
+                "Assume {name} blocks: the {} that the sources push through it have no other way, so that assumption fails. Assume it is {}: it carries them, so this holds. No voltage stands behind that current, so there is no margin in volts.",
+                quantity(current, "A"),
+                state.word()
+            )],
+            (_, Quantity::Open(Interval { low, high }), _) => vec![format!(
+                "The model leaves its current open: {}. In some solution it is {}.",
+                interval(low, high, "A"),
+                state.word()
+            )],
+            (State::Blocking, _, Quantity::Open(Interval { low, high })) => vec![format!(
+                "It carries nothing in every solution, but the model leaves its voltage open: {}.",
+                interval(low, high, "V")
+            )],
+            (State::Blocking, _, Quantity::Known(volts)) => vec![format!(
+                "Assume {name} blocks: {} stands across it, less than its drop of {}, so this holds.",
+                quantity(volts, "V"),
+                quantity(self.diode.drop.volts, "V")
+            )],
+            _ => vec![format!("{name} is {}.", state.word())],
+        };
+        all.extend(causes().map(|c| sentence(&c.text)));
+        all
+    }
+
+    fn not_evaluated(&self) -> Vec<String> {
+        let reason = self.diode.not_evaluated.clone().unwrap_or_else(|| "its part was not solved".into());
+        vec![format!("{} is not evaluated: {reason}.", self.name())]
+    }
+}
+
+/// What following the sources gave.
+#[derive(Default)]
+struct Search {
+    flips: Vec<Flip>,
+    followed: usize,
+    is_cut_off: bool,
+}
+
+impl Search {
+    fn sentence(&self, state: State) -> String {
+        let tail =
+            if self.is_cut_off { " The search was cut off before it had seen everything." } else { "" };
+        let list: Vec<String> = self.flips.iter().take(4).map(Flip::words).collect();
+        match (list.is_empty(), self.followed) {
+            (true, 0) if self.is_cut_off => {
+                "Its part is too large to follow what single sources would change.".into()
+            }
+            (true, 0) => "No source of its part can be moved.".into(),
+            (true, _) if self.is_cut_off => {
+                format!("No single source was seen to change the state from {}.{tail}", state.word())
+            }
+            (true, _) => "No single source changes the state within ten times its value.".into(),
+            (false, _) => format!("One source alone changes the state: {}.{tail}", list.join("; ")),
+        }
+    }
+}
+
+impl Flip {
+    /// `V1 from 5 V to 700 mV makes it block`.
+    fn words(&self) -> String {
+        let unit = if self.is_current { "A" } else { "V" };
+        let becomes = match self.state {
+            State::Conducting => "makes it conduct",
+            State::Blocking => "makes it block",
+            State::Breakdown => "makes it break down",
+            State::Open => "leaves it open",
+            State::NotEvaluated => "leaves no consistent state",
+        };
+        let (from, to) = apart(self.from, self.to, unit);
+        format!("{} from {from} to {to} {becomes}", self.source)
+    }
+}
+
+/// Follows every source of the diode's part, both ways to ten times its value.
+fn flips(setting: &Setting<'_>, solved: &Solved, element: ElementId) -> Search {
+    let mut search = Search::default();
+    let junction = solved.assembly.branch[element.index()];
+    let Some(excerpt) = Excerpt::around(&solved.assembly.network, &solved.outcome, junction) else {
+        return search;
+    };
+    let Some(target) = excerpt.number(junction) else { return search };
+    let mut budget = MOST_WORK / excerpt.network.branches.len().max(1);
+    for (number, from, is_current) in sources(&excerpt.network) {
+        let Some(source) = name(setting, solved, excerpt.original[number as usize]) else { continue };
+        if search.followed == MOST_SOURCES || budget < 4 {
+            search.is_cut_off = true;
+            break;
+        }
+        search.followed += 1;
+        for limit in [FURTHEST * from, -FURTHEST * from] {
+            match follow(&excerpt.network, target, number, from, limit, &mut budget) {
+                Way::Never => {}
+                Way::Lost => search.is_cut_off = true,
+                Way::Changes { at, place } => {
+                    let state = state(place);
+                    search.flips.push(Flip { source: source.clone(), is_current, from, to: at, state });
+                }
+            }
+        }
+    }
+    let distance = |f: &Flip| ((f.to - f.from) / f.from).abs();
+    search.flips.sort_by(|a, b| distance(a).total_cmp(&distance(b)));
+    search
+}
+
+/// Sources that are not zero, with their values.
+fn sources(network: &Network) -> Vec<(u32, f64, bool)> {
+    let value = |law: &Law| match law {
+        Law::Voltage(level) => Some((level.value, false)),
+        Law::Current(level) => Some((level.value, true)),
+        _ => None,
+    };
+    let branches = network.branches.iter().enumerate();
+    let sources = branches.filter_map(|(n, b)| value(&b.law).map(|(value, kind)| (n as u32, value, kind)));
+    sources.filter(|s| s.1 != 0.0 && s.1.is_finite()).collect()
+}
+
+fn name(setting: &Setting<'_>, solved: &Solved, branch: u32) -> Option<String> {
+    match *solved.assembly.owner.get(branch as usize)? {
+        Owner::Element(id) => {
+            setting.plan.sources.binary_search(&id).ok().map(|_| setting.circuit.element_name(id))
+        }
+        Owner::Supply(n) => Some(setting.circuit.node_name(setting.plan.supplies.get(n)?.node)),
+    }
+}
