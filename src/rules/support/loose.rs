@@ -101,11 +101,10 @@ fn find_slips(evidence: &Evidence<'_>, loose: &mut [LooseEnd]) {
             .take_while(|p| p.suspect == node)
             .map(|p| NodeId::new(p.known))
             .filter(|&known| {
-                // the same element at both would be shorted, and of a pair only the later one is told
-                let pins = circuit.pins(end.touch.element);
-                !pins.iter().any(|p| p.node == known)
-                    && !(is_loose.contains(&known) && known > end.node)
-                    && !is_series(&folded[node], &folded[known.index()])
+                let shorted = circuit.pins(end.touch.element).iter().any(|p| p.node == known);
+                // of a pair only the later one is told
+                let mirrored = is_loose.contains(&known) && known > end.node;
+                !(shorted || mirrored || is_series(&folded[node], &folded[known.index()]))
             })
             .collect();
         let lonely: Vec<NodeId> = options.iter().copied().filter(|n| is_loose.contains(n)).collect();
