@@ -42,6 +42,7 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     let evidence = Evidence::new(&sources, &circuit, &wiring);
     let (judged, skipped) = rules::run(&evidence, operating.as_ref());
     findings.extend(judged);
+    rules::accept(&evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));
     finding::sort(&mut findings);
     Ok(Analysis { sources, circuit, wiring, operating, findings, skipped })
 }

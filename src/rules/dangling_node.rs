@@ -66,11 +66,19 @@ fn judge(evidence: &Evidence<'_>, ends: &[&LooseEnd]) -> Finding {
             finding = finding.also(pin.span, format!("nor does anything else touch {node}"));
         }
     }
+    finding = finding.about(name);
     if ends.iter().all(|e| e.unused_pin) {
         finding.severity = Severity::Note;
-        return finding.about(name).help("An unused pin of a part is usual; if it was meant to be joined, the name on the instance's line is wrong.");
+        return finding.help(
+            "An unused pin of a part is usual; if it is to be joined, look at the node's name on the instance's line.",
+        );
     }
-    finding.about(name).help(format!("{} {}", why(evidence, element), RULE.remedy))
+    let node = evidence.circuit.text(evidence.circuit.nodes[ends[0].node.index()].name);
+    finding.help(format!(
+        "{} Join it to what it was meant for, or take it out; an output that is only measured takes the note \
+         `*@ watch {node}`.",
+        why(evidence, element)
+    ))
 }
 
 fn listens(evidence: &Evidence<'_>, end: &LooseEnd) -> bool {

@@ -4,8 +4,8 @@
 
 mod support;
 
-pub use support::{Check, Evidence, Rule, Skipped, run};
-use support::{LooseEnd, count, list};
+pub use support::{Check, Evidence, Rule, Skipped, accept, run};
+use support::{Cause, LooseEnd, causes, count, in_cases, is_told, list};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 

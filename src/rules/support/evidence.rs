@@ -17,17 +17,27 @@ pub struct Evidence<'a> {
     /// Its wiring.
     pub wiring: &'a Wiring,
     loose: OnceCell<Vec<LooseEnd>>,
+    told: Vec<Finding>,
 }
 
 impl<'a> Evidence<'a> {
     /// Of one circuit.
     pub fn new(sources: &'a Sources, circuit: &'a Circuit, wiring: &'a Wiring) -> Self {
-        Evidence { sources, circuit, wiring, loose: OnceCell::new() }
+        Evidence { sources, circuit, wiring, loose: OnceCell::new(), told: Vec::new() }
     }
 
     /// Nodes with one connection that are very likely meant to have more; found once.
     pub(in crate::rules) fn loose_ends(&self) -> &[LooseEnd] {
         self.loose.get_or_init(|| loose::find(self))
+    }
+
+    /// What the rules on the wiring have found, for the rules on states: one cause is told once.
+    pub(in crate::rules) fn told(&self) -> &[Finding] {
+        &self.told
+    }
+
+    pub(super) fn with_told(&self, told: Vec<Finding>) -> Evidence<'a> {
+        Evidence { told, loose: self.loose.clone(), ..*self }
     }
 
     /// Nothing in the circuit touches ground.

@@ -1,5 +1,7 @@
 //! What all rules share: what a rule is, what it may look at, and running them. No judgement of circuits here.
 
+mod accept;
+mod cases;
 mod evidence;
 mod instances;
 mod loose;
@@ -7,6 +9,8 @@ mod rule;
 mod run;
 mod words;
 
+pub use accept::{about_note, accept};
+pub use cases::{Cause, causes, contradiction, in_cases, is_told};
 pub use evidence::Evidence;
 pub use loose::LooseEnd;
 pub use rule::{Check, Rule, Skipped};

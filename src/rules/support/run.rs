@@ -1,25 +1,32 @@
 //! Runs every rule whose evidence is there.
 
-use super::Evidence;
-use super::instances;
 use super::rule::{Check, Skipped};
+use super::{Evidence, instances};
 use crate::finding::Finding;
 use crate::operating::Operating;
 
 /// All findings of all rules, and those that could not judge, with the reason. Findings of reading are not among
 /// them: they were made by `circuit::read`.
 pub fn run(evidence: &Evidence<'_>, operating: Option<&Operating>) -> (Vec<Finding>, Vec<Skipped>) {
-    let mut findings = Vec::new();
+    let mut told = Vec::new();
     let mut skipped = Vec::new();
     for rule in super::super::all() {
         match (&rule.check, operating) {
-            (Check::Reading | Check::Notes, _) => {}
-            (Check::Wiring(check), _) => findings.extend(check(evidence)),
-            (Check::States(check), Some(states)) => findings.extend(check(evidence, states)),
+            (Check::Wiring(check), _) => told.extend(check(evidence)),
             (Check::States(_), None) => skipped.push(Skipped {
                 rule: rule.name,
                 reason: "needs the states of the diodes, which this run does not look for".into(),
             }),
+            (Check::Reading | Check::Notes | Check::States(_), _) => {}
+        }
+    }
+    let mut findings = told.clone();
+    if let Some(states) = operating {
+        let evidence = evidence.with_told(told);
+        for rule in super::super::all() {
+            if let Check::States(check) = rule.check {
+                findings.extend(check(&evidence, states));
+            }
         }
     }
     (instances::fold(evidence.circuit, findings), skipped)

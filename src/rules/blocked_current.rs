@@ -1,0 +1,44 @@
+//! Current sources that drive against diodes which do not let the current pass.
+
+use super::unlimited_current::is_current;
+use super::{Cause, Check, Evidence, Rule, causes, is_told};
+use crate::finding::{Finding, Severity};
+use crate::operating::{Operating, Verdict};
+
+pub const RULE: Rule = Rule {
+    name: "blocked-current",
+    group: "states",
+    severity: Severity::Error,
+    summary: "a current source drives a current that no diode lets pass",
+    why: "Every way on from the source leads through a diode that points against it and has no breakdown \
+          voltage, so what flows in cannot flow out: there is no operating point.",
+    remedy: "Turn the diode or the source round, or give the current another path.",
+    source: Some(
+        "Cut sets of current sources and blocking diodes: Minty, Monotone networks, Proc. R. Soc. \
+                  Lond. A 257 (1960) 194-212",
+    ),
+    failing: "tide gauge buoy: lamp current source\n\
+              ILAMP lamp 0 10m\n\
+              D1 lamp 0 DRED\n\
+              CLAMP lamp 0 1u\n\
+              .model DRED D(IS=1e-18 N=2)\n",
+    passing: "tide gauge buoy: lamp current source\n\
+              ILAMP 0 lamp 10m\n\
+              D1 lamp 0 DRED\n\
+              CLAMP lamp 0 1u\n\
+              .model DRED D(IS=1e-18 N=2)\n",
+    check: Check::States(check),
+};
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    causes(operating, Verdict::None)
+        .iter()
+        .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.contradiction.elements))
+        .map(|cause| super::support::contradiction(&RULE, evidence, operating, cause, "takes part"))
+        .collect()
+}
+
+/// A cut set: a current source takes part.
+pub fn is_ours(evidence: &Evidence<'_>, cause: &Cause<'_>) -> bool {
+    cause.contradiction.elements.iter().any(|&id| is_current(&evidence.circuit.element(id).behaviour))
+}

@@ -1,0 +1,77 @@
+//! Diodes whose state could not be found because the model of something around them is not known.
+
+use super::{Check, Evidence, Rule, in_cases, list};
+use crate::circuit::{ElementId, State};
+use crate::finding::{Finding, Severity};
+use crate::operating::Operating;
+use std::collections::{BTreeMap, BTreeSet};
+
+pub const RULE: Rule = Rule {
+    name: "not-evaluated",
+    group: "states",
+    severity: Severity::Note,
+    summary: "diodes could not be evaluated, since what is around them is not known to the model",
+    why: "An element whose law is not known (a transistor, an unknown part, a value that could not be read) leaves \
+          everything it couples to undetermined. Their wiring is checked all the same.",
+    remedy: "Say how a transistor or switch stands (`*@ hold Q1 on`), hold a supply node that the netlist does \
+             not feed (`*@ supply +5V 5`), or give the missing model.",
+    source: None,
+    failing: "tide gauge buoy: siren driver\n\
+              VCC vcc 0 5\n\
+              R1 vcc a 1k\n\
+              D1 a b DSW\n\
+              XIC b vcc 0 SIREN\n\
+              .model DSW D(IS=2.5n N=1.75)\n\
+              .subckt SIREN p v g\n\
+              B1 p g I=V(v)/1000\n\
+              R1 v g 1meg\n\
+              .ends\n",
+    passing: "tide gauge buoy: siren driver\n\
+              VCC vcc 0 5\n\
+              R1 vcc a 1k\n\
+              D1 a b DSW\n\
+              R2 b 0 1k\n\
+              .model DSW D(IS=2.5n N=1.75)\n",
+    check: Check::States(check),
+};
+
+/// Diodes with one reason, and the conditions in which it holds for the first of them.
+#[derive(Default)]
+struct Group {
+    diodes: BTreeSet<ElementId>,
+    cases: Vec<usize>,
+}
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    let mut groups: BTreeMap<String, Group> = BTreeMap::new();
+    for (number, case) in operating.cases.iter().enumerate() {
+        for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
+            if diode.state != State::NotEvaluated {
+                continue;
+            }
+            let group = groups.entry(diode.not_evaluated.clone().unwrap_or_default()).or_default();
+            if group.cases.last() != Some(&number) {
+                group.cases.push(number);
+            }
+            group.diodes.insert(diode.element);
+        }
+    }
+    let told = groups.iter().filter_map(|(why, g)| judge(evidence, operating, why, g));
+    let mut findings: Vec<Finding> = told.collect();
+    findings.sort_by_key(|f| f.span);
+    findings
+}
+
+fn judge(evidence: &Evidence<'_>, operating: &Operating, why: &str, group: &Group) -> Option<Finding> {
+    let first = *group.diodes.first()?;
+    let names: Vec<String> = group.diodes.iter().map(|&id| evidence.name(id)).collect();
+    let verb = if names.len() == 1 { "is" } else { "are" };
+    let mut message = format!("{} {verb} not evaluated", list(&names));
+    if !why.is_empty() {
+        message.push_str(&format!(": {why}"));
+    }
+    message.push_str(&in_cases(operating, &group.cases));
+    let mut finding = evidence.about(&RULE, first, message).label("state not evaluated");
+    finding.subjects.extend(names.into_iter().skip(1));
+    Some(finding.help(RULE.remedy))
+}

@@ -1,0 +1,95 @@
+//! What the states say, told once over all conditions.
+
+use super::{Evidence, Rule};
+use crate::circuit::{ElementId, ScopeId};
+use crate::finding::Finding;
+use crate::operating::{Case, Contradiction, Operating, Verdict};
+use crate::text::{FileId, Span};
+use rustc_hash::FxHashMap;
+
+/// One cause and the conditions in which it shows.
+pub struct Cause<'a> {
+    /// As the first of the conditions tells it.
+    pub contradiction: &'a Contradiction,
+    /// Numbers of the conditions.
+    pub cases: Vec<usize>,
+}
+
+/// The causes that lead to `verdict`, those about the same elements as one, in order of first appearance.
+pub fn causes(operating: &Operating, verdict: Verdict) -> Vec<Cause<'_>> {
+    let mut causes: Vec<Cause<'_>> = Vec::new();
+    let mut known: FxHashMap<(Vec<ElementId>, &str), usize> = FxHashMap::default();
+    for (number, case) in operating.cases.iter().enumerate() {
+        for contradiction in case.contradictions.iter().filter(|c| c.verdict == verdict) {
+            let at = *known.entry(identity(contradiction)).or_insert(causes.len());
+            match causes.get_mut(at) {
+                Some(cause) if cause.cases.last() == Some(&number) => {}
+                Some(cause) => cause.cases.push(number),
+                None => causes.push(Cause { contradiction, cases: vec![number] }),
+            }
+        }
+    }
+    causes
+}
+
+/// The same elements, in whatever order the walk begins; without elements the words decide.
+fn identity(contradiction: &Contradiction) -> (Vec<ElementId>, &str) {
+    let mut elements = contradiction.elements.clone();
+    elements.sort();
+    let text = if elements.is_empty() { contradiction.text.as_str() } else { "" };
+    (elements, text)
+}
+
+/// ` (in VIN=9 and VIN=16)`; nothing where it holds in every condition.
+pub fn in_cases(operating: &Operating, numbers: &[usize]) -> String {
+    if numbers.len() >= operating.cases.len() {
+        return String::new();
+    }
+    let names: Vec<String> =
+        numbers.iter().filter_map(|&n| operating.cases.get(n)).map(|c: &Case| c.name.clone()).collect();
+    format!(" (in condition {})", super::list(&names))
+}
+
+/// Whether a finding of the wiring tells the same cause already: it names every one of these elements.
+pub fn is_told(evidence: &Evidence<'_>, elements: &[ElementId]) -> bool {
+    let names: Vec<String> = elements.iter().map(|&id| evidence.name(id)).collect();
+    let tells = |f: &Finding| names.iter().all(|name| f.subjects.contains(name));
+    !names.is_empty() && evidence.told().iter().any(tells)
+}
+
+/// The finding about a cause: at its first element in the text, every other one a related place.
+pub fn contradiction(
+    rule: &Rule,
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    cause: &Cause<'_>,
+    role: &str,
+) -> Finding {
+    let elements = &cause.contradiction.elements;
+    let message = format!("{}{}", cause.contradiction.text, in_cases(operating, &cause.cases));
+    let main = main_element(evidence, elements);
+    let mut finding = match main {
+        Some(id) => evidence.about(rule, id, message).label(role),
+        None => evidence.at(rule, ScopeId::ROOT, whole(evidence), message),
+    };
+    for &id in elements.iter().filter(|&&id| Some(id) != main) {
+        if finding.labels.len() < MOST_LABELS {
+            finding = finding.also(evidence.statement(id), role);
+        }
+        finding.subjects.push(evidence.name(id));
+    }
+    finding.help(format!("{} {}", rule.why, rule.remedy))
+}
+
+const MOST_LABELS: usize = 12;
+
+/// A diode is what people look at first; else the first in the text.
+fn main_element(evidence: &Evidence<'_>, elements: &[ElementId]) -> Option<ElementId> {
+    let is_diode = |id: &&ElementId| evidence.circuit.element(**id).letter == b'D';
+    elements.iter().filter(is_diode).min().or(elements.iter().min()).copied()
+}
+
+/// Where no element is to blame: the title, else the start of the file.
+fn whole(evidence: &Evidence<'_>) -> Span {
+    evidence.circuit.title.unwrap_or(Span::new(FileId(0), 0, 0))
+}
