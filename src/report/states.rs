@@ -13,6 +13,8 @@ use crate::operating::{Case, DiodeResult, Drop, Interval, Operating, Quantity, S
 const WIDTH: usize = 96;
 /// Sources named in the line of a condition.
 const SOURCES_SHOWN: usize = 8;
+/// Names of conditions listed in one line.
+const NAMES_SHOWN: usize = 12;
 /// Open quantities listed for a condition.
 const OPEN_SHOWN: usize = 12;
 /// A number below this share of the largest of its kind is rounding, not an answer.
@@ -25,11 +27,17 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
         page.plain("No states were asked for.").end();
         return;
     };
-    for case in &operating.cases {
-        condition(page, circuit, case);
+    conditions(page, circuit, operating);
+    let groups = groups(operating);
+    for group in groups.iter().filter(|g| g.verdict() != Verdict::Unique) {
+        group.write(page, circuit, operating.cases.len() > 1);
     }
+    page.end();
     let views = views(operating);
     tables(page, circuit, &views);
+    for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
+        group.write(page, circuit, operating.cases.len() > 1);
+    }
     closing(page, operating, &views);
 }
 
@@ -72,24 +80,101 @@ fn scale(solution: &Solution) -> (f64, f64) {
 
 // ---- conditions ----
 
-/// `nominal   V1 = 12 V, 27 °C`, the verdict, its reasons, and what is open.
-fn condition(page: &mut Page, circuit: &Circuit, case: &Case) {
-    page.ink(Ink::Strong, &clean(&case.name));
-    page.plain("   ").ink(Ink::Faint, &facts(circuit, case)).end();
-    page.plain("  ").ink(verdict_ink(case.verdict), case.verdict.word());
-    let sentence = verdict_sentence(case);
-    for (n, line) in wrap(&sentence, WIDTH - case.verdict.word().len()).iter().enumerate() {
-        page.plain(if n == 0 { ": " } else { "    " }).plain(line).end();
+/// `nominal: V1 = 12 V, 27 °C; then V1=9, V1=16`
+fn conditions(page: &mut Page, circuit: &Circuit, operating: &Operating) {
+    let Some((first, others)) = operating.cases.split_first() else { return };
+    page.ink(Ink::Strong, &clean(&first.name)).plain(": ").plain(&facts(circuit, first)).end();
+    if !others.is_empty() {
+        let names: Vec<&str> = others.iter().map(|c| c.name.as_str()).collect();
+        paragraph(page, "", &format!("and further {}", some_of(&names)));
     }
-    for cause in &case.contradictions {
-        for line in wrap(&cause.text, WIDTH) {
-            page.plain("    ").plain(&line).end();
+}
+
+/// The first few names, and how many more.
+fn some_of(names: &[&str]) -> String {
+    let shown = &names[..names.len().min(NAMES_SHOWN)];
+    match names.len() - shown.len() {
+        0 => shown.join(", "),
+        more => format!("{} and {more} more", shown.join(", ")),
+    }
+}
+
+fn paragraph(page: &mut Page, indent: &str, text: &str) {
+    for line in wrap(text, WIDTH - indent.len()) {
+        page.plain(indent).plain(&line).end();
+    }
+}
+
+/// Conditions that end alike: one verdict for the same causes.
+struct Group<'a> {
+    cases: Vec<&'a Case>,
+    causes: Vec<&'a str>,
+}
+
+fn groups(operating: &Operating) -> Vec<Group<'_>> {
+    let mut groups: Vec<Group<'_>> = Vec::new();
+    for case in &operating.cases {
+        let causes: Vec<&str> = case.contradictions.iter().map(|c| c.text.as_str()).collect();
+        match groups.iter_mut().find(|g| g.verdict() == case.verdict && g.causes == causes) {
+            Some(group) => group.cases.push(case),
+            None => groups.push(Group { cases: vec![case], causes }),
         }
     }
-    for solution in &case.solutions {
-        open_quantities(page, circuit, solution);
+    groups
+}
+
+impl Group<'_> {
+    fn verdict(&self) -> Verdict {
+        self.cases.first().map_or(Verdict::Unverified, |c| c.verdict)
     }
-    page.end();
+
+    /// The verdict, where it holds, what it means, its causes, and what is open.
+    fn write(&self, page: &mut Page, circuit: &Circuit, with_names: bool) {
+        let Some(first) = self.cases.first() else { return };
+        let names: Vec<&str> = self.cases.iter().map(|c| c.name.as_str()).collect();
+        let place = if with_names { format!(" in {}", some_of(&names)) } else { String::new() };
+        let word = self.verdict().word();
+        let sentence = format!("{word}{place}: {}", self.meaning());
+        for (n, line) in wrap(&sentence, WIDTH).iter().enumerate() {
+            match line.strip_prefix(word).filter(|_| n == 0) {
+                Some(rest) => page.ink(verdict_ink(self.verdict()), word).plain(rest).end(),
+                None => page.plain(line).end(),
+            };
+        }
+        for cause in &self.causes {
+            paragraph(page, "  ", cause);
+        }
+        for solution in &first.solutions {
+            open_quantities(page, circuit, solution);
+        }
+    }
+
+    /// What the verdict means here.
+    fn meaning(&self) -> String {
+        let worst = self.cases.iter().map(|c| c.residual.relative).fold(0.0, f64::max);
+        let sets = self.cases.iter().map(|c| c.solutions.len()).max().unwrap_or(0);
+        match self.verdict() {
+            Verdict::Unique if worst == 0.0 => {
+                "one set of states and no other; it satisfies the circuit laws exactly".into()
+            }
+            Verdict::Unique => format!(
+                "one set of states and no other; put back into the circuit laws, it misses none by more than \
+                 {worst:.0e} of the largest term"
+            ),
+            Verdict::Shared => "every voltage is settled; how some currents divide is open".into(),
+            Verdict::Floating => "every current is settled; some potentials are open".into(),
+            Verdict::SharedFloating => "how some currents divide and some potentials are open".into(),
+            Verdict::Several if self.cases.iter().any(|c| c.truncated) => {
+                format!("more than {sets} sets of states satisfy the circuit laws")
+            }
+            Verdict::Several => format!("{sets} sets of states satisfy the circuit laws"),
+            Verdict::Partial => "parts of the circuit could not be evaluated".into(),
+            Verdict::None => "no set of states satisfies the circuit laws".into(),
+            Verdict::Unverified => {
+                "the result does not satisfy the circuit laws closely enough to be shown".into()
+            }
+        }
+    }
 }
 
 /// `V1 = 12 V, node +5V = 5 V, 27 °C`
@@ -120,29 +205,6 @@ fn verdict_ink(verdict: Verdict) -> Ink {
     }
 }
 
-/// What the verdict means here.
-fn verdict_sentence(case: &Case) -> String {
-    let proof = format!(
-        "put back into the circuit laws it is off by {:.0e} of the largest term",
-        case.residual.relative
-    );
-    match case.verdict {
-        Verdict::Unique => format!("one set of states and no other; {proof}"),
-        Verdict::Shared => "every voltage is settled; how some currents divide is open".into(),
-        Verdict::Floating => "every current is settled; some potentials are open".into(),
-        Verdict::SharedFloating => "how some currents divide and some potentials are open".into(),
-        Verdict::Several => {
-            let at_least = if case.truncated { "at least " } else { "" };
-            format!("{at_least}{} sets of states satisfy the circuit laws", case.solutions.len())
-        }
-        Verdict::Partial => "parts of the circuit could not be evaluated".into(),
-        Verdict::None => "no set of states satisfies the circuit laws".into(),
-        Verdict::Unverified => {
-            "the result does not satisfy the circuit laws closely enough to be shown".into()
-        }
-    }
-}
-
 /// The nodes and branches whose value is open.
 fn open_quantities(page: &mut Page, circuit: &Circuit, solution: &Solution) {
     let nodes = solution.nodes.iter().filter_map(|n| {
@@ -153,11 +215,11 @@ fn open_quantities(page: &mut Page, circuit: &Circuit, solution: &Solution) {
     });
     let open: Vec<_> = nodes.chain(branches).collect();
     for (name, Interval { low, high }, unit) in open.iter().take(OPEN_SHOWN) {
-        let text = format!("    open: {}  {}", clean(name), interval(*low, *high, unit));
+        let text = format!("  open: {}  {}", clean(name), interval(*low, *high, unit));
         page.ink(Ink::Warning, &text).end();
     }
     if open.len() > OPEN_SHOWN {
-        page.plain(&format!("    and {} more open", open.len() - OPEN_SHOWN)).end();
+        page.plain(&format!("  and {} more open", open.len() - OPEN_SHOWN)).end();
     }
 }
 
@@ -183,8 +245,7 @@ fn tables(page: &mut Page, circuit: &Circuit, views: &[SetView<'_>]) {
     }
     if !steady.is_empty() {
         if views.len() > 1 {
-            let title = format!("the same state in all {} conditions", views.len());
-            page.ink(Ink::Strong, &title).end();
+            page.ink(Ink::Strong, "the same state in every condition").end();
         }
         write_rows(page, circuit, &steady, false);
         page.end();
@@ -247,8 +308,8 @@ impl Row<'_> {
             margin.map_or_else(Cell::default, |m| figure(m, "V").into()),
         ];
         if with_conditions {
-            let names: Vec<String> = self.results.iter().map(|(v, _)| clean(&v.name)).collect();
-            cells.push(Cell::word(names.join(", ")));
+            let names: Vec<&str> = self.results.iter().map(|(v, _)| v.name.as_str()).collect();
+            cells.push(Cell::word(clean(&some_of(&names))));
         }
         cells
     }
@@ -330,4 +391,128 @@ fn closing(page: &mut Page, operating: &Operating, views: &[SetView<'_>]) {
     }
     page.plain(&format!("; {}, ", counted(operating.cases.len(), "condition")));
     page.plain(&counted(solves, "factorization")).end();
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::analysis::analyse;
+    use crate::config::Options;
+    use crate::operating::{Contradiction, DropOrigin, NodeResult, Residual};
+    use crate::text::Memory;
+    use std::path::Path;
+
+    const NETLIST: &str =
+        "t\nV1 in 0 12\nR1 in a 1k\nD1 a 0 DX\nD2 in b DX\nD3 0 b DX\nI1 b 0 1m\n.model DX D\n";
+
+    fn diode(element: usize, state: State, current: Quantity, voltage: f64) -> DiodeResult {
+        let origin = DropOrigin::Model { model: "DX".into(), decade: 1e-3 };
+        DiodeResult {
+            element: ElementId::new(element),
+            state,
+            not_evaluated: None,
+            voltage: Quantity::Known(voltage),
+            current,
+            power: None,
+            drop: Drop { volts: 0.7, written: false, origin },
+            breakdown: None,
+            series: 0.0,
+            view: None,
+            margin: Some(1.234),
+        }
+    }
+
+    fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
+        let node = NodeResult {
+            node: crate::circuit::NodeId::new(1),
+            voltage: Quantity::Open(Interval { low: 0.0, high: f64::INFINITY }),
+        };
+        let nodes = if verdict == Verdict::Floating { vec![node] } else { Vec::new() };
+        let cause = Contradiction { verdict, text: "D2 alone leads there".into(), elements: Vec::new() };
+        Case {
+            name: name.into(),
+            sources: vec![(ElementId::new(0), 12.0)],
+            supplies: Vec::new(),
+            instant: false,
+            temperature: 27.0,
+            verdict,
+            contradictions: if verdict == Verdict::Unique { Vec::new() } else { vec![cause] },
+            truncated: false,
+            solves: 2,
+            residual: Residual { current: 0.0, voltage: 0.0, relative: 2e-16 },
+            solutions: vec![Solution { diodes, nodes, branches: Vec::new() }],
+        }
+    }
+
+    fn shown(cases: Vec<Case>) -> String {
+        let mut files = Memory::with("a.net", NETLIST);
+        let mut analysis = analyse(&mut files, Path::new("a.net"), &Options::default()).unwrap();
+        analysis.operating = Some(Operating { cases, left_to_time: Vec::new(), why: None });
+        let mut page = Page::new(false);
+        states(&mut page, &analysis);
+        page.text().to_owned()
+    }
+
+    #[test]
+    fn what_changes_stands_first_and_the_rest_once() {
+        let known = Quantity::Known;
+        let nominal = vec![
+            diode(2, State::Conducting, known(11.3e-3), 0.7),
+            diode(3, State::Conducting, known(1e-3), 0.7),
+            diode(4, State::Blocking, known(0.0), -11.3),
+        ];
+        let low = vec![
+            diode(2, State::Blocking, known(0.0), 0.5),
+            diode(3, State::Conducting, known(0.4e-3), 0.7),
+            diode(4, State::Blocking, known(0.0), 1e-15),
+        ];
+        let cases = vec![case("nominal", Verdict::Unique, nominal), case("V1=0.5", Verdict::Unique, low)];
+        let expected = "\
+nominal: V1 = 12 V, 27 °C
+and further V1=0.5
+
+changes with the condition
+  diode   state        current   voltage     drop   drop from         margin   in
+  D1      conducting   11.3 mA    700 mV   700 mV   model DX at 1mA   1.23 V   nominal
+          blocking        0 A     500 mV   700 mV   model DX at 1mA   1.23 V   V1=0.5
+
+the same state in every condition
+  diode   state                 current        voltage     drop   drop from         margin
+  D2      conducting   400 µA … 1.00 mA         700 mV   700 mV   model DX at 1mA   1.23 V
+  D3      blocking                 0 A    -11.3 … 0 V    700 mV   model DX at 1mA   1.23 V
+
+unique in nominal, V1=0.5: one set of states and no other; put back into the circuit laws, it
+misses none by more than 2e-16 of the largest term
+3 diodes: 2 conducting, 1 blocking (nominal); 2 conditions, 4 factorizations
+";
+        let shown = shown(cases);
+        assert_eq!(shown, expected, "\n{shown}");
+    }
+
+    #[test]
+    fn what_is_open_is_an_interval_with_its_cause() {
+        let open = Quantity::Open(Interval { low: 0.0, high: 2.15e-3 });
+        let mut lost = diode(4, State::NotEvaluated, Quantity::Unknown, 0.0);
+        lost.voltage = Quantity::Unknown;
+        lost.margin = None;
+        lost.not_evaluated = Some("Q1 is a transistor".into());
+        let diodes =
+            vec![diode(2, State::Conducting, open, 0.7), diode(3, State::Conducting, open, 0.7), lost];
+        let expected = "\
+nominal: V1 = 12 V, 27 °C
+floating: every current is settled; some potentials are open
+  D2 alone leads there
+  open: node in  at least 0 V
+
+  diode   state           current               voltage     drop   drop from         margin
+  D1      conducting      open: 0 A … 2.15 mA    700 mV   700 mV   model DX at 1mA   1.23 V
+  D2      conducting      open: 0 A … 2.15 mA    700 mV   700 mV   model DX at 1mA   1.23 V
+  D3      not evaluated   -                           -   700 mV   model DX at 1mA
+  D3 is not evaluated: Q1 is a transistor
+
+3 diodes: 2 conducting, 1 not evaluated; 1 condition, 2 factorizations
+";
+        let shown = shown(vec![case("nominal", Verdict::Floating, diodes)]);
+        assert_eq!(shown, expected, "\n{shown}");
+    }
 }

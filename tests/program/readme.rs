@@ -1,48 +1,55 @@
-//! The screens and tables in the README are what the program really shows.
+//! The screens and the table of rules in the README are what the program really shows. After a change,
+//! `UPDATE_README=1 cargo test --test program readme` writes them anew; read what it wrote before you commit.
 
 use crate::runner::{root, run};
+use std::fmt::Write as _;
 
-fn readme() -> String {
-    std::fs::read_to_string(root().join("README.md")).unwrap()
+const FENCE: &str = "```";
+const RULES: &str = "<!-- rules -->";
+
+#[test]
+fn the_readme_shows_what_the_program_does() {
+    let path = root().join("README.md");
+    let written = std::fs::read_to_string(&path).unwrap();
+    let real = with_rules(&with_screens(&written));
+    if std::env::var_os("UPDATE_README").is_some() {
+        std::fs::write(&path, &real).unwrap();
+    }
+    for (line, (written, real)) in written.lines().zip(real.lines()).enumerate() {
+        assert_eq!(written, real, "README.md:{}; UPDATE_README=1 writes it anew", line + 1);
+    }
+    assert_eq!(written.len(), real.len());
+    for command in ["$ kneewise check ", "$ kneewise states "] {
+        assert!(written.contains(command), "the README shows no `{command}`");
+    }
 }
 
-/// Every fenced block that opens with `$ kneewise …`, as its arguments and what stands under it.
-fn screens(text: &str) -> Vec<(String, String)> {
-    let mut screens = Vec::new();
-    for block in text.split("```").skip(1).step_by(2) {
-        let Some(rest) = block.split_once('\n').map(|(_, rest)| rest) else { continue };
-        let Some((line, shown)) = rest.split_once('\n') else { continue };
-        if let Some(arguments) = line.strip_prefix("$ kneewise ") {
-            screens.push((arguments.to_owned(), shown.to_owned()));
+/// Every fenced block whose first line is `$ kneewise …` with what that command shows.
+fn with_screens(text: &str) -> String {
+    let mut out = String::new();
+    for (n, part) in text.split(FENCE).enumerate() {
+        if n > 0 {
+            out.push_str(FENCE);
+        }
+        let first = part.strip_prefix('\n').and_then(|p| p.lines().next());
+        match first.and_then(|line| line.strip_prefix("$ kneewise ")).filter(|_| n % 2 == 1) {
+            Some(arguments) => {
+                let words: Vec<&str> = arguments.split(' ').collect();
+                write!(out, "\n$ kneewise {arguments}\n{}\n", run(&words).out.trim_end()).unwrap();
+            }
+            None => out.push_str(part),
         }
     }
-    screens
+    out
 }
 
-#[test]
-fn screens_in_the_readme_are_real() {
-    let screens = screens(&readme());
-    let commands: Vec<&str> = screens.iter().map(|(a, _)| a.split(' ').next().unwrap()).collect();
-    assert!(commands.contains(&"check") && commands.contains(&"states"), "{commands:?}");
-    for (arguments, shown) in screens {
-        let words: Vec<&str> = arguments.split(' ').collect();
-        let run = run(&words);
-        assert_eq!(shown.trim_end(), run.out.trim_end(), "kneewise {arguments}");
-    }
-}
-
-#[test]
-fn the_rule_table_lists_every_rule() {
-    let readme = readme();
-    let table = readme.split("<!-- rules -->").nth(1).unwrap_or_default();
-    assert_eq!(table.trim(), rule_table().trim(), "put this between the two marks:\n{}", rule_table());
-}
-
-/// The table as it must stand in the README.
-fn rule_table() -> String {
-    let mut table = String::from("| rule | severity | what it reports |\n|---|---|---|\n");
+/// The table between the two marks, from the rules themselves.
+fn with_rules(text: &str) -> String {
+    let parts: Vec<&str> = text.split(RULES).collect();
+    let [before, _, after] = parts[..] else { panic!("the README has no two `{RULES}` marks") };
+    let mut table = String::from("\n| rule | severity | what it reports |\n|---|---|---|\n");
     for rule in kneewise::rules::all() {
-        table.push_str(&format!("| `{}` | {} | {} |\n", rule.name, rule.severity.word(), rule.summary));
+        writeln!(table, "| `{}` | {} | {} |", rule.name, rule.severity.word(), rule.summary).unwrap();
     }
-    table
+    format!("{before}{RULES}{table}{RULES}{after}")
 }
