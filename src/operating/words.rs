@@ -12,7 +12,17 @@ const MOST_NAMES: usize = 8;
 /// The causes of a part's verdict; none where it is unique.
 pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) -> Vec<Contradiction> {
     let words = Words { setting, assembly };
-    part.reasons.iter().map(|reason| words.cause(part.verdict, reason)).collect()
+    part.reasons.iter().map(|reason| words.cause(share(part.verdict, reason), reason)).collect()
+}
+
+/// What one reason contributes to the verdict: where both are open, a loop leaves a split open and a cut set a
+/// potential.
+fn share(verdict: Verdict, reason: &Reason) -> Verdict {
+    match (verdict, reason) {
+        (Verdict::SharedFloating, Reason::Loop { .. }) => Verdict::Shared,
+        (Verdict::SharedFloating, Reason::CutSet { .. }) => Verdict::Floating,
+        _ => verdict,
+    }
 }
 
 /// `A, B and C`, shortened where there are many.
