@@ -21,8 +21,8 @@ Exit code: 0 nothing at or above --fail-on, 1 something is, 2 the job could not 
 #[command(name = "kneewise", version, styles = STYLES, after_help = EXIT, max_term_width = 100)]
 #[command(disable_help_subcommand = true)]
 pub struct Args {
-    /// Colour: where the output is a terminal and NO_COLOR is not set, always, or never
-    #[arg(long, global = true, value_name = "WHEN", default_value = "auto", hide_possible_values = false)]
+    /// When to colour the output
+    #[arg(long, global = true, value_name = "WHEN", default_value = "auto")]
     pub color: ColorChoice,
     #[command(subcommand)]
     pub command: Command,

@@ -6,6 +6,11 @@ use super::input::{Input, wanted};
 use super::output::Console;
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::report::{self, Summary};
+use kneewise::text::{FileId, Span};
+use std::collections::BTreeSet;
+
+/// Number of the root file in its own sources.
+const ROOT: FileId = FileId(0);
 
 pub fn run(console: &mut Console, command: &Check) -> End {
     let wanted = wanted(&command.paths);
@@ -15,6 +20,7 @@ pub fn run(console: &mut Console, command: &Check) -> End {
     }
     let options = command.common.options(None);
     let (mut input, mut summary, mut kept) = (Input::default(), Summary::default(), Vec::new());
+    let mut told = Told::default();
     for (n, file) in wanted.files.iter().enumerate() {
         console.progress(n, wanted.files.len());
         match analyse(&mut input, file, &options) {
@@ -22,7 +28,8 @@ pub fn run(console: &mut Console, command: &Check) -> End {
                 console.say(&format!("{}: {}", file.display(), problem.0));
                 failed = true;
             }
-            Ok(analysis) => {
+            Ok(mut analysis) => {
+                told.keep_new(&mut analysis);
                 summary.add(&analysis);
                 match command.common.format {
                     Format::Text => failed |= !console.result(&text(console, &analysis)),
@@ -36,6 +43,22 @@ pub fn run(console: &mut Console, command: &Check) -> End {
         true => End::Failed,
         false if command.common.fail_on.reached_by(summary.worst()) => End::Found,
         false => End::Clean,
+    }
+}
+
+/// What was told about included files: two netlists that share a file share its findings, told once.
+#[derive(Default)]
+struct Told(BTreeSet<(String, Span, &'static str, String)>);
+
+impl Told {
+    fn keep_new(&mut self, analysis: &mut Analysis) {
+        let sources = &analysis.sources;
+        analysis.findings.retain(|finding| {
+            let at = finding.span.file;
+            let place = Span { file: ROOT, ..finding.span };
+            at == ROOT
+                || self.0.insert((sources.name(at).to_owned(), place, finding.rule, finding.message.clone()))
+        });
     }
 }
 

@@ -1,7 +1,7 @@
 //! Tests of the built program, as a person or a pipeline runs it: streams, exit codes, formats, the demo
 //! netlists and the pages of the README.
 
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, clippy::panic)]
 
 mod arguments;
 mod fixtures;
