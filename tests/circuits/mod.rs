@@ -158,17 +158,36 @@ impl Circuit {
         self.nodes.retain(|_| used.next() == Some(true));
     }
 
-    /// The netlist.
+    /// The netlist. In small circuits every diode has a model of its own, and notes on diodes and on models take
+    /// turns; in large ones equal diodes share a model.
     pub fn text(&self) -> String {
         let mut text = format!("{}\n", self.title);
-        for element in &self.elements {
-            self.line(&mut text, element);
+        let shared = self.elements.len() > 100;
+        let mut models: Vec<&Diode> = Vec::new();
+        for (at, element) in self.elements.iter().enumerate() {
+            match &element.kind {
+                Kind::D(diode) if shared => {
+                    let known = models.iter().position(|other| *other == diode);
+                    let number = known.unwrap_or(models.len());
+                    self.line(&mut text, element, &format!("DK{number}"));
+                    if known.is_none() {
+                        models.push(diode);
+                        model(&mut text, &format!("DK{number}"), &format!("DK{number}"), diode);
+                    }
+                }
+                Kind::D(diode) => {
+                    let name = format!("M{}", element.name);
+                    self.line(&mut text, element, &name);
+                    model(&mut text, &name, if at % 2 == 0 { &name } else { &element.name }, diode);
+                }
+                _ => self.line(&mut text, element, ""),
+            }
         }
         text.push_str(".end\n");
         text
     }
 
-    fn line(&self, text: &mut String, element: &Element) {
+    fn line(&self, text: &mut String, element: &Element, model: &str) {
         let Element { name, from, to, kind } = element;
         let node = |n: usize| self.nodes[n].as_str();
         let _ = write!(text, "{name} {} {} ", node(*from), node(*to));
@@ -180,15 +199,17 @@ impl Circuit {
                 writeln!(text, "{} {} {gain}", node(control.0), node(control.1))
             }
             Kind::F { gain, control } | Kind::H { gain, control } => writeln!(text, "{control} {gain}"),
-            Kind::D(diode) => {
-                let _ = write!(text, "M{name}\n.model M{name} D(RS={}", diode.series);
-                if let Some(breakdown) = &diode.breakdown {
-                    let _ = write!(text, " BV={breakdown}");
-                }
-                writeln!(text, ")\n*@ drop {name} {}", diode.drop)
-            }
+            Kind::D(_) => writeln!(text, "{model}"),
         };
     }
+}
+
+fn model(text: &mut String, name: &str, noted: &str, diode: &Diode) {
+    let _ = write!(text, ".model {name} D(RS={}", diode.series);
+    if let Some(breakdown) = &diode.breakdown {
+        let _ = write!(text, " BV={breakdown}");
+    }
+    let _ = writeln!(text, ")\n*@ drop {noted} {}", diode.drop);
 }
 
 impl Kind {

@@ -13,7 +13,7 @@
 //!   short with ideal diodes.
 
 // each test binary takes its own share of this
-#![allow(dead_code)]
+#![allow(dead_code, unused_imports)]
 
 mod affine;
 mod answer;
