@@ -17,6 +17,8 @@ mod proof;
 mod reach;
 mod result;
 mod switch;
+#[cfg(test)]
+mod tests;
 mod view;
 mod why;
 mod words;

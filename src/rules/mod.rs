@@ -4,8 +4,8 @@
 
 mod support;
 
-pub use support::{Check, Evidence, Rule, Skipped, accept, run};
 use support::{Cause, LooseEnd, causes, count, in_cases, is_told, list};
+pub use support::{Check, Evidence, Rule, Skipped, accept, run};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 
