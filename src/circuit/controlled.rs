@@ -5,6 +5,7 @@ use super::element::{Problem, Read};
 use super::expand::Expander;
 use super::ids::ElementId;
 use super::line::Line;
+use super::parameter::Worth;
 use super::value::Quantity;
 use crate::finding::{Finding, Severity};
 use crate::text::Span;
@@ -49,7 +50,7 @@ impl Expander<'_> {
     fn linear_polynomial(&mut self, line: &Line<'_>, first: usize) -> Option<Value> {
         let mut values = Vec::new();
         for number in first..line.len() {
-            values.push(self.value(line, line.word(number)?, Quantity::Plain)?);
+            values.push(self.value(line, line.word(number)?, Quantity::Plain).value()?);
         }
         let straight = values.iter().enumerate().all(|(n, v)| n == 1 || v.number == 0.0);
         match values.as_slice() {
@@ -89,7 +90,12 @@ impl Expander<'_> {
 
     fn gain(&mut self, line: &Line<'_>, word: usize) -> Result<Value, Problem> {
         let keyed = line.pair("gain").or_else(|| line.word(word));
-        keyed.and_then(|t| self.value(line, t, Quantity::Plain)).ok_or_else(|| Problem {
+        let worth = keyed.map_or(Worth::Word, |t| self.value(line, t, Quantity::Plain));
+        if matches!(worth, Worth::Told | Worth::Moving) {
+            return Err(Problem::told("a value that could not be evaluated"));
+        }
+        worth.value().ok_or_else(|| Problem {
+            told: false,
             span: line.word(word).map_or(line.span, |t| line.at(t)),
             message: match line.word_str(word) {
                 "" => format!("{} has no gain", line.word_str(0)),
@@ -104,9 +110,10 @@ impl Expander<'_> {
     pub(super) fn coupling(&mut self, line: &Line<'_>, id: ElementId) -> Read {
         let last = line.len().saturating_sub(1);
         let coefficient =
-            line.word(last).filter(|_| last >= 2).and_then(|t| self.value(line, t, Quantity::Plain));
+            line.word(last).filter(|_| last >= 2).and_then(|t| self.value(line, t, Quantity::Plain).value());
         let Some(coefficient) = coefficient.filter(|_| last >= 3) else {
             return Err(Problem {
+                told: false,
                 span: line.span,
                 message: format!("{} needs two or more inductors and then one coefficient", line.word_str(0)),
                 reason: "a coupling that could not be read",
@@ -179,7 +186,7 @@ impl Expander<'_> {
         self.tell(
             Finding::new("missing-element", Severity::Error, span, message)
                 .label(format!("no {wanted}"))
-                .about(user)
+                .about(self.here(&user))
                 .help("correct the name; until then the element counts as unknown on its nodes"),
         );
         None

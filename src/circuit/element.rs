@@ -4,17 +4,33 @@ use super::behaviour::{Behaviour, Value};
 use super::expand::Expander;
 use super::ids::ElementId;
 use super::line::Line;
+use super::parameter::Worth;
 use super::value::Quantity;
 use crate::finding::{Edit, Finding, Severity};
 use crate::syntax;
-use crate::text::Span;
+use crate::text::{FileId, Span};
 
 /// Why an element could not be read: where, in one sentence, and what to do.
 pub(super) struct Problem {
     pub span: Span,
+    /// A finding has told it already.
+    pub told: bool,
     pub message: String,
     pub reason: &'static str,
     pub help: String,
+}
+
+impl Problem {
+    /// One that a finding has told already, or that needs none.
+    pub fn told(reason: &'static str) -> Self {
+        Problem {
+            span: Span::new(FileId(0), 0, 0),
+            told: true,
+            message: String::new(),
+            reason,
+            help: String::new(),
+        }
+    }
 }
 
 /// What stands behind the nodes, or why it could not be read.
@@ -131,8 +147,11 @@ impl Expander<'_> {
         }
         let keyed = line.pair(key).or_else(|| line.pair("value"));
         for token in keyed.into_iter().chain([rest, rest + 1].into_iter().filter_map(|n| line.word(n))) {
-            if let Some(value) = self.value(line, token, quantity) {
-                return Ok((value, multiple));
+            match self.value(line, token, quantity) {
+                Worth::Is(value) => return Ok((value, multiple)),
+                Worth::Word => {}
+                Worth::Told => return Err(Problem::told("a value that could not be evaluated")),
+                Worth::Moving => return Err(Problem::told("a value that depends on the circuit")),
             }
         }
         if let Some(value) = self.model_value(line, rest, key) {
@@ -145,12 +164,14 @@ impl Expander<'_> {
         let name = line.word_str(0);
         match keyed.or_else(|| line.word(rest)) {
             Some(token) => Problem {
+                told: false,
                 span: line.at(token),
                 message: format!("the value of {name}, {}, is no number", line.str(token)),
                 reason: "a value that could not be read",
                 help: "write a number such as 4.7k, an expression in braces, or the name of a parameter or model".into(),
             },
             None => Problem {
+                told: false,
                 span: line.span,
                 message: format!("{name} has nodes {} and {} but no value", line.word_str(1), line.word_str(2)),
                 reason: "no value",
@@ -171,13 +192,14 @@ impl Expander<'_> {
             format!("the {text} of {name} is two words to a reader of netlists: a comma separates, it is no decimal point"),
         )
         .label(format!("read here as {meant}"))
-        .about(name)
+        .about(self.here(name))
         .help(format!("write {meant}"))
         .fix(format!("write {meant}"), vec![Edit { span, replacement: meant.clone() }]);
         self.tell(finding);
         match value {
             Some(number) => Ok(Value { number: number.value, written: true, span }),
             None => Err(Problem {
+                told: false,
                 span,
                 message: format!("{text} is no number"),
                 reason: "a value that could not be read",
@@ -194,6 +216,7 @@ impl Expander<'_> {
             char::from(letter)
         );
         let problem = Problem {
+            told: false,
             span: line.span,
             message,
             reason: "too few nodes",
@@ -204,12 +227,14 @@ impl Expander<'_> {
 
     /// Tells the problem and keeps the element as unknown on its nodes.
     pub(super) fn unreadable(&mut self, line: &Line<'_>, problem: Problem) -> Behaviour {
-        self.circuit.incomplete = true;
-        let finding = Finding::new("unreadable-line", Severity::Error, problem.span, problem.message)
-            .label(problem.reason)
-            .about(line.word_str(0))
-            .help(problem.help);
-        self.tell(finding);
+        self.circuit.incomplete |= !problem.told;
+        if !problem.told {
+            let finding = Finding::new("unreadable-line", Severity::Error, problem.span, problem.message)
+                .label(problem.reason)
+                .about(self.here(line.word_str(0)))
+                .help(problem.help);
+            self.tell(finding);
+        }
         Behaviour::Unknown { reason: problem.reason }
     }
 
@@ -238,7 +263,7 @@ impl Expander<'_> {
             format!("{name} begins with {}, which stands for no element known here", char::from(letter)),
         )
         .label("kept as an unknown element on its nodes")
-        .about(name)
+        .about(self.here(name))
         .help("if it is prose, begin the line with *; if it is an element, no statement is made about what it does");
         self.tell(finding);
         let first_pin = self.circuit.pins.len();

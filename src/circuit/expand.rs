@@ -21,7 +21,7 @@ pub struct Overrides {
 
 /// An instance while its lines are read.
 #[derive(Debug, Default)]
-pub(super) struct Frame {
+pub(super) struct Frame<'a> {
     pub scope: ScopeId,
     pub block: usize,
     /// Nodes by folded name (instances only; the root has a table).
@@ -30,6 +30,9 @@ pub(super) struct Frame {
     pub elements: FxHashMap<Symbol, ElementId>,
     /// Elements that name other elements, resolved when all of the instance are known.
     pub late: Vec<(ElementId, Vec<Span>)>,
+    /// Instances by folded name, with the place of the name.
+    pub instances: FxHashMap<Symbol, Span>,
+    pub parameters: super::parameter::Scope<'a>,
 }
 
 /// The work in progress.
@@ -39,13 +42,23 @@ pub(crate) struct Expander<'a> {
     pub(super) overrides: &'a Overrides,
     pub(super) circuit: Circuit,
     pub(super) told: Told,
-    pub(super) frames: Vec<Frame>,
+    pub(super) frames: Vec<Frame<'a>>,
+    /// Expressions within expressions.
+    pub(super) depth: usize,
     /// Root nodes and elements by folded name.
     root_nodes: Vec<NodeId>,
     root_elements: Vec<ElementId>,
     pub(super) globals: FxHashSet<Symbol>,
     pub(super) model_ids: FxHashMap<(usize, ScopeId), super::ModelId>,
     pub(super) undefined_models: Vec<(Span, ElementId)>,
+    /// Where the missing name stands, and the number of the element.
+    pub(super) missing_subcircuits: Vec<(Span, usize)>,
+    /// Blocks that an instance was made of.
+    pub(super) used_blocks: Vec<bool>,
+    /// Instances and notes so far.
+    pub(super) parts: usize,
+    /// A limit was reached.
+    pub(super) stopped: bool,
 }
 
 const NONE: u32 = u32::MAX;
@@ -60,15 +73,24 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
         circuit: Circuit { title: parsed.title, incomplete: parsed.incomplete, ..Circuit::default() },
         told: Told::default(),
         frames: Vec::new(),
+        depth: 0,
         root_nodes: Vec::new(),
         root_elements: Vec::new(),
         globals: FxHashSet::default(),
         model_ids: FxHashMap::default(),
         undefined_models: Vec::new(),
+        missing_subcircuits: Vec::new(),
+        used_blocks: vec![false; parsed.blocks.len()],
+        parts: 0,
+        stopped: false,
     };
+    expander.circuit.includes.clone_from(&parsed.includes);
     expander.root();
-    let circuit = expander.circuit;
-    (circuit, expander.told.finish())
+    let Expander { circuit, told, .. } = expander;
+    let counts = told.counts();
+    let mut findings = told.finish();
+    super::told::tell_rest(&mut findings, &counts);
+    (circuit, findings)
 }
 
 impl<'a> Expander<'a> {
@@ -76,7 +98,16 @@ impl<'a> Expander<'a> {
         self.sources
     }
 
-    pub(super) fn tell(&mut self, finding: Finding) {
+    /// A name with the path of the innermost instance before it.
+    pub(super) fn here(&self, name: &str) -> String {
+        let path = self.frames.iter().skip(1).filter_map(|f| self.circuit.scopes.get(f.scope.index()));
+        path.map(|s| self.circuit.text(s.name)).chain([name]).collect::<Vec<_>>().join(":")
+    }
+
+    /// Tells a finding, with the way that leads to its place.
+    pub(super) fn tell(&mut self, mut finding: Finding) {
+        let scope = self.frames.last().map_or(ScopeId::ROOT, |f| f.scope);
+        finding.trail = self.circuit.trail(scope, finding.span);
         self.told.tell(finding);
     }
 
@@ -96,20 +127,38 @@ impl<'a> Expander<'a> {
             subcircuit: empty,
             definition: nowhere,
         });
-        self.frames.push(Frame::default());
+        let mut frame = Frame::default();
+        super::parameter::declare(&mut frame.parameters, &self.parsed.blocks[0].parameters, 0);
+        self.frames.push(frame);
+        self.preset();
+        for &span in &self.parsed.globals {
+            let symbol = self.circuit.names.intern(self.sources.slice(span));
+            self.globals.insert(self.circuit.names.fold(symbol));
+        }
         self.settings();
         self.body(0);
-        self.late();
-        self.frames.pop();
+        self.finish_frame();
         self.tell_undefined_models();
+        self.tell_missing_subcircuits();
+    }
+
+    /// What is left to do when all lines of an instance are read; closes its frame.
+    pub(super) fn finish_frame(&mut self) {
+        self.late();
+        self.initial_voltages();
+        self.frames.pop();
     }
 
     /// All statements of a block, into the innermost frame.
-    fn body(&mut self, block: usize) {
+    pub(super) fn body(&mut self, block: usize) {
         let parsed = self.parsed;
         let mut fields = Fields::default();
         for range in &parsed.blocks[block].body {
             for statement in parsed.statements.get(range.clone()).unwrap_or_default() {
+                if self.parts + self.circuit.elements.len() > super::instance::MOST_PARTS {
+                    self.circuit.incomplete = true;
+                    return self.tell_limit(statement.span, super::instance::TOO_MANY);
+                }
                 fields = self.statement(*statement, fields);
             }
         }
@@ -117,6 +166,7 @@ impl<'a> Expander<'a> {
 
     fn statement(&mut self, statement: Statement, fields: Fields) -> Fields {
         if statement.is_note {
+            self.parts += 1;
             self.note(statement.span);
             return fields;
         }
@@ -131,7 +181,7 @@ impl<'a> Expander<'a> {
                     format!("{} cannot be read to its end: {}", line.word_str(0), broken.what),
                 )
                 .label(broken.what)
-                .about(line.word_str(0))
+                .about(self.here(line.word_str(0)))
                 .help("close it on this statement; until then the element counts as unknown on its nodes"),
             );
         }
@@ -139,7 +189,7 @@ impl<'a> Expander<'a> {
         line.fields
     }
 
-    pub(super) fn frame(&mut self) -> &mut Frame {
+    pub(super) fn frame(&mut self) -> &mut Frame<'a> {
         if self.frames.is_empty() {
             self.frames.push(Frame::default());
         }
@@ -197,7 +247,7 @@ impl<'a> Expander<'a> {
         )
         .label("the second of that name")
         .also(first.name_span, "the first of that name")
-        .about(&name)
+        .about(self.here(&name))
         .help("rename one of them: other tools refuse the file or drop one of the two without a word");
         self.tell(finding);
     }
@@ -219,8 +269,10 @@ impl<'a> Expander<'a> {
         }
         let symbol = self.circuit.names.intern(name);
         let folded = self.circuit.names.fold(symbol);
-        let in_root = self.frames.len() <= 1 || self.globals.contains(&folded);
         let next = NodeId::new(self.circuit.nodes.len());
+        let in_root = self.frames.len() <= 1
+            // a port of that name hides the global node
+            || self.globals.contains(&folded) && !self.frame().nodes.contains_key(&folded);
         let id = if in_root {
             let slot = slot(&mut self.root_nodes, folded, NodeId(NONE));
             if slot.0 == NONE {
@@ -235,6 +287,20 @@ impl<'a> Expander<'a> {
             self.circuit.nodes.push(Node { name: symbol, scope, first: span });
         }
         id
+    }
+
+    /// The node of that name as the innermost frame sees it, where it is known already.
+    pub(super) fn find_node(&mut self, name: &str) -> Option<NodeId> {
+        if name == "0" || name.eq_ignore_ascii_case("gnd") {
+            return Some(NodeId::GROUND);
+        }
+        let folded = self.circuit.names.find(name)?;
+        let in_root = self.root_nodes.get(folded.index()).copied().filter(|id| id.0 != NONE);
+        if self.frames.len() <= 1 {
+            return in_root;
+        }
+        let own = self.frame().nodes.get(&folded).copied();
+        own.or_else(|| in_root.filter(|_| self.globals.contains(&folded)))
     }
 
     /// Puts the words from `first` up to but not including `end` down as pins.

@@ -1,11 +1,14 @@
 //! One statement under the reading glass: its words with their text and their places.
 
-use crate::syntax::{Broken, Fields, Token, TokenKind};
+use crate::syntax::{Broken, Fields, Token};
 use crate::text::{FileId, Sources, Span};
 
 /// A statement, its file's text and its fields.
 pub(crate) struct Line<'t> {
+    /// The text that tokens count in: the whole file's, or the statement's own.
     pub text: &'t str,
+    /// Where that text begins in the file.
+    pub base: u32,
     pub span: Span,
     pub fields: Fields,
 }
@@ -15,12 +18,12 @@ impl<'t> Line<'t> {
     pub fn read(sources: &'t Sources, span: Span, mut fields: Fields) -> (Self, Result<(), Broken>) {
         let text = sources.get(span.file).map_or("", |f| f.text.as_str());
         let outcome = fields.read(text, span.start, span.end);
-        (Line { text, span, fields }, outcome)
+        (Line { text, base: 0, span, fields }, outcome)
     }
 
     /// The place of a token.
     pub fn at(&self, token: Token) -> Span {
-        Span { file: self.file(), start: token.start, end: token.end }
+        Span { file: self.file(), start: self.base + token.start, end: self.base + token.end }
     }
 
     pub fn file(&self) -> FileId {
@@ -61,10 +64,5 @@ impl<'t> Line<'t> {
     /// Place of the name at the head.
     pub fn head(&self) -> Span {
         self.word(0).map_or(self.span, |t| self.at(t))
-    }
-
-    /// Whether the token is a plain word.
-    pub fn is_word(&self, number: usize) -> bool {
-        self.word(number).is_some_and(|t| t.kind == TokenKind::Word)
     }
 }

@@ -2,22 +2,29 @@
 //! them was written. Built from statements by `build`; nothing here judges or solves.
 
 mod behaviour;
+mod block;
 mod build;
 mod controlled;
+mod dot;
 mod element;
 mod expand;
+mod functions;
 mod ids;
+mod include;
 mod instance;
 mod line;
 mod note;
 mod notes;
+mod parameter;
 mod parsed;
 mod read;
 mod semiconductor;
 mod settings;
 mod shape;
 mod source;
+mod title;
 mod told;
+mod trail;
 mod value;
 
 pub use behaviour::{Behaviour, Model, ModelKind, Shape, Source, Value};
@@ -136,6 +143,8 @@ pub struct Circuit {
     pub transient: Option<Transient>,
     /// Node voltages given by `.ic`, in volts.
     pub initial: Vec<(NodeId, f64)>,
+    /// For each file, the include line that brought it in.
+    pub(crate) includes: Vec<Option<Span>>,
     /// Something of the file could not be read or found, so the circuit may lack elements.
     pub incomplete: bool,
 }

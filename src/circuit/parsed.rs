@@ -24,6 +24,15 @@ pub(crate) struct ModelLine {
     pub statement: Span,
     pub kind: ModelKind,
     pub settings: Vec<Setting>,
+    /// All its values are plain numbers, so that it is the same in every instance.
+    pub is_constant: bool,
+}
+
+/// A `.func` line: its arguments in lower case and the place of its body.
+#[derive(Debug, Clone)]
+pub(crate) struct Function {
+    pub arguments: Vec<String>,
+    pub body: Span,
 }
 
 /// An element or note line.
@@ -81,6 +90,8 @@ pub struct Parsed {
     pub(crate) models: Vec<ModelLine>,
     /// For each file, the include line that brought it in.
     pub(crate) includes: Vec<Option<Span>>,
+    /// `.func` definitions by lower-case name.
+    pub(crate) functions: FxHashMap<String, Function>,
     pub(crate) globals: Vec<Span>,
     /// `.options` and `.temp` settings.
     pub(crate) options: Vec<Setting>,
@@ -104,6 +115,7 @@ impl Default for Parsed {
             blocks: vec![Block::new(nowhere, nowhere, 0)],
             models: Vec::new(),
             includes: Vec::new(),
+            functions: FxHashMap::default(),
             globals: Vec::new(),
             options: Vec::new(),
             sweeps: Vec::new(),

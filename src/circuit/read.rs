@@ -1,13 +1,19 @@
-//! Files to blocks: follows includes, opens and closes subcircuits, keeps what each dot line declares.
+//! Files to blocks: goes through the lines of each file, keeps elements and notes, and hands dot lines on.
 
-use super::ModelKind;
-use super::line::Line;
-use super::parsed::{Block, ModelLine, Parsed, Setting, Statement};
+use super::dot::Next;
+use super::parsed::{Block, Parsed, Statement};
+use super::title::reads_as_element;
 use crate::config::Options;
 use crate::finding::{Edit, Finding, Severity};
-use crate::syntax::{self, Fields, Line as Cut, LineKind, Token, TokenKind};
+use crate::syntax::{self, Fields, Line as Cut, LineKind};
 use crate::text::{FileId, LoadProblem, Loader, Sources, Span};
+use rustc_hash::FxHashMap;
 use std::path::{Path, PathBuf};
+
+/// Longest file that is read, in bytes.
+pub(super) const LONGEST_FILE: usize = 512 << 20;
+/// Longest statement that is read, in bytes, its continuation lines included.
+pub(super) const LONGEST_STATEMENT: u32 = 1 << 20;
 
 /// The work in progress.
 pub(super) struct Reader<'a> {
@@ -15,12 +21,15 @@ pub(super) struct Reader<'a> {
     pub options: &'a Options,
     pub sources: Sources,
     pub parsed: Parsed,
-    /// Paths of the files that are being read, outermost first.
-    pub stack: Vec<PathBuf>,
+    /// Files that are being read, outermost first: their paths and the sections asked for.
+    pub stack: Vec<(PathBuf, Option<String>)>,
     /// Subcircuit definitions that are open, the root first.
     pub open: Vec<usize>,
+    /// Included files must lie below this.
     pub boundary: PathBuf,
-    fields: Fields,
+    pub fields: Fields,
+    /// How many findings of each rule there are.
+    counts: FxHashMap<&'static str, usize>,
 }
 
 /// Reads `root` and everything it includes.
@@ -40,50 +49,78 @@ pub(super) fn read_files(
         open: vec![0],
         boundary,
         fields: Fields::default(),
+        counts: FxHashMap::default(),
     };
-    reader.stack.push(reader.loader.resolve(root));
+    reader.stack.push((reader.loader.resolve(root), None));
     reader.file(root, &bytes, None, None);
-    reader.stack.pop();
-    reader.unclosed(1);
     Ok((reader.sources, reader.parsed))
 }
+
+/// The dot lines that may close a foreign block, by the word behind `.end`: their numbers in the file.
+pub(super) type Closers = FxHashMap<String, Vec<usize>>;
 
 impl Reader<'_> {
     /// Reads one file, or one section of it, into the open block.
     pub(super) fn file(&mut self, path: &Path, bytes: &[u8], from: Option<Span>, section: Option<&str>) {
-        let file = self.sources.add(path.display().to_string(), bytes);
-        let is_root = from.is_none();
+        let too_long = bytes.len() > LONGEST_FILE;
+        let file = self.sources.add(path.display().to_string(), if too_long { b"" } else { bytes });
         self.parsed.includes.push(from);
+        if too_long {
+            return self.tell_long_file(Span::new(file, 0, 0), bytes.len());
+        }
+        let is_root = from.is_none();
         let cut = syntax::lines(self.text(file), is_root);
         if let Some((start, end)) = cut.title {
-            let title = Span { file, start, end };
-            self.parsed.title = Some(title);
-            self.parsed.blocks[0].statement = title;
-            self.title(title);
+            self.title(Span { file, start, end });
         }
-        let lines = self.section(file, &cut.lines, section);
+        let lines = self.section(file, cut.lines, section, from);
+        let open = self.open.len();
+        self.lines(file, &lines, is_root);
+        self.unclosed(open);
+    }
+
+    fn lines(&mut self, file: FileId, lines: &[Cut], is_root: bool) {
+        let closers = self.closers(file, lines);
+        if is_root {
+            self.parsed.statements.reserve_exact(lines.len());
+        }
         let mut at = 0;
         while let Some(line) = lines.get(at) {
             at += 1;
             let span = Span { file, start: line.start, end: line.end };
+            if line.end - line.start > LONGEST_STATEMENT {
+                self.tell_long_line(span);
+                continue;
+            }
             match line.kind {
                 LineKind::Element => self.keep(span, false),
                 LineKind::Note => self.keep(span, true),
                 LineKind::Stray => self.stray(span),
-                LineKind::Dot => match self.dot(span, &lines[at..]) {
+                LineKind::Dot => match self.dot(span, at, &closers) {
                     Next::Line => {}
-                    Next::Skip(count) => at += count,
-                    Next::End => {
-                        self.after_end(file, &lines[at..], is_root);
-                        break;
-                    }
+                    Next::From(next) => at = next,
+                    Next::End => return self.after_end(file, &lines[at..], is_root),
                 },
             }
         }
     }
 
-    fn text(&self, file: FileId) -> &str {
+    pub(super) fn text(&self, file: FileId) -> &str {
         self.sources.get(file).map_or("", |f| f.text.as_str())
+    }
+
+    fn closers(&self, file: FileId, lines: &[Cut]) -> Closers {
+        let text = self.text(file);
+        let mut closers = Closers::default();
+        for (number, line) in lines.iter().enumerate().filter(|(_, l)| l.kind == LineKind::Dot) {
+            let word =
+                text.get(line.start as usize..line.end as usize).unwrap_or("").split_whitespace().next();
+            let word = word.unwrap_or("").to_ascii_lowercase();
+            if let Some(tail) = word.strip_prefix(".end").filter(|tail| !matches!(*tail, "" | "s" | "l")) {
+                closers.entry(tail.to_owned()).or_default().push(number);
+            }
+        }
+        closers
     }
 
     fn keep(&mut self, span: Span, is_note: bool) {
@@ -96,22 +133,28 @@ impl Reader<'_> {
         }
     }
 
+    /// The innermost definition that is open.
     pub(super) fn block(&mut self) -> &mut Block {
         let open = self.open.last().copied().unwrap_or(0);
         &mut self.parsed.blocks[open]
     }
 
-    pub(super) fn tell(&mut self, finding: Finding) {
-        self.parsed.findings.push(finding);
+    /// Keeps a finding, with the includes that lead to it; of one rule only so many.
+    pub(super) fn tell(&mut self, mut finding: Finding) {
+        let count = self.counts.entry(finding.rule).or_default();
+        *count += 1;
+        if *count <= super::told::MOST_OF_ONE_RULE {
+            finding.trail = super::trail::includes(&self.parsed.includes, finding.span.file);
+            self.parsed.findings.push(finding);
+        }
     }
 
     fn title(&mut self, span: Span) {
+        self.parsed.title = Some(span);
+        self.parsed.blocks[0].statement = span;
         let text = self.sources.slice(span);
-        let mut fields = Fields::default();
-        if fields.read(text, 0, span.end - span.start).is_err() || !reads_as_element(text, &fields) {
-            return;
-        }
-        let name = text.split_whitespace().next().unwrap_or("");
+        let Some(name) = reads_as_element(text) else { return };
+        let above = Edit { span: Span { end: span.start, ..span }, replacement: "Circuit\n".into() };
         let finding = Finding::new(
             "title-reads-as-element",
             Severity::Warning,
@@ -121,7 +164,7 @@ impl Reader<'_> {
         .label("taken as the title")
         .about(name)
         .help("if it is an element, put a title line above it; if it is a title, begin it with a word that is no element")
-        .fix("put a title line above it", vec![Edit { span: Span { end: span.start, ..span }, replacement: "Circuit\n".into() }]);
+        .fix("put a title line above it", vec![above]);
         self.tell(finding);
     }
 
@@ -140,12 +183,15 @@ impl Reader<'_> {
 
     fn after_end(&mut self, file: FileId, rest: &[Cut], is_root: bool) {
         let (Some(first), true) = (rest.first(), is_root) else { return };
-        let count = rest.len();
-        let lines = if count == 1 { "1 line stands".to_owned() } else { format!("{count} lines stand") };
+        let lines = match rest.len() {
+            1 => "1 statement stands".to_owned(),
+            count => format!("{count} statements stand"),
+        };
+        let span = Span { file, start: first.start, end: first.end };
         let finding = Finding::new(
             "text-after-end",
             Severity::Note,
-            Span { file, start: first.start, end: first.end },
+            span,
             format!("{lines} behind .end and nothing there is read"),
         )
         .label("not read from here on")
@@ -153,151 +199,30 @@ impl Reader<'_> {
         self.tell(finding);
     }
 
-    /// Only the lines of a `.lib` section; all but sections where none is asked for.
-    fn section(&mut self, _file: FileId, lines: &[Cut], _section: Option<&str>) -> Vec<Cut> {
-        lines.to_vec()
-    }
-
-    fn dot(&mut self, span: Span, rest: &[Cut]) -> Next {
-        let mut fields = std::mem::take(&mut self.fields);
-        let text = self.sources.get(span.file).map_or("", |f| f.text.as_str()).to_owned();
-        let broken = fields.read(&text, span.start, span.end).err();
-        let line = Line { text: &text, span, fields };
-        if let Some(broken) = broken {
-            let at = Span { file: span.file, start: broken.start, end: span.end };
-            let word = line.word_str(0).to_owned();
-            self.parsed.incomplete = true;
-            self.tell(
-                Finding::new(
-                    "unreadable-line",
-                    Severity::Error,
-                    at,
-                    format!("{word} cannot be read to its end: {}", broken.what),
-                )
-                .label(broken.what)
-                .about(word)
-                .help("close it on this statement; what stands before it has been read"),
-            );
+    fn tell_long_line(&mut self, span: Span) {
+        self.parsed.incomplete = true;
+        let length = span.end - span.start;
+        let mut end = (span.start + 40) as usize;
+        while !self.text(span.file).is_char_boundary(end) {
+            end -= 1;
         }
-        let next = self.dot_line(&line, rest);
-        self.fields = line.fields;
-        next
+        let finding = Finding::new(
+            "limit-reached",
+            Severity::Error,
+            Span::new(span.file, span.start as usize, end),
+            format!("this statement is {length} bytes long with its continuations, and at most {LONGEST_STATEMENT} are read"),
+        )
+        .label("not read")
+        .help("break it into several statements");
+        self.tell(finding);
     }
 
-    fn dot_line(&mut self, line: &Line<'_>, _rest: &[Cut]) -> Next {
-        let word = line.word_str(0).trim_start_matches('.').to_ascii_lowercase();
-        match word.as_str() {
-            "end" => return Next::End,
-            "model" => self.model(line),
-            "temp" => self.temp(line),
-            "options" | "option" | "opt" => self.options(line),
-            "dc" => self.parsed.sweeps.push(spans(line, 1)),
-            "tran" => self.parsed.transient = Some(spans(line, 1)),
-            "global" => self.parsed.globals.extend(spans(line, 1)),
-            _ => {}
-        }
-        Next::Line
-    }
-
-    /// `model-line = ".model" name type *pair`
-    fn model(&mut self, line: &Line<'_>) {
-        let (Some(name), Some(kind)) = (line.word(1), line.word(2)) else {
-            self.parsed.incomplete = true;
-            let finding = Finding::new(
-                "unreadable-line",
-                Severity::Error,
-                line.span,
-                "this .model line lacks its name or its type",
-            )
+    fn tell_long_file(&mut self, span: Span, length: usize) {
+        self.parsed.incomplete = true;
+        let message = format!("this file is {length} bytes long, and at most {LONGEST_FILE} are read");
+        let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
-            .help("write it as .model NAME TYPE (KEY=VALUE …)");
-            return self.tell(finding);
-        };
-        let number = self.parsed.models.len();
-        self.parsed.models.push(ModelLine {
-            name_span: line.at(name),
-            statement: line.span,
-            kind: model_kind(line.str(kind)),
-            settings: settings(line),
-        });
-        let key = line.str(name).to_ascii_lowercase();
-        self.block().models.insert(key, number);
-    }
-
-    /// `temp-line = ".temp" value`
-    fn temp(&mut self, line: &Line<'_>) {
-        if let Some(token) = line.word(1) {
-            let value = line.at(token);
-            self.parsed.options.push(Setting { name: "temp".into(), name_span: line.head(), value });
-        }
-    }
-
-    /// `options-line = ".options" *( word / pair )`
-    fn options(&mut self, line: &Line<'_>) {
-        self.parsed.options.extend(settings(line));
-    }
-
-    fn unclosed(&mut self, _from: usize) {}
-}
-
-/// What to read next.
-enum Next {
-    Line,
-    Skip(usize),
-    End,
-}
-
-/// All pairs of a line.
-pub(super) fn settings(line: &Line<'_>) -> Vec<Setting> {
-    line.fields
-        .pairs
-        .iter()
-        .map(|p| Setting {
-            name: line.str(p.key).to_ascii_lowercase(),
-            name_span: line.at(p.key),
-            value: line.at(p.value),
-        })
-        .collect()
-}
-
-fn spans(line: &Line<'_>, from: usize) -> Vec<Span> {
-    (from..line.len()).filter_map(|n| line.word(n)).map(|t| line.at(t)).collect()
-}
-
-fn model_kind(word: &str) -> ModelKind {
-    match word.to_ascii_lowercase().as_str() {
-        "d" => ModelKind::Diode,
-        "npn" => ModelKind::Npn,
-        "pnp" => ModelKind::Pnp,
-        "nmos" => ModelKind::Nmos,
-        "pmos" => ModelKind::Pmos,
-        "njf" => ModelKind::Njf,
-        "pjf" => ModelKind::Pjf,
-        "sw" => ModelKind::VoltageSwitch,
-        "csw" => ModelKind::CurrentSwitch,
-        "r" | "res" => ModelKind::Resistor,
-        "c" | "cap" => ModelKind::Capacitor,
-        "l" | "ind" => ModelKind::Inductor,
-        _ => ModelKind::Other,
-    }
-}
-
-/// Whether a title is a complete element: a name that begins with its letter, nodes, and a value or model.
-fn reads_as_element(text: &str, fields: &Fields) -> bool {
-    let str = |t: &Token| text.get(t.start as usize..t.end as usize).unwrap_or("");
-    let words: Vec<&str> = fields.words.iter().map(str).collect();
-    let Some(name) = words.first() else { return false };
-    let mut letters = name.chars();
-    let letter = letters.next().unwrap_or(' ').to_ascii_uppercase();
-    let numbered = letters.next().is_some_and(|c| c.is_ascii_digit());
-    let is_value = |n: usize| {
-        words.get(n).is_some_and(|w| syntax::number(w.as_bytes()).is_some())
-            || fields.words.get(n).is_some_and(|t| t.kind == TokenKind::Expression)
-    };
-    match letter {
-        'R' | 'C' | 'L' | 'V' | 'I' => is_value(3) && words.len() <= 6 && (numbered || words.len() == 4),
-        'D' => numbered && words.len() == 4,
-        'Q' | 'J' => numbered && matches!(words.len(), 5 | 6),
-        _ => false,
+            .help("break it into several files, or check its parts one by one");
+        self.tell(finding);
     }
 }

@@ -59,22 +59,26 @@ impl Expander<'_> {
 
     pub(super) fn model_named(&mut self, name: &str) -> Option<ModelId> {
         let block = self.frame().block;
-        let (_, model) = self.parsed.find_model(block, &name.to_ascii_lowercase())?;
-        let key = (model, ScopeId::ROOT);
+        let (holder, model) = self.parsed.find_model(block, &name.to_ascii_lowercase())?;
+        // a model with expressions is another one in every instance of the block that holds it
+        let is_constant = self.parsed.models[model].is_constant;
+        let frame =
+            if is_constant { 0 } else { self.frames.iter().rposition(|f| f.block == holder).unwrap_or(0) };
+        let key = (model, self.frames.get(frame).map_or(ScopeId::ROOT, |f| f.scope));
         if let Some(&known) = self.model_ids.get(&key) {
             return Some(known);
         }
-        let id = self.make_model(model);
+        let id = self.make_model(model, frame);
         self.model_ids.insert(key, id);
         Some(id)
     }
 
-    fn make_model(&mut self, number: usize) -> ModelId {
+    fn make_model(&mut self, number: usize, frame: usize) -> ModelId {
         let line = &self.parsed.models[number];
         let name = self.circuit.names.intern(self.sources.slice(line.name_span));
         let mut parameters = Vec::with_capacity(line.settings.len());
         for setting in &line.settings {
-            if let Some(value) = self.evaluate(setting.value) {
+            if let Some(value) = self.worth_in(frame, setting.value, false).value() {
                 parameters.push((setting.name.clone(), value));
             }
         }

@@ -1,7 +1,8 @@
 //! What dot lines set for the whole circuit: temperature, ranges, the span of time, initial voltages.
 
 use super::expand::Expander;
-use super::{Sweep, Transient};
+use super::parameter::{Evaluation, Worth};
+use super::{Sweep, Transient, Value};
 use crate::text::Span;
 
 impl Expander<'_> {
@@ -27,6 +28,30 @@ impl Expander<'_> {
         }
         if let Some(words) = &parsed.transient {
             self.transient(words);
+        }
+    }
+
+    /// Root parameters whose value comes from outside the text.
+    pub(super) fn preset(&mut self) {
+        let overrides = self.overrides;
+        for (name, number) in &overrides.parameters {
+            let name = name.to_ascii_lowercase();
+            if let Some(parameter) = self.frame().parameters.table.get_mut(name.as_str()) {
+                let value = Value { number: *number, written: false, span: parameter.value };
+                parameter.state = Evaluation::Done(Worth::Is(value));
+            }
+        }
+    }
+
+    /// Initial voltages of the innermost instance.
+    pub(super) fn initial_voltages(&mut self) {
+        let parsed = self.parsed;
+        let block = self.frame().block;
+        for &(node, value) in &parsed.blocks[block].initial {
+            let node = self.find_node(self.sources.slice(node));
+            if let (Some(node), Some(value)) = (node, self.evaluate(value)) {
+                self.circuit.initial.push((node, value.number));
+            }
         }
     }
 

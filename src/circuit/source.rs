@@ -4,7 +4,9 @@ use super::behaviour::{Behaviour, Shape, Source, Value};
 use super::element::{Problem, Read};
 use super::expand::Expander;
 use super::line::Line;
+use super::parameter::Worth;
 use super::value::Quantity;
+use crate::syntax::Token;
 use crate::text::Span;
 
 impl Expander<'_> {
@@ -25,7 +27,7 @@ impl Expander<'_> {
         let mut source = Source::default();
         let mut at = rest;
         if let Some(token) = line.pair("dc") {
-            source.dc = self.value(line, token, quantity);
+            source.dc = Some(self.source_value(line, token, quantity, || no_text(line, token))?);
         }
         if let Some(token) = line.pair("ac") {
             source.ac = self.evaluate(line.at(token)).map(|v| v.number);
@@ -33,16 +35,17 @@ impl Expander<'_> {
         while let Some(token) = line.word(at) {
             let word = line.str(token);
             if word.eq_ignore_ascii_case("dc") {
-                let value = line.word(at + 1).and_then(|t| self.value(line, t, quantity));
-                source.dc = Some(value.ok_or_else(|| no_number(line, at + 1, "behind DC"))?);
+                let missing = || no_number(line, at + 1, "behind DC");
+                let token = line.word(at + 1).ok_or_else(missing)?;
+                source.dc = Some(self.source_value(line, token, quantity, missing)?);
                 at += 2;
             } else if word.eq_ignore_ascii_case("ac") {
-                let values = self.numbers(line, at + 1, 2);
+                let values = self.numbers(line, at + 1, 2)?;
                 source.ac = Some(values.first().copied().unwrap_or(1.0));
                 at += 1 + values.len();
             } else if let Some(kind) = shape_word(word) {
                 let limit = if kind == "pwl" { usize::MAX } else { 8 };
-                let values = self.numbers(line, at + 1, limit);
+                let values = self.numbers(line, at + 1, limit)?;
                 source.shape = Some(self.shape(line, at, kind, &values)?);
                 at += 1 + values.len();
             } else if let Some(range) =
@@ -52,8 +55,8 @@ impl Expander<'_> {
                 source.dc = Some(self.decimal_comma(line.word_str(0), span)?);
                 at += 2;
             } else if at == rest || source.dc.is_none() {
-                let value: Option<Value> = self.value(line, token, quantity);
-                source.dc = Some(value.ok_or_else(|| no_number(line, at, "where its value should stand"))?);
+                let missing = || no_number(line, at, "where its value should stand");
+                source.dc = Some(self.source_value(line, token, quantity, missing)?);
                 at += 1;
             } else {
                 at += 1;
@@ -62,18 +65,39 @@ impl Expander<'_> {
         Ok(source)
     }
 
+    fn source_value(
+        &mut self,
+        line: &Line<'_>,
+        token: Token,
+        quantity: Quantity,
+        missing: impl FnOnce() -> Problem,
+    ) -> Result<Value, Problem> {
+        match self.value(line, token, quantity) {
+            Worth::Is(value) => Ok(value),
+            Worth::Word => Err(missing()),
+            Worth::Told => Err(Problem::told("a value that could not be evaluated")),
+            Worth::Moving => Err(Problem::told("a value that depends on the circuit")),
+        }
+    }
+
     /// Up to `limit` numbers from word `at` on.
-    fn numbers(&mut self, line: &Line<'_>, at: usize, limit: usize) -> Vec<f64> {
+    fn numbers(&mut self, line: &Line<'_>, at: usize, limit: usize) -> Result<Vec<f64>, Problem> {
         let mut out = Vec::new();
         while out.len() < limit {
             let Some(token) = line.word(at + out.len()) else { break };
             if shape_word(line.str(token)).is_some() || is_keyword(line.str(token)) {
                 break;
             }
-            let Some(value) = self.evaluate(line.at(token)) else { break };
-            out.push(value.number);
+            match self.worth(line.at(token)) {
+                Worth::Is(value) => out.push(value.number),
+                Worth::Word => break,
+                // a shape with a hole in it would be another shape
+                Worth::Told | Worth::Moving => {
+                    return Err(Problem::told("a value that could not be evaluated"));
+                }
+            }
         }
-        out
+        Ok(out)
     }
 
     /// `shape = sine / pulse / points / exponential / modulated`, absent parameters by their defaults.
@@ -133,6 +157,7 @@ fn points(line: &Line<'_>, at: usize, values: &[f64]) -> Result<Shape, Problem> 
     let (pairs, odd) = values.as_chunks::<2>();
     let points: Vec<(f64, f64)> = pairs.iter().map(|&[t, v]| (t, v)).collect();
     let problem = |message: String| Problem {
+        told: false,
         span: line.word(at).map_or(line.span, |t| line.at(t)),
         message,
         reason: "a shape that could not be read",
@@ -171,6 +196,7 @@ fn is_keyword(word: &str) -> bool {
 fn no_number(line: &Line<'_>, word: usize, place: &str) -> Problem {
     let text = line.word_str(word);
     Problem {
+        told: false,
         span: line.word(word).map_or(line.span, |t| line.at(t)),
         message: match text {
             "" => format!("{} has no number {place}", line.word_str(0)),
@@ -181,8 +207,19 @@ fn no_number(line: &Line<'_>, word: usize, place: &str) -> Problem {
     }
 }
 
+fn no_text(line: &Line<'_>, token: Token) -> Problem {
+    Problem {
+        told: false,
+        span: line.at(token),
+        message: format!("the value of {}, {}, is no number", line.word_str(0), line.str(token)),
+        reason: "a value that could not be read",
+        help: "write a number such as 5 or an expression in braces".into(),
+    }
+}
+
 fn too_few(line: &Line<'_>, at: usize, count: usize, given: usize) -> Problem {
     Problem {
+        told: false,
         span: line.word(at).map_or(line.span, |t| line.at(t)),
         message: format!(
             "the {} shape of {} has {given} numbers and needs at least {count}",

@@ -1,8 +1,11 @@
 //! Collects findings and tells each once, however many instances repeat it.
 
-use crate::finding::Finding;
+use crate::finding::{Finding, Severity};
 use crate::text::Span;
 use rustc_hash::FxHashMap;
+
+/// So many findings of one rule are listed; the rest is counted.
+pub(super) const MOST_OF_ONE_RULE: usize = 1000;
 
 /// Findings so far.
 #[derive(Debug, Default)]
@@ -10,29 +13,60 @@ pub(crate) struct Told {
     findings: Vec<Finding>,
     counts: Vec<usize>,
     known: FxHashMap<(&'static str, Span), usize>,
+    rules: FxHashMap<&'static str, usize>,
 }
 
 impl Told {
     /// Takes a finding, or counts it where the same rule has spoken of the same place before.
     pub fn tell(&mut self, finding: Finding) {
-        let at = *self.known.entry((finding.rule, finding.span)).or_insert(self.findings.len());
-        match self.counts.get_mut(at) {
-            Some(count) => *count += 1,
-            None => {
-                self.findings.push(finding);
-                self.counts.push(1);
-            }
+        let key = (finding.rule, finding.span);
+        if let Some(&at) = self.known.get(&key) {
+            self.counts[at] += 1;
+            return;
+        }
+        let of_rule = self.rules.entry(finding.rule).or_default();
+        *of_rule += 1;
+        if *of_rule <= MOST_OF_ONE_RULE {
+            self.known.insert(key, self.findings.len());
+            self.findings.push(finding);
+            self.counts.push(1);
         }
     }
 
     /// All of them; those told more than once say how often.
     pub fn finish(self) -> Vec<Finding> {
         let counted = |(mut finding, count): (Finding, usize)| {
-            if count > 1 {
+            if count > 1 && !finding.trail.is_empty() {
                 finding.message.push_str(&format!(" (the same in {count} instances)"));
             }
             finding
         };
         self.findings.into_iter().zip(self.counts).map(counted).collect()
+    }
+}
+
+/// Says of each rule with too many findings how many are not listed, at the first of them.
+pub(super) fn tell_rest(findings: &mut Vec<Finding>, counts: &FxHashMap<&'static str, usize>) {
+    let mut rules: Vec<_> = counts.iter().filter(|(_, count)| **count > MOST_OF_ONE_RULE).collect();
+    rules.sort_unstable();
+    for (rule, count) in rules {
+        let Some(last) = findings.iter().rev().find(|f| f.rule == *rule) else { continue };
+        let more = count - MOST_OF_ONE_RULE;
+        let finding = Finding::new(
+            "limit-reached",
+            Severity::Note,
+            last.span,
+            format!("{more} more findings of {rule} are not listed"),
+        )
+        .label("the last that is listed")
+        .help("mend those that are listed and run it again; a file with so many is perhaps no netlist");
+        findings.push(finding);
+    }
+}
+
+impl Told {
+    /// How many findings of each rule there were.
+    pub fn counts(&self) -> FxHashMap<&'static str, usize> {
+        self.rules.clone()
     }
 }

@@ -1,11 +1,12 @@
-//! What a token is worth: numbers, expressions, parameters; and the traps that numbers set.
+//! The traps that written numbers set: letters read otherwise than meant, units of another quantity, sizes that
+//! no part has.
 
 use super::behaviour::Value;
 use super::expand::Expander;
 use super::line::Line;
+use super::parameter::Worth;
 use crate::finding::{Edit, Finding, Severity, quantity};
-use crate::syntax::{self, Token};
-use crate::text::Span;
+use crate::syntax::{self, Number, Token};
 
 /// What kind of quantity a value is read for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -18,77 +19,168 @@ pub(crate) enum Quantity {
     Plain,
 }
 
+impl Quantity {
+    fn word(self) -> &'static str {
+        match self {
+            Quantity::Ohms => "a resistance",
+            Quantity::Farads => "a capacitance",
+            Quantity::Henries => "an inductance",
+            Quantity::Volts => "a voltage",
+            Quantity::Amperes => "a current",
+            Quantity::Plain => "a number",
+        }
+    }
+
+    fn symbol(self) -> &'static str {
+        match self {
+            Quantity::Ohms => "Ω",
+            Quantity::Farads => "F",
+            Quantity::Henries => "H",
+            Quantity::Volts => "V",
+            Quantity::Amperes => "A",
+            Quantity::Plain => "",
+        }
+    }
+
+    /// A magnitude that no part reaches (and that no one writes on purpose, as some do with a 1e12 H choke).
+    fn largest(self) -> f64 {
+        match self {
+            Quantity::Ohms => 1e16,
+            Quantity::Farads => 1e5,
+            Quantity::Henries => 1e13,
+            Quantity::Volts | Quantity::Amperes => 1e12,
+            Quantity::Plain => f64::INFINITY,
+        }
+    }
+}
+
+/// A value that is looked at for traps: whose it is, what it is, how it is written.
+#[derive(Clone, Copy)]
+struct Suspect<'t> {
+    name: &'t str,
+    value: Value,
+    quantity: Quantity,
+    text: &'t str,
+}
+
+impl Suspect<'_> {
+    /// The value as it is read, with its unit.
+    fn read(&self) -> String {
+        quantity(self.value.number, self.quantity.symbol())
+    }
+}
+
 impl Expander<'_> {
-    /// The value of a token, judged for its traps; `None` where it has none (told already, or a word that is no
-    /// value: then `Err` of its text).
-    pub(super) fn value(&mut self, line: &Line<'_>, token: Token, quantity: Quantity) -> Option<Value> {
-        let value = self.evaluate(line.at(token))?;
-        self.judge(line.word_str(0), value, quantity);
-        Some(value)
+    /// What a token is worth, its value judged for its traps.
+    pub(super) fn value(&mut self, line: &Line<'_>, token: Token, quantity: Quantity) -> Worth {
+        let worth = self.worth(line.at(token));
+        if let Worth::Is(value) = worth {
+            let text = self.sources().slice(value.span);
+            self.judge(Suspect { name: line.word_str(0), value, quantity, text });
+        }
+        worth
     }
 
-    /// Warns where a written value is likely misread.
-    fn judge(&mut self, name: &str, value: Value, quantity: Quantity) {
-        if !value.written {
+    /// Warns where a value is likely misread.
+    fn judge(&mut self, suspect: Suspect<'_>) {
+        let Suspect { value, quantity, text, .. } = suspect;
+        if value.number.abs() >= quantity.largest() {
+            self.tell_size(suspect);
+        }
+        // nearly all values hold only digits and a small scale letter, and set no trap
+        let harmless = |b| matches!(b, b'0'..=b'9' | b'.' | b'-' | b'e' | b'k' | b'm' | b'u' | b'n' | b'p');
+        if !value.written || quantity == Quantity::Plain || text.bytes().all(harmless) {
             return;
         }
-        let text = self.sources().slice(value.span);
-        let bytes = text.as_bytes();
-        if !matches!(bytes.last(), Some(b'0'..=b'9' | b'M' | b'F')) || quantity == Quantity::Plain {
-            return;
-        }
-        let Some(number) = syntax::number(bytes) else { return };
-        let suffix = &text[number.digits..number.digits + number.suffix];
+        let Some(number) = syntax::number(text.as_bytes()) else { return };
+        let suffix = text.get(number.digits..number.digits + number.suffix).unwrap_or("");
+        let unit = text.get(number.digits + number.suffix..).unwrap_or("");
         match (suffix, quantity) {
-            ("M", _) if number.letter_code => self.tell_mega_code(name, value, text),
+            ("M", _) if number.letter_code => self.tell_mega_code(suspect),
+            _ if number.letter_code => {}
             ("M", Quantity::Ohms) => {
-                let meant = format!("{}Meg", &text[..number.digits]);
-                self.tell_misread(name, value, "milli", &meant);
+                self.tell_misread(suspect, "milli", &format!("{}Meg", digits(text, number)))
             }
-            ("F", Quantity::Farads) if !number.letter_code => {
-                let meant = text[..number.digits].to_owned();
-                self.tell_misread(name, value, "femto", &meant);
+            ("F", Quantity::Farads) if unit.is_empty() => {
+                self.tell_misread(suspect, "femto", digits(text, number))
             }
-            _ => {}
+            ("F" | "f", Quantity::Ohms | Quantity::Henries) if unit.is_empty() => {
+                self.tell_unit(suspect, "farads")
+            }
+            _ => {
+                if let Some(other) = other_unit(unit, quantity) {
+                    self.tell_unit(suspect, other);
+                }
+            }
         }
     }
 
-    fn tell_misread(&mut self, name: &str, value: Value, scale: &str, meant: &str) {
-        let text = self.sources().slice(value.span);
-        let read = quantity(value.number, if scale == "milli" { "Ω" } else { "F" });
-        let finding = Finding::new(
-            "misread-value",
-            Severity::Warning,
-            value.span,
-            format!("{name} is {read}: in {text} the last letter means {scale}, whatever its case"),
-        )
-        .label(format!("read as {read}"))
-        .about(name)
-        .help(format!("write {meant} if that is what was meant, or the value in another scale if it was not"))
-        .fix(format!("write {meant}"), vec![Edit { span: value.span, replacement: meant.to_owned() }]);
+    fn tell_misread(&mut self, suspect: Suspect<'_>, scale: &str, meant: &str) {
+        let Suspect { name, value, text, .. } = suspect;
+        let read = suspect.read();
+        let message = format!("{name} is {read}: in {text} the last letter means {scale}, whatever its case");
+        let finding = Finding::new("misread-value", Severity::Warning, value.span, message)
+            .label(format!("read as {read}"))
+            .about(self.here(name))
+            .help(format!(
+                "write {meant} if that is what was meant, or the value in another scale if it was not"
+            ))
+            .fix(format!("write {meant}"), vec![Edit { span: value.span, replacement: meant.to_owned() }]);
         self.tell(finding);
     }
 
-    fn tell_mega_code(&mut self, name: &str, value: Value, text: &str) {
-        let finding = Finding::new(
-            "mega-in-letter-code",
-            Severity::Note,
-            value.span,
-            format!(
-                "the {text} of {name} is read by the letter code of IEC 60062 as {:e}: between digits M is mega",
-                value.number
-            ),
-        )
-        .label(format!("read as {:e}", value.number))
-        .about(name)
-        .help("behind a number M means milli; write Meg to leave no doubt");
+    fn tell_mega_code(&mut self, suspect: Suspect<'_>) {
+        let Suspect { name, value, text, .. } = suspect;
+        let read = suspect.read();
+        let message = format!(
+            "the {text} of {name} is read as {read}: between digits, by the letter code of IEC 60062, M is mega"
+        );
+        let finding = Finding::new("mega-in-letter-code", Severity::Note, value.span, message)
+            .label(format!("read as {read}"))
+            .about(self.here(name))
+            .help("behind a number M means milli; write Meg to leave no doubt");
         self.tell(finding);
     }
 
-    /// The value of the text under a span: a number, an expression, or the name of a parameter.
-    pub(super) fn evaluate(&mut self, span: Span) -> Option<Value> {
-        let text = self.sources().slice(span);
-        let number = syntax::number(text.as_bytes())?;
-        Some(Value { number: number.value, written: true, span })
+    fn tell_unit(&mut self, suspect: Suspect<'_>, unit: &str) {
+        let Suspect { name, value, text, quantity } = suspect;
+        let read = suspect.read();
+        let message = format!(
+            "the {text} of {name} is in {unit} where {} belongs; unit letters are ignored, so it is {read}",
+            quantity.word()
+        );
+        let finding = Finding::new("wrong-unit", Severity::Warning, value.span, message)
+            .label(format!("read as {read}"))
+            .about(self.here(name))
+            .help("correct the value, or the letter that the element's name begins with");
+        self.tell(finding);
     }
+
+    fn tell_size(&mut self, suspect: Suspect<'_>) {
+        let Suspect { name, value, text, quantity } = suspect;
+        let read = suspect.read();
+        let message = format!("the {text} of {name} gives {} of {read}, which no part has", quantity.word());
+        let finding = Finding::new("value-out-of-scale", Severity::Warning, value.span, message)
+            .label(format!("read as {read}"))
+            .about(self.here(name))
+            .help("a scale letter is probably missing or wrong");
+        self.tell(finding);
+    }
+}
+
+fn digits(text: &str, number: Number) -> &str {
+    text.get(..number.digits).unwrap_or(text)
+}
+
+/// The quantity whose unit this is, where it is another than wanted.
+fn other_unit(unit: &str, wanted: Quantity) -> Option<&'static str> {
+    let (quantity, word) = match unit.to_ascii_lowercase().as_str() {
+        "f" | "farad" | "farads" => (Quantity::Farads, "farads"),
+        "h" | "henry" | "henries" | "henrys" => (Quantity::Henries, "henries"),
+        "ohm" | "ohms" | "Ω" | "r" => (Quantity::Ohms, "ohms"),
+        "v" | "volt" | "volts" => (Quantity::Volts, "volts"),
+        "a" | "amp" | "amps" | "ampere" | "amperes" => (Quantity::Amperes, "amperes"),
+        _ => return None,
+    };
+    (quantity != wanted).then_some(word)
 }

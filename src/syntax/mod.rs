@@ -2,12 +2,14 @@
 //! per grammar production, of the same name. Nothing here knows what an element does.
 
 mod blank;
+mod expression;
 mod fields;
 mod lines;
 mod note;
 mod number;
 mod tokens;
 
+pub use expression::{Binary, Expression, ExpressionProblem, expression};
 pub use fields::{Fields, Pair};
 pub use lines::{Line, LineKind, Lines, lines};
 pub use note::{ExpectText, HoldWord, NOTE_WORDS, NoteProblem, NoteText, NoteWord, note};

@@ -36,7 +36,7 @@ impl Loader for Disk {
         path.is_file()
     }
     fn resolve(&self, path: &Path) -> PathBuf {
-        path.canonicalize().unwrap_or_else(|_| path.to_path_buf())
+        path.canonicalize().unwrap_or_else(|_| lexical(path))
     }
     fn boundary(&self, root: &Path) -> PathBuf {
         let root = self.resolve(root);
@@ -72,16 +72,21 @@ impl Loader for Memory {
         self.files.contains_key(&self.resolve(path))
     }
     fn resolve(&self, path: &Path) -> PathBuf {
-        let mut clean = PathBuf::new();
-        for part in path.components() {
-            match part {
-                std::path::Component::CurDir => {}
-                std::path::Component::ParentDir if clean.file_name().is_some() => {
-                    clean.pop();
-                }
-                other => clean.push(other),
-            }
-        }
-        clean
+        lexical(path)
     }
+}
+
+/// The path without `.` and, as far as it can be told without looking, without `..`.
+fn lexical(path: &Path) -> PathBuf {
+    let mut clean = PathBuf::new();
+    for part in path.components() {
+        match part {
+            std::path::Component::CurDir => {}
+            std::path::Component::ParentDir if clean.file_name().is_some() => {
+                clean.pop();
+            }
+            other => clean.push(other),
+        }
+    }
+    clean
 }
