@@ -84,7 +84,11 @@ fn walk(directory: &Path, wanted: &mut Wanted) {
                 wanted.files.push(entry.into_path());
             }
             Ok(_) => {}
-            Err(problem) => wanted.problems.push(problem.to_string()),
+            Err(problem) => {
+                let path = problem.path().unwrap_or(directory).display().to_string();
+                let reason = problem.io_error().map_or_else(|| problem.to_string(), ToString::to_string);
+                wanted.problems.push(format!("{path}: {reason}"));
+            }
         }
     }
     if (wanted.files.len(), wanted.problems.len()) == before {

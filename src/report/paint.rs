@@ -108,12 +108,13 @@ pub(super) fn clean(text: &str) -> String {
     text.chars().map(fit).collect()
 }
 
-/// Breaks text into lines of at most `width` columns, at spaces; a longer word stays whole.
+/// Breaks text into lines of at most `width` columns, at spaces; a longer word stays whole, and so does what
+/// stands between backquotes, since it may be copied.
 pub(super) fn wrap(text: &str, width: usize) -> Vec<String> {
     let mut lines = Vec::new();
     for paragraph in text.lines() {
         let mut line = String::new();
-        for word in clean(paragraph).split_whitespace() {
+        for word in words(&clean(paragraph)) {
             if !line.is_empty() && columns(&line) + 1 + columns(word) > width {
                 lines.push(std::mem::take(&mut line));
             }
@@ -125,6 +126,16 @@ pub(super) fn wrap(text: &str, width: usize) -> Vec<String> {
         lines.push(line);
     }
     lines
+}
+
+/// Words at spaces outside of backquotes.
+fn words(text: &str) -> impl Iterator<Item = &str> {
+    let mut quoted = false;
+    let at_space = move |c: char| {
+        quoted ^= c == '`';
+        c.is_whitespace() && !quoted
+    };
+    text.split(at_space).map(str::trim).filter(|word| !word.is_empty())
 }
 
 /// Columns that a text takes on a terminal.
@@ -145,6 +156,7 @@ mod tests {
     fn lines_break_at_spaces() {
         assert_eq!(wrap("one two three", 8), ["one two", "three"]);
         assert_eq!(wrap("unbreakable", 3), ["unbreakable"]);
+        assert_eq!(wrap("write `*@ watch out`, then", 14), ["write", "`*@ watch out`,", "then"]);
     }
 
     #[test]
