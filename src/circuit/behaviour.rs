@@ -70,7 +70,7 @@ pub enum Behaviour {
     VoltageSwitch { model: Option<ModelId> },
     /// W: pins + −.
     CurrentSwitch { model: Option<ModelId>, control: Option<ElementId> },
-    /// Q (collector base emitter [substrate]), M (drain gate source bulk), J (drain gate source).
+    /// Q (collector base emitter, and a substrate or not), M (drain gate source bulk), J (drain gate source).
     Transistor { model: Option<ModelId> },
     /// Behaviour not known here, with the reason in a few words: `a value that could not be read`.
     Unknown { reason: &'static str },
