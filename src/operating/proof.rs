@@ -65,6 +65,8 @@ pub(crate) struct Claim<'a> {
 /// Largest voltage and current around each node: the scale beneath which a miss is rounding.
 struct Scales {
     part_of_node: Vec<usize>,
+    /// Whether a part claims to be solved; what belongs to no part does.
+    claimed: Vec<bool>,
     voltage: Vec<f64>,
     current: Vec<f64>,
 }
@@ -105,7 +107,9 @@ impl Scales {
             let branches = part.branches.iter().filter_map(|&b| claim.currents.get(b as usize));
             current[n] = branches.filter(|i| i.is_finite()).fold(0.0, |m, i| m.max(i.abs()));
         }
-        let mut scales = Scales { part_of_node, voltage, current };
+        let mut claimed: Vec<bool> = outcome.parts.iter().map(|p| claims_solution(p.verdict)).collect();
+        claimed.push(true);
+        let mut scales = Scales { part_of_node, claimed, voltage, current };
         for (id, _) in setting.circuit.elements() {
             let ends = (setting.circuit.node(id, 0), setting.circuit.node(id, 1));
             let part = scales.part(ends.0, ends.1);
@@ -161,6 +165,9 @@ impl Prover<'_> {
     /// Judges `miss`, which should be 0, against its largest term and the scale of its surroundings.
     fn judge(&mut self, id: ElementId, kind: Kind, miss: f64, terms: &[f64], ends: (NodeId, NodeId)) {
         let part = self.scales.part(ends.0, ends.1);
+        if !self.scales.claimed[part] {
+            return;
+        }
         let (floor, worst) = match kind {
             Kind::Voltage => (self.scales.voltage[part], &mut self.proof.residual.voltage),
             Kind::Current => (self.scales.current[part], &mut self.proof.residual.current),
@@ -177,6 +184,8 @@ impl Prover<'_> {
 
     /// Counts the current into Kirchhoff's law at both ends.
     fn flow(&mut self, from: NodeId, to: NodeId, current: f64) {
+        // what a part without a solution carries is not known where it meets others either
+        let current = if self.scales.claimed[self.scales.part(from, to)] { current } else { f64::NAN };
         if from != to {
             self.nodes[from.index()].add(-current);
             self.nodes[to.index()].add(current);
@@ -343,6 +352,9 @@ impl Prover<'_> {
                 continue;
             }
             let part = self.scales.part_of_node.get(n).copied().unwrap_or(whole);
+            if !self.scales.claimed[part] {
+                continue;
+            }
             let largest = sum.largest.max(self.scales.current[part] * (NOTHING / MET));
             let relative = if miss == 0.0 { 0.0 } else { miss.abs() / largest };
             let residual = &mut self.proof.residual;

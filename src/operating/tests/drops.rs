@@ -42,7 +42,7 @@ fn a_model_without_a_saturation_current_has_the_drop_of_its_material() {
 #[test]
 fn area_makes_a_diode_larger() {
     let laid = Laid::out("D1 a 0 DX 10\nD2 a 0 DX\n.model DX D(IS=10f RS=5 BV=50)", &Options::default());
-    let [large, small] = &laid.diodes[..] else { panic!("two diodes") };
+    let (large, small) = (&laid.diodes[0], &laid.diodes[1]);
     assert_eq!((large.series, small.series), (0.5, 5.0));
     // ten times the area is one decade less current each: kT/q·ln 10 = 59.556 mV at 300.15 K (computed)
     let difference = small.level(27.0).value - large.level(27.0).value;
