@@ -113,3 +113,9 @@ fn a_second_note_on_one_name_is_told() {
     assert_eq!(laid.names(), ["nominal", "V1=2", "V1=4"]);
     assert_eq!(laid.rules(), ["conflicting-notes"]);
 }
+#[test]
+fn parameters_may_have_ranges() {
+    let laid = Laid::out(".param vs=5\nV1 a 0 {vs}\nR1 a 0 1k\n*@ range vs 4 6", &Options::default());
+    assert_eq!(laid.names(), ["nominal", "vs=4", "vs=6"]);
+    assert_eq!(laid.plan.conditions[1].parameters, [("vs".to_owned(), 4.0)]);
+}

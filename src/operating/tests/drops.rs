@@ -76,3 +76,21 @@ fn notes_that_cannot_be_used_are_told() {
     assert_eq!(laid.diodes[0].drop(&laid.circuit, 27.0).origin, DropOrigin::Note);
     assert_eq!(laid.diodes[0].level(27.0).value, 0.6);
 }
+#[test]
+fn inner_notes_stand_before_outer_ones() {
+    let lines = "X1 a LED\nX2 a LED\nD9 a 0 DX\n.subckt LED p\nD1 p 0 DX\n*@ drop D1 0.61\n.ends\n.model DX D\n*@ drop X1:D1 0.5\n*@ drop DX 0.66";
+    let laid = Laid::out(lines, &Options::default());
+    let volts = |name: &str| {
+        let id = laid.element(name);
+        laid.diodes.iter().find(|d| d.element == id).unwrap().level(27.0).value
+    };
+    assert_eq!((volts("X1:D1"), volts("X2:D1"), volts("D9")), (0.61, 0.61, 0.66));
+    assert!(laid.findings.is_empty(), "{:?}", laid.findings);
+    let outer_only = lines.replace("*@ drop D1 0.61\n", "");
+    let laid = Laid::out(&outer_only, &Options::default());
+    let volts = |name: &str| {
+        let id = laid.element(name);
+        laid.diodes.iter().find(|d| d.element == id).unwrap().level(27.0).value
+    };
+    assert_eq!((volts("X1:D1"), volts("X2:D1")), (0.5, 0.66));
+}
