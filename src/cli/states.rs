@@ -49,12 +49,8 @@ pub fn run(console: &mut Console, command: &States) -> End {
 
 /// The name that `--why` asks about, where no diode has it.
 fn missing_diode<'a>(analysis: &Analysis, why: Option<&'a str>) -> Option<&'a str> {
-    let circuit = &analysis.circuit;
-    why.filter(|name| {
-        !circuit.elements().any(|(id, element)| {
-            element.letter == b'D' && circuit.element_name(id).eq_ignore_ascii_case(name)
-        })
-    })
+    let found = analysis.operating.as_ref().is_some_and(|o| o.why.is_some());
+    why.filter(|_| !found)
 }
 
 /// The most serious of the findings and the verdicts; says on standard error that there are findings, since

@@ -35,6 +35,7 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     page.end();
     let views = views(operating);
     tables(page, circuit, &views);
+    left_to_time(page, circuit, operating);
     for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
         group.write(page, circuit, operating.cases.len() > 1);
     }
@@ -370,6 +371,21 @@ fn drop_cell<'a>(drops: impl Iterator<Item = &'a Drop>) -> Cell {
 }
 
 // ---- end ----
+
+/// Which diodes the extremes of moving sources say nothing about, where there are such conditions.
+fn left_to_time(page: &mut Page, circuit: &Circuit, operating: &Operating) {
+    if operating.left_to_time.is_empty() || !operating.cases.iter().any(|c| c.instant) {
+        return;
+    }
+    let names: Vec<String> = operating.left_to_time.iter().map(|&id| circuit.element_name(id)).collect();
+    let names: Vec<&str> = names.iter().map(String::as_str).collect();
+    let text = format!(
+        "Not judged where a source is greatest or least: {}, which it reaches through a capacitor, an inductor \
+         or a coupling.",
+        some_of(&names)
+    );
+    paragraph(page, "", &text);
+}
 
 /// `3 diodes: 2 conducting, 1 blocking; 1 condition, 4 factorizations`
 fn closing(page: &mut Page, operating: &Operating, views: &[SetView<'_>]) {
