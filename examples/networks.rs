@@ -1,6 +1,6 @@
 //! Writes random networks as JSON lines, for references outside Rust:
 //! `cargo run --example networks -- [--first SEED] COUNT` (small ones, every verdict), or
-//! `… -- --diodes 12..40 COUNT` (connected ones). `--exact` adds the answer of the tests' own enumeration, so that
+//! `… -- --diodes 12..40 COUNT` (connected ones), or `… -- --families`. `--exact` adds the answer of the tests' own enumeration, so that
 //! it can be held against those references too.
 
 // an example is a program: it may print and stop
@@ -20,15 +20,17 @@ struct Request {
     first: u64,
     count: u64,
     diodes: Option<(usize, usize)>,
+    families: bool,
 }
 
 fn request() -> Request {
-    let mut request = Request { exact: false, first: 0, count: 100, diodes: None };
+    let mut request = Request { exact: false, first: 0, count: 100, diodes: None, families: false };
     let mut words = std::env::args().skip(1);
     while let Some(word) = words.next() {
         let mut next = || words.next().expect("a value follows");
         match word.as_str() {
             "--exact" => request.exact = true,
+            "--families" => request.families = true,
             "--first" => request.first = next().parse().expect("a seed"),
             "--diodes" => {
                 let text = next();
@@ -41,16 +43,36 @@ fn request() -> Request {
     request
 }
 
+fn circuits(request: &Request) -> Box<dyn Iterator<Item = Circuit> + '_> {
+    if request.families {
+        return Box::new(families());
+    }
+    Box::new((request.first..request.first + request.count).map(|seed| match request.diodes {
+        Some((low, high)) => {
+            let span = (high - low) as u64 + 1;
+            circuits::random::connected(seed, low + usize::try_from(seed * 7 % span).unwrap_or(0))
+        }
+        None => circuits::random::network(seed),
+    }))
+}
+
+fn families() -> impl Iterator<Item = Circuit> {
+    use circuits::families::{bridges, gates, grid, ladder, multiplier, ring};
+    let size = |seed: u64| usize::try_from(seed).unwrap_or(0);
+    let ladders = (0..12).map(move |seed| ladder(5 + 3 * size(seed), seed));
+    let nested =
+        (1..=7).flat_map(|depth| [bridges(depth, 40, &[700]), bridges(depth, -40, &[700, 300, 1000])]);
+    let trees = (1..=5).flat_map(|depth| (0..6).map(move |seed| gates(depth, seed)));
+    let resting = [1, 2, 5, 12, 22].map(|stages| multiplier(stages, true));
+    let rings = (0..12).map(move |seed| ring(2 + 3 * size(seed), seed));
+    let grids = (0..6).map(move |seed| grid(3 + size(seed) / 2, seed));
+    ladders.chain(nested).chain(trees).chain(resting).chain(rings).chain(grids)
+}
+
 fn main() {
     let request = request();
-    for seed in request.first..request.first + request.count {
-        let circuit = match request.diodes {
-            Some((low, high)) => {
-                let span = (high - low) as u64 + 1;
-                circuits::random::connected(seed, low + usize::try_from(seed * 7 % span).unwrap_or(0))
-            }
-            None => circuits::random::network(seed),
-        };
+    for (number, circuit) in circuits(&request).enumerate() {
+        let seed = request.first + number as u64;
         let mut line = json!({
             "seed": seed, "text": circuit.text(), "nodes": circuit.nodes, "elements": elements(&circuit),
         });

@@ -15,7 +15,11 @@ mod dependent;
 mod enumeration;
 #[path = "outside/examples.rs"]
 mod examples;
+#[path = "outside/families.rs"]
+mod families;
 #[path = "outside/run.rs"]
 mod run;
 #[path = "outside/shrink.rs"]
 mod shrink;
+#[path = "outside/theorems.rs"]
+mod theorems;

@@ -21,10 +21,41 @@ pub fn solve(circuit: &Circuit) -> Answer {
     answer
 }
 
+/// The solution set in which the diodes, in the order of the elements, are in these states; no solution where they
+/// cannot be. In a passive network this is the whole set if each diode that can carry current in some solution is
+/// said to (its voltage is then at its level in all of them), so that it proves an answer for networks too large to
+/// enumerate.
+pub fn with_states(circuit: &Circuit, states: &[Assumed]) -> Answer {
+    let laws = laws(circuit);
+    let mut answer =
+        Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
+    let mut search = Search { laws: &laws, seen: HashSet::new(), answer: &mut answer };
+    let mut junctions = laws.junctions.clone();
+    let mut steps = Vec::new();
+    for (at, state) in states.iter().enumerate() {
+        match junctions[at].equation(*state).as_ref().map(equate) {
+            Some(Equation::Holds) => {}
+            Some(Equation::Fixes(step)) => {
+                junctions.iter_mut().for_each(|junction| junction.substitute(&step));
+                steps.push(step);
+            }
+            Some(Equation::Fails) | None => return answer,
+        }
+    }
+    if !laws.impossible && !refuted(&junctions, states) {
+        search.leaf(&junctions, states, &steps);
+    }
+    answer
+}
+
+/// A state that a diode is taken to be in.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
-enum Assumed {
+pub enum Assumed {
+    /// At its drop, current ≥ 0.
     Conducting,
+    /// No current.
     Blocking,
+    /// At its breakdown voltage, current ≤ 0.
     Breakdown,
 }
 
@@ -46,12 +77,7 @@ impl Search<'_> {
             return self.leaf(&junctions, assumed, steps);
         };
         for state in [Assumed::Conducting, Assumed::Blocking, Assumed::Breakdown] {
-            let equation = match (state, &junction.reverse) {
-                (Assumed::Conducting, _) => junction.inner.plus(&-&junction.forward),
-                (Assumed::Blocking, _) => junction.current.clone(),
-                (Assumed::Breakdown, Some(reverse)) => junction.inner.plus(reverse),
-                (Assumed::Breakdown, None) => continue,
-            };
+            let Some(equation) = junction.equation(state) else { continue };
             assumed.push(state);
             let depth = steps.len();
             let mut next = junctions.clone();
@@ -59,10 +85,7 @@ impl Search<'_> {
                 Equation::Fails => false,
                 Equation::Holds => true,
                 Equation::Fixes(step) => {
-                    for junction in &mut next {
-                        junction.inner.substitute(&step);
-                        junction.current.substitute(&step);
-                    }
+                    next.iter_mut().for_each(|junction| junction.substitute(&step));
                     steps.push(step);
                     true
                 }
@@ -114,6 +137,22 @@ impl Search<'_> {
                 self.answer.points.push(point);
             }
         }
+    }
+}
+
+impl Junction {
+    /// What is zero in a state; nothing where the diode has no such state.
+    fn equation(&self, state: Assumed) -> Option<Form> {
+        match state {
+            Assumed::Conducting => Some(self.inner.plus(&-&self.forward)),
+            Assumed::Blocking => Some(self.current.clone()),
+            Assumed::Breakdown => self.reverse.as_ref().map(|reverse| self.inner.plus(reverse)),
+        }
+    }
+
+    fn substitute(&mut self, step: &Step) {
+        self.inner.substitute(step);
+        self.current.substitute(step);
     }
 }
 

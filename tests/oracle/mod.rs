@@ -25,7 +25,7 @@ mod parts;
 mod rational;
 
 pub use answer::{Answer, Range, StateWord, Verdict};
-pub use enumerate::solve;
+pub use enumerate::{Assumed, solve, with_states};
 pub use parts::{Division, acceptable_verdicts, divide};
 pub use rational::Rat;
 

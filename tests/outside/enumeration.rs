@@ -2,7 +2,7 @@
 
 use crate::circuits::{Circuit, random};
 use crate::compare::{CLOSE, both, differences};
-use crate::oracle::{self, Verdict, acceptable_verdicts};
+use crate::oracle::{self, Assumed, StateWord, Verdict, acceptable_verdicts};
 use crate::run;
 use crate::shrink::shrink;
 use std::collections::BTreeMap;
@@ -70,4 +70,32 @@ fn the_random_networks_hold_every_verdict_in_good_number() {
         let share = shares.get(&verdict).copied().unwrap_or(0);
         assert!(share >= 30, "only {share} of {count} random networks are {verdict:?}: {shares:?}");
     }
+}
+
+/// In passive networks one assignment holds the whole solution set: that of each diode's state over all of it.
+#[test]
+fn the_enumeration_agrees_with_itself() {
+    let mut compared = 0;
+    for seed in 0..1000 {
+        let circuit = random::network(seed);
+        let answer = oracle::solve(&circuit);
+        let ideal = circuit.diodes().any(|(_, d)| d.drop.is_zero());
+        if !answer.solvable() || ideal {
+            continue;
+        }
+        let states: Option<Vec<Assumed>> = circuit
+            .diodes()
+            .map(|(at, _)| match answer.current(at).state() {
+                StateWord::Conducting => Some(Assumed::Conducting),
+                StateWord::Blocking => Some(Assumed::Blocking),
+                StateWord::Breakdown => Some(Assumed::Breakdown),
+                StateWord::Open => None,
+            })
+            .collect();
+        let states = states.unwrap_or_else(|| panic!("a passive diode goes both ways\n{}", circuit.text()));
+        let alone = oracle::with_states(&circuit, &states);
+        assert_eq!(alone.ranges, answer.ranges, "{}", circuit.text());
+        compared += 1;
+    }
+    assert!(compared > 300, "only {compared} were compared");
 }

@@ -107,15 +107,17 @@ def main(kneewise):
     exact = ["--exact"] if kneewise == "exact" else []
     small = networks(*exact, "1500")
     large = networks("--first", "100000", "--diodes", "12..40", "300") if not exact else []
+    hard = networks("--families") if not exact else []
     if not exact:
         kneewise = str(pathlib.Path(kneewise).resolve())
-        for record in small + large:
+        for record in small + large + hard:
             record["answer"] = ask(kneewise, record["text"])
     results = [
         compare("small networks by mixed-integer programming", small, milp.solve),
         compare("small networks by complementary pivoting", small, lemke.solve),
         compare("networks of 12 to 40 diodes by mixed-integer programming", large[:20], milp.solve),
         compare("networks of 12 to 40 diodes by complementary pivoting", large, lemke.solve),
+        compare("hard families by complementary pivoting", hard, lemke.solve),
     ]
     passed, failed = (sum(column) for column in zip(*results))
     print(f"{passed} passed, {failed} failed")
