@@ -43,12 +43,12 @@ pub fn find(evidence: &Evidence<'_>) -> Vec<LooseEnd> {
     loose
 }
 
-/// Elements whose pin may well be left open: unknown ones, outputs of controlled voltage sources, the ends of
+/// Elements whose pin may well be left open: unknown ones, positive outputs of controlled voltage sources, the ends of
 /// an unused winding.
 fn may_end_here(evidence: &Evidence<'_>, touch: Touch, coupled: &FxHashSet<ElementId>) -> bool {
     let circuit = evidence.circuit;
     match circuit.element(touch.element).behaviour {
-        Behaviour::VoltageByVoltage { .. } | Behaviour::VoltageByCurrent { .. } => touch.pin < 2,
+        Behaviour::VoltageByVoltage { .. } | Behaviour::VoltageByCurrent { .. } => touch.pin == 0,
         Behaviour::Inductor { .. } if coupled.contains(&touch.element) => {
             circuit.pins(touch.element).iter().all(|p| evidence.wiring.touching.only(p.node).is_some())
         }
