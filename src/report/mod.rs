@@ -4,6 +4,7 @@
 mod excerpt;
 pub mod json;
 mod paint;
+mod pen;
 mod rules;
 mod states;
 mod summary;

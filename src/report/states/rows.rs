@@ -1,0 +1,155 @@
+//! The tables: one row for each diode and each state that it takes, with the span of its values.
+
+use super::super::paint::{Ink, Page, clean, wrap};
+use super::super::table::{self, Cell};
+use super::{SetView, WIDTH, some_of};
+use crate::circuit::Circuit;
+use crate::finding::{Figure, figure, interval};
+use crate::operating::{DiodeResult, Drop, Interval, Quantity, State};
+
+/// A number below this share of the largest of its kind is rounding, not an answer.
+const ROUNDING: f64 = 1e-12;
+
+/// One diode over all sets in which it is in one state.
+struct Row<'a> {
+    results: Vec<(&'a SetView<'a>, &'a DiodeResult)>,
+}
+
+pub(super) fn tables(page: &mut Page, circuit: &Circuit, views: &[SetView<'_>]) {
+    let Some(first) = views.first() else { return };
+    let count = first.solution.diodes.len();
+    let (mut changing, mut steady) = (Vec::new(), Vec::new());
+    for n in 0..count {
+        let rows = rows_of(views, n);
+        if rows.len() > 1 { changing.extend(rows) } else { steady.extend(rows) }
+    }
+    if !changing.is_empty() {
+        page.ink(Ink::Strong, "changes with the condition").end();
+        write_rows(page, circuit, &changing, true);
+        page.end();
+    }
+    if !steady.is_empty() {
+        if views.len() > 1 {
+            page.ink(Ink::Strong, "the same state in every condition").end();
+        }
+        write_rows(page, circuit, &steady, false);
+        page.end();
+    }
+}
+
+/// The `n`th diode, one row for each state it takes, in the order in which they come up.
+fn rows_of<'a>(views: &'a [SetView<'a>], n: usize) -> Vec<Row<'a>> {
+    let mut rows: Vec<(State, Row<'a>)> = Vec::new();
+    for view in views {
+        let Some(result) = view.solution.diodes.get(n) else { continue };
+        if view.left_out.binary_search(&result.element).is_ok() {
+            continue;
+        }
+        match rows.iter_mut().find(|(state, _)| *state == result.state) {
+            Some((_, row)) => row.results.push((view, result)),
+            None => rows.push((result.state, Row { results: vec![(view, result)] })),
+        }
+    }
+    rows.into_iter().map(|(_, row)| row).collect()
+}
+
+fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditions: bool) {
+    let mut head = vec!["diode", "state", "current", "voltage", "drop", "drop from", "margin"];
+    if with_conditions {
+        head.push("in");
+    }
+    let mut cells: Vec<Vec<Cell>> = rows.iter().map(|row| row.cells(circuit, with_conditions)).collect();
+    for n in (1..cells.len()).rev() {
+        // a diode of several rows is named once
+        if cells[n][0].text == cells[n - 1][0].text {
+            cells[n][0].text.clear();
+        }
+    }
+    table::write(page, "  ", &head, &cells);
+    for row in rows {
+        if let Some((_, DiodeResult { element, not_evaluated: Some(reason), .. })) = row.results.first() {
+            let text = format!("{} is not evaluated: {reason}", circuit.element_name(*element));
+            for line in wrap(&text, WIDTH) {
+                page.plain("  ").ink(Ink::Faint, &line).end();
+            }
+        }
+    }
+}
+
+impl Row<'_> {
+    fn cells(&self, circuit: &Circuit, with_conditions: bool) -> Vec<Cell> {
+        let Some((_, first)) = self.results.first() else { return Vec::new() };
+        let known = |scaled: fn(&SetView<'_>) -> f64, of: fn(&DiodeResult) -> Quantity, unit: &str| {
+            span_cell(self.results.iter().map(|(v, d)| settle(of(d), scaled(v))), unit)
+        };
+        let margin = self.results.iter().filter_map(|(_, d)| d.margin).reduce(f64::min);
+        let mut cells = vec![
+            Cell::word(clean(&circuit.element_name(first.element))),
+            Cell::inked(first.state.word(), state_ink(first.state)),
+            known(|v| v.scale.1, |d| d.current, "A"),
+            known(|v| v.scale.0, |d| d.voltage, "V"),
+            drop_cell(self.results.iter().map(|(_, d)| &d.drop)),
+            Cell::inked(clean(&first.drop.origin.to_string()), Some(Ink::Faint)),
+            margin.map_or_else(Cell::default, |m| figure(m, "V").into()),
+        ];
+        if with_conditions {
+            let names: Vec<&str> = self.results.iter().map(|(v, _)| v.name.as_str()).collect();
+            cells.push(Cell::word(clean(&some_of(&names))));
+        }
+        cells
+    }
+}
+
+pub(in crate::report) fn state_ink(state: State) -> Option<Ink> {
+    match state {
+        State::Conducting => Some(Ink::Live),
+        State::Blocking => None,
+        State::Breakdown => Some(Ink::Reverse),
+        State::Open => Some(Ink::Warning),
+        State::NotEvaluated => Some(Ink::Faint),
+    }
+}
+
+/// Rounding is shown as zero.
+fn settle(quantity: Quantity, largest: f64) -> Quantity {
+    let settled = |v: f64| if v.abs() < ROUNDING * largest { 0.0 } else { v };
+    match quantity {
+        Quantity::Known(v) => Quantity::Known(settled(v)),
+        Quantity::Open(i) => Quantity::Open(Interval { low: settled(i.low), high: settled(i.high) }),
+        Quantity::Unknown => Quantity::Unknown,
+    }
+}
+
+/// All values of a quantity in one cell: one figure, the span of several, or an open interval.
+fn span_cell(values: impl Iterator<Item = Quantity>, unit: &str) -> Cell {
+    let (mut low, mut high, mut open, mut any) = (f64::INFINITY, f64::NEG_INFINITY, false, false);
+    for value in values {
+        let (from, to) = match value {
+            Quantity::Known(v) => (v, v),
+            Quantity::Open(i) => (i.low, i.high),
+            Quantity::Unknown => continue,
+        };
+        open |= matches!(value, Quantity::Open(_));
+        any = true;
+        (low, high) = (low.min(from), high.max(to));
+    }
+    match (any, open) {
+        (false, _) => Cell::word("-"),
+        (_, true) => Cell::inked(format!("open: {}", interval(low, high, unit)), Some(Ink::Warning)),
+        _ => between(figure(low, unit), figure(high, unit)),
+    }
+}
+
+/// `4.10 … 8.30` `mA`
+fn between(low: Figure, high: Figure) -> Cell {
+    match (low == high, low.unit == high.unit) {
+        (true, _) => low.into(),
+        (_, true) => Figure { number: format!("{} … {}", low.number, high.number), unit: low.unit }.into(),
+        _ => Figure { number: format!("{} {} … {}", low.number, low.unit, high.number), unit: high.unit }
+            .into(),
+    }
+}
+
+fn drop_cell<'a>(drops: impl Iterator<Item = &'a Drop>) -> Cell {
+    span_cell(drops.map(|d| Quantity::Known(d.volts)), "V")
+}
