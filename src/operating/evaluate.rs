@@ -7,8 +7,8 @@ use super::declared::{USUAL_TEMPERATURE, declared};
 use super::directory::Directory;
 use super::drop::{Diode, DropLaw, diodes};
 use super::reach::left_to_time;
-use super::result::{Case, Operating, Reasoning, Why};
-use super::why;
+use super::result::{Case, Operating, Why};
+use super::why::Reasoner;
 use crate::circuit::{Behaviour, Circuit, ElementId, Overrides, Parsed, ScopeId, expand};
 use crate::complementarity::{Interval, Outcome, Quantity};
 use crate::config::Options;
@@ -57,12 +57,12 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
         first: Vec::new(),
         spent: Vec::new(),
         why: asked(circuit, directory, options, &mut findings),
-        reasonings: Vec::new(),
+        reasoner: Reasoner::default(),
     };
     run.first_pass(&mut list);
     let left_to_time = left_to_time(circuit, &plan);
     let cases = (0..plan.conditions.len()).map(|n| run.case(&list, n)).collect();
-    let reasonings = run.reasonings;
+    let reasonings = run.reasoner.finish();
     let why = run.why.map(|element| Why { element, reasonings });
     (Operating { cases, left_to_time, why }, findings)
 }
@@ -103,7 +103,7 @@ struct Run<'a> {
     /// The diode that is asked about.
     why: Option<ElementId>,
     /// What was said about it.
-    reasonings: Vec<Reasoning>,
+    reasoner: Reasoner,
 }
 
 impl Run<'_> {
@@ -150,7 +150,9 @@ impl Run<'_> {
         let mut case = case(&setting, self.why, &solved);
         case.solves += self.spent.get(number).copied().unwrap_or(0);
         if let Some(element) = self.why {
-            why::add(&mut self.reasonings, &setting, &solved, &case, element);
+            let mut reasoner = std::mem::take(&mut self.reasoner);
+            reasoner.add(&setting, &solved, &case, element);
+            self.reasoner = reasoner;
         }
         case
     }

@@ -4,8 +4,7 @@
 use super::paint::{Ink, Page, clean, wrap};
 use super::states::state_ink;
 use crate::analysis::Analysis;
-use crate::finding::quantity;
-use crate::operating::{Flip, Reasoning, State};
+use crate::operating::Reasoning;
 
 /// Running text is broken at this width.
 const WIDTH: usize = 96;
@@ -39,9 +38,6 @@ fn write_reasoning(page: &mut Page, name: &str, reasoning: &Reasoning) {
         item(page, &format!("{:>4}. ", n + 1), sentence);
     }
     item(page, "      ", &reasoning.flip_sentence);
-    for flip in &reasoning.flips {
-        item(page, "      ", &flip_words(name, flip));
-    }
 }
 
 /// A sentence behind its number, further lines under its first word.
@@ -57,15 +53,4 @@ fn item(page: &mut Page, lead: &str, sentence: &str) {
         };
         page.plain(line).end();
     }
-}
-
-/// `V1 from 5 V to 0.7 V: D1 is blocking beyond`
-fn flip_words(name: &str, flip: &Flip) -> String {
-    let unit =
-        if flip.source.rsplit(':').next().is_some_and(|n| n.starts_with(['I', 'i'])) { "A" } else { "V" };
-    let beyond = match flip.state {
-        State::NotEvaluated => "no consistent state beyond".to_owned(),
-        state => format!("beyond, {name} is {}", state.word()),
-    };
-    format!("{} from {} to {}: {beyond}", flip.source, quantity(flip.from, unit), quantity(flip.to, unit))
 }
