@@ -1,8 +1,28 @@
 //! Piecewise-linear networks as mathematics: a graph whose branches obey linear laws or junction laws, and all
 //! its solutions. No circuits, names, units or spans here; `operating` translates.
 
+mod assemble;
+mod decimal;
+mod double_double;
+mod existence;
+mod flow;
+mod forest;
+mod general;
+mod interior;
+mod laplacian;
+mod mesh;
 mod network;
+mod openness;
 mod outcome;
+mod parts;
+mod passive;
+mod pivoting;
+mod rails;
+mod settle;
+mod solve;
+mod supernodal;
+#[cfg(test)]
+mod tests;
 
 pub use network::{Branch, Control, Junction, Law, Level, Network};
 pub use outcome::{Interval, Outcome, Part, Place, Quantity, Reason, Solution, Verdict, View};

@@ -166,18 +166,6 @@ pub struct Outcome {
 }
 
 impl Network {
-    /// All solutions. Never fails: the verdict says what could not be done.
-    pub fn solve(&self) -> Outcome {
-        let _ = self;
-        Outcome {
-            verdict: Verdict::Unverified,
-            parts: Vec::new(),
-            solutions: Vec::new(),
-            truncated: false,
-            solves: 0,
-        }
-    }
-
     /// What each of `junctions` (branch numbers) sees in `solution`: `None` where that is not finite (fed by
     /// current sources only, floating, open) or its part was not evaluated.
     pub fn views(&self, solution: &Solution, junctions: &[u32]) -> Vec<Option<View>> {

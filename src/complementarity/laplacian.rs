@@ -1,0 +1,116 @@
+//! Linear systems of conductances: nodes, edges with positive conductance, injected currents, potentials against
+//! node 0. Two ways to factor one pattern: `mesh` (no subtraction, any spread of values) and `supernodal` (fast on
+//! large systems of moderate spread). Nothing here knows junctions.
+
+use super::mesh::Mesh;
+use super::supernodal::Supernodal;
+
+/// From this number of unknowns on the supernodal factorization is the faster one.
+const LARGE: usize = 2000;
+/// Greatest over least conductance up to which plain double precision keeps enough digits for refinement.
+const MODERATE: f64 = 1e9;
+
+/// One pattern, factored as often as the numbers change.
+pub(super) struct Laplacian {
+    nodes: usize,
+    edges: Vec<(u32, u32)>,
+    mesh: Option<Mesh>,
+    supernodal: Option<Supernodal>,
+    use_mesh: bool,
+    /// Factorizations done.
+    pub(super) factorizations: usize,
+}
+
+impl Laplacian {
+    /// `nodes` counts node 0. Every node must be joined to node 0 by some path of edges.
+    pub(super) fn new(nodes: usize, edges: Vec<(u32, u32)>) -> Self {
+        let supernodal = if nodes > LARGE { Supernodal::new(nodes, &edges) } else { None };
+        Laplacian { nodes, edges, mesh: None, supernodal, use_mesh: false, factorizations: 0 }
+    }
+
+    pub(super) fn edges(&self) -> &[(u32, u32)] {
+        &self.edges
+    }
+
+    /// Factors with these conductances (> 0), one for each edge. With `exact`, wide spreads are factored without
+    /// subtraction whatever it costs.
+    pub(super) fn factor(&mut self, conductances: &[f64], exact: bool) {
+        self.factorizations += 1;
+        let proper = |&(a, b): &(u32, u32)| a != b;
+        let values = || self.edges.iter().zip(conductances).filter(|(e, _)| proper(e)).map(|(_, &g)| g);
+        let spread = values().fold(0.0, f64::max) / values().fold(f64::INFINITY, f64::min);
+        self.use_mesh = true;
+        if !exact || spread <= MODERATE {
+            let factored = self.supernodal.as_mut().is_some_and(|s| s.factor(&self.edges, conductances));
+            self.use_mesh = !factored;
+        }
+        if self.use_mesh {
+            self.factor_mesh(conductances);
+        }
+    }
+
+    /// Factors again without subtraction, where [`factor`](Self::factor) lost too many digits.
+    pub(super) fn factor_again(&mut self, conductances: &[f64]) -> bool {
+        if self.use_mesh {
+            return false;
+        }
+        self.factorizations += 1;
+        self.use_mesh = true;
+        self.factor_mesh(conductances);
+        true
+    }
+
+    fn factor_mesh(&mut self, conductances: &[f64]) {
+        let (nodes, edges) = (self.nodes, &self.edges);
+        self.mesh.get_or_insert_with(|| Mesh::new(nodes, edges)).factor(conductances);
+    }
+
+    /// Injected currents to potentials, in place; entry 0 becomes 0.
+    pub(super) fn solve(&mut self, values: &mut [f64]) {
+        match (&self.mesh, &mut self.supernodal) {
+            (Some(mesh), _) if self.use_mesh => mesh.solve(values),
+            (_, Some(supernodal)) => supernodal.solve(values),
+            _ => values.fill(0.0),
+        }
+    }
+}
+
+/// Fill-reducing order of the unknowns 1..nodes by approximate minimum degree (Amestoy, Davis & Duff 1996);
+/// natural order where that fails. `order[k]` is the node eliminated as number `k`.
+pub(super) fn elimination_order(nodes: usize, edges: &[(u32, u32)]) -> Vec<u32> {
+    use faer::dyn_stack::{MemBuffer, MemStack};
+    use faer::sparse::linalg::amd;
+    let n = nodes - 1;
+    let (col_ptr, row_idx) = upper_pattern(nodes, edges);
+    let natural = || (1..nodes as u32).collect();
+    let Ok(mut memory) = MemBuffer::try_new(amd::order_maybe_unsorted_scratch::<usize>(n, row_idx.len()))
+    else {
+        return natural();
+    };
+    let pattern = faer::sparse::SymbolicSparseColMatRef::new_checked(n, n, &col_ptr, None, &row_idx);
+    let (mut forward, mut inverse) = (vec![0usize; n], vec![0usize; n]);
+    let stack = MemStack::new(&mut memory);
+    match amd::order_maybe_unsorted(&mut forward, &mut inverse, pattern, Default::default(), stack) {
+        Ok(_) => forward.into_iter().map(|k| k as u32 + 1).collect(),
+        Err(_) => natural(),
+    }
+}
+
+/// Columns of the strict upper triangle (unknowns counted from 0), rows sorted, no duplicates.
+fn upper_pattern(nodes: usize, edges: &[(u32, u32)]) -> (Vec<usize>, Vec<usize>) {
+    let mut pairs: Vec<(u32, u32)> = edges
+        .iter()
+        .filter(|(a, b)| a != b && *a != 0 && *b != 0)
+        .map(|&(a, b)| (a.max(b) - 1, a.min(b) - 1))
+        .collect();
+    pairs.sort_unstable();
+    pairs.dedup();
+    let mut col_ptr = vec![0usize; nodes];
+    for (col, _) in &pairs {
+        col_ptr[*col as usize + 1] += 1;
+    }
+    for n in 1..nodes {
+        col_ptr[n] += col_ptr[n - 1];
+    }
+    (col_ptr, pairs.into_iter().map(|(_, row)| row as usize).collect())
+}

@@ -1,0 +1,333 @@
+//! What the laws leave open, as feasible intervals: currents that can shift around loops of branches whose
+//! voltages stand whatever they carry, and potentials of islands that only blocking junctions tie to the rest.
+
+use super::flow::Flow;
+use super::forest::{Adjacency, Sets};
+use super::outcome::Interval;
+use super::passive::{Passive, Point};
+use std::cmp::{Ordering, Reverse};
+use std::collections::BinaryHeap;
+
+/// Share of the largest current or voltage below which an interval is a point.
+const POINT: f64 = 1e-11;
+/// Loops of more arcs than this are bounded only by what flows into them.
+const TOO_MANY: usize = 4000;
+
+/// A branch whose voltage stays as it is while its current changes.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Arc {
+    pub(super) from: u32,
+    pub(super) to: u32,
+    /// Current in the sample.
+    pub(super) current: f64,
+    /// How far the current may rise and fall.
+    pub(super) rise: f64,
+    pub(super) fall: f64,
+    /// No voltage stands across it: current that merely circulates through such arcs is left out.
+    pub(super) idle: bool,
+    /// An inductor or 0 Ω, through which current may circulate in either direction.
+    pub(super) short: bool,
+}
+
+/// Interval of each arc's current; `None` where it cannot change.
+pub(super) fn current_ranges(nodes: usize, arcs: &[Arc]) -> Vec<Option<Interval>> {
+    let mut ranges = vec![None; arcs.len()];
+    for block in blocks(nodes, arcs) {
+        ranges_in_block(arcs, &block, &mut ranges);
+    }
+    ranges
+}
+
+/// Arcs grouped by two-edge-connected components: an arc that is a bridge is in none.
+fn blocks(nodes: usize, arcs: &[Arc]) -> Vec<Vec<u32>> {
+    let adjacency = Adjacency::new(nodes, arcs.iter().map(|a| (a.from, a.to)));
+    let bridge = bridges(nodes, arcs, &adjacency);
+    let mut sets = Sets::new(nodes);
+    for (arc, _) in arcs.iter().zip(&bridge).filter(|(a, bridge)| !**bridge && a.from != a.to) {
+        sets.union(arc.from, arc.to);
+    }
+    let mut by_root: std::collections::BTreeMap<u32, Vec<u32>> = Default::default();
+    for (n, arc) in arcs.iter().enumerate() {
+        if arc.from != arc.to && !bridge[n] {
+            by_root.entry(sets.find(arc.from)).or_default().push(n as u32);
+        }
+    }
+    by_root.into_values().collect()
+}
+
+/// Bridges of a multigraph by depth-first search (Tarjan 1974), without recursion; parallel arcs are none.
+fn bridges(nodes: usize, arcs: &[Arc], adjacency: &Adjacency) -> Vec<bool> {
+    let mut bridge = vec![false; arcs.len()];
+    let mut number = vec![u32::MAX; nodes];
+    let mut low = vec![u32::MAX; nodes];
+    let mut count = 0;
+    for root in 0..nodes as u32 {
+        if number[root as usize] != u32::MAX || adjacency.of(root).is_empty() {
+            continue;
+        }
+        let mut stack = vec![(root, u32::MAX, 0usize)];
+        while let Some((node, by, at)) = stack.pop() {
+            if at == 0 {
+                number[node as usize] = count;
+                low[node as usize] = count;
+                count += 1;
+            }
+            let Some(&(arc, other)) = adjacency.of(node).get(at) else {
+                if let Some(&(parent, _, _)) = stack.last() {
+                    low[parent as usize] = low[parent as usize].min(low[node as usize]);
+                    bridge[by as usize] = low[node as usize] > number[parent as usize];
+                }
+                continue;
+            };
+            stack.push((node, by, at + 1));
+            if arc == by || other == node {
+                continue;
+            }
+            if number[other as usize] == u32::MAX {
+                stack.push((other, arc, 0));
+            } else {
+                low[node as usize] = low[node as usize].min(number[other as usize]);
+            }
+        }
+    }
+    bridge
+}
+
+fn ranges_in_block(arcs: &[Arc], block: &[u32], ranges: &mut [Option<Interval>]) {
+    let mut names: Vec<u32> =
+        block.iter().flat_map(|&n| [arcs[n as usize].from, arcs[n as usize].to]).collect();
+    names.sort_unstable();
+    names.dedup();
+    let local = |node: u32| names.binary_search(&node).unwrap_or(0) as u32;
+    let gross = block.iter().map(|&n| arcs[n as usize].current.abs()).fold(0.0, f64::max);
+    let mut flow = Flow::new(names.len(), 1e-13 * gross);
+    for &n in block {
+        let arc = &arcs[n as usize];
+        flow.add(local(arc.from), local(arc.to), arc.rise, arc.fall);
+    }
+    let whole = flow.capacities();
+    let inflow = inflow(arcs, block, names.len(), local);
+    let mixed = block.iter().any(|&n| !arcs[n as usize].short);
+    for (k, &n) in block.iter().enumerate() {
+        let arc = &arcs[n as usize];
+        let (a, b) = (local(arc.from), local(arc.to));
+        let mut bound = |from, to, idle: bool| {
+            flow.restore(&whole);
+            flow.close(2 * k as u32);
+            if idle {
+                leave_out_idle(&mut flow, arcs, block, arc, inflow);
+            }
+            if block.len() > TOO_MANY { f64::INFINITY } else { flow.greatest(from, to) }
+        };
+        let mut up = bound(b, a, false).min(arc.rise);
+        let mut down = bound(a, b, false).min(arc.fall);
+        if down == f64::INFINITY && arc.idle && mixed {
+            down = bound(a, b, true);
+        }
+        if up == f64::INFINITY && arc.idle && mixed {
+            up = bound(b, a, true);
+        }
+        let interval = Interval { low: arc.current - down, high: arc.current + up };
+        let size = interval.low.abs().max(interval.high.abs()).max(gross);
+        if interval.high - interval.low > POINT * size {
+            ranges[n as usize] = Some(snapped(interval, size));
+        }
+    }
+}
+
+/// Ends that are zero but for rounding are zero.
+fn snapped(interval: Interval, size: f64) -> Interval {
+    let snap = |x: f64| if x.abs() <= POINT * size.min(1e300) && size.is_finite() { 0.0 } else { x };
+    Interval { low: snap(interval.low), high: snap(interval.high) }
+}
+
+/// Current that enters a block from outside.
+fn inflow(arcs: &[Arc], block: &[u32], nodes: usize, local: impl Fn(u32) -> u32) -> f64 {
+    let mut net = vec![0.0; nodes];
+    for &n in block {
+        let arc = &arcs[n as usize];
+        net[local(arc.from) as usize] += arc.current;
+        net[local(arc.to) as usize] -= arc.current;
+    }
+    net.into_iter().filter(|x| *x > 0.0).sum()
+}
+
+/// Ideal junctions can pass any current around among themselves; only what enters from outside counts, and it does
+/// not run back beside the arc.
+fn leave_out_idle(flow: &mut Flow, arcs: &[Arc], block: &[u32], arc: &Arc, inflow: f64) {
+    for (k, &other) in block.iter().enumerate() {
+        let other = &arcs[other as usize];
+        if !other.idle {
+            continue;
+        }
+        if other.from == arc.to && other.to == arc.from && !other.short {
+            flow.limit(2 * k as u32, 0.0);
+        } else {
+            flow.limit(2 * k as u32, (inflow - other.current).max(0.0));
+            flow.limit(2 * k as u32 + 1, (inflow + other.current).max(0.0));
+        }
+    }
+}
+
+/// Open potentials of one part.
+pub(super) struct Potentials {
+    /// Island of each group; island 0 stands.
+    pub(super) island: Vec<u32>,
+    /// How far each island may fall and rise from the sample.
+    pub(super) room: Vec<Interval>,
+    /// Distances between islands: `apart[a][b]` is how much `a` may rise against `b`; only where few.
+    apart: Vec<Vec<f64>>,
+}
+
+/// Islands and their room. `binds[n]` tells whether diode `n` fixes its voltage (it can carry current).
+pub(super) fn potentials(part: &Passive, point: &Point, binds: &[bool]) -> Potentials {
+    let mut sets = Sets::new(part.nodes);
+    for r in &part.resistors {
+        sets.union(r.p, r.q);
+    }
+    for (d, _) in part.diodes.iter().zip(binds).filter(|(_, binds)| **binds) {
+        sets.union(d.p, d.q);
+    }
+    let mut number = vec![u32::MAX; part.nodes];
+    let mut count = 0;
+    let mut island = Vec::with_capacity(part.nodes);
+    for n in 0..part.nodes as u32 {
+        let root = sets.find(n) as usize;
+        if number[root] == u32::MAX {
+            number[root] = count;
+            count += 1;
+        }
+        island.push(number[root]);
+    }
+    let count = count as usize;
+    let bounds = if count > 1 { bounds(part, point, &island) } else { Vec::new() };
+    let rise = nearest(count, &bounds, 0, false);
+    let fall = nearest(count, &bounds, 0, true);
+    let room = rise.iter().zip(&fall).map(|(&high, &low)| Interval { low: -low, high }).collect();
+    let apart = match count {
+        3..=200 => (0..count).map(|n| nearest(count, &bounds, n, false)).collect(),
+        _ => Vec::new(),
+    };
+    Potentials { island, room, apart }
+}
+
+impl Potentials {
+    /// How much the voltage from group `p` to group `q` may change from the sample.
+    pub(super) fn between(&self, p: u32, q: u32) -> Interval {
+        let (a, b) = (self.island[p as usize] as usize, self.island[q as usize] as usize);
+        if a == b {
+            return Interval { low: 0.0, high: 0.0 };
+        }
+        match self.apart.get(b) {
+            Some(from_b) => Interval { low: -self.apart[a][b], high: from_b[a] },
+            None => Interval {
+                low: self.room[a].low - self.room[b].high,
+                high: self.room[a].high - self.room[b].low,
+            },
+        }
+    }
+}
+
+/// `shift(to) ≤ shift(from) + cost`.
+type Bound = (u32, u32, f64);
+
+fn bounds(part: &Passive, point: &Point, island: &[u32]) -> Vec<Bound> {
+    let mut bounds = Vec::new();
+    for d in &part.diodes {
+        let (p, q) = (island[d.p as usize], island[d.q as usize]);
+        if p == q {
+            continue;
+        }
+        let v = part.across(d, &point.potentials).round();
+        bounds.push((q, p, (d.forward - v).max(0.0)));
+        if d.reverse.is_finite() {
+            bounds.push((p, q, (v + d.reverse).max(0.0)));
+        }
+    }
+    bounds
+}
+
+#[derive(PartialEq)]
+struct Ordered(f64);
+impl Eq for Ordered {}
+impl PartialOrd for Ordered {
+    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
+        Some(self.cmp(other))
+    }
+}
+impl Ord for Ordered {
+    fn cmp(&self, other: &Self) -> Ordering {
+        self.0.total_cmp(&other.0)
+    }
+}
+
+/// Shortest distances from island `start` (Dijkstra 1959), against the bounds' direction with `back`.
+fn nearest(count: usize, bounds: &[Bound], start: usize, back: bool) -> Vec<f64> {
+    let mut distance = vec![f64::INFINITY; count];
+    distance[start] = 0.0;
+    if bounds.is_empty() {
+        return distance;
+    }
+    let ends = |b: &Bound| if back { (b.1, b.0) } else { (b.0, b.1) };
+    let mut out = vec![Vec::new(); count];
+    for (n, b) in bounds.iter().enumerate() {
+        out[ends(b).0 as usize].push(n);
+    }
+    let mut heap = BinaryHeap::from([Reverse((Ordered(0.0), start))]);
+    while let Some(Reverse((Ordered(d), node))) = heap.pop() {
+        if d > distance[node] {
+            continue;
+        }
+        for &n in &out[node] {
+            let to = ends(&bounds[n]).1 as usize;
+            let value = d + bounds[n].2;
+            if value < distance[to] {
+                distance[to] = value;
+                heap.push(Reverse((Ordered(value), to)));
+            }
+        }
+    }
+    distance
+}
+
+/// Whether an interval of change is a point against the size of the voltages.
+pub(super) fn is_point(room: Interval, size: f64) -> bool {
+    room.high - room.low <= POINT * size
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn two_parallel_arcs_share_what_flows() {
+        let junction = |current| Arc {
+            from: 1,
+            to: 0,
+            current,
+            rise: f64::INFINITY,
+            fall: current,
+            idle: false,
+            short: false,
+        };
+        let ranges = current_ranges(2, &[junction(0.75), junction(0.25)]);
+        for range in ranges {
+            let range = range.unwrap();
+            assert_eq!((range.low, range.high), (0.0, 1.0));
+        }
+    }
+
+    #[test]
+    fn a_bridge_is_not_open() {
+        let arc = |from, to| Arc {
+            from,
+            to,
+            current: 1.0,
+            rise: f64::INFINITY,
+            fall: 1.0,
+            idle: false,
+            short: false,
+        };
+        assert!(current_ranges(3, &[arc(0, 1), arc(1, 2)]).iter().all(Option::is_none));
+    }
+}

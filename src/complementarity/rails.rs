@@ -1,0 +1,131 @@
+//! Nodes tied together by sources and shorts, and the contradictions among those ties. What is tied to the
+//! reference is a boundary between parts.
+
+use super::decimal::sign_of_sum;
+use super::forest::{Forest, NONE, Tie};
+use super::network::{Law, Level, Network};
+use super::outcome::{Part, Reason, Verdict};
+use std::cmp::Ordering;
+
+/// The ties of a network.
+pub(super) struct Rails {
+    pub(super) forest: Forest,
+    pub(super) ties: Vec<Tie>,
+    /// Branch of each tie.
+    pub(super) branch: Vec<u32>,
+    /// Nodes whose potential rests on sources that contradict each other.
+    pub(super) tainted: Vec<bool>,
+    /// A part for each contradiction.
+    pub(super) contradictions: Vec<Part>,
+    /// Some loop of ties agrees: its current is open.
+    pub(super) loops: bool,
+    /// Nodes sorted by group, and where each group starts.
+    members: (Vec<u32>, Vec<u32>),
+}
+
+impl Rails {
+    pub(super) fn new(network: &Network) -> Self {
+        let (mut ties, mut branch) = (Vec::new(), Vec::new());
+        for (n, b) in network.branches.iter().enumerate() {
+            if let Some(level) = fixed(b.law) {
+                ties.push(Tie { a: b.from, b: b.to, volts: level.value.into() });
+                branch.push(n as u32);
+            }
+        }
+        let nodes = network.nodes.max(1) as usize;
+        let forest = Forest::new(nodes, &ties);
+        let mut rails = Rails {
+            forest,
+            ties,
+            branch,
+            tainted: vec![false; nodes],
+            contradictions: Vec::new(),
+            loops: false,
+            members: (Vec::new(), Vec::new()),
+        };
+        rails.members = members(&rails.forest);
+        for chord in rails.forest.chords.clone() {
+            rails.close(network, chord);
+        }
+        rails.spread_taint();
+        rails
+    }
+
+    /// The nodes of a group.
+    pub(super) fn nodes_of(&self, group: u32) -> &[u32] {
+        let (nodes, start) = &self.members;
+        &nodes[start[group as usize] as usize..start[group as usize + 1] as usize]
+    }
+
+    /// Checks the loop that a chord closes.
+    fn close(&mut self, network: &Network, chord: u32) {
+        let tie = self.ties[chord as usize];
+        let walk = self.forest.walk(&self.ties, tie.b, tie.a);
+        let mut around = vec![(chord, 1.0)];
+        around.extend(walk);
+        let level = |tie: u32| fixed(network.branches[self.branch[tie as usize] as usize].law);
+        let terms: Vec<(f64, Level)> =
+            around.iter().filter_map(|&(tie, sign)| level(tie).map(|l| (sign, l))).collect();
+        if sign_of_sum(&terms) == Ordering::Equal {
+            self.loops = true;
+            return;
+        }
+        let gap: f64 = terms.iter().map(|(sign, l)| sign * l.value).sum();
+        let mut nodes: Vec<u32> = around
+            .iter()
+            .flat_map(|&(tie, _)| [self.ties[tie as usize].a, self.ties[tie as usize].b])
+            .filter(|&n| n != 0)
+            .collect();
+        nodes.sort_unstable();
+        nodes.dedup();
+        for &n in &nodes {
+            self.tainted[n as usize] = true;
+        }
+        let branches: Vec<u32> = around.iter().map(|&(tie, _)| self.branch[tie as usize]).collect();
+        let reason = Reason::Loop { branches: branches.clone(), gap: gap.abs() };
+        self.contradictions.push(Part {
+            verdict: Verdict::None,
+            reasons: vec![reason],
+            branches,
+            nodes,
+            truncated: false,
+        });
+    }
+
+    /// What hangs on a tainted node is tainted.
+    fn spread_taint(&mut self) {
+        for &node in &self.forest.order {
+            if self.forest.up[node as usize] != NONE
+                && self.tainted[self.forest.parent[node as usize] as usize]
+            {
+                self.tainted[node as usize] = true;
+            }
+        }
+    }
+}
+
+fn members(forest: &Forest) -> (Vec<u32>, Vec<u32>) {
+    let mut start = vec![0u32; forest.groups + 1];
+    for &g in &forest.group {
+        start[g as usize + 1] += 1;
+    }
+    for g in 0..forest.groups {
+        start[g + 1] += start[g];
+    }
+    let mut next = start.clone();
+    let mut nodes = vec![0u32; forest.group.len()];
+    for (n, &g) in forest.group.iter().enumerate() {
+        nodes[next[g as usize] as usize] = n as u32;
+        next[g as usize] += 1;
+    }
+    (nodes, start)
+}
+
+/// The level of a branch whose voltage stands whatever it carries.
+pub(super) fn fixed(law: Law) -> Option<Level> {
+    match law {
+        Law::Voltage(level) => Some(level),
+        Law::Short => Some(Level { value: 0.0, exact: true }),
+        _ => None,
+    }
+}
