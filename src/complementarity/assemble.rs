@@ -1,8 +1,6 @@
 //! Puts the answers of the parts together: potentials, currents of sources by Kirchhoff's law, open intervals,
 //! and the list of consistent sets.
 
-use super::double_double::Dd;
-use super::forest::NONE;
 use super::network::{Law, Network};
 use super::openness::{Arc, Potentials, current_ranges, is_point, potentials};
 use super::outcome::{Interval, Outcome, Part, Place, Quantity, Solution, Verdict};
@@ -11,6 +9,7 @@ use super::passive::{Point, State};
 use super::rails::{Rails, fixed};
 use super::settle::at_level;
 use super::solve::{Answer, Found};
+use super::tie_currents::tie_currents;
 
 /// Consistent sets listed at most.
 pub(super) const MOST_SETS: usize = 16;
@@ -89,7 +88,7 @@ impl<'a> Assembly<'a> {
     fn solution(&mut self, pick: &[usize], first: bool) -> Solution {
         let mut sheet = self.blank();
         self.fill_samples(pick, &mut sheet);
-        self.fill_tie_currents(&mut sheet);
+        tie_currents(self.network, self.rails, &mut sheet.currents);
         self.fill_ranges(pick, &mut sheet);
         let mut shared = self.shared_answers(&sheet);
         let mut floating = vec![false; self.answers.len()];
@@ -143,8 +142,9 @@ impl<'a> Assembly<'a> {
                 sheet.potentials[node as usize] = u.round();
             }
         }
+        let volts = built.part.scales().volts;
         for (r, &branch) in built.part.resistors.iter().zip(&built.resistors) {
-            sheet.currents[branch as usize] = built.part.current(r, &point.potentials);
+            sheet.currents[branch as usize] = built.part.current(r, &point.potentials, volts);
         }
         for ((&i, &state), &branch) in point.currents.iter().zip(&point.states).zip(&built.diodes) {
             sheet.currents[branch as usize] = if state == State::Blocking { 0.0 } else { i };
@@ -153,53 +153,6 @@ impl<'a> Assembly<'a> {
                 State::Blocking => Place::Blocking,
                 State::Reverse => Place::Breakdown,
             };
-        }
-    }
-
-    /// Currents of ties from the leaves of their forest; a chord carries nothing in the sample.
-    fn fill_tie_currents(&self, sheet: &mut Sheet) {
-        let forest = &self.rails.forest;
-        let mut net = vec![Dd::ZERO; forest.group.len()];
-        let mut gross = vec![0.0; forest.group.len()];
-        let mut unknown = vec![false; forest.group.len()];
-        for (b, &i) in self.network.branches.iter().zip(&sheet.currents) {
-            if fixed(b.law).is_some() || b.from == b.to {
-                continue;
-            }
-            for (node, value) in [(b.from as usize, -i), (b.to as usize, i)] {
-                if i.is_nan() {
-                    unknown[node] = true;
-                } else {
-                    net[node] += value.into();
-                    gross[node] += value.abs();
-                }
-            }
-        }
-        for (n, b) in self.network.branches.iter().enumerate() {
-            if fixed(b.law).is_some()
-                && !self.rails.tainted[b.from as usize]
-                && !self.rails.tainted[b.to as usize]
-            {
-                sheet.currents[n] = 0.0;
-            }
-        }
-        for &node in forest.order.iter().rev() {
-            let (node, tie) = (node as usize, forest.up[node as usize]);
-            if tie == NONE {
-                continue;
-            }
-            let parent = forest.parent[node] as usize;
-            let value = net[node];
-            net[parent] += value;
-            gross[parent] += gross[node];
-            unknown[parent] |= unknown[node];
-            let sign = if self.rails.ties[tie as usize].a as usize == node { 1.0 } else { -1.0 };
-            let known = !unknown[node] && !self.rails.tainted[node];
-            let branch = self.rails.branch[tie as usize] as usize;
-            // the terms were rounded to double precision one by one: what that leaves is nothing
-            let rounding = 4.0 * f64::EPSILON * gross[node];
-            let value = if value.abs() <= rounding { 0.0 } else { sign * value.round() };
-            sheet.currents[branch] = if known { value } else { f64::NAN };
         }
     }
 

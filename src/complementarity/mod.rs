@@ -4,6 +4,7 @@
 mod assemble;
 mod decimal;
 mod double_double;
+mod exact;
 mod existence;
 mod flow;
 mod forest;
@@ -23,6 +24,7 @@ mod solve;
 mod supernodal;
 #[cfg(test)]
 mod tests;
+mod tie_currents;
 
 pub use network::{Branch, Control, Junction, Law, Level, Network};
 pub use outcome::{Interval, Outcome, Part, Place, Quantity, Reason, Solution, Verdict, View};

@@ -99,11 +99,15 @@ impl Passive {
         Scales { volts: if volts > 0.0 { volts } else { 1.0 }, most, least }
     }
 
-    /// Current of a resistor; a difference beyond the digits of the potentials' own double precision is nothing.
-    pub(super) fn current(&self, r: &Resistor, potentials: &[Dd]) -> f64 {
+    /// Current of a resistor; a difference at the last digits of double-double numbers is nothing.
+    pub(super) fn current(&self, r: &Resistor, potentials: &[Dd], volts: f64) -> f64 {
         let (p, q) = (potentials[r.p as usize], potentials[r.q as usize]);
         let v = p - q + r.delta;
-        if v.abs() <= 1e-17 * (p.abs() + q.abs() + r.delta.abs()) { 0.0 } else { v.over(r.ohms).round() }
+        if v.abs() <= 1e-22 * (p.abs() + q.abs() + r.delta.abs() + 1e-6 * volts) {
+            0.0
+        } else {
+            v.over(r.ohms).round()
+        }
     }
 
     /// v(p) − v(q) + delta of a diode, at its terminals.

@@ -217,7 +217,7 @@ pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
         }
         let (up, uq) = (u[b.from as usize], u[b.to as usize]);
         let v = up - uq;
-        let size = up.abs().max(uq.abs()).max(1e-9);
+        let size = up.abs().max(uq.abs()).max(1e-6);
         let off = match b.law {
             Law::Resistance(r) => (v - r * i[n]).abs() / size.max((r * i[n]).abs()),
             Law::Voltage(l) => (v - l.value).abs() / size.max(l.value.abs()),
@@ -236,9 +236,10 @@ pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
             worst = worst.max(off);
         }
     }
+    let most = i.iter().filter(|i| i.is_finite()).map(|i| i.abs()).fold(0.0, f64::max);
     for ((sum, gross), u) in net.iter().zip(u).skip(1) {
         if u.is_finite() && sum.is_finite() && *gross > 0.0 {
-            worst = worst.max(sum.abs() / gross);
+            worst = worst.max(sum.abs() / gross.max(1e-15 * most));
         }
     }
     worst
