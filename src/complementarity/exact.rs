@@ -90,7 +90,7 @@ impl<'a> Solve<'a> {
             self.refine(&mut cluster_volts, &extra);
         }
         self.lift_islands(&mut cluster_volts);
-        let nothing = 1e-20 * self.volts;
+        let nothing = 1e-24 * self.volts;
         for n in 0..self.part.nodes {
             let u = cluster_volts[self.forest.group[n] as usize] + self.forest.offset[n];
             // what is left of a cancellation at the last digits is nothing
@@ -292,6 +292,17 @@ impl<'a> Solve<'a> {
         let answer: f64 = crossing.iter().map(|&(n, other, g)| g * (at(n) - at(other))).sum();
         let change = (direct + answer).abs();
         if change <= 1e-9 * direct { 0.0 } else { change }
+    }
+
+    /// The same for a diode that carries current by its series resistance.
+    pub(super) fn link_response(&mut self, d: &super::passive::Diode) -> f64 {
+        let (p, q) = (self.forest.group[d.p as usize] as usize, self.forest.group[d.q as usize] as usize);
+        let g = 1.0 / d.series;
+        let mut rhs = vec![0.0; self.forest.groups];
+        rhs[p] += g;
+        rhs[q] -= g;
+        self.system.solve(&mut rhs);
+        (g - g * (rhs[p] - rhs[q])).abs()
     }
 
     /// Nodes below `node` in the forest, itself included, sorted.

@@ -101,13 +101,12 @@ impl Progress {
 
 /// What each diode's assumption is worth at this point.
 fn check(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<Finding> {
-    let small = nothing_of_ties(solve, currents);
+    let small = nothing_of(solve, currents);
     let diodes = solve.part.diodes.iter().zip(&solve.guide.states).zip(currents).zip(&small);
     diodes
         .map(|(((d, &state), &i), &small)| {
             let v = solve.part.across(d, &solve.potentials);
             let room = NOTHING * d.scale(&solve.potentials);
-            let small = if small.is_nan() && d.series > 0.0 { room / d.series } else { small };
             judge(d, state, (v - (d.series * i).into()).round(), i, room, small)
         })
         .collect()
@@ -142,13 +141,9 @@ fn mend_loops(solve: &Solve<'_>, currents: &[f64], findings: &mut [Finding]) {
     }
 }
 
-/// Current that counts as nothing in each tie of the forest, NaN for other diodes: what its voltage, moved by its
-/// own rounding, would change. Only currents that could be that small are asked for it.
-fn nothing_of_ties(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
-    let mut small = vec![f64::NAN; currents.len()];
-    for chord in &solve.forest.chords {
-        small[solve.tie_diode[*chord as usize] as usize] = 0.0;
-    }
+/// Current that counts as nothing in each diode: what its voltage, moved by its own rounding, would change. Only currents that could be that small are asked for it.
+fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
+    let mut small = vec![0.0; currents.len()];
     let pushed = solve.part.injected.iter().skip(1).map(|i| i.abs()).fold(0.0, f64::max);
     let mut whole = vec![0.0; solve.forest.groups];
     for (&group, &gross) in solve.forest.group.iter().zip(&solve.gross) {
@@ -169,6 +164,11 @@ fn nothing_of_ties(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
             let room = NOTHING * d.scale(&solve.potentials);
             (room * solve.response(node)).max(1e-15 * pushed).max(1e-12 * coarse)
         };
+    }
+    for (n, d) in solve.part.diodes.iter().enumerate().filter(|(_, d)| d.series > 0.0) {
+        let room = NOTHING * d.scale(&solve.potentials);
+        let suspect = solve.guide.states[n] != State::Blocking && currents[n].abs() <= room / d.series;
+        small[n] = if suspect { (room * solve.link_response(d)).max(NOTHING * room / d.series) } else { 0.0 };
     }
     small
 }
