@@ -145,7 +145,7 @@ impl<'a> Files<'a> for Excerpt<'_> {
     type Source = &'a str;
 
     fn name(&'a self, id: FileId) -> Result<String, Error> {
-        Ok(super::paint::clean(self.sources.name(id)))
+        Ok(super::paint::whole(self.sources.name(id)))
     }
 
     fn source(&'a self, id: FileId) -> Result<&'a str, Error> {

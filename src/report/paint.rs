@@ -103,9 +103,32 @@ pub(super) fn fit(c: char) -> char {
     }
 }
 
-/// Text of the input made fit for a terminal.
-pub(super) fn clean(text: &str) -> String {
+/// A word longer than this is cut: it is a mistake, or an attack on the reader's patience.
+const LONGEST_WORD: usize = 120;
+/// Characters kept of it.
+const KEPT: usize = 60;
+
+/// Text of the input made fit for a terminal, every character of it.
+pub(super) fn whole(text: &str) -> String {
     text.chars().map(fit).collect()
+}
+
+/// Text of the input made fit for a terminal and for a reader.
+pub(super) fn clean(text: &str) -> String {
+    if text.len() <= LONGEST_WORD {
+        return whole(text);
+    }
+    let mut out = String::new();
+    for word in text.split_inclusive(char::is_whitespace) {
+        if word.chars().nth(LONGEST_WORD).is_some() {
+            out.extend(word.chars().take(KEPT).map(fit));
+            out.push('…');
+            out.extend(word.chars().last().filter(|c| c.is_whitespace()));
+        } else {
+            out.extend(word.chars().map(fit));
+        }
+    }
+    out
 }
 
 /// Breaks text into lines of at most `width` columns, at spaces; a longer word stays whole, and so does what
@@ -150,6 +173,12 @@ mod tests {
     #[test]
     fn control_characters_never_reach_the_page() {
         assert_eq!(clean("R1\x1b[31m\u{202E}\ta"), "R1\u{FFFD}[31m\u{FFFD} a");
+    }
+
+    #[test]
+    fn endless_words_are_cut() {
+        let text = format!("a {} b", "x".repeat(9999));
+        assert_eq!(clean(&text), format!("a {}… b", "x".repeat(KEPT)));
     }
 
     #[test]

@@ -2,7 +2,7 @@
 //! matters and what to do; the edit that mends it; the way that leads there.
 
 use super::excerpt::Excerpt;
-use super::paint::{Ink, Page, clean, wrap};
+use super::paint::{Ink, Page, clean, whole, wrap};
 use super::pen::{INDENT, Pen};
 use crate::finding::{Edit, Finding, Severity};
 use crate::rules::Skipped;
@@ -50,7 +50,7 @@ pub(super) fn ink(severity: Severity) -> Ink {
 /// `warning · never-conducts · supply.net:14:1`
 fn headline(page: &mut Page, sources: &Sources, finding: &Finding) {
     let (start, _) = sources.positions(finding.span);
-    let name = clean(sources.name(finding.span.file));
+    let name = whole(sources.name(finding.span.file));
     page.ink(ink(finding.severity), finding.severity.word());
     page.plain(" · ").plain(finding.rule).plain(" · ");
     page.plain(&format!("{name}:{}:{}", start.line, start.column)).end();
