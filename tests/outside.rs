@@ -19,6 +19,8 @@ mod examples;
 mod families;
 #[path = "outside/run.rs"]
 mod run;
+#[path = "outside/shorts.rs"]
+mod shorts;
 #[path = "outside/shrink.rs"]
 mod shrink;
 #[path = "outside/theorems.rs"]
