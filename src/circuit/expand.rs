@@ -55,6 +55,8 @@ pub(crate) struct Expander<'a> {
     pub(super) missing_subcircuits: Vec<(Span, usize)>,
     /// Blocks that an instance was made of.
     pub(super) used_blocks: Vec<bool>,
+    /// Parameters that were asked for, with the block that declares them.
+    pub(super) used_parameters: FxHashSet<(usize, &'a str)>,
     /// Instances and notes so far.
     pub(super) parts: usize,
     /// A limit was reached.
@@ -81,6 +83,7 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
         undefined_models: Vec::new(),
         missing_subcircuits: Vec::new(),
         used_blocks: vec![false; parsed.blocks.len()],
+        used_parameters: FxHashSet::default(),
         parts: 0,
         stopped: false,
     };
@@ -140,13 +143,17 @@ impl<'a> Expander<'a> {
         self.finish_frame();
         self.tell_undefined_models();
         self.tell_missing_subcircuits();
+        self.tell_unused();
     }
 
     /// What is left to do when all lines of an instance are read; closes its frame.
     pub(super) fn finish_frame(&mut self) {
         self.late();
         self.initial_voltages();
-        self.frames.pop();
+        if let Some(frame) = self.frames.pop() {
+            let asked = frame.parameters.table.iter().filter(|(_, p)| p.was_asked());
+            self.used_parameters.extend(asked.map(|(name, _)| (frame.block, *name)));
+        }
     }
 
     /// All statements of a block, into the innermost frame.

@@ -25,6 +25,7 @@ mod source;
 mod title;
 mod told;
 mod trail;
+mod unused;
 mod value;
 
 pub use behaviour::{Behaviour, Model, ModelKind, Shape, Source, Value};

@@ -43,6 +43,13 @@ pub(super) struct Parameter {
     pub state: Evaluation,
 }
 
+impl Parameter {
+    /// Whether something needed its value.
+    pub fn was_asked(&self) -> bool {
+        !matches!(self.state, Evaluation::Waiting)
+    }
+}
+
 #[derive(Debug, Clone, Copy)]
 pub(super) enum Evaluation {
     Waiting,

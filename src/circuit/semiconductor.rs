@@ -54,7 +54,35 @@ impl Expander<'_> {
             let span = token.map_or_else(|| line.head(), |t| line.at(t));
             self.undefined_models.push((span, id));
         }
-        found
+        found.filter(|&model| self.fits(line, word, model))
+    }
+
+    /// Whether a model is of the type that the element's letter takes; told where not.
+    fn fits(&mut self, line: &Line<'_>, word: usize, id: ModelId) -> bool {
+        let letter = line.word_str(0).chars().next().unwrap_or(' ').to_ascii_uppercase();
+        let model = self.circuit.model(id);
+        let (fits, wanted) = match letter {
+            'D' => (model.kind == ModelKind::Diode, "D"),
+            'Q' => (matches!(model.kind, ModelKind::Npn | ModelKind::Pnp), "NPN or PNP"),
+            'M' => (matches!(model.kind, ModelKind::Nmos | ModelKind::Pmos), "NMOS or PMOS"),
+            'J' => (matches!(model.kind, ModelKind::Njf | ModelKind::Pjf), "NJF or PJF"),
+            'S' => (model.kind == ModelKind::VoltageSwitch, "SW"),
+            'W' => (model.kind == ModelKind::CurrentSwitch, "CSW"),
+            _ => (true, ""),
+        };
+        if fits || model.kind == ModelKind::Other {
+            return true;
+        }
+        let (name, place) = (line.word_str(0), model.name_span);
+        let span = line.word(word).map_or_else(|| line.head(), |t| line.at(t));
+        let message = format!("{name} names {}, which is no model of type {wanted}", line.word_str(word));
+        let finding = Finding::new("wrong-model-type", Severity::Warning, span, message)
+            .label(format!("type {wanted} belongs here"))
+            .also(place, "defined here")
+            .about(self.here(name))
+            .help("correct the model's name or its type; until then the element counts as having no model");
+        self.tell(finding);
+        false
     }
 
     pub(super) fn model_named(&mut self, name: &str) -> Option<ModelId> {
