@@ -1,0 +1,29 @@
+//! A model that nothing uses. Found while reading.
+
+use super::{Check, Rule};
+use crate::finding::Severity;
+
+/// The rule.
+pub const RULE: Rule = Rule {
+    name: "unused-model",
+    group: "reading",
+    severity: Severity::Note,
+    summary: "a model that nothing uses",
+    why: "Often the name is misspelt where it should be used.",
+    remedy: "Remove it or correct the name.",
+    source: None,
+    failing: "tide gauge buoy: beacon LED\n\
+              V1 in 0 5\n\
+              R1 in a 1k\n\
+              D1 a 0 DX\n\
+              .model DX D\n\
+              .model DRED D(N=2)\n\
+              .end\n",
+    passing: "tide gauge buoy: beacon LED\n\
+              V1 in 0 5\n\
+              R1 in a 1k\n\
+              D1 a 0 DX\n\
+              .model DX D\n\
+              .end\n",
+    check: Check::Reading,
+};

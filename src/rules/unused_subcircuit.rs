@@ -1,0 +1,37 @@
+//! A subcircuit of which there is no instance. Found while reading.
+
+use super::{Check, Rule};
+use crate::finding::Severity;
+
+/// The rule.
+pub const RULE: Rule = Rule {
+    name: "unused-subcircuit",
+    group: "reading",
+    severity: Severity::Note,
+    summary: "a subcircuit of which there is no instance",
+    why: "Nothing in it is examined.",
+    remedy: "Remove it, or add the instance.",
+    source: None,
+    failing: "tide gauge buoy: beacon LED\n\
+              V1 in 0 5\n\
+              R1 in a 1k\n\
+              D1 a 0 DX\n\
+              .model DX D\n\
+              .subckt LAMP p n\n\
+              R1 p m 1k\n\
+              D1 m n DX\n\
+              .ends\n\
+              .end\n",
+    passing: "tide gauge buoy: beacon LED\n\
+              V1 in 0 5\n\
+              R1 in a 1k\n\
+              D1 a 0 DX\n\
+              .model DX D\n\
+              X1 in 0 LAMP\n\
+              .subckt LAMP p n\n\
+              R1 p m 1k\n\
+              D1 m n DX\n\
+              .ends\n\
+              .end\n",
+    check: Check::Reading,
+};
