@@ -5,6 +5,7 @@ mod behaviour;
 mod block;
 mod build;
 mod controlled;
+pub(crate) mod directory;
 mod dot;
 mod element;
 mod expand;

@@ -2,8 +2,8 @@
 //! only; `condition` lays the conditions out.
 
 use super::condition::{MOST_CORNERS, Supply, level, source};
-use super::directory::Directory;
 use super::named::{twice, unknown_name};
+use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Note, NoteKind, ScopeId};
 use crate::circuit::{Hold, Parsed, Sweep};
 use crate::complementarity::Level;
@@ -172,7 +172,7 @@ impl Reader<'_> {
             return self.findings.push(not_holdable(name, note));
         }
         // a path from outside and a note inside are two levels; the inner one stands
-        let depth = super::directory::depth(self.circuit, note.scope);
+        let depth = crate::circuit::directory::depth(self.circuit, note.scope);
         if let Some(at) = self.holds.iter().position(|h| h.0 == id) {
             let (_, earlier_depth, span) = self.holds[at];
             if earlier_depth == depth {

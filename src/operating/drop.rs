@@ -1,11 +1,11 @@
 //! Which constant drop each diode has, and why: `--drop`, a `drop` note, the model's IS and N, the material,
 //! silicon, in that order.
 
-use super::directory::Directory;
 use super::law::{JunctionLaw, nearest_decade};
 use super::material::{DRIFT, Material, REFERENCE_TEMPERATURE};
 use super::named::Named;
 use super::result::{Drop, DropOrigin};
+use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, Circuit, ElementId, Model, ModelId, ModelKind, Note, NoteKind};
 use crate::complementarity::Level;
 use crate::config::Options;

@@ -5,7 +5,6 @@ mod assemble;
 mod case;
 mod condition;
 mod declared;
-mod directory;
 mod drop;
 mod evaluate;
 mod excerpt;

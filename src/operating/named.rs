@@ -1,7 +1,7 @@
 //! Notes about diodes, looked up by diode: the inner scope's note before the outer's, in one scope the element's
 //! before its model's. What the notes say is the caller's.
 
-use super::directory::{Directory, depth, outward};
+use crate::circuit::directory::{Directory, depth, outward};
 use crate::circuit::{Behaviour, Circuit, ElementId, Note, ScopeId};
 use crate::finding::{Finding, Severity};
 use crate::text::Span;

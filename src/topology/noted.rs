@@ -1,7 +1,7 @@
 //! Nodes that notes name. A supplied node is held; a watched one is meant to be looked at, so it may end there.
 
-use crate::circuit::{Circuit, NodeId, NoteKind, ScopeId};
-use rustc_hash::FxHashMap;
+use crate::circuit::directory::Directory;
+use crate::circuit::{Circuit, NodeId, NoteKind};
 
 /// Nodes named by notes, sorted.
 #[derive(Debug, Clone, Default, PartialEq, Eq)]
@@ -23,14 +23,14 @@ impl Noted {
         if !circuit.notes.iter().any(|note| names_nodes(&note.kind)) {
             return noted;
         }
-        let index = Index::of(circuit);
+        let directory = Directory::of(circuit);
         for note in circuit.notes.iter().filter(|note| names_nodes(&note.kind)) {
-            let subject = index.find(circuit, note.scope, circuit.text(note.subject));
+            let subject = directory.node(note.scope, circuit.text(note.subject));
             match &note.kind {
                 NoteKind::Supply { .. } => noted.supplied.extend(subject),
                 NoteKind::Watch { other } => {
                     noted.watched.extend(subject);
-                    let other = other.and_then(|o| index.find(circuit, note.scope, circuit.text(o)));
+                    let other = other.and_then(|o| directory.node(note.scope, circuit.text(o)));
                     noted.watched.extend(other);
                 }
                 _ => noted.watched.extend(subject),
@@ -51,49 +51,5 @@ impl Noted {
     /// A note holds this node.
     pub fn is_supplied(&self, node: NodeId) -> bool {
         self.supplied.binary_search(&node).is_ok()
-    }
-}
-
-/// Nodes by scope and folded name.
-struct Index {
-    nodes: FxHashMap<(ScopeId, String), NodeId>,
-}
-
-impl Index {
-    fn of(circuit: &Circuit) -> Self {
-        let mut nodes = FxHashMap::default();
-        for (n, node) in circuit.nodes.iter().enumerate() {
-            nodes.entry((node.scope, circuit.text(node.name).to_lowercase())).or_insert(NodeId::new(n));
-        }
-        nodes.insert((ScopeId::ROOT, "gnd".into()), NodeId::GROUND);
-        nodes.insert((ScopeId::ROOT, "0".into()), NodeId::GROUND);
-        Index { nodes }
-    }
-
-    /// The node that `name` means in `scope`: its own, or one below by its path, or one of the scopes above.
-    fn find(&self, circuit: &Circuit, scope: ScopeId, name: &str) -> Option<NodeId> {
-        let mut at = scope;
-        loop {
-            if let Some(&node) = self.nodes.get(&(at, name.to_lowercase())) {
-                return Some(node);
-            }
-            if let Some(node) = self.below(circuit, at, name) {
-                return Some(node);
-            }
-            at = circuit.scopes.get(at.index())?.parent?;
-        }
-    }
-
-    fn below(&self, circuit: &Circuit, scope: ScopeId, path: &str) -> Option<NodeId> {
-        let (instances, name) = path.rsplit_once(':')?;
-        let mut at = scope;
-        for step in instances.split(':') {
-            let next = circuit
-                .scopes
-                .iter()
-                .position(|s| s.parent == Some(at) && circuit.text(s.name).eq_ignore_ascii_case(step))?;
-            at = ScopeId::new(next);
-        }
-        self.nodes.get(&(at, name.to_lowercase())).copied()
     }
 }

@@ -8,7 +8,7 @@ mod switches;
 use super::assemble::Slots;
 use super::condition::{Plan, plan};
 use super::declared::declared;
-use super::directory::Directory;
+use crate::circuit::directory::Directory;
 use super::drop::{Diode, diodes};
 use crate::circuit::{self, Circuit, ElementId, Reading, ScopeId};
 use crate::config::Options;

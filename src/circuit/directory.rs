@@ -1,7 +1,7 @@
 //! Finds what a name means: elements, nodes and scopes by path (`X1:D3`), case ignored. Built only where
 //! something asks by name. What the named thing then does is not known here.
 
-use crate::circuit::{Circuit, ElementId, NodeId, ScopeId, Symbol};
+use super::{Circuit, ElementId, NodeId, ScopeId, Symbol};
 use hashbrown::HashMap;
 use rustc_hash::FxBuildHasher;
 
