@@ -10,7 +10,7 @@ pub(super) const RELATIVE: f64 = 1e-12;
 
 /// Sign of the sum of `sign·level` over all terms: exact where every level is exact, else with sums within
 /// [`RELATIVE`] of the largest term counted as zero.
-pub(super) fn sign_of_sum(terms: &[(f64, Level)]) -> Ordering {
+pub(crate) fn sign_of_sum(terms: &[(f64, Level)]) -> Ordering {
     let sum: f64 = terms.iter().map(|(sign, level)| sign * level.value).sum();
     let largest = terms.iter().map(|(_, level)| level.value.abs()).fold(0.0, f64::max);
     if sum.abs() > 1e-6 * largest {

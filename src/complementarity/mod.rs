@@ -26,5 +26,6 @@ mod supernodal;
 mod tests;
 mod tie_currents;
 
+pub(crate) use decimal::sign_of_sum;
 pub use network::{Branch, Control, Junction, Law, Level, Network};
 pub use outcome::{Interval, Outcome, Part, Place, Quantity, Reason, Solution, Verdict, View};

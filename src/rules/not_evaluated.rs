@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Rule, in_cases, list};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity};
-use crate::operating::Operating;
+use crate::operating::{Operating, Verdict};
 use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
@@ -45,11 +45,19 @@ struct Group {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut groups: BTreeMap<String, Group> = BTreeMap::new();
     for (number, case) in operating.cases.iter().enumerate() {
+        // a result that does not check is told as such
+        let withheld: Vec<&str> = case
+            .contradictions
+            .iter()
+            .filter(|c| matches!(c.verdict, Verdict::Unverified | Verdict::None))
+            .map(|c| c.text.as_str())
+            .collect();
         for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
-            if diode.state != State::NotEvaluated {
+            let why = diode.not_evaluated.as_deref().unwrap_or_default();
+            if diode.state != State::NotEvaluated || withheld.contains(&why) {
                 continue;
             }
-            let group = groups.entry(diode.not_evaluated.clone().unwrap_or_default()).or_default();
+            let group = groups.entry(why.to_owned()).or_default();
             if group.cases.last() != Some(&number) {
                 group.cases.push(number);
             }

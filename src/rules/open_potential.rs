@@ -1,8 +1,13 @@
 //! Nodes whose voltage the model leaves open.
 
-use super::{Check, Evidence, Rule, causes};
-use crate::finding::{Finding, Severity};
-use crate::operating::{Operating, Verdict};
+use super::{Check, Evidence, Rule, in_cases, list};
+use crate::circuit::{Behaviour, ElementId, NodeId, State};
+use crate::finding::{Finding, Severity, interval};
+use crate::operating::{Case, Interval, Operating};
+use crate::topology::{Link, links};
+use petgraph::unionfind::UnionFind;
+use rustc_hash::{FxHashMap, FxHashSet};
+use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
     name: "open-potential",
@@ -33,12 +38,109 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    causes(operating, Verdict::Floating)
+    let mut found: Vec<(Island, Vec<usize>)> = Vec::new();
+    let mut known: FxHashMap<Vec<NodeId>, usize> = FxHashMap::default();
+    for (number, case) in operating.cases.iter().enumerate() {
+        for island in islands(evidence, case) {
+            let at = *known.entry(island.nodes.clone()).or_insert(found.len());
+            match found.get_mut(at) {
+                Some((_, cases)) => cases.push(number),
+                None => found.push((island, vec![number])),
+            }
+        }
+    }
+    found.iter().filter_map(|(island, cases)| judge(evidence, operating, island, cases)).collect()
+}
+
+/// Nodes whose potentials are open together.
+struct Island {
+    nodes: Vec<NodeId>,
+    /// Where the first of them may lie.
+    interval: Interval,
+    /// Diodes and current sources that lead out, in order.
+    leads: Vec<ElementId>,
+}
+
+/// The open potentials of one condition to which diodes or current sources lead. What only capacitors lead to is
+/// a matter of the wiring.
+fn islands(evidence: &Evidence<'_>, case: &Case) -> Vec<Island> {
+    let Some(solution) = case.solutions.first() else { return Vec::new() };
+    let open: BTreeMap<NodeId, Interval> =
+        solution.nodes.iter().filter_map(|n| Some((n.node, n.voltage.interval()?))).collect();
+    if open.is_empty() {
+        return Vec::new();
+    }
+    let circuit = evidence.circuit;
+    let conducting: FxHashSet<ElementId> =
+        solution.diodes.iter().filter(|d| d.state != State::Blocking).map(|d| d.element).collect();
+    let joins = |id: ElementId| match circuit.element(id).behaviour {
+        Behaviour::Diode { .. } => conducting.contains(&id),
+        _ => links(circuit, id).any(|(_, _, link)| link == Link::Direct),
+    };
+    let mut sets = UnionFind::<u32>::new(circuit.nodes.len());
+    for (id, _) in circuit.elements() {
+        let (a, b) = (circuit.node(id, 0), circuit.node(id, 1));
+        if open.contains_key(&a) && open.contains_key(&b) && joins(id) {
+            sets.union(a.0, b.0);
+        }
+    }
+    let mut groups: BTreeMap<u32, Vec<NodeId>> = BTreeMap::new();
+    for node in open.keys() {
+        groups.entry(sets.find(node.0)).or_default().push(*node);
+    }
+    let described = groups.into_values().filter_map(|nodes| {
+        let interval = *open.get(nodes.first()?)?;
+        let touching = nodes.iter().flat_map(|&n| evidence.wiring.touching.at(n)).map(|t| t.element);
+        let leads: BTreeSet<ElementId> = touching
+            .filter(|&id| match circuit.element(id).behaviour {
+                Behaviour::Diode { .. } => !conducting.contains(&id),
+                Behaviour::CurrentSource(_) => true,
+                _ => false,
+            })
+            .collect();
+        Some(Island { nodes, interval, leads: leads.into_iter().collect() })
+    });
+    let mut islands: Vec<Island> = described.filter(|i| !i.leads.is_empty()).collect();
+    islands.sort_by(|a, b| a.nodes.cmp(&b.nodes));
+    islands
+}
+
+fn judge(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    island: &Island,
+    cases: &[usize],
+) -> Option<Finding> {
+    let names: Vec<String> = island.nodes.iter().map(|&n| format!("`{}`", evidence.node(n))).collect();
+    let leads: Vec<String> = island.leads.iter().map(|&id| evidence.name(id)).collect();
+    let message = format!(
+        "the voltage of {} is open ({}): only {} {} there, and no current flows{}",
+        list(&names),
+        interval(island.interval.low, island.interval.high, "V"),
+        list(&leads),
+        if leads.len() == 1 { "leads" } else { "lead" },
+        in_cases(operating, cases)
+    );
+    let (&first, others) = island.leads.split_first()?;
+    if is_told_node(evidence, island) {
+        return None;
+    }
+    let mut finding = evidence.about(&RULE, first, message).label("carries nothing");
+    for &id in others.iter().take(8) {
+        finding = finding.also(evidence.statement(id), "nor does this");
+    }
+    finding.subjects.extend(leads.into_iter().skip(1));
+    finding.subjects.extend(names.iter().map(|n| n.trim_matches('`').to_owned()));
+    Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
+}
+
+/// A finding of the wiring names one of the nodes or one of the diodes that lead there.
+fn is_told_node(evidence: &Evidence<'_>, island: &Island) -> bool {
+    let nodes = island.nodes.iter().map(|&n| evidence.node(n));
+    let leads = island.leads.iter().map(|&id| evidence.name(id));
+    let names: Vec<String> = nodes.chain(leads).collect();
+    evidence
+        .told()
         .iter()
-        .filter(|c| !super::is_told(evidence, &c.contradiction.elements))
-        .filter_map(|c| {
-            let any = !c.contradiction.elements.is_empty();
-            any.then(|| super::support::contradiction(&RULE, evidence, operating, c, "leads to it"))
-        })
-        .collect()
+        .any(|f| f.severity > Severity::Note && names.iter().any(|n| f.subjects.contains(n)))
 }

@@ -1,6 +1,7 @@
 //! Sums of written numbers as exact decimals: three times 0.7 is 2.1, which binary fractions do not say.
 
-use num_bigint::BigInt;
+use crate::complementarity::{Level, sign_of_sum};
+use std::cmp::Ordering;
 
 /// The sum of some numbers.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -15,45 +16,15 @@ pub enum Sum {
 
 /// Sums `terms`, each with the mark that it was written as a decimal number.
 pub fn sum(terms: impl IntoIterator<Item = (f64, bool)>) -> Sum {
-    let mut exact = Exact::default();
-    let (mut total, mut largest, mut written) = (0.0, 0.0_f64, true);
-    for (value, is_written) in terms {
-        if !value.is_finite() {
-            return Sum::Unknown;
-        }
-        written &= is_written;
-        total += value;
-        largest = largest.max(value.abs());
-        exact.add(value);
+    let terms: Vec<(f64, Level)> =
+        terms.into_iter().map(|(value, exact)| (1.0, Level { value, exact })).collect();
+    let total: f64 = terms.iter().map(|(_, level)| level.value).sum();
+    if !terms.iter().all(|(_, level)| level.value.is_finite()) {
+        return Sum::Unknown;
     }
-    let zero = if written { exact.is_zero() } else { f64::abs(total) <= 1e-12 * largest };
-    if zero { Sum::Zero } else { Sum::Volts(total) }
-}
-
-/// A whole number times a power of ten.
-#[derive(Default)]
-struct Exact {
-    digits: BigInt,
-    exponent: i32,
-}
-
-impl Exact {
-    /// Adds the shortest decimal form of `value`, which for a number read from text is what was written.
-    fn add(&mut self, value: f64) {
-        let text = format!("{value:e}");
-        let (mantissa, exponent) = text.split_once('e').unwrap_or((&text, "0"));
-        let places = mantissa.split_once('.').map_or(0, |(_, after)| after.len());
-        let digits: String = mantissa.chars().filter(|c| *c != '.').collect();
-        let digits: BigInt = digits.parse().unwrap_or_default();
-        let exponent = exponent.parse::<i32>().unwrap_or(0) - places as i32;
-        let common = exponent.min(self.exponent);
-        let raised = |digits: &BigInt, by: i32| digits * BigInt::from(10).pow(by.unsigned_abs());
-        self.digits = raised(&self.digits, self.exponent - common) + raised(&digits, exponent - common);
-        self.exponent = common;
-    }
-
-    fn is_zero(&self) -> bool {
-        self.digits == BigInt::default()
+    match sign_of_sum(&terms) {
+        Ordering::Equal => Sum::Zero,
+        _ => Sum::Volts(total),
     }
 }
 
