@@ -60,10 +60,7 @@ fn worst(console: &mut Console, command: &States, analysis: &Analysis) -> Option
     summary.add(analysis);
     if summary.errors + summary.warnings > 0 {
         let file = command.file.display();
-        console.say(&format!(
-            "{file} has findings ({} errors, {} warnings); see `kneewise check {file}`",
-            summary.errors, summary.warnings
-        ));
+        console.say(&format!("{file} has {}; `kneewise check {file}` tells them", summary.troubles()));
     }
     let hopeless = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
     let cases = analysis.operating.iter().flat_map(|o| &o.cases);

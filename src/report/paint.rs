@@ -137,7 +137,8 @@ pub(super) fn wrap(text: &str, width: usize) -> Vec<String> {
     let mut lines = Vec::new();
     for paragraph in text.lines() {
         let mut line = String::new();
-        for word in words(&clean(paragraph)) {
+        let paragraph = clean(paragraph);
+        for word in words(&paragraph) {
             if !line.is_empty() && columns(&line) + 1 + columns(word) > width {
                 lines.push(std::mem::take(&mut line));
             }
@@ -151,14 +152,27 @@ pub(super) fn wrap(text: &str, width: usize) -> Vec<String> {
     lines
 }
 
-/// Words at spaces outside of backquotes.
-fn words(text: &str) -> impl Iterator<Item = &str> {
-    let mut quoted = false;
-    let at_space = move |c: char| {
+/// Words at spaces outside of backquotes; a number and its unit are one.
+fn words(text: &str) -> Vec<&str> {
+    let (mut words, mut start, mut quoted) = (Vec::new(), 0, false);
+    for (at, c) in text.char_indices().chain([(text.len(), ' ')]) {
         quoted ^= c == '`';
-        c.is_whitespace() && !quoted
-    };
-    text.split(at_space).map(str::trim).filter(|word| !word.is_empty())
+        let word = text.get(start..at).unwrap_or("");
+        let is_end = c.is_whitespace() && (!quoted || at == text.len());
+        if is_end && !(word.ends_with(|c: char| c.is_ascii_digit()) && unit_follows(text, at)) {
+            words.extend(Some(word.trim()).filter(|w| !w.is_empty()));
+            start = at + c.len_utf8();
+        }
+    }
+    words
+}
+
+/// Whether a unit with or without a prefix stands behind the space at `at`.
+fn unit_follows(text: &str, at: usize) -> bool {
+    let next = text.get(at..).and_then(|rest| rest.split_whitespace().next()).unwrap_or("");
+    let unit = next.trim_end_matches(['.', ',', ';', ':', ')']);
+    let base = unit.strip_prefix(['f', 'p', 'n', 'µ', 'm', 'k', 'M', 'G', 'T']).unwrap_or(unit);
+    ["V", "A", "Ω", "W", "F", "H", "J", "s", "°C", "Hz"].iter().any(|&u| u == base || u == unit)
 }
 
 /// Columns that a text takes on a terminal.
@@ -185,6 +199,7 @@ mod tests {
     fn lines_break_at_spaces() {
         assert_eq!(wrap("one two three", 8), ["one two", "three"]);
         assert_eq!(wrap("unbreakable", 3), ["unbreakable"]);
+        assert_eq!(wrap("it is 420 mA, or 1 V", 8), ["it is", "420 mA,", "or 1 V"]);
         assert_eq!(wrap("write `*@ watch out`, then", 14), ["write", "`*@ watch out`,", "then"]);
     }
 

@@ -56,6 +56,11 @@ impl Summary {
         }
     }
 
+    /// `no errors, 1 warning`
+    pub fn troubles(&self) -> String {
+        format!("{}, {}", counted(self.errors, "error"), counted(self.warnings, "warning"))
+    }
+
     /// `1 file, 12 elements, 3 diodes: no errors, 1 warning, no notes`
     pub fn write(&self, page: &mut Page) {
         let scope =

@@ -4,7 +4,7 @@
 use super::paint::{Ink, Page, clean, wrap};
 use super::states::state_ink;
 use crate::analysis::Analysis;
-use crate::operating::Reasoning;
+use crate::operating::{Reasoning, State};
 
 /// Running text is broken at this width.
 const WIDTH: usize = 96;
@@ -28,12 +28,12 @@ pub fn why(page: &mut Page, analysis: &Analysis) {
 
 fn write_reasoning(page: &mut Page, name: &str, reasoning: &Reasoning) {
     let state = reasoning.state.word();
-    page.plain("  ").plain(name).plain(" is ");
+    page.plain("  ").plain(name).plain(if reasoning.state == State::Breakdown { " is in " } else { " is " });
     match state_ink(reasoning.state) {
         Some(ink) => page.ink(ink, state),
         None => page.plain(state),
     };
-    page.plain(" in ").plain(&clean(&reasoning.cases.join(", "))).end();
+    page.plain(": ").ink(Ink::Faint, &clean(&reasoning.cases.join(", "))).end();
     for (n, sentence) in reasoning.sentences.iter().enumerate() {
         item(page, &format!("{:>4}. ", n + 1), sentence);
     }

@@ -24,7 +24,7 @@ pub(super) fn write(page: &mut Page, circuit: &Circuit, operating: &Operating) {
 /// Conditions that end alike: one verdict for the same causes.
 pub(super) struct Group<'a> {
     cases: Vec<&'a Case>,
-    causes: Vec<&'a str>,
+    pub(super) causes: Vec<&'a str>,
 }
 
 pub(super) fn groups(operating: &Operating) -> Vec<Group<'_>> {

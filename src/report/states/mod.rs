@@ -33,7 +33,8 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     }
     page.end();
     let views = views(operating);
-    rows::tables(page, circuit, &views);
+    let told: Vec<&str> = groups.iter().flat_map(|g| g.causes.iter().copied()).collect();
+    rows::tables(page, circuit, &views, &told);
     left_to_time(page, circuit, operating);
     for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
         group.write(page, circuit, operating.cases.len() > 1);
@@ -45,6 +46,8 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
 struct SetView<'a> {
     name: String,
     solution: &'a Solution,
+    /// One of several of its condition.
+    is_set: bool,
     /// Diodes that this condition does not judge.
     left_out: &'a [ElementId],
     /// Largest voltage and current in it.
@@ -60,7 +63,8 @@ fn views(operating: &Operating) -> Vec<SetView<'_>> {
                 _ => format!("{} set {}", case.name, n + 1),
             };
             let left_out = if case.instant { &operating.left_to_time[..] } else { &[] };
-            views.push(SetView { name, solution, left_out, scale: scale(solution) });
+            let is_set = case.solutions.len() > 1;
+            views.push(SetView { name, solution, is_set, left_out, scale: scale(solution) });
         }
     }
     views

@@ -15,7 +15,8 @@ struct Row<'a> {
     results: Vec<(&'a SetView<'a>, &'a DiodeResult)>,
 }
 
-pub(super) fn tables(page: &mut Page, circuit: &Circuit, views: &[SetView<'_>]) {
+/// All diodes; `told` are reasons that stand above already.
+pub(super) fn tables(page: &mut Page, circuit: &Circuit, views: &[SetView<'_>], told: &[&str]) {
     let Some(first) = views.first() else { return };
     let count = first.solution.diodes.len();
     let (mut changing, mut steady) = (Vec::new(), Vec::new());
@@ -23,16 +24,26 @@ pub(super) fn tables(page: &mut Page, circuit: &Circuit, views: &[SetView<'_>]) 
         let rows = rows_of(views, n);
         if rows.len() > 1 { changing.extend(rows) } else { steady.extend(rows) }
     }
+    let title =
+        if views.iter().any(|v| v.is_set) { "changes from set to set" } else { "changes with the condition" };
     if !changing.is_empty() {
-        page.ink(Ink::Strong, "changes with the condition").end();
-        write_rows(page, circuit, &changing, true);
+        page.ink(Ink::Strong, title).end();
+        write_rows(page, circuit, &changing, true, told);
         page.end();
     }
     if !steady.is_empty() {
         if views.len() > 1 {
-            page.ink(Ink::Strong, "the same state in every condition").end();
+            page.ink(
+                Ink::Strong,
+                if views.iter().any(|v| v.is_set) {
+                    "the same state in every set"
+                } else {
+                    "the same state in every condition"
+                },
+            )
+            .end();
         }
-        write_rows(page, circuit, &steady, false);
+        write_rows(page, circuit, &steady, false, told);
         page.end();
     }
 }
@@ -53,7 +64,7 @@ fn rows_of<'a>(views: &'a [SetView<'a>], n: usize) -> Vec<Row<'a>> {
     rows.into_iter().map(|(_, row)| row).collect()
 }
 
-fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditions: bool) {
+fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditions: bool, told: &[&str]) {
     let mut head = vec!["diode", "state", "current", "voltage", "drop", "drop from", "margin"];
     if with_conditions {
         head.push("in");
@@ -66,12 +77,25 @@ fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditi
         }
     }
     table::write(page, "  ", &head, &cells);
-    for row in rows {
-        if let Some((_, DiodeResult { element, not_evaluated: Some(reason), .. })) = row.results.first() {
-            let text = format!("{} is not evaluated: {reason}", circuit.element_name(*element));
-            for line in wrap(&text, WIDTH) {
-                page.plain("  ").ink(Ink::Faint, &line).end();
-            }
+    unevaluated(page, circuit, rows, told);
+}
+
+/// The diodes that were not evaluated, by reason; `told` are reasons that stand above already.
+fn unevaluated(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], told: &[&str]) {
+    let mut reasons: Vec<(&str, Vec<String>)> = Vec::new();
+    for (_, result) in rows.iter().filter_map(|row| row.results.first()) {
+        let Some(reason) = result.not_evaluated.as_deref().filter(|r| !told.contains(r)) else { continue };
+        let name = circuit.element_name(result.element);
+        match reasons.iter_mut().find(|(known, _)| *known == reason) {
+            Some((_, names)) => names.push(name),
+            None => reasons.push((reason, vec![name])),
+        }
+    }
+    for (reason, names) in reasons {
+        let names: Vec<&str> = names.iter().map(String::as_str).collect();
+        let verb = if names.len() == 1 { "is" } else { "are" };
+        for line in wrap(&format!("{} {verb} not evaluated: {reason}", some_of(&names)), WIDTH) {
+            page.plain("  ").ink(Ink::Faint, &line).end();
         }
     }
 }
