@@ -31,7 +31,7 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    causes(operating, Verdict::None)
+    causes(evidence, operating, Verdict::None)
         .iter()
         .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.contradiction.elements))
         .map(|cause| super::support::contradiction(&RULE, evidence, operating, cause, "takes part"))

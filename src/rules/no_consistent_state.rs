@@ -34,7 +34,7 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    causes(operating, Verdict::None)
+    causes(evidence, operating, Verdict::None)
         .iter()
         .filter(|c| !unlimited_current::is_ours(evidence, c) && !blocked_current::is_ours(evidence, c))
         .filter(|c| !is_told(evidence, &c.contradiction.elements))

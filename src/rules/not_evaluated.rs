@@ -45,16 +45,16 @@ struct Group {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut groups: BTreeMap<String, Group> = BTreeMap::new();
     for (number, case) in operating.cases.iter().enumerate() {
-        // a result that does not check is told as such
-        let withheld: Vec<&str> = case
+        // a part without a solution, or with one that does not check, is told as such
+        let unknown: Vec<&str> = case
             .contradictions
             .iter()
-            .filter(|c| matches!(c.verdict, Verdict::Unverified | Verdict::None))
+            .filter(|c| c.verdict == Verdict::Partial)
             .map(|c| c.text.as_str())
             .collect();
         for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
             let why = diode.not_evaluated.as_deref().unwrap_or_default();
-            if diode.state != State::NotEvaluated || withheld.contains(&why) {
+            if diode.state != State::NotEvaluated || !unknown.iter().any(|text| why.contains(text)) {
                 continue;
             }
             let group = groups.entry(why.to_owned()).or_default();

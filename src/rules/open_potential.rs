@@ -1,12 +1,12 @@
 //! Nodes whose voltage the model leaves open.
 
-use super::{Check, Evidence, Rule, in_cases, list};
+use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, interval};
 use crate::operating::{Case, Interval, Operating};
 use crate::topology::{Link, links};
 use petgraph::unionfind::UnionFind;
-use rustc_hash::{FxHashMap, FxHashSet};
+use rustc_hash::FxHashSet;
 use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
@@ -38,18 +38,21 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    let mut found: Vec<(Island, Vec<usize>)> = Vec::new();
-    let mut known: FxHashMap<Vec<NodeId>, usize> = FxHashMap::default();
-    for (number, case) in operating.cases.iter().enumerate() {
-        for island in islands(evidence, case) {
-            let at = *known.entry(island.nodes.clone()).or_insert(found.len());
-            match found.get_mut(at) {
-                Some((_, cases)) => cases.push(number),
-                None => found.push((island, vec![number])),
-            }
-        }
+    // what is open in one condition only is a pair of diodes that happen to block there
+    let (Some(first), false) = (operating.cases.first(), evidence.is_groundless()) else { return Vec::new() };
+    let mut open = open_nodes(first);
+    for case in &operating.cases {
+        let here = open_nodes(case);
+        open.retain(|node, _| here.contains_key(node));
     }
-    found.iter().filter_map(|(island, cases)| judge(evidence, operating, island, cases)).collect()
+    let islands = islands(evidence, first, &open);
+    let is_judged = |i: &&Island| !i.leads.iter().any(|id| operating.left_to_time.binary_search(id).is_ok());
+    islands.iter().filter(is_judged).filter_map(|island| judge(evidence, island)).collect()
+}
+
+fn open_nodes(case: &Case) -> BTreeMap<NodeId, Interval> {
+    let nodes = case.solutions.first().into_iter().flat_map(|s| &s.nodes);
+    nodes.filter_map(|n| Some((n.node, n.voltage.interval()?))).collect()
 }
 
 /// Nodes whose potentials are open together.
@@ -61,15 +64,10 @@ struct Island {
     leads: Vec<ElementId>,
 }
 
-/// The open potentials of one condition to which diodes or current sources lead. What only capacitors lead to is
+/// The open potentials to which diodes or current sources lead. What only capacitors lead to is
 /// a matter of the wiring.
-fn islands(evidence: &Evidence<'_>, case: &Case) -> Vec<Island> {
-    let Some(solution) = case.solutions.first() else { return Vec::new() };
-    let open: BTreeMap<NodeId, Interval> =
-        solution.nodes.iter().filter_map(|n| Some((n.node, n.voltage.interval()?))).collect();
-    if open.is_empty() {
-        return Vec::new();
-    }
+fn islands(evidence: &Evidence<'_>, case: &Case, open: &BTreeMap<NodeId, Interval>) -> Vec<Island> {
+    let (Some(solution), false) = (case.solutions.first(), open.is_empty()) else { return Vec::new() };
     let circuit = evidence.circuit;
     let conducting: FxHashSet<ElementId> =
         solution.diodes.iter().filter(|d| d.state != State::Blocking).map(|d| d.element).collect();
@@ -105,21 +103,15 @@ fn islands(evidence: &Evidence<'_>, case: &Case) -> Vec<Island> {
     islands
 }
 
-fn judge(
-    evidence: &Evidence<'_>,
-    operating: &Operating,
-    island: &Island,
-    cases: &[usize],
-) -> Option<Finding> {
+fn judge(evidence: &Evidence<'_>, island: &Island) -> Option<Finding> {
     let names: Vec<String> = island.nodes.iter().map(|&n| format!("`{}`", evidence.node(n))).collect();
     let leads: Vec<String> = island.leads.iter().map(|&id| evidence.name(id)).collect();
     let message = format!(
-        "the voltage of {} is open ({}): only {} {} there, and no current flows{}",
+        "the voltage of {} is open ({}): only {} {} there, and no current flows",
         list(&names),
         interval(island.interval.low, island.interval.high, "V"),
         list(&leads),
         if leads.len() == 1 { "leads" } else { "lead" },
-        in_cases(operating, cases)
     );
     let (&first, others) = island.leads.split_first()?;
     if is_told_node(evidence, island) {

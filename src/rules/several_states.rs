@@ -36,7 +36,7 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    causes(operating, Verdict::Several)
+    causes(evidence, operating, Verdict::Several)
         .iter()
         .map(|c| super::support::contradiction(&RULE, evidence, operating, c, "takes part"))
         .collect()

@@ -29,7 +29,7 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    causes(operating, Verdict::Unverified)
+    causes(evidence, operating, Verdict::Unverified)
         .iter()
         .map(|c| super::support::contradiction(&RULE, evidence, operating, c, "in this part"))
         .collect()

@@ -1,7 +1,7 @@
 //! What the states say, told once over all conditions.
 
 use super::{Evidence, Rule};
-use crate::circuit::{ElementId, ScopeId};
+use crate::circuit::{Behaviour, ElementId, ScopeId};
 use crate::finding::Finding;
 use crate::operating::{Case, Contradiction, Operating, Verdict};
 use crate::text::{FileId, Span};
@@ -16,11 +16,14 @@ pub struct Cause<'a> {
 }
 
 /// The causes that lead to `verdict`, those about the same elements as one, in order of first appearance.
-pub fn causes(operating: &Operating, verdict: Verdict) -> Vec<Cause<'_>> {
-    let mut causes: Vec<Cause<'_>> = Vec::new();
+pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Verdict) -> Vec<Cause<'o>> {
+    let mut causes: Vec<Cause<'o>> = Vec::new();
     let mut known: FxHashMap<(Vec<ElementId>, &str), usize> = FxHashMap::default();
     for (number, case) in operating.cases.iter().enumerate() {
         for contradiction in case.contradictions.iter().filter(|c| c.verdict == verdict) {
+            if is_left_to_time(evidence, case, contradiction) {
+                continue;
+            }
             let at = *known.entry(identity(contradiction)).or_insert(causes.len());
             match causes.get_mut(at) {
                 Some(cause) if cause.cases.last() == Some(&number) => {}
@@ -30,6 +33,18 @@ pub fn causes(operating: &Operating, verdict: Verdict) -> Vec<Cause<'_>> {
         }
     }
     causes
+}
+
+/// A moving source drives an inductor: an instant taken by itself sees a short circuit where there is none.
+fn is_left_to_time(evidence: &Evidence<'_>, case: &Case, contradiction: &Contradiction) -> bool {
+    let has = |wanted: fn(&Behaviour) -> bool| {
+        contradiction.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
+    };
+    let moves = |behaviour: &Behaviour| match behaviour {
+        Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
+        _ => false,
+    };
+    has(|b| matches!(b, Behaviour::Inductor { .. })) && (case.instant || has(moves))
 }
 
 /// The same elements, in whatever order the walk begins; without elements the words decide.
