@@ -55,51 +55,43 @@ fn states_obey_their_schema() {
     }
 }
 
-#[test]
-fn keys_stand_in_the_promised_order() {
-    let netlist = "t\nV1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n*@ drop D1 0.7\n.model DX D\n.end\n";
-    let text = feed(&["states", "-", "--format", "json"], netlist).out;
-    let keys = [
-        "format",
-        "version",
-        "file",
-        "cases",
-        "case",
-        "sources",
-        "temperature_C",
-        "verdict",
-        "reason",
-        "truncated",
-        "solves",
-        "residual",
-        "current_A",
-        "voltage_V",
-        "solutions",
-        "diodes",
-        "name",
-        "line",
-        "file",
-        "state",
-        "voltage_V",
-        "current_A",
-        "power_W",
-        "current_range_A",
-        "voltage_range_V",
-        "drop_V",
-        "drop_origin",
-        "open_circuit_V",
-        "source_resistance_ohm",
-        "margin_V",
-        "trust",
-        "trust_reasons",
-        "refined",
-    ];
-    let mut rest = text.as_str();
+/// Fails unless these keys stand in this order, others between them or not.
+fn assert_order(text: &str, keys: &[&str]) {
+    let mut rest = text;
     for key in keys {
         let quoted = format!("\"{key}\":");
         let at = rest.find(&quoted).unwrap_or_else(|| panic!("{key} is missing or out of order in {text}"));
         rest = &rest[at + quoted.len()..];
     }
+}
+
+#[test]
+#[rustfmt::skip]
+fn keys_of_states_stand_in_the_promised_order() {
+    let netlist = "t\nV1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n*@ drop D1 0.7\n.model DX D\n.end\n";
+    assert_order(&feed(&["states", "-", "--format", "json"], netlist).out, &[
+        "format", "version", "file", "cases", "case", "sources", "temperature_C", "verdict", "reason", "truncated",
+        "solves", "residual", "current_A", "voltage_V", "solutions", "diodes", "name", "line", "file", "state",
+        "voltage_V", "current_A", "power_W", "current_range_A", "voltage_range_V", "drop_V", "drop_origin",
+        "open_circuit_V", "source_resistance_ohm", "margin_V", "trust", "trust_reasons", "refined", "nodes", "name",
+        "voltage_V", "range_V", "branches", "name", "current_A", "range_A",
+    ]);
+}
+
+#[test]
+#[rustfmt::skip]
+fn keys_of_findings_stand_in_the_promised_order() {
+    let netlist = "t\nV1 in 0 5\nR1 in 0 1M\n.end\n";
+    let text = feed(&["check", "-", "--format", "json"], netlist).out;
+    assert_order(&text, &[
+        "format", "version", "findings", "rule", "severity", "file", "line", "column", "end_line", "end_column",
+        "message", "subjects", "labels", "trail", "help", "fix", "accepted", "skipped", "summary", "files", "errors",
+        "warnings", "notes", "elements", "diodes",
+    ]);
+    let document: Value = serde_json::from_str(&text).unwrap();
+    let finding = &document["findings"][0];
+    let place = ["line", "column", "end_line", "end_column"].map(|key| finding[key].as_u64().unwrap());
+    assert_eq!((place, &finding["subjects"][0]), ([3, 9, 3, 11], &Value::from("R1")), "{text}");
 }
 
 #[test]
