@@ -2,14 +2,18 @@
 
 mod conditions;
 mod drops;
+mod evaluated;
+mod flips;
 mod proof;
 mod switches;
 
 use super::assemble::Slots;
 use super::condition::{Plan, plan};
 use super::declared::declared;
-use crate::circuit::directory::Directory;
 use super::drop::{Diode, diodes};
+use super::evaluate::{Text, evaluate};
+use super::result::{Operating, Why};
+use crate::circuit::directory::Directory;
 use crate::circuit::{self, Circuit, ElementId, Reading, ScopeId};
 use crate::config::Options;
 use crate::finding::Finding;
@@ -63,4 +67,18 @@ impl Laid {
         let at = self.plan.sources.iter().position(|&id| id == self.element(name)).unwrap();
         condition.sources[at].value
     }
+}
+
+/// The whole operating point.
+fn evaluated(lines: &str, options: &Options) -> (Operating, Circuit, Vec<Finding>) {
+    let Reading { circuit, parsed, sources, .. } = read(lines);
+    let text = Text { sources: &sources, parsed: &parsed };
+    let (operating, findings) = evaluate(&circuit, Some(text), options);
+    (operating, circuit, findings)
+}
+
+/// The reasoning about one diode.
+fn told(lines: &str, diode: &str) -> Why {
+    let options = Options { why: Some(diode.into()), ..Options::default() };
+    evaluated(lines, &options).0.why.unwrap()
 }

@@ -1,0 +1,131 @@
+//! Whole circuits through all of the operating point.
+
+use super::{evaluated, told};
+use crate::circuit::State;
+use crate::complementarity::{Quantity, Verdict};
+use crate::config::Options;
+use crate::operating::{Case, DiodeResult};
+
+fn diode<'a>(case: &'a Case, at: usize) -> &'a DiodeResult {
+    &case.solutions[0].diodes[at]
+}
+
+#[test]
+fn the_decade_of_a_model_follows_the_current_and_is_held_over_ranges() {
+    let lines = "V1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D(IS=10f)\n*@ range V1 5 500";
+    let (operating, _, _) = evaluated(lines, &Options::default());
+    let origins: Vec<String> = operating.cases.iter().map(|c| diode(c, 0).drop.origin.to_string()).collect();
+    // 4.3 mA is nearer to 10 mA than to 1 mA in the logarithm; 0.5 A in the range does not count
+    assert_eq!(origins, ["model DX at 10mA"; 3]);
+    let resting = lines.replace("V1 in 0 5", "V1 in 0 0.1");
+    let (operating, _, _) = evaluated(&resting, &Options::default());
+    assert_eq!(diode(&operating.cases[0], 0).drop.origin.to_string(), "model DX at 1mA");
+}
+
+#[test]
+fn a_moving_source_counts_for_the_decade() {
+    let (operating, _, _) =
+        evaluated("V1 in 0 SIN(0 100 50)\nR1 in a 1k\nD1 a 0 DX\n.model DX D(IS=10f)", &Options::default());
+    assert_eq!(operating.cases.len(), 3);
+    assert!(operating.cases.iter().all(|c| diode(c, 0).drop.origin.to_string() == "model DX at 100mA"));
+    assert_eq!(diode(&operating.cases[1], 0).state, State::Conducting);
+    assert_eq!(diode(&operating.cases[2], 0).state, State::Blocking);
+}
+
+#[test]
+fn temperature_moves_what_it_should() {
+    let lines = "V1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D\n*@ range temp -23 77";
+    let (operating, _, _) = evaluated(lines, &Options::default());
+    let volts: Vec<f64> = operating.cases.iter().map(|c| diode(c, 0).drop.volts).collect();
+    assert!(
+        (volts[0] - 0.7).abs() < 1e-12 && (volts[1] - 0.8).abs() < 1e-12 && (volts[2] - 0.6).abs() < 1e-12
+    );
+}
+
+#[test]
+fn a_range_of_a_parameter_expands_the_circuit_again() {
+    let lines = ".param vs=5\nV1 in 0 {vs}\nV2 x 0 {2*vs}\nR1 in a {vs*200}\nD1 a 0 DX\nR2 x 0 1k\n.model DX D\n*@ range vs 4 6";
+    let (operating, _, _) = evaluated(lines, &Options::default());
+    let sources: Vec<Vec<f64>> =
+        operating.cases.iter().map(|c| c.sources.iter().map(|s| s.1).collect()).collect();
+    assert_eq!(sources, [[5.0, 10.0], [4.0, 8.0], [6.0, 12.0]]);
+    // (4 V − 0.7 V)/800 Ω by hand
+    let current = diode(&operating.cases[1], 0).current.known().unwrap();
+    assert!((current - 4.125e-3).abs() < 1e-12, "{current}");
+}
+
+#[test]
+fn a_loop_without_resistance_is_told_with_its_numbers() {
+    let (operating, circuit, _) = evaluated(
+        "V1 a 0 5\nD1 a b DX\nD2 b 0 DX\nV2 c 0 5\nR1 c d 1k\nD3 d 0 DX\n.model DX D",
+        &Options::default(),
+    );
+    let case = &operating.cases[0];
+    assert_eq!(case.verdict, Verdict::None);
+    let cause = &case.contradictions[0];
+    let mut names: Vec<String> = cause.elements.iter().map(|&e| circuit.element_name(e)).collect();
+    names.sort();
+    assert_eq!(names, ["D1", "D2", "V1"]);
+    assert!(cause.text.contains("5 V drives 1.4 V of drops"), "{}", cause.text);
+    // the sound part keeps its answer
+    assert_eq!(diode(case, 0).state, State::NotEvaluated);
+    assert!(diode(case, 0).not_evaluated.as_ref().unwrap().contains("no limit"));
+    assert_eq!(diode(case, 2).state, State::Conducting);
+}
+
+#[test]
+fn unknown_elements_are_named_until_a_note_holds_them() {
+    let lines = "VCC vcc 0 12\nRL vcc k 120\nD1 k vcc DX\nQ1 k b 0 QX\nVB b 0 1\n.model QX NPN\n.model DX D";
+    let (operating, _, _) = evaluated(lines, &Options::default());
+    assert_eq!(operating.cases[0].verdict, Verdict::Partial);
+    assert!(diode(&operating.cases[0], 0).not_evaluated.as_ref().unwrap().contains("Q1"));
+    let held = format!("{lines}\n*@ hold Q1 both");
+    let (operating, _, _) = evaluated(&held, &Options::default());
+    assert!(
+        operating.cases.iter().all(|c| c.verdict == Verdict::Unique),
+        "{:?}",
+        operating.cases[1].contradictions
+    );
+    let on = operating.cases.iter().find(|c| c.name == "Q1=on").unwrap();
+    assert_eq!(diode(on, 0).voltage, Quantity::Known(-12.0));
+    let off = operating.cases.iter().find(|c| c.name == "Q1=off").unwrap();
+    assert_eq!(diode(off, 0).voltage.known().map(f64::abs), Some(0.0));
+}
+
+#[test]
+fn boards_without_sources_run_from_their_supplies() {
+    let lines = "R1 +12V a 1k\nD1 a 0 DX\n.model DX D\n*@ supply +12V 12 9..16";
+    let (operating, circuit, _) = evaluated(lines, &Options::default());
+    let case = &operating.cases[1];
+    assert_eq!(case.name, "+12V=9");
+    assert_eq!(circuit.node_name(case.supplies[0].0), "+12V");
+    let current = diode(case, 0).current.known().unwrap();
+    assert!((current - 8.3e-3).abs() < 1e-12);
+}
+
+#[test]
+fn what_a_capacitor_remembers_is_left_to_time() {
+    let lines = "V1 in 0 SIN(0 10 50)\nD1 in out DX\nC1 out 0 1u\nR1 out 0 1k\nR2 in b 1k\nD2 b 0 DX\nV3 c 0 5\nR3 c d 1k\nD3 d 0 DX\nC3 d 0 1u\n.model DX D";
+    let (operating, circuit, _) = evaluated(lines, &Options::default());
+    let names: Vec<String> = operating.left_to_time.iter().map(|&d| circuit.element_name(d)).collect();
+    assert_eq!(names, ["D1"]);
+    assert!(operating.cases[1].instant && !operating.cases[0].instant);
+}
+
+#[test]
+fn the_reasoning_is_told_once_for_conditions_that_share_a_state() {
+    let why = told("V1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D\n*@ range V1 0 10", "D1");
+    assert_eq!(why.reasonings.len(), 2);
+    assert_eq!(why.reasonings[0].cases, ["nominal", "V1=10"]);
+    assert_eq!(why.reasonings[1].cases, ["V1=0"]);
+    let all = why.reasonings[0].sentences.join(" ");
+    assert!(all.contains("9.3 mA (V1=10)"), "{all}");
+}
+
+#[test]
+fn asking_about_what_is_not_there_is_told() {
+    let options = Options { why: Some("D9".into()), ..Options::default() };
+    let (operating, _, findings) = evaluated("V1 in 0 5\nR1 in 0 1k", &options);
+    assert!(operating.why.is_none());
+    assert_eq!(findings[0].rule, "unknown-name");
+}
