@@ -7,7 +7,8 @@ use crate::run;
 use crate::shrink::shrink;
 use std::collections::BTreeMap;
 
-/// Networks in an ordinary run; `KNEEWISE_NETWORKS=20000` asks for more, `KNEEWISE_SEED=…` for others.
+/// Networks in an ordinary run; `KNEEWISE_NETWORKS=20000` asks for more, `KNEEWISE_SEED=…` for others,
+/// `KNEEWISE_SHOW=…` to see more failures.
 pub fn wanted(ordinary: u64) -> (u64, u64) {
     let number = |name: &str| std::env::var(name).ok().and_then(|text| text.parse().ok());
     (number("KNEEWISE_SEED").unwrap_or(0), number("KNEEWISE_NETWORKS").unwrap_or(ordinary))
@@ -24,8 +25,9 @@ pub fn all_agree(make: &dyn Fn(u64) -> Option<Circuit>, seeds: std::ops::Range<u
             failures.push(seed);
         }
     }
+    let most = std::env::var("KNEEWISE_SHOW").ok().and_then(|text| text.parse().ok()).unwrap_or(5);
     let shown: Vec<String> =
-        failures.iter().take(5).filter_map(|&seed| make(seed)).map(|c| report(&c)).collect();
+        failures.iter().take(most).filter_map(|&seed| make(seed)).map(|c| report(&c)).collect();
     assert!(
         failures.is_empty(),
         "{} of {checked} networks differ from the enumeration (seeds {:?}); the first, made as small as they still differ:\n\n{}",

@@ -286,26 +286,25 @@ fn way(start: usize, pushed: &[i64], open: &[Vec<bool>], flow: &[Vec<i64>]) -> O
     None
 }
 
-/// What a result says, in an order of its own: states, then voltages and currents by name.
+/// What a result says, in an order of its own: states, then voltages and currents by name. Parts without a solution
+/// have none.
 fn signature(circuit: &Circuit, analysis: &Analysis) -> (Verdict, Vec<String>, Vec<Quantity>, Vec<Quantity>) {
     let case = nominal(analysis).unwrap_or_else(|problem| panic!("{problem}\n{}", circuit.text()));
     let (mut states, mut volts, mut amperes) = (Vec::new(), Vec::new(), Vec::new());
     for solution in &case.solutions {
         let named = Named::new(analysis, solution);
-        for (at, element) in circuit.elements.iter().enumerate() {
-            match element.kind {
-                Kind::D(_) => {
-                    let diode = named.diode(&element.name).unwrap_or_else(|problem| panic!("{problem}"));
-                    states.push(format!("{} {}", at, diode.state.word()));
-                    volts.push(diode.voltage);
-                    amperes.push(diode.current);
-                }
-                Kind::C => {}
-                _ => amperes.push(named.branch(&element.name).unwrap_or_else(|p| panic!("{p}")).current),
+        for element in &circuit.elements {
+            if let Kind::D(_) = element.kind {
+                let diode = named.diode(&element.name);
+                states.push(format!("{} {:?}", element.name, diode.as_ref().map(|d| d.state)));
+                volts.push(diode.as_ref().map_or(Quantity::Unknown, |d| d.voltage));
+                amperes.push(diode.as_ref().map_or(Quantity::Unknown, |d| d.current));
+            } else {
+                amperes.push(named.branch(&element.name).map_or(Quantity::Unknown, |branch| branch.current));
             }
         }
         for node in &circuit.nodes[1..] {
-            volts.push(named.node(node).unwrap_or_else(|problem| panic!("{problem}")).voltage);
+            volts.push(named.node(node).map_or(Quantity::Unknown, |node| node.voltage));
         }
     }
     (case.verdict, states, volts, amperes)
