@@ -45,6 +45,11 @@ impl Form {
         self.add(&step.form, &factor);
     }
 
+    /// The form with the other sign.
+    pub fn negated(&self) -> Form {
+        Form { coefficients: self.coefficients.iter().map(|c| -c).collect(), constant: -&self.constant }
+    }
+
     /// The form written in some of the parameters, on which alone it depends.
     pub fn only(&self, live: &[usize]) -> Form {
         let coefficients = live.iter().map(|&p| self.coefficients[p].clone()).collect();

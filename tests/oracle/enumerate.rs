@@ -5,7 +5,7 @@ use super::affine::{Equation, Form, Step, equate};
 use super::answer::{Answer, Point, Range};
 use super::cone::{self, Shape};
 use super::laws::{Junction, Laws, laws};
-use crate::circuits::Circuit;
+use crate::circuits::{Circuit, Kind};
 use std::collections::HashSet;
 
 /// The solution set of a circuit.
@@ -16,7 +16,13 @@ pub fn solve(circuit: &Circuit) -> Answer {
     if laws.impossible {
         return answer;
     }
-    let mut search = Search { laws: &laws, seen: HashSet::new(), answer: &mut answer };
+    let mut search = Search {
+        laws: &laws,
+        idle: idle(circuit),
+        leave_out: true,
+        seen: HashSet::new(),
+        answer: &mut answer,
+    };
     search.assign(0, laws.junctions.clone(), &mut Vec::new(), &mut Vec::new());
     answer
 }
@@ -29,7 +35,8 @@ pub fn with_states(circuit: &Circuit, states: &[Assumed]) -> Answer {
     let laws = laws(circuit);
     let mut answer =
         Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
-    let mut search = Search { laws: &laws, seen: HashSet::new(), answer: &mut answer };
+    let mut search =
+        Search { laws: &laws, idle: Vec::new(), leave_out: false, seen: HashSet::new(), answer: &mut answer };
     let mut junctions = laws.junctions.clone();
     let mut steps = Vec::new();
     for (at, state) in states.iter().enumerate() {
@@ -61,6 +68,10 @@ pub enum Assumed {
 
 struct Search<'a> {
     laws: &'a Laws,
+    /// Sources of 0 V and shorts: position and ends.
+    idle: Vec<(usize, usize, usize)>,
+    /// Leave out what merely circulates.
+    leave_out: bool,
     seen: HashSet<Point>,
     answer: &'a mut Answer,
 }
@@ -90,7 +101,7 @@ impl Search<'_> {
                     true
                 }
             };
-            if possible && !refuted(&next, assumed) && !circulates(&next, assumed) {
+            if possible && !refuted(&next, assumed) && !closes_a_loop(ideal_arcs(&next, assumed)) {
                 self.assign(at + 1, next, assumed, steps);
             }
             steps.truncate(depth);
@@ -100,7 +111,7 @@ impl Search<'_> {
 
     /// All states assumed: what is left of the parameters, and within which bounds.
     fn leaf(&mut self, junctions: &[Junction], assumed: &[Assumed], steps: &[Step]) {
-        let conditions: Vec<Form> = junctions
+        let diodes: Vec<Form> = junctions
             .iter()
             .zip(assumed)
             .flat_map(|(junction, state)| conditions(junction, *state))
@@ -112,12 +123,44 @@ impl Search<'_> {
         let free: Vec<usize> = (0..self.laws.parameters)
             .filter(|&p| quantities.iter().any(|form| !form.coefficients[p].is_zero()))
             .collect();
-        let conditions: Vec<Form> =
-            conditions.iter().map(|form| form.only(&free)).filter(|form| form.first().is_some()).collect();
         let quantities: Vec<Form> = quantities.iter().map(|form| form.only(&free)).collect();
-        if let Some(shape) = cone::shape(&conditions, free.len()) {
-            self.record(&quantities, &shape);
+        for directions in self.directions(junctions, assumed) {
+            let mut conditions: Vec<Form> = diodes.iter().map(|form| form.only(&free)).collect();
+            conditions.extend(directions.iter().map(|&(at, sign)| {
+                let current = &quantities[self.answer.nodes + self.answer.elements + at];
+                if sign > 0 { current.clone() } else { current.negated() }
+            }));
+            // those that depend on nothing have been looked at, or are looked at here
+            if conditions.iter().any(|form| form.sign() < 0) {
+                continue;
+            }
+            conditions.retain(|form| form.first().is_some());
+            if let Some(shape) = cone::shape(&conditions, free.len()) {
+                self.record(&quantities, &shape);
+            }
         }
+    }
+
+    /// Which ways the currents of sources of 0 V and of shorts may go so that nothing circulates: every choice of
+    /// directions that closes no loop of arcs without voltage. One whose ends are joined carries nothing.
+    fn directions(&self, junctions: &[Junction], assumed: &[Assumed]) -> Vec<Vec<(usize, i8)>> {
+        if !self.leave_out {
+            return vec![Vec::new()];
+        }
+        let ideal = ideal_arcs(junctions, assumed);
+        let (joined, two_way): (Vec<_>, Vec<_>) = self.idle.iter().partition(|(_, from, to)| from == to);
+        let nothing: Vec<(usize, i8)> = joined.iter().flat_map(|(at, _, _)| [(*at, 1), (*at, -1)]).collect();
+        let choice = |number: usize| {
+            let mut arcs = ideal.clone();
+            let mut signs = nothing.clone();
+            for (bit, (at, from, to)) in two_way.iter().enumerate() {
+                let forward = number >> bit & 1 == 0;
+                arcs.push(if forward { (*from, *to) } else { (*to, *from) });
+                signs.push((*at, if forward { 1 } else { -1 }));
+            }
+            (!closes_a_loop(arcs)).then_some(signs)
+        };
+        (0..1usize << two_way.len()).filter_map(choice).collect()
     }
 
     fn record(&mut self, quantities: &[Form], shape: &Shape) {
@@ -140,6 +183,16 @@ impl Search<'_> {
     }
 }
 
+fn idle(circuit: &Circuit) -> Vec<(usize, usize, usize)> {
+    let idle = |kind: &Kind| match kind {
+        Kind::V(value) | Kind::R(value) => value.is_zero(),
+        Kind::L => true,
+        _ => false,
+    };
+    let elements = circuit.elements.iter().enumerate();
+    elements.filter(|(_, e)| idle(&e.kind)).map(|(at, e)| (at, e.from, e.to)).collect()
+}
+
 impl Junction {
     /// What is zero in a state; nothing where the diode has no such state.
     fn equation(&self, state: Assumed) -> Option<Form> {
@@ -158,17 +211,11 @@ impl Junction {
 
 /// What must be ≥ 0 for an assumption to hold.
 fn conditions(junction: &Junction, assumed: Assumed) -> Vec<Form> {
-    let negated = |form: &Form| {
-        let mut zero =
-            Form { coefficients: vec![Rat::zero(); form.coefficients.len()], constant: Rat::zero() };
-        zero.add(form, &-&Rat::one());
-        zero
-    };
     match assumed {
         Assumed::Conducting => vec![junction.current.clone()],
-        Assumed::Breakdown => vec![negated(&junction.current)],
+        Assumed::Breakdown => vec![junction.current.negated()],
         Assumed::Blocking => {
-            let mut both = vec![negated(&junction.inner).plus(&junction.forward)];
+            let mut both = vec![junction.inner.negated().plus(&junction.forward)];
             both.extend(junction.reverse.as_ref().map(|reverse| junction.inner.plus(reverse)));
             both
         }
@@ -189,12 +236,13 @@ fn refuted(junctions: &[Junction], assumed: &[Assumed]) -> bool {
     junctions.iter().zip(assumed).any(fails)
 }
 
-/// Whether all diodes of some directed loop of diodes without drop and series resistance conduct.
-fn circulates(junctions: &[Junction], assumed: &[Assumed]) -> bool {
-    let mut arcs: Vec<(usize, usize)> = (junctions.iter().zip(assumed))
-        .filter(|(junction, state)| junction.ideal && **state == Assumed::Conducting)
-        .map(|(junction, _)| junction.ends)
-        .collect();
+/// Arcs of the diodes without drop and series resistance that conduct.
+fn ideal_arcs(junctions: &[Junction], assumed: &[Assumed]) -> Vec<(usize, usize)> {
+    let diodes = junctions.iter().zip(assumed);
+    diodes.filter(|(j, state)| j.ideal && **state == Assumed::Conducting).map(|(j, _)| j.ends).collect()
+}
+
+fn closes_a_loop(mut arcs: Vec<(usize, usize)>) -> bool {
     // take away arcs that lead nowhere until none does; a loop stays
     loop {
         let before = arcs.len();

@@ -5,12 +5,12 @@
 //! Readings of the definitions where words leave room:
 //! - The solution set is the union over all assignments of the polyhedron {conducting: u = drop, i ≥ 0; blocking:
 //!   i = 0, −BV ≤ u ≤ drop; breakdown: u = −BV, i ≤ 0}, u the voltage without the series resistance.
-//! - "Current that merely circulates in a loop of forward arcs with total voltage zero": a directed loop of diodes
-//!   without drop and series resistance, nothing else in it. Assignments in which all diodes of such a loop
-//!   conduct are left out; every current without circulation appears in another one. A loop through a voltage
-//!   source is a loop "of conducting diodes and voltage sources" and stays open, even at 0 V.
-//! - Shorts (inductors, 0 Ω) are treated like 0 V sources; the generators make no loop of shorts alone and join no
-//!   short with ideal diodes.
+//! - "Current that merely circulates in a loop of forward arcs with total voltage zero": a directed loop of arcs
+//!   none of which has a voltage: diodes without drop and series resistance, sources of 0 V, shorts. Currents that
+//!   go round such a loop are left out; what is left never runs back to where it came from along such arcs. A loop
+//!   in which a drop and a source cancel is one "of conducting diodes and voltage sources whose voltages sum to
+//!   zero": its current is open, without end.
+//! - Shorts (inductors, 0 Ω) are otherwise treated like 0 V sources; the generators make no loop of shorts alone.
 
 // each test binary takes its own share of this
 #![allow(dead_code, unused_imports)]
@@ -26,7 +26,7 @@ mod rational;
 
 pub use answer::{Answer, Range, StateWord, Verdict};
 pub use enumerate::{Assumed, solve, with_states};
-pub use parts::{Division, acceptable_verdicts, divide};
+pub use parts::{Division, Part, acceptable_verdicts, divide};
 pub use rational::Rat;
 
 /// The exact value of a decimal.

@@ -2,7 +2,7 @@
 
 use crate::circuits::{Circuit, Kind};
 use crate::oracle::{
-    Answer, Division, Range, Rat, StateWord, Verdict, acceptable_verdicts, divide, float, solve,
+    Answer, Division, Part, Range, Rat, StateWord, Verdict, acceptable_verdicts, divide, float, solve,
 };
 use crate::run::{Named, nominal};
 use kneewise::analysis::Analysis;
@@ -227,16 +227,17 @@ impl Differences<'_> {
 
     /// Parts that have a solution keep it beside a contradictory one.
     fn sound_parts(&mut self, analysis: &Analysis, case: &Case) {
+        if self.circuit.has_controlled() {
+            return;
+        }
         let (parts, holders) = divide(self.circuit, Division::Direct);
+        let contested = self.contested(&parts, &holders);
         for part in parts {
-            let mut alone = self.circuit.clone();
-            let mut at = 0;
-            alone.elements.retain(|_| {
-                at += 1;
-                part.elements.contains(&(at - 1)) || holders.contains(&(at - 1))
-            });
+            let alone = self.alone(&part, &holders);
             let answer = solve(&alone);
-            if !answer.solvable() || self.circuit.has_controlled() {
+            let ends =
+                part.elements.iter().map(|&at| &self.circuit.elements[at]).flat_map(|e| [e.from, e.to]);
+            if !answer.solvable() || ends.into_iter().any(|node| contested.contains(&node)) {
                 continue;
             }
             let Some(solution) = case.solutions.first() else {
@@ -258,6 +259,34 @@ impl Differences<'_> {
             found.part(&Named::new(analysis, solution), &answer, &part.nodes, &inside);
             self.list.extend(found.list);
         }
+    }
+
+    fn alone(&self, part: &Part, holders: &[usize]) -> Circuit {
+        let mut alone = self.circuit.clone();
+        let mut at = 0;
+        alone.elements.retain(|_| {
+            at += 1;
+            part.elements.contains(&(at - 1)) || holders.contains(&(at - 1))
+        });
+        alone
+    }
+
+    /// Nodes whose potential sources and shorts among themselves do not agree on: nobody can say what a part beside
+    /// one should do.
+    fn contested(&self, parts: &[Part], holders: &[usize]) -> Vec<usize> {
+        let mut nodes = Vec::new();
+        for part in parts {
+            let elements = part.elements.iter().map(|&at| &self.circuit.elements[at]);
+            let only_sources = elements.clone().all(|e| match &e.kind {
+                Kind::V(_) | Kind::L => true,
+                Kind::R(ohms) => ohms.is_zero(),
+                _ => false,
+            });
+            if only_sources && !solve(&self.alone(part, holders)).solvable() {
+                nodes.extend(elements.flat_map(|e| [e.from, e.to]).filter(|&node| node != 0));
+            }
+        }
+        nodes
     }
 
     fn title(&self, elements: &[usize]) -> String {
