@@ -41,8 +41,7 @@ fn letter_code(text: &[u8]) -> Option<Number> {
     if whole == sign || end == after || !text.get(end..)?.iter().all(|&b| is_unit(b)) {
         return None;
     }
-    let mut decimal = Decimal::default();
-    decimal.negative = text.first() == Some(&b'-');
+    let mut decimal = Decimal { negative: text.first() == Some(&b'-'), ..Decimal::default() };
     decimal.push_all(&text[sign..whole]);
     decimal.push_all(&text[after..end]);
     decimal.exponent -= i32::try_from(end - after).ok()?;
