@@ -305,6 +305,26 @@ impl<'a> Solve<'a> {
         (g - g * (rhs[p] - rhs[q])).abs()
     }
 
+    /// Resistance between two groups; `None` where nothing ties one to the other.
+    pub(super) fn between(&mut self, p: u32, q: u32) -> Option<f64> {
+        let (a, b) = (self.forest.group[p as usize], self.forest.group[q as usize]);
+        if a == b {
+            return Some(0.0);
+        }
+        let mut sets = Sets::new(self.forest.groups);
+        for &(a, b) in &self.system.edges()[..self.links.len()] {
+            sets.union(a, b);
+        }
+        if sets.find(a) != sets.find(b) {
+            return None;
+        }
+        let mut rhs = vec![0.0; self.forest.groups];
+        rhs[a as usize] += 1.0;
+        rhs[b as usize] -= 1.0;
+        self.system.solve(&mut rhs);
+        Some(rhs[a as usize] - rhs[b as usize])
+    }
+
     /// Nodes below `node` in the forest, itself included, sorted.
     fn subtree(&self, node: u32, near: &Neighbours) -> Vec<u32> {
         let mut side = vec![node];

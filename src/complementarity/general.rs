@@ -1,15 +1,26 @@
-//! Parts with controlled laws or negative resistances: small dense systems, every consistent set of states.
+//! Parts with controlled laws or negative resistances. Such parts may have several consistent sets of states, or
+//! none: the linear rest is reduced to what its junctions see, and every set of states is tried where there are
+//! few enough.
 
-use super::network::Network;
-use super::outcome::{Interval, Place, Reason, Verdict};
+use super::dense::Dense;
+use super::network::{Law, Network};
+use super::outcome::{Interval, Place, Quantity, Reason, Solution, Verdict, View};
+use super::parts::Piece;
+use super::ports::{Ports, Trial};
 use super::rails::Rails;
 use super::solve::Answer;
+
+/// Combinations of states tried at most.
+const MOST_TRIALS: u64 = 300_000;
 
 /// One consistent set of a part.
 pub(super) struct Set {
     potentials: Vec<(u32, f64)>,
     currents: Vec<(u32, f64)>,
     places: Vec<(u32, Place)>,
+    /// Open quantities: nodes move by these rooms, branches have these ranges.
+    rooms: Vec<(u32, Interval)>,
+    ranges: Vec<(u32, Interval)>,
 }
 
 impl Set {
@@ -17,24 +28,126 @@ impl Set {
         for &(n, v) in &self.potentials {
             potentials[n as usize] = v;
         }
-        for &(n, v) in &self.currents {
-            currents[n as usize] = v;
+        for &(n, i) in &self.currents {
+            currents[n as usize] = i;
         }
     }
+
+    /// Whether currents, and whether potentials are open.
     pub(super) fn fill_open(
         &self,
-        _room: &mut [Interval],
-        _ranges: &mut [Option<Interval>],
+        room: &mut [Interval],
+        ranges: &mut [Option<Interval>],
         places: &mut [Place],
     ) -> (bool, bool) {
-        for &(n, p) in &self.places {
-            places[n as usize] = p;
+        for &(n, interval) in &self.rooms {
+            room[n as usize] = interval;
         }
-        (false, false)
+        for &(n, interval) in &self.ranges {
+            ranges[n as usize] = Some(interval);
+        }
+        for &(n, place) in &self.places {
+            places[n as usize] = place;
+        }
+        (!self.ranges.is_empty(), !self.rooms.is_empty())
     }
 }
 
-pub(super) fn solve(_network: &Network, _rails: &Rails, answer: &mut Answer) {
-    answer.verdict = Verdict::Unverified;
-    answer.reasons.push(Reason::Residual { relative: 1.0 });
+/// All consistent sets of one part.
+pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
+    let dense = Dense::new(network, rails, &answer.piece);
+    answer.solves += 1;
+    let Some(ports) = Ports::new(network, &dense) else {
+        answer.verdict = Verdict::None;
+        answer.reasons.push(Reason::Dependent {
+            text: "the controlled sources leave the linear circuit without a unique answer".into(),
+        });
+        return;
+    };
+    let (trials, complete) = ports.consistent(MOST_TRIALS);
+    answer.truncated = !complete || trials.len() > super::assemble::MOST_SETS;
+    if !complete {
+        answer.reasons.push(Reason::Dependent {
+            text: format!(
+                "the search stopped after {MOST_TRIALS} combinations of states; more sets may exist"
+            ),
+        });
+    }
+    answer.verdict = match trials.len() {
+        0 if complete => Verdict::None,
+        0 => Verdict::Unverified,
+        1 if complete => Verdict::Unique,
+        1 => Verdict::Unverified,
+        _ => Verdict::Several,
+    };
+    if trials.is_empty() && complete {
+        let text = format!("none of the {} combinations of states is consistent", ports.combinations());
+        answer.reasons.push(Reason::Dependent { text });
+    }
+    let sets = trials.iter().take(super::assemble::MOST_SETS);
+    answer.found = sets.map(|t| super::solve::Found::General(set(network, &dense, &ports, t))).collect();
+}
+
+fn set(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Set {
+    let x = ports.expand(&trial.currents);
+    let moved: Vec<(Vec<f64>, Interval)> =
+        trial.open.iter().map(|(direction, room)| (ports.expand_change(direction), *room)).collect();
+    let mut set = Set {
+        potentials: dense.nodes.iter().map(|&n| (n, dense.potential(&x, n))).collect(),
+        currents: Vec::new(),
+        places: trial.places.iter().zip(&ports.junctions).map(|(&p, &n)| (n, p)).collect(),
+        rooms: dense.floating.iter().map(|&n| (n, ANYWHERE)).collect(),
+        ranges: Vec::new(),
+    };
+    for &n in &dense.branches {
+        if !matches!(network.branches[n as usize].law, Law::Voltage(_) | Law::Short) {
+            set.currents.push((n, dense.current(network, &x, n)));
+        }
+    }
+    for (change, room) in moved {
+        for &n in &dense.nodes {
+            let slope = dense.potential_change(&change, n);
+            if let Some(interval) = scaled(slope, room) {
+                set.rooms.push((n, interval));
+            }
+        }
+        for &n in &dense.branches {
+            let (i, slope) = (dense.current(network, &x, n), dense.current_change(network, &change, n));
+            if let Some(by) = scaled(slope, room) {
+                set.ranges.push((n, Interval { low: i + by.low, high: i + by.high }));
+            }
+        }
+    }
+    set
+}
+
+const ANYWHERE: Interval = Interval { low: f64::NEG_INFINITY, high: f64::INFINITY };
+
+fn scaled(slope: f64, room: Interval) -> Option<Interval> {
+    if slope.abs() <= 1e-12 {
+        return None;
+    }
+    let (a, b) = (slope * room.low, slope * room.high);
+    Some(Interval { low: a.min(b), high: a.max(b) })
+}
+
+/// Views in such a part: each junction's own row of what the junctions see.
+pub(super) fn views(
+    network: &Network,
+    rails: &Rails,
+    piece: &Piece,
+    solution: &Solution,
+    wanted: &[bool],
+    views: &mut [Option<View>],
+) {
+    let dense = Dense::new(network, rails, piece);
+    let Some(ports) = Ports::new(network, &dense) else { return };
+    let places: Vec<Place> = ports.junctions.iter().map(|&n| solution.places[n as usize]).collect();
+    for (k, &n) in ports.junctions.iter().enumerate().filter(|(_, n)| wanted[**n as usize]) {
+        if let (Quantity::Known(i), Quantity::Known(v)) =
+            (solution.currents[n as usize], solution.voltages[n as usize])
+        {
+            views[n as usize] = ports.view(k, &places, v, i);
+        }
+    }
 }

@@ -3,6 +3,7 @@
 
 mod assemble;
 mod decimal;
+mod dense;
 mod double_double;
 mod exact;
 mod existence;
@@ -18,6 +19,7 @@ mod outcome;
 mod parts;
 mod passive;
 mod pivoting;
+mod ports;
 mod rails;
 mod settle;
 mod solve;
@@ -25,6 +27,7 @@ mod supernodal;
 #[cfg(test)]
 mod tests;
 mod tie_currents;
+mod views;
 
 pub(crate) use decimal::sign_of_sum;
 pub use network::{Branch, Control, Junction, Law, Level, Network};

@@ -1,7 +1,5 @@
 //! The answer: a verdict for each independent part, and every quantity known, open or unknown.
 
-use super::network::Network;
-
 /// How well the laws determine a part. Ordered from the least to the most serious; a whole takes the most
 /// serious of its parts'.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -163,13 +161,4 @@ pub struct Outcome {
     pub truncated: bool,
     /// Factorizations done.
     pub solves: usize,
-}
-
-impl Network {
-    /// What each of `junctions` (branch numbers) sees in `solution`: `None` where that is not finite (fed by
-    /// current sources only, floating, open) or its part was not evaluated.
-    pub fn views(&self, solution: &Solution, junctions: &[u32]) -> Vec<Option<View>> {
-        let _ = (self, solution);
-        vec![None; junctions.len()]
-    }
 }

@@ -43,7 +43,6 @@ pub(super) fn split(network: &Network, rails: &Rails) -> Vec<Piece> {
             }
         }
     };
-    let far = FarSides::new(network, rails);
     for b in &network.branches {
         match b.law {
             Law::Current(_) | Law::Voltage(_) | Law::Short => {}
@@ -51,7 +50,7 @@ pub(super) fn split(network: &Network, rails: &Rails) -> Vec<Piece> {
                 let mut nodes = vec![b.from, b.to];
                 match control {
                     Control::Voltage(p, q) => nodes.extend([p, q]),
-                    Control::Current(branch) => nodes.extend(far.of(network, branch)),
+                    Control::Current(branch) => nodes.extend(far_side(network, rails, branch)),
                 }
                 join(&mut sets, &nodes);
             }
@@ -61,42 +60,16 @@ pub(super) fn split(network: &Network, rails: &Rails) -> Vec<Piece> {
     collect(network, rails, &mut sets)
 }
 
-/// Nodes that a current through a branch may come from or go to: whatever meets it on the side away from the
-/// reference.
-struct FarSides {
-    /// Nodes that share a branch with each node, other than through ties.
-    near: Vec<Vec<u32>>,
-}
-
-impl FarSides {
-    fn new(network: &Network, rails: &Rails) -> Self {
-        let listens = |law: &Law| {
-            matches!(
-                law,
-                Law::VoltageControlled(_, Control::Current(_))
-                    | Law::CurrentControlled(_, Control::Current(_))
-            )
-        };
-        let mut near = Vec::new();
-        if network.branches.iter().any(|b| listens(&b.law)) {
-            near = vec![Vec::new(); rails.tainted.len()];
-            for b in network.branches.iter().filter(|b| fixed(b.law).is_none()) {
-                near[b.from as usize].push(b.to);
-                near[b.to as usize].push(b.from);
-            }
-        }
-        FarSides { near }
+/// Nodes beside the branches that leave a tie's far side: what its current depends on.
+fn far_side(network: &Network, rails: &Rails, branch: u32) -> Vec<u32> {
+    let Some(b) = network.branches.get(branch as usize) else { return Vec::new() };
+    let mut nodes = vec![b.from, b.to];
+    if let Some(beyond) = rails.beyond(branch) {
+        let leaves = |b: &&super::network::Branch| beyond[b.from as usize] != beyond[b.to as usize];
+        let others = network.branches.iter().filter(|b| fixed(b.law).is_none()).filter(leaves);
+        nodes.extend(others.flat_map(|b| [b.from, b.to]));
     }
-
-    /// Every node of the tied group, and their neighbours, unless only the reference is there.
-    fn of(&self, network: &Network, branch: u32) -> Vec<u32> {
-        let Some(b) = network.branches.get(branch as usize) else { return Vec::new() };
-        let mut nodes = vec![b.from, b.to];
-        for end in [b.from, b.to].into_iter().filter(|&n| n != 0) {
-            nodes.extend(self.near.get(end as usize).into_iter().flatten());
-        }
-        nodes
-    }
+    nodes
 }
 
 fn collect(network: &Network, rails: &Rails, sets: &mut Sets) -> Vec<Piece> {

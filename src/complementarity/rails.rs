@@ -19,6 +19,8 @@ pub(super) struct Rails {
     pub(super) contradictions: Vec<Part>,
     /// Some loop of ties agrees: its current is open.
     pub(super) loops: bool,
+    /// Current sources, which join no parts.
+    pub(super) pushing: Vec<u32>,
     /// Nodes sorted by group, and where each group starts.
     members: (Vec<u32>, Vec<u32>),
 }
@@ -33,6 +35,7 @@ impl Rails {
             }
         }
         let nodes = network.nodes.max(1) as usize;
+        let pushing = network.branches.iter().enumerate().filter(|(_, b)| matches!(b.law, Law::Current(_)));
         let forest = Forest::new(nodes, &ties);
         let mut rails = Rails {
             forest,
@@ -41,6 +44,7 @@ impl Rails {
             tainted: vec![false; nodes],
             contradictions: Vec::new(),
             loops: false,
+            pushing: pushing.map(|(n, _)| n as u32).collect(),
             members: (Vec::new(), Vec::new()),
         };
         rails.members = members(&rails.forest);
@@ -55,6 +59,21 @@ impl Rails {
     pub(super) fn nodes_of(&self, group: u32) -> &[u32] {
         let (nodes, start) = &self.members;
         &nodes[start[group as usize] as usize..start[group as usize + 1] as usize]
+    }
+
+    /// The nodes on the far side of a tie of the forest, seen from the root; `None` for any other branch.
+    pub(super) fn beyond(&self, branch: u32) -> Option<Vec<bool>> {
+        let tie = self.branch.iter().position(|&b| b == branch)?;
+        let top = self.forest.up.iter().position(|&up| up == tie as u32)?;
+        let mut beyond = vec![false; self.forest.up.len()];
+        beyond[top] = true;
+        for &node in &self.forest.order {
+            let node = node as usize;
+            if self.forest.up[node] != NONE && beyond[self.forest.parent[node] as usize] {
+                beyond[node] = true;
+            }
+        }
+        Some(beyond)
     }
 
     /// Checks the loop that a chord closes.

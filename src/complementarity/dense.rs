@@ -1,0 +1,308 @@
+//! The linear equations of a part with controlled laws: unknown potentials and currents, the laws as rows. Currents
+//! of junctions are left open: they are what `ports` solves for.
+
+use super::network::{Control, Law, Network};
+use super::parts::Piece;
+use super::rails::{Rails, fixed};
+use nalgebra::DMatrix;
+
+/// Where a branch's current is found.
+#[derive(Debug, Clone)]
+pub(super) enum Spot {
+    /// A number.
+    Known(f64),
+    /// An unknown of the equations.
+    Unknown(usize),
+    /// The current of a junction, by its place among the junctions.
+    Port(usize),
+    /// By Ohm's law from potentials.
+    Ohm(f64),
+    /// The sum of what these branches carry away (+1) or bring (−1): a boundary's source.
+    Sum(Vec<(u32, f64)>),
+    /// Not in this part.
+    Elsewhere,
+}
+
+/// Equations `matrix · x + ports · i = rhs`.
+pub(super) struct Dense<'a> {
+    rails: &'a Rails,
+    pub(super) nodes: Vec<u32>,
+    pub(super) branches: Vec<u32>,
+    pub(super) junctions: Vec<u32>,
+    /// Nodes whose potential nothing fixes.
+    pub(super) floating: Vec<u32>,
+    pub(super) matrix: DMatrix<f64>,
+    pub(super) ports: DMatrix<f64>,
+    pub(super) rhs: Vec<f64>,
+    /// Unknown of each node; boundaries have their potential from the rails.
+    place: std::collections::HashMap<u32, usize>,
+    spots: std::collections::HashMap<u32, Spot>,
+    ends: std::collections::HashMap<u32, (u32, u32)>,
+}
+
+/// A linear form over unknowns and ports.
+#[derive(Default, Clone)]
+struct Form {
+    x: Vec<(usize, f64)>,
+    port: Vec<(usize, f64)>,
+    constant: f64,
+}
+
+impl Form {
+    fn add(&mut self, other: &Form, factor: f64) {
+        self.x.extend(other.x.iter().map(|&(n, c)| (n, c * factor)));
+        self.port.extend(other.port.iter().map(|&(n, c)| (n, c * factor)));
+        self.constant += other.constant * factor;
+    }
+}
+
+impl<'a> Dense<'a> {
+    pub(super) fn new(network: &Network, rails: &'a Rails, piece: &Piece) -> Self {
+        let nodes: Vec<u32> = piece.groups.iter().flat_map(|&g| rails.nodes_of(g)).copied().collect();
+        let place = nodes.iter().enumerate().map(|(k, &n)| (n, k)).collect();
+        let mut dense = Dense {
+            branches: piece.branches.clone(),
+            junctions: Vec::new(),
+            floating: Vec::new(),
+            matrix: DMatrix::zeros(0, 0),
+            ports: DMatrix::zeros(0, 0),
+            rhs: Vec::new(),
+            place,
+            rails,
+            spots: Default::default(),
+            ends: Default::default(),
+            nodes,
+        };
+        dense.take_stock(network, rails);
+        let pins = dense.islands(network);
+        dense.fill(network, rails, &pins);
+        dense
+    }
+
+    /// Says of each branch where its current is found.
+    fn take_stock(&mut self, network: &Network, rails: &Rails) {
+        let mut unknown = self.nodes.len();
+        // a source that pushes current in may be counted with another part
+        for &n in &rails.pushing {
+            let b = &network.branches[n as usize];
+            let touches = self.place.contains_key(&b.from) || self.place.contains_key(&b.to);
+            if touches && !self.branches.contains(&n) {
+                self.branches.push(n);
+            }
+        }
+        for &n in &self.branches.clone() {
+            let b = &network.branches[n as usize];
+            let mut next = || {
+                unknown += 1;
+                Spot::Unknown(unknown - 1)
+            };
+            let spot = match b.law {
+                Law::Resistance(r) => Spot::Ohm(r),
+                Law::Current(level) => Spot::Known(level.value),
+                Law::Junction(_) => {
+                    self.junctions.push(n);
+                    Spot::Port(self.junctions.len() - 1)
+                }
+                Law::Unknown => Spot::Known(f64::NAN),
+                _ => next(),
+            };
+            self.spots.insert(n, spot);
+            self.ends.insert(n, (b.from, b.to));
+        }
+        for &n in &self.branches.clone() {
+            if let Some(Control::Current(c)) = control(network.branches[n as usize].law)
+                && !self.spots.contains_key(&c)
+            {
+                let spot = boundary_sum(network, rails, c);
+                self.spots.insert(c, spot);
+            }
+        }
+        self.rhs = vec![0.0; unknown];
+    }
+
+    /// One node of each island that no branch ties to a boundary; its island floats.
+    fn islands(&mut self, network: &Network) -> Vec<usize> {
+        let count = self.nodes.len();
+        let mut sets = super::forest::Sets::new(count + 1);
+        let spot = |n: u32| self.place.get(&n).map_or(0, |&k| k as u32 + 1);
+        for &n in &self.branches {
+            let b = &network.branches[n as usize];
+            if !matches!(b.law, Law::Current(_)) {
+                sets.union(spot(b.from), spot(b.to));
+            }
+        }
+        let mut pins = Vec::new();
+        let mut floating = Vec::new();
+        for k in 0..count as u32 {
+            let root = sets.find(k + 1);
+            if root == k + 1 {
+                pins.push(k as usize);
+            }
+            if root != 0 {
+                floating.push(self.nodes[k as usize]);
+            }
+        }
+        self.floating = floating;
+        pins
+    }
+
+    fn fill(&mut self, network: &Network, rails: &Rails, pins: &[usize]) {
+        let size = self.rhs.len();
+        self.matrix = DMatrix::zeros(size, size);
+        self.ports = DMatrix::zeros(size, self.junctions.len());
+        for &n in &self.branches.clone() {
+            let b = &network.branches[n as usize];
+            if fixed(b.law).is_some() && rails.forest.group[b.from as usize] == 0 {
+                continue;
+            }
+            let i = self.form_of_current(network, n);
+            for (node, sign) in [(b.from, 1.0), (b.to, -1.0)] {
+                if let Some(&row) = self.place.get(&node)
+                    && b.from != b.to
+                {
+                    self.add_row(row, &i, sign);
+                }
+            }
+            if let Some(&Spot::Unknown(row)) = self.spots.get(&n) {
+                let law = self.law(network, n);
+                self.add_row(row, &law, 1.0);
+            }
+        }
+        for &k in pins {
+            self.matrix.row_mut(k).fill(0.0);
+            self.ports.row_mut(k).fill(0.0);
+            self.rhs[k] = 0.0;
+            self.matrix[(k, k)] = 1.0;
+        }
+    }
+
+    fn add_row(&mut self, row: usize, form: &Form, factor: f64) {
+        for &(n, c) in &form.x {
+            self.matrix[(row, n)] += c * factor;
+        }
+        for &(n, c) in &form.port {
+            self.ports[(row, n)] += c * factor;
+        }
+        self.rhs[row] -= form.constant * factor;
+    }
+
+    fn form_of_node(&self, node: u32) -> Form {
+        match self.place.get(&node) {
+            Some(&k) => Form { x: vec![(k, 1.0)], ..Form::default() },
+            None if self.rails.forest.group[node as usize] == 0 => {
+                Form { constant: self.rails.forest.offset[node as usize].round(), ..Form::default() }
+            }
+            None => Form { constant: f64::NAN, ..Form::default() },
+        }
+    }
+
+    fn form_of_voltage(&self, from: u32, to: u32) -> Form {
+        let mut form = self.form_of_node(from);
+        form.add(&self.form_of_node(to), -1.0);
+        form
+    }
+
+    fn form_of_current(&self, network: &Network, n: u32) -> Form {
+        let b = &network.branches[n as usize];
+        match self.spots.get(&n) {
+            Some(Spot::Known(i)) => Form { constant: *i, ..Form::default() },
+            Some(Spot::Unknown(k)) => Form { x: vec![(*k, 1.0)], ..Form::default() },
+            Some(Spot::Port(k)) => Form { port: vec![(*k, 1.0)], ..Form::default() },
+            Some(Spot::Ohm(r)) => {
+                let mut form = Form::default();
+                form.add(&self.form_of_voltage(b.from, b.to), 1.0 / r);
+                form
+            }
+            Some(Spot::Sum(terms)) => {
+                let mut form = Form::default();
+                for &(other, sign) in terms {
+                    form.add(&self.form_of_current(network, other), sign);
+                }
+                form
+            }
+            Some(Spot::Elsewhere) | None => Form { constant: f64::NAN, ..Form::default() },
+        }
+    }
+
+    /// Zero where the law of a branch with an unknown current is met.
+    fn law(&self, network: &Network, n: u32) -> Form {
+        let b = &network.branches[n as usize];
+        match b.law {
+            Law::CurrentControlled(gain, by) => {
+                let mut form = self.form_of_current(network, n);
+                form.add(&self.form_of_control(network, by), -gain);
+                form
+            }
+            Law::VoltageControlled(gain, by) => {
+                let mut form = self.form_of_voltage(b.from, b.to);
+                form.add(&self.form_of_control(network, by), -gain);
+                form
+            }
+            law => {
+                let mut form = self.form_of_voltage(b.from, b.to);
+                form.constant -= fixed(law).map_or(f64::NAN, |l| l.value);
+                form
+            }
+        }
+    }
+
+    fn form_of_control(&self, network: &Network, by: Control) -> Form {
+        match by {
+            Control::Voltage(p, q) => self.form_of_voltage(p, q),
+            Control::Current(n) => self.form_of_current(network, n),
+        }
+    }
+
+    /// Potential of a node at `x` (unknowns, then junction currents).
+    pub(super) fn potential(&self, x: &[f64], node: u32) -> f64 {
+        self.value(&self.form_of_node(node), x, 1.0)
+    }
+
+    pub(super) fn potential_change(&self, change: &[f64], node: u32) -> f64 {
+        self.value(&self.form_of_node(node), change, 0.0)
+    }
+
+    pub(super) fn current(&self, network: &Network, x: &[f64], n: u32) -> f64 {
+        self.value(&self.form_of_current(network, n), x, 1.0)
+    }
+
+    pub(super) fn current_change(&self, network: &Network, change: &[f64], n: u32) -> f64 {
+        self.value(&self.form_of_current(network, n), change, 0.0)
+    }
+
+    fn value(&self, form: &Form, x: &[f64], constant: f64) -> f64 {
+        let size = self.rhs.len();
+        let unknowns: f64 = form.x.iter().map(|&(k, c)| c * x[k]).sum();
+        let ports: f64 = form.port.iter().map(|&(k, c)| c * x[size + k]).sum();
+        unknowns + ports + if constant == 0.0 { 0.0 } else { form.constant }
+    }
+
+    /// Nodes between which a junction stands, as a row over the unknowns and a constant.
+    pub(super) fn voltage_row(&self, n: u32) -> (Vec<(usize, f64)>, f64) {
+        let (from, to) = self.ends.get(&n).copied().unwrap_or((0, 0));
+        let form = self.form_of_voltage(from, to);
+        (form.x, form.constant)
+    }
+}
+
+fn control(law: Law) -> Option<Control> {
+    match law {
+        Law::VoltageControlled(_, by) | Law::CurrentControlled(_, by) => Some(by),
+        _ => None,
+    }
+}
+
+/// The current of a tie between boundaries: what every other branch takes from the nodes beyond it.
+fn boundary_sum(network: &Network, rails: &Rails, branch: u32) -> Spot {
+    let b = &network.branches[branch as usize];
+    let Some(beyond) = rails.beyond(branch) else { return Spot::Elsewhere };
+    let direction = if beyond[b.from as usize] { 1.0 } else { -1.0 };
+    let mut terms = Vec::new();
+    for (n, b) in network.branches.iter().enumerate().filter(|(_, b)| fixed(b.law).is_none()) {
+        let sign = f64::from(u8::from(beyond[b.to as usize])) - f64::from(u8::from(beyond[b.from as usize]));
+        if sign != 0.0 {
+            terms.push((n as u32, direction * sign));
+        }
+    }
+    Spot::Sum(terms)
+}
