@@ -4,9 +4,14 @@
 use super::declared::{Declared, Range, Subject};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Source};
 use crate::complementarity::Level;
+use crate::finding::{Finding, Severity};
+use crate::text::{FileId, Span};
 
 /// Most corners that are examined.
 pub(crate) const MOST_CORNERS: usize = 64;
+
+/// Most moving sources, and most things held both ways, that have conditions of their own.
+pub(crate) const MOST_ALONE: usize = 32;
 
 /// A node that a `supply` note holds against ground.
 #[derive(Debug, Clone, PartialEq)]
@@ -78,7 +83,7 @@ fn standing(source: &Source) -> Level {
 }
 
 /// Lays out the conditions in their order.
-pub(crate) fn plan(circuit: &Circuit, declared: &Declared) -> Plan {
+pub(crate) fn plan(circuit: &Circuit, declared: &Declared, findings: &mut Vec<Finding>) -> Plan {
     let sources: Vec<ElementId> =
         circuit.elements().map(|(id, _)| id).filter(|&id| source(circuit, id).is_some()).collect();
     let fixed = |id: ElementId| declared.set.iter().find(|(set, _)| *set == id).map(|(_, v)| level(*v));
@@ -103,7 +108,45 @@ pub(crate) fn plan(circuit: &Circuit, declared: &Declared) -> Plan {
     let mut plan = Plan { sources, supplies: declared.supplies.clone(), moving, conditions: vec![nominal] };
     plan.add_ranges(circuit, declared);
     plan.add_instants(circuit);
+    findings.extend(left_out(circuit, declared, &plan));
     plan
+}
+
+/// What has no condition because there would be too many.
+fn left_out(circuit: &Circuit, declared: &Declared, plan: &Plan) -> Vec<Finding> {
+    let (ranges, both, moving) = (declared.ranges.len(), declared.both.len(), plan.moving.len());
+    let mut said = Vec::new();
+    if ranges > MOST_CORNERS.ilog2() as usize {
+        let span = declared.ranges.first().map(|r| r.span);
+        said.push((
+            span,
+            format!("{ranges} ranges have 2^{ranges} corners; each end was examined alone, no corners"),
+        ));
+    } else if ranges > 0 && both > 0 && (1 << ranges) * both.min(MOST_ALONE) > MOST_CORNERS {
+        let span = declared.ranges.first().map(|r| r.span);
+        said.push((span, format!("{ranges} ranges and {both} parts held on and off have too many combinations; the corners were examined with all of them off")));
+    }
+    let place = |id: &ElementId| Some(circuit.element(*id).statement);
+    if both > MOST_ALONE {
+        let span = declared.both.first().and_then(place);
+        said.push((
+            span,
+            format!(
+                "{both} parts are held both ways; the first {MOST_ALONE} were examined on, one at a time"
+            ),
+        ));
+    }
+    if moving > MOST_ALONE {
+        let span = plan.moving.first().and_then(place);
+        said.push((span, format!("{moving} sources move over time; the extreme instants of the first {MOST_ALONE} were examined")));
+    }
+    let finding = |(span, message): (Option<Span>, String)| {
+        let span = span.unwrap_or(Span::new(FileId(0), 0, 0));
+        Finding::new("corners-left-out", Severity::Note, span, message)
+            .label("the first of them")
+            .help("Up to six ranges are examined in all combinations. Keep ranges of what matters together, or split the file, to have the rest examined.")
+    };
+    said.into_iter().map(finding).collect()
 }
 
 impl Condition {
@@ -134,11 +177,12 @@ impl Plan {
     fn add_ranges(&mut self, circuit: &Circuit, declared: &Declared) {
         let ends: Vec<[Change<'_>; 2]> =
             declared.ranges.iter().map(|r| [Change::End(r, r.from), Change::End(r, r.to)]).collect();
-        let on: Vec<Change<'_>> = declared.both.iter().map(|&id| Change::Hold(id, true)).collect();
+        let both = &declared.both[..declared.both.len().min(MOST_ALONE)];
+        let on: Vec<Change<'_>> = both.iter().map(|&id| Change::Hold(id, true)).collect();
         for change in ends.iter().flatten() {
             self.add(circuit, &[*change]);
         }
-        for &id in &declared.both {
+        for &id in both {
             self.add(circuit, &[Change::Hold(id, true)]);
             self.add(circuit, &[Change::Hold(id, false)]);
         }
@@ -158,7 +202,7 @@ impl Plan {
     /// `V1=max` and `V1=min`: every other source stands at its value then, ranges at nominal.
     fn add_instants(&mut self, circuit: &Circuit) {
         let stop = circuit.transient.map(|t| t.stop);
-        for id in self.moving.clone() {
+        for id in self.moving.iter().take(MOST_ALONE).copied().collect::<Vec<_>>() {
             let Some(shape) = source(circuit, id).and_then(|s| s.shape.as_ref()) else { continue };
             let (most, least) = shape.extremes(stop);
             for (word, t) in [("max", most), ("min", least)] {

@@ -1,7 +1,7 @@
 //! What notes, `.dc` lines and options declare about conditions: ranges, supplies, holds, set values. Reading
 //! only; `condition` lays the conditions out.
 
-use super::condition::{MOST_CORNERS, Supply, level, source};
+use super::condition::{Supply, level, source};
 use super::named::{twice, unknown_name};
 use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Note, NoteKind, ScopeId};
@@ -238,9 +238,6 @@ impl Reader<'_> {
             }
         }
         self.declared.ranges.sort_by_key(|r| r.span);
-        if self.declared.ranges.len() > MOST_CORNERS.ilog2() as usize {
-            self.findings.push(too_many(&self.declared.ranges));
-        }
     }
 
     fn range(&mut self, note: Option<&Note>, range: Range) {
@@ -328,13 +325,4 @@ fn moving_range(range: &Range) -> Finding {
         .label("this range is not examined")
         .about(range.name.clone())
         .help("Its extreme instants are examined anyway. Give the source a DC value to declare a range, or leave the range out.")
-}
-
-fn too_many(ranges: &[Range]) -> Finding {
-    let count = ranges.len();
-    let span = ranges.first().map_or(Span::new(FileId(0), 0, 0), |r| r.span);
-    let message = format!("{count} ranges have 2^{count} corners; each end was examined alone, no corners");
-    Finding::new("corners-left-out", Severity::Note, span, message)
-        .label("the first of them")
-        .help("Up to six ranges are examined in all combinations. Keep ranges of what matters together to have their corners examined.")
 }

@@ -45,7 +45,7 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
     let directory = directory.as_ref();
     let mut list = diodes(circuit, directory, options, &mut findings);
     let declared = declared(circuit, text.map(|t| t.parsed), directory, options, &mut findings);
-    let plan = plan(circuit, &declared);
+    let plan = plan(circuit, &declared, &mut findings);
     let slots = Slots::of(circuit, &plan, &list);
     let mut run = Run {
         circuit,

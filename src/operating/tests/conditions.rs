@@ -119,3 +119,12 @@ fn parameters_may_have_ranges() {
     assert_eq!(laid.names(), ["nominal", "vs=4", "vs=6"]);
     assert_eq!(laid.plan.conditions[1].parameters, [("vs".to_owned(), 4.0)]);
 }
+
+#[test]
+fn many_moving_sources_do_not_make_endless_conditions() {
+    let sources: String =
+        (0..40).map(|n| format!("V{n} n{n} 0 SIN(0 1 {})\nR{n} n{n} 0 1k\n", n + 1)).collect();
+    let laid = Laid::out(&sources, &Options::default());
+    assert_eq!(laid.plan.conditions.len(), 1 + 2 * 32);
+    assert_eq!(laid.rules(), ["corners-left-out"]);
+}

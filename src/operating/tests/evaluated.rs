@@ -6,7 +6,7 @@ use crate::complementarity::{Quantity, Verdict};
 use crate::config::Options;
 use crate::operating::{Case, DiodeResult};
 
-fn diode<'a>(case: &'a Case, at: usize) -> &'a DiodeResult {
+fn diode(case: &Case, at: usize) -> &DiodeResult {
     &case.solutions[0].diodes[at]
 }
 

@@ -41,7 +41,7 @@ impl Laid {
         let directory = Directory::of(&circuit);
         let diodes = diodes(&circuit, Some(&directory), options, &mut findings);
         let declared = declared(&circuit, Some(&parsed), Some(&directory), options, &mut findings);
-        let plan = plan(&circuit, &declared);
+        let plan = plan(&circuit, &declared, &mut findings);
         Laid { circuit, diodes, plan, findings }
     }
 
