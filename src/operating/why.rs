@@ -346,7 +346,7 @@ impl Search {
             (true, 0) if self.is_cut_off => {
                 "Its part is too large to follow what single sources would change.".into()
             }
-            (true, 0) => "No source of its part can be moved.".into(),
+            (true, 0) => "Its part has no source that is not at zero, so there is none to follow.".into(),
             (true, _) if self.is_cut_off => {
                 format!("No single source was seen to change the state from {}.{tail}", state.word())
             }
