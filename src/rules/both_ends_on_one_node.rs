@@ -1,6 +1,6 @@
 //! A two-terminal element with both ends on one node.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, LooseEnd, Rule};
 use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::dc_value;
@@ -31,19 +31,37 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     evidence.circuit.elements().filter_map(|(id, _)| judge(evidence, id)).collect()
 }
 
+/// The loose end that an element across one node was probably meant to reach: there is one of each in the
+/// circuit or subcircuit, so they have one cause.
+pub fn is_other_end(evidence: &Evidence<'_>, end: &LooseEnd) -> bool {
+    let scope = evidence.circuit.element(end.touch.element).scope;
+    evidence.shorted_in(scope) == 1
+}
+
+fn other_end<'e>(evidence: &'e Evidence<'_>, id: ElementId) -> Option<&'e LooseEnd> {
+    let scope = evidence.circuit.element(id).scope;
+    let [end] = evidence.loose_ends_in(scope) else { return None };
+    (end.meant.is_none() && !end.unused_pin && is_other_end(evidence, end)).then_some(end)
+}
+
+/// Both ends of a two-terminal element (or output) are on one node by its own line.
+pub fn is_shorted(evidence: &Evidence<'_>, id: ElementId) -> bool {
+    let circuit = evidence.circuit;
+    let stands_for_itself = matches!(
+        circuit.element(id).behaviour,
+        Behaviour::Unknown { .. } | Behaviour::Transistor { .. } | Behaviour::Coupling { .. }
+    );
+    let [first, second, ..] = circuit.pins(id) else { return false };
+    !stands_for_itself && first.node == second.node && !tied_outside(evidence, id)
+}
+
 fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let circuit = evidence.circuit;
     let element = circuit.element(id);
-    if matches!(
-        element.behaviour,
-        Behaviour::Unknown { .. } | Behaviour::Transistor { .. } | Behaviour::Coupling { .. }
-    ) {
+    if !is_shorted(evidence, id) {
         return None;
     }
     let [first, second, ..] = circuit.pins(id) else { return None };
-    if first.node != second.node || tied_outside(evidence, id) {
-        return None;
-    }
     let (name, node) = (evidence.name(id), evidence.node(first.node));
     let mut finding = evidence
         .about(&RULE, id, format!("both ends of {name} are on node `{node}`"))
@@ -51,6 +69,15 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
         .also(first.span, "one end")
         .also(second.span, "the other end")
         .help(format!("{} {}", RULE.why, RULE.remedy));
+    if let Some(end) = other_end(evidence, id)
+        && let Some(pin) = circuit.pins(end.touch.element).get(end.touch.pin as usize)
+    {
+        let (node, only) = (evidence.node(end.node), evidence.name(end.touch.element));
+        finding = finding
+            .also(pin.span, format!("`{node}` is joined to nothing but {only}: meant for {name}?"))
+            .about(node)
+            .about(only);
+    }
     if let Behaviour::VoltageSource(source) = &element.behaviour {
         let volts = dc_value(source).0;
         if volts != 0.0 {

@@ -1,9 +1,10 @@
 //! A node that one element alone touches.
 
 use super::{Check, Evidence, LooseEnd, Rule};
-use crate::circuit::{Behaviour, ElementId};
-use crate::finding::{Finding, Severity};
+use crate::circuit::{Behaviour, ElementId, Note, NoteKind, ScopeId};
+use crate::finding::{Finding, Label, Severity};
 use crate::topology::is_sensing;
+use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "dangling-node",
@@ -37,7 +38,37 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     }
     let mut ends: Vec<&LooseEnd> = evidence.loose_ends().iter().filter(|e| e.meant.is_none()).collect();
     ends.sort_by_key(|e| (e.touch.element, e.touch.pin));
-    ends.chunk_by(|a, b| a.touch.element == b.touch.element).map(|ends| judge(evidence, ends)).collect()
+    let groups: Vec<&[&LooseEnd]> = ends.chunk_by(|a, b| a.touch.element == b.touch.element).collect();
+    let mut by_scope: BTreeMap<ScopeId, Vec<&[&LooseEnd]>> = BTreeMap::new();
+    for &group in &groups {
+        by_scope.entry(evidence.circuit.element(group[0].touch.element).scope).or_default().push(group);
+    }
+    let told = |groups: &Vec<&[&LooseEnd]>| match groups.as_slice() {
+        [[one]] if super::both_ends_on_one_node::is_other_end(evidence, one) => Vec::new(),
+        [[one], [two]] if may_belong_together(evidence, one, two) => {
+            vec![together(judge(evidence, &[one]), judge(evidence, &[two]))]
+        }
+        groups => groups.iter().map(|ends| judge(evidence, ends)).collect(),
+    };
+    by_scope.values().flat_map(told).collect()
+}
+
+/// The only two loose ends of a circuit or subcircuit are likely two halves of one node, or the two sides of an
+/// element that is missing: one cause. Not where somebody accepts the one and wants to hear of the other.
+fn may_belong_together(evidence: &Evidence<'_>, one: &LooseEnd, two: &LooseEnd) -> bool {
+    let accepts = |note: &Note| matches!(&note.kind, NoteKind::Accept { rule, .. } if rule == RULE.name);
+    !one.unused_pin && !two.unused_pin && !evidence.circuit.notes.iter().any(accepts)
+}
+
+fn together(mut one: Finding, two: Finding) -> Finding {
+    if let [node, name, ..] = two.subjects.as_slice() {
+        one.message.push_str(&format!(", and node `{node}` to {name} and nothing else"));
+    }
+    one.labels.push(Label { span: two.span, message: two.label });
+    one.subjects.extend(two.subjects);
+    one.help
+        .push_str(" Perhaps the two ends are meant to be one node, or an element between them is missing.");
+    one
 }
 
 /// All loose ends of one element are one finding.

@@ -2,7 +2,7 @@
 
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId};
-use crate::finding::{Edit, Finding, Severity, quantity};
+use crate::finding::{Finding, Severity, quantity};
 use crate::topology::{Step, Sum, span_of_values, total};
 
 pub const RULE: Rule = Rule {
@@ -63,7 +63,7 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
         finding = finding.also(evidence.statement(step.element), "drives it");
     }
     finding.subjects.extend(names);
-    Some(turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
+    Some(super::support::turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
 }
 
 /// The greatest voltage along the walk that is not a matter of time: `None` where a controlled source takes
@@ -88,18 +88,4 @@ fn greatest(circuit: &Circuit, steps: &[Step]) -> Option<f64> {
         Sum::Zero if !moving => Some(0.0),
         _ => Some(most),
     }
-}
-
-/// Adds the edit that swaps the diode's two node names.
-fn turn_round(evidence: &Evidence<'_>, id: ElementId, finding: Finding) -> Finding {
-    let [anode, cathode, ..] = evidence.circuit.pins(id) else { return finding };
-    let (one, two) = (evidence.sources.slice(anode.span), evidence.sources.slice(cathode.span));
-    if one.is_empty() || two.is_empty() {
-        return finding;
-    }
-    let edits = vec![
-        Edit { span: anode.span, replacement: two.to_owned() },
-        Edit { span: cathode.span, replacement: one.to_owned() },
-    ];
-    finding.fix(format!("turn {} round", evidence.name(id)), edits)
 }

@@ -1,10 +1,12 @@
 //! A diode that no closed path lets conduct.
 
 use super::{Check, Evidence, Rule, list};
-use crate::circuit::ElementId;
+use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity};
 use crate::topology::Barred;
-use rustc_hash::FxHashSet;
+use petgraph::unionfind::UnionFind;
+use rustc_hash::{FxHashMap, FxHashSet};
+use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "never-conducts",
@@ -46,43 +48,81 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let opposed: FxHashSet<ElementId> =
         super::opposed_in_series::pairs(evidence).into_iter().flat_map(|p| p.diodes).collect();
-    let is_cause =
-        |b: &&Barred| !b.loose_end && !opposed.contains(&b.diode) && !is_shorted(evidence, b.diode);
-    let mut barred: Vec<Barred> = evidence.wiring.one_way.barred.iter().filter(is_cause).copied().collect();
-    // diodes between the same two parts share one cause
-    barred.sort_by_key(|b| (b.components, b.diode));
-    let mut findings: Vec<Finding> =
-        barred.chunk_by(|a, b| a.components == b.components).map(|group| judge(evidence, group)).collect();
-    findings.sort_by_key(|f| f.span);
-    findings
+    let is_told = |cluster: &Vec<Barred>| {
+        cluster.iter().any(|b| b.loose_end || opposed.contains(&b.diode)) || feed_is_cut(evidence)
+    };
+    clusters(evidence)
+        .iter()
+        .filter(|cluster| !is_told(cluster))
+        .map(|cluster| judge(evidence, cluster))
+        .collect()
+}
+
+/// Barred diodes that share a cause: those that meet in a component other than that of ground.
+fn clusters(evidence: &Evidence<'_>) -> Vec<Vec<Barred>> {
+    let facts = &evidence.wiring.one_way;
+    let barred: Vec<Barred> =
+        facts.barred.iter().filter(|b| !is_shorted(evidence, b.diode)).copied().collect();
+    let mut sets = UnionFind::<u32>::new(barred.len());
+    let mut first_at: FxHashMap<u32, u32> = FxHashMap::default();
+    for (n, b) in barred.iter().enumerate() {
+        for component in [b.components.0, b.components.1] {
+            if component != facts.ground {
+                sets.union(*first_at.entry(component).or_insert(n as u32), n as u32);
+            }
+        }
+    }
+    let mut clusters: BTreeMap<u32, Vec<Barred>> = BTreeMap::new();
+    for (n, b) in barred.iter().enumerate() {
+        clusters.entry(sets.find(n as u32)).or_default().push(*b);
+    }
+    let mut clusters: Vec<Vec<Barred>> = clusters.into_values().collect();
+    clusters.sort_by_key(|cluster| cluster.first().map(|b| b.diode));
+    clusters
 }
 
 fn is_shorted(evidence: &Evidence<'_>, id: ElementId) -> bool {
     evidence.circuit.node(id, 0) == evidence.circuit.node(id, 1)
 }
 
-fn judge(evidence: &Evidence<'_>, group: &[Barred]) -> Finding {
-    let first = group[0];
-    let names: Vec<String> = group.iter().map(|b| evidence.name(b.diode)).collect();
+/// A source hangs loose or is shorted, which is told: what it fed has no closed path for that reason.
+fn feed_is_cut(evidence: &Evidence<'_>) -> bool {
+    let is_source = |id: ElementId| {
+        matches!(
+            evidence.circuit.element(id).behaviour,
+            Behaviour::VoltageSource(_) | Behaviour::CurrentSource(_)
+        )
+    };
+    evidence.loose_ends().iter().any(|end| is_source(end.touch.element))
+        || evidence.circuit.elements().any(|(id, _)| is_source(id) && is_shorted(evidence, id))
+}
+
+fn judge(evidence: &Evidence<'_>, cluster: &[Barred]) -> Finding {
+    let first = cluster[0];
+    let names: Vec<String> = cluster.iter().map(|b| evidence.name(b.diode)).collect();
     let (anode, cathode) = (evidence.circuit.node(first.diode, 0), evidence.circuit.node(first.diode, 1));
-    let reason = if first.dead_end {
-        format!(
+    let reason = match cluster {
+        [one] if one.dead_end => format!(
             "it is the only link from `{}` to `{}`, so no current can come back",
             evidence.node(anode),
             evidence.node(cathode)
-        )
-    } else if group.len() == 1 {
-        format!(
+        ),
+        [_] => format!(
             "every way back from `{}` to `{}` meets a diode that points against it",
             evidence.node(cathode),
             evidence.node(anode)
-        )
-    } else {
-        "they all point the same way between two parts of the circuit, and nothing leads back".to_owned()
+        ),
+        _ if cluster.iter().all(|b| b.dead_end) => {
+            "they lead to a dead end from which no current comes back".into()
+        }
+        _ => {
+            "no closed path leads through them, since what they feed has no way back to where they come from"
+                .into()
+        }
     };
     let message = format!("{} can never conduct: {reason}", list(&names));
     let mut finding = evidence.about(&RULE, first.diode, message).label("no closed path passes this way");
-    for other in group.iter().skip(1).take(8) {
+    for other in cluster.iter().skip(1).take(8) {
         finding = finding.also(evidence.statement(other.diode), "nor this way");
     }
     finding.subjects.extend(names.into_iter().skip(1));

@@ -4,6 +4,7 @@ use super::{Check, Evidence, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::can_break_down;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "opposed-in-series",
@@ -43,7 +44,49 @@ pub struct Opposed {
 }
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
-    pairs(evidence).iter().map(|pair| judge(evidence, pair)).collect()
+    let pairs = pairs(evidence);
+    let mut by_diode: FxHashMap<ElementId, Vec<usize>> = FxHashMap::default();
+    for (n, pair) in pairs.iter().enumerate() {
+        for id in pair.diodes {
+            by_diode.entry(id).or_default().push(n);
+        }
+    }
+    // a diode that both its neighbours point against is the one that is turned, and is told once
+    let mut told: FxHashSet<usize> = FxHashSet::default();
+    let mut findings = Vec::new();
+    for (n, pair) in pairs.iter().enumerate() {
+        if told.contains(&n) {
+            continue;
+        }
+        let between = pair.diodes.iter().find(|id| by_diode.get(id).is_some_and(|of| of.len() > 1));
+        if let Some(id) = between {
+            told.extend(by_diode.get(id).into_iter().flatten());
+        }
+        let turned = between.copied().or_else(|| odd_one(evidence, pair));
+        findings.push(judge(evidence, pair, turned));
+    }
+    findings
+}
+
+/// Of a pair, the diode that stands alone against a string: the other has a neighbour that points its way.
+fn odd_one(evidence: &Evidence<'_>, pair: &Opposed) -> Option<ElementId> {
+    let follows = |id: ElementId| {
+        let inner = usize::from(pair.cathodes);
+        let far = evidence.circuit.node(id, 1 - inner);
+        let mut touches =
+            evidence.wiring.touching.carrying(evidence.circuit, far).filter(|t| t.element != id);
+        let next = touches.next();
+        touches.next().is_none()
+            && next.is_some_and(|t| {
+                evidence.circuit.element(t.element).letter == b'D' && t.pin as usize == inner
+            })
+    };
+    let [one, two] = pair.diodes;
+    match (follows(one), follows(two)) {
+        (true, false) => Some(two),
+        (false, true) => Some(one),
+        _ => None,
+    }
 }
 
 /// All pairs, in the order of their nodes.
@@ -70,18 +113,25 @@ fn pair_at(evidence: &Evidence<'_>, node: NodeId) -> Option<Opposed> {
     opposed.then_some(Opposed { diodes: [one.element, two.element], node, cathodes: one.pin == 1 })
 }
 
-fn judge(evidence: &Evidence<'_>, pair: &Opposed) -> Finding {
+fn judge(evidence: &Evidence<'_>, pair: &Opposed, turned: Option<ElementId>) -> Finding {
+    let main = turned.unwrap_or(pair.diodes[1]);
+    let other = if pair.diodes[0] == main { pair.diodes[1] } else { pair.diodes[0] };
     let [one, two] = pair.diodes.map(|id| evidence.name(id));
     let node = evidence.node(pair.node);
     let ends = if pair.cathodes { "cathode to cathode" } else { "anode to anode" };
     let message = format!(
         "{one} and {two} meet {ends} at node `{node}` and nothing else is joined there, so neither can conduct"
     );
-    let pin = |id| evidence.circuit.pins(id).iter().find(|p| p.node == pair.node).map(|p| p.span);
-    let mut finding = evidence.about(&RULE, pair.diodes[1], message).about(one.clone()).about(node);
-    finding.label = format!("points against {one}");
-    if let Some(span) = pin(pair.diodes[0]) {
+    let against = evidence.name(other);
+    let pin = evidence.circuit.pins(other).iter().find(|p| p.node == pair.node).map(|p| p.span);
+    let mut finding = evidence.about(&RULE, main, message).about(against.clone()).about(node);
+    finding.label = format!("points against {against}");
+    if let Some(span) = pin {
         finding = finding.also(span, format!("{one} and {two} meet here"));
     }
-    finding.help(format!("{} {}", RULE.why, RULE.remedy))
+    finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
+    match turned {
+        Some(id) => super::support::turn_round(evidence, id, finding),
+        None => finding,
+    }
 }

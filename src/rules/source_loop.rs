@@ -68,12 +68,21 @@ fn parts(evidence: &Evidence<'_>, walk: &Loop) -> Parts {
     parts
 }
 
+/// The same name twice in one loop: a line that stands twice, which has a finding of its own.
+fn is_twice(evidence: &Evidence<'_>, walk: &Loop) -> bool {
+    let first = evidence.name(walk.steps[0].element);
+    walk.steps.iter().skip(1).any(|step| evidence.name(step.element).eq_ignore_ascii_case(&first))
+}
+
 fn is_ammeter(source: &Source) -> bool {
     source.shape.is_none() && source.dc.is_none_or(|v| v.number == 0.0)
 }
 
 fn judge(evidence: &Evidence<'_>, walk: &Loop) -> Option<Finding> {
     let parts = parts(evidence, walk);
+    if is_twice(evidence, walk) {
+        return None;
+    }
     let names: Vec<String> = walk.steps.iter().map(|s| evidence.name(s.element)).collect();
     let all = list(&names);
     let (severity, message) = match walk.sum {

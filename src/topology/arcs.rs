@@ -18,6 +18,8 @@ pub struct OneWay {
     pub two_way: Groups,
     /// Diodes that no closed path lets conduct, in order.
     pub barred: Vec<Barred>,
+    /// Component of ground.
+    pub ground: u32,
 }
 
 /// A diode that no closed path lets conduct.
@@ -25,7 +27,7 @@ pub struct OneWay {
 pub struct Barred {
     /// The diode.
     pub diode: ElementId,
-    /// Component of its anode and of its cathode: diodes with the same pair share one cause.
+    /// Component of its anode and of its cathode: joined by directed cuts.
     pub components: (u32, u32),
     /// It is the only link to a dead end (a bridge): no current of either direction could close its path.
     pub dead_end: bool,
@@ -71,7 +73,7 @@ impl OneWay {
                 })
             })
             .collect();
-        OneWay { two_way, barred }
+        OneWay { ground: component[two_way.of(NodeId::GROUND)], two_way, barred }
     }
 }
 
@@ -80,7 +82,7 @@ fn loose_ends(circuit: &Circuit, touching: &Touching, groups: &Groups) -> Vec<u3
     let mut loose = vec![0; groups.count()];
     for n in 1..circuit.nodes.len() {
         let node = NodeId::new(n);
-        if touching.only(node).is_some() {
+        if touching.only_joining(circuit, node).is_some() {
             loose[groups.of(node)] += 1;
         }
     }

@@ -54,6 +54,15 @@ impl Touching {
         rest.iter().all(|t| t.element == first.element).then_some(*first)
     }
 
+    /// The only element that joins a node to anything: as [`Self::only`], elements with both ends on the node
+    /// left out.
+    pub fn only_joining(&self, circuit: &Circuit, node: NodeId) -> Option<Touch> {
+        let joins = |t: &&Touch| circuit.pins(t.element).iter().any(|p| p.node != node);
+        let mut touches = self.at(node).iter().filter(joins);
+        let first = touches.next()?;
+        touches.all(|t| t.element == first.element).then_some(*first)
+    }
+
     /// The pins at a node that pass a current (sensing inputs left out).
     pub fn carrying<'a>(&'a self, circuit: &'a Circuit, node: NodeId) -> impl Iterator<Item = Touch> + 'a {
         self.at(node).iter().copied().filter(move |t| !links::is_sensing(circuit, t.element, t.pin as usize))

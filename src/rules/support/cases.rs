@@ -5,7 +5,7 @@ use crate::circuit::{Behaviour, ElementId, ScopeId};
 use crate::finding::Finding;
 use crate::operating::{Case, Contradiction, Operating, Verdict};
 use crate::text::{FileId, Span};
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 /// One cause and the conditions in which it shows.
 pub struct Cause<'a> {
@@ -68,6 +68,11 @@ pub fn in_cases(operating: &Operating, numbers: &[usize]) -> String {
 /// Whether a finding of the wiring tells the same cause already: it names every one of these elements.
 pub fn is_told(evidence: &Evidence<'_>, elements: &[ElementId]) -> bool {
     let names: Vec<String> = elements.iter().map(|&id| evidence.name(id)).collect();
+    // a line that stands twice is told as such
+    let distinct: FxHashSet<String> = names.iter().map(|name| name.to_lowercase()).collect();
+    if distinct.len() < names.len() {
+        return true;
+    }
     let tells = |f: &Finding| names.iter().all(|name| f.subjects.contains(name));
     !names.is_empty() && evidence.told().iter().any(tells)
 }

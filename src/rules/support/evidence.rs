@@ -1,11 +1,13 @@
 //! What rules look at, and the words and places they share.
 
+use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
 use super::rule::Rule;
 use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
 use crate::finding::{Finding, TrailStep};
 use crate::text::{Sources, Span};
 use crate::topology::Wiring;
+use rustc_hash::FxHashMap;
 use std::cell::OnceCell;
 
 /// What rules judge.
@@ -17,13 +19,23 @@ pub struct Evidence<'a> {
     /// Its wiring.
     pub wiring: &'a Wiring,
     loose: OnceCell<Vec<LooseEnd>>,
+    loose_by_scope: OnceCell<FxHashMap<ScopeId, Vec<LooseEnd>>>,
+    shorted: OnceCell<FxHashMap<ScopeId, usize>>,
     told: Vec<Finding>,
 }
 
 impl<'a> Evidence<'a> {
     /// Of one circuit.
     pub fn new(sources: &'a Sources, circuit: &'a Circuit, wiring: &'a Wiring) -> Self {
-        Evidence { sources, circuit, wiring, loose: OnceCell::new(), told: Vec::new() }
+        Evidence {
+            sources,
+            circuit,
+            wiring,
+            loose: OnceCell::new(),
+            loose_by_scope: OnceCell::new(),
+            shorted: OnceCell::new(),
+            told: Vec::new(),
+        }
     }
 
     /// Nodes with one connection that are very likely meant to have more; found once.
@@ -37,7 +49,34 @@ impl<'a> Evidence<'a> {
     }
 
     pub(super) fn with_told(&self, told: Vec<Finding>) -> Evidence<'a> {
-        Evidence { told, loose: self.loose.clone(), ..*self }
+        Evidence { told, ..Evidence::new(self.sources, self.circuit, self.wiring) }
+    }
+
+    /// The loose ends of the elements of one instance, in order.
+    pub(in crate::rules) fn loose_ends_in(&self, scope: ScopeId) -> &[LooseEnd] {
+        let by_scope = self.loose_by_scope.get_or_init(|| {
+            let mut by_scope: FxHashMap<ScopeId, Vec<LooseEnd>> = FxHashMap::default();
+            for end in self.loose_ends() {
+                let scope = self.circuit.element(end.touch.element).scope;
+                by_scope.entry(scope).or_default().push(*end);
+            }
+            by_scope
+        });
+        by_scope.get(&scope).map_or(&[], Vec::as_slice)
+    }
+
+    /// How many elements of one instance have both ends on one node.
+    pub(in crate::rules) fn shorted_in(&self, scope: ScopeId) -> usize {
+        let counts = self.shorted.get_or_init(|| {
+            let mut counts = FxHashMap::default();
+            for (id, element) in self.circuit.elements() {
+                if both_ends_on_one_node::is_shorted(self, id) {
+                    *counts.entry(element.scope).or_insert(0) += 1;
+                }
+            }
+            counts
+        });
+        counts.get(&scope).copied().unwrap_or(0)
     }
 
     /// Nothing in the circuit touches ground.

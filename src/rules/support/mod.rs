@@ -7,6 +7,7 @@ mod instances;
 mod loose;
 mod rule;
 mod run;
+mod turn;
 mod words;
 
 pub use accept::{about_note, accept};
@@ -15,4 +16,5 @@ pub use evidence::Evidence;
 pub use loose::LooseEnd;
 pub use rule::{Check, Rule, Skipped};
 pub use run::run;
+pub use turn::turn_round;
 pub use words::{count, list};
