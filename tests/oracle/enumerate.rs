@@ -10,7 +10,7 @@ use std::collections::HashSet;
 
 /// The solution set of a circuit.
 pub fn solve(circuit: &Circuit) -> Answer {
-    let laws = laws(circuit);
+    let laws = laws(circuit, &[]);
     let mut answer =
         Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
     if laws.impossible {
@@ -32,25 +32,18 @@ pub fn solve(circuit: &Circuit) -> Answer {
 /// said to (its voltage is then at its level in all of them), so that it proves an answer for networks too large to
 /// enumerate.
 pub fn with_states(circuit: &Circuit, states: &[Assumed]) -> Answer {
-    let laws = laws(circuit);
+    let laws = laws(circuit, states);
     let mut answer =
         Answer { nodes: circuit.nodes.len(), elements: circuit.elements.len(), ..Answer::default() };
-    let mut search =
-        Search { laws: &laws, idle: Vec::new(), leave_out: false, seen: HashSet::new(), answer: &mut answer };
-    let mut junctions = laws.junctions.clone();
-    let mut steps = Vec::new();
-    for (at, state) in states.iter().enumerate() {
-        match junctions[at].equation(*state).as_ref().map(equate) {
-            Some(Equation::Holds) => {}
-            Some(Equation::Fixes(step)) => {
-                junctions.iter_mut().for_each(|junction| junction.substitute(&step));
-                steps.push(step);
-            }
-            Some(Equation::Fails) | None => return answer,
-        }
-    }
-    if !laws.impossible && !refuted(&junctions, states) {
-        search.leaf(&junctions, states, &steps);
+    if !laws.impossible && !refuted(&laws.junctions, states) {
+        let mut search = Search {
+            laws: &laws,
+            idle: Vec::new(),
+            leave_out: false,
+            seen: HashSet::new(),
+            answer: &mut answer,
+        };
+        search.leaf(&laws.junctions, states, &[]);
     }
     answer
 }
@@ -195,7 +188,7 @@ fn idle(circuit: &Circuit) -> Vec<(usize, usize, usize)> {
 
 impl Junction {
     /// What is zero in a state; nothing where the diode has no such state.
-    fn equation(&self, state: Assumed) -> Option<Form> {
+    pub fn equation(&self, state: Assumed) -> Option<Form> {
         match state {
             Assumed::Conducting => Some(self.inner.plus(&-&self.forward)),
             Assumed::Blocking => Some(self.current.clone()),

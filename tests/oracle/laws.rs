@@ -1,6 +1,7 @@
 //! Kirchhoff's laws and the laws of all elements but the diodes' states, as affine forms of what they leave free.
 
 use super::affine::{Equation, Form, Step, equate};
+use super::enumerate::Assumed;
 use super::{Rat, exact};
 use crate::circuits::{Circuit, Kind};
 
@@ -35,8 +36,8 @@ pub struct Junction {
     pub ideal: bool,
 }
 
-/// All that the laws say.
-pub fn laws(circuit: &Circuit) -> Laws {
+/// All that the laws say, the diodes left free, or each held by what `states` says is zero.
+pub fn laws(circuit: &Circuit, states: &[Assumed]) -> Laws {
     let unknowns = Unknowns::of(circuit);
     let mut laws = Laws {
         quantities: unknowns.quantities(circuit),
@@ -47,6 +48,13 @@ pub fn laws(circuit: &Circuit) -> Laws {
     laws.junctions = unknowns.junctions(circuit);
     let mut equations = unknowns.current_laws(circuit);
     equations.extend(unknowns.source_laws(circuit));
+    // taken from the end: what fixes most with the least arithmetic comes first
+    for (junction, state) in laws.junctions.iter().zip(states) {
+        match junction.equation(*state) {
+            Some(equation) => equations.push(equation),
+            None => laws.impossible = true,
+        }
+    }
     while let Some(equation) = equations.pop() {
         match equate(&equation) {
             Equation::Holds => {}
