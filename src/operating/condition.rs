@@ -231,6 +231,11 @@ impl Plan {
     }
 }
 
+/// A number as a name shows it: the digits that arithmetic leaves behind are cut off.
+fn shown(value: f64) -> f64 {
+    format!("{value:.11e}").parse().unwrap_or(value)
+}
+
 /// One thing that a condition changes against nominal.
 #[derive(Clone, Copy)]
 enum Change<'a> {
@@ -241,7 +246,7 @@ enum Change<'a> {
 impl Change<'_> {
     fn name(&self, circuit: &Circuit) -> String {
         match self {
-            Change::End(range, value) => format!("{}={value}", range.name),
+            Change::End(range, value) => format!("{}={}", range.name, shown(*value)),
             Change::Hold(id, on) => {
                 format!("{}={}", circuit.element_name(*id), if *on { "on" } else { "off" })
             }

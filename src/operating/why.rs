@@ -7,7 +7,7 @@ use super::evaluate::Solved;
 use super::excerpt::Excerpt;
 use super::flip::{Way, follow};
 use super::result::{Case, DiodeResult, Flip, Reasoning};
-use crate::circuit::{ElementId, State};
+use crate::circuit::{Circuit, ElementId, State};
 use crate::complementarity::{Interval, Law, Network, Quantity, View};
 use crate::finding::{interval, quantity};
 
@@ -78,7 +78,7 @@ impl Reasoner {
         if count > 1 {
             sentences.push(format!("This is set {} of {count} that are consistent.", set + 1));
         }
-        sentences.extend(Speaker { setting, case, diode }.sentences());
+        sentences.extend(self::sentences(setting.circuit, case, diode));
         let is_single = count == 1 && diode.state != State::NotEvaluated;
         let search = if is_single { flips(setting, solved, diode.element) } else { Search::default() };
         self.lines.push(Line {
@@ -158,6 +158,11 @@ fn least(cases: &[String], values: &[f64]) -> Option<String> {
     Some(format!("{} ({case})", quantity(*value, "V")))
 }
 
+/// The method's reasoning about one diode in one condition.
+pub(crate) fn sentences(circuit: &Circuit, case: &Case, diode: &DiodeResult) -> Vec<String> {
+    Speaker { circuit, case, diode }.sentences()
+}
+
 /// A clause as a sentence.
 fn sentence(clause: &str) -> String {
     let mut letters = clause.chars();
@@ -179,14 +184,14 @@ fn apart(a: f64, b: f64, unit: &str) -> (String, String) {
 }
 
 struct Speaker<'a> {
-    setting: &'a Setting<'a>,
+    circuit: &'a Circuit,
     case: &'a Case,
     diode: &'a DiodeResult,
 }
 
 impl Speaker<'_> {
     fn name(&self) -> String {
-        self.setting.circuit.element_name(self.diode.element)
+        self.circuit.element_name(self.diode.element)
     }
 
     fn sentences(&self) -> Vec<String> {
@@ -288,7 +293,7 @@ impl Speaker<'_> {
                 self.diode.breakdown.is_some_and(|bv| view.open_circuit + bv < drop - view.open_circuit);
             let what = if is_reverse { "it would break down" } else { "it would conduct" };
             let direction = if is_reverse { "less" } else { "more" };
-            all.push(format!("Margin: with {} {direction} across it {what}.", quantity(margin, "V")));
+            all.push(format!("Margin: {} {direction} across it and {what}.", quantity(margin, "V")));
         }
         all
     }

@@ -128,3 +128,9 @@ fn many_moving_sources_do_not_make_endless_conditions() {
     assert_eq!(laid.plan.conditions.len(), 1 + 2 * 32);
     assert_eq!(laid.rules(), ["corners-left-out"]);
 }
+
+#[test]
+fn names_show_no_digits_that_arithmetic_left_behind() {
+    let laid = Laid::out("V1 a 0 3.3\nR1 a 0 1k\n*@ range V1 3.3 10%", &Options::default());
+    assert_eq!(laid.names(), ["nominal", "V1=2.97", "V1=3.63"]);
+}

@@ -6,6 +6,7 @@ mod evaluated;
 mod flips;
 mod proof;
 mod switches;
+mod words;
 
 use super::assemble::Slots;
 use super::condition::{Plan, plan};
