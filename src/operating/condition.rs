@@ -175,8 +175,7 @@ fn moves(shape: &crate::circuit::Shape) -> bool {
 impl Plan {
     /// Each end alone, each held thing on and off, then all corners, and all corners with each thing on.
     fn add_ranges(&mut self, circuit: &Circuit, declared: &Declared) {
-        let ends: Vec<[Change<'_>; 2]> =
-            declared.ranges.iter().map(|r| [Change::End(r, r.from), Change::End(r, r.to)]).collect();
+        let ends: Vec<Vec<Change<'_>>> = declared.ranges.iter().map(ends).collect();
         let both = &declared.both[..declared.both.len().min(MOST_ALONE)];
         let on: Vec<Change<'_>> = both.iter().map(|&id| Change::Hold(id, true)).collect();
         for change in ends.iter().flatten() {
@@ -280,9 +279,18 @@ fn put<T>(list: &mut Vec<(ElementId, T)>, id: ElementId, value: T) {
     }
 }
 
+/// Both ends of a range; one where they are one.
+fn ends(range: &Range) -> Vec<Change<'_>> {
+    let mut ends = vec![Change::End(range, range.from)];
+    if range.to != range.from {
+        ends.push(Change::End(range, range.to));
+    }
+    ends
+}
+
 /// All combinations, the last declared changing fastest; one empty combination where nothing is declared, none
 /// where there would be too many.
-fn corners<'a>(ends: &[[Change<'a>; 2]]) -> Vec<Vec<Change<'a>>> {
+fn corners<'a>(ends: &[Vec<Change<'a>>]) -> Vec<Vec<Change<'a>>> {
     if ends.len() >= usize::BITS as usize || 1 << ends.len() > MOST_CORNERS {
         return Vec::new();
     }

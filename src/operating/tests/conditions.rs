@@ -134,3 +134,9 @@ fn names_show_no_digits_that_arithmetic_left_behind() {
     let laid = Laid::out("V1 a 0 3.3\nR1 a 0 1k\n*@ range V1 3.3 10%", &Options::default());
     assert_eq!(laid.names(), ["nominal", "V1=2.97", "V1=3.63"]);
 }
+
+#[test]
+fn a_range_of_one_value_is_one_condition() {
+    let laid = Laid::out("V1 a 0 3\nR1 a 0 1k\n.dc V1 5 5 1\n*@ range temp 0 50", &Options::default());
+    assert_eq!(laid.names(), ["nominal", "V1=5", "temp=0", "temp=50", "V1=5,temp=0", "V1=5,temp=50"]);
+}

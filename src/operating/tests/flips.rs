@@ -2,6 +2,8 @@
 
 use super::told;
 use crate::circuit::State;
+use crate::complementarity::{Branch, Junction, Law, Level, Network, Place};
+use crate::operating::flip::{Way, follow};
 
 /// Flips of a diode in nominal: source, value, state beyond.
 fn flips(lines: &str, diode: &str) -> Vec<(String, f64, State)> {
@@ -60,4 +62,79 @@ fn none_within_ten_times_is_an_answer() {
         "{}",
         why.reasonings[0].flip_sentence
     );
+}
+
+/// Seeded numbers (SplitMix64: Steele, Lea & Flood 2014).
+struct Seed(u64);
+
+impl Seed {
+    fn below(&mut self, limit: u64) -> u64 {
+        self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
+        let mut z = self.0;
+        z = (z ^ (z >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
+        z = (z ^ (z >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
+        (z ^ (z >> 31)) % limit
+    }
+}
+
+/// Two sources, a mesh of resistors (so that all is determined), and a few diodes; the first diode is branch 2.
+fn random_network(seed: &mut Seed) -> Network {
+    let nodes = 5;
+    let exact = |value| Level { value, exact: true };
+    let mut branches = vec![
+        Branch { from: 1, to: 0, law: Law::Voltage(exact(1.0 + seed.below(10) as f64)) },
+        Branch { from: 2, to: 0, law: Law::Voltage(exact(1.0 + seed.below(10) as f64)) },
+    ];
+    for _ in 0..4 {
+        let (from, to) = (seed.below(nodes) as u32, seed.below(nodes) as u32);
+        let reverse = (seed.below(2) == 0).then(|| exact(2.0 + seed.below(6) as f64));
+        let junction = Junction { forward: exact(0.7), reverse, series: 10.0 + seed.below(90) as f64 };
+        let to = if from == to { (to + 1) % nodes as u32 } else { to };
+        branches.push(Branch { from, to, law: Law::Junction(junction) });
+    }
+    for node in 1..nodes as u32 {
+        for other in 0..node {
+            let ohms = 100.0 * (1.0 + seed.below(50) as f64);
+            branches.push(Branch { from: node, to: other, law: Law::Resistance(ohms) });
+        }
+    }
+    Network { nodes: nodes as u32, branches }
+}
+
+fn place(network: &Network, source: usize, volts: f64) -> Place {
+    let mut network = network.clone();
+    network.branches[source].law = Law::Voltage(Level { value: volts, exact: false });
+    network.solve().solutions[0].places[2]
+}
+
+#[test]
+fn what_is_found_agrees_with_solving_at_many_values() {
+    let mut seed = Seed(7);
+    let mut changes = 0;
+    for trial in 0..30 {
+        let network = random_network(&mut seed);
+        let Law::Voltage(Level { value: from, .. }) = network.branches[0].law else { continue };
+        let start = place(&network, 0, from);
+        for limit in [10.0 * from, -10.0 * from] {
+            let mut budget = 10_000;
+            let way = follow(&network, 2, 0, from, limit, &mut budget);
+            let end = match way {
+                Way::Never => limit,
+                Way::Changes { at, place: beyond } => {
+                    changes += 1;
+                    let aside = 1e-6 * (limit - from);
+                    assert_eq!(place(&network, 0, at - aside), start, "trial {trial}: before {at}");
+                    assert_eq!(place(&network, 0, at + aside), beyond, "trial {trial}: beyond {at}");
+                    at
+                }
+                Way::Lost => f64::NAN,
+            };
+            assert!(end.is_finite(), "trial {trial}: lost");
+            for step in 0..50 {
+                let volts = from + (end - from) * f64::from(step) / 50.0;
+                assert_eq!(place(&network, 0, volts), start, "trial {trial}: at {volts}, {way:?}");
+            }
+        }
+    }
+    assert!(changes > 20, "{changes} changes are too few to mean anything");
 }
