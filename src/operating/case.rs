@@ -116,6 +116,7 @@ fn reason(setting: &Setting<'_>, assembly: &Assembly, part: &complementarity::Pa
     let texts: Vec<String> = causes(setting, assembly, part).into_iter().map(|c| c.text).collect();
     Some(match texts.is_empty() {
         false => texts.join("; "),
+        true if part.verdict == Verdict::None => "it hangs on nodes that contradictory sources hold".into(),
         true => format!("its part has the verdict {}", part.verdict.word()),
     })
 }

@@ -7,9 +7,11 @@ use crate::complementarity::{Place, View};
 /// margin (open, not evaluated).
 pub(crate) fn margin(view: View, place: Place, forward: f64, reverse: Option<f64>) -> Option<f64> {
     let seen = view.open_circuit;
+    // behind a negative resistance a diode carries on the other side of its level
+    let side = if view.resistance < 0.0 { -1.0 } else { 1.0 };
     let margin = match place {
-        Place::Conducting => seen - forward,
-        Place::Breakdown => -reverse? - seen,
+        Place::Conducting => side * (seen - forward),
+        Place::Breakdown => side * (-reverse? - seen),
         Place::Blocking => (forward - seen).min(reverse.map_or(f64::INFINITY, |bv| seen + bv)),
         Place::Open | Place::Unknown => return None,
     };
@@ -36,6 +38,8 @@ mod tests {
         close(margin(see(-9.0), Place::Breakdown, 0.7, Some(5.1)), 3.9);
         assert_eq!(margin(see(0.7), Place::Blocking, 0.7, None), Some(0.0));
         assert_eq!(margin(see(0.1 + 0.2), Place::Blocking, 0.3, None), Some(0.0));
+        let negative = View { open_circuit: -1.0, resistance: -1e3 };
+        close(margin(negative, Place::Conducting, 0.7, None), 1.7);
         assert_eq!(margin(see(1.0), Place::Unknown, 0.7, None), None);
     }
 }

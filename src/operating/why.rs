@@ -210,6 +210,9 @@ impl Speaker<'_> {
         );
         let mut all = vec![origin];
         all.extend(match (self.diode.state, self.diode.view) {
+            (State::Conducting | State::Breakdown | State::Blocking, Some(view)) if view.resistance < 0.0 => {
+                self.behind_negative_resistance(view)
+            }
             (State::Conducting, Some(view)) => self.carries(view, true),
             (State::Breakdown, Some(view)) => self.carries(view, false),
             (State::Blocking, Some(view)) => self.blocks(view),
@@ -236,6 +239,30 @@ impl Speaker<'_> {
             quantity(current, "A")
         );
         (sum, current)
+    }
+
+    /// Behind a negative resistance each assumption may hold by itself.
+    fn behind_negative_resistance(&self, view: View) -> Vec<String> {
+        let seen = quantity(view.open_circuit, "V");
+        let mut all = vec![format!(
+            "With every other diode in its state the rest of the circuit acts as {seen} behind a negative resistance of {}: what it puts across {} rises as more is drawn.",
+            quantity(view.resistance, "Ω"),
+            self.name()
+        )];
+        match self.diode.state {
+            State::Blocking => all.push(format!(
+                "Assume it blocks: {seen} stands across it, within its limits, so this holds."
+            )),
+            state => {
+                let (sum, _) = self.current(view, state == State::Conducting);
+                all.push(format!(
+                    "Assume it is {}: {sum} flows from anode to cathode, which agrees, so this holds.",
+                    state.word()
+                ));
+            }
+        }
+        all.push("Other assumptions may hold by themselves too; all diodes together decide.".to_owned());
+        all
     }
 
     fn carries(&self, view: View, forward: bool) -> Vec<String> {

@@ -12,7 +12,11 @@ const MOST_NAMES: usize = 8;
 /// The causes of a part's verdict; none where it is unique.
 pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) -> Vec<Contradiction> {
     let words = Words { setting, assembly };
-    part.reasons.iter().map(|reason| words.cause(share(part.verdict, reason), reason)).collect()
+    if part.reasons.is_empty() && part.verdict == Verdict::Several {
+        let text = "more than one set of states is consistent".to_owned();
+        return vec![words.contradiction(part.verdict, &words.driving(part), text)];
+    }
+    part.reasons.iter().map(|reason| words.cause(part, reason)).collect()
 }
 
 /// What one reason contributes to the verdict: where both are open, a loop leaves a split open and a cut set a
@@ -45,7 +49,8 @@ struct Words<'a> {
 }
 
 impl Words<'_> {
-    fn cause(&self, verdict: Verdict, reason: &Reason) -> Contradiction {
+    fn cause(&self, part: &Part, reason: &Reason) -> Contradiction {
+        let verdict = share(part.verdict, reason);
         match reason {
             Reason::Loop { branches, gap } => {
                 self.contradiction(verdict, branches, self.closed(branches, *gap))
@@ -54,9 +59,22 @@ impl Words<'_> {
                 self.contradiction(verdict, branches, self.cut(branches, nodes, *excess))
             }
             Reason::Unknown { branches } => self.contradiction(verdict, branches, self.unknown(branches)),
-            Reason::Residual { relative } => self.contradiction(verdict, &[], missed(*relative)),
-            Reason::Dependent { text } => self.contradiction(verdict, &[], text.clone()),
+            Reason::Residual { relative } => {
+                let some: Vec<u32> = part.branches.iter().take(MOST_NAMES).copied().collect();
+                self.contradiction(verdict, &some, missed(*relative))
+            }
+            Reason::Dependent { text } => self.contradiction(verdict, &self.driving(part), text.clone()),
         }
+    }
+
+    /// What makes a part other than passive: controlled sources and negative resistances.
+    fn driving(&self, part: &Part) -> Vec<u32> {
+        let drives = |law: &Law| match law {
+            Law::VoltageControlled(..) | Law::CurrentControlled(..) => true,
+            Law::Resistance(ohms) => *ohms < 0.0,
+            _ => false,
+        };
+        part.branches.iter().copied().filter(|&b| self.is(b, drives)).take(2 * MOST_NAMES).collect()
     }
 
     fn contradiction(&self, verdict: Verdict, branches: &[u32], text: String) -> Contradiction {
