@@ -77,8 +77,9 @@ impl Reader<'_> {
         let line = Line { text: &text, base: span.start, span, fields };
         let word = line.word_str(0).trim_start_matches('.').to_ascii_lowercase();
         if broken.is_some() && !KNOWN.contains(&word.as_str()) {
+            let head = line.head();
             self.fields = line.fields;
-            return self.foreign(span, &word, next, closers);
+            return self.foreign(head, &word, next, closers);
         }
         if let Some(broken) = broken {
             self.tell_broken(&line, broken);
@@ -118,13 +119,13 @@ impl Reader<'_> {
             "global" => self.parsed.globals.extend(spans(line, 1)),
             "ic" => self.ic_line(line),
             "nodeset" | "endl" => {}
-            _ => return self.foreign(line.span, word, next, closers),
+            _ => return self.foreign(line.head(), word, next, closers),
         }
         Next::Line
     }
 
     /// A dot line that means nothing here: passed over with its block, or told.
-    fn foreign(&mut self, span: Span, word: &str, next: usize, closers: &Closers) -> Next {
+    fn foreign(&mut self, place: Span, word: &str, next: usize, closers: &Closers) -> Next {
         if let Some(close) = closing(word, next, closers) {
             // what a condition keeps or drops is not known, so nothing may be concluded from what is missing
             self.parsed.incomplete |= word == "if";
@@ -134,8 +135,6 @@ impl Reader<'_> {
         if PASSED_OVER.contains(&word) || closes_nothing_new && nearest(word, KNOWN).is_none() {
             return Next::Line;
         }
-        let end = span.start as usize + 1 + word.len();
-        let place = Span::new(span.file, span.start as usize, end.min(span.end as usize));
         let mut finding = Finding::new(
             "unknown-dot-line",
             Severity::Note,

@@ -89,7 +89,11 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
     };
     expander.circuit.includes.clone_from(&parsed.includes);
     expander.root();
-    let Expander { circuit, told, .. } = expander;
+    let Expander { mut circuit, told, .. } = expander;
+    circuit.names.seal();
+    circuit.elements.shrink_to_fit();
+    circuit.pins.shrink_to_fit();
+    circuit.nodes.shrink_to_fit();
     let counts = told.counts();
     let mut findings = told.finish();
     super::told::tell_rest(&mut findings, &counts);
@@ -172,7 +176,7 @@ impl<'a> Expander<'a> {
     }
 
     fn statement(&mut self, statement: Statement, fields: Fields) -> Fields {
-        if statement.is_note {
+        if statement.is_note(self.sources) {
             self.parts += 1;
             self.note(statement.span);
             return fields;

@@ -1,8 +1,7 @@
 //! Typed numbers of the circuit's parts, and the interner of names.
 
 use hashbrown::HashTable;
-use rustc_hash::FxHasher;
-use std::hash::Hasher;
+use rustc_hash::FxHashMap;
 
 macro_rules! id {
     ($(#[$doc:meta])* $name:ident) => {
@@ -59,8 +58,9 @@ impl ScopeId {
 pub struct Names {
     bytes: String,
     ends: Vec<u32>,
-    folded: Vec<u32>,
-    table: HashTable<u32>,
+    /// Spellings that are not the first of their name, with the first.
+    variants: FxHashMap<u32, u32>,
+    table: HashTable<Spelling>,
 }
 
 impl PartialEq for Names {
@@ -69,42 +69,72 @@ impl PartialEq for Names {
     }
 }
 
+/// A spelling in the table: its number and its bytes, so that comparing needs no second look-up.
+#[derive(Debug, Clone, Copy)]
+struct Spelling {
+    id: u32,
+    start: u32,
+    length: u32,
+}
+
+impl Spelling {
+    fn text(self, bytes: &[u8]) -> &[u8] {
+        let start = self.start as usize;
+        bytes.get(start..start + self.length as usize).unwrap_or_default()
+    }
+}
+
 impl Names {
     /// Makes room for so many spellings.
     pub fn reserve(&mut self, count: usize) {
-        let Names { bytes, ends, folded, table } = self;
+        let Names { bytes, ends, table, .. } = self;
         bytes.reserve(count.saturating_mul(6));
         ends.reserve(count);
-        folded.reserve(count);
-        table.reserve(count, |&id| hash(slice(bytes, ends, id)));
+        table.reserve(count, |s| hash(s.text(bytes.as_bytes())));
     }
 
     /// The number of a spelling, new or known.
     pub fn intern(&mut self, text: &str) -> Symbol {
-        let hash = hash(text);
-        let Names { bytes, ends, folded, table } = self;
-        if let Some(&known) = table.find(hash, |&id| slice(bytes, ends, id) == text) {
-            return Symbol(known);
+        let hash = hash(text.as_bytes());
+        let Names { bytes, ends, variants, table } = self;
+        if let Some(known) = table.find(hash, |s| s.text(bytes.as_bytes()) == text.as_bytes()) {
+            return Symbol(known.id);
         }
-        let first = table.find(hash, |&id| slice(bytes, ends, id).eq_ignore_ascii_case(text)).copied();
+        let same = |s: &Spelling| s.text(bytes.as_bytes()).eq_ignore_ascii_case(text.as_bytes());
+        let first = table.find(hash, same).map(|s| s.id);
         let id = Symbol::new(ends.len()).0;
+        let start = u32::try_from(bytes.len()).unwrap_or(u32::MAX);
         bytes.push_str(text);
         ends.push(u32::try_from(bytes.len()).unwrap_or(u32::MAX));
-        folded.push(first.map_or(id, |first| folded.get(first as usize).copied().unwrap_or(first)));
-        table.insert_unique(hash, id, |&id| self::hash(slice(bytes, ends, id)));
+        if let Some(first) = first {
+            variants.insert(id, variants.get(&first).copied().unwrap_or(first));
+        }
+        let spelling = Spelling { id, start, length: u32::try_from(text.len()).unwrap_or(u32::MAX) };
+        table.insert_unique(hash, spelling, |s| self::hash(s.text(bytes.as_bytes())));
         Symbol(id)
     }
 
     /// The number of a name already known in any case, as [`Names::fold`] gives it.
     pub fn find(&self, text: &str) -> Option<Symbol> {
-        let Names { bytes, ends, table, .. } = self;
-        let found = table.find(hash(text), |&id| slice(bytes, ends, id).eq_ignore_ascii_case(text))?;
-        Some(self.fold(Symbol(*found)))
+        let text = text.as_bytes();
+        let same = |s: &Spelling| s.text(self.bytes.as_bytes()).eq_ignore_ascii_case(text);
+        let found = self.table.find(hash(text), same)?;
+        Some(self.fold(Symbol(found.id)))
     }
 
     /// The first spelling of the same name in any case: two names are equal where these are.
     pub fn fold(&self, symbol: Symbol) -> Symbol {
-        self.folded.get(symbol.index()).map_or(symbol, |&first| Symbol(first))
+        if self.variants.is_empty() {
+            return symbol;
+        }
+        self.variants.get(&symbol.0).map_or(symbol, |&first| Symbol(first))
+    }
+
+    /// Gives up looking names up: only their text is wanted from here on.
+    pub fn seal(&mut self) {
+        self.table = HashTable::new();
+        self.bytes.shrink_to_fit();
+        self.ends.shrink_to_fit();
     }
 
     /// The spelling; empty for a number that is not ours.
@@ -121,20 +151,25 @@ fn slice<'a>(bytes: &'a str, ends: &[u32], id: u32) -> &'a str {
 }
 
 /// A hash that is blind to the case of ASCII letters (and, harmlessly, to bit 5 of all other characters).
-fn hash(text: &str) -> u64 {
+/// Eight bytes at a time, each step a multiplication of which both halves count: numbered names differ in few
+/// bits, and those must reach all bits of the hash.
+fn hash(text: &[u8]) -> u64 {
     const FOLD: u64 = 0x2020_2020_2020_2020;
-    let mut hasher = FxHasher::default();
-    let (eights, rest) = text.as_bytes().as_chunks::<8>();
+    let (eights, rest) = text.as_chunks::<8>();
+    let mut hash = text.len() as u64;
     for &eight in eights {
-        hasher.write_u64(u64::from_le_bytes(eight) | FOLD);
+        hash = mix(hash ^ (u64::from_le_bytes(eight) | FOLD));
     }
     let mut last = [0; 8];
     for (to, from) in last.iter_mut().zip(rest) {
         *to = *from;
     }
-    hasher.write_u64(u64::from_le_bytes(last) | FOLD);
-    hasher.write_usize(text.len());
-    hasher.finish()
+    mix(hash ^ (u64::from_le_bytes(last) | FOLD))
+}
+
+fn mix(word: u64) -> u64 {
+    let product = u128::from(word ^ 0x9E37_79B9_7F4A_7C15) * 0xD6E8_FEB8_6659_FD93;
+    (product as u64) ^ (product >> 64) as u64
 }
 
 #[cfg(test)]

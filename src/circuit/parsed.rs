@@ -3,7 +3,7 @@
 
 use super::behaviour::ModelKind;
 use crate::finding::Finding;
-use crate::text::{FileId, Span};
+use crate::text::{FileId, Sources, Span};
 use rustc_hash::FxHashMap;
 use std::ops::Range;
 
@@ -39,7 +39,14 @@ pub(crate) struct Function {
 #[derive(Debug, Clone, Copy)]
 pub(crate) struct Statement {
     pub span: Span,
-    pub is_note: bool,
+}
+
+impl Statement {
+    /// Whether it is a note. Looked up in the text: a flag would cost four bytes an element.
+    pub fn is_note(self, sources: &Sources) -> bool {
+        let text = sources.get(self.span.file).map_or(&[][..], |f| f.text.as_bytes());
+        text.get(self.span.start as usize) == Some(&b'*')
+    }
 }
 
 /// The root circuit or one subcircuit definition.

@@ -93,8 +93,7 @@ impl Reader<'_> {
                 continue;
             }
             match line.kind {
-                LineKind::Element => self.keep(span, false),
-                LineKind::Note => self.keep(span, true),
+                LineKind::Element | LineKind::Note => self.keep(span),
                 LineKind::Stray => self.stray(span),
                 LineKind::Dot => match self.dot(span, at, &closers) {
                     Next::Line => {}
@@ -123,9 +122,9 @@ impl Reader<'_> {
         closers
     }
 
-    fn keep(&mut self, span: Span, is_note: bool) {
+    fn keep(&mut self, span: Span) {
         let number = self.parsed.statements.len();
-        self.parsed.statements.push(Statement { span, is_note });
+        self.parsed.statements.push(Statement { span });
         let body = &mut self.block().body;
         match body.last_mut() {
             Some(last) if last.end == number => last.end += 1,

@@ -158,7 +158,7 @@ impl<'a> Expander<'a> {
         let mut fields = Fields::default();
         let statements =
             block.body.iter().filter_map(|range| self.parsed.statements.get(range.clone())).flatten();
-        for statement in statements.filter(|s| !s.is_note) {
+        for statement in statements.filter(|s| !s.is_note(self.sources)) {
             let (line, _) = Line::read(self.sources, statement.span, fields);
             words.extend(line.fields.words.iter().skip(1).map(|t| line.str(*t).to_ascii_lowercase()));
             fields = line.fields;

@@ -151,7 +151,7 @@ fn words(text: &str) -> Vec<NoteWord<'_>> {
     let offset = text.len() - body.len();
     let mut out = Vec::new();
     let mut at = 0;
-    for part in body.split(|c: char| c.is_ascii_whitespace() || c.is_control()) {
+    for part in body.split(|c: char| c.is_ascii_whitespace() || c.is_ascii_control()) {
         if !part.is_empty() {
             out.push(NoteWord { start: offset + at, text: part });
         }
