@@ -6,7 +6,7 @@ use super::evaluate::Solved;
 use super::proof::{Claim, Proof, claims_solution, prove};
 use super::result::{BranchResult, Case, Contradiction, DiodeResult, NodeResult, Residual, Solution};
 use super::view::margin;
-use super::words::{causes, list, missed};
+use super::words::{causes, list, missed, openings};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
 
@@ -25,7 +25,13 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
             verdict = Verdict::Unverified;
             contradictions.push(withheld.contradiction(part, assembly, *relative));
         } else if part.verdict != Verdict::Unique {
-            contradictions.extend(causes(setting, assembly, part));
+            let told = causes(setting, assembly, part);
+            match outcome.solutions.first() {
+                Some(solution) if told.is_empty() => {
+                    contradictions.extend(openings(setting, assembly, part, solution));
+                }
+                _ => contradictions.extend(told),
+            }
         }
     }
     if let Some(relative) = withheld.whole {

@@ -3,7 +3,7 @@
 use super::assemble::{Assembly, Owner, Setting};
 use super::result::Contradiction;
 use crate::circuit::{ElementId, NodeId};
-use crate::complementarity::{Branch, Law, Part, Reason, Verdict};
+use crate::complementarity::{Branch, Law, Part, Quantity, Reason, Solution, Verdict};
 use crate::finding::quantity;
 
 /// Most names that one sentence lists.
@@ -17,6 +17,38 @@ pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) ->
         return vec![words.contradiction(part.verdict, &words.driving(part), text)];
     }
     part.reasons.iter().map(|reason| words.cause(part, reason)).collect()
+}
+
+/// What a solution leaves open in a part: which branches share a current, which nodes have no fixed potential.
+pub(crate) fn openings(
+    setting: &Setting<'_>,
+    assembly: &Assembly,
+    part: &Part,
+    solution: &Solution,
+) -> Vec<Contradiction> {
+    let words = Words { setting, assembly };
+    let is_open = |list: &[Quantity], at: u32| list.get(at as usize).is_some_and(|q| q.interval().is_some());
+    let mut causes = Vec::new();
+    let shared: Vec<u32> =
+        part.branches.iter().copied().filter(|&b| is_open(&solution.currents, b)).collect();
+    if matches!(part.verdict, Verdict::Shared | Verdict::SharedFloating) && !shared.is_empty() {
+        let names = list(&words.names(shared.iter().copied()));
+        let text = format!("how the current divides among {names} is open");
+        causes.push(words.contradiction(Verdict::Shared, &shared, text));
+    }
+    let floating: Vec<u32> =
+        part.nodes.iter().copied().filter(|&n| is_open(&solution.potentials, n)).collect();
+    if matches!(part.verdict, Verdict::Floating | Verdict::SharedFloating) && !floating.is_empty() {
+        let names: Vec<String> = floating.iter().map(|&n| setting.circuit.node_name(NodeId(n))).collect();
+        let text = match names.len() {
+            1 => format!("the potential of node {} is open", list(&names)),
+            _ => format!("the potentials of nodes {} are open", list(&names)),
+        };
+        let across: Vec<u32> =
+            part.branches.iter().copied().filter(|&b| is_open(&solution.voltages, b)).collect();
+        causes.push(words.contradiction(Verdict::Floating, &across, text));
+    }
+    causes
 }
 
 /// What one reason contributes to the verdict: where both are open, a loop leaves a split open and a cut set a

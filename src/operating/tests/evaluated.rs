@@ -129,3 +129,34 @@ fn asking_about_what_is_not_there_is_told() {
     assert!(operating.why.is_none());
     assert_eq!(findings[0].rule, "unknown-name");
 }
+
+#[test]
+fn what_is_open_is_named() {
+    let shared = "V1 in 0 5\nR1 in a 1k\nD1 a 0 DX\nD2 a 0 DX\n.model DX D";
+    let (operating, circuit, _) = evaluated(shared, &Options::default());
+    let case = &operating.cases[0];
+    assert_eq!(case.verdict, Verdict::Shared);
+    assert_eq!(case.contradictions[0].text, "how the current divides among D1 and D2 is open");
+    let names: Vec<String> =
+        case.contradictions[0].elements.iter().map(|&e| circuit.element_name(e)).collect();
+    assert_eq!(names, ["D1", "D2"]);
+    // 4.3 mA in all, by hand
+    let Quantity::Open(interval) = diode(case, 0).current else { unreachable!("open") };
+    assert!(interval.low == 0.0 && (interval.high - 4.3e-3).abs() < 1e-12, "{interval:?}");
+    let (operating, _, _) =
+        evaluated("V1 in 0 5\nD1 x in DX\nD2 x y DX\nR1 y 0 1k\n.model DX D", &Options::default());
+    let case = &operating.cases[0];
+    assert_eq!(case.verdict, Verdict::Floating);
+    assert_eq!(case.contradictions[0].text, "the potential of node x is open");
+}
+
+#[test]
+fn the_view_and_the_margin_of_one_diode() {
+    // 5 V behind 1 kΩ; the drop would have to rise by 4.3 V
+    let (operating, _, _) =
+        evaluated("V1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D(RS=10)", &Options::default());
+    let diode = diode(&operating.cases[0], 0);
+    let view = diode.view.unwrap();
+    assert!((view.open_circuit - 5.0).abs() < 1e-12 && (view.resistance - 1010.0).abs() < 1e-9, "{view:?}");
+    assert!((diode.margin.unwrap() - 4.3).abs() < 1e-12);
+}
