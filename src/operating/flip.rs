@@ -12,25 +12,33 @@ const ASIDE: f64 = 1e-9;
 pub(crate) enum Way {
     /// The place stays.
     Never,
-    /// It changes here; `Unknown` where nothing consistent is beyond.
-    Changes { at: f64, place: Place },
-    /// Too many changes of other junctions, or too many solves.
+    /// It changes here; `Unknown` where nothing consistent is beyond. Where the solves ran out among changes of
+    /// other junctions it may not be the `nearest` such value.
+    Changes { at: f64, place: Place, nearest: bool },
+    /// The solves ran out, and at the limit the place is what it was.
     Lost,
 }
 
-/// Follows `junction` as the level of branch `source` goes from `from` to `limit`. `budget` counts the solves that
-/// are left.
+/// Solves kept back for a plain bisection, in case the way holds too many changes of other junctions.
+const RESERVE: usize = 40;
+
+/// Follows `junction` as the level of branch `source` goes from `from` to `limit`, with at most `budget` solves.
 pub(crate) fn follow(
     network: &Network,
     junction: u32,
     source: u32,
     from: f64,
     limit: f64,
-    budget: &mut usize,
+    budget: usize,
 ) -> Way {
-    let mut walker =
-        Walker { network: network.clone(), source: source as usize, budget, whole: limit - from };
-    walker.walk(junction as usize, from, limit).unwrap_or(Way::Lost)
+    let mut walker = Walker {
+        network: network.clone(),
+        source: source as usize,
+        budget,
+        reserve: RESERVE.min(budget / 2),
+        whole: limit - from,
+    };
+    walker.go(junction as usize, from, limit).unwrap_or(Way::Lost)
 }
 
 /// All places at one value of the source; `None` where nothing is consistent.
@@ -53,17 +61,23 @@ impl Stop {
     }
 }
 
-struct Walker<'a> {
+struct Walker {
     network: Network,
     source: usize,
-    budget: &'a mut usize,
+    /// Solves that are left.
+    budget: usize,
+    /// Of these, kept back for now.
+    reserve: usize,
     whole: f64,
 }
 
-impl Walker<'_> {
+impl Walker {
     /// Solves at one value; `None` where the budget is spent.
     fn stop(&mut self, at: f64) -> Option<Stop> {
-        *self.budget = self.budget.checked_sub(1)?;
+        if self.budget <= self.reserve {
+            return None;
+        }
+        self.budget -= 1;
         let level = Level { value: at, exact: false };
         let branch = self.network.branches.get_mut(self.source)?;
         match &mut branch.law {
@@ -80,27 +94,45 @@ impl Walker<'_> {
         Some(Stop { at, solution })
     }
 
-    fn walk(&mut self, junction: usize, from: f64, limit: f64) -> Option<Way> {
+    fn go(&mut self, junction: usize, from: f64, limit: f64) -> Option<Way> {
         let mut here = self.stop(from)?;
         let start = here.place(junction);
         let far = self.stop(limit)?;
+        let beyond = far.place(junction);
+        if let Some(way) = self.walk(junction, &mut here, &far) {
+            return Some(way);
+        }
+        self.reserve = 0;
+        if beyond == start { None } else { self.halve(junction, start, here.at, far) }
+    }
+
+    /// From change to change; `None` where the budget is spent, `here` being as far as it came.
+    fn walk(&mut self, junction: usize, here: &mut Stop, far: &Stop) -> Option<Way> {
+        let start = here.place(junction);
         // the values for which one set of places holds are an interval
-        while !here.agrees(&far) {
-            let at = self.next_change(&here, limit)?;
+        while !here.agrees(far) {
+            let at = self.next_change(here, far.at)?;
             let beyond = self.stop(at + ASIDE * self.whole)?;
             if beyond.place(junction) != start {
-                return Some(Way::Changes { at, place: beyond.place(junction) });
+                return Some(Way::Changes { at, place: beyond.place(junction), nearest: true });
             }
-            if (limit - beyond.at) * self.whole <= 0.0 {
+            if (far.at - beyond.at) * self.whole <= 0.0 {
                 break;
             }
-            here = beyond;
+            *here = beyond;
         }
-        Some(if far.place(junction) == start {
-            Way::Never
-        } else {
-            Way::Changes { at: limit, place: far.place(junction) }
-        })
+        let place = far.place(junction);
+        Some(if place == start { Way::Never } else { Way::Changes { at: far.at, place, nearest: true } })
+    }
+
+    /// Some value at which the place changes, between one where it has not and one where it has.
+    fn halve(&mut self, junction: usize, start: Place, mut inside: f64, mut outside: Stop) -> Option<Way> {
+        while (outside.at - inside).abs() > ASIDE * self.whole.abs() {
+            let Some(middle) = self.stop(0.5 * (inside + outside.at)) else { break };
+            if middle.place(junction) == start { inside = middle.at } else { outside = middle }
+        }
+        let at = 0.5 * (inside + outside.at);
+        Some(Way::Changes { at, place: outside.place(junction), nearest: false })
     }
 
     /// The next value at which any place changes.

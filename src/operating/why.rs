@@ -16,7 +16,7 @@ const FURTHEST: f64 = 10.0;
 /// Most sources that are followed.
 const MOST_SOURCES: usize = 32;
 /// Most work of one search: solves times branches.
-const MOST_WORK: usize = 4_000_000;
+const MOST_WORK: usize = 10_000_000;
 
 /// Gathers the reasoning over the conditions. Conditions with one state share one line of reasoning, told for the
 /// first of them; what differs between them is told as a spread.
@@ -371,8 +371,7 @@ struct Search {
 
 impl Search {
     fn sentence(&self, state: State) -> String {
-        let tail =
-            if self.is_cut_off { " The search was cut off before it had seen everything." } else { "" };
+        let tail = if self.is_cut_off { " The search was cut off: there may be nearer values." } else { "" };
         let list: Vec<String> = self.flips.iter().take(4).map(Flip::words).collect();
         match (list.is_empty(), self.followed) {
             (true, 0) if self.is_cut_off => {
@@ -412,19 +411,22 @@ fn flips(setting: &Setting<'_>, solved: &Solved, element: ElementId) -> Search {
         return search;
     };
     let Some(target) = excerpt.number(junction) else { return search };
-    let mut budget = MOST_WORK / excerpt.network.branches.len().max(1);
-    for (number, from, is_current) in sources(&excerpt.network) {
+    let all = sources(&excerpt.network);
+    let budget = MOST_WORK / excerpt.network.branches.len().max(1);
+    let each = budget / (2 * all.len().clamp(1, MOST_SOURCES));
+    for (number, from, is_current) in all {
         let Some(source) = name(setting, solved, excerpt.original[number as usize]) else { continue };
-        if search.followed == MOST_SOURCES || budget < 4 {
+        if search.followed == MOST_SOURCES || each < 4 {
             search.is_cut_off = true;
             break;
         }
         search.followed += 1;
         for limit in [FURTHEST * from, -FURTHEST * from] {
-            match follow(&excerpt.network, target, number, from, limit, &mut budget) {
+            match follow(&excerpt.network, target, number, from, limit, each) {
                 Way::Never => {}
                 Way::Lost => search.is_cut_off = true,
-                Way::Changes { at, place } => {
+                Way::Changes { at, place, nearest } => {
+                    search.is_cut_off |= !nearest;
                     let state = state(place);
                     search.flips.push(Flip { source: source.clone(), is_current, from, to: at, state });
                 }

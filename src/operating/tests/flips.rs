@@ -116,11 +116,11 @@ fn what_is_found_agrees_with_solving_at_many_values() {
         let Law::Voltage(Level { value: from, .. }) = network.branches[0].law else { continue };
         let start = place(&network, 0, from);
         for limit in [10.0 * from, -10.0 * from] {
-            let mut budget = 10_000;
-            let way = follow(&network, 2, 0, from, limit, &mut budget);
+            let way = follow(&network, 2, 0, from, limit, 10_000);
             let end = match way {
                 Way::Never => limit,
-                Way::Changes { at, place: beyond } => {
+                Way::Changes { at, place: beyond, nearest } => {
+                    assert!(nearest);
                     changes += 1;
                     let aside = 1e-6 * (limit - from);
                     assert_eq!(place(&network, 0, at - aside), start, "trial {trial}: before {at}");
@@ -137,4 +137,26 @@ fn what_is_found_agrees_with_solving_at_many_values() {
         }
     }
     assert!(changes > 20, "{changes} changes are too few to mean anything");
+}
+
+#[test]
+fn with_few_solves_some_change_is_found_all_the_same() {
+    // a ladder whose diodes start to conduct one after the other
+    let exact = |value| Level { value, exact: true };
+    let mut branches = vec![Branch { from: 1, to: 0, law: Law::Voltage(exact(0.5)) }];
+    for n in 1..200 {
+        let forward = exact(0.7 + 0.05 * f64::from(n));
+        let junction = Junction { forward, reverse: None, series: 1e3 };
+        branches.push(Branch { from: n + 1, to: 0, law: Law::Junction(junction) });
+        branches.push(Branch { from: n, to: n + 1, law: Law::Resistance(10.0) });
+    }
+    let network = Network { nodes: 201, branches };
+    let far = 21; // the diode at node 12
+    let Way::Changes { at: exactly, nearest: true, .. } = follow(&network, far, 0, 0.5, 5.0, 100_000) else {
+        unreachable!("a change is there")
+    };
+    let Way::Changes { at, nearest: false, .. } = follow(&network, far, 0, 0.5, 5.0, 60) else {
+        unreachable!("the solves are too few to walk")
+    };
+    assert!((at - exactly).abs() < 1e-6, "{at} is not {exactly}");
 }
