@@ -132,6 +132,12 @@ impl Circuit {
         self.elements.iter().any(|e| !e.kind.controls().is_empty() || e.kind.listens().is_some())
     }
 
+    /// Whether nothing in it is controlled and no resistance is negative.
+    pub fn is_passive(&self) -> bool {
+        let negative = |kind: &Kind| matches!(kind, Kind::R(ohms) if ohms.digits < 0);
+        !self.has_controlled() && !self.elements.iter().any(|e| negative(&e.kind))
+    }
+
     /// Drops the nodes that nothing touches.
     pub fn compact(&mut self) {
         let mut used = vec![false; self.nodes.len()];
