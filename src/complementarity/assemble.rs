@@ -2,7 +2,7 @@
 //! and the list of consistent sets.
 
 use super::network::{Law, Network};
-use super::openness::{Arc, Potentials, current_ranges, is_point, potentials};
+use super::openness::{Arc, Potentials, cancel_idle, current_ranges, is_point, potentials};
 use super::outcome::{Interval, Outcome, Part, Place, Quantity, Solution, Verdict};
 use super::parts::Built;
 use super::passive::{Point, State};
@@ -98,7 +98,7 @@ impl<'a> Assembly<'a> {
         self.fill_general(pick, &mut sheet, &mut shared, &mut floating);
         self.fill_voltages(&mut sheet);
         if first {
-            self.note_openness(&shared, &floating);
+            self.note_openness(&shared, &floating, &sheet);
         }
         self.finish(sheet)
     }
@@ -162,7 +162,16 @@ impl<'a> Assembly<'a> {
         if !any && !self.rails.loops {
             return;
         }
-        let (arcs, branches) = self.arcs(pick, sheet);
+        let (mut arcs, branches) = self.arcs(pick, sheet);
+        cancel_idle(self.rails.tainted.len(), &mut arcs);
+        for (arc, &branch) in arcs.iter().zip(&branches) {
+            if sheet.currents[branch as usize].is_finite() {
+                sheet.currents[branch as usize] = arc.current;
+            }
+            if arc.current == 0.0 && sheet.places[branch as usize] != Place::Unknown {
+                sheet.places[branch as usize] = Place::Blocking;
+            }
+        }
         for (range, branch) in current_ranges(self.rails.tainted.len(), &arcs).into_iter().zip(branches) {
             if sheet.currents[branch as usize].is_finite() {
                 sheet.ranges[branch as usize] = range;
@@ -189,9 +198,10 @@ impl<'a> Assembly<'a> {
         }
         for (answer, &set) in self.answers.iter().zip(pick) {
             if let Some(Found::Passive { built, point, tied: true }) = answer.found.get(set) {
+                let volts = built.part.scales().volts;
                 for (n, d) in built.part.diodes.iter().enumerate().filter(|(_, d)| d.series == 0.0) {
                     let state = match point.states[n] {
-                        State::Blocking => at_level(d, &built.part, &point.potentials),
+                        State::Blocking => at_level(d, &built.part, &point.potentials, volts),
                         state => Some(state),
                     };
                     let Some(state) = state else { continue };
@@ -307,7 +317,7 @@ impl<'a> Assembly<'a> {
     }
 
     /// Turns `Unique` into what is open.
-    fn note_openness(&mut self, shared: &[bool], floating: &[bool]) {
+    fn note_openness(&mut self, shared: &[bool], floating: &[bool], sheet: &Sheet) {
         for (n, answer) in self.answers.iter_mut().enumerate() {
             if answer.verdict == Verdict::Unique {
                 answer.verdict = match (shared[n], floating[n]) {
@@ -319,7 +329,8 @@ impl<'a> Assembly<'a> {
             }
         }
         if shared.last() == Some(&true) {
-            let branches = self.rails.branch.clone();
+            let open = |n: &&u32| sheet.ranges[**n as usize].is_some();
+            let branches = self.rails.branch.iter().filter(open).copied().collect();
             let piece = super::parts::Piece {
                 kind: super::parts::Kind::Passive,
                 groups: Vec::new(),

@@ -9,6 +9,8 @@ use super::passive::{Passive, Point, State};
 
 /// Share of the largest term below which a voltage or current is nothing.
 pub(super) const NOTHING: f64 = 1e-12;
+/// Share of the part's largest voltage that counts beside the voltages at a diode itself.
+pub(super) const FLOOR: f64 = 0.01;
 
 pub(super) struct Solve<'a> {
     pub(super) part: &'a Passive,
@@ -102,6 +104,7 @@ impl<'a> Solve<'a> {
     /// Currents of ties that close a loop: taken from the guide, since the laws leave them open.
     fn extra_currents(&self) -> Vec<f64> {
         let mut extra = vec![0.0; self.part.diodes.len()];
+        let largest = self.guide.currents.iter().fold(0.0, |m: f64, i| m.max(i.abs()));
         for &chord in &self.forest.chords {
             let n = self.tie_diode[chord as usize] as usize;
             extra[n] = match self.guide.states[n] {
@@ -109,6 +112,10 @@ impl<'a> Solve<'a> {
                 State::Reverse => self.guide.currents[n].min(0.0),
                 State::Blocking => 0.0,
             };
+            // the guide is no better than this
+            if extra[n].abs() <= 1e-6 * largest {
+                extra[n] = 0.0;
+            }
         }
         extra
     }
@@ -259,7 +266,7 @@ impl<'a> Solve<'a> {
         self.part.diodes.iter().enumerate().any(|(n, d)| {
             !in_forest[n]
                 && d.series == 0.0
-                && super::settle::at_level(d, self.part, &self.potentials).is_some()
+                && super::settle::at_level(d, self.part, &self.potentials, self.volts).is_some()
         })
     }
 
@@ -292,6 +299,11 @@ impl<'a> Solve<'a> {
         let answer: f64 = crossing.iter().map(|&(n, other, g)| g * (at(n) - at(other))).sum();
         let change = (direct + answer).abs();
         if change <= 1e-9 * direct { 0.0 } else { change }
+    }
+
+    /// Voltage against which differences at a diode are judged.
+    pub(super) fn scale(&self, d: &super::passive::Diode) -> f64 {
+        d.scale(&self.potentials) + FLOOR * self.volts
     }
 
     /// The same for a diode that carries current by its series resistance.

@@ -67,6 +67,19 @@ impl Flow {
         }
     }
 
+    /// The same, but no more than `most`.
+    pub(super) fn at_most(&mut self, source: u32, sink: u32, most: f64) -> f64 {
+        self.out.push(Vec::new());
+        let gate = self.out.len() as u32 - 1;
+        let arc = self.add(gate, source, most, 0.0);
+        let sent = self.greatest(gate, sink);
+        self.out.pop();
+        self.out[source as usize].pop();
+        self.to.truncate(arc as usize);
+        self.capacity.truncate(arc as usize);
+        sent
+    }
+
     /// Nodes that flow could still reach from `source`.
     pub(super) fn reachable(&self, source: u32) -> Vec<bool> {
         self.levels(source).into_iter().map(|l| l != u32::MAX).collect()

@@ -105,30 +105,26 @@ fn ranges_in_block(arcs: &[Arc], block: &[u32], ranges: &mut [Option<Interval>])
         let arc = &arcs[n as usize];
         flow.add(local(arc.from), local(arc.to), arc.rise, arc.fall);
     }
-    let whole = flow.capacities();
-    let inflow = inflow(arcs, block, names.len(), local);
     let mixed = block.iter().any(|&n| !arcs[n as usize].short);
+    let whole = flow.capacities();
+    let idle = Idle { arcs, block, local: &local, nodes: names.len() };
     for (k, &n) in block.iter().enumerate() {
         let arc = &arcs[n as usize];
         let (a, b) = (local(arc.from), local(arc.to));
-        let mut bound = |from, to, idle: bool| {
+        let mut bound = |from, to, against: f64| {
             flow.restore(&whole);
             flow.close(2 * k as u32);
-            if idle {
-                leave_out_idle(&mut flow, arcs, block, arc, inflow);
+            match block.len() > TOO_MANY {
+                true => f64::INFINITY,
+                false if arc.idle && mixed => idle.greatest(&mut flow, from, to, against),
+                false => flow.greatest(from, to),
             }
-            if block.len() > TOO_MANY { f64::INFINITY } else { flow.greatest(from, to) }
         };
-        let mut up = bound(b, a, false).min(arc.rise);
-        let mut down = bound(a, b, false).min(arc.fall);
-        if down == f64::INFINITY && arc.idle && mixed {
-            down = bound(a, b, true);
-        }
-        if up == f64::INFINITY && arc.idle && mixed {
-            up = bound(b, a, true);
-        }
+        let up = bound(b, a, -arc.current).min(arc.rise);
+        let down = bound(a, b, arc.current).min(arc.fall);
         let interval = Interval { low: arc.current - down, high: arc.current + up };
-        let size = interval.low.abs().max(interval.high.abs()).max(gross);
+        let ends = [interval.low, interval.high, gross];
+        let size = ends.into_iter().filter(|x| x.is_finite()).fold(0.0, |m: f64, x| m.max(x.abs()));
         if interval.high - interval.low > POINT * size {
             ranges[n as usize] = Some(snapped(interval, size));
         }
@@ -137,36 +133,141 @@ fn ranges_in_block(arcs: &[Arc], block: &[u32], ranges: &mut [Option<Interval>])
 
 /// Ends that are zero but for rounding are zero.
 fn snapped(interval: Interval, size: f64) -> Interval {
-    let snap = |x: f64| if x.abs() <= POINT * size.min(1e300) && size.is_finite() { 0.0 } else { x };
+    let snap = |x: f64| if x.abs() <= POINT * size { 0.0 } else { x };
     Interval { low: snap(interval.low), high: snap(interval.high) }
 }
 
-/// Current that enters a block from outside.
-fn inflow(arcs: &[Arc], block: &[u32], nodes: usize, local: impl Fn(u32) -> u32) -> f64 {
-    let mut net = vec![0.0; nodes];
-    for &n in block {
-        let arc = &arcs[n as usize];
-        net[local(arc.from) as usize] += arc.current;
-        net[local(arc.to) as usize] -= arc.current;
-    }
-    net.into_iter().filter(|x| *x > 0.0).sum()
+/// Arcs without voltage can pass any current around among themselves; such circulation is left out.
+struct Idle<'a, L: Fn(u32) -> u32> {
+    arcs: &'a [Arc],
+    block: &'a [u32],
+    local: &'a L,
+    nodes: usize,
 }
 
-/// Ideal junctions can pass any current around among themselves; only what enters from outside counts, and it does
-/// not run back beside the arc.
-fn leave_out_idle(flow: &mut Flow, arcs: &[Arc], block: &[u32], arc: &Arc, inflow: f64) {
-    for (k, &other) in block.iter().enumerate() {
-        let other = &arcs[other as usize];
-        if !other.idle {
-            continue;
+impl<L: Fn(u32) -> u32> Idle<'_, L> {
+    /// How much more an arc without voltage can carry if that returns from `from` to `to`. As long as it only undoes
+    /// the `against` that runs the other way, nothing circulates; beyond that, other such arcs may not carry it back.
+    fn greatest(&self, flow: &mut Flow, from: u32, to: u32, against: f64) -> f64 {
+        let mut undone = 0.0;
+        if against > 0.0 {
+            undone = flow.at_most(from, to, against);
+            if undone < against {
+                return undone;
+            }
         }
-        if other.from == arc.to && other.to == arc.from && !other.short {
-            flow.limit(2 * k as u32, 0.0);
-        } else {
-            flow.limit(2 * k as u32, (inflow - other.current).max(0.0));
-            flow.limit(2 * k as u32 + 1, (inflow + other.current).max(0.0));
+        self.forbid_return(flow, from, to);
+        undone + flow.greatest(from, to)
+    }
+
+    /// Closes every arc that lies on a way without voltage from `from` to `to`. Undoing a current is no such way, but
+    /// ends where nothing is left to undo.
+    fn forbid_return(&self, flow: &mut Flow, from: u32, to: u32) {
+        let ahead = self.reach(from, false);
+        let behind = self.reach(to, true);
+        for (k, &n) in self.block.iter().enumerate() {
+            let arc = &self.arcs[n as usize];
+            if !arc.idle {
+                continue;
+            }
+            let (a, b) = ((self.local)(arc.from) as usize, (self.local)(arc.to) as usize);
+            let [there, back] = ways(arc);
+            if (there && ahead[a] && behind[b]) || arc.current < 0.0 {
+                flow.limit(2 * k as u32, (-arc.current).max(0.0));
+            }
+            if arc.fall == f64::INFINITY && ((back && ahead[b] && behind[a]) || arc.current > 0.0) {
+                flow.limit(2 * k as u32 + 1, arc.current.max(0.0));
+            }
         }
     }
+
+    /// Nodes that arcs without voltage lead to from `start`, or with `back`, from which they lead there.
+    fn reach(&self, start: u32, back: bool) -> Vec<bool> {
+        let mut seen = vec![false; self.nodes];
+        let mut queue = vec![start];
+        seen[start as usize] = true;
+        while let Some(node) = queue.pop() {
+            for &n in self.block {
+                let arc = &self.arcs[n as usize];
+                if !arc.idle {
+                    continue;
+                }
+                let (a, b) = ((self.local)(arc.from), (self.local)(arc.to));
+                let (a, b) = if back { (b, a) } else { (a, b) };
+                let [there, reverse] = ways(arc);
+                for (near, far, open) in [(a, b, there), (b, a, reverse)] {
+                    if open && near == node && !seen[far as usize] {
+                        seen[far as usize] = true;
+                        queue.push(far);
+                    }
+                }
+            }
+        }
+        seen
+    }
+}
+
+/// Whether more current along an arc, and against it, would be new current rather than less of the old.
+fn ways(arc: &Arc) -> [bool; 2] {
+    let both = arc.fall == f64::INFINITY;
+    [!both || arc.current >= 0.0, both && arc.current <= 0.0]
+}
+
+/// Takes out of the sample what merely circulates through arcs without voltage: currents of the arcs, changed.
+pub(super) fn cancel_idle(nodes: usize, arcs: &mut [Arc]) {
+    let idle: Vec<usize> = (0..arcs.len()).filter(|&n| arcs[n].idle && arcs[n].from != arcs[n].to).collect();
+    let junctions = idle.iter().any(|&n| arcs[n].fall.is_finite());
+    if !junctions {
+        return;
+    }
+    let mut out: Vec<Vec<usize>> = vec![Vec::new(); nodes];
+    for &n in &idle {
+        out[arcs[n].from as usize].push(n);
+        out[arcs[n].to as usize].push(n);
+    }
+    while let Some(circle) = circle(arcs, &idle, &out) {
+        let least = circle.iter().map(|&n| arcs[n].current.abs()).fold(f64::INFINITY, f64::min);
+        for n in circle {
+            let arc = &mut arcs[n];
+            let rest = arc.current.abs() - least;
+            arc.current = rest * arc.current.signum();
+            if arc.fall.is_finite() {
+                arc.fall = arc.current;
+            }
+        }
+    }
+}
+
+/// Arcs around a circle of currents, found by walking along them without recursion.
+fn circle(arcs: &[Arc], idle: &[usize], out: &[Vec<usize>]) -> Option<Vec<usize>> {
+    let ahead = |n: usize| if arcs[n].current > 0.0 { arcs[n].to } else { arcs[n].from };
+    let behind = |n: usize| if arcs[n].current > 0.0 { arcs[n].from } else { arcs[n].to };
+    let mut done = vec![false; out.len()];
+    for &start in idle.iter().filter(|&&n| arcs[n].current != 0.0) {
+        let mut path: Vec<usize> = Vec::new();
+        let mut on_path = std::collections::BTreeMap::from([(behind(start), 0)]);
+        let mut node = behind(start);
+        loop {
+            let next = out[node as usize]
+                .iter()
+                .copied()
+                .find(|&n| arcs[n].current != 0.0 && behind(n) == node && !done[ahead(n) as usize]);
+            let Some(n) = next else {
+                done[node as usize] = true;
+                on_path.remove(&node);
+                let Some(back) = path.pop() else { break };
+                node = behind(back);
+                continue;
+            };
+            path.push(n);
+            node = ahead(n);
+            if let Some(&from) = on_path.get(&node) {
+                return Some(path.split_off(from));
+            }
+            on_path.insert(node, path.len());
+        }
+    }
+    None
 }
 
 /// Open potentials of one part.

@@ -1,7 +1,7 @@
 //! The states that hold: solves exactly for proposed states, checks every assumption, changes those that fail, and
 //! solves again.
 
-use super::exact::{NOTHING, Solve};
+use super::exact::{FLOOR, NOTHING, Solve};
 use super::forest::NONE;
 use super::passive::{Diode, Passive, Point, State};
 
@@ -106,7 +106,7 @@ fn check(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<Finding> {
     diodes
         .map(|(((d, &state), &i), &small)| {
             let v = solve.part.across(d, &solve.potentials);
-            let room = NOTHING * d.scale(&solve.potentials);
+            let room = NOTHING * solve.scale(d);
             judge(d, state, (v - (d.series * i).into()).round(), i, room, small)
         })
         .collect()
@@ -120,7 +120,7 @@ fn mend_loops(solve: &Solve<'_>, currents: &[f64], findings: &mut [Finding]) {
         let d = &solve.part.diodes[diode];
         let Some(level) = d.level(solve.guide.states[diode]) else { continue };
         let v = solve.part.across(d, &solve.potentials).round();
-        let room = NOTHING * d.scale(&solve.potentials);
+        let room = NOTHING * solve.scale(d);
         if (v - level).abs() <= room || findings[diode] != Finding::Holds {
             continue;
         }
@@ -161,12 +161,12 @@ fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
             0.0
         } else {
             let d = &solve.part.diodes[diode];
-            let room = NOTHING * d.scale(&solve.potentials);
+            let room = NOTHING * solve.scale(d);
             (room * solve.response(node)).max(1e-15 * pushed).max(1e-12 * coarse)
         };
     }
     for (n, d) in solve.part.diodes.iter().enumerate().filter(|(_, d)| d.series > 0.0) {
-        let room = NOTHING * d.scale(&solve.potentials);
+        let room = NOTHING * solve.scale(d);
         let suspect = solve.guide.states[n] != State::Blocking && currents[n].abs() <= room / d.series;
         small[n] = if suspect { (room * solve.link_response(d)).max(NOTHING * room / d.series) } else { 0.0 };
     }
@@ -174,9 +174,14 @@ fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
 }
 
 /// The level at which a diode's terminals stand, within tolerance, were it to carry nothing.
-pub(super) fn at_level(d: &Diode, part: &Passive, potentials: &[super::double_double::Dd]) -> Option<State> {
+pub(super) fn at_level(
+    d: &Diode,
+    part: &Passive,
+    potentials: &[super::double_double::Dd],
+    volts: f64,
+) -> Option<State> {
     let v = part.across(d, potentials);
-    let room = NOTHING * d.scale(potentials);
+    let room = NOTHING * (d.scale(potentials) + FLOOR * volts);
     if (v - d.forward.into()).abs() <= room {
         Some(State::Forward)
     } else if d.reverse.is_finite() && (v + d.reverse.into()).abs() <= room {

@@ -67,6 +67,8 @@ struct Scales {
     part_of_node: Vec<usize>,
     /// Whether a part claims to be solved; what belongs to no part does.
     claimed: Vec<bool>,
+    /// Branches of parts that do not.
+    unclaimed: Vec<bool>,
     voltage: Vec<f64>,
     current: Vec<f64>,
 }
@@ -109,7 +111,13 @@ impl Scales {
         }
         let mut claimed: Vec<bool> = outcome.parts.iter().map(|p| claims_solution(p.verdict)).collect();
         claimed.push(true);
-        let mut scales = Scales { part_of_node, claimed, voltage, current };
+        let mut unclaimed = vec![false; claim.currents.len()];
+        for part in outcome.parts.iter().filter(|p| !claims_solution(p.verdict)) {
+            for &branch in &part.branches {
+                unclaimed[branch as usize] = true;
+            }
+        }
+        let mut scales = Scales { part_of_node, claimed, unclaimed, voltage, current };
         for (id, _) in setting.circuit.elements() {
             let ends = (setting.circuit.node(id, 0), setting.circuit.node(id, 1));
             let part = scales.part(ends.0, ends.1);
@@ -165,7 +173,8 @@ impl Prover<'_> {
     /// Judges `miss`, which should be 0, against its largest term and the scale of its surroundings.
     fn judge(&mut self, id: ElementId, kind: Kind, miss: f64, terms: &[f64], ends: (NodeId, NodeId)) {
         let part = self.scales.part(ends.0, ends.1);
-        if !self.scales.claimed[part] {
+        let unclaimed = self.number(id).is_some_and(|b| self.scales.unclaimed.get(b) == Some(&true));
+        if !self.scales.claimed[part] || unclaimed {
             return;
         }
         let (floor, worst) = match kind {
@@ -352,7 +361,9 @@ impl Prover<'_> {
                 continue;
             }
             let part = self.scales.part_of_node.get(n).copied().unwrap_or(whole);
-            if !self.scales.claimed[part] {
+            // ground's sum is that of all others, so it can hold only where they all do
+            let implied = n == NodeId::GROUND.index() && self.scales.claimed.contains(&false);
+            if implied || !self.scales.claimed[part] {
                 continue;
             }
             let largest = sum.largest.max(self.scales.current[part] * (NOTHING / MET));

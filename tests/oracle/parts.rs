@@ -114,7 +114,13 @@ pub fn acceptable_verdicts(circuit: &Circuit, answer: &Answer) -> BTreeSet<Verdi
         };
         let edge = holders.iter().any(|&at| answer.current(at).single().is_none());
         let edge = if edge { Verdict::Shared } else { Verdict::Unique };
-        parts.iter().map(of_part).chain([edge]).max().unwrap_or(Verdict::Unique)
+        // one part's open currents beside another's open voltages: the whole has both
+        parts.iter().map(of_part).chain([edge]).fold(Verdict::Unique, |a, b| match (a, b) {
+            (Verdict::Shared, Verdict::Floating) | (Verdict::Floating, Verdict::Shared) => {
+                Verdict::SharedFloating
+            }
+            _ => a.max(b),
+        })
     };
     [Division::Direct, Division::Chain, Division::Shorts].into_iter().map(over).collect()
 }
