@@ -287,7 +287,8 @@ impl<'a> Assembly<'a> {
     fn fill_general(&self, pick: &[usize], sheet: &mut Sheet, shared: &mut [bool], floating: &mut [bool]) {
         for (n, (answer, &set)) in self.answers.iter().zip(pick).enumerate() {
             if let Some(Found::General(set)) = answer.found.get(set) {
-                let (s, f) = set.fill_open(&mut sheet.room, &mut sheet.ranges, &mut sheet.places);
+                let (s, f) =
+                    set.fill_open(&mut sheet.room, &mut sheet.ranges, &mut sheet.places, &mut sheet.voltages);
                 shared[n] |= s;
                 floating[n] |= f;
             }

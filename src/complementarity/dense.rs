@@ -253,6 +253,11 @@ impl<'a> Dense<'a> {
         }
     }
 
+    /// Whether every law could be written down.
+    pub(super) fn complete(&self) -> bool {
+        self.rhs.iter().all(|v| v.is_finite()) && self.matrix.iter().all(|v| v.is_finite())
+    }
+
     /// Potential of a node at `x` (unknowns, then junction currents).
     pub(super) fn potential(&self, x: &[f64], node: u32) -> f64 {
         self.value(&self.form_of_node(node), x, 1.0)
@@ -260,6 +265,15 @@ impl<'a> Dense<'a> {
 
     pub(super) fn potential_change(&self, change: &[f64], node: u32) -> f64 {
         self.value(&self.form_of_node(node), change, 0.0)
+    }
+
+    /// Potential of `from` minus that of `to`; not a number where one of them belongs to another part.
+    pub(super) fn voltage(&self, x: &[f64], from: u32, to: u32) -> f64 {
+        self.value(&self.form_of_voltage(from, to), x, 1.0)
+    }
+
+    pub(super) fn voltage_change(&self, change: &[f64], from: u32, to: u32) -> f64 {
+        self.value(&self.form_of_voltage(from, to), change, 0.0)
     }
 
     pub(super) fn current(&self, network: &Network, x: &[f64], n: u32) -> f64 {

@@ -18,6 +18,7 @@ pub(super) struct Set {
     potentials: Vec<(u32, f64)>,
     currents: Vec<(u32, f64)>,
     places: Vec<(u32, Place)>,
+    voltages: Vec<(u32, Quantity)>,
     /// Open quantities: nodes move by these rooms, branches have these ranges.
     rooms: Vec<(u32, Interval)>,
     ranges: Vec<(u32, Interval)>,
@@ -39,7 +40,11 @@ impl Set {
         room: &mut [Interval],
         ranges: &mut [Option<Interval>],
         places: &mut [Place],
+        voltages: &mut [Quantity],
     ) -> (bool, bool) {
+        for &(n, v) in self.voltages.iter().filter(|(_, v)| v.known().is_none_or(f64::is_finite)) {
+            voltages[n as usize] = v;
+        }
         for &(n, interval) in &self.rooms {
             room[n as usize] = interval;
         }
@@ -57,6 +62,12 @@ impl Set {
 pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
     let dense = Dense::new(network, rails, &answer.piece);
     answer.solves += 1;
+    if !dense.complete() {
+        answer.verdict = Verdict::Unverified;
+        let text = "a controlled source listens to a current that the laws leave open".into();
+        answer.reasons.push(Reason::Dependent { text });
+        return;
+    }
     let Some(ports) = Ports::new(network, &dense) else {
         answer.verdict = Verdict::None;
         answer.reasons.push(Reason::Dependent {
@@ -90,33 +101,42 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
 
 fn set(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Set {
     let x = ports.expand(&trial.currents);
+    let rounding = ports.rounding(&trial.currents);
     let moved: Vec<(Vec<f64>, Interval)> =
         trial.open.iter().map(|(direction, room)| (ports.expand_change(direction), *room)).collect();
     let mut set = Set {
         potentials: dense.nodes.iter().map(|&n| (n, dense.potential(&x, n))).collect(),
         currents: Vec::new(),
+        voltages: Vec::new(),
         places: trial.places.iter().zip(&ports.junctions).map(|(&p, &n)| (n, p)).collect(),
         rooms: dense.floating.iter().map(|&n| (n, ANYWHERE)).collect(),
         ranges: Vec::new(),
     };
-    for &n in &dense.branches {
-        if !matches!(network.branches[n as usize].law, Law::Voltage(_) | Law::Short) {
-            set.currents.push((n, dense.current(network, &x, n)));
-        }
-    }
-    for (change, room) in moved {
-        for &n in &dense.nodes {
-            let slope = dense.potential_change(&change, n);
-            if let Some(interval) = scaled(slope, room) {
+    for (change, room) in &moved {
+        for &n in dense.nodes.iter().filter(|n| !dense.floating.contains(n)) {
+            if let Some(interval) = scaled(dense.potential_change(change, n), *room) {
                 set.rooms.push((n, interval));
             }
         }
-        for &n in &dense.branches {
-            let (i, slope) = (dense.current(network, &x, n), dense.current_change(network, &change, n));
-            if let Some(by) = scaled(slope, room) {
+    }
+    for &n in &dense.branches {
+        let b = &network.branches[n as usize];
+        let (v, i) = (dense.voltage(&x, b.from, b.to), dense.current(network, &x, n));
+        let i = if i.abs() <= rounding && !matches!(b.law, Law::Current(_)) { 0.0 } else { i };
+        if !matches!(b.law, Law::Voltage(_) | Law::Short) {
+            set.currents.push((n, i));
+        }
+        let mut voltage = Quantity::Known(v);
+        for (change, room) in &moved {
+            let slope = dense.voltage_change(change, b.from, b.to);
+            if let Some(by) = scaled(slope, *room) {
+                voltage = Quantity::Open(Interval { low: v + by.low, high: v + by.high });
+            }
+            if let Some(by) = scaled(dense.current_change(network, change, n), *room) {
                 set.ranges.push((n, Interval { low: i + by.low, high: i + by.high }));
             }
         }
+        set.voltages.push((n, voltage));
     }
     set
 }

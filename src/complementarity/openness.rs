@@ -160,29 +160,28 @@ impl<L: Fn(u32) -> u32> Idle<'_, L> {
         undone + flow.greatest(from, to)
     }
 
-    /// Closes every arc that lies on a way without voltage from `from` to `to`. Undoing a current is no such way, but
+    /// Closes the last arc of every way without voltage from `from` to `to`. Undoing a current is no such way, but
     /// ends where nothing is left to undo.
     fn forbid_return(&self, flow: &mut Flow, from: u32, to: u32) {
-        let ahead = self.reach(from, false);
-        let behind = self.reach(to, true);
+        let ahead = self.reach(from);
         for (k, &n) in self.block.iter().enumerate() {
             let arc = &self.arcs[n as usize];
             if !arc.idle {
                 continue;
             }
-            let (a, b) = ((self.local)(arc.from) as usize, (self.local)(arc.to) as usize);
+            let (a, b) = ((self.local)(arc.from), (self.local)(arc.to));
             let [there, back] = ways(arc);
-            if (there && ahead[a] && behind[b]) || arc.current < 0.0 {
+            if (there && ahead[a as usize] && b == to) || arc.current < 0.0 {
                 flow.limit(2 * k as u32, (-arc.current).max(0.0));
             }
-            if arc.fall == f64::INFINITY && ((back && ahead[b] && behind[a]) || arc.current > 0.0) {
+            if arc.fall == f64::INFINITY && ((back && ahead[b as usize] && a == to) || arc.current > 0.0) {
                 flow.limit(2 * k as u32 + 1, arc.current.max(0.0));
             }
         }
     }
 
-    /// Nodes that arcs without voltage lead to from `start`, or with `back`, from which they lead there.
-    fn reach(&self, start: u32, back: bool) -> Vec<bool> {
+    /// Nodes that new current through arcs without voltage leads to from `start`.
+    fn reach(&self, start: u32) -> Vec<bool> {
         let mut seen = vec![false; self.nodes];
         let mut queue = vec![start];
         seen[start as usize] = true;
@@ -193,7 +192,6 @@ impl<L: Fn(u32) -> u32> Idle<'_, L> {
                     continue;
                 }
                 let (a, b) = ((self.local)(arc.from), (self.local)(arc.to));
-                let (a, b) = if back { (b, a) } else { (a, b) };
                 let [there, reverse] = ways(arc);
                 for (near, far, open) in [(a, b, there), (b, a, reverse)] {
                     if open && near == node && !seen[far as usize] {

@@ -30,74 +30,83 @@ pub(super) struct Piece {
 
 /// The parts, in the order of their first group or branch.
 pub(super) fn split(network: &Network, rails: &Rails) -> Vec<Piece> {
-    let group = |n: u32| rails.forest.group[n as usize];
-    let mut sets = Sets::new(rails.forest.groups);
-    let join = |sets: &mut Sets, nodes: &[u32]| {
-        let mut first = None;
-        for g in nodes.iter().map(|&n| group(n)).filter(|&g| g != 0) {
-            match first {
-                None => first = Some(g),
-                Some(f) => {
-                    sets.union(f, g);
-                }
-            }
-        }
-    };
-    for b in &network.branches {
+    let items = Items { network, rails };
+    let mut sets = Sets::new(rails.forest.groups + network.branches.len());
+    let mut joined = Vec::new();
+    for (n, b) in network.branches.iter().enumerate() {
+        joined.clear();
+        joined.extend(items.of_branch(n as u32));
         match b.law {
-            Law::Current(_) | Law::Voltage(_) | Law::Short => {}
-            Law::VoltageControlled(_, control) | Law::CurrentControlled(_, control) => {
-                let mut nodes = vec![b.from, b.to];
-                match control {
-                    Control::Voltage(p, q) => nodes.extend([p, q]),
-                    Control::Current(branch) => nodes.extend(far_side(network, rails, branch)),
-                }
-                join(&mut sets, &nodes);
-            }
-            _ => join(&mut sets, &[b.from, b.to]),
+            Law::Current(_) | Law::Voltage(_) | Law::Short => continue,
+            Law::VoltageControlled(_, control) | Law::CurrentControlled(_, control) => match control {
+                Control::Voltage(p, q) => joined.extend([p, q].into_iter().filter_map(|n| items.of_node(n))),
+                Control::Current(branch) => items.behind(branch, &mut joined),
+            },
+            _ => {}
+        }
+        joined.extend([b.from, b.to].into_iter().filter_map(|n| items.of_node(n)));
+        for pair in joined.windows(2) {
+            sets.union(pair[0], pair[1]);
         }
     }
-    collect(network, rails, &mut sets)
+    collect(&items, &mut sets)
 }
 
-/// Nodes beside the branches that leave a tie's far side: what its current depends on.
-fn far_side(network: &Network, rails: &Rails, branch: u32) -> Vec<u32> {
-    let Some(b) = network.branches.get(branch as usize) else { return Vec::new() };
-    let mut nodes = vec![b.from, b.to];
-    if let Some(beyond) = rails.beyond(branch) {
-        let leaves = |b: &&super::network::Branch| beyond[b.from as usize] != beyond[b.to as usize];
-        let others = network.branches.iter().filter(|b| fixed(b.law).is_none()).filter(leaves);
-        nodes.extend(others.flat_map(|b| [b.from, b.to]));
+/// What can be joined to a part: groups of nodes by number, then branches between boundaries.
+struct Items<'a> {
+    network: &'a Network,
+    rails: &'a Rails,
+}
+
+impl Items<'_> {
+    fn of_node(&self, node: u32) -> Option<u32> {
+        Some(self.rails.forest.group[node as usize]).filter(|&g| g != 0)
     }
-    nodes
+
+    /// Where a branch belongs; ties between boundaries belong nowhere.
+    fn of_branch(&self, n: u32) -> Option<u32> {
+        let b = self.network.branches.get(n as usize)?;
+        let own = (fixed(b.law).is_none()).then_some(self.rails.forest.groups as u32 + n);
+        self.of_node(b.from).or_else(|| self.of_node(b.to)).or(own)
+    }
+
+    /// Everything that the current of a tie depends on: the branches that leave its far side.
+    fn behind(&self, branch: u32, joined: &mut Vec<u32>) {
+        joined.extend(self.of_branch(branch));
+        if let Some(beyond) = self.rails.beyond(branch) {
+            let leaves = |b: &super::network::Branch| beyond[b.from as usize] != beyond[b.to as usize];
+            let others = self.network.branches.iter().enumerate();
+            let others = others.filter(|(_, b)| fixed(b.law).is_none() && leaves(b));
+            joined.extend(others.filter_map(|(n, _)| self.of_branch(n as u32)));
+        }
+    }
 }
 
-fn collect(network: &Network, rails: &Rails, sets: &mut Sets) -> Vec<Piece> {
-    let group = |n: u32| rails.forest.group[n as usize];
-    let mut number = vec![u32::MAX; rails.forest.groups];
+fn collect(items: &Items<'_>, sets: &mut Sets) -> Vec<Piece> {
+    let (network, rails) = (items.network, items.rails);
+    let mut number = vec![u32::MAX; rails.forest.groups + network.branches.len()];
     let mut pieces: Vec<Piece> = Vec::new();
-    let empty = |kind| Piece { kind, groups: Vec::new(), branches: Vec::new(), tainted: false };
-    for g in 1..rails.forest.groups as u32 {
-        let root = sets.find(g) as usize;
-        if number[root] == u32::MAX {
-            number[root] = pieces.len() as u32;
-            pieces.push(empty(Kind::Passive));
+    let mut place = |pieces: &mut Vec<Piece>, root: u32| {
+        let number = &mut number[root as usize];
+        if *number == u32::MAX {
+            *number = pieces.len() as u32;
+            pieces.push(Piece {
+                kind: Kind::Passive,
+                groups: Vec::new(),
+                branches: Vec::new(),
+                tainted: false,
+            });
         }
-        number[g as usize] = number[root];
-        pieces[number[root] as usize].groups.push(g);
+        *number as usize
+    };
+    for g in 1..rails.forest.groups as u32 {
+        let at = place(&mut pieces, sets.find(g));
+        pieces[at].groups.push(g);
     }
     for (n, b) in network.branches.iter().enumerate() {
-        let own = [group(b.from), group(b.to)].into_iter().find(|&g| g != 0);
-        let place = match (own, b.law) {
-            (Some(g), _) => number[g as usize],
-            // between boundaries: nothing else has a say in it
-            (None, law) if fixed(law).is_none() => {
-                pieces.push(empty(Kind::Passive));
-                pieces.len() as u32 - 1
-            }
-            _ => continue,
-        };
-        let piece = &mut pieces[place as usize];
+        let Some(item) = items.of_branch(n as u32) else { continue };
+        let at = place(&mut pieces, sets.find(item));
+        let piece = &mut pieces[at];
         piece.branches.push(n as u32);
         piece.kind = piece.kind.max(kind(b.law));
         if !matches!(b.law, Law::Current(_)) {

@@ -266,6 +266,12 @@ impl Ports {
         x.iter().copied().chain(i).collect()
     }
 
+    /// Currents beneath this are rounding.
+    pub(super) fn rounding(&self, a: &DVector<f64>) -> f64 {
+        let (v, i) = self.at(a);
+        1e-3 * self.room(&v, &i).1
+    }
+
     pub(super) fn expand_change(&self, direction: &DVector<f64>) -> Vec<f64> {
         let x = &self.x_of_a * direction;
         let i = &self.i_of_a * direction;
@@ -289,14 +295,15 @@ impl Ports {
     }
 }
 
-/// Geometric mean of the part's resistances.
+/// Geometric mean of the part's resistances, moved off any round ratio to them: a negative resistance beside its
+/// own magnitude would leave no answer.
 fn typical_resistance(network: &Network, dense: &Dense<'_>) -> f64 {
     let logs = dense.branches.iter().filter_map(|&n| match network.branches[n as usize].law {
         Law::Resistance(r) => Some(r.abs().ln()),
         _ => None,
     });
     let (sum, count) = logs.fold((0.0, 0usize), |(s, c), l| (s + l, c + 1));
-    if count == 0 { 1e3 } else { (sum / count as f64).exp() }
+    1.618_033_988_7 * if count == 0 { 1e3 } else { (sum / count as f64).exp() }
 }
 
 /// Solves a square system after scaling rows and columns; `None` without full rank.
