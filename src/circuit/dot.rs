@@ -132,7 +132,10 @@ impl Reader<'_> {
             return Next::From(close + 1);
         }
         let closes_nothing_new = word.starts_with("end") && word.len() > 3;
-        if PASSED_OVER.contains(&word) || closes_nothing_new && nearest(word, KNOWN).is_none() {
+        if PASSED_OVER.contains(&word)
+            || !self.told_words.insert(word.to_owned())
+            || closes_nothing_new && nearest(word, KNOWN).is_none()
+        {
             return Next::Line;
         }
         let mut finding = Finding::new(

@@ -13,8 +13,8 @@ use rustc_hash::FxHashMap;
 
 /// Instances within instances.
 const DEEPEST: usize = 64;
-/// Elements, instances and notes together, after expansion.
-pub(super) const MOST_PARTS: usize = 3_000_000;
+/// Elements, instances and notes together, after expansion; fewer in tests, which must be quick.
+pub(super) const MOST_PARTS: usize = if cfg!(test) { 30_000 } else { 3_000_000 };
 
 impl Expander<'_> {
     /// `instance = name *node subcircuit ["params:"] *pair`

@@ -23,6 +23,8 @@ mod semiconductor;
 mod settings;
 mod shape;
 mod source;
+#[cfg(test)]
+mod tests;
 mod title;
 mod told;
 mod trail;

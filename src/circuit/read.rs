@@ -7,7 +7,7 @@ use crate::config::Options;
 use crate::finding::{Edit, Finding, Severity};
 use crate::syntax::{self, Fields, Line as Cut, LineKind};
 use crate::text::{FileId, LoadProblem, Loader, Sources, Span};
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 use std::path::{Path, PathBuf};
 
 /// Longest file that is read, in bytes.
@@ -28,6 +28,8 @@ pub(super) struct Reader<'a> {
     /// Included files must lie below this.
     pub boundary: PathBuf,
     pub fields: Fields,
+    /// Unknown dot words that have been told: each is told once.
+    pub told_words: FxHashSet<String>,
     /// How many findings of each rule there are.
     counts: FxHashMap<&'static str, usize>,
 }
@@ -49,6 +51,7 @@ pub(super) fn read_files(
         open: vec![0],
         boundary,
         fields: Fields::default(),
+        told_words: FxHashSet::default(),
         counts: FxHashMap::default(),
     };
     reader.stack.push((reader.loader.resolve(root), None));

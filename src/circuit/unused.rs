@@ -27,7 +27,7 @@ impl<'a> Expander<'a> {
             return self.tell_no_elements();
         }
         // what is missing may be what uses them
-        if self.parsed.incomplete || self.stopped {
+        if self.circuit.incomplete || self.stopped {
             return;
         }
         let candidates = self.candidates();
@@ -108,7 +108,7 @@ impl<'a> Expander<'a> {
 
     fn tell_no_elements(&mut self) {
         // where something could not be read, that has been told
-        if self.parsed.incomplete {
+        if self.circuit.incomplete {
             return;
         }
         let definitions = self.parsed.blocks.len() - 1;

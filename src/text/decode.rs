@@ -16,7 +16,16 @@ pub enum Encoding {
 }
 
 /// Decodes a whole file. Invalid UTF-16 units become U+FFFD.
+/// Where carriage returns alone end the lines, they become line feeds.
 pub fn decode(bytes: &[u8]) -> (String, Encoding) {
+    let (text, encoding) = decoded(bytes);
+    if memchr::memchr(b'\n', text.as_bytes()).is_none() && text.contains('\r') {
+        return (text.replace('\r', "\n"), encoding);
+    }
+    (text, encoding)
+}
+
+fn decoded(bytes: &[u8]) -> (String, Encoding) {
     match bytes {
         [0xEF, 0xBB, 0xBF, rest @ ..] => {
             let (text, encoding) = utf8_or_latin1(rest);
