@@ -15,6 +15,8 @@ mod named;
 mod proof;
 mod reach;
 mod result;
+mod search;
+mod speaker;
 mod switch;
 #[cfg(test)]
 mod tests;

@@ -3,7 +3,7 @@
 use super::evaluated;
 use crate::complementarity::View;
 use crate::config::Options;
-use crate::operating::why::sentences;
+use crate::operating::speaker::sentences;
 
 /// The sentences about the only diode of a circuit with one source behind one resistor.
 fn reasoning(volts: &str, model: &str, open_circuit: f64, margin: f64) -> Vec<String> {
