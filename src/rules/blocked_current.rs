@@ -2,6 +2,7 @@
 
 use super::unlimited_current::is_current;
 use super::{Cause, Check, Evidence, Rule, causes, is_told};
+use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
@@ -38,7 +39,11 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         .collect()
 }
 
-/// A cut set: a current source takes part.
+/// A cut set: an independent current source takes part, or a controlled one and a diode that blocks it.
 pub fn is_ours(evidence: &Evidence<'_>, cause: &Cause<'_>) -> bool {
-    cause.contradiction.elements.iter().any(|&id| is_current(&evidence.circuit.element(id).behaviour))
+    let has = |wanted: fn(&Behaviour) -> bool| {
+        cause.contradiction.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
+    };
+    has(|b| matches!(b, Behaviour::CurrentSource(_)))
+        || (has(is_current) && has(|b| matches!(b, Behaviour::Diode { .. })))
 }
