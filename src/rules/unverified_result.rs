@@ -14,17 +14,16 @@ pub const RULE: Rule = Rule {
     remedy: "Look for values that are off by orders of magnitude (a missing `meg`, a resistance of 1e-15 Ω); take \
              elements out that stand for nothing but a short or an open circuit.",
     source: None,
-    failing: "tide gauge buoy: a shunt of next to nothing\n\
+    failing: "tide gauge buoy: a model with its series resistance mistyped\n\
               VBAT bat 0 12\n\
-              R1 bat a 1e12\n\
-              R2 a b 1e-300\n\
-              E1 c 0 b a 1e300\n\
-              R3 c b 1\n\
-              R4 b 0 1\n",
-    passing: "tide gauge buoy: a shunt\n\
+              R1 bat a 1k\n\
+              D1 a 0 DRECT\n\
+              .model DRECT D(IS=2.5n N=1.7 RS=1e-300)\n",
+    passing: "tide gauge buoy: a model with its series resistance\n\
               VBAT bat 0 12\n\
-              R1 bat a 10\n\
-              R2 a 0 0.01\n",
+              R1 bat a 1k\n\
+              D1 a 0 DRECT\n\
+              .model DRECT D(IS=2.5n N=1.7 RS=30m)\n",
     check: Check::States(check),
 };
 
