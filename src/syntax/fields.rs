@@ -81,10 +81,11 @@ fn is_value(token: Token) -> bool {
     matches!(token.kind, TokenKind::Word | TokenKind::Expression | TokenKind::Text)
 }
 
-/// `marker = "params:"`
+/// `marker = "params:" / "optional:" / "text:"`: the words before it are nodes or ports
 fn is_marker(text: &[u8], token: Token) -> bool {
     let word = text.get(token.start as usize..token.end as usize).unwrap_or_default();
-    word.len() == 7 && word.eq_ignore_ascii_case(b"params:")
+    let markers: [&[u8]; 3] = [b"params:", b"optional:", b"text:"];
+    word.last() == Some(&b':') && markers.iter().any(|m| word.eq_ignore_ascii_case(m))
 }
 
 #[cfg(test)]
