@@ -44,7 +44,10 @@ fn is_left_to_time(evidence: &Evidence<'_>, case: &Case, contradiction: &Contrad
         Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
         _ => false,
     };
+    // a controlled current into capacitors alone integrates: what feedback makes of it is no matter of one instant
+    let mut driven = evidence.wiring.cuts.iter().filter(|cut| cut.driven).flat_map(|cut| &cut.leads);
     has(|b| matches!(b, Behaviour::Inductor { .. })) && (case.instant || has(moves))
+        || driven.any(|id| contradiction.elements.contains(id))
 }
 
 /// The same elements, in whatever order the walk begins; without elements the words decide.
