@@ -135,9 +135,9 @@ impl Path<'_> {
     /// Current that a diode would add at unchanged voltage.
     fn offset(&self, n: usize, x: &Iterate, target: &[[f64; 2]]) -> f64 {
         let mut sum = 0.0;
-        for k in 0..self.active(n) {
+        for (k, goal) in target[n].iter().enumerate().take(self.active(n)) {
             let [i, s] = x.sides[n][k];
-            let side = (target[n][k] - i * s - i * self.miss(n, k, x)) / s;
+            let side = (goal - i * s - i * self.miss(n, k, x)) / s;
             sum += if k == 0 { side } else { -side };
         }
         sum
