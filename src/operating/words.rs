@@ -2,7 +2,7 @@
 
 use super::assemble::{Assembly, Owner, Setting};
 use super::result::Contradiction;
-use crate::circuit::{ElementId, NodeId};
+use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::complementarity::{Branch, Law, Part, Quantity, Reason, Solution, Verdict};
 use crate::finding::quantity;
 
@@ -266,7 +266,19 @@ impl Words<'_> {
     fn unknown(&self, branches: &[u32]) -> String {
         let names = self.names(branches.iter().copied());
         let is_or_are = if names.len() == 1 { "is" } else { "are" };
-        format!("{} {is_or_are} not modelled at the operating point", list(&names))
+        let reason = match (names.len(), branches.first().and_then(|&b| self.assembly.owner.get(b as usize)))
+        {
+            (1, Some(&Owner::Element(id))) => match self.setting.circuit.element(id).behaviour {
+                Behaviour::Unknown { reason } => format!(" ({reason})"),
+                Behaviour::Transistor { .. } => " (a transistor that no `hold` note holds)".to_owned(),
+                Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. } => {
+                    " (a switch that held sources do not decide)".to_owned()
+                }
+                _ => String::new(),
+            },
+            _ => String::new(),
+        };
+        format!("{} {is_or_are} not modelled at the operating point{reason}", list(&names))
     }
 }
 

@@ -78,7 +78,8 @@ fn unknown_elements_are_named_until_a_note_holds_them() {
     let lines = "VCC vcc 0 12\nRL vcc k 120\nD1 k vcc DX\nQ1 k b 0 QX\nVB b 0 1\n.model QX NPN\n.model DX D";
     let (operating, _, _) = evaluated(lines, &Options::default());
     assert_eq!(operating.cases[0].verdict, Verdict::Partial);
-    assert!(diode(&operating.cases[0], 0).not_evaluated.as_ref().unwrap().contains("Q1"));
+    let reason = diode(&operating.cases[0], 0).not_evaluated.clone().unwrap();
+    assert!(reason.contains("Q1") && reason.contains("no `hold` note"), "{reason}");
     let held = format!("{lines}\n*@ hold Q1 both");
     let (operating, _, _) = evaluated(&held, &Options::default());
     assert!(
