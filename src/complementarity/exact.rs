@@ -239,22 +239,27 @@ impl<'a> Solve<'a> {
         volts
     }
 
-    /// Whether an island gets current that no state lets out.
-    pub(super) fn leaks(&self) -> bool {
+    /// Islands of clusters that get current which no state lets out: the island of each group, and the current that
+    /// each island gains. `None` where there is none.
+    pub(super) fn leaking(&self) -> Option<(Vec<u32>, Vec<f64>)> {
         if self.pins.is_empty() {
-            return false;
+            return None;
         }
         let mut sets = Sets::new(self.forest.groups);
         for &(a, b) in &self.system.edges()[..self.links.len()] {
             sets.union(a, b);
         }
+        let island: Vec<u32> = self.forest.group.iter().map(|&g| sets.find(g)).collect();
         let mut sums = vec![(Dd::ZERO, 0.0); self.forest.groups];
-        for (&group, &i) in self.forest.group.iter().zip(&self.part.injected) {
-            let sum = &mut sums[sets.find(group) as usize];
+        for (&root, &i) in island.iter().zip(&self.part.injected) {
+            let sum = &mut sums[root as usize];
             sum.0 += i;
             sum.1 += i.abs();
         }
-        self.pins.iter().any(|&c| sums[c as usize].0.abs() > NOTHING * sums[c as usize].1)
+        let gain = |&(sum, gross): &(Dd, f64)| if sum.abs() > NOTHING * gross { sum.round() } else { 0.0 };
+        let mut gains: Vec<f64> = sums.iter().map(gain).collect();
+        gains[0] = 0.0;
+        gains.iter().any(|&g| g != 0.0).then_some((island, gains))
     }
 
     /// Whether some level is met between two groups of one cluster other than by the forest itself.

@@ -6,7 +6,7 @@
 use super::double_double::Dd;
 use super::laplacian::Laplacian;
 use super::passive::{Passive, Point, State};
-use super::pivoting::{conductances, pushed};
+use super::pivoting::{Ease, conductances, pushed};
 
 const STEPS: usize = 60;
 /// Mean product of current and slack, as a share of the start's, at which the states are read off.
@@ -24,7 +24,12 @@ struct Iterate {
 pub(super) fn propose(part: &Passive, system: &mut Laplacian) -> Point {
     let scales = part.scales();
     let amperes = (scales.volts * scales.least.max(scales.most * 1e-6)).max(typical_push(part));
-    let mut path = Path { part, g: conductances(part, system.edges().len()), push: pushed(part) };
+    let mut path = Path {
+        part,
+        g: conductances(part, system.edges().len()),
+        push: pushed(part),
+        leak: Ease::of(part).leak,
+    };
     let start = [[amperes, scales.volts]; 2];
     let mut x = Iterate { u: vec![0.0; part.nodes], sides: vec![start; part.diodes.len()] };
     let first = path.gap(&x);
@@ -45,6 +50,8 @@ struct Path<'a> {
     part: &'a Passive,
     g: Vec<f64>,
     push: Vec<f64>,
+    /// The leak keeps potentials that nothing else bounds where the others are.
+    leak: Vec<f64>,
 }
 
 impl Path<'_> {
@@ -72,7 +79,7 @@ impl Path<'_> {
         let first_diode = self.part.resistors.len();
         for n in 0..self.part.diodes.len() {
             let a: f64 = x.sides[n][..self.active(n)].iter().map(|[i, s]| i / s).sum();
-            self.g[first_diode + n] = a / (1.0 + a * self.part.diodes[n].series);
+            self.g[first_diode + n] = a / (1.0 + a * self.part.diodes[n].series) + self.leak[n];
         }
         system.factor(&self.g, false);
         let zero = vec![[0.0; 2]; x.sides.len()];
@@ -107,7 +114,8 @@ impl Path<'_> {
         for (n, d) in part.diodes.iter().enumerate() {
             let b = self.offset(n, x, target);
             let a: f64 = x.sides[n][..self.active(n)].iter().map(|[i, s]| i / s).sum();
-            let i = self.current(n, &x.sides[n]) + b / (1.0 + a * d.series);
+            let leak = self.leak[n] * (x.u[d.p as usize] - x.u[d.q as usize] + d.delta.round());
+            let i = self.current(n, &x.sides[n]) + b / (1.0 + a * d.series) + leak;
             rhs[d.p as usize] -= i;
             rhs[d.q as usize] += i;
             offsets.push((a, b));

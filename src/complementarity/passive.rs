@@ -78,6 +78,8 @@ pub(super) struct Scales {
     /// Greatest and least conductance.
     pub(super) most: f64,
     pub(super) least: f64,
+    /// Largest current that sources push in.
+    pub(super) pushed: f64,
 }
 
 impl Passive {
@@ -88,15 +90,17 @@ impl Passive {
         for g in conductances.filter(|g| g.is_finite() && *g > 0.0) {
             (most, least) = (most.max(g), least.min(g));
         }
-        if most == 0.0 {
-            (most, least) = (1.0, 1.0);
-        }
         let levels = self.resistors.iter().map(|r| r.delta.abs());
         let junctions = self.diodes.iter().map(|d| d.delta.abs().max(d.forward));
         let breakdowns = self.diodes.iter().map(|d| d.reverse).filter(|r| r.is_finite());
-        let pushed = self.injected.iter().skip(1).map(|i| i.abs() / most);
-        let volts = levels.chain(junctions).chain(breakdowns).chain(pushed).fold(0.0, f64::max);
-        Scales { volts: if volts > 0.0 { volts } else { 1.0 }, most, least }
+        let levels = levels.chain(junctions).chain(breakdowns).fold(0.0, f64::max);
+        let pushed = self.injected.iter().skip(1).map(|i| i.abs()).fold(0.0, f64::max);
+        if most == 0.0 {
+            let typical = if pushed > 0.0 && levels > 0.0 { pushed / levels } else { 1.0 };
+            (most, least) = (typical, typical);
+        }
+        let volts = levels.max(pushed / most);
+        Scales { volts: if volts > 0.0 { volts } else { 1.0 }, most, least, pushed }
     }
 
     /// Current of a resistor; a difference at the last digits of double-double numbers is nothing.

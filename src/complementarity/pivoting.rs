@@ -19,7 +19,9 @@ const SMALL: f64 = 1e-8;
 /// Small numbers of the eased network, for each diode: resistance while conducting, leak while blocking.
 pub(super) struct Ease {
     series: Vec<f64>,
-    leak: Vec<f64>,
+    pub(super) leak: Vec<f64>,
+    /// Voltage that leaks may account for: what is closer to its level is left to the exact solve.
+    doubt: f64,
 }
 
 impl Ease {
@@ -32,6 +34,7 @@ impl Ease {
         Ease {
             series: part.diodes.iter().map(|d| SMALL / least(d)).collect(),
             leak: part.diodes.iter().map(|d| SMALL * least(d)).collect(),
+            doubt: 10.0 * SMALL * part.scales().volts,
         }
     }
 }
@@ -56,8 +59,9 @@ fn around(part: &Passive) -> Vec<f64> {
                 }
             }
         }
-        let most = part.scales().most;
-        around.iter_mut().filter(|g| **g == 0.0).for_each(|g| *g = most);
+        let scales = part.scales();
+        let rest = if scales.pushed > 0.0 { scales.pushed / scales.volts } else { scales.most };
+        around.iter_mut().filter(|g| **g == 0.0).for_each(|g| *g = rest);
     }
     around
 }
@@ -141,8 +145,8 @@ fn review(part: &Passive, ease: &Ease, u: &[f64], states: &mut [State]) -> (usiz
         let next = match *state {
             State::Forward if v < diode.forward - room => State::Blocking,
             State::Reverse if v > -diode.reverse + room => State::Blocking,
-            State::Blocking if v > diode.forward + room => State::Forward,
-            State::Blocking if v < -diode.reverse - room => State::Reverse,
+            State::Blocking if v > diode.forward + room + ease.doubt => State::Forward,
+            State::Blocking if v < -diode.reverse - room - ease.doubt => State::Reverse,
             same => same,
         };
         let (g, level) = eased(ease, n, diode, *state);

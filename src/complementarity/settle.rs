@@ -38,9 +38,10 @@ pub(super) fn settle(part: &Passive, mut guide: Point) -> Settled {
         factorizations += solve.system.factorizations;
         let mut findings = check(&mut solve, &currents);
         mend_loops(&solve, &currents, &mut findings);
+        let leaks = let_out(&solve, &mut findings);
         let failing = findings.iter().filter(|f| matches!(f, Finding::Change(_))).count();
         let idle = failing == 0 && findings.contains(&Finding::Idle);
-        let (tied, leaks) = (solve.tied(findings.len()), solve.leaks());
+        let tied = solve.tied(findings.len());
         let potentials = std::mem::take(&mut solve.potentials);
         drop(solve);
         guide = Point { potentials, currents, states: guide.states };
@@ -110,6 +111,36 @@ fn check(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<Finding> {
             judge(d, state, (v - (d.series * i).into()).round(), i, room, small)
         })
         .collect()
+}
+
+/// Where an island gets current that nothing lets out, the junction that is nearest to doing so will. Whether there
+/// was such an island.
+fn let_out(solve: &Solve<'_>, findings: &mut [Finding]) -> bool {
+    let Some((island, gains)) = solve.leaking() else { return false };
+    let mut nearest = vec![(f64::INFINITY, 0usize, State::Blocking); gains.len()];
+    for (n, d) in solve.part.diodes.iter().enumerate() {
+        let (p, q) = (island[d.p as usize] as usize, island[d.q as usize] as usize);
+        if p == q || solve.guide.states[n] != State::Blocking {
+            continue;
+        }
+        let v = solve.part.across(d, &solve.potentials).round();
+        for (slack, state, from, to) in
+            [(d.forward - v, State::Forward, p, q), (d.reverse + v, State::Reverse, q, p)]
+        {
+            for at in [from, to] {
+                let helps = if at == from { gains[at] > 0.0 } else { gains[at] < 0.0 };
+                if helps && slack < nearest[at].0 {
+                    nearest[at] = (slack, n, state);
+                }
+            }
+        }
+    }
+    for (slack, n, state) in nearest {
+        if slack.is_finite() {
+            findings[n] = Finding::Change(state);
+        }
+    }
+    true
 }
 
 /// A junction that closes a loop of others and would carry more than its level allows drives current around that

@@ -217,7 +217,7 @@ pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
         }
         let (up, uq) = (u[b.from as usize], u[b.to as usize]);
         let v = up - uq;
-        let size = up.abs().max(uq.abs()).max(1e-6);
+        let size = up.abs().max(uq.abs()).max(1e-5);
         let off = match b.law {
             Law::Resistance(r) => (v - r * i[n]).abs() / size.max((r * i[n]).abs()),
             Law::Voltage(l) => (v - l.value).abs() / size.max(l.value.abs()),

@@ -11,15 +11,15 @@ struct Inflow {
     net: Dd,
     /// Sum of magnitudes.
     gross: f64,
-    /// Some term is not known.
-    unknown: bool,
+    /// Terms that are not known.
+    unknown: usize,
 }
 
 impl Inflow {
     fn add(&mut self, other: Inflow) {
         self.net += other.net;
         self.gross += other.gross;
-        self.unknown |= other.unknown;
+        self.unknown += other.unknown;
     }
 }
 
@@ -65,7 +65,7 @@ fn own(network: &Network, currents: &[f64]) -> Vec<Inflow> {
         for (node, value) in [(b.from as usize, -i), (b.to as usize, i)] {
             let unknown = i.is_nan();
             let value = if unknown { 0.0 } else { value };
-            own[node].add(Inflow { net: value.into(), gross: value.abs(), unknown });
+            own[node].add(Inflow { net: value.into(), gross: value.abs(), unknown: usize::from(unknown) });
         }
     }
     own
@@ -78,9 +78,9 @@ fn through(below: Inflow, whole: Inflow, reference: bool) -> f64 {
     let above = Inflow {
         net: below.net - whole.net,
         gross: (whole.gross - below.gross).max(0.0),
-        unknown: reference || whole.unknown,
+        unknown: whole.unknown - below.unknown + usize::from(reference),
     };
-    let better = match (below.unknown, above.unknown) {
+    let better = match (below.unknown > 0, above.unknown > 0) {
         (true, true) => return f64::NAN,
         (false, true) => below,
         (true, false) => above,
