@@ -1,6 +1,6 @@
 //! Blocks to the flat circuit: every instance expanded in place, every line's element made.
 
-use super::ids::{ElementId, NodeId, ScopeId, Symbol};
+use super::ids::{ElementId, Names, NodeId, ScopeId, Symbol};
 use super::line::Line;
 use super::parsed::{Parsed, Statement};
 use super::told::Told;
@@ -45,9 +45,10 @@ pub(crate) struct Expander<'a> {
     pub(super) frames: Vec<Frame<'a>>,
     /// Expressions within expressions.
     pub(super) depth: usize,
-    /// Root nodes and elements by folded name.
+    /// Root nodes by folded name.
     root_nodes: Vec<NodeId>,
-    root_elements: Vec<ElementId>,
+    /// Root elements with the hashes of their names; sorted when all are known.
+    root_elements: Vec<(u32, ElementId)>,
     pub(super) globals: FxHashSet<Symbol>,
     pub(super) model_ids: FxHashMap<(usize, ScopeId), super::ModelId>,
     pub(super) undefined_models: Vec<(Span, ElementId)>,
@@ -121,10 +122,11 @@ impl<'a> Expander<'a> {
     fn root(&mut self) {
         let count = self.parsed.statements.len();
         let names = &mut self.circuit.names;
-        names.reserve(count + count / 2);
+        names.reserve(count);
         let (zero, empty) = (names.intern("0"), names.intern(""));
         self.circuit.elements.reserve(count);
         self.circuit.pins.reserve(2 * count);
+        self.root_elements.reserve(count);
         let nowhere = self.parsed.blocks[0].statement;
         self.circuit.nodes.push(Node { name: zero, scope: ScopeId::ROOT, first: nowhere });
         self.circuit.scopes.push(Scope {
@@ -144,6 +146,7 @@ impl<'a> Expander<'a> {
         }
         self.settings();
         self.body(0);
+        self.sort_root_elements();
         self.finish_frame();
         self.tell_undefined_models();
         self.tell_missing_subcircuits();
@@ -217,7 +220,7 @@ impl<'a> Expander<'a> {
         behaviour: Behaviour,
     ) -> ElementId {
         let id = ElementId::new(self.circuit.elements.len());
-        let name = self.circuit.names.intern(line.word_str(0));
+        let name = self.name_element(line.word_str(0), id);
         let scope = self.frame().scope;
         let pin_count = self.circuit.pins.len() - first_pin;
         self.circuit.elements.push(Element {
@@ -234,17 +237,44 @@ impl<'a> Expander<'a> {
         id
     }
 
+    fn name_element(&mut self, name: &str, id: ElementId) -> Symbol {
+        if self.frames.len() > 1 {
+            return self.circuit.names.intern(name);
+        }
+        let (symbol, hash) = self.circuit.names.append(name);
+        self.root_elements.push((hash, id));
+        symbol
+    }
+
     fn register(&mut self, name: Symbol, id: ElementId) {
+        if self.frames.len() <= 1 {
+            return;
+        }
         let folded = self.circuit.names.fold(name);
-        let known = if self.frames.len() <= 1 {
-            let slot = slot(&mut self.root_elements, folded, ElementId(NONE));
-            std::mem::replace(slot, if slot.0 == NONE { id } else { *slot })
-        } else {
-            *self.frame().elements.entry(folded).or_insert(id)
-        };
-        if known.0 != NONE && known != id {
+        let known = *self.frame().elements.entry(folded).or_insert(id);
+        if known != id {
             self.tell_duplicate(known, id);
         }
+    }
+
+    /// Sorts the root's elements by the hashes of their names, to find them by name, and tells names given twice.
+    fn sort_root_elements(&mut self) {
+        let mut sorted = std::mem::take(&mut self.root_elements);
+        sorted.sort_unstable();
+        for same_hash in sorted.chunk_by(|a, b| a.0 == b.0).filter(|group| group.len() > 1) {
+            for (n, &(_, id)) in same_hash.iter().enumerate().skip(1) {
+                let first = same_hash[..n].iter().map(|e| e.1).find(|&first| self.same_name(first, id));
+                if let Some(first) = first {
+                    self.tell_duplicate(first, id);
+                }
+            }
+        }
+        self.root_elements = sorted;
+    }
+
+    fn same_name(&self, a: ElementId, b: ElementId) -> bool {
+        let name = |id: ElementId| self.circuit.text(self.circuit.element(id).name);
+        name(a).eq_ignore_ascii_case(name(b))
     }
 
     fn tell_duplicate(&mut self, first: ElementId, second: ElementId) {
@@ -265,12 +295,16 @@ impl<'a> Expander<'a> {
 
     /// The element of that name in the innermost frame.
     pub(super) fn find_element(&mut self, name: &str) -> Option<ElementId> {
-        let folded = self.circuit.names.find(name)?;
-        if self.frames.len() <= 1 {
-            self.root_elements.get(folded.index()).copied().filter(|id| id.0 != NONE)
-        } else {
-            self.frame().elements.get(&folded).copied()
+        if self.frames.len() > 1 {
+            let folded = self.circuit.names.find(name)?;
+            return self.frame().elements.get(&folded).copied();
         }
+        let hash = Names::short_hash(name);
+        let first = self.root_elements.partition_point(|e| e.0 < hash);
+        let same_hash = self.root_elements.get(first..)?.iter().take_while(|e| e.0 == hash);
+        let is_named =
+            |id: ElementId| self.circuit.text(self.circuit.element(id).name).eq_ignore_ascii_case(name);
+        same_hash.map(|e| e.1).find(|&id| is_named(id))
     }
 
     /// The node of that name in the innermost frame, new or known.

@@ -114,6 +114,20 @@ impl Names {
         Symbol(id)
     }
 
+    /// A number for a spelling that is not to be looked up here, with its case-blind hash: the names of elements,
+    /// nearly all of which are new, would only make the table too large for the caches.
+    pub fn append(&mut self, text: &str) -> (Symbol, u32) {
+        let id = Symbol::new(self.ends.len());
+        self.bytes.push_str(text);
+        self.ends.push(u32::try_from(self.bytes.len()).unwrap_or(u32::MAX));
+        (id, Names::short_hash(text))
+    }
+
+    /// The hash that [`Names::append`] gives.
+    pub fn short_hash(text: &str) -> u32 {
+        (hash(text.as_bytes()) >> 32) as u32
+    }
+
     /// The number of a name already known in any case, as [`Names::fold`] gives it.
     pub fn find(&self, text: &str) -> Option<Symbol> {
         let text = text.as_bytes();
