@@ -19,7 +19,6 @@ impl Expander<'_> {
             return 2;
         }
         match other.iter().find(|w| word.eq_ignore_ascii_case(w)) {
-            Some(&"poly") if line.is(4, "1") => 2,
             Some(_) => 2,
             None => 4,
         }
@@ -39,10 +38,13 @@ impl Expander<'_> {
         if rest == 5 {
             return self.gain(line, rest).map(Some);
         }
-        if !(line.is(3, "poly") && line.is(4, "1")) {
+        let variables = line.word_str(4).parse::<usize>().ok().filter(|_| line.is(3, "poly"));
+        let Some(variables) = variables else { return Ok(None) };
+        // whatever the polynomial is, the element looks at these nodes
+        self.push_pins(line, 5, 5 + 2 * variables.min(line.len()));
+        if variables != 1 {
             return Ok(None);
         }
-        self.push_pins(line, 5, 7);
         Ok(self.linear_polynomial(line, 7))
     }
 
