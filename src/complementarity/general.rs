@@ -10,9 +10,6 @@ use super::ports::{Ports, Trial};
 use super::rails::Rails;
 use super::solve::Answer;
 
-/// Combinations of states tried at most.
-const MOST_TRIALS: u64 = 300_000;
-
 /// One consistent set of a part.
 pub(super) struct Set {
     potentials: Vec<(u32, f64)>,
@@ -75,24 +72,19 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
         });
         return;
     };
-    let (trials, complete) = ports.consistent(MOST_TRIALS);
+    let (trials, complete) = ports.consistent();
     answer.truncated = !complete || trials.len() > super::assemble::MOST_SETS;
-    if !complete {
-        answer.reasons.push(Reason::Dependent {
-            text: format!(
-                "the search stopped after {MOST_TRIALS} combinations of states; more sets may exist"
-            ),
-        });
-    }
     answer.verdict = match trials.len() {
         0 if complete => Verdict::None,
         0 => Verdict::Unverified,
         1 if complete => Verdict::Unique,
-        1 => Verdict::Unverified,
         _ => Verdict::Several,
     };
-    if trials.is_empty() && complete {
-        let text = format!("none of the {} combinations of states is consistent", ports.combinations());
+    if !complete {
+        let text = "there are too many combinations of states to try them all: more sets may exist".into();
+        answer.reasons.push(Reason::Dependent { text });
+    } else if trials.is_empty() {
+        let text = "no combination of states of its diodes is consistent".into();
         answer.reasons.push(Reason::Dependent { text });
     }
     let sets = trials.iter().take(super::assemble::MOST_SETS);

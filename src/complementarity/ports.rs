@@ -5,12 +5,17 @@
 use super::dense::Dense;
 use super::network::{Junction, Law, Network};
 use super::outcome::{Interval, Place, View};
-use nalgebra::{DMatrix, DVector};
+use nalgebra::{DMatrix, DVector, RowDVector};
 
 /// Share of the largest voltage or current below which a difference is nothing.
 const NOTHING: f64 = 1e-10;
 /// Ratio of pivots below which a system has no full rank.
 const RANK: f64 = 1e-11;
+
+/// Work spent on the combinations of one block, in multiplications.
+const WORK: u64 = 50_000_000;
+/// Sets kept at most while blocks are put together.
+const MOST_KEPT: usize = 64;
 
 /// The reduced part.
 pub(super) struct Ports {
@@ -33,6 +38,13 @@ pub(super) struct Trial {
     pub(super) places: Vec<Place>,
     /// Directions in which the set extends, and how far.
     pub(super) open: Vec<(DVector<f64>, Interval)>,
+}
+
+impl Trial {
+    /// Nothing decided yet.
+    fn start(count: usize) -> Self {
+        Trial { currents: DVector::zeros(count), places: vec![Place::Blocking; count], open: Vec::new() }
+    }
 }
 
 impl Ports {
@@ -73,29 +85,115 @@ impl Ports {
         if self.laws[k].reverse.is_some() { 3 } else { 2 }
     }
 
-    /// Number of combinations of states.
-    pub(super) fn combinations(&self) -> u64 {
-        (0..self.laws.len()).fold(1u64, |n, k| n.saturating_mul(self.choices(k)))
+    /// Number of combinations of states in some junctions.
+    fn combinations(&self, block: &[usize]) -> u64 {
+        block.iter().fold(1u64, |n, &k| n.saturating_mul(self.choices(k)))
     }
 
-    /// Consistent sets, and whether all combinations were tried.
-    pub(super) fn consistent(&self, most: u64) -> (Vec<Trial>, bool) {
-        let all = self.combinations();
+    /// Consistent sets, and whether all combinations were tried. Junctions are taken in blocks that only listen to
+    /// earlier ones, so that combinations multiply within a block alone.
+    pub(super) fn consistent(&self) -> (Vec<Trial>, bool) {
+        let count = self.laws.len();
+        let mut sets = vec![Trial::start(count)];
+        let mut complete = true;
+        let blocks = self.blocks();
+        for block in &blocks {
+            let mut more = Vec::new();
+            for set in &sets {
+                complete &= self.extend(set, block, &mut more);
+                complete &= more.len() <= MOST_KEPT;
+                more.truncate(MOST_KEPT);
+            }
+            sets = more;
+        }
+        (sets, complete)
+    }
+
+    /// Every way in which a block's junctions can join a set of earlier ones.
+    fn extend(&self, set: &Trial, block: &[usize], more: &mut Vec<Trial>) -> bool {
+        let all = self.combinations(block);
+        // the work of one combination is a dense solve
+        let most = (WORK / (block.len() as u64 + 1).pow(3)).max(1);
         let mut found: Vec<Trial> = Vec::new();
         for number in 0..all.min(most) {
             let mut rest = number;
-            let places: Vec<Place> = (0..self.laws.len())
-                .map(|k| {
-                    let choice = rest % self.choices(k);
-                    rest /= self.choices(k);
-                    [Place::Blocking, Place::Conducting, Place::Breakdown][choice as usize]
-                })
-                .collect();
-            if let Some(trial) = self.attempt(&places) {
+            let mut places = set.places.clone();
+            for &k in block {
+                let choice = rest % self.choices(k);
+                rest /= self.choices(k);
+                places[k] = [Place::Blocking, Place::Conducting, Place::Breakdown][choice as usize];
+            }
+            if let Some(trial) = self.attempt(set, block, &places) {
                 self.keep(&mut found, trial);
             }
         }
-        (found, all <= most)
+        if all > most && found.is_empty() {
+            found.extend(self.pivot(set, block));
+        }
+        more.append(&mut found);
+        all <= most
+    }
+
+    /// One set by assumed states, where there are too many combinations to try: all that fail change, then the first
+    /// that fails (Murty 1974).
+    fn pivot(&self, set: &Trial, block: &[usize]) -> Option<Trial> {
+        for start in [Place::Conducting, Place::Blocking] {
+            let mut places = set.places.clone();
+            block.iter().for_each(|&k| places[k] = start);
+            for round in 0..20 + 4 * block.len() {
+                let a = self.solve_block(set, block, &places)?;
+                let (v, i) = self.at(&a);
+                let (volts, amperes) = self.room(&v, &i);
+                let wrong: Vec<(usize, Place)> = block
+                    .iter()
+                    .filter_map(|&k| self.better(k, places[k], v[k], i[k], volts, amperes).map(|p| (k, p)))
+                    .collect();
+                if wrong.is_empty() {
+                    return self.judged(a, block, &places);
+                }
+                let one = if round < 20 { wrong.len() } else { 1 };
+                wrong.iter().take(one).for_each(|&(k, place)| places[k] = place);
+            }
+        }
+        None
+    }
+
+    /// The place that a junction should have instead, if its assumption fails.
+    fn better(&self, k: usize, place: Place, v: f64, i: f64, volts: f64, amperes: f64) -> Option<Place> {
+        let law = &self.laws[k];
+        let inner = v - law.series * i;
+        match place {
+            Place::Conducting if i < -amperes => Some(Place::Blocking),
+            Place::Breakdown if i > amperes => Some(Place::Blocking),
+            Place::Blocking if inner > law.forward.value + volts => Some(Place::Conducting),
+            Place::Blocking if law.reverse.is_some_and(|r| inner < -r.value - volts) => {
+                Some(Place::Breakdown)
+            }
+            _ => None,
+        }
+    }
+
+    /// Junctions that listen to each other, each block after those that it listens to.
+    fn blocks(&self) -> Vec<Vec<usize>> {
+        let count = self.laws.len();
+        let mut graph = petgraph::graph::DiGraph::<(), (), u32>::with_capacity(count, count * count);
+        let nodes: Vec<_> = (0..count).map(|_| graph.add_node(())).collect();
+        for j in 0..count {
+            let largest = self.v_of_a.row(j).amax();
+            for k in (0..count).filter(|&k| k != j) {
+                if self.v_of_a[(j, k)].abs() > 1e-12 * largest {
+                    graph.add_edge(nodes[k], nodes[j], ());
+                }
+            }
+        }
+        // listed so that what is listened to comes last
+        let mut blocks: Vec<Vec<usize>> = petgraph::algo::kosaraju_scc(&graph)
+            .into_iter()
+            .map(|block| block.into_iter().map(|n| n.index()).collect())
+            .collect();
+        blocks.iter_mut().for_each(|b: &mut Vec<usize>| b.sort_unstable());
+        blocks.reverse();
+        blocks
     }
 
     /// Keeps a set that is not one of those found.
@@ -123,38 +221,73 @@ impl Ports {
         (a - b).amax() <= 1e-8 * size
     }
 
+    /// Law row of junction `k` in a place: `row · a = level`.
+    fn row(&self, k: usize, place: Place) -> (RowDVector<f64>, f64) {
+        let law = &self.laws[k];
+        let level = match place {
+            Place::Conducting | Place::Open => Some(law.forward.value),
+            Place::Breakdown => law.reverse.map(|r| -r.value),
+            _ => None,
+        };
+        match level {
+            Some(level) => {
+                let row = self.v_of_a.row(k) - self.i_of_a.row(k) * law.series;
+                (row, level - self.v0[k] + law.series * self.i0[k])
+            }
+            None => (self.i_of_a.row(k) * self.rho, -self.i0[k] * self.rho),
+        }
+    }
+
     /// Law rows of a set of states: `matrix · a = right`.
     fn rows(&self, places: &[Place]) -> (DMatrix<f64>, DVector<f64>) {
         let count = self.laws.len();
         let mut matrix = DMatrix::zeros(count, count);
         let mut right = DVector::zeros(count);
-        for (k, (law, place)) in self.laws.iter().zip(places).enumerate() {
-            let level = match place {
-                Place::Conducting | Place::Open => Some(law.forward.value),
-                Place::Breakdown => law.reverse.map(|r| -r.value),
-                _ => None,
-            };
-            match level {
-                Some(level) => {
-                    let row = self.v_of_a.row(k) - self.i_of_a.row(k) * law.series;
-                    matrix.set_row(k, &row);
-                    right[k] = level - self.v0[k] + law.series * self.i0[k];
-                }
-                None => {
-                    matrix.set_row(k, &(self.i_of_a.row(k) * self.rho));
-                    right[k] = -self.i0[k] * self.rho;
-                }
+        for (k, &place) in places.iter().enumerate() {
+            let (row, level) = self.row(k, place);
+            matrix.set_row(k, &row);
+            right[k] = level;
+        }
+        (matrix, right)
+    }
+
+    fn attempt(&self, set: &Trial, block: &[usize], places: &[Place]) -> Option<Trial> {
+        let mut trial = match self.solve_block(set, block, places) {
+            Some(a) => self.judged(a, block, places)?,
+            None => {
+                let (matrix, right) = self.block_rows(set, block, places);
+                self.continuum(&set.currents, &matrix, &right, block, places)?
+            }
+        };
+        trial.open.splice(0..0, set.open.iter().cloned());
+        Some(trial)
+    }
+
+    /// Law rows of a block, what earlier blocks contribute on the right.
+    fn block_rows(&self, set: &Trial, block: &[usize], places: &[Place]) -> (DMatrix<f64>, DVector<f64>) {
+        let size = block.len();
+        let mut matrix = DMatrix::zeros(size, size);
+        let mut right = DVector::zeros(size);
+        for (r, &k) in block.iter().enumerate() {
+            let (row, level) = self.row(k, places[k]);
+            let known: f64 =
+                (0..row.len()).filter(|c| !block.contains(c)).map(|c| row[c] * set.currents[c]).sum();
+            right[r] = level - known;
+            for (c, &other) in block.iter().enumerate() {
+                matrix[(r, c)] = row[other];
             }
         }
         (matrix, right)
     }
 
-    fn attempt(&self, places: &[Place]) -> Option<Trial> {
-        let (matrix, right) = self.rows(places);
-        match solved(&matrix, &DMatrix::from_column_slice(right.len(), 1, right.as_slice())) {
-            Some(a) => self.judged(a.column(0).into_owned(), places),
-            None => self.continuum(&matrix, &right, places),
+    fn solve_block(&self, set: &Trial, block: &[usize], places: &[Place]) -> Option<DVector<f64>> {
+        let (matrix, right) = self.block_rows(set, block, places);
+        let solution = solved(&matrix, &DMatrix::from_column_slice(right.len(), 1, right.as_slice()))?;
+        let mut a = set.currents.clone();
+        for (r, &k) in block.iter().enumerate() {
+            a[k] = solution[(r, 0)];
         }
+        Some(a)
     }
 
     /// Voltage and current of each junction at `a`.
@@ -169,11 +302,12 @@ impl Ports {
     }
 
     /// The set, if every inequality holds.
-    fn judged(&self, a: DVector<f64>, places: &[Place]) -> Option<Trial> {
+    fn judged(&self, a: DVector<f64>, block: &[usize], places: &[Place]) -> Option<Trial> {
         let (v, i) = self.at(&a);
         let (volts, amperes) = self.room(&v, &i);
-        let mut found = Vec::with_capacity(places.len());
-        for (k, (law, place)) in self.laws.iter().zip(places).enumerate() {
+        let mut found = places.to_vec();
+        for &k in block {
+            let (law, place) = (&self.laws[k], &places[k]);
             let inner = v[k] - law.series * i[k];
             let reverse = law.reverse.map_or(f64::INFINITY, |r| r.value);
             let holds = match place {
@@ -184,25 +318,37 @@ impl Ports {
             if !holds || !inner.is_finite() {
                 return None;
             }
-            found.push(if i[k].abs() <= amperes { Place::Blocking } else { *place });
+            found[k] = if i[k].abs() <= amperes { Place::Blocking } else { *place };
         }
         Some(Trial { currents: a, places: found, open: Vec::new() })
     }
 
     /// A system without full rank: if it is consistent, the set extends along its null space as far as the
     /// inequalities let it.
-    fn continuum(&self, matrix: &DMatrix<f64>, right: &DVector<f64>, places: &[Place]) -> Option<Trial> {
+    fn continuum(
+        &self,
+        earlier: &DVector<f64>,
+        matrix: &DMatrix<f64>,
+        right: &DVector<f64>,
+        block: &[usize],
+        places: &[Place],
+    ) -> Option<Trial> {
         let svd = matrix.clone().svd(true, true);
         let largest = svd.singular_values.max();
-        let a = svd.solve(right, 1e-9 * largest).ok()?;
-        let miss = (matrix * &a - right).amax();
+        let part = svd.solve(right, 1e-9 * largest).ok()?;
+        let miss = (matrix * &part - right).amax();
         if miss > 1e-8 * right.amax().max(1e-9) {
             return None;
         }
         let null = svd.v_t.as_ref()?;
         let (last, _) = svd.singular_values.argmin();
-        let direction: DVector<f64> = null.row(last).transpose();
-        let room = self.extent(&a, &direction, places)?;
+        let mut a = earlier.clone();
+        let mut direction = DVector::zeros(a.len());
+        for (r, &k) in block.iter().enumerate() {
+            a[k] = part[r];
+            direction[k] = null[(last, r)];
+        }
+        let room = self.extent(&a, &direction, block, places)?;
         let middle = match (room.low.is_finite(), room.high.is_finite()) {
             (true, true) => (room.low + room.high) / 2.0,
             (true, false) => room.low,
@@ -210,19 +356,23 @@ impl Ports {
             (false, false) => 0.0,
         };
         let at = &a + &direction * middle;
-        let mut trial = self.judged(at, places)?;
+        let mut trial = self.judged(at, block, places)?;
         let room = Interval { low: room.low - middle, high: room.high - middle };
         if room.high - room.low > 1e-9 {
-            for (place, assumed) in trial.places.iter_mut().zip(places) {
-                *place = *assumed;
-            }
+            block.iter().for_each(|&k| trial.places[k] = places[k]);
             trial.open.push((direction, room));
         }
         Some(trial)
     }
 
     /// How far `a` may move along `direction` before an inequality fails.
-    fn extent(&self, a: &DVector<f64>, direction: &DVector<f64>, places: &[Place]) -> Option<Interval> {
+    fn extent(
+        &self,
+        a: &DVector<f64>,
+        direction: &DVector<f64>,
+        block: &[usize],
+        places: &[Place],
+    ) -> Option<Interval> {
         let (v, i) = self.at(a);
         let (dv, di) = (&self.v_of_a * direction, &self.i_of_a * direction);
         let mut room = Interval { low: f64::NEG_INFINITY, high: f64::INFINITY };
@@ -240,7 +390,8 @@ impl Ports {
             }
             true
         };
-        for (k, (law, place)) in self.laws.iter().zip(places).enumerate() {
+        for &k in block {
+            let (law, place) = (&self.laws[k], &places[k]);
             let (inner, change) = (v[k] - law.series * i[k], dv[k] - law.series * di[k]);
             let holds = match place {
                 Place::Conducting => limit(i[k], di[k], amperes),
