@@ -40,6 +40,11 @@ impl Flow {
         self.capacity[arc as usize ^ 1] = 0.0;
     }
 
+    /// Whether nothing can pass an arc either way.
+    pub(super) fn closed(&self, arc: u32) -> bool {
+        self.capacity[arc as usize] == 0.0 && self.capacity[arc as usize ^ 1] == 0.0
+    }
+
     /// Limits the way there of an arc.
     pub(super) fn limit(&mut self, arc: u32, capacity: f64) {
         self.capacity[arc as usize] = self.capacity[arc as usize].min(capacity);

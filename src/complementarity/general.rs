@@ -6,7 +6,7 @@ use super::dense::Dense;
 use super::network::{Law, Network};
 use super::outcome::{Interval, Place, Quantity, Reason, Solution, Verdict, View};
 use super::parts::Piece;
-use super::ports::{Ports, Trial};
+use super::ports::{Ports, Trial, contradicts};
 use super::rails::Rails;
 use super::solve::Answer;
 
@@ -66,10 +66,14 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
         return;
     }
     let Some(ports) = Ports::new(network, &dense) else {
-        answer.verdict = Verdict::None;
-        answer.reasons.push(Reason::Dependent {
-            text: "the controlled sources leave the linear circuit without a unique answer".into(),
-        });
+        let contradicts = contradicts(&dense);
+        answer.verdict = if contradicts { Verdict::None } else { Verdict::Unverified };
+        let text = if contradicts {
+            "the laws of the controlled sources contradict each other"
+        } else {
+            "the controlled sources leave the linear circuit without a unique answer"
+        };
+        answer.reasons.push(Reason::Dependent { text: text.into() });
         return;
     };
     let (trials, complete) = ports.consistent();

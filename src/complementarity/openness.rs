@@ -156,14 +156,48 @@ impl<L: Fn(u32) -> u32> Idle<'_, L> {
                 return undone;
             }
         }
-        self.forbid_return(flow, from, to);
-        undone + flow.greatest(from, to)
+        if !self.reroute(flow, from, to) {
+            return undone;
+        }
+        // a way back is cut at either end; which end leaves more depends on what else is to be undone
+        let whole = flow.capacities();
+        let mut most = 0.0f64;
+        for last in [true, false] {
+            flow.restore(&whole);
+            self.forbid_return(flow, from, to, last);
+            most = most.max(flow.greatest(from, to));
+        }
+        undone + most
     }
 
-    /// Closes the last arc of every way without voltage from `from` to `to`. Undoing a current is no such way, but
-    /// ends where nothing is left to undo.
-    fn forbid_return(&self, flow: &mut Flow, from: u32, to: u32) {
-        let ahead = self.reach(from);
+    /// Sends what runs straight back from `from` to `to` another way; `false` where some of it has no other.
+    fn reroute(&self, flow: &mut Flow, from: u32, to: u32) -> bool {
+        let mut all = true;
+        for (k, &n) in self.block.iter().enumerate() {
+            let arc = &self.arcs[n as usize];
+            let ends = ((self.local)(arc.from), (self.local)(arc.to));
+            let beside = if ends == (from, to) { arc.current } else { -arc.current };
+            if arc.idle
+                && (ends == (from, to) || ends == (to, from))
+                && beside > 0.0
+                && !flow.closed(2 * k as u32)
+            {
+                flow.close(2 * k as u32);
+                all &= flow.at_most(from, to, beside) >= beside * (1.0 - POINT);
+            }
+        }
+        all
+    }
+
+    /// Closes the last (or first) arc of every way without voltage from `from` to `to`. Undoing a current is no such
+    /// way, but ends where nothing is left to undo.
+    fn forbid_return(&self, flow: &mut Flow, from: u32, to: u32, last: bool) {
+        let ahead = self.reach(from, false);
+        let behind = self.reach(to, true);
+        let closes = |a: u32, b: u32| match last {
+            true => ahead[a as usize] && b == to,
+            false => behind[b as usize] && a == from,
+        };
         for (k, &n) in self.block.iter().enumerate() {
             let arc = &self.arcs[n as usize];
             if !arc.idle {
@@ -171,17 +205,18 @@ impl<L: Fn(u32) -> u32> Idle<'_, L> {
             }
             let (a, b) = ((self.local)(arc.from), (self.local)(arc.to));
             let [there, back] = ways(arc);
-            if (there && ahead[a as usize] && b == to) || arc.current < 0.0 {
+            if (there && closes(a, b)) || arc.current < 0.0 {
                 flow.limit(2 * k as u32, (-arc.current).max(0.0));
             }
-            if arc.fall == f64::INFINITY && ((back && ahead[b as usize] && a == to) || arc.current > 0.0) {
+            if arc.fall == f64::INFINITY && ((back && closes(b, a)) || arc.current > 0.0) {
                 flow.limit(2 * k as u32 + 1, arc.current.max(0.0));
             }
         }
     }
 
-    /// Nodes that new current through arcs without voltage leads to from `start`.
-    fn reach(&self, start: u32) -> Vec<bool> {
+    /// Nodes that new current through arcs without voltage leads to from `start`; with `back`, from which it leads
+    /// there.
+    fn reach(&self, start: u32, back: bool) -> Vec<bool> {
         let mut seen = vec![false; self.nodes];
         let mut queue = vec![start];
         seen[start as usize] = true;
@@ -192,6 +227,7 @@ impl<L: Fn(u32) -> u32> Idle<'_, L> {
                     continue;
                 }
                 let (a, b) = ((self.local)(arc.from), (self.local)(arc.to));
+                let (a, b) = if back { (b, a) } else { (a, b) };
                 let [there, reverse] = ways(arc);
                 for (near, far, open) in [(a, b, there), (b, a, reverse)] {
                     if open && near == node && !seen[far as usize] {

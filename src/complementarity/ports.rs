@@ -12,6 +12,8 @@ const NOTHING: f64 = 1e-10;
 /// Ratio of pivots below which a system has no full rank.
 const RANK: f64 = 1e-11;
 
+/// Greatest amplification from a junction to a junction that double precision can still carry.
+const BLOWN_UP: f64 = 1e10;
 /// Work spent on the combinations of one block, in multiplications.
 const WORK: u64 = 50_000_000;
 /// Sets kept at most while blocks are put together.
@@ -38,6 +40,29 @@ pub(super) struct Trial {
     pub(super) places: Vec<Place>,
     /// Directions in which the set extends, and how far.
     pub(super) open: Vec<(DVector<f64>, Interval)>,
+}
+
+/// Whether the linear rest contradicts itself, where it has no unique answer.
+pub(super) fn contradicts(dense: &Dense<'_>) -> bool {
+    let size = dense.rhs.len();
+    if size == 0 || size > 300 {
+        return false;
+    }
+    // unknowns and junction currents alike are free to help
+    let mut all = DMatrix::zeros(size, size + dense.ports.ncols());
+    all.columns_mut(0, size).copy_from(&dense.matrix);
+    all.columns_mut(size, dense.ports.ncols()).copy_from(&dense.ports);
+    let mut rhs = DVector::from_column_slice(&dense.rhs);
+    for r in 0..size {
+        let largest = all.row(r).amax();
+        if largest > 0.0 {
+            all.row_mut(r).scale_mut(1.0 / largest);
+            rhs[r] /= largest;
+        }
+    }
+    let svd = all.clone().svd(true, true);
+    let Ok(x) = svd.solve(&rhs, 1e-10 * svd.singular_values.max()) else { return false };
+    (&all * x - &rhs).amax() > 1e-7 * rhs.amax()
 }
 
 impl Trial {
@@ -78,6 +103,10 @@ impl Ports {
             _ => None,
         };
         let laws = dense.junctions.iter().filter_map(junction).collect();
+        // a rest that blows the smallest input up this far has no full rank but for rounding
+        if v_of_a.amax() > BLOWN_UP {
+            return None;
+        }
         Some(Ports { junctions: dense.junctions.clone(), laws, rho, x0, x_of_a, v0, v_of_a, i0, i_of_a })
     }
 
