@@ -6,7 +6,7 @@ use super::dense::Dense;
 use super::network::{Law, Network};
 use super::outcome::{Interval, Place, Quantity, Reason, Solution, Verdict, View};
 use super::parts::Piece;
-use super::ports::{Ports, Trial, contradicts};
+use super::ports::{Ports, Trial};
 use super::rails::Rails;
 use super::solve::Answer;
 
@@ -66,14 +66,7 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
         return;
     }
     let Some(ports) = Ports::new(network, &dense) else {
-        let contradicts = contradicts(&dense);
-        answer.verdict = if contradicts { Verdict::None } else { Verdict::Unverified };
-        let text = if contradicts {
-            "the laws of the controlled sources contradict each other"
-        } else {
-            "the controlled sources leave the linear circuit without a unique answer"
-        };
-        answer.reasons.push(Reason::Dependent { text: text.into() });
+        whole(network, &dense, answer);
         return;
     };
     let (trials, complete) = ports.consistent();
@@ -92,23 +85,62 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
         answer.reasons.push(Reason::Dependent { text });
     }
     let sets = trials.iter().take(super::assemble::MOST_SETS);
-    answer.found = sets.map(|t| super::solve::Found::General(set(network, &dense, &ports, t))).collect();
+    answer.found =
+        sets.map(|t| super::solve::Found::General(set_of_trial(network, &dense, &ports, t))).collect();
 }
 
-fn set(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Set {
+/// A part whose linear rest has no answer of its own, every combination of states solved whole.
+fn whole(network: &Network, dense: &Dense<'_>, answer: &mut Answer) {
+    let Some(found) = super::full::enumerate(network, dense) else {
+        answer.verdict = Verdict::Unverified;
+        let text = "the controlled sources leave the circuit without a unique answer".into();
+        answer.reasons.push(Reason::Dependent { text });
+        return;
+    };
+    answer.verdict = match found.len() {
+        0 => Verdict::None,
+        1 => Verdict::Unique,
+        _ => Verdict::Several,
+    };
+    if found.is_empty() {
+        let text = "no combination of states of its diodes is consistent with the controlled sources".into();
+        answer.reasons.push(Reason::Dependent { text });
+    }
+    answer.truncated = found.len() > super::assemble::MOST_SETS;
+    for one in found.iter().take(super::assemble::MOST_SETS) {
+        let currents = one.x[dense.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
+        let places = one.places.iter().zip(&dense.junctions).map(|(&p, &n)| (n, p)).collect();
+        let set = set(network, dense, &one.x, 1e-13 * currents, places, &[]);
+        answer.found.push(super::solve::Found::General(set));
+    }
+}
+
+fn set_of_trial(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Set {
     let x = ports.expand(&trial.currents);
-    let rounding = ports.rounding(&trial.currents);
     let moved: Vec<(Vec<f64>, Interval)> =
         trial.open.iter().map(|(direction, room)| (ports.expand_change(direction), *room)).collect();
+    let places = trial.places.iter().zip(&ports.junctions).map(|(&p, &n)| (n, p)).collect();
+    set(network, dense, &x, ports.rounding(&trial.currents), places, &moved)
+}
+
+/// A point of a part, and how it may move, in the numbers of the network.
+fn set(
+    network: &Network,
+    dense: &Dense<'_>,
+    x: &[f64],
+    rounding: f64,
+    places: Vec<(u32, Place)>,
+    moved: &[(Vec<f64>, Interval)],
+) -> Set {
     let mut set = Set {
-        potentials: dense.nodes.iter().map(|&n| (n, dense.potential(&x, n))).collect(),
+        potentials: dense.nodes.iter().map(|&n| (n, dense.potential(x, n))).collect(),
         currents: Vec::new(),
         voltages: Vec::new(),
-        places: trial.places.iter().zip(&ports.junctions).map(|(&p, &n)| (n, p)).collect(),
+        places,
         rooms: dense.floating.iter().map(|&n| (n, ANYWHERE)).collect(),
         ranges: Vec::new(),
     };
-    for (change, room) in &moved {
+    for (change, room) in moved {
         for &n in dense.nodes.iter().filter(|n| !dense.floating.contains(n)) {
             if let Some(interval) = scaled(dense.potential_change(change, n), *room) {
                 set.rooms.push((n, interval));
@@ -117,13 +149,13 @@ fn set(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Se
     }
     for &n in &dense.branches {
         let b = &network.branches[n as usize];
-        let (v, i) = (dense.voltage(&x, b.from, b.to), dense.current(network, &x, n));
+        let (v, i) = (dense.voltage(x, b.from, b.to), dense.current(network, x, n));
         let i = if i.abs() <= rounding && !matches!(b.law, Law::Current(_)) { 0.0 } else { i };
         if !matches!(b.law, Law::Voltage(_) | Law::Short) {
             set.currents.push((n, i));
         }
         let mut voltage = Quantity::Known(v);
-        for (change, room) in &moved {
+        for (change, room) in moved {
             let slope = dense.voltage_change(change, b.from, b.to);
             if let Some(by) = scaled(slope, *room) {
                 voltage = Quantity::Open(Interval { low: v + by.low, high: v + by.high });

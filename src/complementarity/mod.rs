@@ -9,6 +9,7 @@ mod exact;
 mod existence;
 mod flow;
 mod forest;
+mod full;
 mod general;
 mod interior;
 mod laplacian;

@@ -42,29 +42,6 @@ pub(super) struct Trial {
     pub(super) open: Vec<(DVector<f64>, Interval)>,
 }
 
-/// Whether the linear rest contradicts itself, where it has no unique answer.
-pub(super) fn contradicts(dense: &Dense<'_>) -> bool {
-    let size = dense.rhs.len();
-    if size == 0 || size > 300 {
-        return false;
-    }
-    // unknowns and junction currents alike are free to help
-    let mut all = DMatrix::zeros(size, size + dense.ports.ncols());
-    all.columns_mut(0, size).copy_from(&dense.matrix);
-    all.columns_mut(size, dense.ports.ncols()).copy_from(&dense.ports);
-    let mut rhs = DVector::from_column_slice(&dense.rhs);
-    for r in 0..size {
-        let largest = all.row(r).amax();
-        if largest > 0.0 {
-            all.row_mut(r).scale_mut(1.0 / largest);
-            rhs[r] /= largest;
-        }
-    }
-    let svd = all.clone().svd(true, true);
-    let Ok(x) = svd.solve(&rhs, 1e-10 * svd.singular_values.max()) else { return false };
-    (&all * x - &rhs).amax() > 1e-7 * rhs.amax()
-}
-
 impl Trial {
     /// Nothing decided yet.
     fn start(count: usize) -> Self {
@@ -487,7 +464,7 @@ fn typical_resistance(network: &Network, dense: &Dense<'_>) -> f64 {
 }
 
 /// Solves a square system after scaling rows and columns; `None` without full rank.
-fn solved(matrix: &DMatrix<f64>, right: &DMatrix<f64>) -> Option<DMatrix<f64>> {
+pub(super) fn solved(matrix: &DMatrix<f64>, right: &DMatrix<f64>) -> Option<DMatrix<f64>> {
     let n = matrix.nrows();
     if n == 0 {
         return Some(right.clone());

@@ -1,7 +1,7 @@
 //! Dependent sources and negative resistances: every consistent set must be found.
 
 use crate::circuits::{Circuit, dependent};
-use crate::enumeration::{all_agree, wanted};
+use crate::enumeration::{all_agree, verdicts, wanted};
 use crate::oracle::{self, Verdict, acceptable_verdicts};
 use std::collections::BTreeMap;
 
@@ -15,6 +15,17 @@ fn isolated(seed: u64) -> Option<Circuit> {
 fn all_consistent_sets_of_networks_with_dependent_sources_are_found() {
     let (first, count) = wanted(500);
     all_agree(&isolated, first..first + count);
+}
+
+/// Double precision and dense elimination cannot decide every part with controlled sources: such answers are withheld,
+/// and there are few of them.
+#[test]
+fn few_answers_are_withheld() {
+    let withheld = (0..500)
+        .filter_map(isolated)
+        .filter(|c| verdicts(c).contains(&kneewise::complementarity::Verdict::Unverified))
+        .count();
+    assert!(withheld <= 10, "{withheld} of 500 answers are withheld");
 }
 
 #[test]

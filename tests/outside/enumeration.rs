@@ -41,7 +41,24 @@ fn fails(circuit: &Circuit) -> bool {
     let answer = oracle::solve(circuit);
     // what a continuum of solutions should be called is settled for passive networks only
     let settled = circuit.is_passive() || !answer.continuum;
+    if !circuit.is_passive() {
+        let verdicts = verdicts(circuit);
+        // an answer withheld is no wrong answer; `dependent` counts them
+        if verdicts.contains(&kneewise::complementarity::Verdict::Unverified) {
+            return false;
+        }
+        // beside a part without a solution, dependent parts may have several sets or a continuum of their own
+        if !answer.solvable() {
+            return verdicts != [kneewise::complementarity::Verdict::None];
+        }
+    }
     settled && !differences(circuit, &answer, &run::states(&circuit.text()), CLOSE).is_empty()
+}
+
+/// kneewise's verdict in each condition.
+pub fn verdicts(circuit: &Circuit) -> Vec<kneewise::complementarity::Verdict> {
+    let operating = run::states(&circuit.text()).operating.unwrap_or_default();
+    operating.cases.iter().map(|case| case.verdict).collect()
 }
 
 fn report(circuit: &Circuit) -> String {
