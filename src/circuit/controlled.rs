@@ -111,9 +111,12 @@ impl Expander<'_> {
     /// `coupling = name element 1*element value`
     pub(super) fn coupling(&mut self, line: &Line<'_>, id: ElementId) -> Read {
         let last = line.len().saturating_sub(1);
-        let coefficient =
-            line.word(last).filter(|_| last >= 2).and_then(|t| self.value(line, t, Quantity::Plain).value());
-        let Some(coefficient) = coefficient.filter(|_| last >= 3) else {
+        let worth = line.word(last).filter(|_| last >= 3).map(|t| self.value(line, t, Quantity::Plain));
+        if matches!(worth, Some(Worth::Told | Worth::Moving)) {
+            return Err(Problem::told("a value that could not be evaluated"));
+        }
+        let coefficient = worth.and_then(Worth::value);
+        let Some(coefficient) = coefficient else {
             return Err(Problem {
                 told: false,
                 span: line.span,

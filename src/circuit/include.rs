@@ -210,10 +210,11 @@ fn sections<'t>(text: &'t str, lines: &[Cut]) -> Vec<(&'t str, usize, usize)> {
     let mut open: Option<(&str, usize)> = None;
     for (number, line) in lines.iter().enumerate().filter(|(_, l)| l.kind == LineKind::Dot) {
         let statement = text.get(line.start as usize..line.end as usize).unwrap_or("");
+        let statement = statement.split(';').next().unwrap_or("");
         let mut words = statement.split_whitespace();
         let word = words.next().unwrap_or("");
         if word.eq_ignore_ascii_case(".lib") {
-            let words: Vec<&str> = words.take_while(|w| !w.starts_with([';', '$'])).collect();
+            let words: Vec<&str> = words.take_while(|w| !w.starts_with('$')).collect();
             if let ([name], None) = (words.as_slice(), open) {
                 open = Some((unquoted(name), number));
             } else if let [name] = words.as_slice() {

@@ -452,7 +452,8 @@ fn apply(operator: Binary, x: f64, y: f64) -> f64 {
     }
 }
 
-/// The expression inside braces or quotes, or the whole text; `None` where there is nothing.
+/// The expression inside braces or quotes, or the whole text, and whether it can be nothing but an expression (what
+/// stands in double quotes may be a maker's name); `None` where there is nothing.
 fn inside(text: &str, span: Span) -> Option<(Span, bool)> {
     let delimited = text.len() >= 2
         && matches!(
@@ -463,7 +464,7 @@ fn inside(text: &str, span: Span) -> Option<(Span, bool)> {
         return None;
     }
     if delimited {
-        Some((Span { start: span.start + 1, end: span.end - 1, ..span }, true))
+        Some((Span { start: span.start + 1, end: span.end - 1, ..span }, !text.starts_with('"')))
     } else {
         Some((span, false))
     }

@@ -115,8 +115,8 @@ impl Reader<'_> {
         let text = self.text(file);
         let mut closers = Closers::default();
         for (number, line) in lines.iter().enumerate().filter(|(_, l)| l.kind == LineKind::Dot) {
-            let word =
-                text.get(line.start as usize..line.end as usize).unwrap_or("").split_whitespace().next();
+            let statement = text.get(line.start as usize..line.end as usize).unwrap_or("");
+            let word = statement.split(|c: char| c.is_whitespace() || c == ';').next();
             let word = word.unwrap_or("").to_ascii_lowercase();
             if let Some(tail) = word.strip_prefix(".end").filter(|tail| !matches!(*tail, "" | "s" | "l")) {
                 closers.entry(tail.to_owned()).or_default().push(number);

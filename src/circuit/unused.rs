@@ -53,7 +53,9 @@ impl<'a> Expander<'a> {
             .iter()
             .enumerate()
             .filter(|(n, m)| in_root(m.name_span) && !used_models.contains(n));
-        let unused_block = |(n, b): &(usize, &Block)| *n > 0 && in_root(b.name_span) && !self.used_blocks[*n];
+        let is_named = |b: &Block| b.name_span.start > b.statement.start;
+        let unused_block =
+            |(n, b): &(usize, &Block)| *n > 0 && in_root(b.name_span) && is_named(b) && !self.used_blocks[*n];
         let subcircuits = parsed.blocks.iter().enumerate().filter(unused_block);
         let used_block = |n: usize| n == 0 || self.used_blocks[n];
         let settings = parsed.blocks.iter().enumerate().filter(|(n, _)| used_block(*n));

@@ -21,11 +21,16 @@ pub(super) fn blank(input: &[u8]) -> IResult<&[u8], (), ()> {
             Some(b'$') if at > 0 && input.get(at - 1).is_some_and(|&b| is_blank(b)) => {
                 at = line_end(input, at)
             }
-            Some(0xC2) if input.get(at + 1) == Some(&0xA0) => at += 2,
+            Some(0xC2) if is_hard_space(input, at) => at += 2,
             _ => break,
         }
     }
     Ok((input.get(at..).unwrap_or_default(), ()))
+}
+
+/// Whether U+00A0, the space that does not break, stands at `at`: copied from a document, it is a blank like others.
+pub(super) fn is_hard_space(input: &[u8], at: usize) -> bool {
+    input.get(at..at + 2) == Some(&[0xC2, 0xA0])
 }
 
 /// From a line end over comment lines to behind the `+` of the next continuation.

@@ -1,6 +1,6 @@
 //! Physical lines to logical ones: title, comments, continuations. Only looks at how each line begins.
 
-use super::blank::is_blank;
+use super::blank::{is_blank, is_hard_space};
 
 /// What a logical line is, by its first character.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -69,7 +69,7 @@ struct Cutter {
 impl Cutter {
     fn physical_line(&mut self, bytes: &[u8], start: usize, end: usize, out: &mut Lines) {
         let Some(line) = bytes.get(start..end) else { return };
-        let Some(indent) = line.iter().position(|&b| !is_blank(b)) else { return };
+        let Some(indent) = indent(line) else { return };
         let body = &line[indent..];
         let from = start + indent;
         let kind = match body {
@@ -104,6 +104,16 @@ impl Cutter {
     }
 }
 
+/// Length of the blanks at the start of a line; `None` where there is nothing else.
+fn indent(line: &[u8]) -> Option<usize> {
+    let mut at = line.iter().position(|&b| !is_blank(b))?;
+    while is_hard_space(line, at) {
+        at += 2;
+        at += line.get(at..)?.iter().position(|&b| !is_blank(b))?;
+    }
+    Some(at)
+}
+
 fn push(bytes: &[u8], from: usize, end: usize, kind: LineKind, out: &mut Lines) {
     let line = Line { start: offset(from), end: trimmed_end(bytes, from, end), kind };
     out.longest = out.longest.max((line.end - line.start) as usize);
@@ -135,6 +145,7 @@ mod tests {
         assert_eq!(lines(text, true).title, Some((0, 9)));
         assert_eq!(cut(text), [("R2 a b 2k", LineKind::Element)]);
         assert_eq!(lines(text, false).lines.len(), 2);
+        assert_eq!(cut("t\n \u{A0}\n\u{A0} * c\n\u{A0}R1"), [("R1", LineKind::Element)]);
     }
 
     #[test]

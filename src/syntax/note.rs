@@ -145,10 +145,11 @@ pub fn note(text: &str) -> Result<NoteText<'_>, NoteProblem> {
     })
 }
 
-/// The words behind `*@`.
+/// The words behind `*@`, up to a `;` (which stands in no name, and begins a trailing comment everywhere).
 fn words(text: &str) -> Vec<NoteWord<'_>> {
     let body = text.strip_prefix("*@").unwrap_or(text);
     let offset = text.len() - body.len();
+    let body = body.split(';').next().unwrap_or(body);
     let mut out = Vec::new();
     let mut at = 0;
     for part in body.split(|c: char| c.is_ascii_whitespace() || c.is_ascii_control()) {
@@ -359,6 +360,7 @@ mod tests {
             "*@ expect v(out) 4.2..4.5 in some condition",
             "*@ expect D2 conducting over time",
             "*@ watch out",
+            "*@ watch out ;trailing comment",
             "*@ watch a b",
             "*@ matched D1 D2",
             "*@ rating D1 i=200m vr=75 p=500m",

@@ -1,8 +1,7 @@
 //! One logical line to words, expressions, quoted texts and signs.
 
-use super::blank::blank;
-use nom::bytes::complete::take_while1;
-use nom::{IResult, Parser};
+use super::blank::{blank, is_hard_space};
+use nom::IResult;
 
 /// What a token is.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -100,17 +99,33 @@ fn token(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
 
 /// `word = 1*name-char`
 fn word(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
-    take_while1(is_name_char).map(|_| TokenKind::Word).parse(input)
+    let mut length = 0;
+    loop {
+        let rest = input.get(length..).unwrap_or_default();
+        length += rest.iter().position(|&b| !is_name_char(b)).unwrap_or(rest.len());
+        if input.get(length) != Some(&0xC2) || is_hard_space(input, length) {
+            break;
+        }
+        // another character that begins with this byte
+        length += 2;
+    }
+    if length == 0 {
+        return Err(nom::Err::Error(()));
+    }
+    Ok((input.get(length..).unwrap_or_default(), TokenKind::Word))
 }
 
-/// `name-char`: any printable character but white space, `=`, `,`, `;`, parentheses, quotes and braces.
+/// `name-char`: any printable character but white space, `=`, `,`, `;`, parentheses, quotes and braces. The byte that
+/// a hard space begins with is left to [`word`].
 fn is_name_char(byte: u8) -> bool {
     const TABLE: [bool; 256] = {
         let mut table = [true; 256];
         let mut n = 0;
         while n < 256 {
-            table[n] =
-                !matches!(n as u8, 0..=b' ' | b'=' | b',' | b';' | b'(' | b')' | b'\'' | b'"' | b'{' | b'}');
+            table[n] = !matches!(
+                n as u8,
+                0..=b' ' | b'=' | b',' | b';' | b'(' | b')' | b'\'' | b'"' | b'{' | b'}' | 0xC2
+            );
             n += 1;
         }
         table
@@ -169,6 +184,7 @@ mod tests {
     fn separators_and_comments() {
         assert_eq!(cut("E1 (a,b) c\r\n* x\n+ d 2 $ tail"), ["E1", "(", "a", "b", ")", "c", "d", "2"]);
         assert_eq!(cut("R1 a$b c 1 ; x"), ["R1", "a$b", "c", "1"]);
+        assert_eq!(cut("R1\u{A0}a µb\u{A0}100µ"), ["R1", "a", "µb", "100µ"]);
     }
 
     #[test]
