@@ -5,6 +5,7 @@ use super::network::{Control, Law, Network};
 use super::parts::Piece;
 use super::rails::{Rails, fixed};
 use nalgebra::DMatrix;
+use rustc_hash::FxHashMap;
 
 /// Where a branch's current is found.
 #[derive(Debug, Clone)]
@@ -35,9 +36,9 @@ pub(super) struct Dense<'a> {
     pub(super) ports: DMatrix<f64>,
     pub(super) rhs: Vec<f64>,
     /// Unknown of each node; boundaries have their potential from the rails.
-    place: std::collections::HashMap<u32, usize>,
-    spots: std::collections::HashMap<u32, Spot>,
-    ends: std::collections::HashMap<u32, (u32, u32)>,
+    place: FxHashMap<u32, usize>,
+    spots: FxHashMap<u32, Spot>,
+    ends: FxHashMap<u32, (u32, u32)>,
 }
 
 /// A linear form over unknowns and ports.

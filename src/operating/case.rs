@@ -6,7 +6,7 @@ use super::evaluate::Solved;
 use super::proof::{Claim, Proof, claims_solution, prove};
 use super::result::{BranchResult, Case, Contradiction, DiodeResult, NodeResult, Residual, Solution};
 use super::view::margin;
-use super::words::{causes, list, missed, openings};
+use super::words::{causes, missed, openings};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
 
@@ -144,10 +144,7 @@ impl Withheld {
         assembly: &Assembly,
         relative: f64,
     ) -> Contradiction {
-        let of_part = |id: &&ElementId| {
-            part.branches.binary_search(&assembly.branch[id.index()]).is_ok()
-                || part.branches.contains(&assembly.branch[id.index()])
-        };
+        let of_part = |id: &&ElementId| part.branches.contains(&assembly.branch[id.index()]);
         let elements = self.elements.iter().filter(of_part).take(MOST_BLAMED).copied().collect();
         Contradiction { verdict: Verdict::Unverified, text: missed(relative), elements }
     }
@@ -318,7 +315,7 @@ impl Maker<'_> {
         match part.and_then(|p| self.parts.reasons[p].clone()) {
             _ if is_withheld => "the result of its part does not check".into(),
             Some(reason) => reason,
-            None => format!("it is in no part that was solved ({})", list(&[])),
+            None => "it is in no part that was solved".into(),
         }
     }
 }

@@ -12,7 +12,6 @@ mod table;
 mod terminal;
 mod why;
 
-pub use crate::finding::{compact, figure, interval, quantity};
 pub use paint::Page;
 pub use rules::{rule, rule_list};
 pub use states::states;

@@ -3,13 +3,13 @@
 use crate::circuit::Circuit;
 use crate::finding::Finding;
 use crate::text::Span;
-use rustc_hash::FxHashMap as HashMap;
+use rustc_hash::FxHashMap;
 
 /// Folds findings of one rule at one place inside several instances into the first of them, which then says in
 /// how many instances the same is found. Order is kept.
 pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
     let mut kept: Vec<(Finding, usize)> = Vec::with_capacity(findings.len());
-    let mut seen: HashMap<(&'static str, Span, Vec<Span>), usize> = HashMap::default();
+    let mut seen: FxHashMap<(&'static str, Span, Vec<Span>), usize> = FxHashMap::default();
     for finding in findings {
         if finding.trail.is_empty() {
             kept.push((finding, 1));
@@ -27,12 +27,12 @@ pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
 }
 
 /// How many instances each subcircuit has, by the span of the call's last step: all calls of one definition.
-fn count_instances(circuit: &Circuit) -> HashMap<Span, (String, usize)> {
-    let mut by_definition: HashMap<Span, usize> = HashMap::default();
+fn count_instances(circuit: &Circuit) -> FxHashMap<Span, (String, usize)> {
+    let mut by_definition: FxHashMap<Span, usize> = FxHashMap::default();
     for scope in circuit.scopes.iter().filter(|s| s.parent.is_some()) {
         *by_definition.entry(scope.definition).or_insert(0) += 1;
     }
-    let mut by_call = HashMap::default();
+    let mut by_call = FxHashMap::default();
     for scope in circuit.scopes.iter().filter(|s| s.parent.is_some()) {
         let count = by_definition.get(&scope.definition).copied().unwrap_or(1);
         by_call.entry(scope.call).or_insert_with(|| (circuit.text(scope.subcircuit).to_owned(), count));
@@ -40,7 +40,7 @@ fn count_instances(circuit: &Circuit) -> HashMap<Span, (String, usize)> {
     by_call
 }
 
-fn with_count(mut finding: Finding, count: usize, instances: &HashMap<Span, (String, usize)>) -> Finding {
+fn with_count(mut finding: Finding, count: usize, instances: &FxHashMap<Span, (String, usize)>) -> Finding {
     let known = finding.trail.last().and_then(|step| instances.get(&step.span));
     if let Some((name, all)) = known
         && *all > 1
