@@ -6,7 +6,7 @@ use super::ids::{NodeId, ScopeId, Symbol};
 use super::line::Line;
 use super::parameter::{Evaluation, Parameter, declare};
 use super::{Pin, Scope};
-use crate::finding::{Finding, Severity};
+use crate::finding::{Finding, Severity, count};
 use crate::syntax::Pair;
 use crate::text::{Span, nearest};
 use rustc_hash::FxHashMap;
@@ -61,7 +61,7 @@ impl Expander<'_> {
         )
         .label("no subcircuit")
         .about(name)
-        .help("write its nodes and then the name of the subcircuit");
+        .help("Write its nodes and then the name of the subcircuit.");
         self.tell(finding);
     }
 
@@ -82,7 +82,7 @@ impl Expander<'_> {
             .label("the second of that name")
             .also(first, "the first of that name")
             .about(name)
-            .help("rename one of them: other tools refuse the file or drop one of the two without a word");
+            .help("Rename one of them: other tools refuse the file or drop one of the two without a word.");
             self.tell(finding);
         }
     }
@@ -103,18 +103,18 @@ impl Expander<'_> {
             .label("would be expanded without end")
             .also(block.statement, "defined here")
             .about(name)
-            .help("remove the instance; it counts as an unknown element on its nodes");
+            .help("Remove the instance; it counts as an unknown element on its nodes.");
             self.tell(finding);
             return Some("a subcircuit that holds itself");
         }
         if given != block.ports.len() {
             let ports = block.ports.len();
-            let (nodes, has) = (plural(given, "node"), plural(ports, "port"));
+            let (nodes, has) = (count(given, "node"), count(ports, "port"));
             let finding = Finding::new("port-count", Severity::Error, line.span, format!("{} gives {nodes} to {name}, which has {has}", line.word_str(0)))
                 .label(nodes)
                 .also(block.statement, has)
                 .about(self.here(line.word_str(0)))
-                .help("give one node for each port, in the order of the definition; until then it counts as an unknown element on its nodes");
+                .help("Give one node for each port, in the order of the definition; until then it counts as an unknown element on its nodes.");
             self.tell(finding);
             return Some("an instance with the wrong number of nodes");
         }
@@ -142,7 +142,7 @@ impl Expander<'_> {
             format!("the expansion stops here: {what}"),
         )
         .label("not expanded")
-        .help("what is beyond counts as unknown elements on their nodes; check the subcircuits one by one");
+        .help("What is beyond counts as unknown elements on their nodes; check the subcircuits one by one.");
         self.tell(finding);
     }
 
@@ -203,11 +203,11 @@ impl Expander<'_> {
         known.sort_unstable();
         let subcircuit = self.sources.slice(self.parsed.blocks[frame.block].name_span);
         let help = match nearest(&key, known.iter().copied()) {
-            Some(near) => format!("did you mean {near}? As it stands it has no effect"),
+            Some(near) => format!("Did you mean `{near}`? As it stands it has no effect."),
             None if known.is_empty() => {
-                "it has no effect; remove it, or give the subcircuit that parameter".to_owned()
+                "It has no effect; remove it, or give the subcircuit that parameter.".to_owned()
             }
-            None => format!("it has no effect; the parameters are {}", known.join(", ")),
+            None => format!("It has no effect; the parameters are {}.", known.join(", ")),
         };
         let finding = Finding::new(
             "unknown-subcircuit-parameter",
@@ -244,8 +244,8 @@ impl Expander<'_> {
             let mut known: Vec<&str> = self.parsed.blocks[0].subcircuits.keys().map(String::as_str).collect();
             known.sort_unstable();
             let help = nearest(&name, known).map_or_else(
-                || "add its definition or include the file that holds it; until then".to_owned(),
-                |near| format!("did you mean {near}? Until it is defined"),
+                || "Add its definition or include the file that holds it; until then".to_owned(),
+                |near| format!("Did you mean `{near}`? Until it is defined"),
             );
             let finding = Finding::new(
                 "missing-subcircuit",
@@ -255,14 +255,10 @@ impl Expander<'_> {
             )
             .label("not defined")
             .about(text)
-            .help(format!("{help} its instances count as unknown elements on their nodes"));
+            .help(format!("{help} its instances count as unknown elements on their nodes."));
             self.tell(finding);
         }
     }
 }
 
 pub(super) const TOO_MANY: &str = "more than 3,000,000 elements and instances";
-
-fn plural(count: usize, what: &str) -> String {
-    if count == 1 { format!("1 {what}") } else { format!("{count} {what}s") }
-}

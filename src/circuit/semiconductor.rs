@@ -5,7 +5,7 @@ use super::element::Read;
 use super::expand::Expander;
 use super::ids::{ElementId, ModelId, ScopeId};
 use super::line::Line;
-use crate::finding::{Finding, Severity};
+use crate::finding::{Finding, Severity, list};
 use crate::syntax;
 
 impl Expander<'_> {
@@ -80,7 +80,7 @@ impl Expander<'_> {
             .label(format!("type {wanted} belongs here"))
             .also(place, "defined here")
             .about(self.here(name))
-            .help("correct the model's name or its type; until then the element counts as having no model");
+            .help("Correct the model's name or its type; until then the element counts as having no model.");
         self.tell(finding);
         false
     }
@@ -157,7 +157,7 @@ impl Expander<'_> {
         let mut finding = Finding::new("undefined-model", Severity::Warning, first, message)
             .label("not defined")
             .about(names.first().copied().unwrap_or(""))
-            .help("add its .model line or include the file that holds it; until then a diode counts as silicon with the default drop");
+            .help("Add its .model line or include the file that holds it; until then a diode counts as silicon with the default drop.");
         for &(span, _) in rest.iter().take(7) {
             finding = finding.also(span, "not defined");
         }
@@ -165,8 +165,7 @@ impl Expander<'_> {
     }
 }
 
-/// Up to eight names, then how many more.
+/// Up to eight names.
 pub(super) fn shortened(names: &[&str]) -> String {
-    let shown = names.iter().take(8).copied().collect::<Vec<_>>().join(", ");
-    if names.len() > 8 { format!("{shown} and {} more", names.len() - 8) } else { shown }
+    list(names, 8)
 }

@@ -3,8 +3,10 @@
 //! label says what the marked text is, the help says what to do.
 
 mod quantity;
+mod words;
 
 pub use quantity::{Figure, compact, figure, interval, quantity};
+pub use words::{count, list};
 
 use crate::text::Span;
 

@@ -4,7 +4,7 @@ use super::assemble::{Assembly, Owner, Setting};
 use super::result::Contradiction;
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::complementarity::{Branch, Law, Part, Quantity, Reason, Solution, Verdict};
-use crate::finding::quantity;
+use crate::finding::{self, quantity};
 
 /// Most names that one sentence lists.
 const MOST_NAMES: usize = 8;
@@ -63,16 +63,7 @@ fn share(verdict: Verdict, reason: &Reason) -> Verdict {
 
 /// `A, B and C`, shortened where there are many.
 pub(crate) fn list(names: &[String]) -> String {
-    let more = names.len().saturating_sub(MOST_NAMES);
-    let mut shown: Vec<String> = names.iter().take(MOST_NAMES).cloned().collect();
-    if more > 0 {
-        shown.push(format!("{more} more"));
-    }
-    match shown.split_last() {
-        None => "nothing".into(),
-        Some((only, [])) => only.clone(),
-        Some((last, others)) => format!("{} and {last}", others.join(", ")),
-    }
+    finding::list(names, MOST_NAMES)
 }
 
 struct Words<'a> {

@@ -2,7 +2,7 @@
 
 use super::paint::{Ink, Page};
 use crate::analysis::Analysis;
-use crate::finding::{Finding, Severity};
+use crate::finding::{self, Finding, Severity};
 use serde::Serialize;
 
 /// Counts over all root files of a run; accepted findings count nowhere else.
@@ -89,7 +89,6 @@ impl Summary {
 pub(super) fn counted(count: usize, noun: &str) -> String {
     match count {
         0 => format!("no {noun}s"),
-        1 => format!("1 {noun}"),
-        n => format!("{n} {noun}s"),
+        n => finding::count(n, noun),
     }
 }
