@@ -42,7 +42,7 @@ impl Reader<'_> {
         let finding =
             Finding::new("unreadable-line", Severity::Error, line.span, "this .subckt line has no name")
                 .label("no name")
-                .help("write it as .subckt NAME PORTS…; what it holds cannot be used until it has one");
+                .help("Write it as `.subckt NAME PORTS…`; what it holds cannot be used until it has one.");
         self.tell(finding);
     }
 
@@ -70,7 +70,7 @@ impl Reader<'_> {
                     "this line ends a subcircuit, and none is open",
                 )
                 .label("ends nothing")
-                .help("remove it, or put the .subckt line back that belongs to it");
+                .help("Remove it, or put the .subckt line back that belongs to it.");
                 self.tell(finding);
             }
         }
@@ -96,7 +96,7 @@ impl Reader<'_> {
         .label(format!("taken as the end of {wanted}"))
         .also(open, "opened here")
         .about(given)
-        .help("correct one of the two names");
+        .help("Correct one of the two names.");
         self.tell(finding);
     }
 
@@ -117,7 +117,7 @@ impl Reader<'_> {
             )
             .label("opened here and never closed")
             .about(text)
-            .help("everything behind it counts as its inside; put its .ends line where it should end");
+            .help("Everything behind it counts as its inside; put its .ends line where it should end.");
             self.tell(finding);
         }
     }

@@ -104,7 +104,7 @@ impl Expander<'_> {
                 text => format!("the gain of {}, {text}, is no number", line.word_str(0)),
             },
             reason: "a value that could not be read",
-            help: "write the gain as a number behind what controls the source".into(),
+            help: "Write the gain as a number behind what controls the source.".into(),
         })
     }
 
@@ -122,7 +122,7 @@ impl Expander<'_> {
                 span: line.span,
                 message: format!("{} needs two or more inductors and then one coefficient", line.word_str(0)),
                 reason: "a coupling that could not be read",
-                help: "write it as K1 L1 L2 0.99".into(),
+                help: "Write it as `K1 L1 L2 0.99`.".into(),
             });
         };
         self.look_up_later(line, id, 1, last);
@@ -192,7 +192,7 @@ impl Expander<'_> {
             Finding::new("missing-element", Severity::Error, span, message)
                 .label(format!("no {wanted}"))
                 .about(self.here(&user))
-                .help("correct the name; until then the element counts as unknown on its nodes"),
+                .help("Correct the name; until then the element counts as unknown on its nodes."),
         );
         None
     }

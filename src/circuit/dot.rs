@@ -97,7 +97,7 @@ impl Reader<'_> {
         let finding = Finding::new("unreadable-line", Severity::Error, at, message)
             .label(broken.what)
             .about(word)
-            .help("close it on this statement; what stands before it has been read");
+            .help("Close it on this statement; what stands before it has been read.");
         self.tell(finding);
     }
 
@@ -146,9 +146,9 @@ impl Reader<'_> {
         )
         .label("not known")
         .about(format!(".{word}"))
-        .help("if another tool reads it, nothing is wrong; if not, it has no effect");
+        .help("If another tool reads it, nothing is wrong; if not, it has no effect.");
         if let Some(near) = nearest(word, KNOWN.into_iter().chain(PASSED_OVER)) {
-            finding.help = format!("did you mean .{near}? As it stands it has no effect");
+            finding.help = format!("Did you mean `.{near}`? As it stands it has no effect.");
             let edit = Edit { span: place, replacement: format!(".{near}") };
             finding = finding.fix(format!("write .{near}"), vec![edit]);
         }
@@ -164,7 +164,7 @@ impl Reader<'_> {
             let finding = Finding::new("unreadable-line", Severity::Error, line.span, message)
                 .label("not read")
                 .about(line.word_str(1))
-                .help("write it as .model NAME TYPE (KEY=VALUE …)");
+                .help("Write it as `.model NAME TYPE (KEY=VALUE …)`.");
             return self.tell(finding);
         };
         let number = self.parsed.models.len();
@@ -208,7 +208,7 @@ impl Reader<'_> {
         .label("this one counts")
         .also(first_name, "defined here before")
         .about(text)
-        .help("tools differ in which of the two they take; rename or remove one");
+        .help("Tools differ in which of the two they take; rename or remove one.");
         self.tell(finding);
     }
 
@@ -243,7 +243,7 @@ impl Reader<'_> {
         let message = format!("{} gives no value here", line.word_str(0));
         let finding = Finding::new("unreadable-line", Severity::Error, span, message)
             .label("no value")
-            .help("write it as .param NAME=VALUE");
+            .help("Write it as `.param NAME=VALUE`.");
         self.tell(finding);
     }
 

@@ -168,14 +168,14 @@ impl Expander<'_> {
                 span: line.at(token),
                 message: format!("the value of {name}, {}, is no number", line.str(token)),
                 reason: "a value that could not be read",
-                help: "write a number such as 4.7k, an expression in braces, or the name of a parameter or model".into(),
+                help: "Write a number such as 4.7k, an expression in braces, or the name of a parameter or model.".into(),
             },
             None => Problem {
                 told: false,
                 span: line.span,
                 message: format!("{name} has nodes {} and {} but no value", line.word_str(1), line.word_str(2)),
                 reason: "no value",
-                help: "write its value behind the two nodes".into(),
+                help: "Write its value behind the two nodes.".into(),
             },
         }
     }
@@ -193,8 +193,8 @@ impl Expander<'_> {
         )
         .label(format!("read here as {meant}"))
         .about(self.here(name))
-        .help(format!("write {meant}"))
-        .fix(format!("write {meant}"), vec![Edit { span, replacement: meant.clone() }]);
+        .help(format!("Write `{meant}`."))
+        .fix(format!("write `{meant}`"), vec![Edit { span, replacement: meant.clone() }]);
         self.tell(finding);
         match value {
             Some(number) => Ok(Value { number: number.value, written: true, span }),
@@ -203,7 +203,7 @@ impl Expander<'_> {
                 span,
                 message: format!("{text} is no number"),
                 reason: "a value that could not be read",
-                help: "write a number such as 4.7k".into(),
+                help: "Write a number such as 4.7k.".into(),
             }),
         }
     }
@@ -220,7 +220,7 @@ impl Expander<'_> {
             span: line.span,
             message,
             reason: "too few nodes",
-            help: "give every node; until then it counts as an unknown element on the nodes it has".into(),
+            help: "Give every node; until then it counts as an unknown element on the nodes it has.".into(),
         };
         self.unreadable(line, problem)
     }
@@ -247,7 +247,7 @@ impl Expander<'_> {
             "this line begins with no name, so it is no element, no dot line and no comment",
         )
         .label("not read")
-        .help("begin it with an element's name, a dot, + to continue, or * for a comment");
+        .help("Begin it with an element's name, a dot, + to continue, or * for a comment.");
         self.tell(finding);
     }
 
@@ -264,7 +264,7 @@ impl Expander<'_> {
         )
         .label("kept as an unknown element on its nodes")
         .about(self.here(name))
-        .help("if it is prose, begin the line with *; if it is an element, no statement is made about what it does");
+        .help("If it is prose, begin the line with *; if it is an element, no statement is made about what it does.");
         self.tell(finding);
         let first_pin = self.circuit.pins.len();
         if letter.is_ascii_alphabetic() && end > 2 {

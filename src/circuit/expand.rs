@@ -196,7 +196,7 @@ impl<'a> Expander<'a> {
                 )
                 .label(broken.what)
                 .about(self.here(line.word_str(0)))
-                .help("close it on this statement; until then the element counts as unknown on its nodes"),
+                .help("Close it on this statement; until then the element counts as unknown on its nodes."),
             );
         }
         self.element(&line, outcome.is_err());
@@ -289,7 +289,7 @@ impl<'a> Expander<'a> {
         .label("the second of that name")
         .also(first.name_span, "the first of that name")
         .about(self.here(&name))
-        .help("rename one of them: other tools refuse the file or drop one of the two without a word");
+        .help("Rename one of them: other tools refuse the file or drop one of the two without a word.");
         self.tell(finding);
     }
 

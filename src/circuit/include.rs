@@ -46,7 +46,7 @@ impl Reader<'_> {
             format!("{} names no file", line.word_str(0)),
         )
         .label("no file")
-        .help("write the file's path behind it");
+        .help("Write the file's path behind it.");
         self.tell(finding);
     }
 
@@ -114,7 +114,7 @@ impl Reader<'_> {
         let finding = Finding::new("include-not-found", Severity::Error, span, format!("the file {path} is not there"))
             .label("not found beside this file nor in the include directories")
             .about(path)
-            .help("correct the path, or name its place with --include-dir; models and subcircuits that it may define are not reported one by one");
+            .help("Correct the path, or name its place with --include-dir; models and subcircuits that it may define are not reported one by one.");
         self.missing(finding);
     }
 
@@ -122,7 +122,7 @@ impl Reader<'_> {
         let finding = Finding::new("include-outside", Severity::Error, span, format!("the file {path} lies outside the places that may be opened"))
             .label("not opened")
             .about(path)
-            .help("only files of the netlist's own repository or directory are opened; name its place with --include-dir to allow it");
+            .help("Only files of the netlist's own repository or directory are opened; name its place with --include-dir to allow it.");
         self.missing(finding);
     }
 
@@ -135,7 +135,7 @@ impl Reader<'_> {
         )
         .label("not read")
         .about(path)
-        .help("models and subcircuits that it may define are not reported one by one");
+        .help("Models and subcircuits that it may define are not reported one by one.");
         self.missing(finding);
     }
 
@@ -149,7 +149,7 @@ impl Reader<'_> {
         )
         .label("not read again")
         .about(path)
-        .help("remove this line, or the one that leads here");
+        .help("Remove this line, or the one that leads here.");
         self.tell(finding);
     }
 
@@ -160,7 +160,7 @@ impl Reader<'_> {
         );
         let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
-            .help("include fewer files, or check the parts one by one");
+            .help("Include fewer files, or check the parts one by one.");
         self.missing(finding);
     }
 
@@ -198,7 +198,7 @@ impl Reader<'_> {
         )
         .label("nothing read")
         .about(name)
-        .help("correct the section's name");
+        .help("Correct the section's name.");
         self.missing(finding);
         Vec::new()
     }

@@ -53,9 +53,9 @@ impl Expander<'_> {
         let mut finding = Finding::new("unreadable-note", Severity::Warning, at, problem.message)
             .label("not read")
             .about(self.sources.slice(at))
-            .help("notes say what the netlist cannot; this one has no effect until it can be read");
+            .help("Notes say what the netlist cannot; this one has no effect until it can be read.");
         if let Some(nearest) = problem.nearest {
-            finding.help = format!("did you mean {nearest}? Until it is mended the note has no effect");
+            finding.help = format!("Did you mean `{nearest}`? Until it is mended the note has no effect.");
             finding = finding
                 .fix(format!("write {nearest}"), vec![Edit { span: at, replacement: nearest.to_owned() }]);
         }

@@ -130,7 +130,7 @@ impl<'a> Expander<'a> {
             format!("the expression {shown} cannot be read: {}", problem.what),
         )
         .label(problem.what)
-        .help("mend the expression; until then what it stands for is not evaluated");
+        .help("Mend the expression; until then what it stands for is not evaluated.");
         self.tell(finding);
         Worth::Told
     }
@@ -146,7 +146,7 @@ impl<'a> Expander<'a> {
                 format!("this expression needs more than {DEEPEST} others within each other"),
             )
             .label("too deep to evaluate")
-            .help("break the chain of parameters, or write the number");
+            .help("Break the chain of parameters, or write the number.");
             self.tell(finding);
             return Err(Worth::Told);
         }
@@ -189,7 +189,7 @@ impl<'a> Expander<'a> {
             )
             .label("what stands behind this is 0")
             .help(
-                "what the expression stands for is not evaluated; correct the parameter that makes it zero",
+                "What the expression stands for is not evaluated; correct the parameter that makes it zero.",
             );
             self.tell(finding);
             return Err(Worth::Told);
@@ -209,7 +209,7 @@ impl<'a> Expander<'a> {
             format!("{} {what}", context.text.trim()),
         )
         .label(what)
-        .help("what the expression stands for is not evaluated; look at the values that go in");
+        .help("What the expression stands for is not evaluated; look at the values that go in.");
         self.tell(finding);
         Err(Worth::Told)
     }
@@ -277,7 +277,7 @@ impl<'a> Expander<'a> {
             format!("the function {text} takes {count}"),
         )
         .label(format!("takes {count}"))
-        .help("mend the call; until then what the expression stands for is not evaluated");
+        .help("Mend the call; until then what the expression stands for is not evaluated.");
         self.tell(finding);
         Err(Worth::Told)
     }
@@ -296,8 +296,8 @@ impl<'a> Expander<'a> {
             self.near_parameter(context.frame, text)
         };
         let help = match near {
-            Some(near) => format!("did you mean {near}? Until it is known, what the expression stands for is not evaluated"),
-            None => "define it with .param, or correct the name; until then what the expression stands for is not evaluated".to_owned(),
+            Some(near) => format!("Did you mean `{near}`? Until it is known, what the expression stands for is not evaluated."),
+            None => "Define it with `.param`, or correct the name; until then what the expression stands for is not evaluated.".to_owned(),
         };
         let finding = Finding::new(
             "unknown-parameter",
@@ -393,7 +393,7 @@ impl<'a> Expander<'a> {
         )
         .label("needs itself, directly or through others")
         .about(name)
-        .help("break the circle by giving one of them a number");
+        .help("Break the circle by giving one of them a number.");
         self.tell(finding);
         Worth::Told
     }
@@ -408,7 +408,7 @@ impl<'a> Expander<'a> {
         )
         .label("no value")
         .about(name)
-        .help("write a number, an expression, or the name of a parameter");
+        .help("Write a number, an expression, or the name of a parameter.");
         self.tell(finding);
         Worth::Told
     }

@@ -165,7 +165,7 @@ impl Reader<'_> {
         )
         .label("taken as the title")
         .about(name)
-        .help("if it is an element, put a title line above it; if it is a title, begin it with a word that is no element")
+        .help("If it is an element, put a title line above it; if it is a title, begin it with a word that is no element.")
         .fix("put a title line above it", vec![above]);
         self.tell(finding);
     }
@@ -179,7 +179,7 @@ impl Reader<'_> {
             "this line begins with + and there is no statement above it to continue",
         )
         .label("continues nothing")
-        .help("what stands on it is lost; put it behind the statement it belongs to, or remove it");
+        .help("What stands on it is lost; put it behind the statement it belongs to, or remove it.");
         self.tell(finding);
     }
 
@@ -197,7 +197,7 @@ impl Reader<'_> {
             format!("{lines} behind .end and nothing there is read"),
         )
         .label("not read from here on")
-        .help("move it above .end if it belongs to the circuit");
+        .help("Move it above .end if it belongs to the circuit.");
         self.tell(finding);
     }
 
@@ -215,7 +215,7 @@ impl Reader<'_> {
             format!("this statement is {length} bytes long with its continuations, and at most {LONGEST_STATEMENT} are read"),
         )
         .label("not read")
-        .help("break it into several statements");
+        .help("Break it into several statements.");
         self.tell(finding);
     }
 
@@ -224,7 +224,7 @@ impl Reader<'_> {
         let message = format!("this file is {length} bytes long, and at most {LONGEST_FILE} are read");
         let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
-            .help("break it into several files, or check its parts one by one");
+            .help("Break it into several files, or check its parts one by one.");
         self.tell(finding);
     }
 }

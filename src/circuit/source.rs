@@ -161,7 +161,7 @@ fn points(line: &Line<'_>, at: usize, values: &[f64]) -> Result<Shape, Problem> 
         span: line.word(at).map_or(line.span, |t| line.at(t)),
         message,
         reason: "a shape that could not be read",
-        help: "give pairs of time and value, times ascending".into(),
+        help: "Give pairs of time and value, times ascending.".into(),
     };
     if !odd.is_empty() {
         return Err(problem(format!(
@@ -203,7 +203,7 @@ fn no_number(line: &Line<'_>, word: usize, place: &str) -> Problem {
             _ => format!("{} has {text} {place}, which is no number", line.word_str(0)),
         },
         reason: "a value that could not be read",
-        help: "write a value, DC and a value, or a shape such as SIN(0 5 50)".into(),
+        help: "Write a value, DC and a value, or a shape such as `SIN(0 5 50)`.".into(),
     }
 }
 
@@ -213,7 +213,7 @@ fn no_text(line: &Line<'_>, token: Token) -> Problem {
         span: line.at(token),
         message: format!("the value of {}, {}, is no number", line.word_str(0), line.str(token)),
         reason: "a value that could not be read",
-        help: "write a number such as 5 or an expression in braces".into(),
+        help: "Write a number such as 5 or an expression in braces.".into(),
     }
 }
 
@@ -227,6 +227,6 @@ fn too_few(line: &Line<'_>, at: usize, count: usize, given: usize) -> Problem {
             line.word_str(0)
         ),
         reason: "a shape that could not be read",
-        help: "complete the shape's parameters".into(),
+        help: "Complete the shape's parameters.".into(),
     }
 }

@@ -59,7 +59,7 @@ pub(super) fn tell_rest(findings: &mut Vec<Finding>, counts: &FxHashMap<&'static
             format!("{more} more findings of {rule} are not listed"),
         )
         .label("the last that is listed")
-        .help("mend those that are listed and run it again; a file with so many is perhaps no netlist");
+        .help("Mend those that are listed and run it again; a file with so many is perhaps no netlist.");
         findings.push(finding);
     }
 }

@@ -98,7 +98,7 @@ impl<'a> Expander<'a> {
         };
         let mut finding = Finding::new(rule, Severity::Note, span, message)
             .label("defined and never used")
-            .help("remove it, or look whether what should use it is misspelt");
+            .help("Remove it, or look whether what should use it is misspelt.");
         for &(_, place) in unused.iter().skip(1).take(7) {
             finding = finding.also(place, "nor this one");
         }
@@ -125,7 +125,7 @@ impl<'a> Expander<'a> {
         };
         let finding = Finding::new("nothing-to-check", Severity::Note, span, message)
             .label("no element behind this title")
-            .help("check a circuit that uses what is defined here; the first line of a file is its title and never an element");
+            .help("Check a circuit that uses what is defined here; the first line of a file is its title and never an element.");
         self.tell(finding);
     }
 
@@ -151,7 +151,7 @@ impl<'a> Expander<'a> {
         let finding = Finding::new("unconnected-port", Severity::Note, port, format!("nothing inside {subcircuit} is joined to its port {name}"))
             .label("joined to nothing")
             .about(subcircuit)
-            .help("an outside node that ends here is joined to nothing either; remove the port, or look whether a node inside is misspelt");
+            .help("An outside node that ends here is joined to nothing either; remove the port, or look whether a node inside is misspelt.");
         self.tell(finding);
     }
 

@@ -123,9 +123,9 @@ impl Expander<'_> {
             .label(format!("read as {read}"))
             .about(self.here(name))
             .help(format!(
-                "write {meant} if that is what was meant, or the value in another scale if it was not"
+                "Write `{meant}` if that is what was meant, or the value in another scale if it was not."
             ))
-            .fix(format!("write {meant}"), vec![Edit { span: value.span, replacement: meant.to_owned() }]);
+            .fix(format!("write `{meant}`"), vec![Edit { span: value.span, replacement: meant.to_owned() }]);
         self.tell(finding);
     }
 
@@ -138,7 +138,7 @@ impl Expander<'_> {
         let finding = Finding::new("mega-in-letter-code", Severity::Note, value.span, message)
             .label(format!("read as {read}"))
             .about(self.here(name))
-            .help("behind a number M means milli; write Meg to leave no doubt");
+            .help("Behind a number M means milli; write Meg to leave no doubt.");
         self.tell(finding);
     }
 
@@ -152,7 +152,7 @@ impl Expander<'_> {
         let finding = Finding::new("wrong-unit", Severity::Warning, value.span, message)
             .label(format!("read as {read}"))
             .about(self.here(name))
-            .help("correct the value, or the letter that the element's name begins with");
+            .help("Correct the value, or the letter that the element's name begins with.");
         self.tell(finding);
     }
 
@@ -163,7 +163,7 @@ impl Expander<'_> {
         let finding = Finding::new("value-out-of-scale", Severity::Warning, value.span, message)
             .label(format!("read as {read}"))
             .about(self.here(name))
-            .help("a scale letter is probably missing or wrong");
+            .help("A scale letter is probably missing or wrong.");
         self.tell(finding);
     }
 }

@@ -23,6 +23,16 @@ fn tell(analysis: &Analysis) -> String {
     analysis.findings.iter().map(line).collect::<Vec<_>>().join("\n")
 }
 
+/// What is wrong with the way a finding is told: the message has no final full stop, the help is whole sentences.
+fn style(finding: &Finding) -> Option<String> {
+    let Finding { message, help, .. } = finding;
+    if message.is_empty() || message.ends_with('.') {
+        return Some(format!("the message is one sentence without its full stop: {message}"));
+    }
+    let begins = help.chars().next().is_some_and(|c| !c.is_lowercase());
+    (!begins || !help.ends_with('.')).then(|| format!("the help is whole sentences: {help}"))
+}
+
 /// What is wrong with a rule's examples.
 fn complaints(rule: &Rule) -> Vec<String> {
     let mut wrong = Vec::new();
@@ -44,6 +54,7 @@ fn complaints(rule: &Rule) -> Vec<String> {
         if rules::find(finding.rule).is_none() {
             wrong.push(format!("no rule file for {}", finding.rule));
         }
+        wrong.extend(style(finding).map(|what| format!("{}: {what}\n{}", rule.name, tell(&failing))));
     }
     wrong
 }
