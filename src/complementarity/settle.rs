@@ -152,7 +152,7 @@ fn mend_loops(solve: &Solve<'_>, currents: &[f64], findings: &mut [Finding]) {
         let Some(level) = d.level(solve.guide.states[diode]) else { continue };
         let v = solve.part.across(d, &solve.potentials).round();
         let room = NOTHING * solve.scale(d);
-        if (v - level).abs() <= room || findings[diode] != Finding::Holds {
+        if (v - level).abs() <= room || matches!(findings[diode], Finding::Change(_)) {
             continue;
         }
         let tie = &solve.ties[chord as usize];

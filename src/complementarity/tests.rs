@@ -209,6 +209,7 @@ fn show(network: &Network) -> String {
 pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
     let (u, i) = &solution.sample;
     let mut worst = 0.0f64;
+    let largest = u.iter().filter(|u| u.is_finite()).fold(1e-3, |m: f64, u| m.max(u.abs()));
     let mut net = vec![(0.0, 0.0f64); network.nodes as usize];
     for (n, b) in network.branches.iter().enumerate() {
         for (node, sign) in [(b.from, -1.0), (b.to, 1.0)] {
@@ -217,7 +218,8 @@ pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
         }
         let (up, uq) = (u[b.from as usize], u[b.to as usize]);
         let v = up - uq;
-        let size = up.abs().max(uq.abs()).max(1e-5);
+        // what cancels is known to a share of the largest potential
+        let size = up.abs().max(uq.abs()).max(0.01 * largest);
         let off = match b.law {
             Law::Resistance(r) => (v - r * i[n]).abs() / size.max((r * i[n]).abs()),
             Law::Voltage(l) => (v - l.value).abs() / size.max(l.value.abs()),
