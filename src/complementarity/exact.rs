@@ -155,7 +155,7 @@ impl<'a> Solve<'a> {
     fn refine(&mut self, cluster_volts: &mut [Dd], extra: &[f64]) -> f64 {
         let (mut before, mut idle) = (f64::INFINITY, 0);
         // small parts may hold any spread of resistances; in large ones every round counts
-        let enough = if self.part.nodes > 2000 { 1e-15 } else { 1e-24 };
+        let enough = if self.part.is_large() { 1e-10 } else { 1e-24 };
         for _ in 0..12 {
             let net = self.residual(cluster_volts, extra);
             let mut rhs = vec![Dd::ZERO; self.forest.groups];

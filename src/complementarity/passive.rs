@@ -83,6 +83,11 @@ pub(super) struct Scales {
 }
 
 impl Passive {
+    /// Whether speed decides how it is solved.
+    pub(super) fn is_large(&self) -> bool {
+        self.nodes > 2000
+    }
+
     pub(super) fn scales(&self) -> Scales {
         let series = self.diodes.iter().map(|d| d.series).filter(|&s| s > 0.0);
         let conductances = self.resistors.iter().map(|r| r.ohms).chain(series).map(|r| 1.0 / r);

@@ -10,11 +10,13 @@ use super::passive::{Diode, Passive, Point, State};
 /// Rounds without progress after which the interior-point path takes over.
 const PATIENCE: usize = 3;
 /// Rounds at most: a falling count may fall slowly on long chains.
-const ROUNDS: usize = 12;
+const ROUNDS: usize = 24;
 
 /// Share of the conductance around a junction that its leak has, and inversely its resistance: small enough to
-/// leave the states alone, large enough that currents can be told from rounding.
+/// leave the states alone, large enough that currents can be told from rounding. In large parts plain double
+/// precision must carry the spread.
 const SMALL: f64 = 1e-8;
+const SMALL_IN_LARGE: f64 = 1e-6;
 
 /// Small numbers of the eased network, for each diode: resistance while conducting, leak while blocking.
 pub(super) struct Ease {
@@ -27,14 +29,15 @@ pub(super) struct Ease {
 impl Ease {
     pub(super) fn of(part: &Passive) -> Self {
         let around = around(part);
+        let small = if part.is_large() { SMALL_IN_LARGE } else { SMALL };
         let least = |d: &Diode| match (d.p, d.q) {
             (0, n) | (n, 0) => around[n as usize],
             (p, q) => around[p as usize].min(around[q as usize]),
         };
         Ease {
-            series: part.diodes.iter().map(|d| SMALL / least(d)).collect(),
-            leak: part.diodes.iter().map(|d| SMALL * least(d)).collect(),
-            doubt: 10.0 * SMALL * part.scales().volts,
+            series: part.diodes.iter().map(|d| small / least(d)).collect(),
+            leak: part.diodes.iter().map(|d| small * least(d)).collect(),
+            doubt: 10.0 * small * part.scales().volts,
         }
     }
 }
@@ -107,7 +110,7 @@ pub(super) fn propose(part: &Passive, system: &mut Laplacian) -> Option<Point> {
             u[diode.p as usize] -= i;
             u[diode.q as usize] += i;
         }
-        system.factor(&g, true);
+        system.factor(&g, !part.is_large());
         system.solve(&mut u);
         let (changed, currents) = review(part, &ease, &u, &mut states);
         if changed == 0 {
