@@ -2,29 +2,26 @@
 //! something asks by name. What the named thing then does is not known here.
 
 use super::{Circuit, ElementId, NodeId, ScopeId, Symbol};
-use hashbrown::HashMap;
-use rustc_hash::FxBuildHasher;
-
-type Map<K, V> = HashMap<K, V, FxBuildHasher>;
+use rustc_hash::FxHashMap;
 
 /// All names of a circuit.
 pub(crate) struct Directory {
     /// Lower-case spelling to its number.
-    folded: Map<String, u32>,
-    elements: Map<(ScopeId, u32), ElementId>,
-    nodes: Map<(ScopeId, u32), NodeId>,
-    children: Map<(ScopeId, u32), ScopeId>,
+    folded: FxHashMap<String, u32>,
+    elements: FxHashMap<(ScopeId, u32), ElementId>,
+    nodes: FxHashMap<(ScopeId, u32), NodeId>,
+    children: FxHashMap<(ScopeId, u32), ScopeId>,
 }
 
 impl Directory {
     /// Reads every name once.
     pub fn of(circuit: &Circuit) -> Self {
-        let mut folder = Folder { folded: Map::default(), of_symbol: Map::default() };
+        let mut folder = Folder { folded: FxHashMap::default(), of_symbol: FxHashMap::default() };
         let mut directory = Directory {
-            folded: Map::default(),
-            elements: Map::default(),
-            nodes: Map::default(),
-            children: Map::default(),
+            folded: FxHashMap::default(),
+            elements: FxHashMap::default(),
+            nodes: FxHashMap::default(),
+            children: FxHashMap::default(),
         };
         for (id, element) in circuit.elements() {
             let name = folder.fold(circuit, element.name);
@@ -62,7 +59,7 @@ impl Directory {
         self.find(scope, name, &self.nodes).or_else(|| self.find(ScopeId::ROOT, name, &self.nodes))
     }
 
-    fn find<T: Copy>(&self, scope: ScopeId, name: &str, map: &Map<(ScopeId, u32), T>) -> Option<T> {
+    fn find<T: Copy>(&self, scope: ScopeId, name: &str, map: &FxHashMap<(ScopeId, u32), T>) -> Option<T> {
         let whole = self.folded(name).and_then(|n| map.get(&(scope, n)));
         if let Some(&found) = whole {
             return Some(found);
@@ -75,8 +72,8 @@ impl Directory {
 
 /// Folds each distinct spelling once.
 struct Folder {
-    folded: Map<String, u32>,
-    of_symbol: Map<Symbol, u32>,
+    folded: FxHashMap<String, u32>,
+    of_symbol: FxHashMap<Symbol, u32>,
 }
 
 impl Folder {

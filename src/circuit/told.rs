@@ -45,7 +45,7 @@ impl Told {
     }
 }
 
-/// Says of each rule with too many findings how many are not listed, at the first of them.
+/// Says of each rule with too many findings how many are not listed, at the last that is.
 pub(super) fn tell_rest(findings: &mut Vec<Finding>, counts: &FxHashMap<&'static str, usize>) {
     let mut rules: Vec<_> = counts.iter().filter(|(_, count)| **count > MOST_OF_ONE_RULE).collect();
     rules.sort_unstable();

@@ -2,10 +2,7 @@
 //! own: what is asked about one diode need not solve the rest of a large circuit again.
 
 use crate::complementarity::{Branch, Control, Law, Network, Outcome};
-use hashbrown::HashMap;
-use rustc_hash::FxBuildHasher;
-
-type Map = HashMap<u32, u32, FxBuildHasher>;
+use rustc_hash::FxHashMap;
 
 /// A smaller network and the numbers its branches have in the large one.
 pub(crate) struct Excerpt {
@@ -22,8 +19,9 @@ impl Excerpt {
         chosen.extend(holders(network, outcome, &chosen));
         chosen.sort_unstable();
         chosen.dedup();
-        let branch_number: Map = chosen.iter().enumerate().map(|(n, &b)| (b, n as u32)).collect();
-        let mut nodes: Map = Map::default();
+        let branch_number: FxHashMap<u32, u32> =
+            chosen.iter().enumerate().map(|(n, &b)| (b, n as u32)).collect();
+        let mut nodes: FxHashMap<u32, u32> = FxHashMap::default();
         nodes.insert(0, 0);
         let mut node = |n: u32| {
             let next = nodes.len() as u32;
@@ -59,7 +57,7 @@ fn holders(network: &Network, outcome: &Outcome, inside: &[u32]) -> Vec<u32> {
     for &branch in outcome.parts.iter().flat_map(|p| &p.branches) {
         in_part[branch as usize] = true;
     }
-    let mut around: HashMap<u32, Vec<u32>, FxBuildHasher> = HashMap::default();
+    let mut around: FxHashMap<u32, Vec<u32>> = FxHashMap::default();
     let free = (0..network.branches.len()).filter(|&n| !in_part[n]);
     for (number, branch) in free.map(|n| (n as u32, &network.branches[n])) {
         if matches!(branch.law, Law::Voltage(_) | Law::Short | Law::VoltageControlled(..)) {
@@ -67,7 +65,7 @@ fn holders(network: &Network, outcome: &Outcome, inside: &[u32]) -> Vec<u32> {
             around.entry(branch.to).or_default().push(number);
         }
     }
-    let mut seen: Map = Map::default();
+    let mut seen: FxHashMap<u32, u32> = FxHashMap::default();
     seen.insert(0, 0); // beyond the reference nothing holds anything
     let mut open: Vec<u32> = Vec::new();
     for &number in inside {

@@ -5,18 +5,15 @@ use crate::circuit::directory::{Directory, depth, outward};
 use crate::circuit::{Behaviour, Circuit, ElementId, Note, ScopeId};
 use crate::finding::{Finding, Severity};
 use crate::text::Span;
-use hashbrown::HashMap;
-use hashbrown::hash_map::Entry;
-use rustc_hash::FxBuildHasher;
-
-type Map<K, V> = HashMap<K, V, FxBuildHasher>;
+use rustc_hash::FxHashMap;
+use std::collections::hash_map::Entry;
 
 /// What notes of one kind say.
 pub(crate) struct Named<T> {
     /// By element and depth of the note's scope.
-    elements: Map<(ElementId, usize), (Span, T)>,
+    elements: FxHashMap<(ElementId, usize), (Span, T)>,
     /// By scope and lower-case model name.
-    models: Map<(ScopeId, String), (Span, T)>,
+    models: FxHashMap<(ScopeId, String), (Span, T)>,
     /// Lower-case names of the models, by number; empty where no note names one.
     model_names: Vec<String>,
 }
@@ -31,7 +28,8 @@ impl<T> Named<T> {
         meaning: impl Fn(&Note) -> Option<Result<T, Finding>>,
         findings: &mut Vec<Finding>,
     ) -> Self {
-        let mut named = Named { elements: Map::default(), models: Map::default(), model_names: Vec::new() };
+        let mut named =
+            Named { elements: FxHashMap::default(), models: FxHashMap::default(), model_names: Vec::new() };
         let Some(directory) = directory else { return named };
         let names: Vec<String> = circuit.models.iter().map(|m| circuit.text(m.name).to_lowercase()).collect();
         for note in &circuit.notes {
