@@ -150,7 +150,7 @@ impl Reader<'_> {
         if let Some(near) = nearest(word, KNOWN.into_iter().chain(PASSED_OVER)) {
             finding.help = format!("Did you mean `.{near}`? As it stands it has no effect.");
             let edit = Edit { span: place, replacement: format!(".{near}") };
-            finding = finding.fix(format!("write .{near}"), vec![edit]);
+            finding = finding.fix(format!("write `.{near}`"), vec![edit]);
         }
         self.tell(finding);
         Next::Line

@@ -98,11 +98,7 @@ impl<T> Named<T> {
 }
 
 /// Puts a value where none is; else gives the place of the earlier note, which stays.
-fn put<K: std::hash::Hash, T>(
-    entry: Entry<'_, K, (Span, T), FxBuildHasher>,
-    span: Span,
-    value: T,
-) -> Option<Span> {
+fn put<K: std::hash::Hash, T>(entry: Entry<'_, K, (Span, T)>, span: Span, value: T) -> Option<Span> {
     match entry {
         Entry::Occupied(held) => Some(held.get().0),
         Entry::Vacant(free) => {
