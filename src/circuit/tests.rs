@@ -198,7 +198,7 @@ fn include_directories_may_lie_anywhere() {
 #[test]
 fn foreign_blocks_are_passed_over() {
     let reading = read_one(
-        "t\n.control\nrun\nplot v(a) > b\n.endc\n.ac dec 10 1 1meg\n.op\nR1 a 0 1k\n.foo\n.end\nR2 a 0 1\n",
+        "t\n.bench\nrun\nplot v(a) > b\n.endb\n.ac dec 10 1 1meg\n.op\nR1 a 0 1k\n.foo\n.end\nR2 a 0 1\n",
     );
     assert_eq!(told(&reading), []);
     let rules: Vec<_> = reading.findings.iter().map(|f| f.rule).collect();
