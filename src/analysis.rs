@@ -20,6 +20,9 @@ pub struct Analysis {
     pub wiring: Wiring,
     /// States for each condition, where asked for.
     pub operating: Option<Operating>,
+    /// Whether some condition has no answer, or one that does not check, leaving out what an instant taken by itself
+    /// cannot judge.
+    pub hopeless: bool,
     /// All findings, sorted.
     pub findings: Vec<Finding>,
     /// Rules that could not judge.
@@ -41,8 +44,9 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     });
     let evidence = Evidence::new(&sources, &circuit, &wiring);
     let (judged, skipped) = rules::run(&evidence, operating.as_ref());
+    let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
     findings.extend(judged);
     rules::accept(&evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));
     finding::sort(&mut findings);
-    Ok(Analysis { sources, circuit, wiring, operating, findings, skipped })
+    Ok(Analysis { sources, circuit, wiring, operating, hopeless, findings, skipped })
 }

@@ -119,9 +119,14 @@ impl<'a> Expander<'a> {
         let message = if definitions + models == 0 {
             "there are no elements in this file, so there is nothing to check".to_owned()
         } else {
-            format!(
-                "this file only defines {definitions} subcircuits and {models} models, so there is nothing to check"
-            )
+            let counted = |count: usize, what: &str| match count {
+                0 => None,
+                1 => Some(format!("1 {what}")),
+                _ => Some(format!("{count} {what}s")),
+            };
+            let parts = [counted(definitions, "subcircuit"), counted(models, "model")];
+            let parts: Vec<String> = parts.into_iter().flatten().collect();
+            format!("this file only defines {}, so there is nothing to check", parts.join(" and "))
         };
         let finding = Finding::new("nothing-to-check", Severity::Note, span, message)
             .label("no element behind this title")

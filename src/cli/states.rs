@@ -6,7 +6,6 @@ use super::input::Input;
 use super::output::Console;
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::finding::Severity;
-use kneewise::operating::Verdict;
 use kneewise::report::{self, Summary};
 
 pub fn run(console: &mut Console, command: &States) -> End {
@@ -62,8 +61,6 @@ fn worst(console: &mut Console, command: &States, analysis: &Analysis) -> Option
         let file = command.file.display();
         console.say(&format!("{file} has {}; `kneewise check {file}` tells them", summary.troubles()));
     }
-    let hopeless = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
-    let cases = analysis.operating.iter().flat_map(|o| &o.cases);
-    let verdict = cases.map(|c| c.verdict).any(hopeless).then_some(Severity::Error);
+    let verdict = analysis.hopeless.then_some(Severity::Error);
     verdict.max(summary.worst())
 }

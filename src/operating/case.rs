@@ -40,7 +40,11 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
             verdict,
             text: missed(relative),
             elements: withheld.elements.clone(),
+            left_to_time: false,
         });
+    }
+    for contradiction in &mut contradictions {
+        contradiction.left_to_time = is_left_to_time(setting, contradiction);
     }
     let mut maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
     let solutions = if withheld.whole.is_some() {
@@ -63,6 +67,21 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
         residual,
         solutions,
     }
+}
+
+/// Whether a moving source meets an inductor in this loop, in one of its extreme instants or, having no DC value,
+/// at time zero.
+fn is_left_to_time(setting: &Setting<'_>, contradiction: &Contradiction) -> bool {
+    let has = |wanted: fn(&Behaviour) -> bool| {
+        contradiction.elements.iter().any(|&id| wanted(&setting.circuit.element(id).behaviour))
+    };
+    let moves = |behaviour: &Behaviour| match behaviour {
+        Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
+        _ => false,
+    };
+    contradiction.verdict == Verdict::None
+        && has(|b| matches!(b, Behaviour::Inductor { .. }))
+        && (setting.condition.instant || has(moves))
 }
 
 /// Which part each branch and node belongs to, and how many diodes each has.
@@ -146,7 +165,7 @@ impl Withheld {
     ) -> Contradiction {
         let of_part = |id: &&ElementId| part.branches.contains(&assembly.branch[id.index()]);
         let elements = self.elements.iter().filter(of_part).take(MOST_BLAMED).copied().collect();
-        Contradiction { verdict: Verdict::Unverified, text: missed(relative), elements }
+        Contradiction { verdict: Verdict::Unverified, text: missed(relative), elements, left_to_time: false }
     }
 }
 

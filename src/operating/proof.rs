@@ -249,10 +249,13 @@ impl Prover<'_> {
         self.potential(circuit.node(id, 2)) - self.potential(circuit.node(id, 3))
     }
 
-    /// The control's terms: a difference of large potentials is no better than they are.
+    /// The control's terms: a difference of large potentials is no better than they are, and what is nothing among
+    /// the voltages around the control is nothing before its gain too.
     fn control_scale(&self, id: ElementId) -> f64 {
         let circuit = self.setting.circuit;
-        self.potential(circuit.node(id, 2)).abs().max(self.potential(circuit.node(id, 3)).abs())
+        let (plus, minus) = (circuit.node(id, 2), circuit.node(id, 3));
+        let around = self.scales.voltage[self.scales.part(plus, minus)];
+        self.potential(plus).abs().max(self.potential(minus).abs()).max(around * (NOTHING / MET))
     }
 
     fn held(&mut self, id: ElementId) {

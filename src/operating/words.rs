@@ -101,7 +101,7 @@ impl Words<'_> {
     }
 
     fn contradiction(&self, verdict: Verdict, branches: &[u32], text: String) -> Contradiction {
-        Contradiction { verdict, text, elements: self.elements(branches) }
+        Contradiction { verdict, text, elements: self.elements(branches), left_to_time: false }
     }
 
     fn branch(&self, number: u32) -> Option<&Branch> {

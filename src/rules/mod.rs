@@ -5,7 +5,7 @@
 mod support;
 
 use support::{Cause, LooseEnd, causes, count, in_cases, is_told, list};
-pub use support::{Check, Evidence, Rule, Skipped, accept, run};
+pub use support::{Check, Evidence, Rule, Skipped, accept, is_hopeless, run};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 

@@ -49,6 +49,7 @@ pub fn tokens(text: &str, from: u32, to: u32, out: &mut Vec<Token>) -> Result<()
     let bytes = text.as_bytes();
     let mut rest = bytes.get(from as usize..to as usize).unwrap_or_default();
     let offset = |rest: &[u8]| to - u32::try_from(rest.len()).unwrap_or(0);
+    let mut place = Place::of(rest);
     loop {
         if let Ok((next, ())) = separator(rest) {
             rest = next;
@@ -59,12 +60,86 @@ pub fn tokens(text: &str, from: u32, to: u32, out: &mut Vec<Token>) -> Result<()
         let start = offset(rest);
         match token(rest) {
             Ok((next, kind)) => {
-                rest = next;
+                let more = if kind == TokenKind::Word {
+                    place.wrapped_end(rest, rest.len() - next.len())
+                } else {
+                    0
+                };
+                place.pass(kind);
+                rest = next.get(more..).unwrap_or_default();
                 out.push(Token { start, end: offset(rest), kind });
             }
             Err(_) => return Err(Broken { start, what: unclosed(rest) }),
         }
     }
+}
+
+/// Where in its statement a word stands, to tell a node's name such as `Net-(D1-A)` from `SIN(0 1 50)`.
+struct Place {
+    /// First letter of the statement, in lower case.
+    letter: u8,
+    /// Words so far.
+    words: usize,
+}
+
+impl Place {
+    fn of(statement: &[u8]) -> Self {
+        let first = separator(statement).ok().and_then(|(rest, ())| rest.first().copied());
+        Place { letter: first.unwrap_or(0).to_ascii_lowercase(), words: 0 }
+    }
+
+    fn pass(&mut self, kind: TokenKind) {
+        self.words += usize::from(matches!(kind, TokenKind::Word | TokenKind::Expression));
+    }
+
+    /// `wrapped-name = name 1*( "(" 1*inner ")" *name-char )`: schematic editors write `Net-(D1-A)` and
+    /// `unconnected-(U1-~{EN}-Pad3)`. How far a name whose first `length` bytes are read goes on.
+    fn wrapped_end(&self, input: &[u8], length: usize) -> usize {
+        let head = input.get(..length).unwrap_or_default();
+        let mut at = length;
+        loop {
+            match input.get(at) {
+                Some(b'{') if input.get(at.wrapping_sub(1)) == Some(&b'~') => {}
+                Some(b'(') if self.takes_node(head) => {}
+                _ => return at - length,
+            }
+            let Some(end) = closed(&input[at..]) else { return at - length };
+            at += end;
+            at += word(&input[at..]).map_or(0, |(rest, _)| input.len() - at - rest.len());
+        }
+    }
+
+    /// Whether a word here is a node, and not what a source or a model begins with.
+    fn takes_node(&self, head: &[u8]) -> bool {
+        let is_plain = head.iter().all(|b| b.is_ascii_alphanumeric() || *b == b'_');
+        match self.letter {
+            b'r' | b'c' | b'l' | b'v' | b'i' | b'd' | b'b' | b'f' | b'h' | b'w' => {
+                (1..=2).contains(&self.words)
+            }
+            b'q' | b'j' | b'm' | b't' | b's' => (1..=4).contains(&self.words),
+            // POLY(1), TABLE(…), VALUE(…) may stand in their third place
+            b'e' | b'g' => (1..=2).contains(&self.words) || ((3..=4).contains(&self.words) && !is_plain),
+            _ => self.words >= 1 && !is_plain,
+        }
+    }
+}
+
+/// The length of what is enclosed from the first byte to its counterpart, if a name can hold it: no white space, no
+/// sign and no comma.
+fn closed(input: &[u8]) -> Option<usize> {
+    let mut depth = 0usize;
+    for (n, byte) in input.iter().enumerate() {
+        match byte {
+            b'(' | b'{' => depth += 1,
+            b')' | b'}' => depth -= 1,
+            0..=b' ' | b'=' | b',' | b';' | b'\'' | b'"' => return None,
+            _ => {}
+        }
+        if depth == 0 {
+            return (n > 1).then_some(n + 1);
+        }
+    }
+    None
 }
 
 fn unclosed(rest: &[u8]) -> &'static str {
@@ -116,7 +191,8 @@ fn word(input: &[u8]) -> IResult<&[u8], TokenKind, ()> {
 }
 
 /// `name-char`: any printable character but white space, `=`, `,`, `;`, parentheses, quotes and braces. The byte that
-/// a hard space begins with is left to [`word`].
+/// a hard space begins with is left to [`word`]. A parenthesis that opens inside a name belongs to it, see
+/// [`Place::wrapped_end`].
 fn is_name_char(byte: u8) -> bool {
     const TABLE: [bool; 256] = {
         let mut table = [true; 256];
@@ -178,6 +254,28 @@ mod tests {
             cut("R1 +24V a[3] /VOUT y#2 <0> 1k;end"),
             ["R1", "+24V", "a[3]", "/VOUT", "y#2", "<0>", "1k"]
         );
+    }
+
+    #[test]
+    fn a_parenthesis_inside_a_name_belongs_to_it() {
+        assert_eq!(
+            cut("D1 Net-(D1-A) unconnected-(U1-~{EN}-Pad3) DX"),
+            ["D1", "Net-(D1-A)", "unconnected-(U1-~{EN}-Pad3)", "DX"]
+        );
+        assert_eq!(cut("R1 (Net-(R1-Pad1),/~{RST}) 1k"), ["R1", "(", "Net-(R1-Pad1)", "/~{RST}", ")", "1k"]);
+        assert_eq!(cut("R1 data(3) data(4) 1k"), ["R1", "data(3)", "data(4)", "1k"]);
+        assert_eq!(cut("X1 Net-(U1-IN(A)) 0 OPA"), ["X1", "Net-(U1-IN(A))", "0", "OPA"]);
+    }
+
+    #[test]
+    fn a_parenthesis_behind_a_word_of_the_language_does_not() {
+        assert_eq!(cut("V1 a 0 SIN(0 1 50)").len(), 9);
+        assert_eq!(cut("V1 a 0 DC(5)"), ["V1", "a", "0", "DC", "(", "5", ")"]);
+        assert_eq!(cut("E1 o 0 POLY(1) a 0 0 1").len(), 11);
+        assert_eq!(cut("E1(o 0) (a 0) 2").len(), 10);
+        assert_eq!(cut(".func my_f(x) {x}")[..3], [".func", "my_f", "("]);
+        assert_eq!(cut(".ic v(a)=1"), [".ic", "v", "(", "a", ")", "=", "1"]);
+        assert_eq!(cut("D1 a(b 0 DX"), ["D1", "a", "(", "b", "0", "DX"]);
     }
 
     #[test]

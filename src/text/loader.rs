@@ -36,7 +36,7 @@ impl Loader for Disk {
         path.is_file()
     }
     fn resolve(&self, path: &Path) -> PathBuf {
-        path.canonicalize().unwrap_or_else(|_| lexical(path))
+        path.canonicalize().unwrap_or_else(|_| resolved_as_far_as_it_exists(path))
     }
     fn boundary(&self, root: &Path) -> PathBuf {
         let root = self.resolve(root);
@@ -74,6 +74,19 @@ impl Loader for Memory {
     fn resolve(&self, path: &Path) -> PathBuf {
         lexical(path)
     }
+}
+
+/// A path of which the end does not exist: its longest beginning that does, resolved, and the rest. So a missing file
+/// beside the netlist is missing, and not outside.
+fn resolved_as_far_as_it_exists(path: &Path) -> PathBuf {
+    let path = lexical(path);
+    for beginning in path.ancestors().skip(1) {
+        let here = if beginning.as_os_str().is_empty() { Path::new(".") } else { beginning };
+        if let (Ok(known), Ok(rest)) = (here.canonicalize(), path.strip_prefix(beginning)) {
+            return lexical(&known.join(rest));
+        }
+    }
+    path
 }
 
 /// The path without `.` and, as far as it can be told without looking, without `..`.

@@ -30,7 +30,12 @@ pub(super) struct Group<'a> {
 pub(super) fn groups(operating: &Operating) -> Vec<Group<'_>> {
     let mut groups: Vec<Group<'_>> = Vec::new();
     for case in &operating.cases {
-        let causes: Vec<&str> = case.contradictions.iter().map(|c| c.text.as_str()).collect();
+        let mut causes: Vec<&str> = Vec::new();
+        for cause in &case.contradictions {
+            if !causes.contains(&cause.text.as_str()) {
+                causes.push(&cause.text);
+            }
+        }
         match groups.iter_mut().find(|g| g.verdict() == case.verdict && g.causes == causes) {
             Some(group) => group.cases.push(case),
             None => groups.push(Group { cases: vec![case], causes }),
@@ -53,7 +58,7 @@ impl Group<'_> {
         let sentence = format!("{word}{place}: {}", self.meaning());
         for (n, line) in wrap(&sentence, WIDTH).iter().enumerate() {
             match line.strip_prefix(word).filter(|_| n == 0) {
-                Some(rest) => page.ink(verdict_ink(self.verdict()), word).plain(rest).end(),
+                Some(rest) => page.ink(self.ink(), word).plain(rest).end(),
                 None => page.plain(line).end(),
             };
         }
@@ -63,6 +68,22 @@ impl Group<'_> {
         for solution in &first.solutions {
             open_quantities(page, circuit, solution);
         }
+    }
+
+    fn ink(&self) -> Ink {
+        match self.verdict() {
+            Verdict::Unique => Ink::Live,
+            Verdict::None if self.is_left_to_time() => Ink::Warning,
+            Verdict::None | Verdict::Unverified => Ink::Error,
+            _ => Ink::Warning,
+        }
+    }
+
+    /// Whether every contradiction is one that an instant cannot judge.
+    fn is_left_to_time(&self) -> bool {
+        let all = self.cases.iter().flat_map(|c| &c.contradictions);
+        let mut none = all.filter(|c| c.verdict == Verdict::None).peekable();
+        none.peek().is_some() && none.all(|c| c.left_to_time)
     }
 
     /// What the verdict means here.
@@ -85,6 +106,10 @@ impl Group<'_> {
             }
             Verdict::Several => format!("{sets} sets of states satisfy the circuit laws"),
             Verdict::Partial => "parts of the circuit could not be evaluated".into(),
+            Verdict::None if self.is_left_to_time() => {
+                "taken by itself, such a moment sees an inductor as a short circuit, so it judges nothing here"
+                    .into()
+            }
             Verdict::None => "no set of states satisfies the circuit laws".into(),
             Verdict::Unverified => {
                 "the result does not satisfy the circuit laws closely enough to be shown".into()
@@ -111,14 +136,6 @@ fn facts(circuit: &Circuit, case: &Case) -> String {
     }
     facts.push(format!("{} °C", case.temperature));
     clean(&facts.join(", "))
-}
-
-fn verdict_ink(verdict: Verdict) -> Ink {
-    match verdict {
-        Verdict::Unique => Ink::Live,
-        Verdict::None | Verdict::Unverified => Ink::Error,
-        _ => Ink::Warning,
-    }
 }
 
 /// The nodes and branches whose value is open.

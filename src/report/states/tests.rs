@@ -32,7 +32,12 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
         voltage: Quantity::Open(Interval { low: 0.0, high: f64::INFINITY }),
     };
     let nodes = if verdict == Verdict::Floating { vec![node] } else { Vec::new() };
-    let cause = Contradiction { verdict, text: "D2 alone leads there".into(), elements: Vec::new() };
+    let cause = Contradiction {
+        verdict,
+        text: "D2 alone leads there".into(),
+        elements: Vec::new(),
+        left_to_time: false,
+    };
     Case {
         name: name.into(),
         sources: vec![(ElementId::new(0), 12.0)],

@@ -1,7 +1,7 @@
 //! What the states say, told once over all conditions.
 
 use super::{Evidence, Rule};
-use crate::circuit::{Behaviour, ElementId, ScopeId};
+use crate::circuit::{ElementId, ScopeId};
 use crate::finding::Finding;
 use crate::operating::{Case, Contradiction, Operating, Verdict};
 use crate::text::{FileId, Span};
@@ -21,7 +21,7 @@ pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Ve
     let mut known: FxHashMap<(Vec<ElementId>, &str), usize> = FxHashMap::default();
     for (number, case) in operating.cases.iter().enumerate() {
         for contradiction in case.contradictions.iter().filter(|c| c.verdict == verdict) {
-            if is_left_to_time(evidence, case, contradiction) {
+            if is_left_to_time(evidence, contradiction) {
                 continue;
             }
             let at = *known.entry(identity(contradiction)).or_insert(causes.len());
@@ -35,19 +35,20 @@ pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Ve
     causes
 }
 
-/// A moving source drives an inductor: an instant taken by itself sees a short circuit where there is none.
-fn is_left_to_time(evidence: &Evidence<'_>, case: &Case, contradiction: &Contradiction) -> bool {
-    let has = |wanted: fn(&Behaviour) -> bool| {
-        contradiction.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
-    };
-    let moves = |behaviour: &Behaviour| match behaviour {
-        Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
-        _ => false,
-    };
-    // a controlled current into capacitors alone integrates: what feedback makes of it is no matter of one instant
+/// Whether some condition has no answer, or one that does not check, for a cause that one instant can judge.
+pub fn is_hopeless(evidence: &Evidence<'_>, operating: &Operating) -> bool {
+    let counts = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
+    operating.cases.iter().filter(|case| counts(case.verdict)).any(|case| {
+        let mut causes = case.contradictions.iter().filter(|c| counts(c.verdict)).peekable();
+        causes.peek().is_none() || causes.any(|c| !is_left_to_time(evidence, c))
+    })
+}
+
+/// What one instant cannot judge: a moving source that drives an inductor, and a controlled current into
+/// capacitors alone, which integrates: what feedback makes of it is no matter of one instant.
+fn is_left_to_time(evidence: &Evidence<'_>, contradiction: &Contradiction) -> bool {
     let mut driven = evidence.wiring.cuts.iter().filter(|cut| cut.driven).flat_map(|cut| &cut.leads);
-    has(|b| matches!(b, Behaviour::Inductor { .. })) && (case.instant || has(moves))
-        || driven.any(|id| contradiction.elements.contains(id))
+    contradiction.left_to_time || driven.any(|id| contradiction.elements.contains(id))
 }
 
 /// The same elements, in whatever order the walk begins; without elements the words decide.
