@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId};
 use crate::finding::{Finding, Severity, quantity};
-use crate::topology::{Step, Sum, span_of_values, total};
+use crate::topology::{Loop, Step, Sum, span_of_values, total};
 
 pub const RULE: Rule = Rule {
     name: "forward-across-source",
@@ -44,6 +44,12 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let series = model.and_then(|m| circuit.model(m).parameter("rs")).map_or(0.0, |v| v.number);
     let (anode, cathode) = (circuit.node(id, 0), circuit.node(id, 1));
     if series != 0.0 || anode == cathode || !evidence.wiring.potentials.joined(anode, cathode) {
+        return None;
+    }
+    // where sources contradict each other there is no one voltage; that has been told
+    let touches = |s: &Step| evidence.wiring.potentials.joined(circuit.node(s.element, 0), anode);
+    let contradicts = |l: &Loop| !matches!(l.sum, Sum::Zero) && l.steps.first().is_some_and(touches);
+    if evidence.wiring.loops.iter().any(contradicts) {
         return None;
     }
     let steps = evidence.wiring.potentials.walk(circuit, anode, cathode)?;

@@ -7,6 +7,8 @@
 mod abnf;
 mod broken;
 mod files;
+mod printer;
+mod properties;
 #[allow(dead_code, reason = "other binaries use more of it")]
 #[path = "../circuits/seed.rs"]
 mod seed;
