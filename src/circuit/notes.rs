@@ -57,7 +57,7 @@ impl Expander<'_> {
         if let Some(nearest) = problem.nearest {
             finding.help = format!("Did you mean `{nearest}`? Until it is mended the note has no effect.");
             finding = finding
-                .fix(format!("write {nearest}"), vec![Edit { span: at, replacement: nearest.to_owned() }]);
+                .fix(format!("write `{nearest}`"), vec![Edit { span: at, replacement: nearest.to_owned() }]);
         }
         self.tell(finding);
     }
