@@ -46,8 +46,12 @@ impl Fields {
                 TokenKind::Open | TokenKind::Close | TokenKind::Equals => continue,
                 _ => {}
             }
+            // the word of a dot line is no key, whatever follows it
+            let is_dot_word = at == 1 && text.get(token.start as usize) == Some(&b'.');
             let value = match self.tokens.get(at) {
-                Some(sign) if sign.kind == TokenKind::Equals => self.tokens.get(at + 1).copied(),
+                Some(sign) if sign.kind == TokenKind::Equals && !is_dot_word => {
+                    self.tokens.get(at + 1).copied()
+                }
                 _ => None,
             };
             if let Some(value) = value.filter(|v| is_value(*v)) {
@@ -100,6 +104,13 @@ mod tests {
         assert_eq!(fields.words.len(), 4);
         assert_eq!(fields.words_before_pairs, 4);
         assert_eq!(fields.pairs.len(), 2);
+    }
+
+    #[test]
+    fn the_word_of_a_dot_line_is_no_key() {
+        let mut fields = Fields::default();
+        fields.read(".survey = 5 depth=3", 0, 19).unwrap();
+        assert_eq!((fields.words.len(), fields.pairs.len()), (2, 1));
     }
 
     #[test]
