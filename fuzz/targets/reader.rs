@@ -23,7 +23,8 @@ fn spans(finding: &Finding) -> Vec<Span> {
 
 fuzz_target!(|bytes: &[u8]| {
     let mut files = Memory::with("a.net", bytes);
-    let reading = circuit::read(&mut files, Path::new("a.net"), &Options::default()).expect("it is in memory");
+    let reading =
+        circuit::read(&mut files, Path::new("a.net"), &Options::default()).expect("it is in memory");
     for span in reading.findings.iter().flat_map(spans) {
         holds(&reading.sources, span);
     }
