@@ -290,7 +290,12 @@ fn is_name_start(byte: u8) -> bool {
 
 /// `name = name-start *( name-start / DIGIT / "." )`
 fn name_run(text: &[u8]) -> IResult<&[u8], &[u8], ()> {
-    take_while1(|b: u8| is_name_start(b) || b.is_ascii_digit() || b == b'.').parse(text)
+    take_while1(is_in_names).parse(text)
+}
+
+/// Whether a parameter's or function's name may hold this byte.
+pub(super) fn is_in_names(byte: u8) -> bool {
+    is_name_start(byte) || byte.is_ascii_digit() || byte == b'.'
 }
 
 /// Length of a number with its exponent, suffix and unit letters.

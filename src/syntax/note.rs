@@ -1,8 +1,6 @@
 //! The grammar of notes, `*@ …`: words and places only; names are resolved and numbers judged by `circuit`.
 
 use super::number::number;
-use nom::bytes::complete::{tag_no_case, take_while1};
-use nom::{IResult, Parser};
 
 /// A word of a note: its bytes counted from the start of the note.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -220,7 +218,7 @@ fn expect_note<'t>(words: &[NoteWord<'t>]) -> Taken<'t> {
     let mut subject = word(words, 0)?;
     let mut text = ExpectText::default();
     let mut at = 1;
-    if let Ok((_, node)) = voltage_of(subject.text) {
+    if let Some(node) = voltage_of(subject.text) {
         subject = NoteWord { start: subject.start + 2, text: node };
         text.is_voltage = true;
         text.range = Some(word(words, 1).and_then(|w| span(w.text).ok_or(1))?);
@@ -241,10 +239,9 @@ fn expect_note<'t>(words: &[NoteWord<'t>]) -> Taken<'t> {
 }
 
 /// `voltage-of = "v(" node ")"`
-fn voltage_of(text: &str) -> IResult<&str, &str, ()> {
-    let (rest, (_, node, _)) =
-        (tag_no_case("v("), take_while1(|c| c != ')'), tag_no_case(")")).parse(text)?;
-    Ok((rest, node))
+fn voltage_of(text: &str) -> Option<&str> {
+    let (head, node) = text.strip_suffix(')')?.split_at_checked(2)?;
+    (head.eq_ignore_ascii_case("v(") && !node.is_empty()).then_some(node)
 }
 
 /// `restriction = "at" condition / "in some condition" / "over time"`
@@ -277,8 +274,8 @@ fn watch_note<'t>(words: &[NoteWord<'t>]) -> Taken<'t> {
 
 fn plain_or_voltage(word: NoteWord<'_>) -> NoteWord<'_> {
     match voltage_of(word.text) {
-        Ok(("", node)) => NoteWord { start: word.start + 2, text: node },
-        _ => word,
+        Some(node) => NoteWord { start: word.start + 2, text: node },
+        None => word,
     }
 }
 
@@ -378,6 +375,12 @@ mod tests {
         assert!(note("*@ drop D1").is_err());
         assert!(note("*@ hold Q1 perhaps").is_err());
         assert!(note("*@").is_err());
+    }
+
+    #[test]
+    fn a_node_with_parentheses_is_whole_in_a_voltage() {
+        let NoteText::Expect(name, text) = note("*@ expect v(Net-(D1-A)) 1..2").unwrap() else { panic!() };
+        assert_eq!((name.text, name.start, text.is_voltage), ("Net-(D1-A)", 12, true));
     }
 
     #[test]

@@ -1,6 +1,7 @@
 //! One logical line to words, expressions, quoted texts and signs.
 
 use super::blank::{blank, is_hard_space};
+use super::expression::is_in_names;
 use nom::IResult;
 
 /// What a token is.
@@ -119,6 +120,8 @@ impl Place {
             b'q' | b'j' | b'm' | b't' | b's' => (1..=4).contains(&self.words),
             // POLY(1), TABLE(…), VALUE(…) may stand in their third place
             b'e' | b'g' => (1..=2).contains(&self.words) || ((3..=4).contains(&self.words) && !is_plain),
+            // a function of .func and .param may have any letters in its name
+            b'.' => self.words >= 1 && !head.iter().all(|&b| is_in_names(b)),
             _ => self.words >= 1 && !is_plain,
         }
     }
@@ -274,6 +277,7 @@ mod tests {
         assert_eq!(cut("E1 o 0 POLY(1) a 0 0 1").len(), 11);
         assert_eq!(cut("E1(o 0) (a 0) 2").len(), 10);
         assert_eq!(cut(".func my_f(x) {x}")[..3], [".func", "my_f", "("]);
+        assert_eq!(cut(".func größe.2(x) {x}")[..3], [".func", "größe.2", "("]);
         assert_eq!(cut(".ic v(a)=1"), [".ic", "v", "(", "a", ")", "=", "1"]);
         assert_eq!(cut("D1 a(b 0 DX"), ["D1", "a", "(", "b", "0", "DX"]);
     }

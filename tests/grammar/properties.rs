@@ -207,7 +207,7 @@ fn neither_the_order_of_lines_nor_the_names_of_nodes_matter() {
     let other: Vec<String> =
         ["0", "zwölf/7", "+24V", "a[3]", "<probe>", "LONGER_NAME", "q.y#2"].map(str::to_owned).to_vec();
     let back: BTreeMap<String, String> = other.iter().cloned().zip(plain.iter().cloned()).collect();
-    for _ in 0..700 {
+    for _ in 0..400 {
         let mut lines = random_circuit(&mut seed);
         let text = netlist(&lines, &plain);
         let first = essence(&check(text.as_bytes(), true), &BTreeMap::new());
