@@ -14,7 +14,7 @@ pub use accept::{about_note, accept};
 pub use cases::{Cause, causes, contradiction, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
 pub use loose::LooseEnd;
-pub use rule::{Check, Rule, Skipped};
+pub use rule::{Check, GROUPS, Rule, Skipped};
 pub use run::run;
 pub use turn::turn_round;
 pub use words::{count, list};

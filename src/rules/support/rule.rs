@@ -16,11 +16,14 @@ pub enum Check {
     Notes,
 }
 
+/// The groups of rules, in the order in which a file meets them.
+pub const GROUPS: [&str; 6] = ["reading", "wiring", "orientation", "states", "notes", "caution"];
+
 /// One rule.
 pub struct Rule {
     /// Name, in words joined by hyphens.
     pub name: &'static str,
-    /// Group in the listing: `reading`, `wiring`, `orientation`, `states`, `notes`, `caution`.
+    /// Group in the listing, one of [`GROUPS`].
     pub group: &'static str,
     /// Its severity.
     pub severity: Severity,
