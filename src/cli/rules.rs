@@ -5,6 +5,7 @@ use super::args::Rules;
 use super::output::Console;
 use kneewise::report;
 use kneewise::rules;
+use kneewise::text::nearest;
 
 pub fn run(console: &mut Console, command: &Rules) -> End {
     let mut page = console.page();
@@ -13,7 +14,9 @@ pub fn run(console: &mut Console, command: &Rules) -> End {
         Some(name) => match rules::find(name) {
             Some(rule) => report::rule(&mut page, rule),
             None => {
-                console.say(&format!("there is no rule `{name}`; `kneewise rules` lists all"));
+                let near = nearest(name, rules::all().iter().map(|rule| rule.name));
+                let hint = near.map_or(String::new(), |near| format!("; did you mean `{near}`?"));
+                console.say(&format!("there is no rule `{name}`{hint} (`kneewise rules` lists all)"));
                 return End::Failed;
             }
         },

@@ -3,12 +3,10 @@
 use super::paint::{Ink, Page, wrap};
 use super::table::{self, Cell};
 use super::terminal::ink;
-use crate::rules::Rule;
+use crate::rules::{GROUPS, Rule};
 
 /// Running text is broken at this width.
 const WIDTH: usize = 96;
-/// The groups in the order in which a file meets them; others follow.
-const GROUPS: [&str; 6] = ["reading", "wiring", "orientation", "states", "notes", "caution"];
 
 /// Writes one line for each rule, group by group.
 pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
