@@ -133,6 +133,7 @@ impl Reader<'_> {
         }
         let closes_nothing_new = word.starts_with("end") && word.len() > 3;
         if PASSED_OVER.contains(&word)
+            || self.is_full("unknown-dot-line")
             || !self.told_words.insert(word.to_owned())
             || closes_nothing_new && nearest(word, KNOWN).is_none()
         {

@@ -45,6 +45,8 @@ pub(crate) struct Expander<'a> {
     pub(super) frames: Vec<Frame<'a>>,
     /// Expressions within expressions.
     pub(super) depth: usize,
+    /// Bytes of function bodies that were evaluated.
+    pub(super) of_functions: usize,
     /// Root nodes by folded name.
     root_nodes: Vec<NodeId>,
     /// Root elements with the hashes of their names; sorted when all are known.
@@ -77,6 +79,7 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
         told: Told::default(),
         frames: Vec::new(),
         depth: 0,
+        of_functions: 0,
         root_nodes: Vec::new(),
         root_elements: Vec::new(),
         globals: FxHashSet::default(),

@@ -11,6 +11,8 @@ use std::path::{Component, Path, PathBuf};
 const DEEPEST: usize = 32;
 /// Files of one root.
 const MOST_FILES: usize = 10_000;
+/// Bytes of all files of one root: a small file can include a large one a thousand times. Fewer in tests.
+const MOST_BYTES: usize = if cfg!(test) { 1 << 20 } else { 1 << 30 };
 
 /// What looking for a file gives.
 enum Found {
@@ -68,6 +70,7 @@ impl Reader<'_> {
             return self.tell_too_deep(span);
         }
         match self.loader.load(&path) {
+            Ok(bytes) if self.bytes.saturating_add(bytes.len()) > MOST_BYTES => self.tell_too_much(span),
             Ok(bytes) => {
                 self.stack.push(key);
                 let fields = std::mem::take(&mut self.fields);
@@ -161,6 +164,14 @@ impl Reader<'_> {
         let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
             .help("Include fewer files, or check the parts one by one.");
+        self.missing(finding);
+    }
+
+    fn tell_too_much(&mut self, span: Span) {
+        let message = format!("with this file more than {MOST_BYTES} bytes would be read");
+        let finding = Finding::new("limit-reached", Severity::Error, span, message)
+            .label("not read")
+            .help("include less, or check the parts one by one");
         self.missing(finding);
     }
 

@@ -11,6 +11,8 @@ use crate::syntax::Pair;
 use crate::text::{Span, nearest};
 use rustc_hash::FxHashMap;
 
+/// Names among which the one that was meant is looked for.
+const MOST_CANDIDATES: usize = 2000;
 /// Instances within instances.
 const DEEPEST: usize = 64;
 /// Elements, instances and notes together, after expansion; fewer in tests, which must be quick.
@@ -238,12 +240,15 @@ impl Expander<'_> {
                 None => by_name.push((name, span, 1)),
             }
         }
+        let mut known: Vec<&str> = self.parsed.blocks[0].subcircuits.keys().map(String::as_str).collect();
+        known.sort_unstable();
+        known.truncate(MOST_CANDIDATES);
         for (name, span, count) in by_name {
             let text = self.sources.slice(span);
             let more = if count > 1 { format!(", named by {count} instances,") } else { String::new() };
-            let mut known: Vec<&str> = self.parsed.blocks[0].subcircuits.keys().map(String::as_str).collect();
-            known.sort_unstable();
-            let help = nearest(&name, known).map_or_else(
+            let is_full = self.told.is_full("missing-subcircuit");
+            let near = if is_full { None } else { nearest(&name, known.iter().copied()) };
+            let help = near.map_or_else(
                 || "Add its definition or include the file that holds it; until then".to_owned(),
                 |near| format!("Did you mean `{near}`? Until it is defined"),
             );

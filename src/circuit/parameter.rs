@@ -59,6 +59,11 @@ pub(super) enum Evaluation {
 
 /// Parameters that need parameters, and expressions within them.
 const DEEPEST: usize = 400;
+/// Bytes of function bodies that are evaluated in all: forty functions that each call another twice would take longer
+/// than anyone lives. Fewer in tests, which must be quick.
+const MOST_OF_FUNCTIONS: usize = if cfg!(test) { 1 << 20 } else { 100 << 20 };
+/// Names among which the one that was meant is looked for.
+const MOST_CANDIDATES: usize = 2000;
 
 /// An expression under evaluation: where its text stands and in which frame it is looked at.
 #[derive(Clone, Copy)]
@@ -257,10 +262,24 @@ impl<'a> Expander<'a> {
         bound: (&[String], &[f64]),
     ) -> Result<f64, Worth> {
         let text = self.sources.slice(inner);
+        self.of_functions += text.len() + 1;
+        if self.of_functions > MOST_OF_FUNCTIONS {
+            return Err(self.tell_functions(inner));
+        }
         match syntax::expression(text) {
             Ok(tree) => self.tree(Context { text, inner, frame: context.frame, bound: Some(bound) }, &tree),
             Err(problem) => Err(self.tell_unreadable(inner, text, &problem)),
         }
+    }
+
+    fn tell_functions(&mut self, body: Span) -> Worth {
+        let message =
+            format!("functions call functions until {MOST_OF_FUNCTIONS} bytes of them are evaluated");
+        let finding = Finding::new("limit-reached", Severity::Error, body, message)
+            .label("not evaluated any more")
+            .help("break the chain of functions, or write the number");
+        self.tell(finding);
+        Worth::Told
     }
 
     fn tell_arguments(
@@ -313,6 +332,10 @@ impl<'a> Expander<'a> {
     }
 
     fn near_parameter(&self, frame: usize, text: &str) -> Option<String> {
+        let known: usize = self.frames.iter().map(|f| f.parameters.table.len()).sum();
+        if known > MOST_CANDIDATES || self.told.is_full("unknown-parameter") {
+            return None;
+        }
         let mut names: Vec<&str> =
             self.frames.iter().take(frame + 1).flat_map(|f| f.parameters.table.keys().copied()).collect();
         names.sort_unstable();

@@ -28,6 +28,8 @@ pub(super) struct Reader<'a> {
     /// Included files must lie below this.
     pub boundary: PathBuf,
     pub fields: Fields,
+    /// Bytes of all files so far.
+    pub bytes: usize,
     /// Unknown dot words that have been told: each is told once.
     pub told_words: FxHashSet<String>,
     /// How many findings of each rule there are.
@@ -51,6 +53,7 @@ pub(super) fn read_files(
         open: vec![0],
         boundary,
         fields: Fields::default(),
+        bytes: 0,
         told_words: FxHashSet::default(),
         counts: FxHashMap::default(),
     };
@@ -66,6 +69,7 @@ impl Reader<'_> {
     /// Reads one file, or one section of it, into the open block.
     pub(super) fn file(&mut self, path: &Path, bytes: &[u8], from: Option<Span>, section: Option<&str>) {
         let too_long = bytes.len() > LONGEST_FILE;
+        self.bytes = self.bytes.saturating_add(bytes.len());
         let file = self.sources.add(path.display().to_string(), if too_long { b"" } else { bytes });
         self.parsed.includes.push(from);
         if too_long {
@@ -139,6 +143,11 @@ impl Reader<'_> {
     pub(super) fn block(&mut self) -> &mut Block {
         let open = self.open.last().copied().unwrap_or(0);
         &mut self.parsed.blocks[open]
+    }
+
+    /// Whether further findings of the rule are only counted.
+    pub(super) fn is_full(&self, rule: &str) -> bool {
+        self.counts.get(rule).is_some_and(|&count| count >= super::told::MOST_OF_ONE_RULE)
     }
 
     /// Keeps a finding, with the includes that lead to it; of one rule only so many.

@@ -137,15 +137,8 @@ impl Expander<'_> {
         if self.parsed.include_missing || spans.is_empty() {
             return;
         }
-        let mut seen = Vec::new();
-        spans.retain(|(span, _)| {
-            let name = self.sources.slice(*span).to_ascii_lowercase();
-            let fresh = !seen.contains(&name);
-            if fresh && seen.len() < 1000 {
-                seen.push(name);
-            }
-            fresh
-        });
+        let mut seen = rustc_hash::FxHashSet::default();
+        spans.retain(|(span, _)| seen.insert(self.sources.slice(*span).to_ascii_lowercase()));
         let Some((&(first, id), rest)) = spans.split_first() else { return };
         let names: Vec<&str> = spans.iter().map(|(s, _)| self.sources.slice(*s)).collect();
         let without_word = self.circuit.element(id).name_span == first;

@@ -256,3 +256,34 @@ fn a_library_gives_one_note() {
     let rules: Vec<_> = reading.findings.iter().map(|f| f.rule).collect();
     assert_eq!(rules, ["nothing-to-check"]);
 }
+
+#[test]
+fn functions_that_call_each_other_twice_do_not_hang() {
+    let mut text = String::from("t\n.func f0(x) {x}\n");
+    for n in 1..60 {
+        text.push_str(&format!(".func f{n}(x) {{f{}(x)+f{}(x)}}\n", n - 1, n - 1));
+    }
+    let reading = read_one(&format!("{text}R1 a 0 {{f59(1)}}\nR2 a 0 {{f3(1)}}\n"));
+    assert!(told(&reading).iter().all(|t| t.0 == "limit-reached"), "{:?}", told(&reading));
+    assert!(!told(&reading).is_empty());
+}
+
+#[test]
+fn what_includes_bring_in_is_bounded() {
+    let large = format!("* {}\n", "x".repeat(100_000));
+    let reading = read_all(&[
+        ("root.cir", &format!("t\n{}", ".include large.inc\n".repeat(50))),
+        ("large.inc", &large),
+    ]);
+    let told = told(&reading);
+    assert!(told.len() == 40 && told.iter().all(|t| t.0 == "limit-reached"), "{told:?}");
+}
+
+#[test]
+fn a_flood_of_unknown_names_among_many_is_told_quickly() {
+    let mut text = String::from("t\n");
+    for n in 0..20_000 {
+        text.push_str(&format!(".param known{n}=1\nR{n} a 0 {{unknwon{n}}}\nX{n} a 0 SUB{n}\n.word{n}\n"));
+    }
+    assert_eq!(told(&read_one(&text)).iter().filter(|t| t.0 == "unknown-parameter").count(), 1000);
+}

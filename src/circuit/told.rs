@@ -65,6 +65,11 @@ pub(super) fn tell_rest(findings: &mut Vec<Finding>, counts: &FxHashMap<&'static
 }
 
 impl Told {
+    /// Whether further findings of the rule are only counted.
+    pub fn is_full(&self, rule: &str) -> bool {
+        self.rules.get(rule).is_some_and(|&count| count >= MOST_OF_ONE_RULE)
+    }
+
     /// How many findings of each rule there were.
     pub fn counts(&self) -> FxHashMap<&'static str, usize> {
         self.rules.clone()
