@@ -254,13 +254,15 @@ impl Expander<'_> {
     /// `unknown-element = name 1*node word`: its letter means nothing here.
     fn unknown_element(&mut self, line: &Line<'_>, letter: u8) {
         let name = line.word_str(0);
+        // the letter is a byte; what is shown is the whole character
+        let first = name.chars().next().map_or(' ', |c| c.to_ascii_uppercase());
         let end = line.fields.words_before_pairs.min(line.len());
         let nodes_end = if end > 3 { end - 1 } else { end };
         let finding = Finding::new(
             "unknown-element",
             Severity::Warning,
             line.head(),
-            format!("{name} begins with {}, which stands for no element known here", char::from(letter)),
+            format!("{name} begins with {first}, which stands for no element known here"),
         )
         .label("kept as an unknown element on its nodes")
         .about(self.here(name))

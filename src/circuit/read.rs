@@ -164,7 +164,9 @@ impl Reader<'_> {
         self.parsed.title = Some(span);
         self.parsed.blocks[0].statement = span;
         let text = self.sources.slice(span);
-        let Some(name) = reads_as_element(text) else { return };
+        let whole = self.sources.get(span.file).map_or("", |f| f.text.as_str());
+        let rest = whole.get(span.end as usize..).unwrap_or("");
+        let Some(name) = reads_as_element(text, rest) else { return };
         let above = Edit { span: Span { end: span.start, ..span }, replacement: "Circuit\n".into() };
         let finding = Finding::new(
             "title-reads-as-element",

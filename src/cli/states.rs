@@ -59,7 +59,12 @@ fn worst(console: &mut Console, command: &States, analysis: &Analysis) -> Option
     summary.add(analysis);
     if summary.errors + summary.warnings > 0 {
         let file = command.file.display();
-        console.say(&format!("{file} has {}; `kneewise check {file}` tells them", summary.troubles()));
+        let common = &command.common;
+        let drop = common.drop.iter().map(|volts| format!(" --drop {volts}"));
+        let set = common.set.iter().map(|(name, value)| format!(" --set {name}={value}"));
+        let options: String = drop.chain(set).collect();
+        console
+            .say(&format!("{file} has {}; `kneewise check {file}{options}` tells them", summary.troubles()));
     }
     let verdict = analysis.hopeless.then_some(Severity::Error);
     verdict.max(summary.worst())

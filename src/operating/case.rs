@@ -9,6 +9,7 @@ use super::view::margin;
 use super::words::{causes, missed, openings};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
+use rustc_hash::FxHashSet;
 
 /// Largest number of diodes in a part for which every view is computed.
 const MOST_VIEWS: usize = 3000;
@@ -43,6 +44,9 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
             left_to_time: false,
         });
     }
+    let mut told = FxHashSet::default();
+    // one cause may spoil several parts
+    contradictions.retain(|c| told.insert((c.text.clone(), c.elements.clone())));
     for contradiction in &mut contradictions {
         contradiction.left_to_time = is_left_to_time(setting, contradiction);
     }
@@ -70,13 +74,16 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
 }
 
 /// Whether a moving source meets an inductor in this loop, in one of its extreme instants or, having no DC value,
-/// at time zero.
+/// at time zero; or a transistor or switch that is held on does, as in a converter, where it is so for a moment only.
 fn is_left_to_time(setting: &Setting<'_>, contradiction: &Contradiction) -> bool {
     let has = |wanted: fn(&Behaviour) -> bool| {
         contradiction.elements.iter().any(|&id| wanted(&setting.circuit.element(id).behaviour))
     };
     let moves = |behaviour: &Behaviour| match behaviour {
         Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
+        Behaviour::Transistor { .. } | Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. } => {
+            true
+        }
         _ => false,
     };
     contradiction.verdict == Verdict::None

@@ -90,8 +90,8 @@ pub struct Contradiction {
     pub text: String,
     /// The elements concerned, in the order of the loop or cut set.
     pub elements: Vec<ElementId>,
-    /// Whether it only shows that one instant cannot judge: a moving source meets an inductor, which an instant
-    /// taken by itself sees as a short circuit.
+    /// Whether it only shows that one instant cannot judge: a moving source, or a switch that is held on, meets an
+    /// inductor, which an instant taken by itself sees as a short circuit.
     pub left_to_time: bool,
 }
 

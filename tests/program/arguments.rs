@@ -124,3 +124,66 @@ fn a_source_can_be_set() {
     assert_eq!(diode["drop_V"], 0.65);
     assert_eq!(diode["drop_origin"], "option");
 }
+
+#[test]
+fn an_instant_that_meets_an_inductor_judges_nothing() {
+    // a transformer across an alternating source, and a converter whose switch is held on: good circuits
+    let mains = "Bench supply\nV1 p 0 SIN(0 17 50)\nL1 p 0 1\nL2 s 0 10m\nK1 L1 L2 0.99\nD1 s o DR\nR1 o 0 1k\n\
+                 .model DR D(IS=1n)\n";
+    let boost = "Beacon supply\nV1 in 0 5\nL1 in sw 10u\nM1 sw g 0 0 MN\nRG g 0 10k\nD1 sw out DR\nR1 out 0 1k\n\
+                 *@ hold M1 both\n.model MN NMOS(VTO=2)\n.model DR D(IS=1n)\n";
+    for circuit in [mains, boost] {
+        for command in ["check", "states"] {
+            let run = feed(&[command, "-"], circuit);
+            assert_eq!(run.code, 0, "{}{}", run.out, run.err);
+        }
+    }
+    let shorted = "Bench supply\nV1 p 0 17\nL1 p 0 1\nD1 p o DR\nR1 o 0 1k\n.model DR D(IS=1n)\n";
+    assert_eq!(feed(&["states", "-"], shorted).code, 1);
+}
+
+#[test]
+fn an_amplifier_whose_input_is_zero_proves() {
+    // a macro model as vendors publish them: a follower between clamps, with nothing at its input
+    let circuit = "Sensor clamp\nVP p 0 15\nVN n 0 -15\nVS in 0 0\nR1 in a 10k\nR2 a b 10k\nRIN b out 1T\n\
+                   E1 x 0 b out 200k\nR3 x y 1k\nE2 z 0 y 0 1\nR4 z out 75\nD1 b p DC\nD2 n b DC\n.model DC D\n";
+    let run = feed(&["states", "-"], circuit);
+    assert_eq!(run.code, 0, "{}{}", run.out, run.err);
+}
+
+#[test]
+fn names_of_schematic_editors_are_nodes() {
+    let circuit = "Beacon\nV1 +12V GND 12\nR1 +12V Net-(D1-A) 1k\nD1 Net-(D1-A) /~{EN} DL\nR2 /~{EN} GND 4k7\n\
+                   .model DL D(IS=1e-20 N=1.8)\n";
+    let run = feed(&["check", "-"], circuit);
+    assert_eq!(run.code, 0, "{}", run.out);
+    assert!(feed(&["states", "-", "--format", "json"], circuit).out.contains(r#""name":"Net-(D1-A)""#));
+}
+
+#[test]
+fn an_include_that_is_missing_is_not_called_outside() {
+    let folder = scratch("missing-include");
+    let netlist = folder.join("board.net");
+    let text = "Board\n.include parts/diodes.lib\n.include /nowhere/diodes.lib\nV1 a 0 5\nR1 a 0 1k\n";
+    std::fs::write(&netlist, text).unwrap();
+    let run = run(&["check", netlist.to_str().unwrap()]);
+    assert!(run.out.contains("include-not-found"), "{}", run.out);
+    assert!(run.out.contains("include-outside"), "{}", run.out);
+}
+
+#[test]
+fn what_an_option_brings_about_is_told_by_the_same_option() {
+    let run = feed(&["states", "-", "--set", "VX=3"], CLEAN);
+    assert!(run.err.contains("`kneewise check - --set VX=3`"), "{}", run.err);
+}
+
+#[test]
+fn diodes_are_counted_where_nothing_could_be_solved() {
+    let circuit =
+        "Clipper\nR1 in m 10k\nR3 in 0 1k\nX1 m 0 out NOSUCH\nD1 m out DC\nD2 out m DC\n.model DC D\n";
+    let run = feed(&["states", "-"], circuit);
+    assert!(run.out.contains("2 diodes: 2 not evaluated; 1 condition"), "{}", run.out);
+    assert_eq!(run.out.matches("X1 is not modelled").count(), 1, "{}", run.out);
+    let json = feed(&["states", "-", "--format", "json"], circuit).out;
+    assert_eq!(json.matches("X1 is not modelled").count(), 1, "{json}");
+}

@@ -9,7 +9,7 @@ mod tests;
 use super::paint::{Page, clean, wrap};
 use super::summary::counted;
 use crate::analysis::Analysis;
-use crate::circuit::{Circuit, ElementId};
+use crate::circuit::{Behaviour, Circuit, ElementId};
 use crate::operating::{Operating, Quantity, Solution, State, Verdict};
 
 pub(super) use rows::state_ink;
@@ -39,7 +39,7 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
         group.write(page, circuit, operating.cases.len() > 1);
     }
-    closing(page, operating, &views);
+    closing(page, circuit, operating, &views);
 }
 
 /// One consistent set of one condition.
@@ -113,7 +113,7 @@ fn left_to_time(page: &mut Page, circuit: &Circuit, operating: &Operating) {
 }
 
 /// `3 diodes: 2 conducting, 1 blocking; 1 condition, 4 factorizations`
-fn closing(page: &mut Page, operating: &Operating, views: &[SetView<'_>]) {
+fn closing(page: &mut Page, circuit: &Circuit, operating: &Operating, views: &[SetView<'_>]) {
     let diodes = views.first().map_or(&[][..], |v| &v.solution.diodes[..]);
     let states = [State::Conducting, State::Blocking, State::Breakdown, State::Open, State::NotEvaluated];
     let tally: Vec<String> = states
@@ -122,8 +122,18 @@ fn closing(page: &mut Page, operating: &Operating, views: &[SetView<'_>]) {
         .filter(|&(_, count)| count > 0)
         .map(|(state, count)| format!("{count} {}", state.word()))
         .collect();
+    if views.is_empty() {
+        // nothing could be solved, so no solution holds them
+        let is_diode = |behaviour: &Behaviour| matches!(behaviour, Behaviour::Diode { .. });
+        let unsolved = circuit.elements().filter(|(_, e)| is_diode(&e.behaviour)).count();
+        page.plain(&counted(unsolved, "diode"));
+        if unsolved > 0 {
+            page.plain(&format!(": {unsolved} {}", State::NotEvaluated.word()));
+        }
+    } else {
+        page.plain(&counted(diodes.len(), "diode"));
+    }
     let solves: usize = operating.cases.iter().map(|c| c.solves).sum();
-    page.plain(&counted(diodes.len(), "diode"));
     if !tally.is_empty() {
         page.plain(": ").plain(&tally.join(", "));
     }
