@@ -4,7 +4,7 @@ use super::assemble::{Assembly, NONE, Owner, Setting};
 use super::drop::Diode;
 use super::evaluate::Solved;
 use super::proof::{Claim, Proof, claims_solution, prove};
-use super::result::{BranchResult, Case, Contradiction, DiodeResult, NodeResult, Residual, Solution};
+use super::result::{BranchResult, Case, Cause, DiodeResult, NodeResult, Residual, Solution};
 use super::view::margin;
 use super::words::{causes, missed, openings};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
@@ -19,25 +19,25 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
     let parts = Parts::of(setting, &solved.assembly, &solved.outcome);
     let (residual, withheld) = check(setting, solved, &parts);
     let (assembly, outcome) = (&solved.assembly, &solved.outcome);
-    let mut contradictions: Vec<Contradiction> = Vec::new();
+    let mut found: Vec<Cause> = Vec::new();
     let mut verdict = outcome.verdict;
     for (part, miss) in outcome.parts.iter().zip(&withheld.parts) {
         if let Some(relative) = miss {
             verdict = Verdict::Unverified;
-            contradictions.push(withheld.contradiction(part, assembly, *relative));
+            found.push(withheld.cause(part, assembly, *relative));
         } else if part.verdict != Verdict::Unique {
             let told = causes(setting, assembly, part);
             match outcome.solutions.first() {
                 Some(solution) if told.is_empty() => {
-                    contradictions.extend(openings(setting, assembly, part, solution));
+                    found.extend(openings(setting, assembly, part, solution));
                 }
-                _ => contradictions.extend(told),
+                _ => found.extend(told),
             }
         }
     }
     if let Some(relative) = withheld.whole {
         verdict = Verdict::Unverified;
-        contradictions.push(Contradiction {
+        found.push(Cause {
             verdict,
             text: missed(relative),
             elements: withheld.elements.clone(),
@@ -46,9 +46,9 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
     }
     let mut told = FxHashSet::default();
     // one cause may spoil several parts
-    contradictions.retain(|c| told.insert((c.text.clone(), c.elements.clone())));
-    for contradiction in &mut contradictions {
-        contradiction.left_to_time = is_left_to_time(setting, contradiction);
+    found.retain(|c| told.insert((c.text.clone(), c.elements.clone())));
+    for cause in &mut found {
+        cause.left_to_time = is_left_to_time(setting, cause);
     }
     let mut maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
     let solutions = if withheld.whole.is_some() {
@@ -65,7 +65,7 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
         instant: condition.instant,
         temperature: condition.temperature,
         verdict,
-        contradictions,
+        causes: found,
         truncated: outcome.truncated || outcome.parts.iter().any(|p| p.truncated),
         solves: outcome.solves,
         residual,
@@ -75,9 +75,9 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
 
 /// Whether a moving source meets an inductor in this loop, in one of its extreme instants or, having no DC value,
 /// at time zero; or a transistor or switch that is held on does, as in a converter, where it is so for a moment only.
-fn is_left_to_time(setting: &Setting<'_>, contradiction: &Contradiction) -> bool {
+fn is_left_to_time(setting: &Setting<'_>, cause: &Cause) -> bool {
     let has = |wanted: fn(&Behaviour) -> bool| {
-        contradiction.elements.iter().any(|&id| wanted(&setting.circuit.element(id).behaviour))
+        cause.elements.iter().any(|&id| wanted(&setting.circuit.element(id).behaviour))
     };
     let moves = |behaviour: &Behaviour| match behaviour {
         Behaviour::VoltageSource(source) => source.shape.is_some() && source.dc.is_none(),
@@ -86,7 +86,7 @@ fn is_left_to_time(setting: &Setting<'_>, contradiction: &Contradiction) -> bool
         }
         _ => false,
     };
-    contradiction.verdict == Verdict::None
+    cause.verdict == Verdict::None
         && has(|b| matches!(b, Behaviour::Inductor { .. }))
         && (setting.condition.instant || has(moves))
 }
@@ -164,15 +164,10 @@ struct Withheld {
 }
 
 impl Withheld {
-    fn contradiction(
-        &self,
-        part: &complementarity::Part,
-        assembly: &Assembly,
-        relative: f64,
-    ) -> Contradiction {
+    fn cause(&self, part: &complementarity::Part, assembly: &Assembly, relative: f64) -> Cause {
         let of_part = |id: &&ElementId| part.branches.contains(&assembly.branch[id.index()]);
         let elements = self.elements.iter().filter(of_part).take(MOST_BLAMED).copied().collect();
-        Contradiction { verdict: Verdict::Unverified, text: missed(relative), elements, left_to_time: false }
+        Cause { verdict: Verdict::Unverified, text: missed(relative), elements, left_to_time: false }
     }
 }
 

@@ -28,7 +28,7 @@ pub use evaluate::{Text, evaluate};
 pub use law::{JunctionLaw, nearest_decade, thermal_voltage};
 pub use material::{MATERIALS, Material};
 pub use result::{
-    BranchResult, Case, Contradiction, DiodeResult, Drop, DropOrigin, Flip, NodeResult, Operating, Reasoning,
+    BranchResult, Case, Cause, DiodeResult, Drop, DropOrigin, Flip, NodeResult, Operating, Reasoning,
     Residual, Solution, Why,
 };
 

@@ -70,7 +70,7 @@ pub struct Case {
     /// The most serious of the parts' verdicts.
     pub verdict: Verdict,
     /// What makes the verdict other than unique, one for each cause.
-    pub contradictions: Vec<Contradiction>,
+    pub causes: Vec<Cause>,
     /// More solutions exist than are listed.
     pub truncated: bool,
     /// Factorizations done.
@@ -83,7 +83,7 @@ pub struct Case {
 
 /// A cause: which loop, cut set, unknown elements or residual.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Contradiction {
+pub struct Cause {
     /// The verdict it leads to.
     pub verdict: Verdict,
     /// In words with numbers: `V1, D1 and D2 form a loop …`.

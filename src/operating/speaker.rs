@@ -176,7 +176,7 @@ impl Speaker<'_> {
     /// No finite open-circuit voltage: fed by currents, floating, or part of an open split.
     fn without_view(&self, state: State) -> Vec<String> {
         let name = self.name();
-        let causes = || self.case.contradictions.iter().filter(|c| c.elements.contains(&self.diode.element));
+        let causes = || self.case.causes.iter().filter(|c| c.elements.contains(&self.diode.element));
         let mut all = match (state, self.diode.current, self.diode.voltage) {
             (State::Conducting | State::Breakdown, Quantity::Known(current), _) => vec![format!(
                 "Assume {name} blocks: the {} that the sources push through it have no other way, so that assumption fails. Assume it is {}: it carries them, so this holds. No voltage stands behind that current, so there is no margin in volts.",

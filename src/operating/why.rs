@@ -90,7 +90,7 @@ impl Reasoner {
 
     /// A case in which nothing could be solved.
     fn nothing(&mut self, case: &Case) {
-        let sentences = case.contradictions.iter().map(|c| sentence(&c.text)).collect();
+        let sentences = case.causes.iter().map(|c| sentence(&c.text)).collect();
         self.lines.push(Line {
             set: 0,
             has_view: false,

@@ -1,7 +1,7 @@
 //! What makes a part other than unique, in words with element names and numbers.
 
 use super::assemble::{Assembly, Owner, Setting};
-use super::result::Contradiction;
+use super::result::Cause;
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::complementarity::{Branch, Law, Part, Quantity, Reason, Solution, Verdict};
 use crate::finding::{self, quantity};
@@ -10,11 +10,11 @@ use crate::finding::{self, quantity};
 const MOST_NAMES: usize = 8;
 
 /// The causes of a part's verdict; none where it is unique.
-pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) -> Vec<Contradiction> {
+pub(crate) fn causes(setting: &Setting<'_>, assembly: &Assembly, part: &Part) -> Vec<Cause> {
     let words = Words { setting, assembly };
     if part.reasons.is_empty() && part.verdict == Verdict::Several {
         let text = "more than one set of states is consistent".to_owned();
-        return vec![words.contradiction(part.verdict, &words.driving(part), text)];
+        return vec![words.with(part.verdict, &words.driving(part), text)];
     }
     part.reasons.iter().map(|reason| words.cause(part, reason)).collect()
 }
@@ -25,7 +25,7 @@ pub(crate) fn openings(
     assembly: &Assembly,
     part: &Part,
     solution: &Solution,
-) -> Vec<Contradiction> {
+) -> Vec<Cause> {
     let words = Words { setting, assembly };
     let is_open = |list: &[Quantity], at: u32| list.get(at as usize).is_some_and(|q| q.interval().is_some());
     let mut causes = Vec::new();
@@ -34,7 +34,7 @@ pub(crate) fn openings(
     if matches!(part.verdict, Verdict::Shared | Verdict::SharedFloating) && !shared.is_empty() {
         let names = list(&words.names(shared.iter().copied()));
         let text = format!("how the current divides among {names} is open");
-        causes.push(words.contradiction(Verdict::Shared, &shared, text));
+        causes.push(words.with(Verdict::Shared, &shared, text));
     }
     let floating: Vec<u32> =
         part.nodes.iter().copied().filter(|&n| is_open(&solution.potentials, n)).collect();
@@ -46,7 +46,7 @@ pub(crate) fn openings(
         };
         let across: Vec<u32> =
             part.branches.iter().copied().filter(|&b| is_open(&solution.voltages, b)).collect();
-        causes.push(words.contradiction(Verdict::Floating, &across, text));
+        causes.push(words.with(Verdict::Floating, &across, text));
     }
     causes
 }
@@ -72,21 +72,19 @@ struct Words<'a> {
 }
 
 impl Words<'_> {
-    fn cause(&self, part: &Part, reason: &Reason) -> Contradiction {
+    fn cause(&self, part: &Part, reason: &Reason) -> Cause {
         let verdict = share(part.verdict, reason);
         match reason {
-            Reason::Loop { branches, gap } => {
-                self.contradiction(verdict, branches, self.closed(branches, *gap))
-            }
+            Reason::Loop { branches, gap } => self.with(verdict, branches, self.closed(branches, *gap)),
             Reason::CutSet { branches, nodes, excess } => {
-                self.contradiction(verdict, branches, self.cut(branches, nodes, *excess))
+                self.with(verdict, branches, self.cut(branches, nodes, *excess))
             }
-            Reason::Unknown { branches } => self.contradiction(verdict, branches, self.unknown(branches)),
+            Reason::Unknown { branches } => self.with(verdict, branches, self.unknown(branches)),
             Reason::Residual { relative } => {
                 let some: Vec<u32> = part.branches.iter().take(MOST_NAMES).copied().collect();
-                self.contradiction(verdict, &some, missed(*relative))
+                self.with(verdict, &some, missed(*relative))
             }
-            Reason::Dependent { text } => self.contradiction(verdict, &self.driving(part), text.clone()),
+            Reason::Dependent { text } => self.with(verdict, &self.driving(part), text.clone()),
         }
     }
 
@@ -100,8 +98,8 @@ impl Words<'_> {
         part.branches.iter().copied().filter(|&b| self.is(b, drives)).take(2 * MOST_NAMES).collect()
     }
 
-    fn contradiction(&self, verdict: Verdict, branches: &[u32], text: String) -> Contradiction {
-        Contradiction { verdict, text, elements: self.elements(branches), left_to_time: false }
+    fn with(&self, verdict: Verdict, branches: &[u32], text: String) -> Cause {
+        Cause { verdict, text, elements: self.elements(branches), left_to_time: false }
     }
 
     fn branch(&self, number: u32) -> Option<&Branch> {

@@ -1,7 +1,7 @@
 //! Current sources that drive against diodes which do not let the current pass.
 
 use super::unlimited_current::is_current;
-use super::{Cause, Check, Evidence, Rule, causes, is_told};
+use super::{Shown, Check, Evidence, Rule, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
@@ -34,15 +34,15 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     causes(evidence, operating, Verdict::None)
         .iter()
-        .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.contradiction.elements))
-        .map(|cause| super::support::contradiction(&RULE, evidence, operating, cause, "takes part"))
+        .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.cause.elements))
+        .map(|cause| super::support::finding(&RULE, evidence, operating, cause, "takes part"))
         .collect()
 }
 
 /// A cut set: an independent current source takes part, or a controlled one and a diode that blocks it.
-pub fn is_ours(evidence: &Evidence<'_>, cause: &Cause<'_>) -> bool {
+pub fn is_ours(evidence: &Evidence<'_>, cause: &Shown<'_>) -> bool {
     let has = |wanted: fn(&Behaviour) -> bool| {
-        cause.contradiction.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
+        cause.cause.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
     };
     has(|b| matches!(b, Behaviour::CurrentSource(_)))
         || (has(is_current) && has(|b| matches!(b, Behaviour::Diode { .. })))

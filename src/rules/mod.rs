@@ -4,8 +4,8 @@
 
 mod support;
 
-use support::{Cause, LooseEnd, causes, count, in_cases, is_told, list};
 pub use support::{Check, Evidence, GROUPS, Rule, Skipped, accept, is_hopeless, run};
+use support::{LooseEnd, Shown, causes, count, in_cases, is_told, list};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 

@@ -37,7 +37,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     causes(evidence, operating, Verdict::None)
         .iter()
         .filter(|c| !unlimited_current::is_ours(evidence, c) && !blocked_current::is_ours(evidence, c))
-        .filter(|c| !is_told(evidence, &c.contradiction.elements))
-        .map(|c| super::support::contradiction(&RULE, evidence, operating, c, "takes part"))
+        .filter(|c| !is_told(evidence, &c.cause.elements))
+        .map(|c| super::support::finding(&RULE, evidence, operating, c, "takes part"))
         .collect()
 }

@@ -47,7 +47,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     for (number, case) in operating.cases.iter().enumerate() {
         // a part without a solution, or with one that does not check, is told as such
         let unknown: Vec<&str> = case
-            .contradictions
+            .causes
             .iter()
             .filter(|c| c.verdict == Verdict::Partial)
             .map(|c| c.text.as_str())

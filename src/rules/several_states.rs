@@ -38,6 +38,6 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     causes(evidence, operating, Verdict::Several)
         .iter()
-        .map(|c| super::support::contradiction(&RULE, evidence, operating, c, "takes part"))
+        .map(|c| super::support::finding(&RULE, evidence, operating, c, "takes part"))
         .collect()
 }

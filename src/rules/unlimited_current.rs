@@ -1,6 +1,6 @@
 //! A loop of sources and conducting diodes with a voltage left over and no resistance to take it.
 
-use super::{Cause, Check, Evidence, Rule, causes, is_told};
+use super::{Shown, Check, Evidence, Rule, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
@@ -36,15 +36,15 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     causes(evidence, operating, Verdict::None)
         .iter()
-        .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.contradiction.elements))
-        .map(|cause| super::support::contradiction(&RULE, evidence, operating, cause, "in the loop"))
+        .filter(|cause| is_ours(evidence, cause) && !is_told(evidence, &cause.cause.elements))
+        .map(|cause| super::support::finding(&RULE, evidence, operating, cause, "in the loop"))
         .collect()
 }
 
 /// A loop with a diode in it: no current source takes part.
-pub fn is_ours(evidence: &Evidence<'_>, cause: &Cause<'_>) -> bool {
+pub fn is_ours(evidence: &Evidence<'_>, cause: &Shown<'_>) -> bool {
     let has = |wanted: fn(&Behaviour) -> bool| {
-        cause.contradiction.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
+        cause.cause.elements.iter().any(|&id| wanted(&evidence.circuit.element(id).behaviour))
     };
     has(|b| matches!(b, Behaviour::Diode { .. })) && !has(is_current)
 }

@@ -30,6 +30,6 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     causes(evidence, operating, Verdict::Unverified)
         .iter()
-        .map(|c| super::support::contradiction(&RULE, evidence, operating, c, "in this part"))
+        .map(|c| super::support::finding(&RULE, evidence, operating, c, "in this part"))
         .collect()
 }

@@ -168,8 +168,7 @@ fn essence(analysis: &Analysis, rename: &BTreeMap<String, String>) -> Vec<String
     let renamed = |name: &String| rename.get(name).cloned().unwrap_or_else(|| name.clone());
     let mut lines = Vec::new();
     // where nothing is consistent, one cause of perhaps several is told
-    let contradictory =
-        analysis.operating.iter().flat_map(|o| &o.cases).any(|c| !c.contradictions.is_empty());
+    let contradictory = analysis.operating.iter().flat_map(|o| &o.cases).any(|c| !c.causes.is_empty());
     let is_judged = |f: &&Finding| {
         let rule = rules::find(f.rule).unwrap_or_else(|| panic!("no rule {}", f.rule));
         !(contradictory && rule.group == "states")

@@ -354,7 +354,7 @@ pub fn both(circuit: &Circuit, answer: &Answer, analysis: &Analysis) -> String {
 }
 
 fn got(text: &mut String, analysis: &Analysis, case: &Case) {
-    let causes: Vec<&str> = case.contradictions.iter().map(|c| c.text.as_str()).collect();
+    let causes: Vec<&str> = case.causes.iter().map(|c| c.text.as_str()).collect();
     let _ = writeln!(text, "kneewise: {:?} in {} solves {causes:?}", case.verdict, case.solves);
     for solution in &case.solutions {
         for node in &solution.nodes {

@@ -62,7 +62,7 @@ fn a_loop_without_resistance_is_told_with_its_numbers() {
     );
     let case = &operating.cases[0];
     assert_eq!(case.verdict, Verdict::None);
-    let cause = &case.contradictions[0];
+    let cause = &case.causes[0];
     let mut names: Vec<String> = cause.elements.iter().map(|&e| circuit.element_name(e)).collect();
     names.sort();
     assert_eq!(names, ["D1", "D2", "V1"]);
@@ -82,11 +82,7 @@ fn unknown_elements_are_named_until_a_note_holds_them() {
     assert!(reason.contains("Q1") && reason.contains("no `hold` note"), "{reason}");
     let held = format!("{lines}\n*@ hold Q1 both");
     let (operating, _, _) = evaluated(&held, &Options::default());
-    assert!(
-        operating.cases.iter().all(|c| c.verdict == Verdict::Unique),
-        "{:?}",
-        operating.cases[1].contradictions
-    );
+    assert!(operating.cases.iter().all(|c| c.verdict == Verdict::Unique), "{:?}", operating.cases[1].causes);
     let on = operating.cases.iter().find(|c| c.name == "Q1=on").unwrap();
     assert_eq!(diode(on, 0).voltage, Quantity::Known(-12.0));
     let off = operating.cases.iter().find(|c| c.name == "Q1=off").unwrap();
@@ -137,9 +133,8 @@ fn what_is_open_is_named() {
     let (operating, circuit, _) = evaluated(shared, &Options::default());
     let case = &operating.cases[0];
     assert_eq!(case.verdict, Verdict::Shared);
-    assert_eq!(case.contradictions[0].text, "how the current divides among D1 and D2 is open");
-    let names: Vec<String> =
-        case.contradictions[0].elements.iter().map(|&e| circuit.element_name(e)).collect();
+    assert_eq!(case.causes[0].text, "how the current divides among D1 and D2 is open");
+    let names: Vec<String> = case.causes[0].elements.iter().map(|&e| circuit.element_name(e)).collect();
     assert_eq!(names, ["D1", "D2"]);
     // 4.3 mA in all, by hand
     let Quantity::Open(interval) = diode(case, 0).current else { unreachable!("open") };
@@ -148,7 +143,7 @@ fn what_is_open_is_named() {
         evaluated("V1 in 0 5\nD1 x in DX\nD2 x y DX\nR1 y 0 1k\n.model DX D", &Options::default());
     let case = &operating.cases[0];
     assert_eq!(case.verdict, Verdict::Floating);
-    assert_eq!(case.contradictions[0].text, "the potential of node x is open");
+    assert_eq!(case.causes[0].text, "the potential of node x is open");
 }
 
 #[test]

@@ -259,7 +259,7 @@ fn a_result_that_does_not_check_is_withheld() {
     assert_eq!(case.verdict, Verdict::Unverified);
     assert!(case.solutions.is_empty());
     assert!(case.residual.relative > MET);
-    assert!(case.contradictions[0].elements.contains(&bench.laid.element("R5")));
+    assert!(case.causes[0].elements.contains(&bench.laid.element("R5")));
 }
 
 #[test]

@@ -121,7 +121,7 @@ pub fn states(analysis: &Analysis) -> serde_json::Result<String> {
 }
 
 fn case_entry<'a>(circuit: &'a Circuit, sources: &'a Sources, case: &'a Case) -> CaseEntry<'a> {
-    let reasons: Vec<&str> = case.contradictions.iter().map(|c| c.text.as_str()).collect();
+    let reasons: Vec<&str> = case.causes.iter().map(|c| c.text.as_str()).collect();
     let value = |&(id, value): &(_, f64)| (circuit.element_name(id), number(value));
     let supply = |&(node, volts): &(_, f64)| (circuit.node_name(node), number(volts));
     CaseEntry {

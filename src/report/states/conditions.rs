@@ -31,7 +31,7 @@ pub(super) fn groups(operating: &Operating) -> Vec<Group<'_>> {
     let mut groups: Vec<Group<'_>> = Vec::new();
     for case in &operating.cases {
         let mut causes: Vec<&str> = Vec::new();
-        for cause in &case.contradictions {
+        for cause in &case.causes {
             if !causes.contains(&cause.text.as_str()) {
                 causes.push(&cause.text);
             }
@@ -79,9 +79,9 @@ impl Group<'_> {
         }
     }
 
-    /// Whether every contradiction is one that an instant cannot judge.
+    /// Whether every cause is one that an instant cannot judge.
     fn is_left_to_time(&self) -> bool {
-        let all = self.cases.iter().flat_map(|c| &c.contradictions);
+        let all = self.cases.iter().flat_map(|c| &c.causes);
         let mut none = all.filter(|c| c.verdict == Verdict::None).peekable();
         none.peek().is_some() && none.all(|c| c.left_to_time)
     }

@@ -3,7 +3,7 @@
 use super::*;
 use crate::analysis::analyse;
 use crate::config::Options;
-use crate::operating::{Case, Contradiction, DiodeResult, Drop, DropOrigin, Interval, NodeResult, Residual};
+use crate::operating::{Case, Cause, DiodeResult, Drop, DropOrigin, Interval, NodeResult, Residual};
 use crate::text::Memory;
 use std::path::Path;
 
@@ -32,12 +32,8 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
         voltage: Quantity::Open(Interval { low: 0.0, high: f64::INFINITY }),
     };
     let nodes = if verdict == Verdict::Floating { vec![node] } else { Vec::new() };
-    let cause = Contradiction {
-        verdict,
-        text: "D2 alone leads there".into(),
-        elements: Vec::new(),
-        left_to_time: false,
-    };
+    let cause =
+        Cause { verdict, text: "D2 alone leads there".into(), elements: Vec::new(), left_to_time: false };
     Case {
         name: name.into(),
         sources: vec![(ElementId::new(0), 12.0)],
@@ -45,7 +41,7 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
         instant: false,
         temperature: 27.0,
         verdict,
-        contradictions: if verdict == Verdict::Unique { Vec::new() } else { vec![cause] },
+        causes: if verdict == Verdict::Unique { Vec::new() } else { vec![cause] },
         truncated: false,
         solves: 2,
         residual: Residual { current: 0.0, voltage: 0.0, relative: 2e-16 },

@@ -3,32 +3,32 @@
 use super::{Evidence, Rule};
 use crate::circuit::{ElementId, ScopeId};
 use crate::finding::Finding;
-use crate::operating::{Case, Contradiction, Operating, Verdict};
+use crate::operating::{Case, Cause, Operating, Verdict};
 use crate::text::{FileId, Span};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// One cause and the conditions in which it shows.
-pub struct Cause<'a> {
+pub struct Shown<'a> {
     /// As the first of the conditions tells it.
-    pub contradiction: &'a Contradiction,
+    pub cause: &'a Cause,
     /// Numbers of the conditions.
     pub cases: Vec<usize>,
 }
 
 /// The causes that lead to `verdict`, those about the same elements as one, in order of first appearance.
-pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Verdict) -> Vec<Cause<'o>> {
-    let mut causes: Vec<Cause<'o>> = Vec::new();
+pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Verdict) -> Vec<Shown<'o>> {
+    let mut causes: Vec<Shown<'o>> = Vec::new();
     let mut known: FxHashMap<(Vec<ElementId>, &str), usize> = FxHashMap::default();
     for (number, case) in operating.cases.iter().enumerate() {
-        for contradiction in case.contradictions.iter().filter(|c| c.verdict == verdict) {
-            if is_left_to_time(evidence, contradiction) {
+        for cause in case.causes.iter().filter(|c| c.verdict == verdict) {
+            if is_left_to_time(evidence, cause) {
                 continue;
             }
-            let at = *known.entry(identity(contradiction)).or_insert(causes.len());
+            let at = *known.entry(identity(cause)).or_insert(causes.len());
             match causes.get_mut(at) {
-                Some(cause) if cause.cases.last() == Some(&number) => {}
-                Some(cause) => cause.cases.push(number),
-                None => causes.push(Cause { contradiction, cases: vec![number] }),
+                Some(known) if known.cases.last() == Some(&number) => {}
+                Some(known) => known.cases.push(number),
+                None => causes.push(Shown { cause, cases: vec![number] }),
             }
         }
     }
@@ -39,23 +39,23 @@ pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Ve
 pub fn is_hopeless(evidence: &Evidence<'_>, operating: &Operating) -> bool {
     let counts = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
     operating.cases.iter().filter(|case| counts(case.verdict)).any(|case| {
-        let mut causes = case.contradictions.iter().filter(|c| counts(c.verdict)).peekable();
+        let mut causes = case.causes.iter().filter(|c| counts(c.verdict)).peekable();
         causes.peek().is_none() || causes.any(|c| !is_left_to_time(evidence, c))
     })
 }
 
 /// What one instant cannot judge: a moving source that drives an inductor, and a controlled current into
 /// capacitors alone, which integrates: what feedback makes of it is no matter of one instant.
-fn is_left_to_time(evidence: &Evidence<'_>, contradiction: &Contradiction) -> bool {
+fn is_left_to_time(evidence: &Evidence<'_>, cause: &Cause) -> bool {
     let mut driven = evidence.wiring.cuts.iter().filter(|cut| cut.driven).flat_map(|cut| &cut.leads);
-    contradiction.left_to_time || driven.any(|id| contradiction.elements.contains(id))
+    cause.left_to_time || driven.any(|id| cause.elements.contains(id))
 }
 
 /// The same elements, in whatever order the walk begins; without elements the words decide.
-fn identity(contradiction: &Contradiction) -> (Vec<ElementId>, &str) {
-    let mut elements = contradiction.elements.clone();
+fn identity(cause: &Cause) -> (Vec<ElementId>, &str) {
+    let mut elements = cause.elements.clone();
     elements.sort();
-    let text = if elements.is_empty() { contradiction.text.as_str() } else { "" };
+    let text = if elements.is_empty() { cause.text.as_str() } else { "" };
     (elements, text)
 }
 
@@ -82,15 +82,15 @@ pub fn is_told(evidence: &Evidence<'_>, elements: &[ElementId]) -> bool {
 }
 
 /// The finding about a cause: at its first element in the text, every other one a related place.
-pub fn contradiction(
+pub fn finding(
     rule: &Rule,
     evidence: &Evidence<'_>,
     operating: &Operating,
-    cause: &Cause<'_>,
+    shown: &Shown<'_>,
     role: &str,
 ) -> Finding {
-    let elements = &cause.contradiction.elements;
-    let message = format!("{}{}", cause.contradiction.text, in_cases(operating, &cause.cases));
+    let elements = &shown.cause.elements;
+    let message = format!("{}{}", shown.cause.text, in_cases(operating, &shown.cases));
     let main = main_element(evidence, elements);
     let mut finding = match main {
         Some(id) => evidence.about(rule, id, message).label(role),

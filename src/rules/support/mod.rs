@@ -11,7 +11,7 @@ mod turn;
 mod words;
 
 pub use accept::{about_note, accept};
-pub use cases::{Cause, causes, contradiction, in_cases, is_hopeless, is_told};
+pub use cases::{Shown, causes, finding, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
 pub use loose::LooseEnd;
 pub use rule::{Check, GROUPS, Rule, Skipped};
