@@ -18,6 +18,33 @@ const MOST_VIEWS: usize = 3000;
 pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solved) -> Case {
     let parts = Parts::of(setting, &solved.assembly, &solved.outcome);
     let (residual, withheld) = check(setting, solved, &parts);
+    let outcome = &solved.outcome;
+    let (verdict, causes) = judged(setting, solved, &withheld);
+    let maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
+    let solutions = if withheld.whole.is_some() {
+        Vec::new()
+    } else {
+        outcome.solutions.iter().map(|s| maker.solution(s)).collect()
+    };
+    let condition = setting.condition;
+    let supplies = setting.plan.supplies.iter().zip(&condition.supplies);
+    Case {
+        name: condition.name.clone(),
+        sources: setting.plan.sources.iter().zip(&condition.sources).map(|(&id, l)| (id, l.value)).collect(),
+        supplies: supplies.map(|(supply, level)| (supply.node, level.value)).collect(),
+        instant: condition.instant,
+        temperature: condition.temperature,
+        verdict,
+        causes,
+        truncated: outcome.truncated || outcome.parts.iter().any(|p| p.truncated),
+        solves: outcome.solves,
+        residual,
+        solutions,
+    }
+}
+
+/// The verdict of the whole, and what makes it other than unique, each cause once.
+fn judged(setting: &Setting<'_>, solved: &Solved, withheld: &Withheld) -> (Verdict, Vec<Cause>) {
     let (assembly, outcome) = (&solved.assembly, &solved.outcome);
     let mut found: Vec<Cause> = Vec::new();
     let mut verdict = outcome.verdict;
@@ -50,27 +77,7 @@ pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solve
     for cause in &mut found {
         cause.left_to_time = is_left_to_time(setting, cause);
     }
-    let mut maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
-    let solutions = if withheld.whole.is_some() {
-        Vec::new()
-    } else {
-        outcome.solutions.iter().map(|s| maker.solution(s)).collect()
-    };
-    let condition = setting.condition;
-    let supplies = setting.plan.supplies.iter().zip(&condition.supplies);
-    Case {
-        name: condition.name.clone(),
-        sources: setting.plan.sources.iter().zip(&condition.sources).map(|(&id, l)| (id, l.value)).collect(),
-        supplies: supplies.map(|(supply, level)| (supply.node, level.value)).collect(),
-        instant: condition.instant,
-        temperature: condition.temperature,
-        verdict,
-        causes: found,
-        truncated: outcome.truncated || outcome.parts.iter().any(|p| p.truncated),
-        solves: outcome.solves,
-        residual,
-        solutions,
-    }
+    (verdict, found)
 }
 
 /// Whether a moving source meets an inductor in this loop, in one of its extreme instants or, having no DC value,
@@ -243,7 +250,7 @@ impl Maker<'_> {
         part.is_some_and(|p| self.withheld.parts[p].is_some())
     }
 
-    fn solution(&mut self, solution: &complementarity::Solution) -> Solution {
+    fn solution(&self, solution: &complementarity::Solution) -> Solution {
         let circuit = self.setting.circuit;
         let views = self.views(solution);
         let diodes =
