@@ -9,6 +9,21 @@
 //! 10. [`analysis`]: runs the stages in order and owns every result. 11. [`report`]: terminal and JSON.
 //!
 //! Start reading at [`analysis`].
+//!
+//! ```
+//! use kneewise::{analysis::analyse, config::Options, operating::State, text::Memory};
+//! use std::path::Path;
+//!
+//! let netlist = "charge indicator of a buoy\nV1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D\n*@ drop DX 0.7\n";
+//! let options = Options { states: true, ..Options::default() };
+//! let analysis = analyse(&mut Memory::with("board.net", netlist), Path::new("board.net"), &options)
+//!     .map_err(|problem| problem.0)?;
+//! let cases = analysis.operating.unwrap_or_default().cases;
+//! let diode = &cases[0].solutions[0].diodes[0];
+//! assert_eq!(diode.state, State::Conducting);
+//! assert!(diode.current.known().is_some_and(|amperes| (amperes - 4.3e-3).abs() < 1e-12));
+//! # Ok::<(), String>(())
+//! ```
 
 pub mod text;
 
