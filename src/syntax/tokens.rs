@@ -118,13 +118,31 @@ impl Place {
                 (1..=2).contains(&self.words)
             }
             b'q' | b'j' | b'm' | b't' | b's' => (1..=4).contains(&self.words),
-            // POLY(1), TABLE(…), VALUE(…) may stand in their third place
-            b'e' | b'g' => (1..=2).contains(&self.words) || ((3..=4).contains(&self.words) && !is_plain),
+            b'e' | b'g' => (1..=2).contains(&self.words) || ((3..=4).contains(&self.words) && !is_law(head)),
             // a function of .func and .param may have any letters in its name
             b'.' => self.words >= 1 && !head.iter().all(|&b| is_in_names(b)),
             _ => self.words >= 1 && !is_plain,
         }
     }
+}
+
+/// Whether a word in the place of a controlled source's third node begins its law instead, as in `POLY(1)`.
+fn is_law(head: &[u8]) -> bool {
+    let laws: [&[u8]; 12] = [
+        b"poly",
+        b"table",
+        b"value",
+        b"laplace",
+        b"freq",
+        b"chebyshev",
+        b"pwl",
+        b"vol",
+        b"cur",
+        b"delay",
+        b"v",
+        b"i",
+    ];
+    laws.iter().any(|law| head.eq_ignore_ascii_case(law))
 }
 
 /// The length of what is enclosed from the first byte to its counterpart, if a name can hold it: no white space, no
@@ -267,6 +285,7 @@ mod tests {
         );
         assert_eq!(cut("R1 (Net-(R1-Pad1),/~{RST}) 1k"), ["R1", "(", "Net-(R1-Pad1)", "/~{RST}", ")", "1k"]);
         assert_eq!(cut("R1 data(3) data(4) 1k"), ["R1", "data(3)", "data(4)", "1k"]);
+        assert_eq!(cut("E1 p 0 x(1) 0 2"), ["E1", "p", "0", "x(1)", "0", "2"]);
         assert_eq!(cut("X1 Net-(U1-IN(A)) 0 OPA"), ["X1", "Net-(U1-IN(A))", "0", "OPA"]);
     }
 
@@ -275,6 +294,7 @@ mod tests {
         assert_eq!(cut("V1 a 0 SIN(0 1 50)").len(), 9);
         assert_eq!(cut("V1 a 0 DC(5)"), ["V1", "a", "0", "DC", "(", "5", ")"]);
         assert_eq!(cut("E1 o 0 POLY(1) a 0 0 1").len(), 11);
+        assert_eq!(cut("E1 o 0 table(x) 1").len(), 8);
         assert_eq!(cut("E1(o 0) (a 0) 2").len(), 10);
         assert_eq!(cut(".func my_f(x) {x}")[..3], [".func", "my_f", "("]);
         assert_eq!(cut(".func größe.2(x) {x}")[..3], [".func", "größe.2", "("]);
