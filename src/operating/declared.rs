@@ -5,7 +5,7 @@ use super::condition::{Supply, level, source};
 use super::named::{twice, unknown_name};
 use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Note, NoteKind, ScopeId};
-use crate::circuit::{Hold, Parsed, Sweep};
+use crate::circuit::{Hold, Parsed, Sweep, Symbol};
 use crate::complementarity::Level;
 use crate::config::Options;
 use crate::finding::{Finding, Severity};
@@ -87,6 +87,7 @@ pub(crate) fn declared(
                 reader.supply(note, volts, *range);
             }
             NoteKind::Hold(hold) => reader.hold(note, *hold),
+            NoteKind::Watch { other } => reader.watch(note, *other),
             _ => {}
         }
     }
@@ -133,6 +134,16 @@ impl Reader<'_> {
 
     fn node(&self, scope: ScopeId, name: &str) -> Option<NodeId> {
         self.directory.and_then(|d| d.node(scope, name))
+    }
+
+    /// What is watched is for the rules; here only whether it is there.
+    fn watch(&mut self, note: &Note, other: Option<Symbol>) {
+        for name in std::iter::once(note.subject).chain(other) {
+            let name = self.circuit.text(name);
+            if self.node(note.scope, name).is_none() {
+                self.findings.push(unknown_name(name, note, "node"));
+            }
+        }
     }
 
     fn supply(&mut self, note: &Note, volts: Level, range: Option<(f64, f64)>) {

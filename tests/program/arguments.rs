@@ -187,3 +187,10 @@ fn diodes_are_counted_where_nothing_could_be_solved() {
     let json = feed(&["states", "-", "--format", "json"], circuit).out;
     assert_eq!(json.matches("X1 is not modelled").count(), 1, "{json}");
 }
+
+#[test]
+fn a_watched_node_that_is_not_there_is_told() {
+    let run = feed(&["check", "-"], &CLEAN.replace(".end", "*@ watch led\n*@ watch led lde\n.end"));
+    assert_eq!(run.out.matches("unknown-name").count(), 1, "{}", run.out);
+    assert!(run.out.contains("no node here is named `lde`"), "{}", run.out);
+}
