@@ -118,7 +118,13 @@ impl Place {
                 (1..=2).contains(&self.words)
             }
             b'q' | b'j' | b'm' | b't' | b's' => (1..=4).contains(&self.words),
-            b'e' | b'g' => (1..=2).contains(&self.words) || ((3..=4).contains(&self.words) && !is_law(head)),
+            // behind the law's words stand further nodes, and numbers
+            b'e' | b'g' => match self.words {
+                0 => false,
+                1 | 2 => true,
+                3 | 4 => !is_law(head),
+                _ => !is_plain,
+            },
             // a function of .func and .param may have any letters in its name
             b'.' => self.words >= 1 && !head.iter().all(|&b| is_in_names(b)),
             _ => self.words >= 1 && !is_plain,
@@ -294,6 +300,7 @@ mod tests {
         assert_eq!(cut("V1 a 0 SIN(0 1 50)").len(), 9);
         assert_eq!(cut("V1 a 0 DC(5)"), ["V1", "a", "0", "DC", "(", "5", ")"]);
         assert_eq!(cut("E1 o 0 POLY(1) a 0 0 1").len(), 11);
+        assert_eq!(cut("E1 o 0 POLY(1) Net-(a) 0 0 1").len(), 11);
         assert_eq!(cut("E1 o 0 table(x) 1").len(), 8);
         assert_eq!(cut("E1(o 0) (a 0) 2").len(), 10);
         assert_eq!(cut(".func my_f(x) {x}")[..3], [".func", "my_f", "("]);
