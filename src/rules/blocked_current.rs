@@ -1,7 +1,7 @@
 //! Current sources that drive against diodes which do not let the current pass.
 
 use super::unlimited_current::is_current;
-use super::{Shown, Check, Evidence, Rule, causes, is_told};
+use super::{Check, Evidence, Rule, Shown, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};

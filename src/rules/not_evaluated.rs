@@ -46,12 +46,8 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut groups: BTreeMap<String, Group> = BTreeMap::new();
     for (number, case) in operating.cases.iter().enumerate() {
         // a part without a solution, or with one that does not check, is told as such
-        let unknown: Vec<&str> = case
-            .causes
-            .iter()
-            .filter(|c| c.verdict == Verdict::Partial)
-            .map(|c| c.text.as_str())
-            .collect();
+        let unknown: Vec<&str> =
+            case.causes.iter().filter(|c| c.verdict == Verdict::Partial).map(|c| c.text.as_str()).collect();
         for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
             let why = diode.not_evaluated.as_deref().unwrap_or_default();
             if diode.state != State::NotEvaluated || !unknown.iter().any(|text| why.contains(text)) {

@@ -1,6 +1,6 @@
 //! A loop of sources and conducting diodes with a voltage left over and no resistance to take it.
 
-use super::{Shown, Check, Evidence, Rule, causes, is_told};
+use super::{Check, Evidence, Rule, Shown, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
