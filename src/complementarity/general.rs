@@ -55,8 +55,22 @@ impl Set {
     }
 }
 
+/// Unknowns at most: the elimination is dense.
+const MOST_UNKNOWNS: usize = 1500;
+
+fn fits(rails: &Rails, piece: &Piece) -> bool {
+    let nodes: usize = piece.groups.iter().map(|&g| rails.nodes_of(g).len()).sum();
+    nodes <= MOST_UNKNOWNS
+}
+
 /// All consistent sets of one part.
 pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
+    if !fits(rails, &answer.piece) {
+        answer.verdict = Verdict::Unverified;
+        let text = format!("this part joins more than {MOST_UNKNOWNS} unknowns to controlled sources");
+        answer.reasons.push(Reason::Dependent { text });
+        return;
+    }
     let dense = Dense::new(network, rails, &answer.piece);
     answer.solves += 1;
     if !dense.complete() {
@@ -188,6 +202,9 @@ pub(super) fn views(
     wanted: &[bool],
     views: &mut [Option<View>],
 ) {
+    if !fits(rails, piece) {
+        return;
+    }
     let dense = Dense::new(network, rails, piece);
     let Some(ports) = Ports::new(network, &dense) else { return };
     let places: Vec<Place> = ports.junctions.iter().map(|&n| solution.places[n as usize]).collect();

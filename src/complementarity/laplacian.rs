@@ -17,6 +17,8 @@ pub(super) struct Laplacian {
     mesh: Option<Mesh>,
     supernodal: Option<Supernodal>,
     use_mesh: bool,
+    /// The factor of a large pattern would not fit in memory: nothing can be solved.
+    pub(super) too_large: bool,
     /// Factorizations done.
     pub(super) factorizations: usize,
 }
@@ -25,7 +27,8 @@ impl Laplacian {
     /// `nodes` counts node 0. Every node must be joined to node 0 by some path of edges.
     pub(super) fn new(nodes: usize, edges: Vec<(u32, u32)>) -> Self {
         let supernodal = if nodes > LARGE { Supernodal::new(nodes, &edges) } else { None };
-        Laplacian { nodes, edges, mesh: None, supernodal, use_mesh: false, factorizations: 0 }
+        let too_large = nodes > LARGE && supernodal.is_none();
+        Laplacian { nodes, edges, mesh: None, supernodal, use_mesh: false, too_large, factorizations: 0 }
     }
 
     pub(super) fn edges(&self) -> &[(u32, u32)] {
@@ -35,6 +38,9 @@ impl Laplacian {
     /// Factors with these conductances (> 0), one for each edge. With `exact`, wide spreads are factored without
     /// subtraction whatever it costs.
     pub(super) fn factor(&mut self, conductances: &[f64], exact: bool) {
+        if self.too_large {
+            return;
+        }
         self.factorizations += 1;
         let proper = |&(a, b): &(u32, u32)| a != b;
         let values = || self.edges.iter().zip(conductances).filter(|(e, _)| proper(e)).map(|(_, &g)| g);
@@ -51,7 +57,7 @@ impl Laplacian {
 
     /// Factors again without subtraction, where [`factor`](Self::factor) lost too many digits.
     pub(super) fn factor_again(&mut self, conductances: &[f64]) -> bool {
-        if self.use_mesh {
+        if self.use_mesh || self.too_large {
             return false;
         }
         self.factorizations += 1;

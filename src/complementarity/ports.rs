@@ -16,6 +16,8 @@ const RANK: f64 = 1e-11;
 const BLOWN_UP: f64 = 1e10;
 /// Work spent on the combinations of one block, in multiplications.
 const WORK: u64 = 50_000_000;
+/// Combinations without full rank tried at most: each costs many times an ordinary one.
+const MOST_SINGULAR: usize = 300;
 /// Sets kept at most while blocks are put together.
 const MOST_KEPT: usize = 64;
 
@@ -121,7 +123,11 @@ impl Ports {
         // the work of one combination is a dense solve
         let most = (WORK / (block.len() as u64 + 1).pow(3)).max(1);
         let mut found: Vec<Trial> = Vec::new();
+        let mut singular = 0;
         for number in 0..all.min(most) {
+            if singular > MOST_SINGULAR {
+                return self.give_up(set, block, found, more);
+            }
             let mut rest = number;
             let mut places = set.places.clone();
             for &k in block {
@@ -129,15 +135,24 @@ impl Ports {
                 rest /= self.choices(k);
                 places[k] = [Place::Blocking, Place::Conducting, Place::Breakdown][choice as usize];
             }
-            if let Some(trial) = self.attempt(set, block, &places) {
+            if let Some(trial) = self.attempt(set, block, &places, &mut singular) {
                 self.keep(&mut found, trial);
             }
         }
-        if all > most && found.is_empty() {
+        if all > most {
+            return self.give_up(set, block, found, more);
+        }
+        more.append(&mut found);
+        true
+    }
+
+    /// Not all combinations were tried: what was found stands, or what assumed states find.
+    fn give_up(&self, set: &Trial, block: &[usize], mut found: Vec<Trial>, more: &mut Vec<Trial>) -> bool {
+        if found.is_empty() {
             found.extend(self.pivot(set, block));
         }
         more.append(&mut found);
-        all <= most
+        false
     }
 
     /// One set by assumed states, where there are too many combinations to try: all that fail change, then the first
@@ -257,10 +272,11 @@ impl Ports {
         (matrix, right)
     }
 
-    fn attempt(&self, set: &Trial, block: &[usize], places: &[Place]) -> Option<Trial> {
+    fn attempt(&self, set: &Trial, block: &[usize], places: &[Place], singular: &mut usize) -> Option<Trial> {
         let mut trial = match self.solve_block(set, block, places) {
             Some(a) => self.judged(a, block, places)?,
             None => {
+                *singular += 1;
                 let (matrix, right) = self.block_rows(set, block, places);
                 self.continuum(&set.currents, &matrix, &right, block, places)?
             }

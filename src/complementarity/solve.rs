@@ -75,7 +75,12 @@ fn passive(network: &Network, rails: &Rails, built: Built, answer: &mut Answer) 
         answer.reasons.push(explain(network, rails, &built, &answer.piece, &obstacle));
         return;
     }
-    let (point, tied, holds) = states(&built.part, &mut answer.solves);
+    let Some((point, tied, holds)) = states(&built.part, &mut answer.solves) else {
+        answer.verdict = Verdict::Unverified;
+        let text = "this part is so large and so densely joined that its equations do not fit in memory";
+        answer.reasons.push(Reason::Dependent { text: text.into() });
+        return;
+    };
     if holds {
         answer.found.push(Found::Passive { built, point, tied });
     } else {
@@ -84,24 +89,29 @@ fn passive(network: &Network, rails: &Rails, built: Built, answer: &mut Answer) 
     }
 }
 
-fn states(part: &Passive, solves: &mut usize) -> (Point, bool, bool) {
+/// A point, whether currents in it may be open, and whether every assumption holds; `None` where the part is too
+/// large.
+fn states(part: &Passive, solves: &mut usize) -> Option<(Point, bool, bool)> {
     if part.diodes.is_empty() && part.resistors.is_empty() {
         let potentials = vec![super::double_double::Dd::ZERO; part.nodes];
-        return (Point { potentials, currents: Vec::new(), states: Vec::new() }, false, true);
+        return Some((Point { potentials, currents: Vec::new(), states: Vec::new() }, false, true));
     }
     let mut system = pivoting::pattern(part);
+    if system.too_large {
+        return None;
+    }
     if let Some(guide) = pivoting::propose(part, &mut system) {
         let settled = settle::settle(part, guide);
         *solves += settled.factorizations;
         if settled.holds {
             *solves += system.factorizations;
-            return (settled.point, settled.tied, true);
+            return Some((settled.point, settled.tied, true));
         }
     }
     let guide = interior::propose(part, &mut system);
     let settled = settle::settle(part, guide);
     *solves += settled.factorizations + system.factorizations;
-    (settled.point, settled.tied, settled.holds)
+    Some((settled.point, settled.tied, settled.holds))
 }
 
 /// The obstacle in branches and nodes of the network.

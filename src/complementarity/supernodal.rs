@@ -23,6 +23,9 @@ pub(super) struct Supernodal {
 
 const NOWHERE: u32 = u32::MAX;
 
+/// Entries of the factor at most: 2 GB of numbers.
+const MOST_ENTRIES: usize = 250_000_000;
+
 impl Supernodal {
     pub(super) fn new(nodes: usize, edges: &[(u32, u32)]) -> Option<Self> {
         let n = nodes - 1;
@@ -56,6 +59,9 @@ impl Supernodal {
             Default::default(),
         )
         .ok()?;
+        if symbolic.len_val() > MOST_ENTRIES {
+            return None;
+        }
         let scratch = symbolic.factorize_numeric_llt_scratch::<f64>(Par::Seq, Default::default());
         let memory = MemBuffer::try_new(scratch).ok()?;
         let solve_memory = MemBuffer::try_new(symbolic.solve_in_place_scratch::<f64>(1, Par::Seq)).ok()?;
