@@ -24,48 +24,9 @@ const KNOWN: [&str; 22] = [
     "option", "opt", "ic", "nodeset", "dc", "tran", "end", "params", "func", "incl", "macro",
 ];
 /// Dot lines that ask for an analysis or an output, or say something to other tools.
-const PASSED_OVER: [&str; 41] = [
-    "ac",
-    "op",
-    "print",
-    "plot",
-    "probe",
-    "save",
-    "meas",
-    "measure",
-    "four",
-    "fft",
-    "noise",
-    "disto",
-    "pz",
-    "sens",
-    "tf",
-    "step",
-    "width",
-    "backanno",
-    "wave",
-    "net",
-    "mc",
-    "wcase",
-    "text",
-    "distribution",
-    "loadbias",
-    "savebias",
-    "csdf",
-    "hb",
-    "sp",
-    "pss",
-    "title",
-    "connect",
-    "graph",
-    "csparam",
-    "stim",
-    "stimulus",
-    "vector",
-    "watch",
-    "alias",
-    "load",
-    "saveop",
+const PASSED_OVER: [&str; 18] = [
+    "ac", "op", "print", "plot", "probe", "save", "meas", "measure", "four", "fft", "noise", "disto", "pz",
+    "sens", "tf", "step", "width", "title",
 ];
 
 impl Reader<'_> {
@@ -148,7 +109,7 @@ impl Reader<'_> {
         .label("not known")
         .about(format!(".{word}"))
         .help("If another tool reads it, nothing is wrong; if not, it has no effect.");
-        if let Some(near) = nearest(word, KNOWN.into_iter().chain(PASSED_OVER)) {
+        if let Some(near) = nearest(word, KNOWN) {
             finding.help = format!("Did you mean `.{near}`? As it stands it has no effect.");
             let edit = Edit { span: place, replacement: format!(".{near}") };
             finding = finding.fix(format!("write `.{near}`"), vec![edit]);

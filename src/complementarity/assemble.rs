@@ -1,13 +1,13 @@
 //! Puts the answers of the parts together: potentials, currents of sources by Kirchhoff's law, open intervals,
 //! and the list of consistent sets.
 
+use super::exact::at_level;
 use super::network::{Law, Network};
 use super::openness::{Arc, Potentials, cancel_idle, current_ranges, is_point, potentials};
 use super::outcome::{Interval, Outcome, Part, Place, Quantity, Solution, Verdict};
 use super::parts::Built;
 use super::passive::{Point, State};
 use super::rails::{Rails, fixed};
-use super::settle::at_level;
 use super::solve::{Answer, Found};
 use super::tie_currents::tie_currents;
 

@@ -5,7 +5,7 @@
 use super::double_double::Dd;
 use super::forest::{Adjacency, Forest, NONE, Sets, Tie};
 use super::laplacian::Laplacian;
-use super::passive::{Passive, Point, State};
+use super::passive::{Diode, Passive, Point, State};
 
 /// Share of the largest term below which a voltage or current is nothing.
 pub(super) const NOTHING: f64 = 1e-12;
@@ -269,9 +269,7 @@ impl<'a> Solve<'a> {
             in_forest[self.tie_diode[tie as usize] as usize] = true;
         }
         self.part.diodes.iter().enumerate().any(|(n, d)| {
-            !in_forest[n]
-                && d.series == 0.0
-                && super::settle::at_level(d, self.part, &self.potentials, self.volts).is_some()
+            !in_forest[n] && d.series == 0.0 && at_level(d, self.part, &self.potentials, self.volts).is_some()
         })
     }
 
@@ -307,12 +305,12 @@ impl<'a> Solve<'a> {
     }
 
     /// Voltage against which differences at a diode are judged.
-    pub(super) fn scale(&self, d: &super::passive::Diode) -> f64 {
+    pub(super) fn scale(&self, d: &Diode) -> f64 {
         d.scale(&self.potentials) + FLOOR * self.volts
     }
 
     /// The same for a diode that carries current by its series resistance.
-    pub(super) fn link_response(&mut self, d: &super::passive::Diode) -> f64 {
+    pub(super) fn link_response(&mut self, d: &Diode) -> f64 {
         let (p, q) = (self.forest.group[d.p as usize] as usize, self.forest.group[d.q as usize] as usize);
         let g = 1.0 / d.series;
         let mut rhs = vec![0.0; self.forest.groups];
@@ -354,6 +352,19 @@ impl<'a> Solve<'a> {
         }
         side.sort_unstable();
         side
+    }
+}
+
+/// The level at which a diode's terminals stand, within tolerance, were it to carry nothing.
+pub(super) fn at_level(d: &Diode, part: &Passive, potentials: &[Dd], volts: f64) -> Option<State> {
+    let v = part.across(d, potentials);
+    let room = NOTHING * (d.scale(potentials) + FLOOR * volts);
+    if (v - d.forward.into()).abs() <= room {
+        Some(State::Forward)
+    } else if d.reverse.is_finite() && (v + d.reverse.into()).abs() <= room {
+        Some(State::Reverse)
+    } else {
+        None
     }
 }
 

@@ -2,7 +2,7 @@
 //! positive numbers, so every conductance keeps its relative accuracy however wide the values are spread. As a
 //! matrix method it is LDLᵀ with the diagonal summed anew instead of subtracted (Alfa, Xue & Ye 2002).
 
-use super::laplacian::elimination_order;
+use super::ordering::elimination_order;
 
 /// Pattern and numbers of the factor. Unknowns are numbered in elimination order.
 pub(super) struct Mesh {

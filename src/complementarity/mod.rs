@@ -16,6 +16,7 @@ mod laplacian;
 mod mesh;
 mod network;
 mod openness;
+mod ordering;
 mod outcome;
 mod parts;
 mod passive;

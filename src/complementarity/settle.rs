@@ -1,7 +1,7 @@
 //! The states that hold: solves exactly for proposed states, checks every assumption, changes those that fail, and
 //! solves again.
 
-use super::exact::{FLOOR, NOTHING, Solve};
+use super::exact::{NOTHING, Solve};
 use super::forest::NONE;
 use super::passive::{Diode, Passive, Point, State};
 
@@ -202,24 +202,6 @@ fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
         small[n] = if suspect { (room * solve.link_response(d)).max(NOTHING * room / d.series) } else { 0.0 };
     }
     small
-}
-
-/// The level at which a diode's terminals stand, within tolerance, were it to carry nothing.
-pub(super) fn at_level(
-    d: &Diode,
-    part: &Passive,
-    potentials: &[super::double_double::Dd],
-    volts: f64,
-) -> Option<State> {
-    let v = part.across(d, potentials);
-    let room = NOTHING * (d.scale(potentials) + FLOOR * volts);
-    if (v - d.forward.into()).abs() <= room {
-        Some(State::Forward)
-    } else if d.reverse.is_finite() && (v + d.reverse.into()).abs() <= room {
-        Some(State::Reverse)
-    } else {
-        None
-    }
 }
 
 /// What the assumption `state` is worth with inner voltage `v` and current `i`; below `room` and `small` voltage and
