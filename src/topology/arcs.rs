@@ -58,7 +58,7 @@ impl OneWay {
             }
         }
         let loose = loose_ends(circuit, touching, &two_way);
-        let bridges = Bridges::of(&graph, &loose);
+        let bridges = Bridges::of(&graph, &loose, two_way.of(NodeId::GROUND));
         let barred = graph
             .edge_indices()
             .filter_map(|edge| {
@@ -91,13 +91,14 @@ fn loose_ends(circuit: &Circuit, touching: &Touching, groups: &Groups) -> Vec<u3
 
 /// Edges whose removal parts the graph, directions ignored; parallel edges are told apart by their numbers.
 struct Bridges {
-    /// For each edge: it is a bridge, and beyond it (away from the root) there are loose ends.
+    /// For each edge: it is a bridge, and beyond it, away from ground, there are loose ends (anywhere, where there is no
+    /// ground to be away from).
     verdict: Vec<(bool, bool)>,
 }
 
 impl Bridges {
     /// Depth-first search with the least entry number that a subtree reaches (Tarjan 1974), without recursion.
-    fn of(graph: &DiGraph<(), ElementId>, loose: &[u32]) -> Self {
+    fn of(graph: &DiGraph<(), ElementId>, loose: &[u32], ground: usize) -> Self {
         let count = graph.node_count();
         let adjacent = Adjacent::of(graph);
         let mut verdict = vec![(false, false); graph.edge_count()];
@@ -107,11 +108,12 @@ impl Bridges {
         let mut clock = 0;
         // node, the edge that led here, next neighbour to look at
         let mut stack: Vec<(usize, u32, usize)> = Vec::new();
-        for root in 0..count {
+        for root in std::iter::once(ground).chain(0..count) {
             if entry[root] != u32::MAX {
                 continue;
             }
             stack.push((root, u32::MAX, 0));
+            let mut found = Vec::new();
             while let Some(&mut (at, by, ref mut next)) = stack.last_mut() {
                 if entry[at] == u32::MAX {
                     entry[at] = clock;
@@ -135,8 +137,13 @@ impl Bridges {
                     beyond[parent] += beyond[at];
                     if low[at] > entry[parent] {
                         verdict[by as usize] = (true, beyond[at] > 0);
+                        found.push(by);
                     }
                 }
+            }
+            // which side is beyond must not depend on the node that happens to be written first
+            if root != ground {
+                found.into_iter().for_each(|edge| verdict[edge as usize].1 = beyond[root] > 0);
             }
         }
         Bridges { verdict }
