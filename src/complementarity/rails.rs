@@ -93,10 +93,13 @@ impl Rails {
         let mut nodes: Vec<u32> = around
             .iter()
             .flat_map(|&(tie, _)| [self.ties[tie as usize].a, self.ties[tie as usize].b])
-            .filter(|&n| n != 0)
             .collect();
         nodes.sort_unstable();
         nodes.dedup();
+        // where the loop hangs on the rest, its potential is not in dispute
+        if let Some(top) = nodes.iter().copied().min_by_key(|&n| self.depth(n)) {
+            nodes.retain(|&n| n != top);
+        }
         for &n in &nodes {
             self.tainted[n as usize] = true;
         }
@@ -109,6 +112,15 @@ impl Rails {
             nodes,
             truncated: false,
         });
+    }
+
+    fn depth(&self, mut node: u32) -> usize {
+        let mut steps = 0;
+        while self.forest.up[node as usize] != NONE {
+            node = self.forest.parent[node as usize];
+            steps += 1;
+        }
+        steps
     }
 
     /// What hangs on a tainted node is tainted.

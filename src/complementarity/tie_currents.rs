@@ -54,6 +54,9 @@ pub(super) fn tie_currents(network: &Network, rails: &Rails, currents: &mut [f64
         let value = through(below[node as usize], below[root as usize], root == 0);
         currents[rails.branch[tie as usize] as usize] = sign * value;
     }
+    for &branch in rails.contradictions.iter().flat_map(|part| &part.branches) {
+        currents[branch as usize] = f64::NAN;
+    }
 }
 
 fn own(network: &Network, currents: &[f64]) -> Vec<Inflow> {
