@@ -209,10 +209,9 @@ pub(super) fn views(
     let Some(ports) = Ports::new(network, &dense) else { return };
     let places: Vec<Place> = ports.junctions.iter().map(|&n| solution.places[n as usize]).collect();
     for (k, &n) in ports.junctions.iter().enumerate().filter(|(_, n)| wanted[**n as usize]) {
-        if let (Quantity::Known(i), Quantity::Known(v)) =
-            (solution.currents[n as usize], solution.voltages[n as usize])
-        {
-            views[n as usize] = ports.view(k, &places, v, i);
+        let (i, v) = (solution.currents[n as usize], solution.voltages[n as usize]);
+        if i.known().is_some() && v.known().is_some() {
+            views[n as usize] = ports.view(k, &places);
         }
     }
 }

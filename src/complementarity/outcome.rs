@@ -96,15 +96,13 @@ pub enum Reason {
     /// A closed walk of branches of no resistance whose voltages do not sum to zero: unlimited current (`gap` > 0
     /// is the voltage left over along the walk), or sources that contradict each other (no junction among them).
     Loop { branches: Vec<u32>, gap: f64 },
-    /// The branches that lead out of a set of nodes carry nothing outward (or inward), yet sources push `excess`
-    /// (> 0) into it.
+    /// Sources push `excess` into a set of nodes (> 0) or draw it out (< 0), and the branches that lead out of the set
+    /// carry nothing that way.
     CutSet { branches: Vec<u32>, nodes: Vec<u32>, excess: f64 },
     /// Branches whose law is not known.
     Unknown { branches: Vec<u32> },
-    /// The laws are not met: the largest relative residual.
-    Residual { relative: f64 },
-    /// The matrix of a part with controlled laws has no full rank and its right-hand side does not fit, or the
-    /// search for sets was cut off.
+    /// Nothing in the graph makes it so, but the numbers do: controlled laws without a unique answer, a search that was
+    /// cut off, a part too large to factor.
     Dependent { text: String },
 }
 

@@ -452,7 +452,7 @@ impl Ports {
     }
 
     /// What junction `k` sees, the others in their places.
-    pub(super) fn view(&self, k: usize, places: &[Place], v: f64, i: f64) -> Option<View> {
+    pub(super) fn view(&self, k: usize, places: &[Place]) -> Option<View> {
         let (mut matrix, mut right) = self.rows(places);
         matrix.set_row(k, &(self.i_of_a.row(k) * self.rho));
         right[k] = -self.i0[k] * self.rho;
@@ -462,7 +462,6 @@ impl Ports {
         let a = solved(&matrix, &both)?;
         let open_circuit = self.v0[k] + (self.v_of_a.row(k) * a.column(0))[0];
         let slope = (self.v_of_a.row(k) * a.column(1))[0];
-        let _ = (v, i);
         let view = View { open_circuit, resistance: self.laws[k].series - slope };
         (view.open_circuit.is_finite() && view.resistance.is_finite()).then_some(view)
     }

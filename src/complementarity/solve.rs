@@ -85,7 +85,11 @@ fn passive(network: &Network, rails: &Rails, built: Built, answer: &mut Answer) 
         answer.found.push(Found::Passive { built, point, tied });
     } else {
         answer.verdict = Verdict::Unverified;
-        answer.reasons.push(Reason::Residual { relative: 1.0 });
+        let text = format!(
+            "assumed states were solved for and mended {} times, and some assumption still failed",
+            answer.solves
+        );
+        answer.reasons.push(Reason::Dependent { text });
     }
 }
 

@@ -80,10 +80,6 @@ impl Words<'_> {
                 self.with(verdict, branches, self.cut(branches, nodes, *excess))
             }
             Reason::Unknown { branches } => self.with(verdict, branches, self.unknown(branches)),
-            Reason::Residual { relative } => {
-                let some: Vec<u32> = part.branches.iter().take(MOST_NAMES).copied().collect();
-                self.with(verdict, &some, missed(*relative))
-            }
             Reason::Dependent { text } => self.with(verdict, &self.driving(part), text.clone()),
         }
     }
@@ -95,7 +91,10 @@ impl Words<'_> {
             Law::Resistance(ohms) => *ohms < 0.0,
             _ => false,
         };
-        part.branches.iter().copied().filter(|&b| self.is(b, drives)).take(2 * MOST_NAMES).collect()
+        let found: Vec<u32> =
+            part.branches.iter().copied().filter(|&b| self.is(b, drives)).take(2 * MOST_NAMES).collect();
+        // a passive part is named by its first elements, so that the cause has a place in the text
+        if found.is_empty() { part.branches.iter().take(MOST_NAMES).copied().collect() } else { found }
     }
 
     fn with(&self, verdict: Verdict, branches: &[u32], text: String) -> Cause {
