@@ -2,11 +2,13 @@
 //! and the list of consistent sets.
 
 use super::exact::at_level;
+use super::idle::cancel_idle;
 use super::network::{Law, Network};
-use super::openness::{Arc, Potentials, cancel_idle, current_ranges, is_point, potentials};
+use super::openness::{Arc, current_ranges};
 use super::outcome::{Interval, Outcome, Part, Place, Quantity, Solution, Verdict};
 use super::parts::Built;
 use super::passive::{Point, State};
+use super::potentials::{Potentials, is_point, potentials};
 use super::rails::{Rails, fixed};
 use super::solve::{Answer, Found};
 use super::tie_currents::tie_currents;
@@ -33,6 +35,8 @@ struct Sheet {
 }
 
 const STILL: Interval = Interval { low: 0.0, high: 0.0 };
+/// Whatever is not known of such a current, it may be anything.
+const ANY: Interval = Interval { low: f64::NEG_INFINITY, high: f64::INFINITY };
 
 impl<'a> Assembly<'a> {
     pub(super) fn new(network: &'a Network, rails: &'a Rails, answers: Vec<Answer>) -> Self {
@@ -173,10 +177,18 @@ impl<'a> Assembly<'a> {
             }
         }
         for (range, branch) in current_ranges(self.rails.tainted.len(), &arcs).into_iter().zip(branches) {
-            if sheet.currents[branch as usize].is_finite() {
+            let current = &mut sheet.currents[branch as usize];
+            if current.is_nan() && range == Some(ANY) && !self.is_contradictory(branch) {
+                *current = 0.0;
+            }
+            if current.is_finite() {
                 sheet.ranges[branch as usize] = range;
             }
         }
+    }
+
+    fn is_contradictory(&self, branch: u32) -> bool {
+        self.rails.contradictions.iter().any(|part| part.branches.contains(&branch))
     }
 
     /// Every branch whose voltage stands while its current changes.

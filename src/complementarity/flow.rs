@@ -6,14 +6,28 @@
 pub(super) struct Flow {
     to: Vec<u32>,
     capacity: Vec<f64>,
+    /// What has been sent along each arc; its companion holds the opposite.
+    moved: Vec<f64>,
     out: Vec<Vec<u32>>,
     /// Capacity that counts as none.
     nothing: f64,
 }
 
+/// Capacities and what has been sent, to come back to.
+pub(super) struct Snapshot {
+    capacity: Vec<f64>,
+    moved: Vec<f64>,
+}
+
 impl Flow {
     pub(super) fn new(nodes: usize, nothing: f64) -> Self {
-        Flow { to: Vec::new(), capacity: Vec::new(), out: vec![Vec::new(); nodes], nothing }
+        Flow {
+            to: Vec::new(),
+            capacity: Vec::new(),
+            moved: Vec::new(),
+            out: vec![Vec::new(); nodes],
+            nothing,
+        }
     }
 
     /// Adds an arc with a capacity each way; returns its number.
@@ -21,17 +35,19 @@ impl Flow {
         let number = self.to.len() as u32;
         self.to.extend([to, from]);
         self.capacity.extend([there, back]);
+        self.moved.extend([0.0, 0.0]);
         self.out[from as usize].push(number);
         self.out[to as usize].push(number + 1);
         number
     }
 
-    pub(super) fn capacities(&self) -> Vec<f64> {
-        self.capacity.clone()
+    pub(super) fn snapshot(&self) -> Snapshot {
+        Snapshot { capacity: self.capacity.clone(), moved: self.moved.clone() }
     }
 
-    pub(super) fn restore(&mut self, capacities: &[f64]) {
-        self.capacity.copy_from_slice(capacities);
+    pub(super) fn restore(&mut self, snapshot: &Snapshot) {
+        self.capacity.copy_from_slice(&snapshot.capacity);
+        self.moved.copy_from_slice(&snapshot.moved);
     }
 
     /// Closes an arc both ways.
@@ -43,6 +59,16 @@ impl Flow {
     /// Whether nothing can pass an arc either way.
     pub(super) fn closed(&self, arc: u32) -> bool {
         self.capacity[arc as usize] == 0.0 && self.capacity[arc as usize ^ 1] == 0.0
+    }
+
+    /// Sets what an arc can still pass.
+    pub(super) fn open(&mut self, arc: u32, capacity: f64) {
+        self.capacity[arc as usize] = capacity;
+    }
+
+    /// What has been sent along an arc, less what was sent back.
+    pub(super) fn moved(&self, arc: u32) -> f64 {
+        self.moved[arc as usize]
     }
 
     /// Limits the way there of an arc.
@@ -82,6 +108,7 @@ impl Flow {
         self.out[source as usize].pop();
         self.to.truncate(arc as usize);
         self.capacity.truncate(arc as usize);
+        self.moved.truncate(arc as usize);
         sent
     }
 
@@ -136,6 +163,8 @@ impl Flow {
             for arc in path {
                 self.capacity[arc as usize] -= most;
                 self.capacity[arc as usize ^ 1] += most;
+                self.moved[arc as usize] += most;
+                self.moved[arc as usize ^ 1] -= most;
             }
         }
         most

@@ -105,6 +105,10 @@ fn collect(items: &Items<'_>, sets: &mut Sets) -> Vec<Piece> {
     }
     for (n, b) in network.branches.iter().enumerate() {
         let Some(item) = items.of_branch(n as u32) else { continue };
+        // a tie that closes on itself says nothing about anything else
+        if fixed(b.law).is_some() && b.from == b.to {
+            continue;
+        }
         let at = place(&mut pieces, sets.find(item));
         let piece = &mut pieces[at];
         piece.branches.push(n as u32);

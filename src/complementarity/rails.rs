@@ -27,13 +27,7 @@ pub(super) struct Rails {
 
 impl Rails {
     pub(super) fn new(network: &Network) -> Self {
-        let (mut ties, mut branch) = (Vec::new(), Vec::new());
-        for (n, b) in network.branches.iter().enumerate() {
-            if let Some(level) = fixed(b.law) {
-                ties.push(Tie { a: b.from, b: b.to, volts: level.value.into() });
-                branch.push(n as u32);
-            }
-        }
+        let (ties, branch) = ties(network);
         let nodes = network.nodes.max(1) as usize;
         let pushing = network.branches.iter().enumerate().filter(|(_, b)| matches!(b.law, Law::Current(_)));
         let forest = Forest::new(nodes, &ties);
@@ -100,6 +94,14 @@ impl Rails {
         if let Some(top) = nodes.iter().copied().min_by_key(|&n| self.depth(n)) {
             nodes.retain(|&n| n != top);
         }
+        // nor where a source stands on the reference, unless it is another such source that disagrees with it
+        if !holds(network, self.branch[chord as usize]) {
+            let held = |&n: &u32| match self.forest.up[n as usize] {
+                NONE => true,
+                tie => holds(network, self.branch[tie as usize]),
+            };
+            nodes.retain(|n| !held(n));
+        }
         for &n in &nodes {
             self.tainted[n as usize] = true;
         }
@@ -133,6 +135,27 @@ impl Rails {
             }
         }
     }
+}
+
+/// Branches of fixed voltage; sources that stand on the reference come first, since what they hold is a boundary.
+fn ties(network: &Network) -> (Vec<Tie>, Vec<u32>) {
+    let fixed = network
+        .branches
+        .iter()
+        .enumerate()
+        .filter_map(|(n, b)| fixed(b.law).map(|level| (n as u32, b, level)));
+    let (first, rest): (Vec<_>, Vec<_>) = fixed.partition(|&(n, ..)| holds(network, n));
+    first
+        .into_iter()
+        .chain(rest)
+        .map(|(n, b, level)| (Tie { a: b.from, b: b.to, volts: level.value.into() }, n))
+        .unzip()
+}
+
+/// A voltage source between the reference and another node.
+fn holds(network: &Network, branch: u32) -> bool {
+    let b = &network.branches[branch as usize];
+    matches!(b.law, Law::Voltage(_)) && (b.from == 0) != (b.to == 0)
 }
 
 fn members(forest: &Forest) -> (Vec<u32>, Vec<u32>) {

@@ -222,6 +222,8 @@ pub(super) fn miss(network: &Network, solution: &Solution) -> f64 {
         let size = up.abs().max(uq.abs()).max(0.01 * largest);
         let off = match b.law {
             Law::Resistance(r) => (v - r * i[n]).abs() / size.max((r * i[n]).abs()),
+            // one of those that contradict each other
+            Law::Voltage(_) | Law::Short if i[n].is_nan() => 0.0,
             Law::Voltage(l) => (v - l.value).abs() / size.max(l.value.abs()),
             Law::Short => v.abs() / size,
             Law::Junction(j) => {

@@ -232,13 +232,15 @@ impl Differences<'_> {
         }
         let (parts, holders) = divide(self.circuit, Division::Direct);
         let contested = self.contested(&parts, &holders);
-        // what sound parts push through a source of 0 V decides how much of it an ideal diode beside it may carry
+        // what the other parts push through a source of 0 V decides how much of it an ideal diode beside it may carry,
+        // and what a part without a solution pushes is not defined
+        let ideal = |at: &usize| matches!(&self.circuit.elements[*at].kind, Kind::D(d) if d.drop.is_zero() && d.series.is_zero());
         let pushes = |at: &usize| matches!(self.circuit.elements[*at].kind, Kind::I(_) | Kind::R(_));
         let fed = parts.iter().any(|part| part.nodes.is_empty() && part.elements.iter().any(pushes));
         let idle =
             holders.iter().any(|&at| matches!(self.circuit.elements[at].kind, Kind::V(v) if v.is_zero()));
         for part in parts {
-            if part.nodes.is_empty() && fed && idle {
+            if idle && (part.nodes.is_empty() && fed || part.elements.iter().any(ideal)) {
                 continue;
             }
             let alone = self.alone(&part, &holders);

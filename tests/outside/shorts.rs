@@ -98,3 +98,42 @@ fn a_loop_in_which_drop_and_source_cancel_stays_open() {
     let meter = named.branch("V2").expect("listed").current.interval().expect("a range");
     assert!((meter.high - 4e-3).abs() < 1e-14 && meter.low == f64::NEG_INFINITY, "{meter:?}");
 }
+
+/// An order of nodes decides what circulates: D11 carries all 3 mA that come to n2 while the meter V1 brings back what
+/// the source takes from n3; D10 carries all of them while the meter carries the rest on.
+#[test]
+fn a_meter_may_turn_round_without_anything_circulating() {
+    let (verdict, analysis) = case(
+        "ring\nI1 0 n2 3m\nD10 n2 n3 DX\nD11 n2 0 DX\nV1 n3 0 0\nI3 n3 0 1m\n.model DX D\n*@ drop DX 0\n.end\n",
+    );
+    assert_eq!(verdict, Verdict::Shared);
+    let named = Named::new(&analysis, &nominal(&analysis).expect("a case").solutions[0]);
+    for name in ["D10", "D11"] {
+        let open = named.diode(name).expect("listed").current.interval().expect("a range");
+        assert!(open.low.abs() < 1e-14 && (open.high - 3e-3).abs() < 1e-14, "{name}: {open:?}");
+    }
+    let meter = named.branch("V1").expect("listed").current.interval().expect("a range");
+    assert!((meter.low + 1e-3).abs() < 1e-14 && (meter.high - 2e-3).abs() < 1e-14, "{meter:?}");
+}
+
+/// Sources to ground hold their nodes whatever contradicts them further on: what stands on those nodes keeps its answer.
+#[test]
+fn a_contradiction_between_two_rails_leaves_the_rails_alone() {
+    let (verdict, analysis) =
+        case("rails\nV1 a 0 5\nV2 b 0 3\nV3 a c 1\nL1 c b 1m\nR1 a 0 1k\nR2 c 0 1k\n.end\n");
+    assert_eq!(verdict, Verdict::None);
+    let named = Named::new(&analysis, &nominal(&analysis).expect("a case").solutions[0]);
+    assert!(named.branch("R1").expect("listed").current.known().is_some_and(|i| (i - 5e-3).abs() < 1e-15));
+    for name in ["R2", "V3"] {
+        assert!(named.branch(name).map_or(true, |b| b.current.known().is_none()), "{name}");
+    }
+}
+
+/// A source whose ends are joined contradicts itself and nobody else.
+#[test]
+fn a_source_that_closes_on_itself_leaves_the_rest_alone() {
+    let (verdict, analysis) = case("itself\nV1 b b 0.7\nR1 b 0 1k\nV2 a 0 5\nR2 a b 1k\n.end\n");
+    assert_eq!(verdict, Verdict::None);
+    let named = Named::new(&analysis, &nominal(&analysis).expect("a case").solutions[0]);
+    assert!(named.branch("R1").expect("listed").current.known().is_some_and(|i| (i - 2.5e-3).abs() < 1e-15));
+}
