@@ -258,9 +258,10 @@ impl Maker<'_> {
         let nodes = (1..circuit.nodes.len()).map(NodeId::new).map(|node| {
             let known = solution.potentials.get(node.index()).copied().unwrap_or(Quantity::Unknown);
             let voltage = if self.is_withheld(self.parts.node(node)) { Quantity::Unknown } else { known };
-            NodeResult { node, voltage }
+            NodeResult { node, voltage, error: None, refined: None }
         });
-        Solution { diodes: diodes.collect(), nodes: nodes.collect(), branches: self.branches(solution) }
+        let (diodes, nodes) = (diodes.collect(), nodes.collect());
+        Solution { diodes, nodes, branches: self.branches(solution), unrefined: Vec::new() }
     }
 
     fn branches(&self, solution: &complementarity::Solution) -> Vec<BranchResult> {
@@ -336,6 +337,11 @@ impl Maker<'_> {
             breakdown,
             series: diode.series,
             view,
+            knee: None,
+            trust: None,
+            trust_reasons: Vec::new(),
+            error: None,
+            refined: None,
         }
     }
 

@@ -28,8 +28,8 @@ pub use evaluate::{Text, evaluate};
 pub use law::{JunctionLaw, nearest_decade, thermal_voltage};
 pub use material::{MATERIALS, Material};
 pub use result::{
-    BranchResult, Case, Cause, DiodeResult, Drop, DropOrigin, Flip, NodeResult, Operating, Reasoning,
-    Residual, Solution, Why,
+    BranchResult, Case, Cause, DiodeResult, Drop, DropOrigin, ErrorBar, Flip, Knee, NodeResult, Operating,
+    Reasoning, Refined, Residual, Solution, Trust, Unrefined, Why,
 };
 
 pub use crate::circuit::State;

@@ -115,6 +115,8 @@ pub struct Solution {
     pub nodes: Vec<NodeResult>,
     /// Every other two-terminal element that is evaluated (R L V I E F G H).
     pub branches: Vec<BranchResult>,
+    /// Parts in which the second opinion was sought and not found.
+    pub unrefined: Vec<Unrefined>,
 }
 
 /// Where a drop comes from.
@@ -184,6 +186,81 @@ pub struct DiodeResult {
     /// Distance from the open-circuit voltage to the nearest level that would change the state, positive where
     /// the state holds.
     pub margin: Option<f64>,
+    /// How soft its knee is; `None` for an ideal diode (drop under 0.1 V).
+    pub knee: Option<Knee>,
+    /// How far the numbers above may be believed; `None` where it was not evaluated or not looked at.
+    pub trust: Option<Trust>,
+    /// What is wrong with them, in words and numbers; empty where trust is good.
+    pub trust_reasons: Vec<String>,
+    /// Error bar of the current; `None` where none could be had.
+    pub error: Option<ErrorBar>,
+    /// The second opinion; `None` where the exponential law leaves it open or was not solved.
+    pub refined: Option<Refined>,
+}
+
+/// How far the constant-drop answer may be believed at a diode.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum Trust {
+    /// Poor: the current may be off by more than a fifth, or the state is in doubt.
+    Poor,
+    /// Fair: within a fifth.
+    Fair,
+    /// Good.
+    Good,
+}
+
+impl Trust {
+    /// The word used in every output.
+    pub fn word(self) -> &'static str {
+        match self {
+            Trust::Good => "good",
+            Trust::Fair => "fair",
+            Trust::Poor => "poor",
+        }
+    }
+}
+
+/// The exponential law of a junction beside its constant drop.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Knee {
+    /// N·kT/q, volts for each factor e of current.
+    pub slope: f64,
+    /// Current at which the junction has its drop, amperes; by its law, else by its material's.
+    pub reference: f64,
+    /// Whether the model's IS says so, rather than the material.
+    pub is_known: bool,
+    /// How far the drop may be off at the current found (at breakdown: the breakdown voltage), volts.
+    pub uncertainty: f64,
+}
+
+/// A first-order error bar: what the uncertainty of all drops and the leakage of all blocking diodes do to one
+/// quantity, worst case. Nothing in it comes from the second opinion.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct ErrorBar {
+    /// Half its width in amperes; for a blocking diode the most that it may leak, a magnitude.
+    pub current: f64,
+    /// The same for its voltage, volts.
+    pub voltage: f64,
+    /// The diode that contributes most, and its part in `current` (blocking: in `voltage`).
+    pub most: Option<(ElementId, f64)>,
+}
+
+/// The second opinion: the exponential law on the whole part.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Refined {
+    /// At its terminals, series resistance included.
+    pub voltage: f64,
+    /// From anode to cathode.
+    pub current: f64,
+}
+
+/// Diodes for which the exponential law gave no answer though it was sought.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Unrefined {
+    /// The diodes of one part.
+    pub diodes: Vec<ElementId>,
+    /// Why, in a few words: `it did not converge`.
+    pub reason: &'static str,
 }
 
 /// One node in one solution.
@@ -193,6 +270,10 @@ pub struct NodeResult {
     pub node: NodeId,
     /// Against ground.
     pub voltage: Quantity,
+    /// Half the width of its error bar, volts; for nodes that a `watch` note names.
+    pub error: Option<f64>,
+    /// By the exponential law, volts; where that was solved.
+    pub refined: Option<f64>,
 }
 
 /// One other element in one solution.

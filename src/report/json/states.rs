@@ -3,7 +3,7 @@
 use super::number;
 use crate::analysis::Analysis;
 use crate::circuit::Circuit;
-use crate::operating::{Case, DiodeResult, Interval, Quantity, Solution};
+use crate::operating::{Case, DiodeResult, Interval, Quantity, Solution, State, Trust};
 use crate::text::{FileId, Sources};
 use serde::Serialize;
 use serde::ser::{SerializeMap, Serializer};
@@ -75,7 +75,11 @@ struct DiodeEntry<'a> {
     #[serde(rename = "margin_V")]
     margin: Option<f64>,
     trust: Option<&'static str>,
-    trust_reasons: Vec<String>,
+    trust_reasons: &'a [String],
+    #[serde(rename = "current_error_A")]
+    current_error: Option<f64>,
+    #[serde(rename = "leakage_bound_A")]
+    leakage_bound: Option<f64>,
     refined: Option<Refined>,
 }
 
@@ -95,6 +99,10 @@ struct NodeEntry {
     voltage: Option<f64>,
     #[serde(rename = "range_V")]
     range: Option<Ends>,
+    #[serde(rename = "error_V")]
+    error: Option<f64>,
+    #[serde(rename = "refined_V")]
+    refined: Option<f64>,
 }
 
 #[derive(Serialize)]
@@ -147,7 +155,8 @@ fn solution_entry<'a>(
 ) -> SolutionEntry<'a> {
     let node = |n: &crate::operating::NodeResult| {
         let (voltage, range) = parts(n.voltage);
-        NodeEntry { name: circuit.node_name(n.node), voltage, range }
+        let (error, refined) = (n.error.and_then(number), n.refined.and_then(number));
+        NodeEntry { name: circuit.node_name(n.node), voltage, range, error, refined }
     };
     let branch = |b: &crate::operating::BranchResult| {
         let (current, range) = parts(b.current);
@@ -164,6 +173,8 @@ fn diode_entry<'a>(circuit: &'a Circuit, sources: &'a Sources, diode: &'a DiodeR
     let span = circuit.element(diode.element).statement;
     let (voltage, voltage_range) = parts(diode.voltage);
     let (current, current_range) = parts(diode.current);
+    let blocks = diode.state == State::Blocking;
+    let error = diode.error.and_then(|e| number(e.current));
     DiodeEntry {
         name: circuit.element_name(diode.element),
         line: sources.positions(span).0.line,
@@ -179,9 +190,11 @@ fn diode_entry<'a>(circuit: &'a Circuit, sources: &'a Sources, diode: &'a DiodeR
         open_circuit: diode.view.and_then(|v| number(v.open_circuit)),
         source_resistance: diode.view.and_then(|v| number(v.resistance)),
         margin: diode.margin.and_then(number),
-        trust: None,
-        trust_reasons: Vec::new(),
-        refined: None,
+        trust: diode.trust.map(Trust::word),
+        trust_reasons: &diode.trust_reasons,
+        current_error: error.filter(|_| !blocks),
+        leakage_bound: error.filter(|_| blocks),
+        refined: diode.refined.map(|r| Refined { voltage: number(r.voltage), current: number(r.current) }),
     }
 }
 

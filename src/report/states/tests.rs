@@ -23,6 +23,11 @@ fn diode(element: usize, state: State, current: Quantity, voltage: f64) -> Diode
         series: 0.0,
         view: None,
         margin: Some(1.234),
+        knee: None,
+        trust: None,
+        trust_reasons: Vec::new(),
+        error: None,
+        refined: None,
     }
 }
 
@@ -30,6 +35,8 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
     let node = NodeResult {
         node: crate::circuit::NodeId::new(1),
         voltage: Quantity::Open(Interval { low: 0.0, high: f64::INFINITY }),
+        error: None,
+        refined: None,
     };
     let nodes = if verdict == Verdict::Floating { vec![node] } else { Vec::new() };
     let cause =
@@ -45,7 +52,7 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
         truncated: false,
         solves: 2,
         residual: Residual { current: 0.0, voltage: 0.0, relative: 2e-16 },
-        solutions: vec![Solution { diodes, nodes, branches: Vec::new() }],
+        solutions: vec![Solution { diodes, nodes, branches: Vec::new(), unrefined: Vec::new() }],
     }
 }
 
