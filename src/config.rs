@@ -1,5 +1,7 @@
 //! What the user may set for a run, as plain data. Reading arguments is `cli`'s, this is only their meaning.
 
+use crate::finding::Severity;
+use std::collections::BTreeMap;
 use std::path::PathBuf;
 
 /// Options of one analysis.
@@ -15,4 +17,28 @@ pub struct Options {
     pub states: bool,
     /// The diode that `--why` asks about: its view is computed in parts of any size.
     pub why: Option<String>,
+    /// Severities that differ from the rules' own, by rule name; `None` switches a rule off.
+    pub levels: BTreeMap<String, Option<Severity>>,
+    /// Decades of current (powers of ten) at which drops from models are held instead of the nearest one, by
+    /// lower-case full name of the diode: a comparison judges both sides by the same drops.
+    pub decades: BTreeMap<String, i32>,
+    /// Where remarks begin.
+    pub thresholds: Thresholds,
+}
+
+/// Where remarks begin, as `kneewise.toml` may set it.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Thresholds {
+    /// Share by which a current or voltage must move for `compare` to tell it: 0.05 is 5 %.
+    pub moved: f64,
+    /// Decades from the drop's own current beyond which a current is worth a note.
+    pub swing_note: f64,
+    /// The same, for a warning.
+    pub swing_warning: f64,
+}
+
+impl Default for Thresholds {
+    fn default() -> Self {
+        Thresholds { moved: 0.05, swing_note: 1.0, swing_warning: 2.0 }
+    }
 }

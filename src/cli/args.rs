@@ -106,6 +106,7 @@ impl Common {
             include_dirs: self.include_dir.clone(),
             states: true,
             why: why.map(str::to_owned),
+            ..Options::default()
         }
     }
 }

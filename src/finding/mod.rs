@@ -9,6 +9,7 @@ pub use quantity::{Figure, compact, figure, interval, quantity};
 pub use words::{count, list};
 
 use crate::text::Span;
+use std::collections::BTreeMap;
 
 /// How serious a finding is; means the same everywhere.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -147,6 +148,21 @@ impl Finding {
         self.fix = Some(Fix { title: title.into(), edits });
         self
     }
+}
+
+/// Gives findings the severity set for their rule; those of rules that are switched off are left out.
+pub fn set_levels(findings: &mut Vec<Finding>, levels: &BTreeMap<String, Option<Severity>>) {
+    if levels.is_empty() {
+        return;
+    }
+    findings.retain_mut(|finding| match levels.get(finding.rule) {
+        Some(Some(level)) => {
+            finding.severity = *level;
+            true
+        }
+        Some(None) => false,
+        None => true,
+    });
 }
 
 /// Sorts findings by place, then the most serious first, then by rule and words, so that no run differs.

@@ -76,6 +76,12 @@ impl Diode {
         }
     }
 
+    /// Takes a decade that somebody else has chosen; says whether that moved the drop.
+    pub fn take_decade(&mut self, chosen: i32) -> bool {
+        let DropLaw::Model { decade, .. } = &mut self.law else { return false };
+        std::mem::replace(decade, chosen) != chosen
+    }
+
     /// Takes the decade nearest to the greatest forward current found; says whether that moved the drop.
     pub fn choose_decade(&mut self, greatest: Option<f64>) -> bool {
         let DropLaw::Model { decade, .. } = &mut self.law else { return false };

@@ -129,12 +129,25 @@ impl Run<'_> {
         }
         let mut moved = false;
         for (diode, greatest) in diodes.iter_mut().zip(greatest) {
-            moved |= diode.choose_decade(greatest);
+            moved |= match self.held_decade(diode.element) {
+                Some(decade) => diode.take_decade(decade),
+                None => diode.choose_decade(greatest),
+            };
         }
         if moved {
             for (number, kept) in self.first.iter_mut().enumerate() {
                 self.spent[number] = kept.take().map_or(0, |solved| solved.outcome.solves);
             }
+        }
+    }
+
+    /// The decade that the options hold for a diode.
+    fn held_decade(&self, diode: ElementId) -> Option<i32> {
+        let held = &self.options.decades;
+        if held.is_empty() {
+            None
+        } else {
+            held.get(&self.circuit.element_name(diode).to_lowercase()).copied()
         }
     }
 
