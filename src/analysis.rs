@@ -5,6 +5,7 @@ use crate::config::Options;
 use crate::finding::{self, Finding};
 use crate::operating::{self, Operating};
 use crate::rules::{self, Evidence, Skipped};
+use crate::swing::{self, Swing};
 use crate::text::{LoadProblem, Loader, Sources};
 use crate::topology::Wiring;
 use std::path::Path;
@@ -20,6 +21,8 @@ pub struct Analysis {
     pub wiring: Wiring,
     /// States for each condition, where asked for.
     pub operating: Option<Operating>,
+    /// What moves over time and over the conditions, where asked for.
+    pub swing: Option<Swing>,
     /// Whether some condition has no answer, or one that does not check, leaving out what an instant taken by itself
     /// cannot judge.
     pub hopeless: bool,
@@ -42,8 +45,9 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
         findings.extend(about_notes);
         operating
     });
+    let swing = operating.as_ref().filter(|_| options.swing).map(|o| swing::follow(&circuit, o, options));
     let evidence = Evidence::new(&sources, &circuit, &wiring);
-    let (judged, skipped) = rules::run(&evidence, operating.as_ref());
+    let (judged, skipped) = rules::run(&evidence, operating.as_ref(), swing.as_ref());
     let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
     findings.extend(judged);
     let is_off = |rule: &str| options.levels.get(rule) == Some(&None);
@@ -51,5 +55,5 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     rules::accept(&evidence, &mut findings, |rule| !is_off(rule) && !skipped.iter().any(|s| s.rule == rule));
     finding::set_levels(&mut findings, &options.levels);
     finding::sort(&mut findings);
-    Ok(Analysis { sources, circuit, wiring, operating, hopeless, findings, skipped })
+    Ok(Analysis { sources, circuit, wiring, operating, swing, hopeless, findings, skipped })
 }

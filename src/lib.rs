@@ -5,8 +5,9 @@
 //! 1. [`text`]: files, spans, positions. 2. [`complementarity`]: piecewise-linear networks as mathematics.
 //! 3. [`finding`]: findings as plain data. 4. [`config`]: options. 5. [`syntax`]: text to statements.
 //! 6. [`circuit`]: statements to a flat circuit. 7. [`topology`]: facts of the wiring.
-//! 8. [`operating`]: states for each condition, with proof. 9. [`rules`]: one file a rule.
-//! 10. [`analysis`]: runs the stages in order and owns every result. 11. [`report`]: terminal and JSON.
+//! 8. [`operating`]: states for each condition, with proof. 9. [`swing`]: the same over time and over ranges.
+//! 10. [`rules`]: one file a rule. 11. [`analysis`]: runs the stages in order and owns every result.
+//! 12. [`report`]: terminal and JSON.
 //!
 //! Start reading at [`analysis`].
 //!
@@ -40,6 +41,8 @@ pub mod circuit;
 pub mod topology;
 
 pub mod operating;
+
+pub mod swing;
 
 pub mod rules;
 

@@ -3,6 +3,7 @@
 use super::Evidence;
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
+use crate::swing::Swing;
 
 /// What a rule needs before it can judge, and its check.
 pub enum Check {
@@ -12,12 +13,14 @@ pub enum Check {
     Wiring(fn(&Evidence<'_>) -> Vec<Finding>),
     /// Judges the states.
     States(fn(&Evidence<'_>, &Operating) -> Vec<Finding>),
+    /// Judges what happens over time.
+    Time(fn(&Evidence<'_>, &Operating, &Swing) -> Vec<Finding>),
     /// Judges the notes against all other findings; made by `run` after the other rules.
     Notes,
 }
 
 /// The groups of rules, in the order in which a file meets them.
-pub const GROUPS: [&str; 6] = ["reading", "wiring", "orientation", "states", "notes", "caution"];
+pub const GROUPS: [&str; 7] = ["reading", "wiring", "orientation", "states", "time", "notes", "caution"];
 
 /// One rule.
 pub struct Rule {

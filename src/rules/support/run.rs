@@ -4,10 +4,15 @@ use super::rule::{Check, Skipped};
 use super::{Evidence, instances};
 use crate::finding::Finding;
 use crate::operating::Operating;
+use crate::swing::Swing;
 
 /// All findings of all rules, and those that could not judge, with the reason. Findings of reading are not among
 /// them: they were made by `circuit::read`.
-pub fn run(evidence: &Evidence<'_>, operating: Option<&Operating>) -> (Vec<Finding>, Vec<Skipped>) {
+pub fn run(
+    evidence: &Evidence<'_>,
+    operating: Option<&Operating>,
+    swing: Option<&Swing>,
+) -> (Vec<Finding>, Vec<Skipped>) {
     let mut told = Vec::new();
     let mut skipped = Vec::new();
     for rule in super::super::all() {
@@ -17,15 +22,21 @@ pub fn run(evidence: &Evidence<'_>, operating: Option<&Operating>) -> (Vec<Findi
                 rule: rule.name,
                 reason: "needs the states of the diodes, which this run does not look for".into(),
             }),
-            (Check::Reading | Check::Notes | Check::States(_), _) => {}
+            (Check::Time(_), _) if swing.is_none() => skipped.push(Skipped {
+                rule: rule.name,
+                reason: "needs what happens over time, which this run does not follow".into(),
+            }),
+            (Check::Reading | Check::Notes | Check::States(_) | Check::Time(_), _) => {}
         }
     }
     let mut findings = told.clone();
     if let Some(states) = operating {
         let evidence = evidence.with_told(told);
         for rule in super::super::all() {
-            if let Check::States(check) = rule.check {
-                findings.extend(check(&evidence, states));
+            match (&rule.check, swing) {
+                (Check::States(check), _) => findings.extend(check(&evidence, states)),
+                (Check::Time(check), Some(swing)) => findings.extend(check(&evidence, states, swing)),
+                _ => {}
             }
         }
     }

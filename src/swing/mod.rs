@@ -1,0 +1,10 @@
+//! How far currents and voltages move, over the conditions and over time: the circuit as equations of time, its
+//! states step by step, the periodic state, and what each diode and node shows in it. The mathematics of a step is
+//! `complementarity`'s; judging is `rules`'s.
+
+mod conditions;
+mod follow;
+mod result;
+
+pub use follow::follow;
+pub use result::{DiodeSwing, Effort, Level, NodeSwing, OverConditions, OverTime, Swing, Wave};
