@@ -22,14 +22,23 @@ impl Dd {
         self.round().abs()
     }
 
+    /// Multiplied by a single number.
+    pub(super) fn times(self, factor: f64) -> Dd {
+        let product = two_product(self.hi, factor);
+        if !product.hi.is_finite() {
+            return product.hi.into();
+        }
+        two_sum(product.hi, product.lo + self.lo * factor)
+    }
+
     /// Divided by a single number, to about 1e-31 relative.
     pub(super) fn over(self, divisor: f64) -> Dd {
         let first = self.hi / divisor;
         if !first.is_finite() {
             return first.into();
         }
-        let (p, e) = two_product(first, divisor);
-        let rest = ((self.hi - p) - e + self.lo) / divisor;
+        let back = two_product(first, divisor);
+        let rest = ((self.hi - back.hi) - back.lo + self.lo) / divisor;
         two_sum(first, rest)
     }
 }
@@ -56,10 +65,10 @@ fn split(a: f64) -> (f64, f64) {
     (head, a - head)
 }
 
-fn two_product(a: f64, b: f64) -> (f64, f64) {
-    let p = a * b;
+fn two_product(a: f64, b: f64) -> Dd {
+    let hi = a * b;
     let ((ah, al), (bh, bl)) = (split(a), split(b));
-    (p, ((ah * bh - p) + ah * bl + al * bh) + al * bl)
+    Dd { hi, lo: ((ah * bh - hi) + ah * bl + al * bh) + al * bl }
 }
 
 impl Add for Dd {

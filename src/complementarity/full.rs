@@ -1,10 +1,11 @@
 //! Every set of states of a part whose linear rest has no answer of its own: each combination is solved whole. For
 //! small parts only; what even then is not determined is said to be so.
 
-use super::dense::Dense;
-use super::network::{Junction, Law, Network};
+use super::double_double::Dd;
+use super::equations::{Entry, Equations};
+use super::linear;
+use super::network::Junction;
 use super::outcome::Place;
-use super::ports::solved;
 use nalgebra::{DMatrix, DVector};
 
 /// Work spent at most, in multiplications.
@@ -17,18 +18,11 @@ pub(super) struct Whole {
 }
 
 /// All consistent sets; `None` where there are too many combinations or one of them is not determined.
-pub(super) fn enumerate(network: &Network, dense: &Dense<'_>) -> Option<Vec<Whole>> {
-    let laws: Vec<Junction> = dense
-        .junctions
-        .iter()
-        .filter_map(|&n| match network.branches[n as usize].law {
-            Law::Junction(j) => Some(j),
-            _ => None,
-        })
-        .collect();
+pub(super) fn enumerate(equations: &Equations<'_>) -> Option<Vec<Whole>> {
+    let laws: Vec<Junction> = equations.bundles.iter().map(|b| b.law).collect();
     let choices = |k: usize| if laws[k].reverse.is_some() { 3u64 } else { 2 };
     let all = (0..laws.len()).fold(1u64, |n, k| n.saturating_mul(choices(k)));
-    let size = (dense.rhs.len() + laws.len()) as u64;
+    let size = (equations.rhs.len() + laws.len()) as u64;
     if all.saturating_mul(size.pow(3)) > WORK {
         return None;
     }
@@ -40,15 +34,15 @@ pub(super) fn enumerate(network: &Network, dense: &Dense<'_>) -> Option<Vec<Whol
             places.push([Place::Blocking, Place::Conducting, Place::Breakdown][(rest % choices(k)) as usize]);
             rest /= choices(k);
         }
-        let (matrix, rhs) = system(dense, &laws, &places);
-        match solved(&matrix, &DMatrix::from_column_slice(rhs.len(), 1, rhs.as_slice())) {
+        let (entries, rhs) = system(equations, &places);
+        match linear::refined(rhs.len(), &entries, &rhs) {
             Some(x) => {
-                let x: Vec<f64> = x.iter().copied().collect();
-                if holds(dense, &laws, &places, &x) && !found.iter().any(|other| same(&other.x, &x)) {
+                let x: Vec<f64> = x.into_iter().map(Dd::round).collect();
+                if holds(equations, &laws, &places, &x) && !found.iter().any(|other| same(&other.x, &x)) {
                     found.push(Whole { x, places });
                 }
             }
-            None if contradicts(&matrix, &rhs) => {}
+            None if contradicts(&linear::dense(rhs.len(), &entries), &DVector::from_vec(rhs)) => {}
             None => return None,
         }
     }
@@ -56,30 +50,34 @@ pub(super) fn enumerate(network: &Network, dense: &Dense<'_>) -> Option<Vec<Whol
 }
 
 /// The part's equations, then the law of each junction in its place.
-fn system(dense: &Dense<'_>, laws: &[Junction], places: &[Place]) -> (DMatrix<f64>, DVector<f64>) {
-    let (size, count) = (dense.rhs.len(), laws.len());
-    let mut matrix = DMatrix::zeros(size + count, size + count);
-    matrix.view_mut((0, 0), (size, size)).copy_from(&dense.matrix);
-    matrix.view_mut((0, size), (size, count)).copy_from(&dense.ports);
-    let mut rhs = DVector::zeros(size + count);
-    rhs.rows_mut(0, size).copy_from_slice(&dense.rhs);
-    for (k, (law, place)) in laws.iter().zip(places).enumerate() {
+fn system(equations: &Equations<'_>, places: &[Place]) -> (Vec<Entry>, Vec<f64>) {
+    let size = equations.rhs.len();
+    let mut entries = equations.matrix.clone();
+    entries.extend(equations.ports.iter().map(|&(row, port, factor)| (row, size + port, factor)));
+    let mut rhs = equations.rhs.clone();
+    for (k, (bundle, place)) in equations.bundles.iter().zip(places).enumerate() {
+        let row = size + k;
         let level = match place {
-            Place::Conducting => law.forward.value,
-            Place::Breakdown => -law.reverse.map_or(0.0, |r| r.value),
+            Place::Conducting => bundle.law.forward.value,
+            Place::Breakdown => -bundle.law.reverse.map_or(0.0, |r| r.value),
             _ => {
-                matrix[(size + k, size + k)] = 1.0;
+                entries.push((row, row, 1.0));
+                rhs.push(0.0);
                 continue;
             }
         };
-        let (row, constant) = dense.voltage_row(dense.junctions[k]);
-        for (x, factor) in row {
-            matrix[(size + k, x)] += factor;
-        }
-        matrix[(size + k, size + k)] -= law.series;
-        rhs[size + k] = level - constant;
+        let (terms, constant) = equations.voltage_row(bundle.members[0]);
+        entries.extend(terms.into_iter().map(|(x, factor)| (row, x, factor)));
+        entries.push((row, row, -bundle.law.series));
+        rhs.push(level - constant);
     }
-    (matrix, rhs)
+    (entries, rhs)
+}
+
+/// Unknowns, then junction currents, of junctions in these places, with twice the digits; `None` without full rank.
+pub(super) fn exactly(equations: &Equations<'_>, places: &[Place]) -> Option<Vec<Dd>> {
+    let (entries, rhs) = system(equations, places);
+    linear::refined(rhs.len(), &entries, &rhs)
 }
 
 /// Whether no solution exists at all, by least squares on scaled rows.
@@ -97,12 +95,12 @@ fn contradicts(matrix: &DMatrix<f64>, rhs: &DVector<f64>) -> bool {
     (&scaled * x - &right).amax() > 1e-7 * right.amax()
 }
 
-fn holds(dense: &Dense<'_>, laws: &[Junction], places: &[Place], x: &[f64]) -> bool {
-    let size = dense.rhs.len();
-    let volts = x[..dense.nodes.len()].iter().fold(1e-12, |m: f64, v| m.max(v.abs()));
-    let amperes = x[dense.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
+fn holds(equations: &Equations<'_>, laws: &[Junction], places: &[Place], x: &[f64]) -> bool {
+    let size = equations.rhs.len();
+    let volts = x[..equations.nodes.len()].iter().fold(1e-12, |m: f64, v| m.max(v.abs()));
+    let amperes = x[equations.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
     laws.iter().zip(places).enumerate().all(|(k, (law, place))| {
-        let (row, constant) = dense.voltage_row(dense.junctions[k]);
+        let (row, constant) = equations.voltage_row(equations.bundles[k].members[0]);
         let v = row.iter().map(|&(n, c)| c * x[n]).sum::<f64>() + constant;
         let inner = v - law.series * x[size + k];
         let room = 1e-10 * (volts + constant.abs());

@@ -2,13 +2,16 @@
 //! none: the linear rest is reduced to what its junctions see, and every set of states is tried where there are
 //! few enough.
 
-use super::dense::Dense;
+use super::bundle::Bundle;
+use super::double_double::Dd;
+use super::equations::Equations;
 use super::network::{Law, Network};
 use super::outcome::{Interval, Place, Quantity, Reason, Solution, Verdict, View};
 use super::parts::Piece;
 use super::ports::{Ports, Trial};
 use super::rails::Rails;
 use super::solve::Answer;
+use rustc_hash::FxHashSet;
 
 /// One consistent set of a part.
 pub(super) struct Set {
@@ -55,8 +58,35 @@ impl Set {
     }
 }
 
-/// Unknowns at most: the elimination is dense.
-const MOST_UNKNOWNS: usize = 1500;
+impl Set {
+    /// Shares out what the first of a bundle carries for all of them.
+    fn share(&mut self, bundle: &Bundle, place: Place) {
+        let leader = bundle.members[0];
+        let carriers = bundle.carriers(place);
+        for &n in &bundle.members {
+            self.places.push((n, if carriers.contains(&n) { place } else { Place::Blocking }));
+        }
+        if carriers.is_empty() || carriers == [leader] {
+            return;
+        }
+        let whole = self.currents.iter().find(|(n, _)| *n == leader).map_or(0.0, |&(_, i)| i);
+        let open = self.ranges.iter().find(|(n, _)| *n == leader).map(|&(_, range)| range);
+        self.ranges.retain(|(n, _)| *n != leader);
+        let share = whole / carriers.len() as f64;
+        for (n, i) in self.currents.iter_mut().filter(|(n, _)| bundle.members.contains(n)) {
+            *i = if carriers.contains(n) { share } else { 0.0 };
+        }
+        let most = open.unwrap_or(Interval { low: whole, high: whole });
+        let range = Interval { low: most.low.min(0.0), high: most.high.max(0.0) };
+        match &carriers[..] {
+            [one] => self.ranges.extend(open.map(|range| (*one, range))),
+            _ => self.ranges.extend(carriers.iter().map(|&n| (n, range))),
+        }
+    }
+}
+
+/// Unknowns at most.
+const MOST_UNKNOWNS: usize = 200_000;
 
 fn fits(rails: &Rails, piece: &Piece) -> bool {
     let nodes: usize = piece.groups.iter().map(|&g| rails.nodes_of(g).len()).sum();
@@ -71,16 +101,16 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
         answer.reasons.push(Reason::Dependent { text });
         return;
     }
-    let dense = Dense::new(network, rails, &answer.piece);
+    let equations = Equations::new(network, rails, &answer.piece);
     answer.solves += 1;
-    if !dense.complete() {
+    if !equations.complete() {
         answer.verdict = Verdict::Unverified;
         let text = "a controlled source listens to a current that the laws leave open".into();
         answer.reasons.push(Reason::Dependent { text });
         return;
     }
-    let Some(ports) = Ports::new(network, &dense) else {
-        whole(network, &dense, answer);
+    let Some(ports) = Ports::new(network, &equations) else {
+        whole(network, &equations, answer);
         return;
     };
     let (trials, complete) = ports.consistent();
@@ -100,12 +130,12 @@ pub(super) fn solve(network: &Network, rails: &Rails, answer: &mut Answer) {
     }
     let sets = trials.iter().take(super::assemble::MOST_SETS);
     answer.found =
-        sets.map(|t| super::solve::Found::General(set_of_trial(network, &dense, &ports, t))).collect();
+        sets.map(|t| super::solve::Found::General(set_of_trial(network, &equations, &ports, t))).collect();
 }
 
 /// A part whose linear rest has no answer of its own, every combination of states solved whole.
-fn whole(network: &Network, dense: &Dense<'_>, answer: &mut Answer) {
-    let Some(found) = super::full::enumerate(network, dense) else {
+fn whole(network: &Network, equations: &Equations<'_>, answer: &mut Answer) {
+    let Some(found) = super::full::enumerate(equations) else {
         answer.verdict = Verdict::Unverified;
         let text = "the controlled sources leave the circuit without a unique answer".into();
         answer.reasons.push(Reason::Dependent { text });
@@ -122,66 +152,90 @@ fn whole(network: &Network, dense: &Dense<'_>, answer: &mut Answer) {
     }
     answer.truncated = found.len() > super::assemble::MOST_SETS;
     for one in found.iter().take(super::assemble::MOST_SETS) {
-        let currents = one.x[dense.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
-        let places = one.places.iter().zip(&dense.junctions).map(|(&p, &n)| (n, p)).collect();
-        let set = set(network, dense, &one.x, 1e-13 * currents, places, &[]);
+        let currents = one.x[equations.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
+        let x: Vec<Dd> = one.x.iter().map(|&x| x.into()).collect();
+        let set = set(network, equations, &x, 1e-13 * currents, &one.places, &[]);
         answer.found.push(super::solve::Found::General(set));
     }
 }
 
-fn set_of_trial(network: &Network, dense: &Dense<'_>, ports: &Ports, trial: &Trial) -> Set {
-    let x = ports.expand(&trial.currents);
+fn set_of_trial(network: &Network, equations: &Equations<'_>, ports: &Ports, trial: &Trial) -> Set {
+    let exact = trial.open.is_empty().then(|| super::full::exactly(equations, &trial.places)).flatten();
+    let (x, rounding) = match exact {
+        Some(x) => {
+            let largest = x[equations.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
+            (x, EXACT * largest)
+        }
+        None => {
+            let x = ports.expand(&trial.currents).into_iter().map(Dd::from).collect();
+            (x, ports.rounding(&trial.currents))
+        }
+    };
     let moved: Vec<(Vec<f64>, Interval)> =
         trial.open.iter().map(|(direction, room)| (ports.expand_change(direction), *room)).collect();
-    let places = trial.places.iter().zip(&ports.junctions).map(|(&p, &n)| (n, p)).collect();
-    set(network, dense, &x, ports.rounding(&trial.currents), places, &moved)
+    set(network, equations, &x, rounding, &trial.places, &moved)
 }
 
 /// A point of a part, and how it may move, in the numbers of the network.
 fn set(
     network: &Network,
-    dense: &Dense<'_>,
-    x: &[f64],
+    equations: &Equations<'_>,
+    x: &[Dd],
     rounding: f64,
-    places: Vec<(u32, Place)>,
+    places: &[Place],
     moved: &[(Vec<f64>, Interval)],
 ) -> Set {
     let mut set = Set {
-        potentials: dense.nodes.iter().map(|&n| (n, dense.potential(x, n))).collect(),
+        potentials: equations.nodes.iter().map(|&n| (n, equations.potential(x, n))).collect(),
         currents: Vec::new(),
         voltages: Vec::new(),
-        places,
-        rooms: dense.floating.iter().map(|&n| (n, ANYWHERE)).collect(),
+        places: Vec::new(),
+        rooms: equations.floating.iter().map(|&n| (n, ANYWHERE)).collect(),
         ranges: Vec::new(),
     };
+    let floating: FxHashSet<u32> = equations.floating.iter().copied().collect();
     for (change, room) in moved {
-        for &n in dense.nodes.iter().filter(|n| !dense.floating.contains(n)) {
-            if let Some(interval) = scaled(dense.potential_change(change, n), *room) {
+        for &n in equations.nodes.iter().filter(|n| !floating.contains(n)) {
+            if let Some(interval) = scaled(equations.potential_change(change, n), *room) {
                 set.rooms.push((n, interval));
             }
         }
     }
-    for &n in &dense.branches {
+    for &n in &equations.branches {
         let b = &network.branches[n as usize];
-        let (v, i) = (dense.voltage(x, b.from, b.to), dense.current(network, x, n));
+        let (v, i) = (equations.voltage(x, b.from, b.to), equations.current(network, x, n));
         let i = if i.abs() <= rounding && !matches!(b.law, Law::Current(_)) { 0.0 } else { i };
         if !matches!(b.law, Law::Voltage(_) | Law::Short) {
             set.currents.push((n, i));
         }
         let mut voltage = Quantity::Known(v);
         for (change, room) in moved {
-            let slope = dense.voltage_change(change, b.from, b.to);
+            let slope = equations.voltage_change(change, b.from, b.to);
             if let Some(by) = scaled(slope, *room) {
                 voltage = Quantity::Open(Interval { low: v + by.low, high: v + by.high });
             }
-            if let Some(by) = scaled(dense.current_change(network, change, n), *room) {
-                set.ranges.push((n, Interval { low: i + by.low, high: i + by.high }));
+            if let Some(by) = scaled(equations.current_change(network, change, n), *room) {
+                set.ranges.push((n, snapped(Interval { low: i + by.low, high: i + by.high })));
             }
         }
         set.voltages.push((n, voltage));
     }
+    for (bundle, &place) in equations.bundles.iter().zip(places) {
+        set.share(bundle, place);
+    }
     set
 }
+
+/// Ends that are zero but for rounding are zero.
+fn snapped(range: Interval) -> Interval {
+    let size =
+        [range.low, range.high].into_iter().filter(|x| x.is_finite()).fold(0.0, |m: f64, x| m.max(x.abs()));
+    let snap = |x: f64| if x.abs() <= 1e-11 * size { 0.0 } else { x };
+    Interval { low: snap(range.low), high: snap(range.high) }
+}
+
+/// Share of the largest current that is rounding where a solution has twice the digits.
+const EXACT: f64 = 1e-22;
 
 const ANYWHERE: Interval = Interval { low: f64::NEG_INFINITY, high: f64::INFINITY };
 
@@ -205,13 +259,27 @@ pub(super) fn views(
     if !fits(rails, piece) {
         return;
     }
-    let dense = Dense::new(network, rails, piece);
-    let Some(ports) = Ports::new(network, &dense) else { return };
-    let places: Vec<Place> = ports.junctions.iter().map(|&n| solution.places[n as usize]).collect();
-    for (k, &n) in ports.junctions.iter().enumerate().filter(|(_, n)| wanted[**n as usize]) {
-        let (i, v) = (solution.currents[n as usize], solution.voltages[n as usize]);
-        if i.known().is_some() && v.known().is_some() {
-            views[n as usize] = ports.view(k, &places);
+    let equations = Equations::new(network, rails, piece);
+    let Some(ports) = Ports::new(network, &equations) else { return };
+    let places: Vec<Place> = equations.bundles.iter().map(|b| together(b, solution)).collect();
+    let seen = ports.views(&places);
+    for ((bundle, &place), view) in equations.bundles.iter().zip(&places).zip(seen) {
+        let carriers = bundle.carriers(place);
+        for &n in bundle.members.iter().filter(|n| wanted[**n as usize]) {
+            let (i, v) = (solution.currents[n as usize].known(), solution.voltages[n as usize].known());
+            let (Some(_), Some(v)) = (i, v) else { continue };
+            views[n as usize] = if carriers.is_empty() || carriers == [n] {
+                view
+            } else {
+                // another one beside it holds its voltage
+                Some(View { open_circuit: v, resistance: 0.0 })
+            };
         }
     }
+}
+
+/// The place of a bundle: that of a member that carries current.
+fn together(bundle: &Bundle, solution: &Solution) -> Place {
+    let places = bundle.members.iter().map(|&n| solution.places[n as usize]);
+    places.into_iter().find(|&p| p != Place::Blocking).unwrap_or(Place::Blocking)
 }

@@ -2,9 +2,12 @@
 //! its solutions. No circuits, names, units or spans here; `operating` translates.
 
 mod assemble;
+mod bundle;
+mod combinations;
+mod continuum;
 mod decimal;
-mod dense;
 mod double_double;
+mod equations;
 mod exact;
 mod existence;
 mod flow;
@@ -14,6 +17,7 @@ mod general;
 mod idle;
 mod interior;
 mod laplacian;
+mod linear;
 mod mesh;
 mod network;
 mod openness;

@@ -180,6 +180,9 @@ fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
     for (&group, &gross) in solve.forest.group.iter().zip(&solve.gross) {
         whole[group as usize] = f64::max(whole[group as usize], gross);
     }
+    let conducts =
+        solve.part.resistors.iter().map(|r| r.ohms).chain(solve.part.diodes.iter().map(|d| d.series));
+    let conducts: f64 = conducts.filter(|&r| r > 0.0).map(|r| 1.0 / r).sum();
     for node in 0..solve.part.nodes as u32 {
         let tie = solve.forest.up[node as usize];
         if tie == NONE {
@@ -188,11 +191,11 @@ fn nothing_of(solve: &mut Solve<'_>, currents: &[f64]) -> Vec<f64> {
         let diode = solve.tie_diode[tie as usize] as usize;
         let i = currents[diode].abs();
         let coarse = NOTHING * whole[solve.forest.group[node as usize] as usize];
-        small[diode] = if i > coarse || i == 0.0 {
+        let d = &solve.part.diodes[diode];
+        let room = NOTHING * solve.scale(d);
+        small[diode] = if i > coarse.max(room * conducts) || i == 0.0 {
             0.0
         } else {
-            let d = &solve.part.diodes[diode];
-            let room = NOTHING * solve.scale(d);
             (room * solve.response(node)).max(1e-15 * pushed).max(1e-12 * coarse)
         };
     }

@@ -1,11 +1,12 @@
 //! The linear equations of a part with controlled laws: unknown potentials and currents, the laws as rows. Currents
-//! of junctions are left open: they are what `ports` solves for.
+//! of junctions are left open: they are what `ports` solves for. Nothing is solved here.
 
+use super::bundle::{self, Bundle};
+use super::double_double::Dd;
 use super::network::{Control, Law, Network};
 use super::parts::Piece;
 use super::rails::{Rails, fixed};
-use nalgebra::DMatrix;
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 /// Where a branch's current is found.
 #[derive(Debug, Clone)]
@@ -14,7 +15,7 @@ pub(super) enum Spot {
     Known(f64),
     /// An unknown of the equations.
     Unknown(usize),
-    /// The current of a junction, by its place among the junctions.
+    /// The current of a bundle of junctions, by its place among them.
     Port(usize),
     /// By Ohm's law from potentials.
     Ohm(f64),
@@ -24,16 +25,19 @@ pub(super) enum Spot {
     Elsewhere,
 }
 
+/// A number in a row and a column; those of one place add up.
+pub(super) type Entry = (usize, usize, f64);
+
 /// Equations `matrix · x + ports · i = rhs`.
-pub(super) struct Dense<'a> {
+pub(super) struct Equations<'a> {
     rails: &'a Rails,
     pub(super) nodes: Vec<u32>,
     pub(super) branches: Vec<u32>,
-    pub(super) junctions: Vec<u32>,
+    pub(super) bundles: Vec<Bundle>,
     /// Nodes whose potential nothing fixes.
     pub(super) floating: Vec<u32>,
-    pub(super) matrix: DMatrix<f64>,
-    pub(super) ports: DMatrix<f64>,
+    pub(super) matrix: Vec<Entry>,
+    pub(super) ports: Vec<Entry>,
     pub(super) rhs: Vec<f64>,
     /// Unknown of each node; boundaries have their potential from the rails.
     place: FxHashMap<u32, usize>,
@@ -57,16 +61,16 @@ impl Form {
     }
 }
 
-impl<'a> Dense<'a> {
+impl<'a> Equations<'a> {
     pub(super) fn new(network: &Network, rails: &'a Rails, piece: &Piece) -> Self {
         let nodes: Vec<u32> = piece.groups.iter().flat_map(|&g| rails.nodes_of(g)).copied().collect();
         let place = nodes.iter().enumerate().map(|(k, &n)| (n, k)).collect();
-        let mut dense = Dense {
+        let mut equations = Equations {
             branches: piece.branches.clone(),
-            junctions: Vec::new(),
+            bundles: Vec::new(),
             floating: Vec::new(),
-            matrix: DMatrix::zeros(0, 0),
-            ports: DMatrix::zeros(0, 0),
+            matrix: Vec::new(),
+            ports: Vec::new(),
             rhs: Vec::new(),
             place,
             rails,
@@ -74,41 +78,43 @@ impl<'a> Dense<'a> {
             ends: Default::default(),
             nodes,
         };
-        dense.take_stock(network, rails);
-        let pins = dense.islands(network);
-        dense.fill(network, rails, &pins);
-        dense
+        equations.take_stock(network, rails);
+        let pins = equations.islands(network);
+        equations.fill(network, rails, &pins);
+        equations
     }
 
     /// Says of each branch where its current is found.
     fn take_stock(&mut self, network: &Network, rails: &Rails) {
         let mut unknown = self.nodes.len();
         // a source that pushes current in may be counted with another part
-        for &n in &rails.pushing {
+        let own: FxHashSet<u32> = self.branches.iter().copied().collect();
+        let foreign = rails.pushing.iter().copied().filter(|n| !own.contains(n));
+        self.branches.extend(foreign.filter(|&n| {
             let b = &network.branches[n as usize];
-            let touches = self.place.contains_key(&b.from) || self.place.contains_key(&b.to);
-            if touches && !self.branches.contains(&n) {
-                self.branches.push(n);
+            self.place.contains_key(&b.from) || self.place.contains_key(&b.to)
+        }));
+        self.bundles = bundle::bundles(network, &self.branches);
+        for (k, bundle) in self.bundles.iter().enumerate() {
+            for (member, &n) in bundle.members.iter().enumerate() {
+                // the first carries the current of all of them until it is shared out
+                self.spots.insert(n, if member == 0 { Spot::Port(k) } else { Spot::Known(0.0) });
             }
         }
-        for &n in &self.branches.clone() {
+        for &n in &self.branches {
             let b = &network.branches[n as usize];
-            let mut next = || {
-                unknown += 1;
-                Spot::Unknown(unknown - 1)
-            };
+            self.ends.insert(n, (b.from, b.to));
             let spot = match b.law {
+                Law::Junction(_) => continue,
                 Law::Resistance(r) => Spot::Ohm(r),
                 Law::Current(level) => Spot::Known(level.value),
-                Law::Junction(_) => {
-                    self.junctions.push(n);
-                    Spot::Port(self.junctions.len() - 1)
-                }
                 Law::Unknown => Spot::Known(f64::NAN),
-                _ => next(),
+                _ => {
+                    unknown += 1;
+                    Spot::Unknown(unknown - 1)
+                }
             };
             self.spots.insert(n, spot);
-            self.ends.insert(n, (b.from, b.to));
         }
         for &n in &self.branches.clone() {
             if let Some(Control::Current(c)) = control(network.branches[n as usize].law)
@@ -148,9 +154,6 @@ impl<'a> Dense<'a> {
     }
 
     fn fill(&mut self, network: &Network, rails: &Rails, pins: &[usize]) {
-        let size = self.rhs.len();
-        self.matrix = DMatrix::zeros(size, size);
-        self.ports = DMatrix::zeros(size, self.junctions.len());
         for &n in &self.branches.clone() {
             let b = &network.branches[n as usize];
             if fixed(b.law).is_some() && rails.forest.group[b.from as usize] == 0 {
@@ -169,20 +172,21 @@ impl<'a> Dense<'a> {
                 self.add_row(row, &law, 1.0);
             }
         }
+        let pinned: FxHashSet<usize> = pins.iter().copied().collect();
+        self.matrix.retain(|(row, ..)| !pinned.contains(row));
+        self.ports.retain(|(row, ..)| !pinned.contains(row));
         for &k in pins {
-            self.matrix.row_mut(k).fill(0.0);
-            self.ports.row_mut(k).fill(0.0);
             self.rhs[k] = 0.0;
-            self.matrix[(k, k)] = 1.0;
+            self.matrix.push((k, k, 1.0));
         }
     }
 
     fn add_row(&mut self, row: usize, form: &Form, factor: f64) {
         for &(n, c) in &form.x {
-            self.matrix[(row, n)] += c * factor;
+            self.matrix.push((row, n, c * factor));
         }
         for &(n, c) in &form.port {
-            self.ports[(row, n)] += c * factor;
+            self.ports.push((row, n, c * factor));
         }
         self.rhs[row] -= form.constant * factor;
     }
@@ -256,40 +260,51 @@ impl<'a> Dense<'a> {
 
     /// Whether every law could be written down.
     pub(super) fn complete(&self) -> bool {
-        self.rhs.iter().all(|v| v.is_finite()) && self.matrix.iter().all(|v| v.is_finite())
+        self.rhs.iter().all(|v| v.is_finite()) && self.matrix.iter().all(|(.., v)| v.is_finite())
     }
 
     /// Potential of a node at `x` (unknowns, then junction currents).
-    pub(super) fn potential(&self, x: &[f64], node: u32) -> f64 {
-        self.value(&self.form_of_node(node), x, 1.0)
+    pub(super) fn potential(&self, x: &[Dd], node: u32) -> f64 {
+        self.value(&self.form_of_node(node), x).round()
     }
 
     pub(super) fn potential_change(&self, change: &[f64], node: u32) -> f64 {
-        self.value(&self.form_of_node(node), change, 0.0)
+        self.change(&self.form_of_node(node), change)
     }
 
     /// Potential of `from` minus that of `to`; not a number where one of them belongs to another part.
-    pub(super) fn voltage(&self, x: &[f64], from: u32, to: u32) -> f64 {
-        self.value(&self.form_of_voltage(from, to), x, 1.0)
+    pub(super) fn voltage(&self, x: &[Dd], from: u32, to: u32) -> f64 {
+        self.value(&self.form_of_voltage(from, to), x).round()
     }
 
     pub(super) fn voltage_change(&self, change: &[f64], from: u32, to: u32) -> f64 {
-        self.value(&self.form_of_voltage(from, to), change, 0.0)
+        self.change(&self.form_of_voltage(from, to), change)
     }
 
-    pub(super) fn current(&self, network: &Network, x: &[f64], n: u32) -> f64 {
-        self.value(&self.form_of_current(network, n), x, 1.0)
+    pub(super) fn current(&self, network: &Network, x: &[Dd], n: u32) -> f64 {
+        // a difference of potentials is taken before it is divided, so that nothing of it is lost
+        if let (Some(Spot::Ohm(r)), Some(&(from, to))) = (self.spots.get(&n), self.ends.get(&n)) {
+            return self.value(&self.form_of_voltage(from, to), x).over(*r).round();
+        }
+        self.value(&self.form_of_current(network, n), x).round()
     }
 
     pub(super) fn current_change(&self, network: &Network, change: &[f64], n: u32) -> f64 {
-        self.value(&self.form_of_current(network, n), change, 0.0)
+        self.change(&self.form_of_current(network, n), change)
     }
 
-    fn value(&self, form: &Form, x: &[f64], constant: f64) -> f64 {
-        let size = self.rhs.len();
-        let unknowns: f64 = form.x.iter().map(|&(k, c)| c * x[k]).sum();
-        let ports: f64 = form.port.iter().map(|&(k, c)| c * x[size + k]).sum();
-        unknowns + ports + if constant == 0.0 { 0.0 } else { form.constant }
+    fn value(&self, form: &Form, x: &[Dd]) -> Dd {
+        let ports = form.port.iter().map(|&(k, c)| (self.rhs.len() + k, c));
+        let mut sum = Dd::from(form.constant);
+        for (k, c) in form.x.iter().copied().chain(ports) {
+            sum += x[k].times(c);
+        }
+        sum
+    }
+
+    fn change(&self, form: &Form, by: &[f64]) -> f64 {
+        let ports = form.port.iter().map(|&(k, c)| (self.rhs.len() + k, c));
+        form.x.iter().copied().chain(ports).map(|(k, c)| c * by[k]).sum()
     }
 
     /// Nodes between which a junction stands, as a row over the unknowns and a constant.
