@@ -60,11 +60,11 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
         reasoner: Reasoner::default(),
     };
     run.first_pass(&mut list);
-    let left_to_time = left_to_time(circuit, &plan);
+    let (left_to_time, nodes_left_to_time) = left_to_time(circuit, &plan);
     let cases = (0..plan.conditions.len()).map(|n| run.case(&list, n)).collect();
     let reasonings = run.reasoner.finish();
     let why = run.why.map(|element| Why { element, reasonings });
-    (Operating { cases, left_to_time, why }, findings)
+    (Operating { cases, left_to_time, nodes_left_to_time, why }, findings)
 }
 
 /// The diode that `--why` asks about.

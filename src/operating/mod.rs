@@ -31,6 +31,8 @@ pub use result::{
     BranchResult, Case, Cause, DiodeResult, Drop, DropOrigin, ErrorBar, Flip, Knee, NodeResult, Operating,
     Reasoning, Refined, Residual, Solution, Trust, Unrefined, Why,
 };
+pub use speaker::against;
+pub(crate) use speaker::apart;
 
 pub use crate::circuit::State;
 pub use crate::complementarity::{Interval, Quantity, Verdict, View};

@@ -5,10 +5,10 @@ use super::condition::Plan;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use petgraph::unionfind::UnionFind;
 
-/// The diodes that are left to the time pass, in order.
-pub(crate) fn left_to_time(circuit: &Circuit, plan: &Plan) -> Vec<ElementId> {
+/// The diodes and the nodes that are left to the time pass, in order.
+pub(crate) fn left_to_time(circuit: &Circuit, plan: &Plan) -> (Vec<ElementId>, Vec<NodeId>) {
     if plan.moving.is_empty() {
-        return Vec::new();
+        return (Vec::new(), Vec::new());
     }
     let held = held_nodes(circuit, plan);
     let mut groups = UnionFind::<u32>::new(circuit.nodes.len().max(1));
@@ -36,14 +36,14 @@ pub(crate) fn left_to_time(circuit: &Circuit, plan: &Plan) -> Vec<ElementId> {
             moved[group] |= touches_moving;
         }
     }
-    let is_left = |&id: &ElementId| {
-        circuit.pins(id).iter().filter(|p| free(p.node)).any(|p| {
-            let group = groups.find(p.node.0) as usize;
-            remembers[group] && moved[group]
-        })
+    let is_left_node = |&node: &NodeId| {
+        let group = groups.find(node.0) as usize;
+        free(node) && remembers[group] && moved[group]
     };
+    let is_left = |&id: &ElementId| circuit.pins(id).iter().any(|p| is_left_node(&p.node));
+    let nodes = (0..circuit.nodes.len()).map(NodeId::new).filter(is_left_node).collect();
     let diodes = circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
-    diodes.map(|(id, _)| id).filter(is_left).collect()
+    (diodes.map(|(id, _)| id).filter(is_left).collect(), nodes)
 }
 
 fn join(groups: &mut UnionFind<u32>, nodes: impl Iterator<Item = NodeId>) {

@@ -11,6 +11,8 @@ pub struct Operating {
     /// Diodes in parts that a moving source reaches through a capacitor, an inductor or a coupling, in order:
     /// the operating point says nothing final about them, so rules of the kind "never" leave them out.
     pub left_to_time: Vec<ElementId>,
+    /// Nodes in such parts, in order.
+    pub nodes_left_to_time: Vec<NodeId>,
     /// The reasoning about the diode that `--why` asks about.
     pub why: Option<Why>,
 }

@@ -11,6 +11,14 @@ pub(crate) fn sentences(circuit: &Circuit, case: &Case, diode: &DiodeResult) -> 
     Speaker { circuit, case, diode }.sentences()
 }
 
+/// One line of the reasoning: why the diode is not in the state `expected`, or where it is, why that holds.
+pub fn against(circuit: &Circuit, case: &Case, diode: &DiodeResult, expected: State) -> String {
+    let speaker = Speaker { circuit, case, diode };
+    let line = speaker.against(expected);
+    // the line stands alone, so it must say of whom it speaks
+    line.replacen("Assume it ", &format!("Assume {} ", speaker.name()), 1)
+}
+
 /// A clause as a sentence.
 pub(crate) fn sentence(clause: &str) -> String {
     let mut letters = clause.chars();
@@ -68,6 +76,27 @@ impl Speaker<'_> {
             (state, _) => self.without_view(state),
         });
         all
+    }
+
+    fn against(&self, expected: State) -> String {
+        let diode = self.diode;
+        let lines = match (diode.state, diode.view) {
+            (State::Conducting | State::Breakdown, Some(view)) if view.resistance >= 0.0 => {
+                self.carries(view, diode.state == State::Conducting)
+            }
+            (State::Blocking, Some(view)) if view.resistance >= 0.0 => self.blocks(view),
+            _ => self.sentences().into_iter().skip(1).collect(),
+        };
+        if expected == State::Breakdown && diode.breakdown.is_none() {
+            return format!("{} has no breakdown voltage: no BV in its model.", self.name());
+        }
+        let verb = match expected {
+            State::Conducting => " conducts: ",
+            State::Breakdown => " breaks down: ",
+            _ => " blocks: ",
+        };
+        let fitting = lines.iter().find(|line| line.starts_with("Assume ") && line.contains(verb));
+        fitting.or(lines.first()).cloned().unwrap_or_default()
     }
 
     /// Level in the direction that is examined: the drop, or minus the breakdown voltage.

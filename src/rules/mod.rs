@@ -4,8 +4,9 @@
 
 mod support;
 
+use support::{About, Claim, Found, LooseEnd, Outcome, claims};
 pub use support::{Check, Evidence, GROUPS, Rule, Skipped, accept, is_hopeless, run};
-use support::{LooseEnd, Shown, causes, count, in_cases, is_told, list};
+use support::{Shown, causes, count, in_cases, is_told, list};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));
 

@@ -2,5 +2,6 @@
 
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
 
+mod expectations;
 mod rule_examples;
 mod wiring_facts;

@@ -59,7 +59,7 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
 fn shown(cases: Vec<Case>) -> String {
     let mut files = Memory::with("a.net", NETLIST);
     let mut analysis = analyse(&mut files, Path::new("a.net"), &Options::default()).unwrap();
-    analysis.operating = Some(Operating { cases, left_to_time: Vec::new(), why: None });
+    analysis.operating = Some(Operating { cases, ..Operating::default() });
     let mut page = Page::new(false);
     states(&mut page, &analysis);
     page.text().to_owned()

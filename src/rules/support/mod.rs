@@ -2,9 +2,12 @@
 
 mod accept;
 mod cases;
+mod condition;
 mod evidence;
+mod expect;
 mod instances;
 mod loose;
+mod met;
 mod rule;
 mod run;
 mod turn;
@@ -13,6 +16,7 @@ mod words;
 pub use accept::{about_note, accept};
 pub use cases::{Shown, causes, finding, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
+pub use expect::{About, Claim, Found, Outcome, claims};
 pub use loose::LooseEnd;
 pub use rule::{Check, GROUPS, Rule, Skipped};
 pub use run::run;
