@@ -50,9 +50,7 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     let (judged, skipped) = rules::run(&evidence, operating.as_ref(), swing.as_ref());
     let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
     findings.extend(judged);
-    let is_off = |rule: &str| options.levels.get(rule) == Some(&None);
-    finding::set_levels(&mut findings, &options.levels);
-    rules::accept(&evidence, &mut findings, |rule| !is_off(rule) && !skipped.iter().any(|s| s.rule == rule));
+    rules::accept(&evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));
     finding::set_levels(&mut findings, &options.levels);
     finding::sort(&mut findings);
     Ok(Analysis { sources, circuit, wiring, operating, swing, hopeless, findings, skipped })
