@@ -48,4 +48,6 @@ pub mod rules;
 
 pub mod analysis;
 
+pub mod review;
+
 pub mod report;

@@ -2,11 +2,13 @@
 //! columns from 1. Nothing here knows what a netlist is.
 
 mod decode;
+mod encode;
 mod loader;
 mod nearest;
 mod span;
 
 pub use decode::{Encoding, decode};
+pub use encode::{encode, original_offsets};
 pub use loader::{Disk, LoadProblem, Loader, Memory};
 pub use nearest::nearest;
 pub use span::{FileId, Position, SourceFile, Sources, Span};

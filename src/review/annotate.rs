@@ -1,0 +1,260 @@
+//! Puts marks behind the diodes of a file, and takes them away. Changes nothing else: the edits are made in the bytes
+//! that were read, whatever their encoding, line ends and blanks.
+
+use super::figures::agree;
+use super::mark::marks;
+use crate::analysis::Analysis;
+use crate::syntax::{Line, LineKind, Token, lines, tokens};
+use crate::text::{Encoding, FileId, Span, decode, encode, original_offsets};
+use std::collections::BTreeMap;
+use std::ops::Range;
+
+/// How a mark begins; white space follows.
+const SIGN: &str = ";@";
+
+/// One mark that is put, renewed or taken away.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Change {
+    /// Line in the file, from 1.
+    pub line: usize,
+    /// The element's name as written.
+    pub name: String,
+    /// What the mark says so far, without its `;@`.
+    pub old: Option<String>,
+    /// What it is to say; `None` where it goes.
+    pub new: Option<String>,
+    /// Bytes of the decoded text to replace, and by what.
+    range: Range<usize>,
+    replacement: String,
+}
+
+/// A file with its marks as they should be.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Annotated {
+    /// The whole file.
+    pub bytes: Vec<u8>,
+    /// What differs from the file as it was, in order.
+    pub changes: Vec<Change>,
+    /// Diode lines of this file.
+    pub marks: usize,
+    /// Diode lines of included files, which are not marked here, by file.
+    pub elsewhere: BTreeMap<String, usize>,
+}
+
+/// The root file of `analysis` with a mark behind every diode; `original` are the bytes it was read from. A mark that
+/// says the same, but for noise in the last digit, stays as it is; one behind anything but a diode goes.
+pub fn annotate(analysis: &Analysis, original: &[u8]) -> Annotated {
+    let root = FileId(0);
+    let mut wanted = BTreeMap::new();
+    let mut elsewhere = BTreeMap::new();
+    for (statement, words) in marks(analysis) {
+        if statement.file == root {
+            wanted.insert(statement.start, words);
+        } else {
+            *elsewhere.entry(analysis.sources.name(statement.file).to_owned()).or_insert(0) += 1;
+        }
+    }
+    let Some(file) = analysis.sources.get(root) else {
+        return Annotated { bytes: original.to_vec(), changes: Vec::new(), marks: 0, elsewhere };
+    };
+    let mut changes = changes(&file.text, &wanted);
+    for change in &mut changes {
+        change.line =
+            analysis.sources.positions(Span::new(root, change.range.start, change.range.end)).0.line;
+    }
+    let bytes = apply(original, file.encoding, &changes);
+    Annotated { bytes, changes, marks: wanted.len(), elsewhere }
+}
+
+/// The file without its marks.
+pub fn strip(original: &[u8]) -> Vec<u8> {
+    let (text, encoding) = decode(original);
+    apply(original, encoding, &changes(&text, &BTreeMap::new()))
+}
+
+/// Makes the edits in the bytes of the file.
+fn apply(original: &[u8], encoding: Encoding, changes: &[Change]) -> Vec<u8> {
+    let places: Vec<usize> = changes.iter().flat_map(|c| [c.range.start, c.range.end]).collect();
+    let offsets = original_offsets(original, encoding, &places);
+    let mut bytes = Vec::with_capacity(original.len() + 32 * changes.len());
+    let mut done = 0;
+    for (change, ends) in changes.iter().zip(offsets.as_chunks::<2>().0) {
+        bytes.extend_from_slice(original.get(done..ends[0]).unwrap_or_default());
+        bytes.extend(encode(&change.replacement, encoding));
+        done = ends[1];
+    }
+    bytes.extend_from_slice(original.get(done..).unwrap_or_default());
+    bytes
+}
+
+/// The edits of a text, in order. `wanted` holds the marks by the first byte of their statement.
+fn changes(text: &str, wanted: &BTreeMap<u32, String>) -> Vec<Change> {
+    let (mut changes, mut buffer) = (Vec::new(), Vec::new());
+    for line in lines(text, true).lines.iter().filter(|l| l.kind == LineKind::Element) {
+        // a statement that cannot be cut up has no end to put a mark at
+        if tokens(text, line.start, line.end, &mut buffer).is_ok() {
+            statement(text, line, &buffer, wanted.get(&line.start), &mut changes);
+        }
+    }
+    changes
+}
+
+/// The edits of one statement: marks on any but its last line go, the one on the last is put right.
+fn statement(text: &str, line: &Line, tokens: &[Token], wanted: Option<&String>, out: &mut Vec<Change>) {
+    let name = tokens.first().and_then(|t| text.get(t.start as usize..t.end as usize)).unwrap_or("");
+    let mut start = line.start as usize;
+    let end = line.end as usize;
+    let whole = text.get(start..end).unwrap_or("");
+    for physical in whole.split_inclusive('\n') {
+        let last = start + physical.len() == end;
+        let shown = physical.trim_end_matches(|c: char| c <= ' ');
+        let line_end = start + shown.len();
+        let is_comment = shown.trim_start_matches(|c: char| c <= ' ').starts_with(['*', ';', '$']);
+        if !is_comment || last {
+            let from = comment_start(tokens, start, line_end);
+            let mark = mark_at(text, from..line_end);
+            out.extend(edit(text, name, mark, line_end, wanted.filter(|_| last)));
+        }
+        start += physical.len();
+    }
+}
+
+/// Where what is no token begins on a physical line: its trailing blanks and comment.
+fn comment_start(tokens: &[Token], start: usize, end: usize) -> usize {
+    let before = tokens.partition_point(|t| (t.start as usize) < end);
+    let last = before.checked_sub(1).and_then(|n| tokens.get(n));
+    last.map_or(start, |t| (t.end as usize).clamp(start, end))
+}
+
+/// The mark in a trailing comment: from its sign to the line's end.
+fn mark_at(text: &str, comment: Range<usize>) -> Option<Range<usize>> {
+    let inside = text.get(comment.clone())?;
+    let is_sign = |at: &usize| {
+        let after = inside.get(at + SIGN.len()..).unwrap_or("");
+        after.is_empty() || after.starts_with([' ', '\t'])
+    };
+    let at = inside.match_indices(SIGN).map(|(at, _)| at).find(is_sign)?;
+    Some(comment.start + at..comment.end)
+}
+
+fn edit(
+    text: &str,
+    name: &str,
+    mark: Option<Range<usize>>,
+    line_end: usize,
+    wanted: Option<&String>,
+) -> Option<Change> {
+    let said =
+        |range: &Range<usize>| text.get(range.start + SIGN.len()..range.end).unwrap_or("").trim().to_owned();
+    let old = mark.as_ref().map(said);
+    let (range, replacement) = match (mark, wanted) {
+        (None, None) => return None,
+        (Some(_), Some(new)) if old.as_deref().is_some_and(|old| agree(old, new)) => return None,
+        (Some(range), Some(new)) => (range, format!("{SIGN} {new}")),
+        (None, Some(new)) => (line_end..line_end, format!(" {SIGN} {new}")),
+        (Some(range), None) => {
+            // the blank before the mark came with it
+            let blank = text.get(..range.start).is_some_and(|t| t.ends_with([' ', '\t']));
+            (range.start - usize::from(blank)..range.end, String::new())
+        }
+    };
+    Some(Change { line: 0, name: name.to_owned(), old, new: wanted.cloned(), range, replacement })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::analysis::analyse;
+    use crate::config::Options;
+    use crate::text::Memory;
+    use std::path::Path;
+
+    fn annotated(bytes: &[u8]) -> Annotated {
+        let options = Options { states: true, ..Options::default() };
+        let analysis = analyse(&mut Memory::with("a.net", bytes), Path::new("a.net"), &options).unwrap();
+        annotate(&analysis, bytes)
+    }
+
+    fn text_of(bytes: &[u8]) -> String {
+        String::from_utf8(annotated(bytes).bytes).unwrap()
+    }
+
+    const HEAD: &str = "t\nV1 in 0 5\nR1 in a 1k\n*@ drop DX 0.7\n.model DX D\n";
+
+    /// The line of D1 when `line` stands in the file.
+    fn marked(line: &str) -> String {
+        let text = text_of(format!("{HEAD}{line}\n.end\n").as_bytes());
+        text[HEAD.len()..].strip_suffix("\n.end\n").unwrap().to_owned()
+    }
+
+    const MARK: &str = ";@ conducting 4.30mA 0.700V";
+
+    #[test]
+    fn a_mark_stands_at_the_end_of_the_last_line() {
+        assert_eq!(marked("D1 a 0 DX"), format!("D1 a 0 DX {MARK}"));
+        assert_eq!(marked("D1 a 0 DX  \t"), format!("D1 a 0 DX {MARK}  \t"));
+        assert_eq!(marked("D1 a 0 DX ; clamp"), format!("D1 a 0 DX ; clamp {MARK}"));
+        assert_eq!(marked("D1 a 0 DX $ clamp"), format!("D1 a 0 DX $ clamp {MARK}"));
+        assert_eq!(marked("D1 a\n* why\n\n+ 0 DX"), format!("D1 a\n* why\n\n+ 0 DX {MARK}"));
+        assert_eq!(marked("D1 a 0 DX\r"), format!("D1 a 0 DX {MARK}\r"));
+    }
+
+    #[test]
+    fn marks_are_renewed_where_they_stand_and_go_where_no_diode_is() {
+        assert_eq!(marked("D1 a 0 DX   ;@ blocking -3.20V"), format!("D1 a 0 DX   {MARK}"));
+        assert_eq!(marked("D1 a 0 DX ; clamp ;@ blocking"), format!("D1 a 0 DX ; clamp {MARK}"));
+        assert_eq!(marked("D1 a ;@ blocking\n+ 0 DX"), format!("D1 a\n+ 0 DX {MARK}"));
+        assert_eq!(marked("D1 a 0 DX ;@ conducting 4.31mA 0.7V"), "D1 a 0 DX ;@ conducting 4.31mA 0.7V");
+        // what only looks like one stays
+        assert_eq!(marked("D1 a 0 DX ;@todo"), format!("D1 a 0 DX ;@todo {MARK}"));
+        assert!(marked("R2 a 0 1k ;@ conducting 4.30mA").starts_with("R2 a 0 1k\u{0}") == false);
+        assert_eq!(marked("R2 a 0 1k ;@ conducting 4.30mA"), "R2 a 0 1k");
+        assert_eq!(marked("*D1 a 0 DX ;@ blocking"), "*D1 a 0 DX ;@ blocking");
+    }
+
+    #[test]
+    fn conditions_and_instances_show_in_the_mark() {
+        let range = HEAD.replace("*@ drop", "*@ range V1 -9 9\n*@ drop") + "D1 a 0 DX\n";
+        assert!(
+            text_of(range.as_bytes())
+                .ends_with("D1 a 0 DX ;@ conducting 4.30mA..8.30mA | blocking at V1=-9\n")
+        );
+        let many = "t\nV1 p 0 5\nV2 n 0 -5\nX1 p S\nX2 p S\nX3 n S\n.subckt S in\nR1 in m 1k\nD1 m 0 DX\n.ends\n\
+                    .model DX D\n*@ drop DX 0.7\n";
+        assert!(
+            text_of(many.as_bytes())
+                .contains("D1 m 0 DX ;@ in 3 instances: 2 conducting 4.30mA | 1 blocking\n")
+        );
+        let alike = many.replace("0 -5", "0 5");
+        assert!(text_of(alike.as_bytes()).contains(";@ in 3 instances: conducting 4.30mA 0.700V\n"));
+        assert!(
+            text_of(b"t\nV1 in 0 5\nD1 in c DX\nQ1 c b 0 QN\n.model DX D\n.model QN NPN\n")
+                .contains("D1 in c DX ;@ not evaluated\n")
+        );
+        assert!(
+            text_of(b"t\nV1 in 0 -5\nR1 in a 1k\nD1 a 0 DZ\n.model DZ D(BV=3)\n")
+                .contains("D1 a 0 DZ ;@ breakdown 2.00mA -3.00V\n")
+        );
+    }
+
+    #[test]
+    fn a_missing_last_line_end_stays_missing() {
+        let text = format!("{HEAD}D1 a 0 DX");
+        assert_eq!(text_of(text.as_bytes()), format!("{text} {MARK}"));
+    }
+
+    #[test]
+    fn every_encoding_keeps_its_bytes() {
+        let text = format!("{HEAD}* Größe µ\r\nD1 a 0 DX\r\n");
+        let expected = text.replace("0 DX\r", &format!("0 DX {MARK}\r"));
+        let latin = |t: &str| t.chars().map(|c| u8::try_from(u32::from(c)).unwrap()).collect::<Vec<u8>>();
+        let wide = |t: &str| {
+            let units = t.encode_utf16().flat_map(u16::to_be_bytes);
+            [0xFE, 0xFF].into_iter().chain(units).collect::<Vec<u8>>()
+        };
+        for encoded in [&|t: &str| t.as_bytes().to_vec(), &latin as &dyn Fn(&str) -> Vec<u8>, &wide] {
+            assert_eq!(annotated(&encoded(&text)).bytes, encoded(&expected));
+            assert_eq!(strip(&encoded(&expected)), encoded(&text));
+        }
+    }
+}

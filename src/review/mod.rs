@@ -1,0 +1,11 @@
+//! What a team does with the results of whole files: marks behind the diodes of a netlist, the comparison of two
+//! revisions, and rewriting a file without ever losing it. Shows nothing: that is `report`'s.
+
+mod annotate;
+mod figures;
+mod mark;
+mod save;
+
+pub use annotate::{Annotated, Change, annotate, strip};
+pub use mark::marks;
+pub use save::{Desk, DiskDesk, SaveProblem, save};
