@@ -1,6 +1,8 @@
-//! What the user may set for a run, as plain data. Reading arguments is `cli`'s, this is only their meaning.
+//! What the user may set for a run, as plain data: by options, and for a team in `kneewise.toml`, whose mistakes are
+//! findings with a place in that file. Reading arguments is `cli`'s, and so is finding the file.
 
-use crate::finding::Severity;
+use crate::finding::{Edit, Finding, Severity, list};
+use crate::text::{FileId, Span, nearest};
 use std::collections::BTreeMap;
 use std::path::PathBuf;
 use std::sync::Arc;
@@ -87,5 +89,257 @@ impl Monitor {
 impl PartialEq for Monitor {
     fn eq(&self, _: &Self) -> bool {
         true
+    }
+}
+
+/// Name of the file that a team's settings stand in.
+pub const SETTINGS_FILE: &str = "kneewise.toml";
+
+/// What `kneewise.toml` says. An option of the command line goes before it.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Settings {
+    /// `[levels]`: severities by rule name; `None` for `"off"`.
+    pub levels: BTreeMap<String, Option<Severity>>,
+    /// `[thresholds]`.
+    pub thresholds: Thresholds,
+    /// `include-dirs`: further places where includes may lie, relative to the file.
+    pub include_dirs: Vec<PathBuf>,
+    /// `extensions`: what netlists end in, without the point; `None` where nothing is said.
+    pub extensions: Option<Vec<String>>,
+    /// `fail-on`: the least severity that makes the exit code 1.
+    pub fail_on: Option<Severity>,
+}
+
+/// The keys of the file, of its `[thresholds]`, and the words of a level.
+const KEYS: [&str; 5] = ["extensions", "fail-on", "include-dirs", "levels", "thresholds"];
+const THRESHOLDS: [&str; 3] = ["moved", "swing-note", "swing-warning"];
+const LEVELS: [&str; 4] = ["error", "warning", "note", "off"];
+
+type Table<'t> = toml::de::DeTable<'t>;
+type Place<T> = toml::Spanned<T>;
+type Item<'t> = toml::de::DeValue<'t>;
+
+/// Reads a settings file; `rules` are the names that may stand under `[levels]`. What cannot be used is a finding, and
+/// the rest holds.
+pub fn settings(text: &str, file: FileId, rules: &[&str]) -> (Settings, Vec<Finding>) {
+    let (table, errors) = Table::parse_recoverable(text);
+    let mut reader = Reader { file, rules, settings: Settings::default(), findings: Vec::new() };
+    for error in errors {
+        let span = error.span().unwrap_or(0..0);
+        let message = format!("this is no TOML: {}", error.message().trim_end_matches('.'));
+        reader.findings.push(
+            Finding::new(
+                "unreadable-settings",
+                Severity::Error,
+                Span::new(file, span.start, span.end),
+                message,
+            )
+            .label("not read")
+            .help("Settings are TOML (toml.io). Those that could be read hold; mend this one."),
+        );
+    }
+    reader.root(table.get_ref());
+    crate::finding::sort(&mut reader.findings);
+    (reader.settings, reader.findings)
+}
+
+struct Reader<'a> {
+    file: FileId,
+    rules: &'a [&'a str],
+    settings: Settings,
+    findings: Vec<Finding>,
+}
+
+impl Reader<'_> {
+    fn span<T>(&self, item: &Place<T>) -> Span {
+        Span::new(self.file, item.span().start, item.span().end)
+    }
+
+    fn root(&mut self, table: &Table<'_>) {
+        for (key, value) in table {
+            match key.get_ref().as_ref() {
+                "fail-on" => self.settings.fail_on = self.level(value, &LEVELS[..3]).flatten(),
+                "include-dirs" => {
+                    self.settings.include_dirs = self.words(value).into_iter().map(PathBuf::from).collect();
+                }
+                "extensions" => self.extensions(value),
+                "levels" => self.each(value, Self::rule_level),
+                "thresholds" => self.each(value, Self::threshold),
+                _ => self.unknown(key, "setting", &KEYS),
+            }
+        }
+    }
+
+    fn each(
+        &mut self,
+        value: &Place<Item<'_>>,
+        read: fn(&mut Self, &Place<std::borrow::Cow<'_, str>>, &Place<Item<'_>>),
+    ) {
+        match value.get_ref().as_table() {
+            Some(table) => table.iter().for_each(|(key, value)| read(self, key, value)),
+            None => {
+                self.unusable(value, "this is a table, such as `[levels]` with a line for each rule below it")
+            }
+        }
+    }
+
+    fn rule_level(&mut self, key: &Place<std::borrow::Cow<'_, str>>, value: &Place<Item<'_>>) {
+        let rules = self.rules;
+        if !rules.contains(&key.get_ref().as_ref()) {
+            return self.unknown(key, "rule", rules);
+        }
+        if let Some(level) = self.level(value, &LEVELS) {
+            self.settings.levels.insert(key.get_ref().to_string(), level);
+        }
+    }
+
+    fn threshold(&mut self, key: &Place<std::borrow::Cow<'_, str>>, value: &Place<Item<'_>>) {
+        let name = key.get_ref().as_ref();
+        if !THRESHOLDS.contains(&name) {
+            return self.unknown(key, "threshold", &THRESHOLDS);
+        }
+        let number = match value.get_ref() {
+            Item::Integer(digits) => digits.as_str().parse::<f64>().ok(),
+            Item::Float(digits) => digits.as_str().replace('_', "").parse().ok(),
+            _ => None,
+        };
+        let Some(number) = number.filter(|n| n.is_finite() && *n >= 0.0) else {
+            return self.unusable(value, "a threshold is a number, 0 or more");
+        };
+        match name {
+            "moved" => self.settings.thresholds.moved = number,
+            "swing-note" => self.settings.thresholds.swing_note = number,
+            _ => self.settings.thresholds.swing_warning = number,
+        }
+    }
+
+    fn extensions(&mut self, value: &Place<Item<'_>>) {
+        let words = self.words(value);
+        let bare: Vec<String> = words.iter().map(|w| w.trim_start_matches('.').to_owned()).collect();
+        if bare.is_empty() || bare.iter().any(String::is_empty) {
+            return self.unusable(value, "this is a list of endings, such as [\"net\", \"cir\"]");
+        }
+        self.settings.extensions = Some(bare);
+    }
+
+    /// A list of texts.
+    fn words(&mut self, value: &Place<Item<'_>>) -> Vec<String> {
+        let texts: Option<Vec<String>> = value
+            .get_ref()
+            .as_array()
+            .and_then(|list| list.iter().map(|item| item.get_ref().as_str().map(str::to_owned)).collect());
+        if texts.is_none() {
+            self.unusable(value, "this is a list of texts, such as [\"parts\", \"models\"]");
+        }
+        texts.unwrap_or_default()
+    }
+
+    /// The severity that a word stands for; the inner `None` is `off`.
+    fn level(&mut self, value: &Place<Item<'_>>, words: &[&str]) -> Option<Option<Severity>> {
+        let word = value.get_ref().as_str().unwrap_or("");
+        match words.contains(&word).then_some(word) {
+            Some("error") => Some(Some(Severity::Error)),
+            Some("warning") => Some(Some(Severity::Warning)),
+            Some("note") => Some(Some(Severity::Note)),
+            Some(_) => Some(None),
+            None => {
+                let quoted: Vec<String> = words.iter().map(|w| format!("\"{w}\"")).collect();
+                self.unusable(value, &format!("this is one of {}", list(&quoted, quoted.len())));
+                None
+            }
+        }
+    }
+
+    fn unusable<T>(&mut self, value: &Place<T>, wanted: &str) {
+        let finding = Finding::new("unusable-setting", Severity::Warning, self.span(value), wanted)
+            .label("not used")
+            .help("Until it is mended, what holds without this setting holds.");
+        self.findings.push(finding);
+    }
+
+    fn unknown(&mut self, key: &Place<std::borrow::Cow<'_, str>>, what: &str, known: &[&str]) {
+        let span = self.span(key);
+        let name = key.get_ref().as_ref();
+        let mut finding =
+            Finding::new("unknown-setting", Severity::Warning, span, format!("there is no {what} `{name}`"))
+                .label("has no effect")
+                .about(name);
+        finding.help = match nearest(name, known.iter().copied()) {
+            Some(near) => {
+                let edits = vec![Edit { span, replacement: near.to_owned() }];
+                finding = finding.fix(format!("write `{near}`"), edits);
+                format!("Did you mean `{near}`?")
+            }
+            None if known.len() <= KEYS.len() => {
+                let names: Vec<String> = known.iter().map(|k| format!("`{k}`")).collect();
+                format!("Known are {}.", list(&names, names.len()))
+            }
+            None => "`kneewise rules` lists them.".into(),
+        };
+        self.findings.push(finding);
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn read(text: &str) -> (Settings, Vec<Finding>) {
+        settings(text, FileId(0), &["dangling-node", "never-conducts"])
+    }
+
+    #[test]
+    fn every_setting_is_read() {
+        let text = "fail-on = \"error\"\ninclude-dirs = [\"parts\"]\nextensions = [\".net\", \"lst\"]\n\
+                    [levels]\ndangling-node = \"off\"\nnever-conducts = \"note\"\n\
+                    [thresholds]\nmoved = 0.1\nswing-note = 2\n";
+        let (settings, findings) = read(text);
+        assert!(findings.is_empty(), "{findings:?}");
+        assert_eq!(settings.fail_on, Some(Severity::Error));
+        assert_eq!(settings.include_dirs, [PathBuf::from("parts")]);
+        assert_eq!(settings.extensions, Some(vec!["net".to_owned(), "lst".to_owned()]));
+        assert_eq!(settings.levels["dangling-node"], None);
+        assert_eq!(settings.levels["never-conducts"], Some(Severity::Note));
+        assert_eq!((settings.thresholds.moved, settings.thresholds.swing_note), (0.1, 2.0));
+        assert_eq!(read(""), (Settings::default(), Vec::new()));
+    }
+
+    #[test]
+    fn what_is_not_known_is_told_with_its_neighbour_and_the_rest_holds() {
+        let text = "fail_on = \"error\"\n[levels]\ndangling-nod = \"off\"\nnever-conducts = \"off\"\n\
+                    [thresholds]\nmovde = 1\nhum = 2\n";
+        let (settings, findings) = read(text);
+        let told: Vec<(&str, &str, &str)> =
+            findings.iter().map(|f| (f.rule, &text[f.span.range()], f.help.as_str())).collect();
+        assert_eq!(
+            told,
+            [
+                ("unknown-setting", "fail_on", "Did you mean `fail-on`?"),
+                ("unknown-setting", "dangling-nod", "Did you mean `dangling-node`?"),
+                ("unknown-setting", "movde", "Did you mean `moved`?"),
+                ("unknown-setting", "hum", "Known are `moved`, `swing-note` and `swing-warning`."),
+            ]
+        );
+        assert_eq!(settings.levels["never-conducts"], None);
+    }
+
+    #[test]
+    fn what_cannot_be_used_is_told_at_its_place() {
+        let text = "fail-on = \"off\"\nextensions = \"net\"\nlevels = 3\n[thresholds]\nmoved = -1\n";
+        let (settings, findings) = read(text);
+        let told: Vec<(&str, &str)> = findings.iter().map(|f| (f.rule, &text[f.span.range()])).collect();
+        assert_eq!(told[0], ("unusable-setting", "\"off\""));
+        assert_eq!(told[2], ("unusable-setting", "3"));
+        assert_eq!(told.last(), Some(&("unusable-setting", "-1")));
+        assert_eq!(settings, Settings::default());
+    }
+
+    #[test]
+    fn a_line_that_is_no_toml_is_told_and_the_others_hold() {
+        let text = "fail-on = \"error\"\nthis is none\n[levels]\nnever-conducts = \"off\"\n";
+        let (settings, findings) = read(text);
+        assert_eq!(findings[0].rule, "unreadable-settings");
+        assert_eq!(settings.fail_on, Some(Severity::Error));
+        assert_eq!(settings.levels["never-conducts"], None);
     }
 }

@@ -94,10 +94,9 @@ mod tests {
             };
             let again = decode(&[order, piece].concat()).0;
             let is = &text[places[n]..places[n + 1]];
-            assert!(
-                again == is || (wide && is == "\u{FFFD}") || is == "\n",
-                "{bytes:?} at {n}: {again:?} {is:?}"
-            );
+            // a carriage return by itself decodes to a line feed
+            let same = again.replace('\r', "\n") == is.replace('\r', "\n");
+            assert!(same || (wide && is == "\u{FFFD}"), "{bytes:?} at {n}: {again:?} {is:?}");
         }
     }
 

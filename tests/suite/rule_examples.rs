@@ -2,10 +2,10 @@
 //! passing example gives nothing at all.
 
 use kneewise::analysis::{Analysis, analyse};
-use kneewise::config::Options;
+use kneewise::config::{Options, settings};
 use kneewise::finding::{Finding, Severity};
 use kneewise::rules::{self, Rule};
-use kneewise::text::Memory;
+use kneewise::text::{FileId, Memory};
 use std::path::Path;
 
 fn check(rule: &Rule, which: &str, text: &str) -> Analysis {
@@ -33,8 +33,23 @@ fn style(finding: &Finding) -> Option<String> {
     (!begins || !help.ends_with('.')).then(|| format!("the help is whole sentences: {help}"))
 }
 
+/// What is wrong with the examples of a rule about settings, which are settings.
+fn settings_complaints(rule: &Rule) -> Vec<String> {
+    let names: Vec<&str> = rules::all().iter().map(|r| r.name).collect();
+    let told = |text: &str| settings(text, FileId(0), &names).1;
+    let (failing, passing) = (told(rule.failing), told(rule.passing));
+    let mut wrong: Vec<String> = failing.iter().filter_map(style).collect();
+    if failing.iter().any(|f| f.rule != rule.name) || failing.is_empty() || !passing.is_empty() {
+        wrong.push(format!("{}: {failing:?} {passing:?}", rule.name));
+    }
+    wrong
+}
+
 /// What is wrong with a rule's examples.
 fn complaints(rule: &Rule) -> Vec<String> {
+    if rule.group == "settings" {
+        return settings_complaints(rule);
+    }
     let mut wrong = Vec::new();
     let failing = check(rule, "failing", rule.failing);
     if failing.skipped.iter().any(|s| s.rule == rule.name) {

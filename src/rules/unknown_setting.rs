@@ -1,0 +1,18 @@
+//! A key of `kneewise.toml` that is not known, found when that file is read.
+
+use super::{Check, Rule};
+use crate::finding::Severity;
+
+/// The rule. Its examples are `kneewise.toml` files.
+pub const RULE: Rule = Rule {
+    name: "unknown-setting",
+    group: "settings",
+    severity: Severity::Warning,
+    summary: "a key of `kneewise.toml` that is not known",
+    why: "A misspelt key has no effect, and whoever wrote it believes that it has.",
+    remedy: "Correct the key; the nearest known one is proposed.",
+    source: None,
+    failing: "[levels]\ndangling-nod = \"note\"\n",
+    passing: "[levels]\ndangling-node = \"note\"\n",
+    check: Check::Reading,
+};
