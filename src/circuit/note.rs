@@ -62,8 +62,8 @@ pub enum NoteKind {
     Hold(Hold),
     /// `expect …`, kept as its parts.
     Expect(Expectation),
-    /// `watch out`, or `watch a b`: the second node.
-    Watch { other: Option<Symbol> },
+    /// `watch out`, or `watch a b`: the second node. `watch out ripple < 0.5`: volts peak to peak that it may have.
+    Watch { other: Option<Symbol>, ripple: Option<Value> },
     /// `matched D1 D2 …`: the others.
     Matched(Vec<Symbol>),
     /// `rating D1 i=200m vr=75 p=500m`: lower-case keys, SI units.

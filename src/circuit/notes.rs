@@ -31,8 +31,9 @@ impl Expander<'_> {
             NoteText::Range(name, from, to) => (name, NoteKind::Range { from, to }),
             NoteText::Hold(name, how) => (name, NoteKind::Hold(hold(how))),
             NoteText::Expect(name, expected) => (name, NoteKind::Expect(expectation(&expected))),
-            NoteText::Watch(name, other) => {
-                (name, NoteKind::Watch { other: other.map(|w| names.intern(w.text)) })
+            NoteText::Watch(name, other, ripple) => {
+                let ripple = ripple.map(|(word, volts)| written(word, volts));
+                (name, NoteKind::Watch { other: other.map(|w| names.intern(w.text)), ripple })
             }
             NoteText::Matched(name, others) => {
                 (name, NoteKind::Matched(others.iter().map(|w| names.intern(w.text)).collect()))

@@ -44,6 +44,12 @@ Examples:
   kneewise states charger.net --why D3      the reasoning, step by step
   kneewise states charger.net --drop 0.7    one drop for all, as in hand calculation")]
     States(States),
+    /// Show how far currents and voltages move: over time, and over the conditions
+    #[command(after_help = "\
+Examples:
+  kneewise swing supply.net                 conduction, peaks, ripple in the periodic state
+  kneewise swing supply.net --plot run.svg  the same as a picture")]
+    Swing(Swing),
     /// List the rules, or tell one in full with its examples
     #[command(after_help = "\
 Example:
@@ -68,6 +74,18 @@ pub struct States {
     /// Tell why this diode is in its state
     #[arg(long, value_name = "DIODE")]
     pub why: Option<String>,
+    #[command(flatten)]
+    pub common: Common,
+}
+
+#[derive(Debug, Group)]
+pub struct Swing {
+    /// A netlist; `-` is standard input
+    #[arg(value_name = "FILE")]
+    pub file: PathBuf,
+    /// Draw it into this file: .svg, or .html
+    #[arg(long, value_name = "PICTURE", value_parser = picture)]
+    pub plot: Option<PathBuf>,
     #[command(flatten)]
     pub common: Common,
 }
@@ -148,6 +166,15 @@ fn drop_volts(text: &str) -> Result<f64, String> {
     match value(text)? {
         volts if volts < 0.0 => Err("a drop is a forward voltage, so it cannot be negative".into()),
         volts => Ok(volts),
+    }
+}
+
+fn picture(text: &str) -> Result<PathBuf, String> {
+    let path = PathBuf::from(text);
+    let ending = path.extension().and_then(|e| e.to_str()).map(str::to_ascii_lowercase);
+    match ending.as_deref() {
+        Some("svg" | "html" | "htm") => Ok(path),
+        _ => Err("a picture is written as .svg or .html".into()),
     }
 }
 

@@ -7,6 +7,7 @@ mod input;
 mod output;
 mod rules;
 mod states;
+mod swing;
 
 use args::{Args, Command};
 use clap::Parser;
@@ -38,6 +39,7 @@ pub fn run() -> ExitCode {
     let end = match &args.command {
         Command::Check(command) => check::run(&mut console, command),
         Command::States(command) => states::run(&mut console, command),
+        Command::Swing(command) => swing::run(&mut console, command),
         Command::Rules(command) => rules::run(&mut console, command),
     };
     ExitCode::from(match end {

@@ -31,6 +31,7 @@ mod potentials;
 mod rails;
 mod settle;
 mod solve;
+pub(crate) mod stepping;
 mod supernodal;
 #[cfg(test)]
 mod tests;

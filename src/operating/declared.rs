@@ -87,7 +87,7 @@ pub(crate) fn declared(
                 reader.supply(note, volts, *range);
             }
             NoteKind::Hold(hold) => reader.hold(note, *hold),
-            NoteKind::Watch { other } => reader.watch(note, *other),
+            NoteKind::Watch { other, .. } => reader.watch(note, *other),
             _ => {}
         }
     }

@@ -1,6 +1,7 @@
 //! Runs all conditions: drops in two passes, one solve for each condition, proof, and the results as plain data.
 
 use super::assemble::{Assembly, Setting, Slots, assemble};
+use super::basis::Basis;
 use super::case::case;
 use super::condition::{Condition, Plan, plan};
 use super::declared::{USUAL_TEMPERATURE, declared};
@@ -64,7 +65,8 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
     let cases = (0..plan.conditions.len()).map(|n| run.case(&list, n)).collect();
     let reasonings = run.reasoner.finish();
     let why = run.why.map(|element| Why { element, reasonings });
-    (Operating { cases, left_to_time, nodes_left_to_time, why }, findings)
+    let basis = Some(Box::new(Basis { plan, diodes: list }));
+    (Operating { cases, left_to_time, nodes_left_to_time, why, basis }, findings)
 }
 
 /// The diode that `--why` asks about.

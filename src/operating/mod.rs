@@ -2,6 +2,7 @@
 //! the proof by substitution. Solving is `complementarity`'s; judging is `rules`'s.
 
 mod assemble;
+mod basis;
 mod case;
 mod condition;
 mod declared;
@@ -24,6 +25,8 @@ mod view;
 mod why;
 mod words;
 
+pub(crate) use assemble::main_path;
+pub(crate) use basis::{Basis, Standing};
 pub use evaluate::{Text, evaluate};
 pub use law::{JunctionLaw, nearest_decade, thermal_voltage};
 pub use material::{MATERIALS, Material};

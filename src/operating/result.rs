@@ -1,5 +1,6 @@
 //! The results as plain data, in SI units. Voltages and currents of a diode count from anode to cathode.
 
+use super::basis::Basis;
 use crate::circuit::{ElementId, NodeId, State};
 use crate::complementarity::{Quantity, Verdict, View};
 
@@ -15,6 +16,8 @@ pub struct Operating {
     pub nodes_left_to_time: Vec<NodeId>,
     /// The reasoning about the diode that `--why` asks about.
     pub why: Option<Why>,
+    /// The model that the time pass takes over.
+    pub(crate) basis: Option<Box<Basis>>,
 }
 
 /// Why a diode is in its state.

@@ -18,8 +18,8 @@ pub(crate) enum Position {
 }
 
 /// Resistance of a closed and of an open switch whose model does not say (common practice, from memory).
-const CLOSED: f64 = 1.0;
-const OPEN: f64 = 1e6;
+pub(crate) const CLOSED: f64 = 1.0;
+pub(crate) const OPEN: f64 = 1e6;
 
 /// What sources hold, found once per condition; empty where no switch asks.
 pub(crate) struct Switches {

@@ -1,16 +1,28 @@
-//! Puts the time pass together.
+//! Puts the time pass together: parts, their equations, their walks, and the figures in the order of the circuit.
 
 use super::conditions::over_conditions;
-use super::result::{DiodeSwing, NodeSwing, Swing};
+use super::equations::equations;
+use super::inputs::Given;
+use super::parts::{PartList, parts};
+use super::result::{DiodeSwing, Effort, Level, NodeSwing, Swing, Wave};
+use super::run::{Pass, Ran, run};
+use super::timing::Timing;
 use crate::circuit::{Behaviour, Circuit, NodeId};
 use crate::config::Options;
-use crate::operating::Operating;
+use crate::operating::{Basis, Operating};
+use crate::topology::Noted;
+
+/// Work that one run of `check` spends on the time pass of one file, in multiplications.
+const WORK: u64 = 600_000_000;
+
+/// Most waveforms that are kept.
+const MOST_WAVES: usize = 8;
 
 /// What moves over the conditions and, where sources move, over time.
-pub fn follow(circuit: &Circuit, operating: &Operating, _options: &Options) -> Swing {
+pub fn follow(circuit: &Circuit, operating: &Operating, noted: &Noted, options: &Options) -> Swing {
     let mut ranges = over_conditions(operating);
     let diodes = circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
-    Swing {
+    let mut swing = Swing {
         diodes: diodes
             .map(|(element, _)| DiodeSwing {
                 element,
@@ -23,5 +35,125 @@ pub fn follow(circuit: &Circuit, operating: &Operating, _options: &Options) -> S
             .map(|n| NodeSwing { node: NodeId::new(n), over_time: None })
             .collect(),
         ..Swing::default()
+    };
+    if let Some(basis) = operating.basis.as_deref().filter(|basis| moves(circuit, basis)) {
+        over_time(circuit, basis, noted, options, &mut swing);
+    }
+    swing
+}
+
+/// Whether anything moves: a source, or what initial conditions let go within a span that is asked for.
+fn moves(circuit: &Circuit, basis: &Basis) -> bool {
+    let has_initial = |b: &Behaviour| {
+        matches!(
+            b,
+            Behaviour::Capacitor { initial: Some(_), .. } | Behaviour::Inductor { initial: Some(_), .. }
+        )
+    };
+    !basis.plan.moving.is_empty()
+        || circuit.transient.is_some_and(|t| {
+            t.uic || !circuit.initial.is_empty() || circuit.elements.iter().any(|e| has_initial(&e.behaviour))
+        })
+}
+
+fn over_time(circuit: &Circuit, basis: &Basis, noted: &Noted, options: &Options, swing: &mut Swing) {
+    let given = Given::new(circuit, basis);
+    let timing = Timing::new(&given.shapes, circuit.transient);
+    let all = parts(circuit, &given);
+    let (from, to) = timing.window;
+    swing.span = Some(to - timing.first);
+    swing.period = timing.period;
+    (swing.start, swing.window) = (from, to - from);
+    swing.periodic = timing.period.is_some();
+    let monitor = &options.monitor;
+    let is_cancelled = || monitor.is_cancelled();
+    let total = WORK.saturating_mul(u64::from(options.patience.max(1)));
+    let mut pass = Pass { circuit, given: &given, timing, budget: total, is_cancelled: &is_cancelled };
+    held_nodes(&pass, noted, swing);
+    let mut left = total;
+    for (n, part) in all.iter().enumerate() {
+        monitor.report((1000 * n / all.len()) as u32);
+        // what parts leave unused is for the rest, but no part is left without anything
+        pass.budget = (left / (all.len() - n).clamp(1, 8) as u64).max(total / 1000);
+        left = left.saturating_sub(one_part(&pass, basis, noted, part, swing));
+    }
+    monitor.report(1000);
+    swing.waves.sort_by_key(|w| w.node);
+    swing.waves.truncate(MOST_WAVES);
+}
+
+/// Follows one part and enters its figures; gives the work that it took.
+fn one_part(pass: &Pass<'_>, basis: &Basis, noted: &Noted, part: &PartList, swing: &mut Swing) -> u64 {
+    let followed = equations(pass.circuit, basis, pass.given, part).and_then(|equations| {
+        let watched: Vec<usize> =
+            (0..part.nodes.len()).filter(|&n| noted.is_watched(part.nodes[n])).take(MOST_WAVES).collect();
+        let nodes: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
+        let ran = run(pass, &equations, watched)?;
+        Ok((equations.diodes, nodes, ran))
+    });
+    match followed {
+        Err(reason) => {
+            for id in &part.elements {
+                if let Ok(at) = swing.diodes.binary_search_by_key(id, |d| d.element) {
+                    swing.diodes[at].not_evaluated = Some(reason.clone());
+                }
+            }
+            0
+        }
+        Ok((diodes, watched, ran)) => {
+            let work = ran.work;
+            for (&id, figures) in diodes.iter().zip(&ran.diodes) {
+                if let Ok(at) = swing.diodes.binary_search_by_key(&id, |d| d.element) {
+                    swing.diodes[at].over_time = Some(figures.clone());
+                }
+            }
+            enter(part, &watched, ran, swing);
+            work
+        }
+    }
+}
+
+fn enter(part: &PartList, watched: &[NodeId], ran: Ran, swing: &mut Swing) {
+    for (&node, level) in part.nodes.iter().zip(&ran.nodes) {
+        if let Some(slot) = swing.nodes.get_mut(node.index() - 1) {
+            slot.over_time = finite(*level);
+        }
+    }
+    swing.waves.extend(watched.iter().zip(ran.waves).map(|(&node, points)| Wave { node, points }));
+    swing.periodic &= ran.periodic;
+    if swing.cut_short.is_none() {
+        swing.cut_short = ran.cut_short;
+    }
+    let Effort { steps, rejected, factorizations, periods, window_steps, window_factorizations } = ran.effort;
+    let effort = &mut swing.effort;
+    effort.steps += steps;
+    effort.rejected += rejected;
+    effort.factorizations += factorizations;
+    effort.periods = effort.periods.max(periods);
+    effort.window_steps += window_steps;
+    effort.window_factorizations += window_factorizations;
+}
+
+fn finite(level: Level) -> Option<Level> {
+    (level.mean.is_finite() && level.min.is_finite() && level.max.is_finite()).then_some(level)
+}
+
+/// Nodes that sources hold: their courses are given.
+fn held_nodes(pass: &Pass<'_>, noted: &Noted, swing: &mut Swing) {
+    let nodes: Vec<NodeId> =
+        (1..pass.given.held.len()).filter(|&n| pass.given.held[n].is_some()).map(NodeId::new).collect();
+    if nodes.is_empty() {
+        return;
+    }
+    let part = PartList { elements: Vec::new(), nodes };
+    let given = super::equations::held(pass.given, &part);
+    let watched: Vec<usize> =
+        (0..part.nodes.len()).filter(|&n| noted.is_watched(part.nodes[n])).take(MOST_WAVES).collect();
+    let names: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
+    if let Ok(mut ran) = run(pass, &given, watched) {
+        ran.effort = Effort::default();
+        // what is given repeats itself as the sources do
+        ran.periodic = true;
+        enter(&part, &names, ran, swing);
     }
 }

@@ -3,8 +3,16 @@
 //! `complementarity`'s; judging is `rules`'s.
 
 mod conditions;
+mod equations;
 mod follow;
+mod inputs;
+mod parts;
+mod record;
 mod result;
+mod rhythm;
+mod run;
+mod start;
+mod timing;
 
 pub use follow::follow;
 pub use result::{DiodeSwing, Effort, Level, NodeSwing, OverConditions, OverTime, Swing, Wave};

@@ -26,8 +26,8 @@ pub enum NoteText<'t> {
     Hold(NoteWord<'t>, HoldWord),
     /// `expect …`
     Expect(NoteWord<'t>, ExpectText<'t>),
-    /// `watch NODE [NODE]`
-    Watch(NoteWord<'t>, Option<NoteWord<'t>>),
+    /// `watch NODE [NODE] [ripple < VOLTS]`
+    Watch(NoteWord<'t>, Option<NoteWord<'t>>, Option<(NoteWord<'t>, f64)>),
     /// `matched NAME 1*NAME`
     Matched(NoteWord<'t>, Vec<NoteWord<'t>>),
     /// `rating NAME 1*KEY=NUMBER`
@@ -89,7 +89,7 @@ const SHAPES: [&str; 10] = [
     "range NAME LOW HIGH, or range NAME VALUE PERCENT%",
     "hold NAME on, off or both",
     "expect NAME STATE [LOW..HIGH], or expect v(NODE) LOW..HIGH",
-    "watch NODE [NODE]",
+    "watch NODE [NODE] [ripple < VOLTS]",
     "matched NAME NAME …",
     "rating NAME i=… vr=… p=…",
     "accept RULE [SUBJECT] because REASON",
@@ -265,11 +265,20 @@ fn restriction<'t>(words: &[NoteWord<'t>], at: usize, text: &mut ExpectText<'t>)
     Err(at)
 }
 
-/// `watch-note = "watch" node [node]`
+/// `watch-note = "watch" node [node] ["ripple" "<" number]`
 fn watch_note<'t>(words: &[NoteWord<'t>]) -> Taken<'t> {
     let node = plain_or_voltage(word(words, 0)?);
-    end(words, 2)?;
-    Ok(NoteText::Watch(node, words.get(1).map(|w| plain_or_voltage(*w))))
+    let is = |at: usize, w: &str| words.get(at).is_some_and(|x| x.text.eq_ignore_ascii_case(w));
+    // a node may be called `ripple`; only one that `<` follows is the word
+    let limit_at = (1..=2).find(|&at| is(at, "ripple") && is(at + 1, "<"));
+    let other = if limit_at == Some(1) { None } else { words.get(1).map(|w| plain_or_voltage(*w)) };
+    let Some(at) = limit_at else {
+        end(words, 2)?;
+        return Ok(NoteText::Watch(node, other, None));
+    };
+    let volts = number_at(words, at + 2)?;
+    end(words, at + 3)?;
+    Ok(NoteText::Watch(node, other, Some((words[at + 2], volts))))
 }
 
 fn plain_or_voltage(word: NoteWord<'_>) -> NoteWord<'_> {
@@ -359,6 +368,9 @@ mod tests {
             "*@ watch out",
             "*@ watch out ;trailing comment",
             "*@ watch a b",
+            "*@ watch out ripple < 0.5",
+            "*@ watch a b ripple < 500m",
+            "*@ watch out ripple",
             "*@ matched D1 D2",
             "*@ rating D1 i=200m vr=75 p=500m",
             "*@ accept dangling-node tp1 because it is a test pad",

@@ -28,7 +28,7 @@ impl Noted {
             let subject = directory.node(note.scope, circuit.text(note.subject));
             match &note.kind {
                 NoteKind::Supply { .. } => noted.supplied.extend(subject),
-                NoteKind::Watch { other } => {
+                NoteKind::Watch { other, .. } => {
                     noted.watched.extend(subject);
                     let other = other.and_then(|o| directory.node(note.scope, circuit.text(o)));
                     noted.watched.extend(other);

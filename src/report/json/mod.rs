@@ -4,9 +4,11 @@
 mod findings;
 mod place;
 mod states;
+mod swing;
 
 pub use findings::findings;
 pub use states::states;
+pub use swing::swing;
 
 /// A finite number, never with a minus before zero; infinite and undefined numbers are `null`.
 fn number(value: f64) -> Option<f64> {
