@@ -51,6 +51,9 @@ pub(crate) struct Expander<'a> {
     root_nodes: Vec<NodeId>,
     /// Root elements with the hashes of their names; sorted when all are known.
     root_elements: Vec<(u32, ElementId)>,
+    /// Pins before this one know their nodes.
+    pub(super) resolved: usize,
+    hashes: Vec<u32>,
     pub(super) globals: FxHashSet<Symbol>,
     pub(super) model_ids: FxHashMap<(usize, ScopeId), super::ModelId>,
     pub(super) undefined_models: Vec<(Span, ElementId)>,
@@ -67,6 +70,8 @@ pub(crate) struct Expander<'a> {
 }
 
 const NONE: u32 = u32::MAX;
+/// So many pins wait for their nodes.
+const PINS_AT_ONCE: usize = 256;
 
 /// Expands what was read, with other values where `overrides` gives them. Elements, nodes and their numbers are
 /// the same for all overrides; only values differ.
@@ -82,6 +87,8 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
         of_functions: 0,
         root_nodes: Vec::new(),
         root_elements: Vec::new(),
+        resolved: 0,
+        hashes: Vec::new(),
         globals: FxHashSet::default(),
         model_ids: FxHashMap::default(),
         undefined_models: Vec::new(),
@@ -125,7 +132,7 @@ impl<'a> Expander<'a> {
     fn root(&mut self) {
         let count = self.parsed.statements.len();
         let names = &mut self.circuit.names;
-        names.reserve(count);
+        names.reserve(count / 2);
         let (zero, empty) = (names.intern("0"), names.intern(""));
         self.circuit.elements.reserve(count);
         self.circuit.pins.reserve(2 * count);
@@ -149,6 +156,7 @@ impl<'a> Expander<'a> {
         }
         self.settings();
         self.body(0);
+        self.resolve_pins();
         self.sort_root_elements();
         self.finish_frame();
         self.tell_undefined_models();
@@ -302,7 +310,7 @@ impl<'a> Expander<'a> {
             let folded = self.circuit.names.find(name)?;
             return self.frame().elements.get(&folded).copied();
         }
-        let hash = Names::short_hash(name);
+        let hash = Names::hash(name);
         let first = self.root_elements.partition_point(|e| e.0 < hash);
         let same_hash = self.root_elements.get(first..)?.iter().take_while(|e| e.0 == hash);
         let is_named =
@@ -361,8 +369,28 @@ impl<'a> Expander<'a> {
 
     fn push_pin(&mut self, line: &Line<'_>, token: Token) {
         let span = line.at(token);
-        let node = self.node(line.str(token), span);
+        let is_root = self.frames.len() <= 1;
+        let node = if is_root { NodeId(NONE) } else { self.node(line.str(token), span) };
         self.circuit.pins.push(Pin { node, span });
+        if is_root && self.circuit.pins.len() - self.resolved >= PINS_AT_ONCE {
+            self.resolve_pins();
+        }
+    }
+
+    /// Looks up the nodes of the root's pins that wait for it, many at once, so that the waits for memory overlap.
+    pub(super) fn resolve_pins(&mut self) {
+        let sources = self.sources;
+        let from = self.resolved.min(self.circuit.pins.len());
+        let mut hashes = std::mem::take(&mut self.hashes);
+        hashes.clear();
+        hashes.extend(self.circuit.pins[from..].iter().map(|pin| Names::hash(sources.slice(pin.span))));
+        self.circuit.names.warm(&hashes);
+        self.hashes = hashes;
+        for number in from..self.circuit.pins.len() {
+            let span = self.circuit.pins[number].span;
+            self.circuit.pins[number].node = self.node(sources.slice(span), span);
+        }
+        self.resolved = self.circuit.pins.len();
     }
 }
 

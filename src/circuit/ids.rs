@@ -1,6 +1,5 @@
 //! Typed numbers of the circuit's parts, and the interner of names.
 
-use hashbrown::HashTable;
 use rustc_hash::FxHashMap;
 
 macro_rules! id {
@@ -60,7 +59,10 @@ pub struct Names {
     ends: Vec<u32>,
     /// Spellings that are not the first of their name, with the first.
     variants: FxHashMap<u32, u32>,
-    table: HashTable<Spelling>,
+    /// Open addressing with steps of one; its length is a power of two, or zero.
+    table: Vec<Spelling>,
+    /// Places of the table that are taken.
+    taken: usize,
 }
 
 impl PartialEq for Names {
@@ -69,13 +71,21 @@ impl PartialEq for Names {
     }
 }
 
-/// A spelling in the table: its number and its bytes, so that comparing needs no second look-up.
+/// A spelling in the table: its number, the hash of its name and where its bytes stand, so that most look-ups
+/// go to the table and to the bytes and nowhere else.
 #[derive(Debug, Clone, Copy)]
 struct Spelling {
+    hash: u32,
     id: u32,
     start: u32,
     length: u32,
 }
+
+/// A place of the table that nothing has taken.
+const FREE: Spelling = Spelling { hash: 0, id: u32::MAX, start: 0, length: 0 };
+/// So many spellings of one name are told apart; all others count as the first. Else a name of twenty letters,
+/// written a million ways, would be compared with a million others each time.
+const MOST_VARIANTS: usize = 16;
 
 impl Spelling {
     fn text(self, bytes: &[u8]) -> &[u8] {
@@ -87,52 +97,106 @@ impl Spelling {
 impl Names {
     /// Makes room for so many spellings.
     pub fn reserve(&mut self, count: usize) {
-        let Names { bytes, ends, table, .. } = self;
-        bytes.reserve(count.saturating_mul(6));
-        ends.reserve(count);
-        table.reserve(count, |s| hash(s.text(bytes.as_bytes())));
+        self.bytes.reserve(count.saturating_mul(6));
+        self.ends.reserve(count);
+        self.grow(count);
+    }
+
+    /// Makes room in the table for so many spellings, a third of it free.
+    fn grow(&mut self, count: usize) {
+        let length = count.saturating_mul(3).div_ceil(2).next_power_of_two().max(16);
+        if length <= self.table.len() {
+            return;
+        }
+        let old = std::mem::replace(&mut self.table, vec![FREE; length]);
+        for spelling in old.into_iter().filter(|s| s.id != FREE.id) {
+            let at = self.free_from(spelling.hash);
+            self.table[at] = spelling;
+        }
+    }
+
+    fn free_from(&self, hash: u32) -> usize {
+        let mask = self.table.len() - 1;
+        let mut at = hash as usize & mask;
+        while self.table[at].id != FREE.id {
+            at = (at + 1) & mask;
+        }
+        at
+    }
+
+    /// The spellings from the place of a hash on, up to the first free place.
+    fn from(&self, hash: u32) -> impl Iterator<Item = Spelling> + '_ {
+        let mask = self.table.len().wrapping_sub(1);
+        let first = hash as usize & mask;
+        let places = (0..self.table.len()).map_while(move |n| self.table.get((first + n) & mask).copied());
+        places.take_while(|s| s.id != FREE.id)
     }
 
     /// The number of a spelling, new or known.
     pub fn intern(&mut self, text: &str) -> Symbol {
-        let hash = hash(text.as_bytes());
-        let Names { bytes, ends, variants, table } = self;
-        if let Some(known) = table.find(hash, |s| s.text(bytes.as_bytes()) == text.as_bytes()) {
-            return Symbol(known.id);
+        let hash = Names::hash(text);
+        let (mut first, mut variants) = (None, 0);
+        for spelling in self.from(hash).filter(|s| s.hash == hash) {
+            let known = spelling.text(self.bytes.as_bytes());
+            if known == text.as_bytes() {
+                return Symbol(spelling.id);
+            }
+            if known.eq_ignore_ascii_case(text.as_bytes()) {
+                first.get_or_insert(spelling.id);
+                variants += 1;
+            }
         }
-        let same = |s: &Spelling| s.text(bytes.as_bytes()).eq_ignore_ascii_case(text.as_bytes());
-        let first = table.find(hash, same).map(|s| s.id);
-        let id = Symbol::new(ends.len()).0;
-        let start = u32::try_from(bytes.len()).unwrap_or(u32::MAX);
-        bytes.push_str(text);
-        ends.push(u32::try_from(bytes.len()).unwrap_or(u32::MAX));
+        match first {
+            Some(first) if variants >= MOST_VARIANTS => self.fold(Symbol(first)),
+            _ => self.insert(text, hash, first),
+        }
+    }
+
+    fn insert(&mut self, text: &str, hash: u32, first: Option<u32>) -> Symbol {
+        self.taken += 1;
+        self.grow(self.taken);
+        let start = u32::try_from(self.bytes.len()).unwrap_or(u32::MAX);
+        let id = self.push(text);
         if let Some(first) = first {
-            variants.insert(id, variants.get(&first).copied().unwrap_or(first));
+            let first = self.fold(Symbol(first));
+            self.variants.insert(id.0, first.0);
         }
-        let spelling = Spelling { id, start, length: u32::try_from(text.len()).unwrap_or(u32::MAX) };
-        table.insert_unique(hash, spelling, |s| self::hash(s.text(bytes.as_bytes())));
-        Symbol(id)
+        let length = u32::try_from(text.len()).unwrap_or(u32::MAX);
+        let at = self.free_from(hash);
+        self.table[at] = Spelling { hash, id: id.0, start, length };
+        id
+    }
+
+    fn push(&mut self, text: &str) -> Symbol {
+        let id = Symbol::new(self.ends.len());
+        self.bytes.push_str(text);
+        self.ends.push(u32::try_from(self.bytes.len()).unwrap_or(u32::MAX));
+        id
     }
 
     /// A number for a spelling that is not to be looked up here, with its case-blind hash: the names of elements,
     /// nearly all of which are new, would only make the table too large for the caches.
     pub fn append(&mut self, text: &str) -> (Symbol, u32) {
-        let id = Symbol::new(self.ends.len());
-        self.bytes.push_str(text);
-        self.ends.push(u32::try_from(self.bytes.len()).unwrap_or(u32::MAX));
-        (id, Names::short_hash(text))
+        (self.push(text), Names::hash(text))
     }
 
-    /// The hash that [`Names::append`] gives.
-    pub fn short_hash(text: &str) -> u32 {
-        (hash(text.as_bytes()) >> 32) as u32
+    /// Looks at the places where names of these hashes would be found, and at their bytes, so that they are in the
+    /// caches when they are wanted: many independent looks take little longer than one.
+    pub fn warm(&self, hashes: &[u32]) {
+        let mask = self.table.len().wrapping_sub(1);
+        let bytes = self.bytes.as_bytes();
+        let start = |hash: &u32| self.table.get(*hash as usize & mask).map_or(0, |s| s.start as usize);
+        let seen = hashes.iter().fold(0u8, |all, hash| all ^ bytes.get(start(hash)).copied().unwrap_or(0));
+        std::hint::black_box(seen);
     }
 
     /// The number of a name already known in any case, as [`Names::fold`] gives it.
     pub fn find(&self, text: &str) -> Option<Symbol> {
-        let text = text.as_bytes();
-        let same = |s: &Spelling| s.text(self.bytes.as_bytes()).eq_ignore_ascii_case(text);
-        let found = self.table.find(hash(text), same)?;
+        let hash = Names::hash(text);
+        let same = |s: &Spelling| {
+            s.hash == hash && s.text(self.bytes.as_bytes()).eq_ignore_ascii_case(text.as_bytes())
+        };
+        let found = self.from(hash).find(same)?;
         Some(self.fold(Symbol(found.id)))
     }
 
@@ -146,7 +210,8 @@ impl Names {
 
     /// Gives up looking names up: only their text is wanted from here on.
     pub fn seal(&mut self) {
-        self.table = HashTable::new();
+        self.table = Vec::new();
+        self.taken = 0;
         self.bytes.shrink_to_fit();
         self.ends.shrink_to_fit();
     }
@@ -154,6 +219,22 @@ impl Names {
     /// The spelling; empty for a number that is not ours.
     pub fn text(&self, symbol: Symbol) -> &str {
         slice(&self.bytes, &self.ends, symbol.0)
+    }
+
+    /// A hash that is blind to the case of ASCII letters. Eight bytes at a time, each step a multiplication of which
+    /// both halves count: numbered names differ in few bits, and those must reach all bits of the hash.
+    pub fn hash(text: &str) -> u32 {
+        let (eights, rest) = text.as_bytes().as_chunks::<8>();
+        let mut hash = text.len() as u64;
+        for &eight in eights {
+            hash = mix(hash ^ lower(u64::from_le_bytes(eight)));
+        }
+        let mut last = [0; 8];
+        for (to, from) in last.iter_mut().zip(rest) {
+            *to = *from;
+        }
+        let hash = mix(hash ^ lower(u64::from_le_bytes(last)));
+        (hash ^ (hash >> 32)) as u32
     }
 }
 
@@ -164,21 +245,14 @@ fn slice<'a>(bytes: &'a str, ends: &[u32], id: u32) -> &'a str {
     bytes.get(start..end).unwrap_or("")
 }
 
-/// A hash that is blind to the case of ASCII letters (and, harmlessly, to bit 5 of all other characters).
-/// Eight bytes at a time, each step a multiplication of which both halves count: numbered names differ in few
-/// bits, and those must reach all bits of the hash.
-fn hash(text: &[u8]) -> u64 {
-    const FOLD: u64 = 0x2020_2020_2020_2020;
-    let (eights, rest) = text.as_chunks::<8>();
-    let mut hash = text.len() as u64;
-    for &eight in eights {
-        hash = mix(hash ^ (u64::from_le_bytes(eight) | FOLD));
-    }
-    let mut last = [0; 8];
-    for (to, from) in last.iter_mut().zip(rest) {
-        *to = *from;
-    }
-    mix(hash ^ (u64::from_le_bytes(last) | FOLD))
+/// Eight bytes with their ASCII letters in lower case.
+fn lower(eight: u64) -> u64 {
+    const ONES: u64 = 0x0101_0101_0101_0101;
+    let low = eight & (0x7F * ONES);
+    let from_a = low + (0x80 - b'A' as u64) * ONES;
+    let past_z = low + (0x7F - b'Z' as u64) * ONES;
+    let capitals = !eight & (from_a ^ past_z) & (0x80 * ONES);
+    eight | (capitals >> 2)
 }
 
 fn mix(word: u64) -> u64 {
@@ -201,5 +275,27 @@ mod tests {
         assert_eq!(names.text(ids[3]), "in");
         assert_eq!(names.fold(ids[1]), ids[0]);
         assert_eq!(names.find("oUt"), Some(ids[0]));
+    }
+
+    #[test]
+    fn many_names_are_told_apart() {
+        let mut names = Names::default();
+        let ids: Vec<_> = (0..5000).map(|n| names.intern(&format!("node_[{n}]^"))).collect();
+        for (n, &id) in ids.iter().enumerate() {
+            assert_eq!(names.find(&format!("NODE_[{n}]^")), Some(id));
+            assert_eq!(names.find(&format!("node_{{{n}]^")), None);
+        }
+    }
+
+    #[test]
+    fn a_name_written_in_very_many_ways_is_one_name() {
+        let mut names = Names::default();
+        let spelling = |n: u32| {
+            let one = |bit: u32| if n >> bit & 1 == 1 { 'A' } else { 'a' };
+            (0..12).map(one).collect::<String>()
+        };
+        let ids: Vec<_> = (0..4096).map(|n| names.intern(&spelling(n))).collect();
+        assert!(ids.iter().all(|&id| names.fold(id) == ids[0]));
+        assert!(names.ends.len() <= 2 * MOST_VARIANTS, "{}", names.ends.len());
     }
 }

@@ -1,7 +1,7 @@
 //! Includes: where files are looked for, which may be opened, and the sections of libraries.
 
 use super::line::Line;
-use super::read::Reader;
+use super::read::{Reader, load};
 use crate::finding::{Finding, Severity};
 use crate::syntax::{Line as Cut, LineKind, Token};
 use crate::text::{FileId, Span};
@@ -69,12 +69,12 @@ impl Reader<'_> {
         if self.stack.len() >= DEEPEST || self.parsed.includes.len() >= MOST_FILES {
             return self.tell_too_deep(span);
         }
-        match self.loader.load(&path) {
-            Ok(bytes) if self.bytes.saturating_add(bytes.len()) > MOST_BYTES => self.tell_too_much(span),
-            Ok(bytes) => {
+        match load(self.loader, &path) {
+            Ok((bytes, _)) if self.bytes.saturating_add(bytes.len()) > MOST_BYTES => self.tell_too_much(span),
+            Ok((bytes, length)) => {
                 self.stack.push(key);
                 let fields = std::mem::take(&mut self.fields);
-                self.file(&path, &bytes, Some(line.span), section.as_deref());
+                self.file(&path, bytes, length, Some(line.span), section.as_deref());
                 self.fields = fields;
                 self.stack.pop();
             }

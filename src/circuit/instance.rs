@@ -42,8 +42,16 @@ impl Expander<'_> {
         if let Some(reason) = self.obstacle(line, definition, first_pin) {
             return self.opaque(line, first_pin, reason);
         }
+        let is_root = self.frames.len() <= 1;
+        if is_root {
+            self.resolve_pins();
+        }
         let pins = self.circuit.pins.split_off(first_pin);
         self.expand_instance(line, definition, &pins);
+        if is_root {
+            // those inside the instance know their nodes
+            self.resolved = self.circuit.pins.len();
+        }
     }
 
     /// Keeps an instance whose inside is not known.

@@ -6,12 +6,10 @@ use super::title::reads_as_element;
 use crate::config::Options;
 use crate::finding::{Edit, Finding, Severity};
 use crate::syntax::{self, Fields, Line as Cut, LineKind};
-use crate::text::{FileId, LoadProblem, Loader, Sources, Span};
+use crate::text::{FileId, LONGEST_FILE, LoadProblem, Loader, Sources, Span};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::path::{Path, PathBuf};
 
-/// Longest file that is read, in bytes.
-pub(super) const LONGEST_FILE: usize = 512 << 20;
 /// Longest statement that is read, in bytes, its continuation lines included.
 pub(super) const LONGEST_STATEMENT: u32 = 1 << 20;
 
@@ -42,7 +40,7 @@ pub(super) fn read_files(
     root: &Path,
     options: &Options,
 ) -> Result<(Sources, Parsed), LoadProblem> {
-    let bytes = loader.load(root)?;
+    let (bytes, length) = load(loader, root)?;
     let boundary = loader.boundary(root);
     let mut reader = Reader {
         loader,
@@ -58,8 +56,21 @@ pub(super) fn read_files(
         counts: FxHashMap::default(),
     };
     reader.stack.push((reader.loader.resolve(root), None));
-    reader.file(root, &bytes, None, None);
+    reader.file(root, bytes, length, None, None);
+    super::told::tell_rest(&mut reader.parsed.findings, &reader.counts);
     Ok((reader.sources, reader.parsed))
+}
+
+/// The bytes of a file and their number; one that is too long is not loaded.
+pub(super) fn load(loader: &mut dyn Loader, path: &Path) -> Result<(Vec<u8>, usize), LoadProblem> {
+    let length = loader.size(path).map_or(0, |size| usize::try_from(size).unwrap_or(usize::MAX));
+    if length > LONGEST_FILE {
+        return Ok((Vec::new(), length));
+    }
+    loader.load(path).map(|bytes| {
+        let length = bytes.len();
+        (bytes, length)
+    })
 }
 
 /// The dot lines that may close a foreign block, by the word behind `.end`: their numbers in the file.
@@ -67,13 +78,20 @@ pub(super) type Closers = FxHashMap<String, Vec<usize>>;
 
 impl Reader<'_> {
     /// Reads one file, or one section of it, into the open block.
-    pub(super) fn file(&mut self, path: &Path, bytes: &[u8], from: Option<Span>, section: Option<&str>) {
-        let too_long = bytes.len() > LONGEST_FILE;
+    pub(super) fn file(
+        &mut self,
+        path: &Path,
+        bytes: Vec<u8>,
+        length: usize,
+        from: Option<Span>,
+        section: Option<&str>,
+    ) {
+        let too_long = length > LONGEST_FILE;
         self.bytes = self.bytes.saturating_add(bytes.len());
-        let file = self.sources.add(path.display().to_string(), if too_long { b"" } else { bytes });
+        let file = self.sources.add(path.display().to_string(), if too_long { Vec::new() } else { bytes });
         self.parsed.includes.push(from);
         if too_long {
-            return self.tell_long_file(Span::new(file, 0, 0), bytes.len());
+            return self.tell_long_file(Span::new(file, 0, 0), length);
         }
         let is_root = from.is_none();
         let cut = syntax::lines(self.text(file), is_root);
@@ -232,7 +250,9 @@ impl Reader<'_> {
 
     fn tell_long_file(&mut self, span: Span, length: usize) {
         self.parsed.incomplete = true;
-        let message = format!("this file is {length} bytes long, and at most {LONGEST_FILE} are read");
+        let mebibytes = |bytes: usize| bytes.div_ceil(1 << 20);
+        let (length, most) = (mebibytes(length), mebibytes(LONGEST_FILE));
+        let message = format!("this file is {length} MiB long, and at most {most} MiB are read");
         let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
             .help("Break it into several files, or check its parts one by one.");

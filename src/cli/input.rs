@@ -1,7 +1,6 @@
 //! Where netlists come from: files, directories that are walked, and standard input as `-`.
 
-use kneewise::text::{Disk, LoadProblem, Loader};
-use std::io::Read;
+use kneewise::text::{Disk, LoadProblem, Loader, bounded};
 use std::path::{Path, PathBuf};
 
 /// What a file in a directory must end in to be a netlist of its own.
@@ -26,11 +25,14 @@ impl Loader for Input {
             return self.disk.load(path);
         }
         if self.standard.is_none() {
-            let mut bytes = Vec::new();
-            std::io::stdin().lock().read_to_end(&mut bytes).map_err(|e| LoadProblem(e.to_string()))?;
+            let bytes = bounded(std::io::stdin().lock()).map_err(|e| LoadProblem(e.to_string()))?;
             self.standard = Some(bytes);
         }
         Ok(self.standard.clone().unwrap_or_default())
+    }
+
+    fn size(&self, path: &Path) -> Option<u64> {
+        if is_standard_input(path) { None } else { self.disk.size(path) }
     }
 
     fn exists(&self, path: &Path) -> bool {

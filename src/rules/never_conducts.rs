@@ -6,6 +6,7 @@ use crate::finding::{Finding, Severity};
 use crate::topology::Barred;
 use petgraph::unionfind::UnionFind;
 use rustc_hash::{FxHashMap, FxHashSet};
+use std::cell::LazyCell;
 use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
@@ -48,8 +49,9 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let opposed: FxHashSet<ElementId> =
         super::opposed_in_series::pairs(evidence).into_iter().flat_map(|p| p.diodes).collect();
+    let feed_is_cut = LazyCell::new(|| feed_is_cut(evidence));
     let is_told = |cluster: &Vec<Barred>| {
-        cluster.iter().any(|b| b.loose_end || opposed.contains(&b.diode)) || feed_is_cut(evidence)
+        cluster.iter().any(|b| b.loose_end || opposed.contains(&b.diode)) || *feed_is_cut
     };
     clusters(evidence)
         .iter()

@@ -96,7 +96,10 @@ pub fn pairs(evidence: &Evidence<'_>) -> Vec<Opposed> {
 
 fn pair_at(evidence: &Evidence<'_>, node: NodeId) -> Option<Opposed> {
     let circuit = evidence.circuit;
-    if evidence.wiring.touching.at(node).len() < 2 || evidence.wiring.noted.is_supplied(node) {
+    let at = evidence.wiring.touching.at(node);
+    // sensing inputs are pins behind the second, so that these may be left uncounted without a look at the element
+    let carrying = at.iter().filter(|t| t.pin < 2).count();
+    if at.len() < 2 || carrying > 2 || evidence.wiring.noted.is_supplied(node) {
         return None;
     }
     let mut touches = evidence.wiring.touching.carrying(circuit, node);

@@ -3,7 +3,6 @@
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId, NoteKind};
 use crate::finding::{Finding, Severity};
-use rustc_hash::FxHashMap;
 
 pub const RULE: Rule = Rule {
     name: "parallel-diodes",
@@ -35,18 +34,24 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
-    let mut groups: FxHashMap<(NodeId, NodeId, ModelId), Vec<ElementId>> = FxHashMap::default();
+    let mut diodes: Vec<(NodeId, NodeId, ModelId, ElementId)> = Vec::new();
     for (id, element) in evidence.circuit.elements() {
         if let Behaviour::Diode { model: Some(model), .. } = element.behaviour {
             let (anode, cathode) = (evidence.circuit.node(id, 0), evidence.circuit.node(id, 1));
             if anode != cathode {
-                groups.entry((anode, cathode, model)).or_default().push(id);
+                diodes.push((anode, cathode, model, id));
             }
         }
     }
-    let mut groups: Vec<_> = groups.into_iter().filter(|(_, diodes)| diodes.len() > 1).collect();
-    groups.sort_by_key(|(_, diodes)| diodes[0]);
-    groups.iter().filter(|(_, d)| !is_matched(evidence, d)).map(|(_, d)| judge(evidence, d)).collect()
+    diodes.sort_unstable();
+    let same = |a: &(NodeId, NodeId, ModelId, ElementId), b: &(NodeId, NodeId, ModelId, ElementId)| {
+        (a.0, a.1, a.2) == (b.0, b.1, b.2)
+    };
+    let groups = diodes.chunk_by(same).filter(|group| group.len() > 1);
+    let mut groups: Vec<Vec<ElementId>> =
+        groups.map(|group| group.iter().map(|diode| diode.3).collect()).collect();
+    groups.sort();
+    groups.iter().filter(|diodes| !is_matched(evidence, diodes)).map(|d| judge(evidence, d)).collect()
 }
 
 fn judge(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Finding {

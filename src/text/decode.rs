@@ -17,7 +17,7 @@ pub enum Encoding {
 
 /// Decodes a whole file. Invalid UTF-16 units become U+FFFD.
 /// Where carriage returns alone end the lines, they become line feeds.
-pub fn decode(bytes: &[u8]) -> (String, Encoding) {
+pub fn decode(bytes: Vec<u8>) -> (String, Encoding) {
     let (text, encoding) = decoded(bytes);
     if memchr::memchr(b'\n', text.as_bytes()).is_none() && text.contains('\r') {
         return (text.replace('\r', "\n"), encoding);
@@ -25,10 +25,10 @@ pub fn decode(bytes: &[u8]) -> (String, Encoding) {
     (text, encoding)
 }
 
-fn decoded(bytes: &[u8]) -> (String, Encoding) {
-    match bytes {
+fn decoded(bytes: Vec<u8>) -> (String, Encoding) {
+    match bytes.as_slice() {
         [0xEF, 0xBB, 0xBF, rest @ ..] => {
-            let (text, encoding) = utf8_or_latin1(rest);
+            let (text, encoding) = utf8_or_latin1(rest.to_vec());
             (text, if encoding == Encoding::Utf8 { Encoding::Utf8Bom } else { encoding })
         }
         [0xFF, 0xFE, rest @ ..] => (utf16(rest, u16::from_le_bytes), Encoding::Utf16Le),
@@ -37,10 +37,11 @@ fn decoded(bytes: &[u8]) -> (String, Encoding) {
     }
 }
 
-fn utf8_or_latin1(bytes: &[u8]) -> (String, Encoding) {
-    if let Ok(text) = std::str::from_utf8(bytes) {
-        return (text.to_owned(), Encoding::Utf8);
-    }
+fn utf8_or_latin1(bytes: Vec<u8>) -> (String, Encoding) {
+    let bytes = match String::from_utf8(bytes) {
+        Ok(text) => return (text, Encoding::Utf8),
+        Err(problem) => problem.into_bytes(),
+    };
     // only the stray bytes are Latin-1: the rest of such files is often proper UTF-8
     let mut text = String::with_capacity(bytes.len() + 16);
     for chunk in bytes.utf8_chunks() {
@@ -76,7 +77,7 @@ mod tests {
         big.extend(plain.encode_utf16().flat_map(u16::to_be_bytes));
         let latin: Vec<u8> = plain.chars().map(|c| u8::try_from(u32::from(c)).unwrap()).collect();
         for bytes in [plain.as_bytes().to_vec(), with_bom, little, big, latin] {
-            assert_eq!(decode(&bytes).0, plain);
+            assert_eq!(decode(bytes).0, plain);
         }
     }
 }

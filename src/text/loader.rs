@@ -1,7 +1,11 @@
 //! Where bytes come from: the disk, or memory (tests, standard input, two revisions side by side).
 
 use std::collections::BTreeMap;
+use std::io::Read;
 use std::path::{Path, PathBuf};
+
+/// Longest file that is read, in bytes.
+pub const LONGEST_FILE: usize = 512 << 20;
 
 /// Why a file could not be had, in words for a person.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -14,6 +18,12 @@ pub trait Loader {
     /// # Errors
     /// [`LoadProblem`] says in words why there are none.
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem>;
+    /// The size of the file in bytes, where it is known without reading it: files longer than [`LONGEST_FILE`] are
+    /// not loaded.
+    fn size(&self, path: &Path) -> Option<u64> {
+        let _ = path;
+        None
+    }
     /// Whether there is a file at `path`.
     fn exists(&self, path: &Path) -> bool;
     /// The path with links and `..` resolved, to tell two files apart and to confine includes.
@@ -24,13 +34,26 @@ pub trait Loader {
     }
 }
 
+/// All bytes, or one more than [`LONGEST_FILE`]: what never ends is not read to its end.
+///
+/// # Errors
+/// Those of reading.
+pub fn bounded(from: impl Read) -> std::io::Result<Vec<u8>> {
+    let mut bytes = Vec::new();
+    from.take(LONGEST_FILE as u64 + 1).read_to_end(&mut bytes)?;
+    Ok(bytes)
+}
+
 /// The file system.
 #[derive(Debug, Default, Clone, Copy)]
 pub struct Disk;
 
 impl Loader for Disk {
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
-        std::fs::read(path).map_err(|e| LoadProblem(e.to_string()))
+        std::fs::File::open(path).and_then(bounded).map_err(|e| LoadProblem(e.to_string()))
+    }
+    fn size(&self, path: &Path) -> Option<u64> {
+        std::fs::metadata(path).ok().filter(std::fs::Metadata::is_file).map(|m| m.len())
     }
     fn exists(&self, path: &Path) -> bool {
         path.is_file()

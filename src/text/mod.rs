@@ -9,6 +9,6 @@ mod span;
 
 pub use decode::{Encoding, decode};
 pub use encode::{encode, original_offsets};
-pub use loader::{Disk, LoadProblem, Loader, Memory};
+pub use loader::{Disk, LONGEST_FILE, LoadProblem, Loader, Memory, bounded};
 pub use nearest::nearest;
 pub use span::{FileId, Position, SourceFile, Sources, Span};

@@ -1,6 +1,7 @@
 //! Where things stand: file numbers, byte ranges, and their translation to lines and columns.
 
 use super::decode::{Encoding, decode};
+use std::sync::OnceLock;
 
 /// Number of a file in [`Sources`].
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -56,19 +57,23 @@ pub struct SourceFile {
     pub text: String,
     /// How the bytes were encoded on disk.
     pub encoding: Encoding,
-    line_starts: Vec<u32>,
+    /// Made when the first place is asked for: a file without findings needs none.
+    line_starts: OnceLock<Vec<u32>>,
 }
 
 impl SourceFile {
     /// Byte offsets of the line starts; the first is 0.
     pub fn line_starts(&self) -> &[u32] {
-        &self.line_starts
+        self.line_starts.get_or_init(|| {
+            let behind = |at: usize| Span::new(FileId(0), at + 1, 0).start;
+            std::iter::once(0).chain(memchr::memchr_iter(b'\n', self.text.as_bytes()).map(behind)).collect()
+        })
     }
 
     /// The line (from 0) that holds byte `offset`.
     pub fn line_index(&self, offset: usize) -> usize {
         let offset = u32::try_from(offset).unwrap_or(u32::MAX);
-        self.line_starts.partition_point(|&start| start <= offset).saturating_sub(1)
+        self.line_starts().partition_point(|&start| start <= offset).saturating_sub(1)
     }
 
     /// Line and column of byte `offset`; past the end it is the end.
@@ -78,7 +83,7 @@ impl SourceFile {
             offset -= 1;
         }
         let line = self.line_index(offset);
-        let start = self.line_starts.get(line).map_or(0, |&s| s as usize);
+        let start = self.line_starts().get(line).map_or(0, |&s| s as usize);
         let column = self.text.get(start..offset).map_or(0, |t| t.chars().count());
         Position { line: line + 1, column: column + 1 }
     }
@@ -92,15 +97,10 @@ pub struct Sources {
 
 impl Sources {
     /// Decodes `bytes` and keeps them under `name`.
-    pub fn add(&mut self, name: impl Into<String>, bytes: &[u8]) -> FileId {
-        let (text, encoding) = decode(bytes);
-        let line_starts = std::iter::once(0)
-            .chain(
-                memchr::memchr_iter(b'\n', text.as_bytes()).map(|at| Span::new(FileId(0), at + 1, 0).start),
-            )
-            .collect();
+    pub fn add(&mut self, name: impl Into<String>, bytes: impl Into<Vec<u8>>) -> FileId {
+        let (text, encoding) = decode(bytes.into());
         let id = FileId(u32::try_from(self.files.len()).unwrap_or(u32::MAX));
-        self.files.push(SourceFile { name: name.into(), text, encoding, line_starts });
+        self.files.push(SourceFile { name: name.into(), text, encoding, line_starts: OnceLock::new() });
         id
     }
 

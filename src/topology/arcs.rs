@@ -3,11 +3,10 @@
 //! connected components of it lies in no directed loop but in a directed cut, so it never carries forward
 //! current whatever the values are (colouring lemma: Minty 1960).
 
-use super::groups::{Groups, by_links};
-use super::links::can_break_down;
-use super::noted::Noted;
+use super::groups::{Groups, Joints};
+use super::links::is_one_way;
 use super::touching::Touching;
-use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
+use crate::circuit::{Circuit, ElementId, NodeId};
 use petgraph::algo::kosaraju_scc;
 use petgraph::graph::{DiGraph, NodeIndex};
 
@@ -35,14 +34,9 @@ pub struct Barred {
     pub loose_end: bool,
 }
 
-/// A diode that passes current one way only.
-fn is_one_way(circuit: &Circuit, id: ElementId) -> bool {
-    matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id)
-}
-
 impl OneWay {
-    pub(super) fn of(circuit: &Circuit, noted: &Noted, touching: &Touching) -> Self {
-        let two_way = Groups::from(by_links(circuit, noted, |id, _| !is_one_way(circuit, id)));
+    pub(super) fn of(circuit: &Circuit, joints: &Joints, touching: &Touching) -> Self {
+        let two_way = joints.two_way();
         let mut graph: DiGraph<(), ElementId> = DiGraph::with_capacity(two_way.count(), 0);
         for _ in 0..two_way.count() {
             graph.add_node(());
@@ -82,7 +76,7 @@ fn loose_ends(circuit: &Circuit, touching: &Touching, groups: &Groups) -> Vec<u3
     let mut loose = vec![0; groups.count()];
     for n in 1..circuit.nodes.len() {
         let node = NodeId::new(n);
-        if touching.only_joining(circuit, node).is_some() {
+        if touching.only_joining(node).is_some() {
             loose[groups.of(node)] += 1;
         }
     }

@@ -1,6 +1,6 @@
 //! Nodes grouped by what joins them: islands, related islands, and groups held by direct-current paths.
 
-use super::links::{Link, is_opaque, links};
+use super::links::{Link, is_one_way, is_opaque, links};
 use super::noted::Noted;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use petgraph::unionfind::UnionFind;
@@ -53,57 +53,89 @@ impl Groups {
 }
 
 /// Joins two pins of an element.
-pub(super) fn join(circuit: &Circuit, sets: &mut UnionFind<u32>, id: ElementId, a: usize, b: usize) {
+fn join(circuit: &Circuit, sets: &mut UnionFind<u32>, id: ElementId, a: usize, b: usize) {
     sets.union(circuit.node(id, a).0, circuit.node(id, b).0);
 }
 
-/// Joins what the links that `wanted` picks join; unknown elements and supplied nodes are joined to ground.
-pub(super) fn by_links(
-    circuit: &Circuit,
-    noted: &Noted,
-    wanted: impl Fn(ElementId, Link) -> bool,
-) -> UnionFind<u32> {
-    let mut sets = UnionFind::new(circuit.nodes.len());
-    for (id, _) in circuit.elements() {
-        for (a, b, link) in links(circuit, id) {
-            if wanted(id, link) {
-                join(circuit, &mut sets, id, a, b);
+/// Two nodes that a link joins.
+#[derive(Debug, Clone, Copy)]
+struct Joint {
+    nodes: (NodeId, NodeId),
+    link: Link,
+    /// The link is a diode that passes current one way only.
+    one_way: bool,
+}
+
+/// All links of a circuit, gone through once: each grouping of the nodes takes those it wants.
+pub(super) struct Joints {
+    count: usize,
+    joints: Vec<Joint>,
+    /// Nodes that what is not known, or a note, may join to ground.
+    grounded: Vec<NodeId>,
+}
+
+impl Joints {
+    pub(super) fn of(circuit: &Circuit, noted: &Noted) -> Self {
+        let mut joints = Vec::with_capacity(circuit.elements.len());
+        let mut grounded = noted.supplied.clone();
+        for (id, _) in circuit.elements() {
+            let pins = circuit.pins(id);
+            let one_way = is_one_way(circuit, id);
+            for (a, b, link) in links(circuit, id) {
+                joints.push(Joint { nodes: (pins[a].node, pins[b].node), link, one_way });
+            }
+            if is_opaque(circuit, id) {
+                grounded.extend(pins.first().map(|pin| pin.node));
             }
         }
-        if is_opaque(circuit, id) && !circuit.pins(id).is_empty() {
-            sets.union(circuit.node(id, 0).0, NodeId::GROUND.0);
+        Joints { count: circuit.nodes.len(), joints, grounded }
+    }
+
+    fn by(&self, wanted: impl Fn(&Joint) -> bool) -> UnionFind<u32> {
+        let mut sets = UnionFind::new(self.count);
+        for joint in self.joints.iter().filter(|joint| wanted(joint)) {
+            sets.union(joint.nodes.0.0, joint.nodes.1.0);
         }
-    }
-    for node in &noted.supplied {
-        sets.union(node.0, NodeId::GROUND.0);
-    }
-    sets
-}
-
-pub(super) fn islands(circuit: &Circuit, noted: &Noted) -> Groups {
-    Groups::from(by_links(circuit, noted, |_, _| true))
-}
-
-pub(super) fn held(circuit: &Circuit, noted: &Noted) -> Groups {
-    let mut sets = by_links(circuit, noted, |_, link| link == Link::Direct);
-    for &(node, _) in &circuit.initial {
-        // an initial voltage tells what the rest leaves open
-        sets.union(node.0, NodeId::GROUND.0);
-    }
-    for (id, element) in circuit.elements() {
-        if let Behaviour::Capacitor { initial: Some(_), .. } = element.behaviour {
-            join(circuit, &mut sets, id, 0, 1);
+        for node in &self.grounded {
+            sets.union(node.0, NodeId::GROUND.0);
         }
+        sets
     }
-    Groups::from(sets)
+
+    /// Nodes joined by what passes current both ways.
+    pub(super) fn two_way(&self) -> Groups {
+        Groups::from(self.by(|joint| !joint.one_way))
+    }
+
+    /// Islands; and those that are related, by couplings, sensing inputs and control currents as well.
+    pub(super) fn islands_and_related(&self, circuit: &Circuit) -> (Groups, Groups) {
+        let sets = self.by(|_| true);
+        let mut related = sets.clone();
+        relate(circuit, &mut related);
+        (Groups::from(sets), Groups::from(related))
+    }
+
+    /// Nodes held by paths that pass a direct current.
+    pub(super) fn held(&self, circuit: &Circuit) -> Groups {
+        let mut sets = self.by(|joint| joint.link == Link::Direct);
+        for &(node, _) in &circuit.initial {
+            // an initial voltage tells what the rest leaves open
+            sets.union(node.0, NodeId::GROUND.0);
+        }
+        for (id, element) in circuit.elements() {
+            if let Behaviour::Capacitor { initial: Some(_), .. } = element.behaviour {
+                join(circuit, &mut sets, id, 0, 1);
+            }
+        }
+        Groups::from(sets)
+    }
 }
 
-pub(super) fn related(circuit: &Circuit, noted: &Noted) -> Groups {
-    let mut sets = by_links(circuit, noted, |_, _| true);
+fn relate(circuit: &Circuit, sets: &mut UnionFind<u32>) {
     for (id, element) in circuit.elements() {
         // sensing inputs
         for pin in 2..circuit.pins(id).len() {
-            join(circuit, &mut sets, id, 0, pin);
+            join(circuit, sets, id, 0, pin);
         }
         let mut relate = |other: ElementId| sets.union(circuit.node(id, 0).0, circuit.node(other, 0).0);
         match &element.behaviour {
@@ -120,5 +152,4 @@ pub(super) fn related(circuit: &Circuit, noted: &Noted) -> Groups {
             _ => {}
         }
     }
-    Groups::from(sets)
 }

@@ -72,3 +72,8 @@ pub fn can_break_down(circuit: &Circuit, id: ElementId) -> bool {
         _ => true,
     }
 }
+
+/// A diode that passes current one way only.
+pub(super) fn is_one_way(circuit: &Circuit, id: ElementId) -> bool {
+    matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id)
+}

@@ -37,7 +37,7 @@ const MOST_STEPS: usize = 4_000_000;
 
 /// How eagerly an element becomes part of the forest, `None` for one that fixes no voltage: sources first, so
 /// that loops of sources alone are found as such.
-fn rank(behaviour: &Behaviour) -> Option<u8> {
+fn rank(behaviour: &Behaviour) -> Option<usize> {
     match behaviour {
         Behaviour::VoltageSource(_) => Some(0),
         Behaviour::VoltageByVoltage { .. } | Behaviour::VoltageByCurrent { .. } => Some(1),
@@ -75,17 +75,18 @@ impl Potentials {
         let mut sets = UnionFind::<u32>::new(count);
         let mut kept = Vec::new();
         let mut closing = Vec::new();
-        for wanted in 0..4 {
-            for (id, element) in circuit.elements() {
-                if rank(&element.behaviour) != Some(wanted) {
-                    continue;
-                }
-                let (a, b) = (circuit.node(id, 0), circuit.node(id, 1));
-                if sets.union(a.0, b.0) {
-                    kept.push((a, b, id));
-                } else if a != b {
-                    closing.push(id);
-                }
+        let mut by_rank: [Vec<ElementId>; 4] = Default::default();
+        for (id, element) in circuit.elements() {
+            if let Some(ids) = rank(&element.behaviour).and_then(|rank| by_rank.get_mut(rank)) {
+                ids.push(id);
+            }
+        }
+        for id in by_rank.into_iter().flatten() {
+            let (a, b) = (circuit.node(id, 0), circuit.node(id, 1));
+            if sets.union(a.0, b.0) {
+                kept.push((a, b, id));
+            } else if a != b {
+                closing.push(id);
             }
         }
         let mut forest =

@@ -54,13 +54,13 @@ impl Wiring {
     pub fn of(circuit: &Circuit) -> Self {
         let touching = Touching::of(circuit);
         let noted = Noted::of(circuit);
-        let islands = groups::islands(circuit, &noted);
-        let related = groups::related(circuit, &noted);
-        let held = groups::held(circuit, &noted);
+        let joints = groups::Joints::of(circuit, &noted);
+        let (islands, related) = joints.islands_and_related(circuit);
+        let held = joints.held(circuit);
         let cuts = cuts::cuts(circuit, &touching, &held, &islands);
         let potentials = Potentials::of(circuit);
         let loops = loops::loops(circuit, &potentials);
-        let one_way = OneWay::of(circuit, &noted, &touching);
+        let one_way = OneWay::of(circuit, &joints, &touching);
         Wiring { touching, noted, islands, related, held, cuts, loops, potentials, one_way }
     }
 }

@@ -1,7 +1,6 @@
 //! Names one letter apart. Digits and signs count as system (n1 n2, a[3] a[4], in+ in-), never as slips.
 
 use rustc_hash::FxHashMap;
-use std::hash::Hash;
 
 /// A suspect name and the known name one slip away from it.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
@@ -12,39 +11,57 @@ pub struct Similar {
     pub known: usize,
 }
 
+/// A suspect while its likes are looked for.
+struct Suspect<Place> {
+    index: usize,
+    place: Place,
+    folded: String,
+    found: usize,
+}
+
 /// For each suspect the known names of its own place that are one slip away: a letter changed, missing, added,
-/// or two neighbours exchanged. Names are folded to one case by the caller. Linear in the length of all names,
-/// since only names with a letter struck out are compared, by hash; at most `MOST` for each suspect.
-pub fn similar<'a, Place: Copy + Eq + Hash>(
+/// or two neighbours exchanged. Case does not matter. Linear in the length of all names, since only names with a
+/// letter struck out are compared, by hash; at most `MOST` for each suspect.
+pub fn similar<'a, Place: Copy + Eq>(
     suspects: impl Iterator<Item = (usize, Place, &'a str)>,
     known: impl Iterator<Item = (usize, Place, &'a str)>,
 ) -> Vec<Similar> {
-    let mut struck: FxHashMap<(Place, String), Vec<usize>> = FxHashMap::default();
-    let mut names = FxHashMap::default();
+    let mut forms = Forms::default();
+    let mut struck: FxHashMap<u64, Vec<usize>> = FxHashMap::default();
+    // nearly all forms of nearly all names are in nobody's list: one bit tells
+    let mut marks = vec![0u64; 1 << 14];
+    let mut names: Vec<Suspect<Place>> = Vec::new();
     for (index, place, name) in suspects {
-        names.insert(index, (name, 0usize));
-        for form in forms(name) {
-            struck.entry((place, form)).or_default().push(index);
+        for &form in forms.of(name) {
+            struck.entry(form).or_default().push(names.len());
+            marks[mark(form).0] |= mark(form).1;
         }
+        names.push(Suspect { index, place, folded: forms.folded.clone(), found: 0 });
     }
-    let mut found = Vec::new();
+    let mut pairs = Vec::new();
     if names.is_empty() {
-        return found;
+        return pairs;
     }
     for (index, place, name) in known {
-        for form in forms(name) {
-            for &suspect in struck.get(&(place, form)).into_iter().flatten() {
-                let Some((other, count)) = names.get_mut(&suspect) else { continue };
-                if *count < MOST && suspect != index && is_slip(other, name) {
-                    *count += 1;
-                    found.push(Similar { suspect, known: index });
+        forms.of(name);
+        for form in forms.hashes.iter().filter(|form| marks[mark(**form).0] & mark(**form).1 != 0) {
+            for &number in struck.get(form).into_iter().flatten() {
+                let Some(suspect) = names.get_mut(number).filter(|s| s.place == place) else { continue };
+                if suspect.found < MOST && suspect.index != index && is_slip(&suspect.folded, &forms.folded) {
+                    suspect.found += 1;
+                    pairs.push(Similar { suspect: suspect.index, known: index });
                 }
             }
         }
     }
-    found.sort();
-    found.dedup();
-    found
+    pairs.sort();
+    pairs.dedup();
+    pairs
+}
+
+/// The word and the bit of a hash's mark.
+fn mark(form: u64) -> (usize, u64) {
+    ((form >> 50) as usize, 1 << (form >> 44 & 63))
 }
 
 /// More than this and the names are a system, not slips.
@@ -52,19 +69,51 @@ const MOST: usize = 64;
 /// Shorter names differ by one letter too easily.
 const SHORTEST: usize = 3;
 
-/// The name itself and the name with each one of its letters struck out.
-fn forms(name: &str) -> Vec<String> {
-    let letters: Vec<char> = name.chars().collect();
-    if letters.len() < SHORTEST {
-        return Vec::new();
-    }
-    let mut forms = vec![name.to_owned()];
-    for (at, letter) in letters.iter().enumerate() {
-        if letter.is_alphabetic() {
-            forms.push(letters.iter().enumerate().filter(|(n, _)| *n != at).map(|(_, c)| *c).collect());
+/// Hashes of a name and of the name with each one of its letters struck out; its buffers are used again.
+#[derive(Default)]
+struct Forms {
+    folded: String,
+    letters: Vec<char>,
+    /// Of the letters from each on: their hash, and the factor that moves what stands before them past them.
+    tails: Vec<(u64, u64)>,
+    hashes: Vec<u64>,
+}
+
+impl Forms {
+    fn of(&mut self, name: &str) -> &[u64] {
+        const FACTOR: u64 = 0xD6E8_FEB8_6659_FD93;
+        let Forms { folded, letters, tails, hashes } = self;
+        folded.clear();
+        folded.extend(name.chars().flat_map(char::to_lowercase));
+        letters.clear();
+        letters.extend(folded.chars());
+        hashes.clear();
+        if letters.len() < SHORTEST {
+            return hashes;
         }
+        tails.clear();
+        tails.push((0, 1));
+        let (mut tail, mut factor) = (0u64, 1u64);
+        for &letter in letters.iter().rev() {
+            tail = tail.wrapping_add(u64::from(letter).wrapping_mul(factor));
+            factor = factor.wrapping_mul(FACTOR);
+            tails.push((tail, factor));
+        }
+        let mut head = 0u64;
+        for (&letter, &(tail, factor)) in letters.iter().zip(tails.iter().rev().skip(1)) {
+            if letter.is_alphabetic() {
+                hashes.push(spread(head.wrapping_mul(factor).wrapping_add(tail)));
+            }
+            head = head.wrapping_mul(FACTOR).wrapping_add(u64::from(letter));
+        }
+        hashes.push(spread(head));
+        hashes
     }
-    forms
+}
+
+/// The low bits of a sum of products reach its high bits.
+fn spread(hash: u64) -> u64 {
+    (hash ^ hash >> 32).wrapping_mul(0x9E37_79B9_7F4A_7C15)
 }
 
 /// Whether one slip of a letter leads from one name to the other.

@@ -2,6 +2,7 @@
 
 use super::links;
 use crate::circuit::{Circuit, ElementId, NodeId};
+use rustc_hash::FxHashSet;
 
 /// One pin at a node.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
@@ -17,6 +18,8 @@ pub struct Touch {
 pub struct Touching {
     starts: Vec<u32>,
     touches: Vec<Touch>,
+    /// Elements whose pins are all on one node: they join it to nothing.
+    idle: FxHashSet<ElementId>,
 }
 
 impl Touching {
@@ -39,7 +42,12 @@ impl Touching {
                 *at += 1;
             }
         }
-        Touching { starts, touches }
+        let is_idle = |id: &ElementId| match circuit.pins(*id) {
+            [first, rest @ ..] => rest.iter().all(|pin| pin.node == first.node),
+            [] => false,
+        };
+        let idle = circuit.elements().map(|(id, _)| id).filter(is_idle).collect();
+        Touching { starts, touches, idle }
     }
 
     /// The pins at a node.
@@ -56,8 +64,8 @@ impl Touching {
 
     /// The only element that joins a node to anything: as [`Self::only`], elements with both ends on the node
     /// left out.
-    pub fn only_joining(&self, circuit: &Circuit, node: NodeId) -> Option<Touch> {
-        let joins = |t: &&Touch| circuit.pins(t.element).iter().any(|p| p.node != node);
+    pub fn only_joining(&self, node: NodeId) -> Option<Touch> {
+        let joins = |t: &&Touch| self.idle.is_empty() || !self.idle.contains(&t.element);
         let mut touches = self.at(node).iter().filter(joins);
         let first = touches.next()?;
         touches.all(|t| t.element == first.element).then_some(*first)

@@ -79,19 +79,17 @@ fn find_slips(evidence: &Evidence<'_>, loose: &mut [LooseEnd]) {
     if loose.is_empty() {
         return;
     }
-    let folded: Vec<String> =
-        circuit.nodes.iter().map(|node| circuit.text(node.name).to_lowercase()).collect();
     let place = |n: usize| circuit.nodes[n].scope;
+    let name = |n: usize| circuit.text(circuit.nodes[n].name);
+    let with_place = |n: usize| (n, place(n), name(n));
     let suspects = loose.iter().map(|end| end.node.index());
-    let pairs = similar(
-        suspects.map(|n| (n, place(n), folded[n].as_str())),
-        folded.iter().enumerate().skip(1).map(|(n, name)| (n, place(n), name.as_str())),
-    );
+    let pairs = similar(suspects.map(with_place), (1..circuit.nodes.len()).map(with_place));
     let is_loose: FxHashSet<NodeId> = loose.iter().map(|end| end.node).collect();
     let mut meant_for: FxHashSet<NodeId> = FxHashSet::default();
     for end in loose.iter_mut() {
         let node = end.node.index();
-        if is_ground_slip(&folded[node]) && place(node) == circuit.nodes[0].scope {
+        let folded = name(node).to_lowercase();
+        if is_ground_slip(&folded) && place(node) == circuit.nodes[0].scope {
             end.meant = Some(NodeId::GROUND);
             continue;
         }
@@ -104,7 +102,7 @@ fn find_slips(evidence: &Evidence<'_>, loose: &mut [LooseEnd]) {
                 let shorted = circuit.pins(end.touch.element).iter().any(|p| p.node == known);
                 // of a pair only the later one is told
                 let mirrored = is_loose.contains(&known) && known > end.node;
-                !(shorted || mirrored || is_series(&folded[node], &folded[known.index()]))
+                !(shorted || mirrored || is_series(&folded, &name(known.index()).to_lowercase()))
             })
             .collect();
         let lonely: Vec<NodeId> = options.iter().copied().filter(|n| is_loose.contains(n)).collect();
