@@ -1,9 +1,10 @@
 //! Reading a generated netlist of 1,000,000 lines (about 35 MB), stage by stage: `cargo bench --bench reading`.
 //! The floor in the same run is the least that any reader does: lines, words, and a number for each node's name.
-//! Ratios to it count, not times.
+//! Ratios to it count, not times: the median over rounds in which each stage runs once. Reading is to take at most twice
+//! the floor, the whole wiring check five times.
 
 // a bench is a program
-#![allow(clippy::expect_used)]
+#![allow(clippy::expect_used, clippy::print_stdout)]
 
 use kneewise::analysis::analyse;
 use kneewise::circuit;
@@ -12,13 +13,51 @@ use kneewise::syntax::{self, Fields};
 use kneewise::text::Memory;
 use rustc_hash::FxHashMap;
 use std::fmt::Write as _;
+use std::hint::black_box;
 use std::path::Path;
-use std::sync::OnceLock;
+use std::time::Instant;
 
 const LINES: u32 = 1_000_000;
 
+/// Rounds; each runs every stage once, so that what else the machine does falls on all of them.
+const ROUNDS: usize = 9;
+
 fn main() {
-    divan::main();
+    // asked by `cargo test` whether there are tests in here
+    if std::env::args().any(|argument| argument == "--test" || argument == "--list") {
+        return;
+    }
+    let (clean, loose) = (text(false), text(true));
+    let stages: [(&str, &str, fn(&str) -> usize); 5] = [
+        ("floor", &clean, floor),
+        ("lines and words", &clean, words),
+        ("read: nodes, values, models, instances", &clean, read),
+        ("wiring checked", &clean, check),
+        ("wiring checked, 10,000 loose ends", &loose, check),
+    ];
+    let only = std::env::args().skip(1).find(|argument| !argument.starts_with("--"));
+    let mut times = vec![Vec::new(); stages.len()];
+    for _ in 0..ROUNDS {
+        for ((name, text, stage), times) in stages.iter().zip(&mut times) {
+            if only.as_ref().is_none_or(|only| name.contains(only.as_str())) {
+                let start = Instant::now();
+                black_box(stage(black_box(text)));
+                times.push(start.elapsed().as_secs_f64());
+            }
+        }
+    }
+    println!("{:42}{:>10}{:>10}{:>22}", "", "fastest", "median", "times the floor");
+    for ((name, ..), own) in stages.iter().zip(&times).filter(|(_, own)| !own.is_empty()) {
+        let ratios: Vec<f64> = own.iter().zip(&times[0]).map(|(own, floor)| own / floor).collect();
+        let fastest = own.iter().copied().fold(f64::INFINITY, f64::min);
+        println!("{name:42}{fastest:9.3}s{:9.3}s{:22.2}", median(own), median(&ratios));
+    }
+}
+
+fn median(values: &[f64]) -> f64 {
+    let mut sorted = values.to_vec();
+    sorted.sort_by(f64::total_cmp);
+    sorted.get(sorted.len() / 2).copied().unwrap_or(f64::NAN)
 }
 
 /// Random links over as many nodes as real netlists have, two fifths of the elements; every node is touched at
@@ -51,72 +90,48 @@ fn text(loose: bool) -> String {
     text
 }
 
-fn whole() -> &'static str {
-    static TEXT: OnceLock<String> = OnceLock::new();
-    TEXT.get_or_init(|| text(false))
-}
-
-#[divan::bench(sample_count = 9, sample_size = 1)]
-fn a_floor(bencher: divan::Bencher) {
-    let bytes = whole().as_bytes();
-    bencher.bench_local(|| {
-        let owned = bytes.to_vec();
-        let mut nodes: FxHashMap<&[u8], u32> = FxHashMap::default();
-        let mut start = 0;
-        let mut sum = 0u64;
-        for end in memchr::memchr_iter(b'\n', &owned) {
-            let words = owned[start..end].split(u8::is_ascii_whitespace).filter(|w| !w.is_empty());
-            for (n, word) in words.enumerate() {
-                if n == 1 || n == 2 {
-                    let next = nodes.len() as u32;
-                    sum += u64::from(*nodes.entry(word).or_insert(next));
-                }
+/// Bytes, lines, words, and a number for each node's name.
+fn floor(text: &str) -> usize {
+    let owned = text.as_bytes().to_vec();
+    let mut nodes: FxHashMap<&[u8], u32> = FxHashMap::default();
+    let mut start = 0;
+    let mut sum = 0u64;
+    for end in memchr::memchr_iter(b'\n', &owned) {
+        let words = owned[start..end].split(u8::is_ascii_whitespace).filter(|w| !w.is_empty());
+        for (n, word) in words.enumerate() {
+            if n == 1 || n == 2 {
+                let next = nodes.len() as u32;
+                sum += u64::from(*nodes.entry(word).or_insert(next));
             }
-            start = end + 1;
         }
-        (nodes.len(), sum)
-    });
+        start = end + 1;
+    }
+    black_box(sum);
+    nodes.len()
 }
 
-#[divan::bench(sample_count = 9, sample_size = 1)]
-fn b_lines_and_words(bencher: divan::Bencher) {
-    let text = whole();
-    bencher.bench_local(|| {
-        let owned = text.to_owned();
-        let mut fields = Fields::default();
-        let mut words = 0;
-        for line in syntax::lines(&owned, true).lines {
-            fields.read(&owned, line.start, line.end).expect("every line is whole");
-            words += fields.words.len();
-        }
-        words
-    });
+fn words(text: &str) -> usize {
+    let owned = text.to_owned();
+    let mut fields = Fields::default();
+    let mut words = 0;
+    for line in syntax::lines(&owned, true).lines {
+        fields.read(&owned, line.start, line.end).expect("every line is whole");
+        words += fields.words.len();
+    }
+    words
 }
 
-/// Statements with nodes numbered, values read, models found, instances expanded: at most twice the floor.
-#[divan::bench(sample_count = 9, sample_size = 1)]
-fn c_read(bencher: divan::Bencher) {
-    let mut files = Memory::with("million.cir", whole());
-    bencher.bench_local(|| {
-        circuit::read(&mut files, Path::new("million.cir"), &Options::default())
-            .expect("the text is in memory")
-    });
+const FILE: &str = "million.cir";
+
+fn read(text: &str) -> usize {
+    let mut files = Memory::with(FILE, text);
+    let reading =
+        circuit::read(&mut files, Path::new(FILE), &Options::default()).expect("the text is in memory");
+    reading.circuit.elements.len()
 }
 
-/// The whole wiring check: at most five times the floor.
-#[divan::bench(sample_count = 9, sample_size = 1)]
-fn d_wiring_checked(bencher: divan::Bencher) {
-    let mut files = Memory::with("million.cir", whole());
-    bencher.bench_local(|| {
-        analyse(&mut files, Path::new("million.cir"), &Options::default()).expect("the text is in memory")
-    });
-}
-
-/// The same where there is much to tell: more than ten thousand findings.
-#[divan::bench(sample_count = 5, sample_size = 1)]
-fn e_with_loose_ends(bencher: divan::Bencher) {
-    let mut files = Memory::with("million.cir", text(true));
-    bencher.bench_local(|| {
-        analyse(&mut files, Path::new("million.cir"), &Options::default()).expect("the text is in memory")
-    });
+fn check(text: &str) -> usize {
+    let mut files = Memory::with(FILE, text);
+    let analysis = analyse(&mut files, Path::new(FILE), &Options::default()).expect("the text is in memory");
+    analysis.findings.len()
 }

@@ -1,7 +1,7 @@
 //! Controlled sources, couplings and switches: elements that look at other nodes or other elements.
 
 use super::behaviour::{Behaviour, Value};
-use super::element::{Problem, Read};
+use super::element::{Problem, Read, scaled};
 use super::expand::Expander;
 use super::ids::ElementId;
 use super::line::Line;
@@ -31,7 +31,9 @@ impl Expander<'_> {
 
     /// `current-by-voltage`: likewise
     pub(super) fn current_by_voltage(&mut self, line: &Line<'_>, rest: usize) -> Read {
-        Ok(self.by_voltage(line, rest)?.map_or(NOT_LINEAR, |gain| Behaviour::CurrentByVoltage { gain }))
+        let copies = self.copies() * self.multiple(line);
+        let gain = self.by_voltage(line, rest)?.map(|gain| scaled(gain, copies));
+        Ok(gain.map_or(NOT_LINEAR, |gain| Behaviour::CurrentByVoltage { gain }))
     }
 
     fn by_voltage(&mut self, line: &Line<'_>, rest: usize) -> Result<Option<Value>, Problem> {
@@ -64,13 +66,17 @@ impl Expander<'_> {
 
     /// `voltage-by-current = name node node element value`
     pub(super) fn voltage_by_current(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
-        let gain = self.by_current(line, rest, id)?;
+        // the current that it follows is that of all copies together
+        let share = 1.0 / self.copies();
+        let gain = self.by_current(line, rest, id)?.map(|gain| scaled(gain, share));
         Ok(gain.map_or(NOT_LINEAR, |gain| Behaviour::VoltageByCurrent { gain, control: None }))
     }
 
     /// `current-by-current`: likewise
     pub(super) fn current_by_current(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
-        let gain = self.by_current(line, rest, id)?;
+        // copies of the instance share both currents; m= on the line itself multiplies this one alone
+        let multiple = self.multiple(line);
+        let gain = self.by_current(line, rest, id)?.map(|gain| scaled(gain, multiple));
         Ok(gain.map_or(NOT_LINEAR, |gain| Behaviour::CurrentByCurrent { gain, control: None }))
     }
 
@@ -131,11 +137,17 @@ impl Expander<'_> {
 
     /// `voltage-switch = name node node node node model [state]`
     pub(super) fn voltage_switch(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        if self.copies() != 1.0 {
+            return Ok(SWITCHES);
+        }
         Ok(Behaviour::VoltageSwitch { model: self.model_of(line, rest, id) })
     }
 
     /// `current-switch = name node node element model [state]`
     pub(super) fn current_switch(&mut self, line: &Line<'_>, rest: usize, id: ElementId) -> Read {
+        if self.copies() != 1.0 {
+            return Ok(SWITCHES);
+        }
         self.look_up_later(line, id, rest, rest + 1);
         let model = self.model_of(line, rest + 1, id);
         Ok(Behaviour::CurrentSwitch { model, control: None })
@@ -198,4 +210,6 @@ impl Expander<'_> {
     }
 }
 
+/// Their resistances are the model's.
+const SWITCHES: Behaviour = Behaviour::Unknown { reason: "a switch in an instance that stands for several" };
 const NOT_LINEAR: Behaviour = Behaviour::Unknown { reason: "a controlled source that is not linear" };

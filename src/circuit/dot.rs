@@ -4,7 +4,7 @@ use super::ModelKind;
 use super::line::Line;
 use super::parsed::{Function, ModelLine, Setting};
 use super::read::{Closers, Reader};
-use crate::finding::{Edit, Finding, Severity};
+use crate::finding::{Edit, Finding, Severity, count};
 use crate::syntax::{self, TokenKind};
 use crate::text::{Span, nearest};
 
@@ -88,16 +88,23 @@ impl Reader<'_> {
     /// A dot line that means nothing here: passed over with its block, or told.
     fn foreign(&mut self, place: Span, word: &str, next: usize, closers: &Closers) -> Next {
         if let Some(close) = closing(word, next, closers) {
-            // what a condition keeps or drops is not known, so nothing may be concluded from what is missing
-            self.parsed.incomplete |= word == "if";
+            if word == "if" {
+                // what a condition keeps or drops is not known, so nothing may be concluded from what is missing
+                self.parsed.incomplete = true;
+                self.tell_condition(place, close.saturating_sub(next));
+            }
             return Next::From(close + 1);
         }
         let closes_nothing_new = word.starts_with("end") && word.len() > 3;
         if PASSED_OVER.contains(&word)
-            || self.is_full("unknown-dot-line")
             || !self.told_words.insert(word.to_owned())
             || closes_nothing_new && nearest(word, KNOWN).is_none()
         {
+            return Next::Line;
+        }
+        if self.is_full("unknown-dot-line") {
+            // to look for the nearest word would take long
+            self.count("unknown-dot-line");
             return Next::Line;
         }
         let mut finding = Finding::new(
@@ -116,6 +123,21 @@ impl Reader<'_> {
         }
         self.tell(finding);
         Next::Line
+    }
+
+    fn tell_condition(&mut self, place: Span, lines: usize) {
+        if lines == 0 {
+            return;
+        }
+        let (lines, stand) = (count(lines, "statement"), if lines == 1 { "stands" } else { "stand" });
+        let message = format!(
+            "{lines} {stand} between .if and .endif: conditions are not decided here, so nothing of it is read and the \
+             circuit is incomplete"
+        );
+        let finding = Finding::new("conditional-lines", Severity::Warning, place, message)
+            .label("not read up to its .endif")
+            .help("Take the lines that hold out of the condition, or choose them by an include.");
+        self.tell(finding);
     }
 
     /// `model-line = ".model" name type *pair`

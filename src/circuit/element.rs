@@ -45,6 +45,9 @@ impl Expander<'_> {
         if letter == b'X' {
             return self.instance(line, broken);
         }
+        if letter == b'J' && !broken && self.is_connector(line) {
+            return self.connector(line);
+        }
         let Some(nodes) = self.node_count(letter, line) else {
             return self.unknown_element(line, letter);
         };
@@ -59,7 +62,9 @@ impl Expander<'_> {
             self.too_few_nodes(line, letter, nodes)
         } else {
             let read = self.behaviour(letter, line, nodes + 1, id);
-            read.unwrap_or_else(|problem| self.unreadable(line, problem))
+            let behaviour = read.unwrap_or_else(|problem| self.unreadable(line, problem));
+            self.tell_surplus(line, letter, nodes + 1, &behaviour);
+            behaviour
         };
         self.push_element(line, letter, first_pin, behaviour);
     }
@@ -102,20 +107,21 @@ impl Expander<'_> {
     /// `resistor = name node node [model] value *pair`
     fn resistor(&mut self, line: &Line<'_>, rest: usize) -> Read {
         let (value, multiple) = self.passive(line, rest, Quantity::Ohms, "r")?;
-        Ok(Behaviour::Resistor(scaled(value, 1.0 / multiple)))
+        Ok(Behaviour::Resistor(scaled(value, 1.0 / (multiple * self.copies()))))
     }
 
     /// `capacitor = name node node [model] value *pair`
     fn capacitor(&mut self, line: &Line<'_>, rest: usize) -> Read {
         let (value, multiple) = self.passive(line, rest, Quantity::Farads, "c")?;
         let initial = self.initial(line);
-        Ok(Behaviour::Capacitor { farads: scaled(value, multiple), initial })
+        Ok(Behaviour::Capacitor { farads: scaled(value, multiple * self.copies()), initial })
     }
 
     /// `inductor = name node node [model] value *pair`
     fn inductor(&mut self, line: &Line<'_>, rest: usize) -> Read {
         let (value, multiple) = self.passive(line, rest, Quantity::Henries, "l")?;
-        let initial = self.initial(line);
+        let multiple = multiple * self.copies();
+        let initial = self.initial(line).map(|amperes| amperes * multiple);
         Ok(Behaviour::Inductor { henries: scaled(value, 1.0 / multiple), initial })
     }
 
@@ -123,6 +129,12 @@ impl Expander<'_> {
     fn initial(&mut self, line: &Line<'_>) -> Option<f64> {
         let token = line.pair("ic")?;
         self.evaluate(line.at(token)).map(|v| v.number)
+    }
+
+    /// How many copies of the innermost instance lie in parallel: `m=…` on its line and on those around it. All are
+    /// alike, so that they are one instance with so many times the conductances.
+    pub(super) fn copies(&self) -> f64 {
+        self.frames.last().map_or(1.0, |frame| frame.copies)
     }
 
     /// `m=…`: so many in parallel; 1 where it is absent or makes no sense.
@@ -249,36 +261,6 @@ impl Expander<'_> {
         .label("not read")
         .help("Begin it with an element's name, a dot, + to continue, or * for a comment.");
         self.tell(finding);
-    }
-
-    /// `unknown-element = name 1*node word`: its letter means nothing here.
-    fn unknown_element(&mut self, line: &Line<'_>, letter: u8) {
-        let name = line.word_str(0);
-        // the letter is a byte; what is shown is the whole character
-        let first = name.chars().next().map_or(' ', |c| c.to_ascii_uppercase());
-        let end = line.fields.words_before_pairs.min(line.len());
-        let nodes_end = if end > 3 { end - 1 } else { end };
-        let finding = Finding::new(
-            "unknown-element",
-            Severity::Warning,
-            line.head(),
-            format!("{name} begins with {first}, which stands for no element known here"),
-        )
-        .label("kept as an unknown element on its nodes")
-        .about(self.here(name))
-        .help("If it is prose, begin the line with *; if it is an element, no statement is made about what it does.");
-        self.tell(finding);
-        let first_pin = self.circuit.pins.len();
-        if letter.is_ascii_alphabetic() && end > 2 {
-            self.push_pins(line, 1, nodes_end);
-            self.push_element(
-                line,
-                letter,
-                first_pin,
-                Behaviour::Unknown { reason: "a letter not known here" },
-            );
-        }
-        self.circuit.incomplete = true;
     }
 }
 

@@ -1,4 +1,5 @@
-//! The functions of expressions. Meanings are common practice; `log` is the natural logarithm.
+//! The functions of expressions: those of ordinary mathematics by their usual names. `log` is the natural logarithm;
+//! spreads of a distribution count with its middle.
 
 /// What a call gives.
 pub(super) enum Called {
@@ -16,29 +17,22 @@ pub(super) enum Called {
 pub(super) fn call(name: &str, arguments: &[f64]) -> Called {
     let name = name.to_ascii_lowercase();
     match arguments {
-        _ if matches!(
-            name.as_str(),
-            "v" | "i" | "ddt" | "idt" | "sdt" | "delay" | "absdelay" | "laplace"
-        ) =>
-        {
-            Called::Moving
-        }
+        // a voltage, a current, a derivative, an integral, a delay, a transfer function
+        _ if matches!(name.as_str(), "v" | "i" | "ddt" | "idt" | "delay" | "laplace") => Called::Moving,
         _ if matches!(name.as_str(), "min" | "max") && !arguments.is_empty() => {
             Called::Value(extreme(&name, arguments))
         }
         _ if name == "table" && arguments.len() >= 3 => Called::Value(table(arguments)),
         // spreads count with their middle
         [x, ..]
-            if matches!(name.as_str(), "agauss" | "gauss" | "aunif" | "unif" | "mc" | "limit")
+            if matches!(name.as_str(), "agauss" | "gauss" | "aunif" | "unif" | "limit")
                 && arguments.len() <= 3 =>
         {
             Called::Value(if name == "limit" && arguments.len() == 3 { limit(arguments) } else { *x })
         }
         [x] => one(&name, *x).map_or_else(|| wrong(&name), Called::Value),
         [x, y] => two(&name, *x, *y).map_or_else(|| wrong(&name), Called::Value),
-        [c, x, y] if matches!(name.as_str(), "if" | "ternary_fcn") => {
-            Called::Value(if *c == 0.0 { *y } else { *x })
-        }
+        [c, x, y] if name == "if" => Called::Value(if *c == 0.0 { *y } else { *x }),
         _ => wrong(&name),
     }
 }
@@ -48,7 +42,7 @@ fn wrong(name: &str) -> Called {
         Called::Arguments("one argument")
     } else if two(name, 1.0, 1.0).is_some() {
         Called::Arguments("two arguments")
-    } else if matches!(name, "if" | "ternary_fcn" | "limit") {
+    } else if matches!(name, "if" | "limit") {
         Called::Arguments("three arguments")
     } else if matches!(name, "min" | "max") {
         Called::Arguments("two or more arguments")
@@ -83,7 +77,7 @@ fn one(name: &str, x: f64) -> Option<f64> {
         "int" | "trunc" => x.trunc(),
         "floor" => x.floor(),
         "ceil" => x.ceil(),
-        "round" | "nint" => x.round(),
+        "round" => x.round(),
         "sgn" | "sign" => {
             if x == 0.0 {
                 0.0
@@ -91,11 +85,8 @@ fn one(name: &str, x: f64) -> Option<f64> {
                 x.signum()
             }
         }
-        "u" | "stp" => f64::from(x > 0.0),
-        "uramp" => x.max(0.0),
-        "buf" => f64::from(x > 0.5),
-        "inv" => f64::from(x <= 0.5),
-        "val" | "eval" => x,
+        // the unit step
+        "u" => f64::from(x > 0.0),
         _ => return None,
     })
 }
@@ -103,6 +94,7 @@ fn one(name: &str, x: f64) -> Option<f64> {
 fn two(name: &str, x: f64, y: f64) -> Option<f64> {
     Some(match name {
         "pow" => x.powf(y),
+        // powers of the magnitude, without and with the sign
         "pwr" => x.abs().powf(y),
         "pwrs" => x.signum() * x.abs().powf(y),
         "atan2" => x.atan2(y),
@@ -142,9 +134,8 @@ fn table(arguments: &[f64]) -> f64 {
 }
 
 /// Names of all functions, to propose the nearest.
-pub(super) const FUNCTIONS: [&str; 44] = [
+pub(super) const FUNCTIONS: [&str; 39] = [
     "sin", "cos", "tan", "asin", "acos", "atan", "atan2", "sinh", "cosh", "tanh", "asinh", "acosh", "atanh",
     "exp", "ln", "log", "log10", "log2", "db", "sqrt", "cbrt", "square", "abs", "int", "trunc", "floor",
-    "ceil", "round", "nint", "sgn", "sign", "u", "stp", "uramp", "buf", "inv", "pow", "pwr", "pwrs", "hypot",
-    "mod", "limit", "if", "table",
+    "ceil", "round", "sgn", "sign", "u", "pow", "hypot", "mod", "min", "max", "limit", "if", "table",
 ];

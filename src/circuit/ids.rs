@@ -55,8 +55,10 @@ impl ScopeId {
 /// know the first of them. All of them share one hash, so that a look-up hashes once and folds nothing.
 #[derive(Debug, Clone, Default)]
 pub struct Names {
-    bytes: String,
-    ends: Vec<u32>,
+    /// Those that are looked up.
+    known: Spellings,
+    /// Those that are not; their numbers have the highest bit set.
+    appended: Spellings,
     /// Spellings that are not the first of their name, with the first.
     variants: FxHashMap<u32, u32>,
     /// Open addressing with steps of one; its length is a power of two, or zero.
@@ -67,9 +69,40 @@ pub struct Names {
 
 impl PartialEq for Names {
     fn eq(&self, other: &Self) -> bool {
-        self.bytes == other.bytes && self.ends == other.ends
+        self.known == other.known && self.appended == other.appended
     }
 }
+
+/// Spellings one behind the other.
+#[derive(Debug, Clone, Default, PartialEq, Eq)]
+struct Spellings {
+    bytes: String,
+    ends: Vec<u32>,
+}
+
+impl Spellings {
+    fn push(&mut self, text: &str) -> u32 {
+        let id = u32::try_from(self.ends.len()).unwrap_or(u32::MAX);
+        self.bytes.push_str(text);
+        self.ends.push(u32::try_from(self.bytes.len()).unwrap_or(u32::MAX));
+        id
+    }
+
+    fn text(&self, id: u32) -> &str {
+        let id = id as usize;
+        let start = if id == 0 { 0 } else { self.ends.get(id - 1).map_or(0, |&e| e as usize) };
+        let end = self.ends.get(id).map_or(start, |&e| e as usize);
+        self.bytes.get(start..end).unwrap_or("")
+    }
+
+    fn shrink(&mut self) {
+        self.bytes.shrink_to_fit();
+        self.ends.shrink_to_fit();
+    }
+}
+
+/// The bit that tells numbers of appended spellings.
+const APPENDED: u32 = 1 << 31;
 
 /// A spelling in the table: its number, the hash of its name and where its bytes stand, so that most look-ups
 /// go to the table and to the bytes and nowhere else.
@@ -95,11 +128,13 @@ impl Spelling {
 }
 
 impl Names {
-    /// Makes room for so many spellings.
-    pub fn reserve(&mut self, count: usize) {
-        self.bytes.reserve(count.saturating_mul(6));
-        self.ends.reserve(count);
-        self.grow(count);
+    /// Makes room for so many spellings that are looked up, and so many that are appended.
+    pub fn reserve(&mut self, known: usize, appended: usize) {
+        for (spellings, count) in [(&mut self.known, known), (&mut self.appended, appended)] {
+            spellings.bytes.reserve(count.saturating_mul(7));
+            spellings.ends.reserve(count);
+        }
+        self.grow(known);
     }
 
     /// Makes room in the table for so many spellings, a third of it free.
@@ -137,7 +172,7 @@ impl Names {
         let hash = Names::hash(text);
         let (mut first, mut variants) = (None, 0);
         for spelling in self.from(hash).filter(|s| s.hash == hash) {
-            let known = spelling.text(self.bytes.as_bytes());
+            let known = spelling.text(self.known.bytes.as_bytes());
             if known == text.as_bytes() {
                 return Symbol(spelling.id);
             }
@@ -155,8 +190,8 @@ impl Names {
     fn insert(&mut self, text: &str, hash: u32, first: Option<u32>) -> Symbol {
         self.taken += 1;
         self.grow(self.taken);
-        let start = u32::try_from(self.bytes.len()).unwrap_or(u32::MAX);
-        let id = self.push(text);
+        let start = u32::try_from(self.known.bytes.len()).unwrap_or(u32::MAX);
+        let id = Symbol(self.known.push(text));
         if let Some(first) = first {
             let first = self.fold(Symbol(first));
             self.variants.insert(id.0, first.0);
@@ -167,34 +202,25 @@ impl Names {
         id
     }
 
-    fn push(&mut self, text: &str) -> Symbol {
-        let id = Symbol::new(self.ends.len());
-        self.bytes.push_str(text);
-        self.ends.push(u32::try_from(self.bytes.len()).unwrap_or(u32::MAX));
-        id
-    }
-
     /// A number for a spelling that is not to be looked up here, with its case-blind hash: the names of elements,
     /// nearly all of which are new, would only make the table too large for the caches.
     pub fn append(&mut self, text: &str) -> (Symbol, u32) {
-        (self.push(text), Names::hash(text))
+        (Symbol(self.appended.push(text) | APPENDED), Names::hash(text))
     }
 
-    /// Looks at the places where names of these hashes would be found, and at their bytes, so that they are in the
-    /// caches when they are wanted: many independent looks take little longer than one.
-    pub fn warm(&self, hashes: &[u32]) {
+    /// The number that most likely has a hash, and the first byte of its name: for bringing both, and what belongs to
+    /// the number, into the caches before they are wanted. Many independent looks take little longer than one.
+    pub fn glance(&self, hash: u32) -> (Symbol, u8) {
         let mask = self.table.len().wrapping_sub(1);
-        let bytes = self.bytes.as_bytes();
-        let start = |hash: &u32| self.table.get(*hash as usize & mask).map_or(0, |s| s.start as usize);
-        let seen = hashes.iter().fold(0u8, |all, hash| all ^ bytes.get(start(hash)).copied().unwrap_or(0));
-        std::hint::black_box(seen);
+        let likely = self.table.get(hash as usize & mask).copied().unwrap_or(FREE);
+        (Symbol(likely.id), self.known.bytes.as_bytes().get(likely.start as usize).copied().unwrap_or(0))
     }
 
     /// The number of a name already known in any case, as [`Names::fold`] gives it.
     pub fn find(&self, text: &str) -> Option<Symbol> {
         let hash = Names::hash(text);
         let same = |s: &Spelling| {
-            s.hash == hash && s.text(self.bytes.as_bytes()).eq_ignore_ascii_case(text.as_bytes())
+            s.hash == hash && s.text(self.known.bytes.as_bytes()).eq_ignore_ascii_case(text.as_bytes())
         };
         let found = self.from(hash).find(same)?;
         Some(self.fold(Symbol(found.id)))
@@ -212,13 +238,17 @@ impl Names {
     pub fn seal(&mut self) {
         self.table = Vec::new();
         self.taken = 0;
-        self.bytes.shrink_to_fit();
-        self.ends.shrink_to_fit();
+        self.known.shrink();
+        self.appended.shrink();
     }
 
     /// The spelling; empty for a number that is not ours.
     pub fn text(&self, symbol: Symbol) -> &str {
-        slice(&self.bytes, &self.ends, symbol.0)
+        if symbol.0 & APPENDED == 0 {
+            self.known.text(symbol.0)
+        } else {
+            self.appended.text(symbol.0 & !APPENDED)
+        }
     }
 
     /// A hash that is blind to the case of ASCII letters. Eight bytes at a time, each step a multiplication of which
@@ -236,13 +266,6 @@ impl Names {
         let hash = mix(hash ^ lower(u64::from_le_bytes(last)));
         (hash ^ (hash >> 32)) as u32
     }
-}
-
-fn slice<'a>(bytes: &'a str, ends: &[u32], id: u32) -> &'a str {
-    let id = id as usize;
-    let start = if id == 0 { 0 } else { ends.get(id - 1).map_or(0, |&e| e as usize) };
-    let end = ends.get(id).map_or(start, |&e| e as usize);
-    bytes.get(start..end).unwrap_or("")
 }
 
 /// Eight bytes with their ASCII letters in lower case.
@@ -296,6 +319,6 @@ mod tests {
         };
         let ids: Vec<_> = (0..4096).map(|n| names.intern(&spelling(n))).collect();
         assert!(ids.iter().all(|&id| names.fold(id) == ids[0]));
-        assert!(names.ends.len() <= 2 * MOST_VARIANTS, "{}", names.ends.len());
+        assert!(names.known.ends.len() <= 2 * MOST_VARIANTS, "{}", names.known.ends.len());
     }
 }

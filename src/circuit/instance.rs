@@ -4,7 +4,7 @@ use super::behaviour::Behaviour;
 use super::expand::{Expander, Frame};
 use super::ids::{NodeId, ScopeId, Symbol};
 use super::line::Line;
-use super::parameter::{Evaluation, Parameter, declare};
+use super::parameter::{Evaluation, Parameter, Worth, declare};
 use super::{Pin, Scope};
 use crate::finding::{Finding, Severity, count};
 use crate::syntax::Pair;
@@ -179,10 +179,33 @@ impl Expander<'_> {
         for pair in &line.fields.pairs {
             self.override_parameter(line, pair, &mut frame, own);
         }
+        frame.copies = self.copies() * self.copies_of(line, &frame);
         self.frames.push(frame);
         self.used_blocks[definition] = true;
         self.body(definition);
         self.finish_frame();
+    }
+
+    /// `m=…` on an instance's line, unless its subcircuit has a parameter of that name and so its own use for it.
+    fn copies_of(&mut self, line: &Line<'_>, frame: &Frame<'_>) -> f64 {
+        let Some(token) = line.pair("m").filter(|_| !frame.parameters.table.contains_key("m")) else {
+            return 1.0;
+        };
+        let worth = self.worth(line.at(token));
+        match worth {
+            Worth::Is(value) if value.number > 0.0 => return value.number,
+            Worth::Told => return 1.0,
+            _ => {}
+        }
+        let (name, text) = (line.word_str(0), line.str(token));
+        let message =
+            format!("{name} is to stand for {text} instances in parallel, which is no number above zero");
+        let finding = Finding::new("unreadable-line", Severity::Error, line.at(token), message)
+            .label("read as 1")
+            .about(self.here(name))
+            .help("Write how many there are, or take m= out.");
+        self.tell(finding);
+        1.0
     }
 
     fn ports(&mut self, ports: &[Span], pins: &[Pin]) -> FxHashMap<Symbol, NodeId> {

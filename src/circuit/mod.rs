@@ -23,11 +23,13 @@ mod semiconductor;
 mod settings;
 mod shape;
 mod source;
+mod surplus;
 #[cfg(test)]
 mod tests;
 mod title;
 mod told;
 mod trail;
+mod unknown;
 mod unused;
 mod value;
 

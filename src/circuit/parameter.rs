@@ -381,6 +381,11 @@ impl<'a> Expander<'a> {
         }
     }
 
+    /// Whether a word is a parameter's name here.
+    pub(super) fn is_parameter(&self, word: &str) -> bool {
+        self.holder(self.frames.len().saturating_sub(1), &word.to_ascii_lowercase()).is_some()
+    }
+
     /// The innermost frame from `frame` outwards that has a parameter of that lower-case name.
     fn holder(&self, frame: usize, name: &str) -> Option<usize> {
         (0..=frame).rev().find(|&f| self.frames.get(f).is_some_and(|f| f.parameters.table.contains_key(name)))

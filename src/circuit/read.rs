@@ -168,6 +168,11 @@ impl Reader<'_> {
         self.counts.get(rule).is_some_and(|&count| count >= super::told::MOST_OF_ONE_RULE)
     }
 
+    /// Counts a finding that is not listed.
+    pub(super) fn count(&mut self, rule: &'static str) {
+        *self.counts.entry(rule).or_default() += 1;
+    }
+
     /// Keeps a finding, with the includes that lead to it; of one rule only so many.
     pub(super) fn tell(&mut self, mut finding: Finding) {
         let count = self.counts.entry(finding.rule).or_default();

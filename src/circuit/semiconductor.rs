@@ -15,7 +15,7 @@ impl Expander<'_> {
         let area = line.pair("area").or_else(|| line.word(rest + 1));
         let area = area.and_then(|t| self.evaluate(line.at(t))).map_or(1.0, |v| v.number);
         let area = if area > 0.0 { area } else { 1.0 };
-        Ok(Behaviour::Diode { model, area: area * self.multiple(line) })
+        Ok(Behaviour::Diode { model, area: area * self.multiple(line) * self.copies() })
     }
 
     /// `transistor = name 3*4node model [area] *pair`
@@ -41,7 +41,7 @@ impl Expander<'_> {
         }
     }
 
-    fn knows_model(&self, name: &str) -> bool {
+    pub(super) fn knows_model(&self, name: &str) -> bool {
         let block = self.frames.last().map_or(0, |f| f.block);
         self.parsed.find_model(block, &name.to_ascii_lowercase()).is_some()
     }

@@ -8,6 +8,37 @@ use std::f64::consts::{PI, TAU};
 const SETTLED: f64 = 40.0;
 
 impl Shape {
+    /// The same shape with all its volts or amperes times a factor.
+    #[must_use]
+    pub fn times(self, factor: f64) -> Self {
+        match self {
+            Shape::Sine { offset, amplitude, frequency, delay, damping, phase } => Shape::Sine {
+                offset: offset * factor,
+                amplitude: amplitude * factor,
+                frequency,
+                delay,
+                damping,
+                phase,
+            },
+            Shape::Pulse { low, high, delay, rise, fall, width, period } => {
+                Shape::Pulse { low: low * factor, high: high * factor, delay, rise, fall, width, period }
+            }
+            Shape::Points(points) => {
+                Shape::Points(points.into_iter().map(|(t, v)| (t, v * factor)).collect())
+            }
+            Shape::Exponential { low, high, delay1, tau1, delay2, tau2 } => {
+                Shape::Exponential { low: low * factor, high: high * factor, delay1, tau1, delay2, tau2 }
+            }
+            Shape::Modulated { offset, amplitude, carrier, index, signal } => Shape::Modulated {
+                offset: offset * factor,
+                amplitude: amplitude * factor,
+                carrier,
+                index,
+                signal,
+            },
+        }
+    }
+
     /// Value at time `t` in seconds (volts or amperes); before its beginning the value at its beginning.
     pub fn value(&self, t: f64) -> f64 {
         match *self {

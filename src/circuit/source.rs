@@ -17,9 +17,11 @@ impl Expander<'_> {
 
     /// `current-source`: as a voltage source.
     pub(super) fn current_source(&mut self, line: &Line<'_>, rest: usize) -> Read {
-        let multiple = self.multiple(line);
+        let multiple = self.multiple(line) * self.copies();
         let mut source = self.source(line, rest, Quantity::Amperes)?;
         source.dc = source.dc.map(|v| super::element::scaled(v, multiple));
+        source.ac = source.ac.map(|amperes| amperes * multiple);
+        source.shape = source.shape.map(|shape| shape.times(multiple));
         Ok(Behaviour::CurrentSource(Box::new(source)))
     }
 
@@ -59,7 +61,8 @@ impl Expander<'_> {
                 source.dc = Some(self.source_value(line, token, quantity, missing)?);
                 at += 1;
             } else {
-                at += 1;
+                self.tell_surplus_from(line, at);
+                break;
             }
         }
         Ok(source)

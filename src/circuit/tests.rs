@@ -3,7 +3,7 @@
 
 use super::*;
 use crate::config::Options;
-use crate::text::Memory;
+use crate::text::{LONGEST_FILE, LoadProblem, Loader, Memory};
 use std::path::{Path, PathBuf};
 
 fn read_all(files: &[(&str, &str)]) -> Reading {
@@ -286,4 +286,101 @@ fn a_flood_of_unknown_names_among_many_is_told_quickly() {
         text.push_str(&format!(".param known{n}=1\nR{n} a 0 {{unknwon{n}}}\nX{n} a 0 SUB{n}\n.word{n}\n"));
     }
     assert_eq!(told(&read_one(&text)).iter().filter(|t| t.0 == "unknown-parameter").count(), 1000);
+}
+
+/// A file of any size that is never to be read.
+struct Claims(u64);
+
+impl Loader for Claims {
+    fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
+        assert!(path != Path::new("large.inc"), "a file that is too long must not be loaded");
+        Ok(b"t\n.include large.inc\nR1 a 0 1k\nR2 a 0 1k\n".to_vec())
+    }
+    fn size(&self, path: &Path) -> Option<u64> {
+        (path == Path::new("large.inc")).then_some(self.0)
+    }
+    fn exists(&self, _: &Path) -> bool {
+        true
+    }
+    fn resolve(&self, path: &Path) -> PathBuf {
+        path.to_path_buf()
+    }
+}
+
+#[test]
+fn a_file_that_is_too_long_is_told_and_not_loaded() {
+    for size in [LONGEST_FILE as u64 + 1, u64::MAX] {
+        let reading = read(&mut Claims(size), Path::new("root.cir"), &Options::default()).unwrap();
+        let finding = &reading.findings[0];
+        assert_eq!(finding.rule, "limit-reached");
+        assert!(finding.message.contains("at most 512 MiB are read"), "{}", finding.message);
+        assert_eq!(finding.trail.len(), 1, "the include that leads there");
+        assert_eq!(reading.circuit.elements.len(), 2);
+    }
+}
+
+#[test]
+fn of_very_many_findings_of_one_rule_the_rest_is_counted() {
+    // found while lines are read, and while they are expanded
+    let stray: String = (0..1500).map(|n| format!(".modle{n} x\n")).collect();
+    let reading = read_one(&format!("t\nR1 a 0 1k\nR2 a 0 1k\n{stray}"));
+    let more = |text: &str, reading: &Reading| {
+        reading.findings.iter().filter(|f| f.rule == "limit-reached" && f.message.contains(text)).count()
+    };
+    assert_eq!(more("500 more findings of unknown-dot-line", &reading), 1);
+    let broken: String = (0..1200).map(|n| format!("R{n} a 0 x\n")).collect();
+    assert_eq!(more("200 more findings of unreadable-line", &read_one(&format!("t\n{broken}"))), 1);
+}
+
+#[test]
+fn an_instance_may_stand_for_several_in_parallel() {
+    let reading = read_one(
+        "t\nV1 a 0 5\nX1 a 0 PART m=2\nX2 a 0 PART m={1+1}\n.subckt PART p q\nX3 p q INNER m=3\n.ends\n\
+         .subckt INNER p q\nR1 p q 6k\nC1 p q 1u\nL1 p q 6m\nI1 p q 1m\nD1 p q DX\nE1 e q p q 2\nG1 p q p q 1m\n\
+         V1 p s 0\nF1 p q V1 2\nH1 h q V1 6\nR2 s e 1k\nR3 h q 1k\n.model DX D\n.ends\n",
+    );
+    assert!(told(&reading).is_empty(), "{:?}", told(&reading));
+    let circuit = &reading.circuit;
+    for instance in ["X1", "X2"] {
+        let part = |name: &str| &circuit.element(find(circuit, &format!("{instance}:X3:{name}"))).behaviour;
+        let number = |name: &str| match part(name) {
+            Behaviour::Resistor(v) => v.number,
+            Behaviour::Capacitor { farads, .. } => farads.number,
+            Behaviour::Inductor { henries, .. } => henries.number,
+            Behaviour::CurrentSource(source) => source.dc.unwrap().number,
+            Behaviour::Diode { area, .. } => *area,
+            Behaviour::VoltageByVoltage { gain }
+            | Behaviour::CurrentByVoltage { gain }
+            | Behaviour::VoltageByCurrent { gain, .. }
+            | Behaviour::CurrentByCurrent { gain, .. } => gain.number,
+            other => panic!("{other:?}"),
+        };
+        // six alike in parallel: conductances add, voltages stay, a current that is followed is the sum of six
+        let expected = [
+            ("R1", 1e3),
+            ("C1", 6e-6),
+            ("L1", 1e-3),
+            ("I1", 6e-3),
+            ("D1", 6.0),
+            ("E1", 2.0),
+            ("G1", 6e-3),
+            ("F1", 2.0),
+            ("H1", 1.0),
+        ];
+        for (name, value) in expected {
+            assert!((number(name) / value - 1.0).abs() < 1e-12, "{name}: {}", number(name));
+        }
+    }
+}
+
+#[test]
+fn connectors_are_no_transistors() {
+    let reading = read_one("t\nJ1 a b CONN\nJ2 a b c d e CONN5\nJ3 a b c JX\nJ4 a b c JX 2\n.model JX NJF\n");
+    let circuit = &reading.circuit;
+    let pins = |name: &str| nodes(circuit, name).len();
+    assert_eq!((pins("J1"), pins("J2"), pins("J3"), pins("J4")), (2, 5, 3, 3));
+    assert!(told(&reading).is_empty(), "{:?}", told(&reading));
+    let is_transistor =
+        |n: &str| matches!(circuit.element(find(circuit, n)).behaviour, Behaviour::Transistor { .. });
+    assert_eq!(["J1", "J2", "J3", "J4"].map(is_transistor), [false, false, true, true]);
 }

@@ -11,17 +11,18 @@ pub(super) const MOST_OF_ONE_RULE: usize = 1000;
 #[derive(Debug, Default)]
 pub(crate) struct Told {
     findings: Vec<Finding>,
-    counts: Vec<usize>,
+    /// How often each was told, and whether inside an instance.
+    counts: Vec<(usize, bool)>,
     known: FxHashMap<(&'static str, Span), usize>,
     rules: FxHashMap<&'static str, usize>,
 }
 
 impl Told {
     /// Takes a finding, or counts it where the same rule has spoken of the same place before.
-    pub fn tell(&mut self, finding: Finding) {
+    pub fn tell(&mut self, finding: Finding, in_instance: bool) {
         let key = (finding.rule, finding.span);
         if let Some(&at) = self.known.get(&key) {
-            self.counts[at] += 1;
+            self.counts[at].0 += 1;
             return;
         }
         let of_rule = self.rules.entry(finding.rule).or_default();
@@ -29,14 +30,14 @@ impl Told {
         if *of_rule <= MOST_OF_ONE_RULE {
             self.known.insert(key, self.findings.len());
             self.findings.push(finding);
-            self.counts.push(1);
+            self.counts.push((1, in_instance));
         }
     }
 
     /// All of them; those told more than once say how often.
     pub fn finish(self) -> Vec<Finding> {
-        let counted = |(mut finding, count): (Finding, usize)| {
-            if count > 1 && !finding.trail.is_empty() {
+        let counted = |(mut finding, (count, in_instance)): (Finding, (usize, bool))| {
+            if count > 1 && in_instance {
                 finding.message.push_str(&format!(" (the same in {count} instances)"));
             }
             finding

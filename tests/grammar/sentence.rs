@@ -57,7 +57,6 @@ const RESERVED: [&str; 44] = [
     "i",
     "db",
     "ln",
-    "mc",
 ];
 /// Rules whose words must not be one of them.
 const NAMES: [&str; 7] = ["word", "parameter", "key", "element-name", "passive-model", "name", "rule"];

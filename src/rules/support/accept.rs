@@ -79,7 +79,7 @@ fn instance_path(evidence: &Evidence<'_>, scope: ScopeId) -> String {
 /// The words that both rules about accepts share.
 pub fn about_note(evidence: &Evidence<'_>, rule: &'static str, note: &Note, message: String) -> Finding {
     let mut finding = Finding::new(rule, Severity::Warning, note.span, message);
-    finding.trail = evidence.trail(note.scope);
+    finding.trail = evidence.circuit.trail(note.scope, note.span);
     let subject = evidence.circuit.text(note.subject);
     if subject.is_empty() { finding } else { finding.about(subject) }
 }

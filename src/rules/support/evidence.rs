@@ -4,7 +4,7 @@ use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
 use super::rule::Rule;
 use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
-use crate::finding::{Finding, TrailStep};
+use crate::finding::Finding;
 use crate::text::{Sources, Span};
 use crate::topology::Wiring;
 use rustc_hash::FxHashMap;
@@ -93,26 +93,8 @@ impl<'a> Evidence<'a> {
     /// A finding of `rule` at a place inside an instance.
     pub fn at(&self, rule: &Rule, scope: ScopeId, span: Span, message: impl Into<String>) -> Finding {
         let mut finding = Finding::new(rule.name, rule.severity, span, message);
-        finding.trail = self.trail(scope);
+        finding.trail = self.circuit.trail(scope, span);
         finding
-    }
-
-    /// The way from the root to an instance, outermost first.
-    pub fn trail(&self, scope: ScopeId) -> Vec<TrailStep> {
-        let mut steps = Vec::new();
-        let mut at = self.circuit.scopes.get(scope.index());
-        while let Some(here) = at {
-            let Some(parent) = here.parent else { break };
-            let what = format!(
-                "instance {} of {}",
-                self.circuit.text(here.name),
-                self.circuit.text(here.subcircuit)
-            );
-            steps.push(TrailStep { span: here.call, what });
-            at = self.circuit.scopes.get(parent.index());
-        }
-        steps.reverse();
-        steps
     }
 
     /// Full name of an element.

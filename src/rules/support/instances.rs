@@ -8,10 +8,12 @@ use rustc_hash::FxHashMap;
 /// Folds findings of one rule at one place inside several instances into the first of them, which then says in
 /// how many instances the same is found. Order is kept.
 pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
+    let instances = count_instances(circuit);
     let mut kept: Vec<(Finding, usize)> = Vec::with_capacity(findings.len());
     let mut seen: FxHashMap<(&'static str, Span, Vec<Span>), usize> = FxHashMap::default();
     for finding in findings {
-        if finding.trail.is_empty() {
+        // a trail that ends in an include leads to no instance
+        if !finding.trail.last().is_some_and(|step| instances.contains_key(&step.span)) {
             kept.push((finding, 1));
             continue;
         }
@@ -22,7 +24,6 @@ pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
             None => kept.push((finding, 1)),
         }
     }
-    let instances = count_instances(circuit);
     kept.into_iter().map(|(finding, count)| with_count(finding, count, &instances)).collect()
 }
 

@@ -1,0 +1,104 @@
+//! Words on an element's line that nothing has read: most often the next line's, whose line end is missing, or those of
+//! a continuation whose own first line was commented out.
+
+use super::behaviour::Behaviour;
+use super::expand::Expander;
+use super::line::Line;
+use crate::finding::{Finding, Severity};
+use crate::syntax::{self, TokenKind};
+use crate::text::Span;
+
+impl Expander<'_> {
+    /// Tells the words behind all that an element of this letter reads; its value or model is word `rest`.
+    pub(super) fn tell_surplus(&mut self, line: &Line<'_>, letter: u8, rest: usize, behaviour: &Behaviour) {
+        if line.len() <= rest + 1 || matches!(behaviour, Behaviour::Unknown { .. }) {
+            return;
+        }
+        let first = match letter {
+            b'R' | b'C' | b'L' => self.behind_passive(line, rest),
+            b'D' | b'Q' | b'M' | b'J' => behind_numbers(line, rest + 1),
+            b'S' => behind_state(line, rest + 1),
+            b'W' => behind_state(line, rest + 2),
+            b'E' | b'G' if rest == 5 => rest + 1,
+            b'F' | b'H' if !line.is(rest, "poly") => rest + 2,
+            // the sources tell their own, and the rest may hold anything
+            _ => return,
+        };
+        if first < line.len() {
+            self.tell_surplus_from(line, first);
+        }
+    }
+
+    /// Behind a value with its model before it, or behind a value and then a model.
+    fn behind_passive(&self, line: &Line<'_>, rest: usize) -> usize {
+        let is_value = |n: usize| {
+            line.word(n).is_some_and(|t| {
+                t.kind != TokenKind::Word
+                    || syntax::number(line.str(t).as_bytes()).is_some()
+                    || self.is_parameter(line.str(t))
+            })
+        };
+        if line.fields.decimal_comma(line.text, rest).is_some() {
+            return rest + 2;
+        }
+        let keyed = line.fields.words_before_pairs <= rest;
+        match (is_value(rest), is_value(rest + 1)) {
+            _ if keyed => rest,
+            (true, false) if self.knows_model(line.word_str(rest + 1)) => rest + 2,
+            (false, true) => rest + 2,
+            _ => rest + 1,
+        }
+    }
+
+    /// Tells the words from number `first` on.
+    pub(super) fn tell_surplus_from(&mut self, line: &Line<'_>, first: usize) {
+        let (Some(from), Some(last)) = (line.word(first), line.word(line.len().saturating_sub(1))) else {
+            return;
+        };
+        let before = line.word(first.saturating_sub(1)).map_or(from.start, |t| t.end);
+        let continued =
+            line.text.get(before as usize..from.start as usize).is_some_and(|gap| gap.contains('\n'));
+        let is_number = |n: usize| syntax::number(line.word_str(n).as_bytes()).is_some();
+        let only_numbers = (first..line.len()).all(is_number);
+        let name = line.word_str(0);
+        let words: Vec<&str> = (first..line.len()).map(|n| line.word_str(n)).collect();
+        let shown = super::semiconductor::shortened(&words);
+        let verb = if words.len() == 1 { "means" } else { "mean" };
+        let span: Span = if from.end <= last.end { line.at(from).to(line.at(last)) } else { line.at(from) };
+        // tolerances and coefficients are often written behind a value; on a line of its own nothing should be
+        let severity = if only_numbers && !continued { Severity::Note } else { Severity::Warning };
+        let help = if continued {
+            "A line beginning with + continues the last statement above it that is no comment; put * before it too, or \
+             mend the line it belongs to."
+        } else {
+            "If they begin another statement, its line end is missing; if they are a comment, put ; before them."
+        };
+        let finding = Finding::new(
+            "surplus-word",
+            severity,
+            span,
+            format!("{shown} on the line of {name} {verb} nothing there: the element is complete without"),
+        )
+        .label("not read")
+        .about(self.here(name))
+        .help(help);
+        self.tell(finding);
+    }
+}
+
+/// Behind a model: its area and other numbers, and `off`.
+fn behind_numbers(line: &Line<'_>, from: usize) -> usize {
+    let is_read = |n: &usize| {
+        line.word(*n).is_some_and(|t| {
+            t.kind != TokenKind::Word
+                || syntax::number(line.str(t).as_bytes()).is_some()
+                || line.is(*n, "off")
+        })
+    };
+    (from..line.len()).find(|n| !is_read(n)).unwrap_or(line.len())
+}
+
+/// Behind a switch's model: `on` or `off`.
+fn behind_state(line: &Line<'_>, from: usize) -> usize {
+    from + usize::from(line.is(from, "on") || line.is(from, "off"))
+}
