@@ -13,7 +13,7 @@ const LONGEST: usize = 1500;
 const MOST_TIMES: usize = 9;
 
 /// Words that are no names where they mean something else.
-const RESERVED: [&str; 44] = [
+const RESERVED: [&str; 43] = [
     "dc",
     "ac",
     "sin",
