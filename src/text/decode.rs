@@ -17,8 +17,8 @@ pub enum Encoding {
 
 /// Decodes a whole file. Invalid UTF-16 units become U+FFFD.
 /// Where carriage returns alone end the lines, they become line feeds.
-pub fn decode(bytes: Vec<u8>) -> (String, Encoding) {
-    let (text, encoding) = decoded(bytes);
+pub fn decode(bytes: impl Into<Vec<u8>>) -> (String, Encoding) {
+    let (text, encoding) = decoded(bytes.into());
     if memchr::memchr(b'\n', text.as_bytes()).is_none() && text.contains('\r') {
         return (text.replace('\r', "\n"), encoding);
     }

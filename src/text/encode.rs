@@ -92,7 +92,7 @@ mod tests {
                 Encoding::Utf16Be => &[0xFE, 0xFF],
                 _ => b"",
             };
-            let again = decode(&[order, piece].concat()).0;
+            let again = decode([order, piece].concat()).0;
             let is = &text[places[n]..places[n + 1]];
             // a carriage return by itself decodes to a line feed
             let same = again.replace('\r', "\n") == is.replace('\r', "\n");
@@ -126,8 +126,8 @@ mod tests {
             (Encoding::Utf16Be, &[0xFE, 0xFF]),
             (Encoding::Utf8, b""),
         ] {
-            assert_eq!(decode(&[order, &encode(text, encoding)].concat()).0, text);
+            assert_eq!(decode([order, &encode(text, encoding)].concat()).0, text);
         }
-        assert_eq!(decode(&[b"\xE9", &encode(text, Encoding::Latin1)[..]].concat()).0, format!("é{text}"));
+        assert_eq!(decode([b"\xE9", &encode(text, Encoding::Latin1)[..]].concat()).0, format!("é{text}"));
     }
 }
