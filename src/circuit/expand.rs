@@ -78,6 +78,8 @@ pub(crate) struct Expander<'a> {
     pub(super) missing_subcircuits: Vec<(Span, usize)>,
     /// Parts of unknown letters: the letter, the name, its place.
     pub(super) unknown_parts: Vec<(char, String, Span)>,
+    /// The finding about connectors, if there is one.
+    pub(super) connectors: Option<Finding>,
     /// Blocks that an instance was made of.
     pub(super) used_blocks: Vec<bool>,
     /// Parameters that were asked for, with the block that declares them.
@@ -113,6 +115,7 @@ pub fn expand(sources: &Sources, parsed: &Parsed, overrides: &Overrides) -> (Cir
         undefined_models: Vec::new(),
         missing_subcircuits: Vec::new(),
         unknown_parts: Vec::new(),
+        connectors: None,
         used_blocks: vec![false; parsed.blocks.len()],
         used_parameters: FxHashSet::default(),
         parts: 0,
@@ -182,6 +185,7 @@ impl<'a> Expander<'a> {
         self.tell_undefined_models();
         self.tell_missing_subcircuits();
         self.tell_unknown_parts();
+        self.tell_connectors();
         self.tell_unused();
     }
 

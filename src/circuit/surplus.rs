@@ -24,7 +24,11 @@ impl Expander<'_> {
             // the sources tell their own, and the rest may hold anything
             _ => return,
         };
-        if first < line.len() {
+        // a tolerance says nothing that is asked here
+        let is_tolerance = |n: &usize| {
+            line.word_str(*n).strip_suffix('%').is_some_and(|t| syntax::number(t.as_bytes()).is_some())
+        };
+        if let Some(first) = (first..line.len()).find(|n| !is_tolerance(n)) {
             self.tell_surplus_from(line, first);
         }
     }
@@ -65,7 +69,7 @@ impl Expander<'_> {
         let shown = super::semiconductor::shortened(&words);
         let verb = if words.len() == 1 { "means" } else { "mean" };
         let span: Span = if from.end <= last.end { line.at(from).to(line.at(last)) } else { line.at(from) };
-        // tolerances and coefficients are often written behind a value; on a line of its own nothing should be
+        // coefficients are sometimes written behind a value; on a line of its own nothing should be
         let severity = if only_numbers && !continued { Severity::Note } else { Severity::Warning };
         let help = if continued {
             "A line beginning with + continues the last statement above it that is no comment; put * before it too, or \

@@ -54,6 +54,16 @@ impl Expander<'_> {
         self.tell(finding);
     }
 
+    /// One finding for all parts that bear the letter of a junction transistor and are none.
+    pub(super) fn tell_connectors(&mut self) {
+        let Some(mut finding) = self.connectors.take() else { return };
+        if let more @ 1.. = finding.subjects.len() - 1 {
+            finding.message.push_str(&format!(", and so are {more} more"));
+        }
+        finding.subjects.truncate(MOST_SUBJECTS);
+        self.tell(finding);
+    }
+
     /// Parts of letters that mean nothing here, such as a board's `U1` and `U2`: one finding for each letter.
     pub(super) fn tell_unknown_parts(&mut self) {
         let mut by_letter: BTreeMap<char, Vec<(String, Span)>> = BTreeMap::new();
@@ -99,14 +109,20 @@ impl Expander<'_> {
         let last = line.fields.words_before_pairs.min(line.len()) - 1;
         let nodes = count(last - 1, "node");
         let kind = line.word_str(last);
-        let message = format!(
-            "{name} has {nodes} and then {kind}: a junction transistor has 3 and then its model, so this is another part"
-        );
-        let finding = Finding::new("unknown-element", Severity::Note, line.head(), message)
-            .label("kept as an unknown element on its nodes")
-            .about(self.here(name))
-            .help("If it is a connector, nothing is wrong; if it is a transistor, give its drain, gate, source and model.");
-        self.tell(finding);
+        let full_name = self.here(name);
+        if let Some(first) = &mut self.connectors {
+            // one finding for all of a board's connectors
+            first.subjects.push(full_name);
+        } else {
+            let message = format!(
+                "{name} has {nodes} and then {kind}: a junction transistor has 3 and then its model, so this is another part"
+            );
+            let finding = Finding::new("unknown-element", Severity::Note, line.head(), message)
+                .label("kept as an unknown element on its nodes")
+                .about(full_name)
+                .help("If it is a connector, nothing is wrong; if it is a transistor, give its drain, gate, source and model.");
+            self.connectors = Some(finding);
+        }
         let first_pin = self.circuit.pins.len();
         self.push_pins(line, 1, last);
         self.push_element(

@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Rule, in_cases, list};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity};
-use crate::operating::{Operating, Verdict};
+use crate::operating::{Case, Operating, Verdict};
 use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
@@ -62,8 +62,29 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     }
     let told = groups.iter().filter_map(|(why, g)| judge(evidence, operating, why, g));
     let mut findings: Vec<Finding> = told.collect();
+    if findings.is_empty() {
+        findings.extend(nothing(evidence, operating));
+    }
     findings.sort_by_key(|f| f.span);
     findings
+}
+
+/// A circuit without a diode to name, of which nothing at all was solved in any condition; where something could not
+/// be read, that has been told.
+fn nothing(evidence: &Evidence<'_>, operating: &Operating) -> Option<Finding> {
+    let is_blank = |case: &Case| case.verdict == Verdict::Partial && case.solves == 0;
+    if operating.cases.is_empty() || !operating.cases.iter().all(is_blank) {
+        return None;
+    }
+    let causes = &operating.cases.first()?.causes;
+    let cause = causes.iter().find(|c| c.verdict == Verdict::Partial && !c.elements.is_empty())?;
+    let first = *cause.elements.iter().min()?;
+    let was_read = |id: &ElementId| !b"RCLVID".contains(&evidence.circuit.element(*id).letter);
+    if evidence.circuit.incomplete || !cause.elements.iter().all(was_read) {
+        return None;
+    }
+    let message = format!("nothing of this circuit could be evaluated: {}", cause.text);
+    Some(evidence.about(&RULE, first, message).label("not modelled").help(RULE.remedy))
 }
 
 fn judge(evidence: &Evidence<'_>, operating: &Operating, why: &str, group: &Group) -> Option<Finding> {

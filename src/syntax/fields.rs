@@ -58,6 +58,7 @@ impl Fields {
                 before.get_or_insert(self.words.len());
                 self.pairs.push(Pair { key: token, value });
                 at += 2;
+                at += self.more_values(text, at);
             } else if is_marker(text, token) {
                 before.get_or_insert(self.words.len());
             } else {
@@ -65,6 +66,21 @@ impl Fields {
             }
         }
         self.words_before_pairs = before.unwrap_or(self.words.len());
+    }
+
+    /// How many tokens from number `at` on belong to the value before them, in a list such as `tc=0.001,0.002`. A word
+    /// with a sign of its own is the next key.
+    fn more_values(&self, text: &[u8], at: usize) -> usize {
+        let belongs = |n: &usize| match (self.tokens.get(at + n - 1), self.tokens.get(at + n)) {
+            (Some(&left), Some(&right)) => {
+                let next = self.tokens.get(at + n + 1);
+                is_value(right)
+                    && joined_by_comma(text, left, right)
+                    && next.is_none_or(|sign| sign.kind != TokenKind::Equals)
+            }
+            _ => false,
+        };
+        (0..self.tokens.len()).take_while(belongs).count()
     }
 
     /// The number with a decimal comma (`0,1u`) that token `word` of `words` begins: both tokens' range.
@@ -104,6 +120,14 @@ mod tests {
         assert_eq!(fields.words.len(), 4);
         assert_eq!(fields.words_before_pairs, 4);
         assert_eq!(fields.pairs.len(), 2);
+    }
+
+    #[test]
+    fn a_list_of_values_is_one_pair() {
+        let text = "R1 a b 1k tc=0.001,0.002,m=2";
+        let mut fields = Fields::default();
+        fields.read(text, 0, u32::try_from(text.len()).unwrap()).unwrap();
+        assert_eq!((fields.words.len(), fields.pairs.len()), (4, 2));
     }
 
     #[test]
