@@ -171,7 +171,7 @@ impl Reader<'_> {
         let message = format!("with this file more than {MOST_BYTES} bytes would be read");
         let finding = Finding::new("limit-reached", Severity::Error, span, message)
             .label("not read")
-            .help("include less, or check the parts one by one");
+            .help("Include less, or check the parts one by one.");
         self.missing(finding);
     }
 

@@ -277,7 +277,7 @@ impl<'a> Expander<'a> {
             format!("functions call functions until {MOST_OF_FUNCTIONS} bytes of them are evaluated");
         let finding = Finding::new("limit-reached", Severity::Error, body, message)
             .label("not evaluated any more")
-            .help("break the chain of functions, or write the number");
+            .help("Break the chain of functions, or write the number.");
         self.tell(finding);
         Worth::Told
     }

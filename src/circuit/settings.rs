@@ -77,7 +77,7 @@ impl Expander<'_> {
         .about(self.here(name))
         .help("Correct the name, or take it out.");
         if let Some(near) = near {
-            finding.help = format!("Did you mean `{near}`?");
+            finding.help = format!("Did you mean `{near}`? As it stands it has no effect.");
             let edit = Edit { span: place, replacement: near.clone() };
             finding = finding.fix(format!("write `{near}`"), vec![edit]);
         }
