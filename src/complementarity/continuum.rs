@@ -1,8 +1,11 @@
 //! Combinations of states without full rank: a line of solutions, as far as the inequalities let it reach.
 
 use super::outcome::{Interval, Place};
-use super::ports::{NOTHING, Ports, Trial};
+use super::ports::{EMPTY, NOTHING, Ports, Trial};
 use nalgebra::{DMatrix, DVector};
+
+/// Singular values below this are none: rows are of size 1.
+const CUTOFF: f64 = 1e-9;
 
 impl Ports {
     /// A system without full rank: if it is consistent, the set extends along its null space as far as the
@@ -15,10 +18,10 @@ impl Ports {
         block: &[usize],
         places: &[Place],
     ) -> Option<Trial> {
+        let (matrix, right) = self.weighed(matrix, right)?;
         let svd = matrix.clone().svd(true, true);
-        let largest = svd.singular_values.max();
-        let part = svd.solve(right, 1e-9 * largest).ok()?;
-        let miss = (matrix * &part - right).amax();
+        let part = svd.solve(&right, CUTOFF).ok()?;
+        let miss = (&matrix * &part - &right).amax();
         if miss > 1e-8 * right.amax().max(1e-9) {
             return None;
         }
@@ -45,6 +48,25 @@ impl Ports {
             trial.open.push((direction, room));
         }
         Some(trial)
+    }
+
+    /// Rows brought to size 1; one that says nothing but for rounding must agree as it stands, and is then nothing.
+    fn weighed(&self, matrix: &DMatrix<f64>, right: &DVector<f64>) -> Option<(DMatrix<f64>, DVector<f64>)> {
+        let (mut matrix, mut right) = (matrix.clone(), right.clone());
+        let levels = self.laws.iter().map(|law| law.forward.value).fold(self.size(), f64::max);
+        for r in 0..matrix.nrows() {
+            let largest = matrix.row(r).amax();
+            if largest > EMPTY {
+                matrix.row_mut(r).scale_mut(1.0 / largest);
+                right[r] /= largest;
+            } else if right[r].abs() > NOTHING * levels {
+                return None;
+            } else {
+                matrix.row_mut(r).fill(0.0);
+                right[r] = 0.0;
+            }
+        }
+        Some((matrix, right))
     }
 
     /// How far `a` may move along `direction` before an inequality fails.

@@ -13,7 +13,7 @@ pub(super) const NOTHING: f64 = 1e-10;
 /// Greatest amplification from a junction to a junction that double precision can still carry.
 const BLOWN_UP: f64 = 1e10;
 /// What a junction's law may be but for rounding where it says nothing: its coefficients are near 1 otherwise.
-const EMPTY: f64 = 1e-13;
+pub(super) const EMPTY: f64 = 1e-13;
 /// Numbers in the reduction at most.
 const MOST_NUMBERS: usize = 30_000_000;
 
