@@ -4,7 +4,9 @@ use super::End;
 use super::args::{Check, Format};
 use super::input::{Input, wanted};
 use super::output::Console;
+use super::waiting::Waiting;
 use kneewise::analysis::{Analysis, analyse};
+use kneewise::config::Options;
 use kneewise::report::{self, Summary};
 use kneewise::text::{FileId, Span};
 use std::collections::BTreeSet;
@@ -18,10 +20,14 @@ pub fn run(console: &mut Console, command: &Check) -> End {
     for problem in &wanted.problems {
         console.say(problem);
     }
-    let options = command.common.options(None);
+    let options = Options { swing: true, ..command.common.options(None) };
+    let waiting = Waiting::new(&options.monitor);
     let (mut input, mut summary, mut kept) = (Input::default(), Summary::default(), Vec::new());
     let mut told = Told::default();
     for (n, file) in wanted.files.iter().enumerate() {
+        if options.monitor.is_cancelled() {
+            break;
+        }
         console.progress(n, wanted.files.len());
         match analyse(&mut input, file, &options) {
             Err(problem) => {
@@ -37,6 +43,11 @@ pub fn run(console: &mut Console, command: &Check) -> End {
                 }
             }
         }
+    }
+    drop(waiting);
+    if options.monitor.is_cancelled() {
+        console.say("ended by Ctrl-C");
+        failed = true;
     }
     failed |= !finish(console, command.common.format, &kept, summary);
     match failed {

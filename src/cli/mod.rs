@@ -8,6 +8,7 @@ mod output;
 mod rules;
 mod states;
 mod swing;
+mod waiting;
 
 use args::{Args, Command};
 use clap::Parser;

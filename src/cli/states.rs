@@ -1,12 +1,13 @@
 //! `kneewise states`: every diode's state, and on request the reasoning about one.
 
 use super::End;
-use super::args::{Format, States};
+use super::args::{Common, Format, States};
 use super::input::Input;
 use super::output::Console;
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::finding::Severity;
 use kneewise::report::{self, Summary};
+use std::path::Path;
 
 pub fn run(console: &mut Console, command: &States) -> End {
     let options = command.common.options(command.why.as_deref());
@@ -38,7 +39,7 @@ pub fn run(console: &mut Console, command: &States) -> End {
             }
         },
     };
-    let worst = worst(console, command, &analysis);
+    let worst = worst(console, &command.file, &command.common, &analysis);
     match written {
         false => End::Failed,
         true if command.common.fail_on.reached_by(worst) => End::Found,
@@ -54,12 +55,11 @@ fn missing_diode<'a>(analysis: &Analysis, why: Option<&'a str>) -> Option<&'a st
 
 /// The most serious of the findings and the verdicts; says on standard error that there are findings, since
 /// this command does not show them.
-fn worst(console: &mut Console, command: &States, analysis: &Analysis) -> Option<Severity> {
+pub fn worst(console: &mut Console, file: &Path, common: &Common, analysis: &Analysis) -> Option<Severity> {
     let mut summary = Summary::default();
     summary.add(analysis);
     if summary.errors + summary.warnings > 0 {
-        let file = command.file.display();
-        let common = &command.common;
+        let file = file.display();
         let drop = common.drop.iter().map(|volts| format!(" --drop {volts}"));
         let set = common.set.iter().map(|(name, value)| format!(" --set {name}={value}"));
         let options: String = drop.chain(set).collect();

@@ -1,27 +1,36 @@
-//! `kneewise swing`: what moves over time and over the conditions.
+//! `kneewise swing`: what moves over time and over the conditions, as text, JSON and a picture.
 
 use super::End;
 use super::args::{Format, Swing};
 use super::input::Input;
 use super::output::Console;
-use kneewise::analysis::analyse;
+use super::waiting::Waiting;
+use kneewise::analysis::{Analysis, analyse};
 use kneewise::config::Options;
 use kneewise::report;
+use std::path::Path;
 
-/// A person who asks for the time pass has more patience than a check that runs it by the way.
+/// Whoever asks for the time pass has more patience than a check that runs it by the way.
 const PATIENCE: u32 = 20;
 
 pub fn run(console: &mut Console, command: &Swing) -> End {
     let options = Options { swing: true, patience: PATIENCE, ..command.common.options(None) };
-    let analysis = match analyse(&mut Input::default(), &command.file, &options) {
+    let waiting = Waiting::new(&options.monitor);
+    let analysed = analyse(&mut Input::default(), &command.file, &options);
+    drop(waiting);
+    let analysis = match analysed {
         Ok(analysis) => analysis,
         Err(problem) => {
             console.say(&format!("{}: {}", command.file.display(), problem.0));
             return End::Failed;
         }
     };
-    let written = match command.common.format {
-        Format::Text => true,
+    let mut written = match command.common.format {
+        Format::Text => {
+            let mut page = console.page();
+            report::swing(&mut page, &analysis);
+            console.result(page.text())
+        }
         Format::Json => match report::json::swing(&analysis) {
             Ok(text) => console.result(&text),
             Err(problem) => {
@@ -30,8 +39,28 @@ pub fn run(console: &mut Console, command: &Swing) -> End {
             }
         },
     };
-    if std::env::var_os("KNEEWISE_EFFORT").is_some() {
-        console.say(&format!("{:?}", analysis.swing.as_ref().map(|s| s.effort)));
+    if let Some(path) = &command.plot {
+        written &= picture(console, &analysis, path);
     }
-    if written { End::Clean } else { End::Failed }
+    if options.monitor.is_cancelled() {
+        console.say("ended by Ctrl-C; what was not followed is named above");
+        written = false;
+    }
+    let worst = super::states::worst(console, &command.file, &command.common, &analysis);
+    match written {
+        false => End::Failed,
+        true if command.common.fail_on.reached_by(worst) => End::Found,
+        true => End::Clean,
+    }
+}
+
+/// Writes the picture. `false` where it could not be written.
+fn picture(console: &mut Console, analysis: &Analysis, path: &Path) -> bool {
+    let is_svg = path.extension().is_some_and(|e| e.eq_ignore_ascii_case("svg"));
+    let drawn = if is_svg { report::plot::svg(analysis) } else { report::plot::html(analysis) };
+    let done = drawn.and_then(|text| std::fs::write(path, text).map_err(|problem| problem.to_string()));
+    if let Err(problem) = &done {
+        console.say(&format!("{}: the picture could not be written: {problem}", path.display()));
+    }
+    done.is_ok()
 }

@@ -69,24 +69,28 @@ fn over_time(circuit: &Circuit, basis: &Basis, noted: &Noted, options: &Options,
     let is_cancelled = || monitor.is_cancelled();
     let total = WORK.saturating_mul(u64::from(options.patience.max(1)));
     let mut pass = Pass { circuit, given: &given, timing, budget: total, is_cancelled: &is_cancelled };
-    held_nodes(&pass, noted, swing);
+    let shown = Shown::of(circuit, noted);
+    held_nodes(&pass, &shown, swing);
     let mut left = total;
     for (n, part) in all.iter().enumerate() {
         monitor.report((1000 * n / all.len()) as u32);
         // what parts leave unused is for the rest, but no part is left without anything
         pass.budget = (left / (all.len() - n).clamp(1, 8) as u64).max(total / 1000);
-        left = left.saturating_sub(one_part(&pass, basis, noted, part, swing));
+        left = left.saturating_sub(one_part(&pass, basis, &shown, part, swing));
     }
     monitor.report(1000);
+    if is_cancelled() {
+        swing.cut_short = Some("the run was ended before everything was followed".into());
+        swing.periodic = false;
+    }
     swing.waves.sort_by_key(|w| w.node);
     swing.waves.truncate(MOST_WAVES);
 }
 
 /// Follows one part and enters its figures; gives the work that it took.
-fn one_part(pass: &Pass<'_>, basis: &Basis, noted: &Noted, part: &PartList, swing: &mut Swing) -> u64 {
+fn one_part(pass: &Pass<'_>, basis: &Basis, shown: &Shown, part: &PartList, swing: &mut Swing) -> u64 {
     let followed = equations(pass.circuit, basis, pass.given, part).and_then(|equations| {
-        let watched: Vec<usize> =
-            (0..part.nodes.len()).filter(|&n| noted.is_watched(part.nodes[n])).take(MOST_WAVES).collect();
+        let watched = shown.places(part);
         let nodes: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
         let ran = run(pass, &equations, watched)?;
         Ok((equations.diodes, nodes, ran))
@@ -112,6 +116,38 @@ fn one_part(pass: &Pass<'_>, basis: &Basis, noted: &Noted, part: &PartList, swin
         }
     }
 }
+
+/// Nodes whose waveforms are kept: those that notes watch, else some where a diode meets a capacitor.
+struct Shown(Vec<NodeId>);
+
+impl Shown {
+    fn of(circuit: &Circuit, noted: &Noted) -> Self {
+        if !noted.watched.is_empty() {
+            return Shown(noted.watched.clone());
+        }
+        let touched = |wanted: fn(&Behaviour) -> bool| -> Vec<NodeId> {
+            let elements = circuit.elements().filter(|(_, e)| wanted(&e.behaviour));
+            elements.flat_map(|(id, _)| circuit.pins(id)).map(|p| p.node).collect()
+        };
+        let mut stored = touched(|b| matches!(b, Behaviour::Capacitor { .. }));
+        stored.sort();
+        let mut nodes = touched(|b| matches!(b, Behaviour::Diode { .. }));
+        nodes.retain(|n| *n != NodeId::GROUND && stored.binary_search(n).is_ok());
+        nodes.sort();
+        nodes.dedup();
+        nodes.truncate(MOST_UNASKED);
+        Shown(nodes)
+    }
+
+    /// Places of these among the nodes of a part.
+    fn places(&self, part: &PartList) -> Vec<usize> {
+        let is_shown = |n: &usize| self.0.binary_search(&part.nodes[*n]).is_ok();
+        (0..part.nodes.len()).filter(is_shown).take(MOST_WAVES).collect()
+    }
+}
+
+/// Waveforms of nodes that nobody asked for, at most.
+const MOST_UNASKED: usize = 3;
 
 fn enter(part: &PartList, watched: &[NodeId], ran: Ran, swing: &mut Swing) {
     for (&node, level) in part.nodes.iter().zip(&ran.nodes) {
@@ -139,7 +175,7 @@ fn finite(level: Level) -> Option<Level> {
 }
 
 /// Nodes that sources hold: their courses are given.
-fn held_nodes(pass: &Pass<'_>, noted: &Noted, swing: &mut Swing) {
+fn held_nodes(pass: &Pass<'_>, shown: &Shown, swing: &mut Swing) {
     let nodes: Vec<NodeId> =
         (1..pass.given.held.len()).filter(|&n| pass.given.held[n].is_some()).map(NodeId::new).collect();
     if nodes.is_empty() {
@@ -147,8 +183,7 @@ fn held_nodes(pass: &Pass<'_>, noted: &Noted, swing: &mut Swing) {
     }
     let part = PartList { elements: Vec::new(), nodes };
     let given = super::equations::held(pass.given, &part);
-    let watched: Vec<usize> =
-        (0..part.nodes.len()).filter(|&n| noted.is_watched(part.nodes[n])).take(MOST_WAVES).collect();
+    let watched = shown.places(&part);
     let names: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
     if let Ok(mut ran) = run(pass, &given, watched) {
         ran.effort = Effort::default();

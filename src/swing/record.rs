@@ -21,7 +21,8 @@ pub(super) struct Recorder<'a> {
     watched: Vec<usize>,
     waves: Vec<Vec<(f64, f64)>>,
     length: f64,
-    pub steps: u64,
+    /// Currents beneath this are what blocking diodes leak in the equations, amperes.
+    nothing: f64,
 }
 
 #[derive(Default)]
@@ -103,7 +104,7 @@ fn crest(a: (f64, f64), b: (f64, f64), c: (f64, f64)) -> f64 {
 }
 
 impl<'a> Recorder<'a> {
-    pub fn new(equations: &'a Equations, start: f64, watched: Vec<usize>) -> Self {
+    pub fn new(equations: &'a Equations, start: f64, nothing: f64, watched: Vec<usize>) -> Self {
         Recorder {
             start,
             diodes: equations.diodes.iter().map(|_| DiodeRecord::default()).collect(),
@@ -111,7 +112,7 @@ impl<'a> Recorder<'a> {
             waves: vec![Vec::new(); watched.len()],
             watched,
             length: 0.0,
-            steps: 0,
+            nothing,
             equations,
         }
     }
@@ -130,8 +131,9 @@ impl<'a> Recorder<'a> {
     /// The figures of each diode; intervals wrap round the end where the window repeats itself.
     pub fn diodes(&mut self, periodic: bool) -> Vec<OverTime> {
         let length = self.length;
-        let largest = self.diodes.iter().map(|d| d.largest()).fold(0.0, f64::max);
-        self.diodes.iter_mut().map(|d| d.finish(length, periodic, NOTHING * largest)).collect()
+        let largest = self.diodes.iter().map(DiodeRecord::largest).fold(0.0, f64::max);
+        let nothing = self.nothing.max(NOTHING * largest);
+        self.diodes.iter_mut().map(|d| d.finish(length, periodic, nothing)).collect()
     }
 }
 
@@ -140,10 +142,9 @@ impl Observer for Recorder<'_> {
         let (h, end) = (step.length, step.start + step.length - self.start);
         let Some((_, unknowns, inputs)) = step.points.last() else { return };
         self.length += h;
-        self.steps += 1;
         let junctions = self.equations.system.junctions.iter();
         for ((record, junction), &mode) in self.diodes.iter_mut().zip(junctions).zip(step.modes) {
-            let span = Span { start: step.start - self.start, end, length: h };
+            let span = Span { start: step.start - self.start, end, length: h, nothing: self.nothing };
             record.step(&span, step, junction.current as usize, &junction.across, mode);
         }
         for (curve, sum) in self.nodes.iter_mut().zip(&self.equations.nodes) {
@@ -171,6 +172,7 @@ struct Span {
     start: f64,
     end: f64,
     length: f64,
+    nothing: f64,
 }
 
 impl DiodeRecord {
@@ -178,7 +180,8 @@ impl DiodeRecord {
         let Some((_, unknowns, inputs)) = step.points.last() else { return };
         let voltage = across.at(unknowns, inputs);
         let now = if mode == Mode::Blocking { 0.0 } else { unknowns[current] };
-        self.enter(span, mode, if step.is_jump { 0.0 } else { now.abs() });
+        let shown = if now.abs() > span.nothing { mode } else { Mode::Blocking };
+        self.enter(span, shown, if step.is_jump { 0.0 } else { now.abs() });
         if step.is_jump {
             self.forward.part();
             self.reverse_voltage.part();

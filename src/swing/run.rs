@@ -135,7 +135,7 @@ impl Road<'_> {
         let (from, to) = self.pass.timing.window;
         let before = march.states.clone();
         let (kept, factored) = (march.steps, march.solver.factorizations);
-        let mut recorder = Recorder::new(self.equations, from, watched);
+        let mut recorder = Recorder::new(self.equations, from, march.nothing(), watched);
         let mut cut_short = approach.cut_short;
         // the window itself is always walked through once
         march.spent = 0;

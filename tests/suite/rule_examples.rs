@@ -11,7 +11,7 @@ use std::path::Path;
 fn check(rule: &Rule, which: &str, text: &str) -> Analysis {
     let name = format!("{}-{which}.cir", rule.name);
     let mut files = Memory::with(name.as_str(), text);
-    let options = Options { states: true, ..Options::default() };
+    let options = Options { states: true, swing: true, ..Options::default() };
     analyse(&mut files, Path::new(&name), &options).unwrap()
 }
 

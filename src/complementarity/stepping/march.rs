@@ -160,6 +160,11 @@ impl March {
         self.volts
     }
 
+    /// A current that is none: what blocking junctions leak, and rounding.
+    pub fn nothing(&self) -> f64 {
+        (SLACK * self.amperes).max(64.0 * super::system::LEAK * self.volts)
+    }
+
     /// Puts the states where they are to be.
     pub fn place(&mut self, states: Vec<f64>) {
         self.states = states;
