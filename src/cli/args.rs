@@ -1,5 +1,6 @@
 //! The arguments, as the user sees them in `--help`.
 
+use super::settings::Found;
 use clap::builder::styling::{AnsiColor, Style, Styles};
 use clap::{Args as Group, ColorChoice, Parser, Subcommand, ValueEnum};
 use kneewise::config::Options;
@@ -50,11 +51,34 @@ Examples:
   kneewise swing supply.net                 conduction, peaks, ripple in the periodic state
   kneewise swing supply.net --plot run.svg  the same as a picture")]
     Swing(Swing),
+    /// Put a mark with its state behind every diode of a netlist
+    #[command(after_help = "\
+Examples:
+  kneewise annotate charger.net             shows it, changes nothing
+  kneewise annotate charger.net --write     puts the marks into the file
+  kneewise annotate *.net --verify          fails when a mark is out of date
+
+Exit code: 0 done, 1 marks are out of date (--verify), 2 the job could not be done.")]
+    Annotate(Annotate),
+    /// Tell what a change does electrically: states that flip, what moves, findings that come and go
+    #[command(after_help = "\
+Examples:
+  kneewise compare old/charger.net charger.net
+  kneewise compare main/boards boards --format markdown
+It also takes the seven arguments with which version control calls an external comparison; then the
+exit code is 0 whatever differs.")]
+    Compare(Compare),
     /// List the rules, or tell one in full with its examples
     #[command(after_help = "\
 Example:
   kneewise rules never-conducts")]
     Rules(Rules),
+    /// Print completions for a shell
+    #[command(hide = true)]
+    Completions { shell: clap_complete::Shell },
+    /// Print the manual page, in roff
+    #[command(hide = true)]
+    Manual,
 }
 
 #[derive(Debug, Group)]
@@ -62,6 +86,48 @@ pub struct Check {
     /// Netlists or directories; `-` is standard input
     #[arg(required = true, value_name = "PATH")]
     pub paths: Vec<PathBuf>,
+    /// Text for people, JSON for programs, SARIF for code review, Markdown for a comment
+    #[arg(long, value_enum, default_value = "text")]
+    pub format: CheckFormat,
+    /// Tell only what this older file, directory or saved JSON does not have
+    #[arg(long, value_name = "OLD")]
+    pub against: Option<PathBuf>,
+    /// List the findings that notes accept too, with their reasons
+    #[arg(long)]
+    pub accepted: bool,
+    #[command(flatten)]
+    pub common: Common,
+}
+
+#[derive(Debug, Group)]
+pub struct Annotate {
+    /// Netlists; several with --write or --verify only; `-` is standard input
+    #[arg(required = true, value_name = "FILE")]
+    pub files: Vec<PathBuf>,
+    /// Put the marks into the files themselves
+    #[arg(long)]
+    pub write: bool,
+    /// Change nothing; fail when a mark is out of date or missing
+    #[arg(long, conflicts_with = "write")]
+    pub verify: bool,
+    /// Take all marks away instead
+    #[arg(long, conflicts_with = "verify")]
+    pub strip: bool,
+    #[command(flatten)]
+    pub circuit: CircuitOptions,
+}
+
+#[derive(Debug, Group)]
+pub struct Compare {
+    /// Two netlists or two directories
+    #[arg(required = true, value_names = ["OLD", "NEW"], num_args = 1..=9)]
+    pub paths: Vec<PathBuf>,
+    /// Text for people, JSON for programs, Markdown for a comment
+    #[arg(long, value_enum, default_value = "text")]
+    pub format: CompareFormat,
+    /// Share by which a current or voltage must move to be told, such as 0.1 or 10% [default: 5%]
+    #[arg(long, value_name = "SHARE", value_parser = share)]
+    pub moved: Option<f64>,
     #[command(flatten)]
     pub common: Common,
 }
@@ -74,6 +140,9 @@ pub struct States {
     /// Tell why this diode is in its state
     #[arg(long, value_name = "DIODE")]
     pub why: Option<String>,
+    /// Text for people, or JSON for programs
+    #[arg(long, value_enum, default_value = "text")]
+    pub format: Format,
     #[command(flatten)]
     pub common: Common,
 }
@@ -86,6 +155,9 @@ pub struct Swing {
     /// Draw it into this file: .svg, or .html
     #[arg(long, value_name = "PICTURE", value_parser = picture)]
     pub plot: Option<PathBuf>,
+    /// Text for people, or JSON for programs
+    #[arg(long, value_enum, default_value = "text")]
+    pub format: Format,
     #[command(flatten)]
     pub common: Common,
 }
@@ -96,34 +168,55 @@ pub struct Rules {
     pub name: Option<String>,
 }
 
+/// What every command takes that judges.
 #[derive(Debug, Group)]
 pub struct Common {
-    /// Text for people, or JSON for programs
-    #[arg(long, value_enum, default_value = "text")]
-    pub format: Format,
+    #[command(flatten)]
+    pub circuit: CircuitOptions,
+    /// The least severity that makes the exit code 1 [default: warning]
+    #[arg(long, value_enum, value_name = "SEVERITY")]
+    pub fail_on: Option<FailOn>,
+}
+
+impl Common {
+    /// Whether something of this severity makes the exit code 1; the option goes before the settings.
+    pub fn fails_on(&self, found: Option<&Found>, worst: Option<Severity>) -> bool {
+        let option = self.fail_on.map(FailOn::severity);
+        let limit = option.or(found.and_then(|f| f.settings.fail_on)).unwrap_or(Severity::Warning);
+        worst.is_some_and(|w| w >= limit)
+    }
+}
+
+/// How circuits are read and examined.
+#[derive(Debug, Group)]
+pub struct CircuitOptions {
     /// One drop for every diode, in volts
     #[arg(long, value_name = "VOLTS", value_parser = drop_volts)]
     pub drop: Option<f64>,
     /// Hold a source at a value; may be repeated
     #[arg(long, value_name = "NAME=VALUE", value_parser = setting)]
     pub set: Vec<(String, f64)>,
-    /// The least severity that makes the exit code 1
-    #[arg(long, value_enum, value_name = "SEVERITY", default_value = "warning")]
-    pub fail_on: FailOn,
     /// A further directory to look for included files; may be repeated
     #[arg(long, value_name = "DIR")]
     pub include_dir: Vec<PathBuf>,
+    /// Settings to use instead of the nearest kneewise.toml
+    #[arg(long, value_name = "FILE")]
+    pub config: Option<PathBuf>,
 }
 
-impl Common {
-    /// What the analysis is to do.
-    pub fn options(&self, why: Option<&str>) -> Options {
+impl CircuitOptions {
+    /// What the analysis is to do with a file for which these settings hold.
+    pub fn options(&self, found: Option<&Found>) -> Options {
+        let mut include_dirs = self.include_dir.clone();
+        include_dirs
+            .extend(found.iter().flat_map(|f| f.settings.include_dirs.iter().map(|d| f.base.join(d))));
         Options {
             drop: self.drop,
             set: self.set.clone(),
-            include_dirs: self.include_dir.clone(),
+            include_dirs,
             states: true,
-            why: why.map(str::to_owned),
+            levels: found.map(|f| f.settings.levels.clone()).unwrap_or_default(),
+            thresholds: found.map(|f| f.settings.thresholds).unwrap_or_default(),
             ..Options::default()
         }
     }
@@ -136,6 +229,21 @@ pub enum Format {
 }
 
 #[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub enum CompareFormat {
+    Text,
+    Json,
+    Markdown,
+}
+
+#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub enum CheckFormat {
+    Text,
+    Json,
+    Sarif,
+    Markdown,
+}
+
+#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
 pub enum FailOn {
     Error,
     Warning,
@@ -143,14 +251,12 @@ pub enum FailOn {
 }
 
 impl FailOn {
-    /// Whether something of this severity makes the exit code 1.
-    pub fn reached_by(self, worst: Option<Severity>) -> bool {
-        let limit = match self {
+    fn severity(self) -> Severity {
+        match self {
             FailOn::Error => Severity::Error,
             FailOn::Warning => Severity::Warning,
             FailOn::Note => Severity::Note,
-        };
-        worst.is_some_and(|w| w >= limit)
+        }
     }
 }
 
@@ -176,6 +282,15 @@ fn picture(text: &str) -> Result<PathBuf, String> {
         Some("svg" | "html" | "htm") => Ok(path),
         _ => Err("a picture is written as .svg or .html".into()),
     }
+}
+
+/// `0.1` or `10%`.
+fn share(text: &str) -> Result<f64, String> {
+    let (digits, scale) = text.strip_suffix('%').map_or((text, 1.0), |percent| (percent, 0.01));
+    let number = digits.trim().parse::<f64>().ok().map(|n| n * scale);
+    number
+        .filter(|n| n.is_finite() && *n >= 0.0)
+        .ok_or_else(|| format!("`{text}` is no share, such as 0.1 or 10%"))
 }
 
 fn setting(text: &str) -> Result<(String, f64), String> {

@@ -1,60 +1,146 @@
 //! `kneewise check`: all findings of all files.
 
 use super::End;
-use super::args::{Check, Format};
-use super::input::{Input, wanted};
+use super::args::{Check, CheckFormat};
+use super::baseline::Old;
+use super::input::{Input, Job, wanted};
 use super::output::Console;
+use super::parallel;
+use super::settings::{Found, Shelf};
 use super::waiting::Waiting;
-use kneewise::analysis::{Analysis, analyse};
-use kneewise::config::Options;
+use kneewise::analysis::analyse;
+use kneewise::config::{Monitor, Options};
 use kneewise::report::{self, Summary};
-use kneewise::text::{FileId, Span};
-use std::collections::BTreeSet;
+use kneewise::review::Record;
+use kneewise::text::{Disk, FileId, Loader, Span};
+use std::collections::{BTreeMap, BTreeSet};
+use std::path::PathBuf;
+use std::sync::Arc;
 
 /// Number of the root file in its own sources.
 const ROOT: FileId = FileId(0);
 
 pub fn run(console: &mut Console, command: &Check) -> End {
-    let wanted = wanted(&command.paths);
+    match check(console, command) {
+        Ok(end) => end,
+        Err(problem) => {
+            console.say(&problem);
+            End::Failed
+        }
+    }
+}
+
+fn check(console: &mut Console, command: &Check) -> Result<End, String> {
+    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
+    let wanted = wanted(&command.paths, &mut shelf);
     let mut failed = !wanted.problems.is_empty();
     for problem in &wanted.problems {
         console.say(problem);
     }
-    let options = Options { swing: true, ..command.common.options(None) };
-    let waiting = Waiting::new(&options.monitor);
-    let (mut input, mut summary, mut kept) = (Input::default(), Summary::default(), Vec::new());
-    let mut told = Told::default();
-    for (n, file) in wanted.files.iter().enumerate() {
-        if options.monitor.is_cancelled() {
-            break;
-        }
-        console.progress(n, wanted.files.len());
-        match analyse(&mut input, file, &options) {
-            Err(problem) => {
-                console.say(&format!("{}: {}", file.display(), problem.0));
-                failed = true;
-            }
-            Ok(mut analysis) => {
-                told.keep_new(&mut analysis);
-                summary.add(&analysis);
-                match command.common.format {
-                    Format::Text => failed |= !console.result(&text(console, &analysis)),
-                    Format::Json => kept.push(analysis),
-                }
-            }
-        }
-    }
+    let settings: Vec<Option<Arc<Found>>> = wanted.jobs.iter().map(|job| shelf.of(&job.path)).collect();
+    let monitor = Monitor::default();
+    let own = |found: &Option<Arc<Found>>| Options {
+        swing: true,
+        monitor: monitor.clone(),
+        ..command.common.circuit.options(found.as_deref())
+    };
+    let options: Vec<Options> = settings.iter().map(own).collect();
+    let mut old = match &command.against {
+        Some(path) => Some(Old::read(path, &command.paths, &wanted.jobs, &options)?),
+        None => None,
+    };
+    // one file shows how far it has come, of many it is how many are done
+    let waiting = Waiting::new(&monitor, wanted.jobs.len() == 1);
+    let outcomes = examine(console, command, &wanted.jobs, &options);
     drop(waiting);
-    if options.monitor.is_cancelled() {
+    if monitor.is_cancelled() {
         console.say("ended by Ctrl-C");
         failed = true;
     }
-    failed |= !finish(console, command.common.format, &kept, summary);
-    match failed {
-        true => End::Failed,
-        false if command.common.fail_on.reached_by(summary.worst()) => End::Found,
-        false => End::Clean,
+    let included = included(&wanted.jobs, &outcomes);
+    let (mut records, mut told) = (Vec::new(), Told::default());
+    let mut fails = false;
+    for (n, (job, outcome)) in wanted.jobs.iter().zip(outcomes).enumerate() {
+        match outcome {
+            Err(problem) => {
+                console.say(&format!("{}: {problem}", job.path.display()));
+                failed = true;
+            }
+            Ok(_) if included.contains(&n) => {}
+            Ok(mut record) => {
+                told.keep_new(&mut record);
+                if let Some(old) = &mut old {
+                    old.sift(&mut record, job);
+                }
+                let mut own = Summary::default();
+                own.add(&record);
+                fails |= command.common.fails_on(settings[n].as_deref(), own.worst());
+                records.push(record);
+            }
+        }
     }
+    for mut record in shelf.records() {
+        if let Some(old) = &mut old {
+            old.sift_settings(&mut record);
+        }
+        let mut own = Summary::default();
+        own.add(&record);
+        fails |= command.common.fails_on(None, own.worst());
+        records.insert(0, record);
+    }
+    failed |= !show(console, command, &records);
+    Ok(match (failed, fails) {
+        (true, _) => End::Failed,
+        (_, true) => End::Found,
+        _ => End::Clean,
+    })
+}
+
+/// Analyses all files at once.
+fn examine(
+    console: &mut Console,
+    command: &Check,
+    jobs: &[Job],
+    options: &[Options],
+) -> Vec<Result<Record, String>> {
+    let numbers: Vec<usize> = (0..jobs.len()).collect();
+    let with_states = command.format == CheckFormat::Sarif;
+    // standard input can be read once only, so whoever wants it gets what was read here
+    let standard = Input::standard(jobs);
+    let work = |&n: &usize| {
+        if options[n].monitor.is_cancelled() {
+            return Err("not examined".to_owned());
+        }
+        let mut input = Input::with(standard.clone());
+        let analysis = analyse(&mut input, &jobs[n].path, &options[n]);
+        analysis.map(|a| Record::of(a, with_states)).map_err(|problem| problem.0)
+    };
+    parallel::map(&numbers, work, |done| console.progress(done, jobs.len()))
+}
+
+/// The files found in a directory that another one includes: they are checked there, and are no netlists of their own.
+fn included(jobs: &[Job], outcomes: &[Result<Record, String>]) -> BTreeSet<usize> {
+    let walked: BTreeMap<PathBuf, usize> = jobs
+        .iter()
+        .enumerate()
+        .filter(|(_, job)| job.walked)
+        .map(|(n, job)| (Disk.resolve(&job.path), n))
+        .collect();
+    let mut includes: Vec<BTreeSet<usize>> = vec![BTreeSet::new(); jobs.len()];
+    for (n, record) in outcomes.iter().enumerate() {
+        let Ok(record) = record else { continue };
+        let names = record.sources.files().skip(1).map(|(_, file)| file.name.as_str());
+        includes[n] = names
+            .filter_map(|name| walked.get(&Disk.resolve(name.as_ref())).copied())
+            .filter(|&m| m != n)
+            .collect();
+    }
+    // of two that include each other the first stays
+    let is_part = |&n: &usize| {
+        (0..jobs.len())
+            .any(|other| includes[other].contains(&n) && !(includes[n].contains(&other) && n < other))
+    };
+    (0..jobs.len()).filter(|&n| jobs[n].walked).filter(is_part).collect()
 }
 
 /// What was told about included files: two netlists that share a file share its findings, told once.
@@ -62,9 +148,9 @@ pub fn run(console: &mut Console, command: &Check) -> End {
 struct Told(BTreeSet<(String, Span, &'static str, String)>);
 
 impl Told {
-    fn keep_new(&mut self, analysis: &mut Analysis) {
-        let sources = &analysis.sources;
-        analysis.findings.retain(|finding| {
+    fn keep_new(&mut self, record: &mut Record) {
+        let sources = &record.sources;
+        record.findings.retain(|finding| {
             let at = finding.span.file;
             let place = Span { file: ROOT, ..finding.span };
             at == ROOT
@@ -73,29 +159,41 @@ impl Told {
     }
 }
 
-/// The findings of one file.
-fn text(console: &Console, analysis: &Analysis) -> String {
-    let mut page = console.page();
-    report::findings(&mut page, &analysis.sources, &analysis.findings);
-    report::skipped(&mut page, &analysis.skipped);
-    page.text().to_owned()
+/// Writes everything in the format asked for; `false` where it could not be written.
+fn show(console: &mut Console, command: &Check, records: &[Record]) -> bool {
+    let mut summary = Summary::default();
+    records.iter().for_each(|record| summary.add(record));
+    let document = match command.format {
+        CheckFormat::Text => return text(console, command, records, summary),
+        CheckFormat::Markdown => Ok(report::markdown::findings(records, summary)),
+        CheckFormat::Json => report::json::findings(records, summary),
+        CheckFormat::Sarif => report::sarif::findings(records, command.against.is_some()),
+    };
+    match document {
+        Ok(text) => console.result(&text),
+        Err(problem) => {
+            console.say(&format!("the findings could not be written: {problem}"));
+            false
+        }
+    }
 }
 
-/// What stands at the end: the counts, or the whole document.
-fn finish(console: &mut Console, format: Format, kept: &[Analysis], summary: Summary) -> bool {
-    match format {
-        Format::Text if summary.files == 0 => true,
-        Format::Text => {
-            let mut page = console.page();
-            summary.write(&mut page);
-            console.result(page.text())
+fn text(console: &mut Console, command: &Check, records: &[Record], summary: Summary) -> bool {
+    for record in records {
+        let mut page = console.page();
+        report::findings(&mut page, &record.sources, &record.findings);
+        if command.accepted {
+            report::accepted(&mut page, &record.sources, &record.findings);
         }
-        Format::Json => match report::json::findings(kept, summary) {
-            Ok(text) => console.result(&text),
-            Err(problem) => {
-                console.say(&format!("the findings could not be written as JSON: {problem}"));
-                false
-            }
-        },
+        report::skipped(&mut page, &record.skipped);
+        if !console.result(page.text()) {
+            return false;
+        }
     }
+    if records.is_empty() {
+        return true;
+    }
+    let mut page = console.page();
+    summary.write(&mut page);
+    console.result(page.text())
 }

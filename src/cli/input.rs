@@ -1,7 +1,9 @@
 //! Where netlists come from: files, directories that are walked, and standard input as `-`.
 
+use super::settings::Shelf;
 use kneewise::text::{Disk, LoadProblem, Loader, bounded};
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 /// What a file in a directory must end in to be a netlist of its own.
 const ENDINGS: [&str; 3] = ["net", "cir", "ckt"];
@@ -11,32 +13,61 @@ fn is_standard_input(path: &Path) -> bool {
     path == Path::new("-")
 }
 
-/// The file system, with `-` for standard input.
+/// The file system, with `-` for standard input, and files that are held as they were.
 #[derive(Debug, Default)]
 pub struct Input {
     disk: Disk,
-    /// Standard input can be read once only.
-    standard: Option<Vec<u8>>,
+    /// Standard input, which can be read once only.
+    standard: Option<Arc<Vec<u8>>>,
+    held: Vec<(PathBuf, Vec<u8>)>,
+}
+
+impl Input {
+    /// With what stands on standard input, where it was read already.
+    pub fn with(standard: Option<Arc<Vec<u8>>>) -> Self {
+        Input { standard, ..Input::default() }
+    }
+
+    /// What stands on standard input, where one of the jobs wants it and it can be read.
+    pub fn standard(jobs: &[Job]) -> Option<Arc<Vec<u8>>> {
+        jobs.iter().any(|job| is_standard_input(&job.path)).then(read_standard).and_then(Result::ok)
+    }
+
+    /// From now on the file at `path` holds these bytes.
+    pub fn hold(&mut self, path: &Path, bytes: Vec<u8>) {
+        self.held.push((path.to_path_buf(), bytes));
+    }
+
+    fn held(&self, path: &Path) -> Option<&Vec<u8>> {
+        self.held.iter().find(|(held, _)| held == path).map(|(_, bytes)| bytes)
+    }
+}
+
+fn read_standard() -> Result<Arc<Vec<u8>>, LoadProblem> {
+    let bytes = bounded(std::io::stdin().lock()).map_err(|e| LoadProblem(e.to_string()))?;
+    Ok(Arc::new(bytes))
 }
 
 impl Loader for Input {
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
+        if let Some(bytes) = self.held(path) {
+            return Ok(bytes.clone());
+        }
         if !is_standard_input(path) {
             return self.disk.load(path);
         }
         if self.standard.is_none() {
-            let bytes = bounded(std::io::stdin().lock()).map_err(|e| LoadProblem(e.to_string()))?;
-            self.standard = Some(bytes);
+            self.standard = Some(read_standard()?);
         }
-        Ok(self.standard.clone().unwrap_or_default())
+        Ok(self.standard.as_deref().cloned().unwrap_or_default())
     }
 
     fn size(&self, path: &Path) -> Option<u64> {
-        if is_standard_input(path) { None } else { self.disk.size(path) }
+        if is_standard_input(path) || self.held(path).is_some() { None } else { self.disk.size(path) }
     }
 
     fn exists(&self, path: &Path) -> bool {
-        is_standard_input(path) || self.disk.exists(path)
+        is_standard_input(path) || self.held(path).is_some() || self.disk.exists(path)
     }
 
     fn resolve(&self, path: &Path) -> PathBuf {
@@ -52,53 +83,67 @@ impl Loader for Input {
     }
 }
 
-/// Files to read, each once, and what was wrong with the paths.
+/// A file to examine.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Job {
+    /// Where it is.
+    pub path: PathBuf,
+    /// Found in a directory, rather than named.
+    pub walked: bool,
+}
+
+/// Files to examine, each once, and what was wrong with the paths.
 #[derive(Debug, Default)]
 pub struct Wanted {
-    pub files: Vec<PathBuf>,
+    pub jobs: Vec<Job>,
     pub problems: Vec<String>,
 }
 
-/// Turns paths into files: a directory stands for the netlists below it, sorted; hidden ones are passed over.
-pub fn wanted(paths: &[PathBuf]) -> Wanted {
+/// Turns paths into files: a directory stands for the netlists below it, sorted; hidden ones and those that ignore
+/// files name are passed over.
+pub fn wanted(paths: &[PathBuf], shelf: &mut Shelf) -> Wanted {
     let mut wanted = Wanted::default();
     for path in paths {
         if !is_standard_input(path) && path.is_dir() {
-            walk(path, &mut wanted);
+            let found = shelf.of(path);
+            let own = found.as_ref().and_then(|f| f.settings.extensions.clone());
+            walk(path, &own.unwrap_or_else(|| ENDINGS.map(str::to_owned).to_vec()), &mut wanted);
         } else {
-            wanted.files.push(path.clone());
+            wanted.jobs.push(Job { path: path.clone(), walked: false });
         }
     }
     let mut seen = std::collections::BTreeSet::new();
-    wanted.files.retain(|file| seen.insert(file.clone()));
+    wanted.jobs.retain(|job| seen.insert(job.path.clone()));
     wanted
 }
 
-fn walk(directory: &Path, wanted: &mut Wanted) {
-    let before = (wanted.files.len(), wanted.problems.len());
-    let visible = |entry: &walkdir::DirEntry| {
-        entry.depth() == 0 || !entry.file_name().to_string_lossy().starts_with('.')
-    };
-    let walk = walkdir::WalkDir::new(directory).sort_by_file_name().into_iter().filter_entry(visible);
+fn walk(directory: &Path, endings: &[String], wanted: &mut Wanted) {
+    let before = (wanted.jobs.len(), wanted.problems.len());
+    let walk = ignore::WalkBuilder::new(directory)
+        .sort_by_file_name(std::ffi::OsStr::cmp)
+        .require_git(false)
+        // what one person has told his machine to ignore, the others' machines see
+        .git_global(false)
+        .build();
     for entry in walk {
         match entry {
-            Ok(entry) if entry.path().is_file() && is_netlist(entry.path()) => {
-                wanted.files.push(entry.into_path());
+            Ok(entry) if is_netlist(entry.path(), endings) && entry.path().is_file() => {
+                wanted.jobs.push(Job { path: entry.into_path(), walked: true });
             }
             Ok(_) => {}
-            Err(problem) => {
-                let path = problem.path().unwrap_or(directory).display().to_string();
-                let reason = problem.io_error().map_or_else(|| problem.to_string(), ToString::to_string);
-                wanted.problems.push(format!("{path}: {reason}"));
-            }
+            Err(problem) => wanted.problems.push(problem.to_string()),
         }
     }
-    if (wanted.files.len(), wanted.problems.len()) == before {
-        let endings = ENDINGS.map(|e| format!(".{e}")).join(", ");
-        wanted.problems.push(format!("{}: no netlist in this directory ({endings})", directory.display()));
+    if (wanted.jobs.len(), wanted.problems.len()) == before {
+        let endings: Vec<String> = endings.iter().map(|e| format!(".{e}")).collect();
+        wanted.problems.push(format!(
+            "{}: no netlist in this directory ({})",
+            directory.display(),
+            endings.join(", ")
+        ));
     }
 }
 
-fn is_netlist(path: &Path) -> bool {
-    path.extension().is_some_and(|e| ENDINGS.iter().any(|wanted| e.eq_ignore_ascii_case(wanted)))
+fn is_netlist(path: &Path, endings: &[String]) -> bool {
+    path.extension().is_some_and(|e| endings.iter().any(|wanted| e.eq_ignore_ascii_case(wanted)))
 }

@@ -1,11 +1,17 @@
 //! Arguments, dispatch, exit code. The library is seen through its public interface only; what is said about
 //! the run goes to standard error, results go to standard output.
 
+mod annotate;
 mod args;
+mod baseline;
 mod check;
+mod compare;
+mod extras;
 mod input;
 mod output;
+mod parallel;
 mod rules;
+mod settings;
 mod states;
 mod swing;
 mod waiting;
@@ -41,7 +47,11 @@ pub fn run() -> ExitCode {
         Command::Check(command) => check::run(&mut console, command),
         Command::States(command) => states::run(&mut console, command),
         Command::Swing(command) => swing::run(&mut console, command),
+        Command::Annotate(command) => annotate::run(&mut console, command),
+        Command::Compare(command) => compare::run(&mut console, command),
         Command::Rules(command) => rules::run(&mut console, command),
+        Command::Completions { shell } => extras::completions(&mut console, *shell),
+        Command::Manual => extras::manual(&mut console),
     };
     ExitCode::from(match end {
         End::Clean => 0,

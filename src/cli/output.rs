@@ -37,12 +37,17 @@ impl Console {
 
     /// Writes results. `false` where they could not be written for any other reason than a closed pipe.
     pub fn result(&mut self, text: &str) -> bool {
+        self.result_bytes(text.as_bytes())
+    }
+
+    /// The same for what need not be UTF-8.
+    pub fn result_bytes(&mut self, bytes: &[u8]) -> bool {
         self.clear_progress();
         if self.closed {
             return true;
         }
         let mut out = io::stdout().lock();
-        match out.write_all(text.as_bytes()).and_then(|()| out.flush()) {
+        match out.write_all(bytes).and_then(|()| out.flush()) {
             Ok(()) => true,
             Err(problem) if problem.kind() == io::ErrorKind::BrokenPipe => {
                 self.closed = true;

@@ -1,16 +1,26 @@
 //! `kneewise states`: every diode's state, and on request the reasoning about one.
 
 use super::End;
-use super::args::{Common, Format, States};
+use super::args::{CircuitOptions, Format, States};
 use super::input::Input;
 use super::output::Console;
+use super::settings::Shelf;
 use kneewise::analysis::{Analysis, analyse};
-use kneewise::finding::Severity;
+use kneewise::config::Options;
+use kneewise::finding::{Finding, Severity};
 use kneewise::report::{self, Summary};
 use std::path::Path;
 
 pub fn run(console: &mut Console, command: &States) -> End {
-    let options = command.common.options(command.why.as_deref());
+    let mut shelf = match Shelf::new(command.common.circuit.config.as_deref()) {
+        Ok(shelf) => shelf,
+        Err(problem) => {
+            console.say(&problem);
+            return End::Failed;
+        }
+    };
+    let found = shelf.of(&command.file);
+    let options = Options { why: command.why.clone(), ..command.common.circuit.options(found.as_deref()) };
     let analysis = match analyse(&mut Input::default(), &command.file, &options) {
         Ok(analysis) => analysis,
         Err(problem) => {
@@ -22,7 +32,7 @@ pub fn run(console: &mut Console, command: &States) -> End {
         console.say(&format!("there is no diode `{name}` in {}", command.file.display()));
         return End::Failed;
     }
-    let written = match command.common.format {
+    let written = match command.format {
         Format::Text => {
             let mut page = console.page();
             match command.why {
@@ -39,10 +49,10 @@ pub fn run(console: &mut Console, command: &States) -> End {
             }
         },
     };
-    let worst = worst(console, &command.file, &command.common, &analysis);
+    let worst = worst(console, &command.file, &command.common.circuit, &analysis, shelf.findings());
     match written {
         false => End::Failed,
-        true if command.common.fail_on.reached_by(worst) => End::Found,
+        true if command.common.fails_on(found.as_deref(), worst) => End::Found,
         true => End::Clean,
     }
 }
@@ -55,13 +65,20 @@ fn missing_diode<'a>(analysis: &Analysis, why: Option<&'a str>) -> Option<&'a st
 
 /// The most serious of the findings and the verdicts; says on standard error that there are findings, since
 /// this command does not show them.
-pub fn worst(console: &mut Console, file: &Path, common: &Common, analysis: &Analysis) -> Option<Severity> {
+pub fn worst<'f>(
+    console: &mut Console,
+    file: &Path,
+    circuit: &CircuitOptions,
+    analysis: &Analysis,
+    of_settings: impl Iterator<Item = &'f Finding>,
+) -> Option<Severity> {
     let mut summary = Summary::default();
-    summary.add(analysis);
+    summary.count_all(&analysis.findings);
+    of_settings.for_each(|f| summary.count_all(std::slice::from_ref(f)));
     if summary.errors + summary.warnings > 0 {
         let file = file.display();
-        let drop = common.drop.iter().map(|volts| format!(" --drop {volts}"));
-        let set = common.set.iter().map(|(name, value)| format!(" --set {name}={value}"));
+        let drop = circuit.drop.iter().map(|volts| format!(" --drop {volts}"));
+        let set = circuit.set.iter().map(|(name, value)| format!(" --set {name}={value}"));
         let options: String = drop.chain(set).collect();
         console
             .say(&format!("{file} has {}; `kneewise check {file}{options}` tells them", summary.troubles()));

@@ -4,6 +4,7 @@ use super::End;
 use super::args::{Format, Swing};
 use super::input::Input;
 use super::output::Console;
+use super::settings::Shelf;
 use super::waiting::Waiting;
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::config::Options;
@@ -14,8 +15,17 @@ use std::path::Path;
 const PATIENCE: u32 = 20;
 
 pub fn run(console: &mut Console, command: &Swing) -> End {
-    let options = Options { swing: true, patience: PATIENCE, ..command.common.options(None) };
-    let waiting = Waiting::new(&options.monitor);
+    let mut shelf = match Shelf::new(command.common.circuit.config.as_deref()) {
+        Ok(shelf) => shelf,
+        Err(problem) => {
+            console.say(&problem);
+            return End::Failed;
+        }
+    };
+    let found = shelf.of(&command.file);
+    let circuit = command.common.circuit.options(found.as_deref());
+    let options = Options { swing: true, patience: PATIENCE, ..circuit };
+    let waiting = Waiting::new(&options.monitor, true);
     let analysed = analyse(&mut Input::default(), &command.file, &options);
     drop(waiting);
     let analysis = match analysed {
@@ -25,7 +35,7 @@ pub fn run(console: &mut Console, command: &Swing) -> End {
             return End::Failed;
         }
     };
-    let mut written = match command.common.format {
+    let mut written = match command.format {
         Format::Text => {
             let mut page = console.page();
             report::swing(&mut page, &analysis);
@@ -46,10 +56,11 @@ pub fn run(console: &mut Console, command: &Swing) -> End {
         console.say("ended by Ctrl-C; what was not followed is named above");
         written = false;
     }
-    let worst = super::states::worst(console, &command.file, &command.common, &analysis);
+    let worst =
+        super::states::worst(console, &command.file, &command.common.circuit, &analysis, shelf.findings());
     match written {
         false => End::Failed,
-        true if command.common.fail_on.reached_by(worst) => End::Found,
+        true if command.common.fails_on(found.as_deref(), worst) => End::Found,
         true => End::Clean,
     }
 }

@@ -20,7 +20,7 @@ pub struct Waiting {
 
 impl Waiting {
     /// Begins to watch; Ctrl-C now cancels instead of killing, and a second one kills.
-    pub fn new(monitor: &Monitor) -> Self {
+    pub fn new(monitor: &Monitor, with_bar: bool) -> Self {
         let asked = monitor.clone();
         // one handler a process; a second run shares the first one's, which is as good as none
         let _ = ctrlc::set_handler(move || {
@@ -31,7 +31,7 @@ impl Waiting {
         });
         let (done, ended) = mpsc::channel::<()>();
         let monitor = monitor.clone();
-        let thread = io::stderr().is_terminal().then(|| {
+        let thread = (with_bar && io::stderr().is_terminal()).then(|| {
             std::thread::spawn(move || {
                 let started = Instant::now();
                 let mut shown = false;

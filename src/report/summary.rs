@@ -1,8 +1,8 @@
 //! The counts at the end of a run.
 
 use super::paint::{Ink, Page};
-use crate::analysis::Analysis;
 use crate::finding::{self, Finding, Severity};
+use crate::review::Record;
 use serde::Serialize;
 
 /// Counts over all root files of a run; accepted findings count nowhere else.
@@ -21,17 +21,24 @@ pub struct Summary {
     /// Diodes after expansion.
     pub diodes: usize,
     /// Findings that a note of the netlist accepts.
-    #[serde(skip)]
     pub accepted: usize,
+    /// Findings that the state compared with has too; they count nowhere else either.
+    pub known: usize,
 }
 
 impl Summary {
     /// Counts one more file.
-    pub fn add(&mut self, analysis: &Analysis) {
-        self.files += 1;
-        self.elements += analysis.circuit.elements.len();
-        self.diodes += analysis.circuit.elements.iter().filter(|e| e.letter == b'D').count();
-        for finding in &analysis.findings {
+    pub fn add(&mut self, record: &Record) {
+        self.files += usize::from(record.is_netlist);
+        self.elements += record.elements;
+        self.diodes += record.diodes;
+        self.known += record.known.len();
+        self.count_all(&record.findings);
+    }
+
+    /// Counts findings.
+    pub fn count_all(&mut self, findings: &[Finding]) {
+        for finding in findings {
             self.count(finding);
         }
     }
@@ -78,8 +85,13 @@ impl Summary {
                 _ => page.ink(ink, &counted(count, noun)),
             };
         }
-        if self.accepted > 0 {
-            page.plain(&format!(" ({} accepted)", self.accepted));
+        let aside: Vec<String> = [(self.accepted, "accepted"), (self.known, "known before")]
+            .iter()
+            .filter(|(count, _)| *count > 0)
+            .map(|(count, what)| format!("{count} {what}"))
+            .collect();
+        if !aside.is_empty() {
+            page.plain(&format!(" ({})", aside.join(", ")));
         }
         page.end();
     }

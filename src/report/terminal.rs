@@ -28,6 +28,22 @@ pub fn findings(page: &mut Page, sources: &Sources, findings: &[Finding]) {
     }
 }
 
+/// Writes accepted findings, a line or two each, with the reasons given for them.
+pub fn accepted(page: &mut Page, sources: &Sources, findings: &[Finding]) {
+    for finding in findings {
+        let Some(reason) = &finding.accepted else { continue };
+        let (start, _) = sources.positions(finding.span);
+        let name = whole(sources.name(finding.span.file));
+        page.ink(Ink::Faint, "accepted").plain(" · ").plain(finding.rule).plain(" · ");
+        page.plain(&format!("{name}:{}:{}", start.line, start.column)).end();
+        for line in wrap(&finding.message, WIDTH) {
+            page.plain(INDENT).plain(&line).end();
+        }
+        paragraph(page, "because ", reason);
+        page.end();
+    }
+}
+
 /// Writes which rules could not judge, and why.
 pub fn skipped(page: &mut Page, skipped: &[Skipped]) {
     for skip in skipped {

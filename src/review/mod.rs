@@ -2,10 +2,19 @@
 //! revisions, and rewriting a file without ever losing it. Shows nothing: that is `report`'s.
 
 mod annotate;
+mod baseline;
+mod compare;
 mod figures;
 mod mark;
+mod record;
 mod save;
 
 pub use annotate::{Annotated, Change, annotate, strip};
+pub use baseline::Baseline;
+pub use compare::{
+    Comparison, FindingsChange, Move, Revision, StateChange, TrustChange, VerdictChange, WiringChange,
+    compare,
+};
 pub use mark::marks;
+pub use record::Record;
 pub use save::{Desk, DiskDesk, SaveProblem, save};

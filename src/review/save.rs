@@ -168,5 +168,5 @@ fn create_beside(desk: &mut dyn Desk, target: &Path) -> io::Result<PathBuf> {
 }
 
 #[cfg(test)]
-#[path = "save_tests.rs"]
+#[path = "tests/save.rs"]
 mod tests;

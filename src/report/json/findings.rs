@@ -1,9 +1,9 @@
 //! `kneewise.findings`: all findings of a run.
 
 use super::place::Place;
-use crate::analysis::Analysis;
 use crate::finding::{Edit, Finding, Fix, Label, TrailStep};
 use crate::report::Summary;
+use crate::review::Record;
 use crate::text::{FileId, Sources};
 use serde::Serialize;
 
@@ -17,7 +17,7 @@ struct Document<'a> {
 }
 
 #[derive(Serialize)]
-struct Entry<'a> {
+pub(super) struct Entry<'a> {
     rule: &'a str,
     severity: &'static str,
     #[serde(flatten)]
@@ -69,9 +69,9 @@ struct Skip<'a> {
 ///
 /// # Errors
 /// None is known: all keys are strings and all numbers finite.
-pub fn findings(analyses: &[Analysis], summary: Summary) -> serde_json::Result<String> {
-    let entries = analyses.iter().flat_map(|a| a.findings.iter().map(|f| entry(&a.sources, f)));
-    let skipped = analyses.iter().flat_map(|a| {
+pub fn findings(records: &[Record], summary: Summary) -> serde_json::Result<String> {
+    let entries = records.iter().flat_map(|a| a.findings.iter().map(|f| entry(&a.sources, f)));
+    let skipped = records.iter().flat_map(|a| {
         let file = a.sources.name(FileId(0));
         a.skipped.iter().map(move |s| Skip { rule: s.rule, file, reason: &s.reason })
     });
@@ -84,7 +84,7 @@ pub fn findings(analyses: &[Analysis], summary: Summary) -> serde_json::Result<S
     })
 }
 
-fn entry<'a>(sources: &'a Sources, finding: &'a Finding) -> Entry<'a> {
+pub(super) fn entry<'a>(sources: &'a Sources, finding: &'a Finding) -> Entry<'a> {
     let worded = |label: &'a Label| Worded { place: Place::of(sources, label.span), message: &label.message };
     let step = |step: &'a TrailStep| Step { place: Place::of(sources, step.span), what: &step.what };
     // the words at the main place come first, as a label of their own

@@ -1,11 +1,13 @@
 //! Results for a pipeline. The keys, their order and the nulls are a promise to other programs; the schemas in
 //! `grammar/` hold them, and a change of meaning raises `version`.
 
+mod comparison;
 mod findings;
 mod place;
 mod states;
 mod swing;
 
+pub use comparison::comparison;
 pub use findings::findings;
 pub use states::states;
 pub use swing::swing;

@@ -1,0 +1,144 @@
+//! What differs, put together over the conditions: one row for each flip and for each quantity that moves.
+
+use crate::circuit::State;
+use crate::finding::{compact, quantity};
+use crate::operating::Verdict;
+use crate::review::{Comparison, Move, StateChange};
+
+/// Conditions named in one row.
+const NAMES: usize = 3;
+
+/// A flip and the conditions in which it shows.
+pub(super) struct Flip<'a> {
+    pub diode: &'a str,
+    pub old: String,
+    pub new: String,
+    pub cases: Vec<&'a str>,
+    pub why: &'a str,
+}
+
+pub(super) fn flips(comparison: &Comparison) -> Vec<Flip<'_>> {
+    let mut flips: Vec<(&StateChange, Flip<'_>)> = Vec::new();
+    for change in &comparison.states {
+        let same = |(first, _): &&mut (&StateChange, Flip<'_>)| {
+            first.diode == change.diode && first.old == change.old && first.new == change.new
+        };
+        match flips.iter_mut().find(same) {
+            Some((_, flip)) => flip.cases.push(&change.case),
+            None => flips.push((
+                change,
+                Flip {
+                    diode: &change.diode,
+                    old: state(change.old, change.old_current),
+                    new: state(change.new, change.new_current),
+                    cases: vec![&change.case],
+                    why: &change.why,
+                },
+            )),
+        }
+    }
+    flips.into_iter().map(|(_, flip)| flip).collect()
+}
+
+/// `conducting 4.3 mA`, `blocking`
+fn state(state: Option<State>, current: Option<f64>) -> String {
+    match (state, current) {
+        (None, _) => "one of several states".into(),
+        (Some(state @ (State::Conducting | State::Breakdown)), Some(current)) => {
+            format!("{} {}", state.word(), quantity(current.abs(), "A"))
+        }
+        (Some(state), _) => state.word().to_owned(),
+    }
+}
+
+/// A current or voltage that moves, in the condition in which it moves most.
+pub(super) struct Moved<'a> {
+    pub name: &'a str,
+    pub what: &'static str,
+    pub unit: &'static str,
+    pub old: f64,
+    pub new: f64,
+    pub cases: Vec<&'a str>,
+}
+
+/// The largest changes first.
+pub(super) fn moves(comparison: &Comparison) -> Vec<Moved<'_>> {
+    let mut rows: Vec<Moved<'_>> = Vec::new();
+    let currents = comparison.currents.iter().map(|m| (m, "current", "A"));
+    let voltages = comparison.voltages.iter().map(|m| (m, "voltage", "V"));
+    let mut known = std::collections::BTreeMap::new();
+    for (change, what, unit) in currents.chain(voltages) {
+        let at = *known.entry((what, change.name.as_str())).or_insert(rows.len());
+        if at == rows.len() {
+            let Move { name, case, old, new } = change;
+            rows.push(Moved { name, what, unit, old: *old, new: *new, cases: vec![case] });
+        } else if let Some(row) = rows.get_mut(at) {
+            // the condition of the largest change stands first and gives the numbers
+            if share(change.old, change.new) > share(row.old, row.new) {
+                (row.old, row.new) = (change.old, change.new);
+                row.cases.insert(0, &change.case);
+            } else {
+                row.cases.push(&change.case);
+            }
+        }
+    }
+    rows.sort_by(|a, b| share(b.old, b.new).total_cmp(&share(a.old, a.new)));
+    rows
+}
+
+fn share(old: f64, new: f64) -> f64 {
+    (old - new).abs() / old.abs().max(new.abs())
+}
+
+impl Moved<'_> {
+    /// `+12 %`, `× 3.2`, `reversed`
+    pub fn change(&self) -> String {
+        let ratio = self.new / self.old;
+        if self.old == 0.0 {
+            return "from nothing".into();
+        }
+        if self.new == 0.0 {
+            return "to nothing".into();
+        }
+        if ratio < 0.0 {
+            return "reversed".into();
+        }
+        if !(0.5..2.0).contains(&ratio) {
+            return format!("× {}", compact(ratio, ""));
+        }
+        format!("{:+.0} %", 100.0 * (ratio - 1.0))
+    }
+}
+
+/// `nominal, VIN=9 and 3 more`
+pub(super) fn conditions(cases: &[&str]) -> String {
+    if cases.len() <= NAMES {
+        return cases.join(", ");
+    }
+    format!("{} and {} more", cases[..NAMES - 1].join(", "), cases.len() - NAMES + 1)
+}
+
+/// `nominal: unique, now none`
+pub(super) fn verdicts(comparison: &Comparison) -> Vec<String> {
+    let word = Verdict::word;
+    let line = |change: &crate::review::VerdictChange| match (change.old, change.new) {
+        (Some(old), Some(new)) => format!("condition {}: {} → {}", change.case, word(old), word(new)),
+        (None, Some(new)) => format!("condition {} is new: {}", change.case, word(new)),
+        (Some(_), None) => format!("condition {} is no longer examined", change.case),
+        (None, None) => change.case.clone(),
+    };
+    comparison.verdicts.iter().map(line).collect()
+}
+
+/// `D1: trust good → poor (nominal)`
+pub(super) fn trust(comparison: &Comparison) -> Vec<String> {
+    let mut rows: Vec<(String, Vec<&str>)> = Vec::new();
+    for change in &comparison.trust {
+        let head = format!("{}: trust {} → {}", change.diode, change.old.word(), change.new.word());
+        match rows.iter_mut().find(|(known, _)| *known == head) {
+            Some((_, cases)) => cases.push(&change.case),
+            None => rows.push((head, vec![&change.case])),
+        }
+    }
+    rows.into_iter().map(|(head, cases)| format!("{head} ({})", conditions(&cases))).collect()
+}
