@@ -4,4 +4,5 @@
 
 mod expectations;
 mod rule_examples;
+mod trails;
 mod wiring_facts;
