@@ -61,6 +61,7 @@ Examples:
 Exit code: 0 done, 1 marks are out of date (--verify), 2 the job could not be done.")]
     Annotate(Annotate),
     /// Tell what a change does electrically: states that flip, what moves, findings that come and go
+    #[command(override_usage = "kneewise compare [OPTIONS] <OLD> <NEW>")]
     #[command(after_help = "\
 Examples:
   kneewise compare old/charger.net charger.net

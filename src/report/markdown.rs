@@ -73,9 +73,9 @@ fn table(out: &mut String, findings: &[(&Sources, &Finding)]) {
             "| {} | {} | {} ({}){} |",
             finding.severity.word(),
             code(&place),
-            escaped(&finding.message),
+            prose(&finding.message),
             code(finding.rule),
-            escaped(&edit),
+            prose(&edit),
         );
     }
     if findings.len() > MOST {
@@ -100,6 +100,21 @@ pub(super) fn escaped(text: &str) -> String {
     out
 }
 
+/// A sentence of ours, in which names stand between backquotes: those become code, the rest is no markup.
+pub(super) fn prose(text: &str) -> String {
+    let parts: Vec<&str> = text.split('`').collect();
+    if parts.len() % 2 == 0 {
+        // a backquote of the input's own: nothing is sure
+        return escaped(text);
+    }
+    let part = |(n, part): (usize, &&str)| match n % 2 {
+        1 if !part.is_empty() => code(part),
+        1 => escaped("``"),
+        _ => escaped(part),
+    };
+    parts.iter().enumerate().map(part).collect()
+}
+
 /// Text as code: the fence is longer than any run of backquotes inside (CommonMark 6.1).
 pub(super) fn code(text: &str) -> String {
     let clean: String = text.chars().map(|c| if c.is_control() { ' ' } else { c }).collect();
@@ -119,6 +134,8 @@ mod tests {
     fn text_of_the_input_is_no_markup() {
         assert_eq!(escaped("node <b>|x*"), "node \\<b\\>\\|x\\*");
         assert_eq!(escaped("two\nlines"), "two lines");
+        assert_eq!(prose("node `a_b` and <b>"), "node `a_b` and \\<b\\>");
+        assert_eq!(prose("one ` alone"), "one \\` alone");
         assert_eq!(code("a|b"), "`a\\|b`");
         assert_eq!(code("a`b"), "``a`b``");
         assert_eq!(code("`"), "`` ` ``");

@@ -9,6 +9,7 @@ mod broken;
 mod files;
 mod printer;
 mod properties;
+mod review;
 #[allow(dead_code, reason = "other binaries use more of it")]
 #[path = "../circuits/seed.rs"]
 mod seed;

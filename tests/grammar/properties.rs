@@ -28,11 +28,11 @@ fn netlists(folder: &Path) -> Vec<Vec<u8>> {
     paths.iter().map(|p| std::fs::read(p).unwrap()).collect()
 }
 
-fn fixtures() -> Vec<Vec<u8>> {
+pub fn fixtures() -> Vec<Vec<u8>> {
     netlists(&folder().parent().unwrap().join("fixtures"))
 }
 
-fn broken() -> Vec<Vec<u8>> {
+pub fn broken() -> Vec<Vec<u8>> {
     netlists(&folder().join("broken"))
 }
 
@@ -94,7 +94,7 @@ fn mutated(bytes: &[u8], other: &[u8], seed: &mut Seed) -> Vec<u8> {
 }
 
 /// Random bytes, random characters that mean something, and mutations of what is nearly right.
-fn any_text(seeds: &[Vec<u8>], seed: &mut Seed) -> Vec<u8> {
+pub fn any_text(seeds: &[Vec<u8>], seed: &mut Seed) -> Vec<u8> {
     match seed.below(6) {
         0 => (0..seed.below(300)).map(|_| seed.below(256) as u8).collect(),
         1 => {
@@ -126,7 +126,7 @@ fn no_text_makes_it_panic_and_every_place_is_inside_its_file() {
 
 /// Element lines of a random circuit, nodes by number: sound and unsound ones, diodes in any direction. Sources close
 /// at most one loop of their own: of several, a finding names one of several equally good descriptions.
-fn random_circuit(seed: &mut Seed) -> Vec<(String, [usize; 2], String)> {
+pub fn random_circuit(seed: &mut Seed) -> Vec<(String, [usize; 2], String)> {
     let nodes = seed.between(3, 7);
     let mut group: Vec<usize> = (0..nodes).collect();
     let (mut lines, mut loops) = (Vec::new(), 0);
@@ -155,7 +155,7 @@ fn random_circuit(seed: &mut Seed) -> Vec<(String, [usize; 2], String)> {
 
 const MODELS: &str = ".model DX D(IS=1n N=1.8)\n.model DY D(IS=10f BV=5)\n.end\n";
 
-fn netlist(lines: &[(String, [usize; 2], String)], names: &[String]) -> String {
+pub fn netlist(lines: &[(String, [usize; 2], String)], names: &[String]) -> String {
     let mut text = String::from("random circuit\n");
     for (name, [a, b], value) in lines {
         writeln!(text, "{name} {} {} {value}", names[*a], names[*b]).unwrap();

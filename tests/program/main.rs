@@ -3,9 +3,15 @@
 
 #![allow(clippy::unwrap_used, clippy::panic)]
 
+mod against;
 mod arguments;
+mod compare;
 mod fixtures;
+mod marks;
 mod readme;
+mod review;
 mod runner;
+mod sarif;
 mod schemas;
+mod settings;
 mod streams;

@@ -39,6 +39,13 @@ pub fn run(arguments: &[&str]) -> Run {
     finish(command(arguments), b"")
 }
 
+/// Runs in a folder, with nothing on standard input.
+pub fn run_in(folder: &Path, arguments: &[&str]) -> Run {
+    let mut command = command(arguments);
+    command.current_dir(folder);
+    finish(command, b"")
+}
+
 /// Runs with this text on standard input.
 pub fn feed(arguments: &[&str], input: &str) -> Run {
     finish(command(arguments), input.as_bytes())

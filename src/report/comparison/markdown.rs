@@ -1,8 +1,8 @@
 //! The comparison as Markdown, for a comment in a review.
 
-use super::super::markdown::{code, escaped};
+use super::super::markdown::{code, escaped, prose};
 use super::super::summary::counted;
-use super::rows::{conditions, flips, moves, trust, verdicts};
+use super::rows::{conditions, flips, moves, trust, verdicts, wiring, worst_first};
 use super::{Compared, Fate, MOST};
 use crate::finding::quantity;
 use crate::review::{Comparison, Record};
@@ -66,18 +66,16 @@ fn both(out: &mut String, comparison: &Comparison, share: f64) {
     list(out, "Verdicts and trust", &rows);
     findings(out, "Findings that are new", &comparison.findings.new);
     findings(out, "Findings that are gone", &comparison.findings.gone);
-    let rows: Vec<String> = comparison.wiring.iter().map(|c| format!("{} {}", c.element, c.what)).collect();
-    list(out, "Wiring", &rows);
+    list(out, "Wiring", &wiring(comparison));
 }
 
 fn findings(out: &mut String, title: &str, record: &Record) {
-    let rows: Vec<String> = record
-        .findings
-        .iter()
+    let rows: Vec<String> = worst_first(record)
+        .into_iter()
         .map(|f| {
             let line = record.sources.positions(f.span).0.line;
             let place = format!("{}:{line}", record.sources.name(f.span.file));
-            format!("{} {} {}: {}", f.severity.word(), code(f.rule), code(&place), escaped(&f.message))
+            format!("{} {} {}: {}", f.severity.word(), code(f.rule), code(&place), prose(&f.message))
         })
         .collect();
     raw_list(out, title, &rows);

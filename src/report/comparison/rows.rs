@@ -1,9 +1,9 @@
 //! What differs, put together over the conditions: one row for each flip and for each quantity that moves.
 
 use crate::circuit::State;
-use crate::finding::{compact, quantity};
+use crate::finding::{Finding, compact, quantity};
 use crate::operating::Verdict;
-use crate::review::{Comparison, Move, StateChange};
+use crate::review::{Comparison, Move, Record, StateChange, WiringChange};
 
 /// Conditions named in one row.
 const NAMES: usize = 3;
@@ -116,6 +116,22 @@ pub(super) fn conditions(cases: &[&str]) -> String {
         return cases.join(", ");
     }
     format!("{} and {} more", cases[..NAMES - 1].join(", "), cases.len() - NAMES + 1)
+}
+
+/// The findings of a record, errors first.
+pub(super) fn worst_first(record: &Record) -> Vec<&Finding> {
+    let mut findings: Vec<&Finding> = record.findings.iter().collect();
+    findings.sort_by_key(|f| std::cmp::Reverse(f.severity));
+    findings
+}
+
+/// `D1 is turned round; …`, `R7: was R1`
+pub(super) fn wiring(comparison: &Comparison) -> Vec<String> {
+    let line = |change: &WiringChange| {
+        let colon = if change.what.starts_with("is ") { "" } else { ":" };
+        format!("{}{colon} {}", change.element, change.what)
+    };
+    comparison.wiring.iter().map(line).collect()
 }
 
 /// `nominal: unique, now none`

@@ -4,7 +4,7 @@ use super::super::paint::{Ink, Page, clean, wrap};
 use super::super::summary::counted;
 use super::super::table::{self, Cell};
 use super::super::terminal::ink;
-use super::rows::{conditions, flips, moves, trust, verdicts};
+use super::rows::{conditions, flips, moves, trust, verdicts, wiring, worst_first};
 use super::{Compared, Fate, MOST};
 use crate::finding::{Finding, figure};
 use crate::review::{Comparison, Record};
@@ -49,9 +49,7 @@ fn both(page: &mut Page, comparison: &Comparison, share: f64) {
     section(page, "verdicts and trust", &rows);
     list_findings(page, "new", &comparison.findings.new);
     list_findings(page, "gone", &comparison.findings.gone);
-    let rows: Vec<String> =
-        comparison.wiring.iter().map(|change| format!("{} {}", change.element, change.what)).collect();
-    section(page, "wiring", &rows);
+    section(page, "wiring", &wiring(comparison));
 }
 
 fn states(page: &mut Page, comparison: &Comparison) {
@@ -102,7 +100,7 @@ fn list_findings(page: &mut Page, what: &str, record: &Record) {
     }
     let heading = if what == "finding" { "findings".to_owned() } else { format!("findings that are {what}") };
     page.ink(Ink::Second, &format!("  {heading}")).end();
-    for finding in record.findings.iter().take(MOST) {
+    for finding in worst_first(record).into_iter().take(MOST) {
         page.plain("    ").ink(ink(finding.severity), finding.severity.word());
         page.plain(&format!(" · {} · {}", finding.rule, clean(&place(record, finding)))).end();
         for line in wrap(&finding.message, WIDTH - 6) {

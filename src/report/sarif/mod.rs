@@ -38,7 +38,7 @@ pub fn findings(records: &[Record], compared: bool) -> serde_json::Result<String
                 associated_rule: RuleReference { id: skip.rule },
                 level: "note",
                 locations: vec![place],
-                message: Text::of(format!("not judged: {}", skip.reason)),
+                message: Text::message(format!("not judged: {}", skip.reason)),
             });
         }
         for finding in &record.findings {
@@ -159,7 +159,7 @@ impl<'a> Writer<'a> {
             rule_index: rule_index(finding.rule),
             kind: "fail",
             level: level(finding.severity),
-            message: Text::of(sentence(finding)),
+            message: Text::message(sentence(finding)),
             locations: vec![main],
             partial_fingerprints: self.fingerprint(sources, finding.span, finding.rule, &finding.subjects),
             related_locations: related,
@@ -180,7 +180,7 @@ impl<'a> Writer<'a> {
             rule_index: rules::all().len(),
             kind: "informational",
             level: "none",
-            message: Text::of(format!("{name}: {state}")),
+            message: Text::message(format!("{name}: {state}")),
             locations: vec![self.places.location(sources, place, None)],
             partial_fingerprints: self.fingerprint(sources, place, STATE, &[name]),
             related_locations: Vec::new(),
@@ -222,7 +222,10 @@ impl<'a> Writer<'a> {
                 inserted_content: Text::of(edit.replacement.as_str()),
             });
         }
-        Mend { description: Text::of(fix.title.as_str()), artifact_changes: by_file.into_values().collect() }
+        Mend {
+            description: Text::message(fix.title.as_str()),
+            artifact_changes: by_file.into_values().collect(),
+        }
     }
 
     /// From what does not change when other lines do: rule, file name and subjects, or where there are none, the

@@ -43,7 +43,7 @@ impl Places {
                 region: (!is_nowhere).then(|| region(sources, span)),
             },
             logical_locations: Vec::new(),
-            message: message.map(Text::of),
+            message: message.map(Text::message),
         }
     }
 }

@@ -64,6 +64,15 @@ impl<'a> Text<'a> {
     pub fn of(text: impl Into<std::borrow::Cow<'a, str>>) -> Self {
         Text { text: text.into() }
     }
+
+    /// A message of a result: braces would be placeholders there, so the standard has them doubled (section 3.11.5).
+    pub fn message(text: impl Into<std::borrow::Cow<'a, str>>) -> Self {
+        let text = text.into();
+        if text.contains(['{', '}']) {
+            return Text::of(text.replace('{', "{{").replace('}', "}}"));
+        }
+        Text { text }
+    }
 }
 
 #[derive(Serialize)]

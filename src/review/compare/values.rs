@@ -74,7 +74,8 @@ pub(super) fn voltages(
 
 fn moved(old: f64, new: f64, share: f64, floor: f64) -> bool {
     let (larger, step) = (old.abs().max(new.abs()), (old - new).abs());
-    larger > floor && step > share * larger && step > floor
+    // of a current that was nothing any share is more
+    larger > floor && step > share * old.abs() && step > floor
 }
 
 fn all_currents(solution: &Solution) -> BTreeMap<ElementId, f64> {

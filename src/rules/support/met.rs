@@ -58,7 +58,7 @@ pub fn node_met(circuit: &Circuit, solution: &Solution, node: NodeId, wanted: &E
         Quantity::Unknown => return Met::Unknown("its voltage is not evaluated".into()),
         _ if inside(voltage, range) => return Met::Yes,
         Quantity::Known(volts) => apart_from(volts, range, "V"),
-        Quantity::Open(Interval { low, high }) => format!("open, {}", interval(low, high, "V")),
+        Quantity::Open(Interval { low, high }) => format!("left open ({})", interval(low, high, "V")),
     };
     Met::No { kind: "", words, why: meeting(circuit, solution, node) }
 }
@@ -93,7 +93,7 @@ fn diode_words(diode: &DiodeResult, range: Option<(f64, f64)>) -> String {
             format!("{state} {current}")
         }
         (State::Conducting | State::Breakdown | State::Open, Quantity::Open(Interval { low, high })) => {
-            format!("{state}, its current left open: {}", interval(low, high, "A"))
+            format!("{state} with its current left open ({})", interval(low, high, "A"))
         }
         _ => state.to_owned(),
     }

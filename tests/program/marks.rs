@@ -1,0 +1,222 @@
+//! Marks on the disk: links, permissions, encodings, and rewriting that is killed, runs out of room or meets somebody
+//! else. Afterwards the old or the new file is there, whole.
+
+use crate::runner::{command, run_in, scratch};
+use std::path::{Path, PathBuf};
+use std::process::{Command, Stdio};
+use std::time::Duration;
+
+const BOARD: &str = "lamp\r\nV1 in 0 5\r\nR1\tin a 1k  \r\nD1 a 0 DX\r\n*@ drop DX 0.7\r\n.model DX D";
+
+fn marked() -> String {
+    BOARD.replace("D1 a 0 DX", "D1 a 0 DX ;@ conducting 4.30mA 0.700V")
+}
+
+fn board(name: &str) -> (PathBuf, PathBuf) {
+    let folder = scratch(&format!("marks-{name}"));
+    let file = folder.join("a.net");
+    std::fs::write(&file, BOARD).unwrap();
+    (folder, file)
+}
+
+fn names(folder: &Path) -> Vec<String> {
+    let mut names: Vec<String> = std::fs::read_dir(folder)
+        .unwrap()
+        .map(|e| e.unwrap().file_name().to_string_lossy().into_owned())
+        .collect();
+    names.sort();
+    names
+}
+
+#[test]
+fn written_twice_is_written_once() {
+    let (folder, file) = board("twice");
+    assert_eq!(run_in(&folder, &["annotate", "--write", "a.net"]).code, 0);
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), marked());
+    let first = std::fs::metadata(&file).unwrap().modified().unwrap();
+    assert_eq!(run_in(&folder, &["annotate", "--write", "a.net"]).code, 0);
+    assert_eq!(std::fs::metadata(&file).unwrap().modified().unwrap(), first, "what is right is not written");
+    assert_eq!(names(&folder), ["a.net"]);
+    assert_eq!(run_in(&folder, &["annotate", "a.net"]).out, marked());
+    assert_eq!(run_in(&folder, &["annotate", "--strip", "--write", "a.net"]).code, 0);
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), BOARD);
+}
+
+#[test]
+fn verify_ends_with_1_where_a_mark_is_missing_or_wrong() {
+    let (folder, file) = board("verify");
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "a.net"]).code, 1);
+    std::fs::write(&file, marked().replace("4.30mA", "4.31mA")).unwrap();
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "a.net"]).code, 0, "one unit is noise");
+    std::fs::write(&file, marked().replace("4.30mA", "4.40mA")).unwrap();
+    let run = run_in(&folder, &["annotate", "--verify", "a.net"]);
+    assert_eq!(run.code, 1);
+    assert!(run.out.contains("a.net:4  D1\n") && run.out.contains("4.40mA"), "{}", run.out);
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "missing.net"]).code, 2);
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "missing.net", "a.net"]).code, 2);
+}
+
+#[test]
+fn what_cannot_be_done_is_wrong_usage() {
+    let (folder, _) = board("usage");
+    for arguments in [
+        &["annotate"][..],
+        &["annotate", "a.net", "a.net"],
+        &["annotate", "--write", "--verify", "a.net"],
+        &["annotate", "--write", "-"],
+    ] {
+        let run = run_in(&folder, arguments);
+        assert_eq!((run.code, run.out.as_str()), (2, ""), "{arguments:?}");
+        assert!(!run.err.is_empty());
+    }
+}
+
+#[test]
+fn included_diodes_are_named_and_their_file_stays() {
+    let (folder, file) = board("included");
+    std::fs::write(folder.join("more.inc"), "D2 0 a DX\n").unwrap();
+    std::fs::write(&file, format!("{BOARD}\r\n.include more.inc\r\n")).unwrap();
+    let run = run_in(&folder, &["annotate", "--write", "a.net"]);
+    assert!(run.err.contains("1 diode in more.inc"), "{}", run.err);
+    assert_eq!(std::fs::read_to_string(folder.join("more.inc")).unwrap(), "D2 0 a DX\n");
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), format!("{}\r\n.include more.inc\r\n", marked()));
+}
+
+#[cfg(unix)]
+#[test]
+fn links_stay_links_and_permissions_stay() {
+    use std::os::unix::fs::{PermissionsExt, symlink};
+    let (folder, file) = board("links");
+    std::fs::create_dir(folder.join("far")).unwrap();
+    let target = folder.join("far/real.net");
+    std::fs::rename(&file, &target).unwrap();
+    symlink("far/real.net", &file).unwrap();
+    std::fs::set_permissions(&target, std::fs::Permissions::from_mode(0o640)).unwrap();
+    assert_eq!(run_in(&folder, &["annotate", "--write", "a.net"]).code, 0);
+    assert!(std::fs::symlink_metadata(&file).unwrap().file_type().is_symlink());
+    assert_eq!(std::fs::read_to_string(&target).unwrap(), marked());
+    assert_eq!(std::fs::metadata(&target).unwrap().permissions().mode() & 0o7777, 0o640);
+    assert_eq!(names(&folder.join("far")), ["real.net"]);
+}
+
+/// A board so large that rewriting it takes a while.
+fn large() -> String {
+    let diodes: String = (0..400).map(|n| format!("R{n} in n{n} 1k\nD{n} n{n} 0 DX\n")).collect();
+    format!("lamps\nV1 in 0 5\n*@ drop DX 0.7\n.model DX D\n{diodes}* {}\n", "x".repeat(300_000))
+}
+
+#[test]
+fn killed_at_any_moment_the_old_or_the_new_file_is_there() {
+    let folder = scratch("marks-killed");
+    let file = folder.join("a.net");
+    let old = large();
+    std::fs::write(&file, &old).unwrap();
+    let new = run_in(&folder, &["annotate", "a.net"]).out;
+    assert_ne!(old, new);
+    let start = std::time::Instant::now();
+    assert_eq!(run_in(&folder, &["annotate", "--write", "a.net"]).code, 0);
+    let whole = start.elapsed();
+    for part in 1..=12 {
+        std::fs::write(&file, &old).unwrap();
+        let mut child = command(&["annotate", "--write", "a.net"])
+            .current_dir(&folder)
+            .stdin(Stdio::null())
+            .spawn()
+            .unwrap();
+        std::thread::sleep(whole.mul_f64(f64::from(part) / 11.0).min(Duration::from_millis(600)));
+        // it may be done already
+        let _ = child.kill();
+        child.wait().unwrap();
+        let there = std::fs::read_to_string(&file).unwrap();
+        assert!(there == old || there == new, "part {part}: {} bytes", there.len());
+    }
+}
+
+/// Kills the program at the n-th call of each system call that rewriting makes, where the machine has `strace`.
+#[test]
+fn killed_at_every_system_call_the_old_or_the_new_file_is_there() {
+    let traced = |folder: &Path, inject: &str| {
+        let mut strace = Command::new("strace");
+        strace.args(["-f", "-qq", "-o", "/dev/null", "-e", inject]);
+        strace.arg(env!("CARGO_BIN_EXE_kneewise")).args(["annotate", "--write", "a.net"]);
+        strace.current_dir(folder).stdin(Stdio::null()).stdout(Stdio::null()).stderr(Stdio::null()).status()
+    };
+    let (folder, file) = board("strace");
+    if !traced(&folder, "trace=rename").is_ok_and(|status| status.success()) {
+        return;
+    }
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), marked());
+    let (mut olds, mut news) = (0, 0);
+    for call in ["openat", "read", "write", "fchown", "fchmod", "fsync", "close", "rename", "unlink", "statx"]
+    {
+        for number in 1..=40 {
+            std::fs::write(&file, BOARD).unwrap();
+            let inject = format!("inject={call}:signal=KILL:when={number}");
+            let was_killed = !traced(&folder, &inject).unwrap().success();
+            let there = std::fs::read_to_string(&file).unwrap();
+            assert!(there == BOARD || there == marked(), "{call} {number}: {there:?}");
+            if !was_killed {
+                break;
+            }
+            if there == BOARD { olds += 1 } else { news += 1 }
+        }
+    }
+    assert!(olds > 10 && news > 0, "{olds} times the old file, {news} times the new one");
+}
+
+/// Every system call that rewriting makes says that there is no room, or that it may not, where the machine has
+/// `strace`: then the file is as it was, the exit code is 2, and the message says so.
+#[test]
+fn refused_at_every_system_call_the_file_is_as_it_was_and_it_is_told() {
+    let (folder, file) = board("refused");
+    let traced = |inject: &str| {
+        let mut strace = Command::new("strace");
+        strace.args(["-f", "-qq", "-o", "/dev/null", "-e", inject]);
+        strace.arg(env!("CARGO_BIN_EXE_kneewise")).args(["annotate", "--write", "a.net"]);
+        strace.current_dir(&folder).stdin(Stdio::null()).output()
+    };
+    if !traced("trace=rename").is_ok_and(|output| output.status.success()) {
+        return;
+    }
+    // the flags of an open that makes a new file cannot be picked, so the whole call is tried by number below
+    for (call, error) in [
+        ("fchmod", "EPERM"),
+        ("fsync", "ENOSPC"),
+        ("fsync", "EIO"),
+        ("rename", "EACCES"),
+        ("rename", "ENOSPC"),
+    ] {
+        std::fs::write(&file, BOARD).unwrap();
+        let output = traced(&format!("inject={call}:error={error}:when=1")).unwrap();
+        let told = String::from_utf8_lossy(&output.stderr).into_owned();
+        assert_eq!(output.status.code(), Some(2), "{call} {error}: {told}");
+        assert!(told.contains("a.net stays as it was: "), "{call} {error}: {told}");
+        assert_eq!(std::fs::read_to_string(&file).unwrap(), BOARD, "{call} {error}");
+        assert_eq!(names(&folder), ["a.net"], "{call} {error}");
+    }
+}
+
+/// A full disk: a small file system in memory, where one may be mounted; elsewhere the tests beside `save` stand in.
+#[cfg(target_os = "linux")]
+#[test]
+fn a_full_disk_loses_nothing() {
+    let folder = scratch("marks-full");
+    let mount = |arguments: &[&str]| Command::new("mount").args(arguments).arg(&folder).output();
+    if !mount(&["-t", "tmpfs", "-o", "size=16k", "none"]).is_ok_and(|o| o.status.success()) {
+        return;
+    }
+    let file = folder.join("a.net");
+    let padded = format!("{BOARD}\n* {}\n", "x".repeat(7000));
+    let written = std::fs::write(&file, &padded);
+    // the rest of the room is taken
+    let _ = std::fs::write(folder.join("ballast"), vec![0u8; 64 << 10]);
+    let run = run_in(&folder, &["annotate", "--write", "a.net"]);
+    let there = std::fs::read_to_string(&file);
+    let left = names(&folder);
+    let _ = Command::new("umount").arg(&folder).output();
+    written.unwrap();
+    assert_eq!(run.code, 2, "{}", run.err);
+    assert!(run.err.contains("a.net stays as it was: "), "{}", run.err);
+    assert_eq!(there.unwrap(), padded);
+    assert_eq!(left, ["a.net", "ballast"]);
+}

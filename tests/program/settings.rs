@@ -1,0 +1,158 @@
+//! `kneewise.toml`, directories, ignore files, and many files at once.
+
+use crate::runner::{run_in, scratch};
+use serde_json::Value;
+use std::path::{Path, PathBuf};
+
+const MISREAD: &str = "lamp\nV1 a 0 5\nR1 a 0 1M\n";
+
+fn folder(name: &str, files: &[(&str, &str)]) -> PathBuf {
+    let folder = scratch(&format!("settings-{name}"));
+    for (file, text) in files {
+        let path = folder.join(file);
+        std::fs::create_dir_all(path.parent().unwrap()).unwrap();
+        std::fs::write(path, text).unwrap();
+    }
+    folder
+}
+
+fn json(folder: &Path, arguments: &[&str]) -> Value {
+    let run = run_in(folder, &[arguments, &["--format", "json"]].concat());
+    serde_json::from_str(&run.out).unwrap_or_else(|e| panic!("{e}: {}{}", run.out, run.err))
+}
+
+fn files(document: &Value) -> Vec<String> {
+    let mut files: Vec<String> = document["findings"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|f| f["file"].as_str().unwrap().to_owned())
+        .collect();
+    files.dedup();
+    files
+}
+
+#[test]
+fn the_nearest_settings_above_a_file_hold() {
+    let folder = folder(
+        "nearest",
+        &[
+            ("kneewise.toml", "[levels]\nmisread-value = \"note\"\n"),
+            ("a.net", MISREAD),
+            ("strict/kneewise.toml", "[levels]\nmisread-value = \"error\"\n"),
+            ("strict/deep/b.net", MISREAD),
+        ],
+    );
+    let document = json(&folder, &["check", "."]);
+    let levels: Vec<&str> =
+        document["findings"].as_array().unwrap().iter().map(|f| f["severity"].as_str().unwrap()).collect();
+    assert_eq!(levels, ["note", "error"]);
+    assert_eq!(run_in(&folder, &["check", "a.net"]).code, 0);
+    assert_eq!(run_in(&folder, &["check", "."]).code, 1);
+    assert_eq!(run_in(&folder, &["check", "a.net", "--config", "strict/kneewise.toml"]).code, 1);
+    assert_eq!(run_in(&folder, &["check", "a.net", "--config", "missing.toml"]).code, 2);
+}
+
+#[test]
+fn settings_above_a_repository_are_not_its_own() {
+    let folder = folder(
+        "repository",
+        &[
+            ("kneewise.toml", "[levels]\nmisread-value = \"off\"\n"),
+            ("repo/.git/HEAD", ""),
+            ("repo/a.net", MISREAD),
+        ],
+    );
+    assert_eq!(run_in(&folder.join("repo"), &["check", "a.net"]).code, 1);
+}
+
+#[test]
+fn fail_on_and_include_places_come_from_the_settings() {
+    let folder = folder(
+        "places",
+        &[
+            ("kneewise.toml", "fail-on = \"error\"\ninclude-dirs = [\"parts\"]\n"),
+            ("parts/lamp.inc", "R1 a 0 1k\n"),
+            ("boards/a.net", "lamp\nV1 a 0 5\n.include lamp.inc\nR2 a 0 1M\n"),
+        ],
+    );
+    let run = run_in(&folder, &["check", "boards"]);
+    assert_eq!(run.code, 0, "{}", run.out);
+    assert!(run.out.contains("misread-value") && !run.out.contains("include-"), "{}", run.out);
+    assert_eq!(run_in(&folder, &["check", "boards", "--fail-on", "warning"]).code, 1);
+}
+
+#[test]
+fn mistakes_in_settings_are_findings_in_every_format() {
+    let folder = folder(
+        "mistakes",
+        &[("kneewise.toml", "fail_on = \"error\"\n"), ("a.net", "t\nV1 a 0 5\nR1 a 0 1k\n")],
+    );
+    let document = json(&folder, &["check", "a.net"]);
+    let finding = &document["findings"][0];
+    assert_eq!(finding["rule"], "unknown-setting");
+    assert_eq!((&finding["file"], &finding["line"]), (&"kneewise.toml".into(), &1.into()));
+    assert_eq!(finding["fix"]["edits"][0]["replacement"], "fail-on");
+    assert_eq!(document["summary"]["files"], 1);
+    for format in ["text", "sarif", "markdown"] {
+        let run = run_in(&folder, &["check", "a.net", "--format", format]);
+        assert!(run.code == 1 && run.out.contains("unknown-setting"), "{format}: {}", run.out);
+    }
+    assert_eq!(run_in(&folder, &["states", "a.net"]).code, 1);
+}
+
+#[test]
+fn ignore_files_are_obeyed_and_endings_can_be_set() {
+    let folder = folder(
+        "walk",
+        &[
+            (".gitignore", "build/\n"),
+            (".ignore", "old.net\n"),
+            ("a.net", MISREAD),
+            ("old.net", MISREAD),
+            ("build/b.net", MISREAD),
+            ("c.lst", MISREAD),
+        ],
+    );
+    assert_eq!(files(&json(&folder, &["check", "."])), ["./a.net"]);
+    std::fs::write(folder.join("kneewise.toml"), "extensions = [\"lst\"]\n").unwrap();
+    assert_eq!(files(&json(&folder, &["check", "."])), ["./c.lst"]);
+    // what is named is read, whatever it is called
+    assert_eq!(files(&json(&folder, &["check", "build/b.net"])), ["build/b.net"]);
+}
+
+#[test]
+fn an_included_file_is_no_netlist_of_its_own() {
+    let folder = folder(
+        "included",
+        &[
+            ("a.net", "lamp\nV1 a 0 5\n.include parts.cir\n"),
+            ("b.net", "lamp\nV1 a 0 5\n.include parts.cir\n"),
+            ("parts.cir", "R1 a 0 1M\n"),
+        ],
+    );
+    let document = json(&folder, &["check", "."]);
+    assert_eq!(document["summary"]["files"], 2);
+    // found once, though two netlists include it
+    assert_eq!(files(&document), ["./parts.cir"]);
+    assert_eq!(document["findings"].as_array().unwrap().len(), 1);
+    // two that include each other are not both passed over
+    let round = |other: &str| format!("t\nV1 a 0 5\nR1 a 0 1k\n.include {other}\n");
+    std::fs::write(folder.join("a.net"), round("b.net")).unwrap();
+    std::fs::write(folder.join("b.net"), round("a.net")).unwrap();
+    std::fs::remove_file(folder.join("parts.cir")).unwrap();
+    assert_eq!(json(&folder, &["check", "."])["summary"]["files"], 1);
+}
+
+#[test]
+fn many_files_come_out_in_one_order() {
+    let names: Vec<String> = (0..60).map(|n| format!("n{n:02}.net")).collect();
+    let list: Vec<(&str, &str)> = names.iter().map(|n| (n.as_str(), MISREAD)).collect();
+    let folder = folder("many", &list);
+    let first = run_in(&folder, &["check", "."]).out;
+    for _ in 0..5 {
+        assert_eq!(run_in(&folder, &["check", "."]).out, first);
+    }
+    let found: Vec<String> = files(&json(&folder, &["check", "."]));
+    assert_eq!(found, names.iter().map(|n| format!("./{n}")).collect::<Vec<_>>());
+}
