@@ -1,9 +1,9 @@
 //! Controlled sources, couplings and switches: elements that look at other nodes or other elements.
 
-use super::behaviour::{Behaviour, Value};
+use super::behaviour::{Behaviour, ModelKind, Value};
 use super::element::{Problem, Read, scaled};
 use super::expand::Expander;
-use super::ids::ElementId;
+use super::ids::{ElementId, ModelId};
 use super::line::Line;
 use super::parameter::Worth;
 use super::value::Quantity;
@@ -140,7 +140,8 @@ impl Expander<'_> {
         if self.copies() != 1.0 {
             return Ok(SWITCHES);
         }
-        Ok(Behaviour::VoltageSwitch { model: self.model_of(line, rest, id) })
+        let model = self.model_of(line, rest, id);
+        Ok(if self.is_strange(model) { STRANGE } else { Behaviour::VoltageSwitch { model } })
     }
 
     /// `current-switch = name node node element model [state]`
@@ -150,7 +151,12 @@ impl Expander<'_> {
         }
         self.look_up_later(line, id, rest, rest + 1);
         let model = self.model_of(line, rest + 1, id);
-        Ok(Behaviour::CurrentSwitch { model, control: None })
+        Ok(if self.is_strange(model) { STRANGE } else { Behaviour::CurrentSwitch { model, control: None } })
+    }
+
+    /// A model of a type whose parameters mean something else, or nothing, here.
+    fn is_strange(&self, model: Option<ModelId>) -> bool {
+        model.is_some_and(|id| self.circuit.model(id).kind == ModelKind::Other)
     }
 
     fn look_up_later(&mut self, line: &Line<'_>, id: ElementId, first: usize, end: usize) {
@@ -212,4 +218,5 @@ impl Expander<'_> {
 
 /// Their resistances are the model's.
 const SWITCHES: Behaviour = Behaviour::Unknown { reason: "a switch in an instance that stands for several" };
+const STRANGE: Behaviour = Behaviour::Unknown { reason: "a switch whose model is not of type SW or CSW" };
 const NOT_LINEAR: Behaviour = Behaviour::Unknown { reason: "a controlled source that is not linear" };

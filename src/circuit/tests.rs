@@ -384,3 +384,15 @@ fn connectors_are_no_transistors() {
         |n: &str| matches!(circuit.element(find(circuit, n)).behaviour, Behaviour::Transistor { .. });
     assert_eq!(["J1", "J2", "J3", "J4"].map(is_transistor), [false, false, true, true]);
 }
+
+/// What another model type means by its numbers is not ours to guess: a switch on it would stand wrong in silence.
+#[test]
+fn a_switch_on_a_model_of_another_type_is_not_evaluated() {
+    let reading = read_one(
+        "t\nV1 a 0 5\nS1 a b c 0 MX\nW1 b 0 V1 MX\nS2 a b c 0 MS\nV2 c 0 1\n.model MX OTHER(VON=3)\n.model MS SW(VT=2)\n",
+    );
+    let is_unknown = |n: &str| {
+        matches!(reading.circuit.element(find(&reading.circuit, n)).behaviour, Behaviour::Unknown { .. })
+    };
+    assert_eq!(["S1", "W1", "S2"].map(is_unknown), [true, true, false]);
+}
