@@ -21,6 +21,8 @@ pub struct Options {
     pub states: bool,
     /// The diode that `--why` asks about: its view is computed in parts of any size.
     pub why: Option<String>,
+    /// Where the exponential law is asked beside the constant drop.
+    pub opinion: SecondOpinion,
     /// Severities that differ from the rules' own, by rule name; `None` switches a rule off.
     pub levels: BTreeMap<String, Option<Severity>>,
     /// Decades of current (powers of ten) at which drops from models are held instead of the nearest one, by
@@ -34,6 +36,18 @@ pub struct Options {
     pub patience: u32,
     /// Through which another thread sees how far a long run has come, and ends it.
     pub monitor: Monitor,
+}
+
+/// Where the second opinion and the error bars are sought.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum SecondOpinion {
+    /// In parts of up to 5,000 diodes.
+    #[default]
+    Usual,
+    /// In all parts.
+    Everywhere,
+    /// Nowhere: states alone.
+    Nowhere,
 }
 
 /// Where remarks begin, as `kneewise.toml` may set it.

@@ -20,8 +20,8 @@ pub(super) struct Solve<'a> {
     pub(super) tie_diode: Vec<u32>,
     pub(super) forest: Forest,
     /// Branches that carry current by resistance: `(p, q, opposing voltage, ohms)`.
-    links: Vec<(u32, u32, Dd, f64)>,
-    link_diode: Vec<u32>,
+    pub(super) links: Vec<(u32, u32, Dd, f64)>,
+    pub(super) link_diode: Vec<u32>,
     pub(super) system: Laplacian,
     conductances: Vec<f64>,
     /// Cluster that stands at its guide potential, one for each floating island of clusters.
@@ -32,6 +32,7 @@ pub(super) struct Solve<'a> {
     /// Largest voltage level of the part.
     volts: f64,
     lazy: Option<Neighbours>,
+    islands: Option<Sets>,
 }
 
 impl<'a> Solve<'a> {
@@ -77,6 +78,7 @@ impl<'a> Solve<'a> {
             gross,
             volts: part.scales().volts,
             lazy: None,
+            islands: None,
         }
     }
 
@@ -320,17 +322,29 @@ impl<'a> Solve<'a> {
         (g - g * (rhs[p] - rhs[q])).abs()
     }
 
+    /// Whether links or ties lead from one group to another.
+    pub(super) fn joined(&mut self, p: u32, q: u32) -> bool {
+        let (a, b) = (self.forest.group[p as usize], self.forest.group[q as usize]);
+        if a == b || self.pins.is_empty() {
+            return true;
+        }
+        let sets = self.islands.get_or_insert_with(|| {
+            let mut sets = Sets::new(self.forest.groups);
+            for &(a, b) in &self.system.edges()[..self.links.len()] {
+                sets.union(a, b);
+            }
+            sets
+        });
+        sets.find(a) == sets.find(b)
+    }
+
     /// Resistance between two groups; `None` where nothing ties one to the other.
     pub(super) fn between(&mut self, p: u32, q: u32) -> Option<f64> {
         let (a, b) = (self.forest.group[p as usize], self.forest.group[q as usize]);
         if a == b {
             return Some(0.0);
         }
-        let mut sets = Sets::new(self.forest.groups);
-        for &(a, b) in &self.system.edges()[..self.links.len()] {
-            sets.union(a, b);
-        }
-        if sets.find(a) != sets.find(b) {
+        if !self.joined(p, q) {
             return None;
         }
         let mut rhs = vec![0.0; self.forest.groups];

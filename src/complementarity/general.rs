@@ -88,7 +88,7 @@ impl Set {
 /// Unknowns at most.
 const MOST_UNKNOWNS: usize = 200_000;
 
-fn fits(rails: &Rails, piece: &Piece) -> bool {
+pub(super) fn fits(rails: &Rails, piece: &Piece) -> bool {
     let nodes: usize = piece.groups.iter().map(|&g| rails.nodes_of(g).len()).sum();
     nodes <= MOST_UNKNOWNS
 }
@@ -279,7 +279,7 @@ pub(super) fn views(
 }
 
 /// The place of a bundle: that of a member that carries current.
-fn together(bundle: &Bundle, solution: &Solution) -> Place {
+pub(super) fn together(bundle: &Bundle, solution: &Solution) -> Place {
     let places = bundle.members.iter().map(|&n| solution.places[n as usize]);
     places.into_iter().find(|&p| p != Place::Blocking).unwrap_or(Place::Blocking)
 }

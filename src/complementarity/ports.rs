@@ -20,12 +20,12 @@ const MOST_NUMBERS: usize = 30_000_000;
 /// The reduced part: for each bundle of junctions its law, its voltage and its current as functions of all `a`.
 pub(super) struct Ports {
     pub(super) laws: Vec<Junction>,
-    rho: f64,
+    pub(super) rho: f64,
     x0: DVector<f64>,
     x_of_a: DMatrix<f64>,
-    v0: DVector<f64>,
+    pub(super) v0: DVector<f64>,
     pub(super) v_of_a: DMatrix<f64>,
-    i0: DVector<f64>,
+    pub(super) i0: DVector<f64>,
     pub(super) i_of_a: DMatrix<f64>,
 }
 
@@ -91,8 +91,8 @@ impl Ports {
         if self.v0.is_empty() { 0.0 } else { self.v0.amax() }
     }
 
-    /// Law row of junction `k` in a place: `row · a = level`.
-    fn row(&self, k: usize, place: Place) -> (RowDVector<f64>, f64) {
+    /// Law row of junction `k` in a place: `row · a = level`; a current where it blocks stands times `rho`.
+    pub(super) fn row(&self, k: usize, place: Place) -> (RowDVector<f64>, f64) {
         let law = &self.laws[k];
         let level = match place {
             Place::Conducting | Place::Open => Some(law.forward.value),

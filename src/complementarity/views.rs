@@ -1,7 +1,9 @@
-//! What each junction sees of the rest while all others keep their places: one solve of the adjoint for each.
+//! What each junction sees of the rest while all others keep their places, and how far the uncertainty of each
+//! spreads to the others: one solve of the adjoint for each.
 
 use super::double_double::Dd;
 use super::exact::Solve;
+use super::excite::{Excite, GeneralSpreads, Spread};
 use super::forest::NONE;
 use super::network::{Law, Network};
 use super::outcome::{Place, Quantity, Solution, View};
@@ -9,64 +11,170 @@ use super::parts::{Builder, Built, Kind, Piece, split};
 use super::passive::{Point, State};
 use super::rails::Rails;
 
+/// What is asked about a solution.
+pub struct Questions<'a> {
+    /// Junctions by branch number.
+    pub junctions: &'a [u32],
+    /// Whether their spreads are wanted beside their views.
+    pub spreads: bool,
+    /// Pairs of nodes whose difference is asked about.
+    pub pairs: &'a [(u32, u32)],
+    /// How uncertain each junction is, given what it sees: volts of its level where it carries current, amperes that
+    /// it leaks where it blocks.
+    pub doubt: &'a dyn Fn(u32, Option<View>) -> f64,
+}
+
+/// The answers, in the order of the questions.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Looks {
+    /// `None` where what it sees is not finite (fed by current sources only, floating, open) or its part was not
+    /// evaluated.
+    pub views: Vec<Option<View>>,
+    /// Of the current where it carries some (amperes), of the voltage where it blocks (volts).
+    pub spreads: Vec<Option<Spread>>,
+    /// Of the voltage between two nodes of one part.
+    pub pairs: Vec<Option<Spread>>,
+}
+
 impl Network {
-    /// What each of `junctions` (branch numbers) sees in `solution`: `None` where that is not finite (fed by
-    /// current sources only, floating, open) or its part was not evaluated.
+    /// What each of `junctions` (branch numbers) sees in `solution`.
     pub fn views(&self, solution: &Solution, junctions: &[u32]) -> Vec<Option<View>> {
+        self.look(solution, &Questions { junctions, spreads: false, pairs: &[], doubt: &|_, _| 0.0 }).views
+    }
+
+    /// Views, and how far the uncertainty of all junctions spreads, to first order.
+    pub fn look(&self, solution: &Solution, questions: &Questions<'_>) -> Looks {
         let rails = Rails::new(self);
         let mut builder = Builder::new(self, &rails);
-        let mut wanted = vec![false; self.branches.len()];
-        for &n in junctions {
-            wanted[n as usize] = true;
+        let mut desk = Desk {
+            network: self,
+            rails: &rails,
+            solution,
+            questions,
+            wanted: vec![false; self.branches.len()],
+            views: vec![None; self.branches.len()],
+            spreads: vec![None; self.branches.len()],
+            pairs: vec![None; questions.pairs.len()],
+        };
+        for &n in questions.junctions {
+            desk.wanted[n as usize] = true;
         }
-        let mut views = vec![None; self.branches.len()];
-        for piece in split(self, &rails).iter().filter(|p| p.branches.iter().any(|&n| wanted[n as usize])) {
-            match piece.kind {
-                Kind::Passive => passive(self, &rails, &mut builder, piece, solution, &wanted, &mut views),
-                Kind::General => super::general::views(self, &rails, piece, solution, &wanted, &mut views),
-                Kind::Unknown => {}
+        for piece in split(self, &rails) {
+            if desk.concerns(&piece) {
+                match piece.kind {
+                    Kind::Passive => desk.passive(&mut builder, &piece),
+                    Kind::General => desk.general(&piece),
+                    Kind::Unknown => {}
+                }
             }
         }
-        junctions.iter().map(|&n| views[n as usize]).collect()
+        let pick = |n: &u32| desk.views[*n as usize];
+        let spread = |n: &u32| desk.spreads[*n as usize];
+        Looks {
+            views: questions.junctions.iter().map(pick).collect(),
+            spreads: questions.junctions.iter().map(spread).collect(),
+            pairs: desk.pairs,
+        }
     }
 }
 
-fn passive(
-    network: &Network,
-    rails: &Rails,
-    builder: &mut Builder<'_>,
-    piece: &Piece,
-    solution: &Solution,
-    wanted: &[bool],
-    views: &mut [Option<View>],
-) {
-    let built = builder.build(piece);
-    let Some(guide) = guide(rails, piece, &built, solution) else { return };
-    let mut solve = Solve::new(&built.part, &guide);
-    solve.run();
-    let mut tie_node = vec![NONE; built.diodes.len()];
-    for (node, &tie) in solve.forest.up.iter().enumerate().filter(|(_, tie)| **tie != NONE) {
-        tie_node[solve.tie_diode[tie as usize] as usize] = node as u32;
+/// Questions and answers while the parts are gone through.
+struct Desk<'a> {
+    network: &'a Network,
+    rails: &'a Rails,
+    solution: &'a Solution,
+    questions: &'a Questions<'a>,
+    wanted: Vec<bool>,
+    views: Vec<Option<View>>,
+    spreads: Vec<Option<Spread>>,
+    pairs: Vec<Option<Spread>>,
+}
+
+impl Desk<'_> {
+    fn concerns(&self, piece: &Piece) -> bool {
+        let group = |n: u32| self.rails.forest.group[n as usize];
+        let holds = |n: u32| group(n) != 0 && piece.groups.binary_search(&group(n)).is_ok();
+        piece.branches.iter().any(|&n| self.wanted[n as usize])
+            || self.questions.pairs.iter().any(|&(p, q)| holds(p) || holds(q))
     }
-    for (k, &branch) in built.diodes.iter().enumerate().filter(|(_, b)| wanted[**b as usize]) {
-        let Law::Junction(junction) = network.branches[branch as usize].law else { continue };
-        let diode = &built.part.diodes[k];
-        views[branch as usize] = match diode.level(guide.states[k]) {
-            None => blocking(&mut solve, diode, solution.voltages[branch as usize]),
-            Some(level) => {
-                let Quantity::Known(i) = solution.currents[branch as usize] else { continue };
-                let response = if junction.series > 0.0 {
-                    solve.link_response(diode)
-                } else if tie_node[k] != NONE {
-                    solve.response(tie_node[k])
-                } else {
-                    0.0
-                };
-                let resistance = 1.0 / response;
-                let open_circuit = level + i * resistance;
-                open_circuit.is_finite().then_some(View { open_circuit, resistance })
+
+    fn passive(&mut self, builder: &mut Builder<'_>, piece: &Piece) {
+        let built = builder.build(piece);
+        let Some(guide) = guide(self.rails, piece, &built, self.solution) else { return };
+        let mut solve = Solve::new(&built.part, &guide);
+        solve.run();
+        let mut tie_node = vec![NONE; built.diodes.len()];
+        for (node, &tie) in solve.forest.up.iter().enumerate().filter(|(_, tie)| **tie != NONE) {
+            tie_node[solve.tie_diode[tie as usize] as usize] = node as u32;
+        }
+        for (k, &branch) in built.diodes.iter().enumerate().filter(|(_, b)| self.wanted[**b as usize]) {
+            let Law::Junction(junction) = self.network.branches[branch as usize].law else { continue };
+            let diode = &built.part.diodes[k];
+            self.views[branch as usize] = match diode.level(guide.states[k]) {
+                None => blocking(&mut solve, diode, self.solution.voltages[branch as usize]),
+                Some(level) => {
+                    let Quantity::Known(i) = self.solution.currents[branch as usize] else { continue };
+                    let response = if junction.series > 0.0 {
+                        solve.link_response(diode)
+                    } else if tie_node[k] != NONE {
+                        solve.response(tie_node[k])
+                    } else {
+                        0.0
+                    };
+                    let resistance = 1.0 / response;
+                    let open_circuit = level + i * resistance;
+                    open_circuit.is_finite().then_some(View { open_circuit, resistance })
+                }
+            };
+        }
+        let asks_pairs = !self.questions.pairs.is_empty();
+        if self.questions.spreads || asks_pairs {
+            self.passive_spreads(piece, &built, &mut solve);
+        }
+    }
+
+    fn passive_spreads(&mut self, piece: &Piece, built: &Built, solve: &mut Solve<'_>) {
+        let doubts: Vec<f64> =
+            built.diodes.iter().map(|&b| (self.questions.doubt)(b, self.views[b as usize])).collect();
+        let mut excite = Excite::new(solve, &doubts);
+        for (k, &branch) in built.diodes.iter().enumerate() {
+            if self.questions.spreads && self.wanted[branch as usize] {
+                self.spreads[branch as usize] = excite.junction(k).map(|s| s.numbered(&built.diodes));
             }
-        };
+        }
+        for (n, &(p, q)) in self.questions.pairs.iter().enumerate() {
+            let local = |node: u32| match self.rails.forest.group[node as usize] {
+                0 => Some(0),
+                g => piece.groups.binary_search(&g).ok().map(|at| at as u32 + 1),
+            };
+            if let (Some(p), Some(q)) = (local(p), local(q))
+                && (p, q) != (0, 0)
+            {
+                self.pairs[n] = excite.between(p, q).map(|s| s.numbered(&built.diodes));
+            }
+        }
+    }
+
+    fn general(&mut self, piece: &Piece) {
+        let (network, rails) = (self.network, self.rails);
+        super::general::views(network, rails, piece, self.solution, &self.wanted, &mut self.views);
+        if self.questions.spreads || !self.questions.pairs.is_empty() {
+            let ask = GeneralSpreads {
+                network,
+                rails,
+                piece,
+                solution: self.solution,
+                doubt: &|b| (self.questions.doubt)(b, self.views[b as usize]),
+            };
+            for (branch, spread) in ask.junctions() {
+                if self.wanted[branch as usize] && self.questions.spreads {
+                    self.spreads[branch as usize] = Some(spread);
+                }
+            }
+            for (n, spread) in ask.pairs(self.questions.pairs) {
+                self.pairs[n] = Some(spread);
+            }
+        }
     }
 }
 

@@ -3,24 +3,38 @@
 use super::assemble::{Assembly, NONE, Owner, Setting};
 use super::drop::Diode;
 use super::evaluate::Solved;
+use super::opinion::{MOST_DIODES, Opinion, opinion};
 use super::proof::{Claim, Proof, claims_solution, prove};
-use super::result::{BranchResult, Case, Cause, DiodeResult, NodeResult, Residual, Solution};
+use super::result::{BranchResult, Case, Cause, DifferenceOf, DiodeResult, NodeResult, Residual, Solution};
+use super::targets::{Targets, between_pinned, differences};
+use super::trust::Judge;
 use super::view::margin;
 use super::words::{causes, missed, openings};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
-use crate::complementarity::{self, Outcome, Place, Quantity, Verdict, View};
+use crate::complementarity::{self, Outcome, Place, Quantity, Questions, Spread, Verdict, View};
+use crate::config::SecondOpinion;
 use rustc_hash::FxHashSet;
 
 /// Largest number of diodes in a part for which every view is computed.
 const MOST_VIEWS: usize = 3000;
 
+/// What is wanted beyond the states.
+pub(crate) struct Ask<'a> {
+    /// The diode that is asked about: its view is computed in parts of any size.
+    pub why: Option<ElementId>,
+    /// Voltages whose error bars are wanted.
+    pub targets: &'a Targets,
+    /// Where the second opinion is sought.
+    pub opinion: SecondOpinion,
+}
+
 /// Builds the case.
-pub(crate) fn case(setting: &Setting<'_>, why: Option<ElementId>, solved: &Solved) -> Case {
+pub(crate) fn case(setting: &Setting<'_>, ask: &Ask<'_>, solved: &Solved) -> Case {
     let parts = Parts::of(setting, &solved.assembly, &solved.outcome);
     let (residual, withheld) = check(setting, solved, &parts);
     let outcome = &solved.outcome;
     let (verdict, causes) = judged(setting, solved, &withheld);
-    let maker = Maker { setting, why, solved, parts: &parts, withheld: &withheld };
+    let maker = Maker { setting, ask, solved, parts: &parts, withheld: &withheld };
     let solutions = if withheld.whole.is_some() {
         Vec::new()
     } else {
@@ -236,10 +250,16 @@ fn unfinished(solved: &Solved, solution: &complementarity::Solution, withheld: &
     }
 }
 
+/// What was seen, by diode and by pair.
+struct CaseLooks {
+    views: Vec<Option<View>>,
+    spreads: Vec<Option<Spread>>,
+    pairs: Vec<Option<f64>>,
+}
+
 struct Maker<'a> {
     setting: &'a Setting<'a>,
-    /// The diode that is asked about: its view is computed in parts of any size.
-    why: Option<ElementId>,
+    ask: &'a Ask<'a>,
     solved: &'a Solved,
     parts: &'a Parts,
     withheld: &'a Withheld,
@@ -252,16 +272,63 @@ impl Maker<'_> {
 
     fn solution(&self, solution: &complementarity::Solution) -> Solution {
         let circuit = self.setting.circuit;
-        let views = self.views(solution);
-        let diodes =
-            self.setting.diodes.iter().zip(views).map(|(diode, view)| self.diode(solution, diode, view));
+        let pairs = self.pairs(solution);
+        let looks = self.looks(solution, &pairs);
+        let judge = Judge { setting: self.setting, assembly: &self.solved.assembly, solution };
+        let opinion = self.opinion(solution);
+        let mut diodes = Vec::with_capacity(self.setting.diodes.len());
+        for (n, diode) in self.setting.diodes.iter().enumerate() {
+            let mut result = self.diode(solution, diode, looks.views[n]);
+            if self.ask.opinion != SecondOpinion::Nowhere {
+                judge.judge(&mut result, diode, looks.spreads[n]);
+                result.refined = opinion.diodes.get(n).copied().flatten();
+            }
+            diodes.push(result);
+        }
+        let refined = |node: NodeId| opinion.nodes.get(node.index()).copied().filter(|v| v.is_finite());
+        let targets = &self.ask.targets.nodes;
         let nodes = (1..circuit.nodes.len()).map(NodeId::new).map(|node| {
             let known = solution.potentials.get(node.index()).copied().unwrap_or(Quantity::Unknown);
             let voltage = if self.is_withheld(self.parts.node(node)) { Quantity::Unknown } else { known };
-            NodeResult { node, voltage, error: None, refined: None }
+            let at = targets.binary_search(&node).ok();
+            let error = at.and_then(|n| looks.pairs[n]).filter(|_| voltage.known().is_some());
+            NodeResult { node, voltage, error, refined: refined(node) }
         });
-        let (diodes, nodes) = (diodes.collect(), nodes.collect());
-        Solution { diodes, nodes, branches: self.branches(solution), unrefined: Vec::new() }
+        let nodes: Vec<NodeResult> = nodes.collect();
+        let differences = differences(&pairs[targets.len()..], &looks.pairs[targets.len()..], &nodes);
+        Solution { diodes, nodes, branches: self.branches(solution), differences, unrefined: opinion.failed }
+    }
+
+    /// Watched nodes against ground, then the differences that matter in this solution.
+    fn pairs(&self, solution: &complementarity::Solution) -> Vec<(NodeId, NodeId, DifferenceOf)> {
+        if self.ask.opinion == SecondOpinion::Nowhere {
+            let nodes = self.ask.targets.nodes.iter();
+            return nodes.map(|&n| (n, NodeId::GROUND, DifferenceOf::Watched)).collect();
+        }
+        let targets = self.ask.targets;
+        let mut pairs: Vec<_> =
+            targets.nodes.iter().map(|&n| (n, NodeId::GROUND, DifferenceOf::Watched)).collect();
+        pairs.extend(&targets.pairs);
+        pairs.extend(between_pinned(self.setting, &self.solved.assembly, solution));
+        pairs
+    }
+
+    fn opinion(&self, solution: &complementarity::Solution) -> Opinion {
+        let most = match self.ask.opinion {
+            SecondOpinion::Nowhere => return Opinion::default(),
+            SecondOpinion::Usual => MOST_DIODES,
+            SecondOpinion::Everywhere => usize::MAX,
+        };
+        let is_sought = |branch: u32| {
+            self.parts.branch(branch as usize).is_some_and(|p| {
+                let is_settled = matches!(
+                    self.solved.outcome.parts[p].verdict,
+                    Verdict::Unique | Verdict::Shared | Verdict::Floating | Verdict::SharedFloating
+                );
+                is_settled && self.withheld.parts[p].is_none() && self.parts.diodes[p] <= most
+            })
+        };
+        opinion(self.setting, self.solved, solution, is_sought)
     }
 
     fn branches(&self, solution: &complementarity::Solution) -> Vec<BranchResult> {
@@ -288,24 +355,48 @@ impl Maker<'_> {
         elements.filter_map(|(id, _)| result(id)).collect()
     }
 
-    /// One view for each diode, where its part is small enough or somebody asks.
-    fn views(&self, solution: &complementarity::Solution) -> Vec<Option<View>> {
+    /// A view and a spread for each diode, where its part is small enough or somebody asks, and the spreads of the
+    /// voltages wanted.
+    fn looks(
+        &self,
+        solution: &complementarity::Solution,
+        pairs: &[(NodeId, NodeId, DifferenceOf)],
+    ) -> CaseLooks {
         let mut wanted = Vec::new();
         let mut at = Vec::new();
         for (n, diode) in self.setting.diodes.iter().enumerate() {
             let branch = self.solved.assembly.branch[diode.element.index()];
             let part = self.parts.branch(branch as usize);
             let is_small = part.is_none_or(|p| self.parts.diodes[p] <= MOST_VIEWS);
-            if !self.is_withheld(part) && (is_small || self.why == Some(diode.element)) {
+            if !self.is_withheld(part) && (is_small || self.ask.why == Some(diode.element)) {
                 wanted.push(branch);
                 at.push(n);
             }
         }
-        let mut views = vec![None; self.setting.diodes.len()];
-        for (n, view) in at.into_iter().zip(self.solved.assembly.network.views(solution, &wanted)) {
-            views[n] = view;
+        let judge = Judge { setting: self.setting, assembly: &self.solved.assembly, solution };
+        let is_judged = self.ask.opinion != SecondOpinion::Nowhere;
+        let nodes: Vec<(u32, u32)> = pairs.iter().map(|&(p, q, _)| (p.0, q.0)).collect();
+        let looked = self.solved.assembly.network.look(
+            solution,
+            &Questions {
+                junctions: &wanted,
+                spreads: is_judged,
+                pairs: if is_judged { &nodes } else { &[] },
+                doubt: &|branch, view| judge.doubt(branch, view),
+            },
+        );
+        let count = self.setting.diodes.len();
+        let mut looks = CaseLooks {
+            views: vec![None; count],
+            spreads: vec![None; count],
+            pairs: looked.pairs.iter().map(|p| p.map(|s| s.total)).collect(),
+        };
+        looks.pairs.resize(pairs.len(), None);
+        for ((n, view), spread) in at.into_iter().zip(looked.views).zip(looked.spreads) {
+            looks.views[n] = view;
+            looks.spreads[n] = spread;
         }
-        views
+        looks
     }
 
     fn diode(&self, solution: &complementarity::Solution, diode: &Diode, view: Option<View>) -> DiodeResult {

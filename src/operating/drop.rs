@@ -33,6 +33,12 @@ pub(crate) struct Diode {
     pub reverse: Option<Level>,
     /// Its series resistance, ohms.
     pub series: f64,
+    /// The exponential law of its model, whatever its drop comes from.
+    pub own: Option<JunctionLaw>,
+    /// What it is made of.
+    pub material: &'static Material,
+    /// Current at the breakdown voltage, amperes (IBV), and emission coefficient there (NBV).
+    pub tail: (f64, f64),
 }
 
 impl Diode {
@@ -122,6 +128,9 @@ pub(crate) fn diodes(
         let parameters = model.map(|m| circuit.model(m));
         Some(Diode {
             element: id,
+            own: model.and_then(|m| JunctionLaw::of(circuit.model(m), area, circuit.nominal_temperature)),
+            material: materials.of(circuit, id).copied().unwrap_or(&Material::SILICON),
+            tail: parameters.map_or((1e-3, 1.0), |m| tail(m, area)),
             law: law(id, model, area),
             reverse: parameters.and_then(breakdown),
             series: parameters.map_or(0.0, |m| series(m, area)),
@@ -135,6 +144,12 @@ fn breakdown(model: &Model) -> Option<Level> {
     let bv = model.parameter("bv")?;
     let value = bv.number.abs();
     (value > 0.0 && value.is_finite()).then_some(Level { value, exact: bv.written })
+}
+
+/// IBV times the area, and NBV; 1 mA and 1 where not given.
+fn tail(model: &Model, area: f64) -> (f64, f64) {
+    let positive = |name| model.parameter(name).map(|v| v.number.abs()).filter(|v| *v > 0.0 && v.is_finite());
+    (positive("ibv").unwrap_or(1e-3) * area, positive("nbv").unwrap_or(1.0))
 }
 
 /// RS, divided by the area.

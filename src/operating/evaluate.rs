@@ -2,12 +2,13 @@
 
 use super::assemble::{Assembly, Setting, Slots, assemble};
 use super::basis::Basis;
-use super::case::case;
+use super::case::{Ask, case};
 use super::condition::{Condition, Plan, plan};
 use super::declared::{USUAL_TEMPERATURE, declared};
 use super::drop::{Diode, DropLaw, diodes};
 use super::reach::left_to_time;
 use super::result::{Case, Operating, Why};
+use super::targets::Targets;
 use super::why::Reasoner;
 use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, Circuit, ElementId, Overrides, Parsed, ScopeId, expand};
@@ -58,6 +59,7 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
         first: Vec::new(),
         spent: Vec::new(),
         why: asked(circuit, directory, options, &mut findings),
+        targets: Targets::of(circuit, directory),
         reasoner: Reasoner::default(),
     };
     run.first_pass(&mut list);
@@ -104,6 +106,8 @@ struct Run<'a> {
     spent: Vec<usize>,
     /// The diode that is asked about.
     why: Option<ElementId>,
+    /// Voltages whose error bars are wanted.
+    targets: Targets,
     /// What was said about it.
     reasoner: Reasoner,
 }
@@ -162,7 +166,8 @@ impl Run<'_> {
         };
         let kept = self.first.get_mut(number).and_then(Option::take).filter(|_| variant.is_none());
         let solved = kept.unwrap_or_else(|| solve(&setting));
-        let mut case = case(&setting, self.why, &solved);
+        let ask = Ask { why: self.why, targets: &self.targets, opinion: self.options.opinion };
+        let mut case = case(&setting, &ask, &solved);
         case.solves += self.spent.get(number).copied().unwrap_or(0);
         if let Some(element) = self.why {
             let mut reasoner = std::mem::take(&mut self.reasoner);

@@ -10,17 +10,21 @@ mod drop;
 mod evaluate;
 mod excerpt;
 mod flip;
+mod knee;
 mod law;
 mod material;
 mod named;
+mod opinion;
 mod proof;
 mod reach;
 mod result;
 mod search;
 mod speaker;
 mod switch;
+mod targets;
 #[cfg(test)]
 mod tests;
+mod trust;
 mod view;
 mod why;
 mod words;
@@ -31,8 +35,8 @@ pub use evaluate::{Text, evaluate};
 pub use law::{JunctionLaw, nearest_decade, thermal_voltage};
 pub use material::{MATERIALS, Material};
 pub use result::{
-    BranchResult, Case, Cause, DiodeResult, Drop, DropOrigin, ErrorBar, Flip, Knee, NodeResult, Operating,
-    Reasoning, Refined, Residual, Solution, Trust, Unrefined, Why,
+    BranchResult, Case, Cause, DifferenceOf, DifferenceResult, DiodeResult, Drop, DropOrigin, ErrorBar, Flip,
+    Knee, NodeResult, Operating, Reasoning, Refined, Residual, Solution, Trust, Unrefined, Why,
 };
 pub use speaker::against;
 pub(crate) use speaker::apart;

@@ -120,6 +120,8 @@ pub struct Solution {
     pub nodes: Vec<NodeResult>,
     /// Every other two-terminal element that is evaluated (R L V I E F G H).
     pub branches: Vec<BranchResult>,
+    /// Differences of potentials that matter: watched, listened to, or across a resistor between two diodes.
+    pub differences: Vec<DifferenceResult>,
     /// Parts in which the second opinion was sought and not found.
     pub unrefined: Vec<Unrefined>,
 }
@@ -257,6 +259,34 @@ pub struct Refined {
     pub voltage: f64,
     /// From anode to cathode.
     pub current: f64,
+}
+
+/// Why a difference of potentials matters.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum DifferenceOf {
+    /// A note watches it.
+    Watched,
+    /// This source listens to it.
+    Control(ElementId),
+    /// It is across this resistor, both of whose ends diodes pin.
+    Resistor(ElementId),
+}
+
+/// A difference of two potentials.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct DifferenceResult {
+    /// Why it matters.
+    pub of: DifferenceOf,
+    /// The first node.
+    pub from: NodeId,
+    /// The second.
+    pub to: NodeId,
+    /// Potential of the first minus that of the second, volts.
+    pub voltage: f64,
+    /// Half the width of its error bar, volts.
+    pub error: f64,
+    /// By the exponential law, volts; where that was solved.
+    pub refined: Option<f64>,
 }
 
 /// Diodes for which the exponential law gave no answer though it was sought.

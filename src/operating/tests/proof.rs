@@ -3,10 +3,12 @@
 use super::Laid;
 use crate::complementarity::{Interval, Outcome, Place, Quantity, Solution, Verdict};
 use crate::config::Options;
+use crate::config::SecondOpinion;
 use crate::operating::assemble::{Assembly, Setting, Slots, assemble};
-use crate::operating::case::case;
+use crate::operating::case::{Ask, case};
 use crate::operating::evaluate::Solved;
 use crate::operating::proof::{Claim, MET, Proof, prove};
+use crate::operating::targets::Targets;
 
 /// One element of every kind; worked out by hand below.
 const LINES: &str = "V1 in 0 10
@@ -255,7 +257,7 @@ fn a_result_that_does_not_check_is_withheld() {
     let mut bench = Bench::new();
     *bench.amperes("R5") += 1e-6;
     let solved = Solved { outcome: bench.outcome(), assembly: bench.assembly.clone() };
-    let case = case(&bench.setting(), None, &solved);
+    let case = case(&bench.setting(), &plain(&Targets::default()), &solved);
     assert_eq!(case.verdict, Verdict::Unverified);
     assert!(case.solutions.is_empty());
     assert!(case.residual.relative > MET);
@@ -269,7 +271,7 @@ fn a_right_result_is_told_by_name() {
     let open = bench.branch("D2");
     outcome.solutions[0].voltages[open] = Quantity::Open(Interval { low: -0.7, high: 0.0 });
     let solved = Solved { outcome, assembly: bench.assembly.clone() };
-    let case = case(&bench.setting(), None, &solved);
+    let case = case(&bench.setting(), &plain(&Targets::default()), &solved);
     assert_eq!(case.verdict, Verdict::Unique);
     let solution = &case.solutions[0];
     assert_eq!(solution.diodes.len(), 3);
@@ -279,4 +281,8 @@ fn a_right_result_is_told_by_name() {
     assert_eq!(solution.branches.len(), 15);
     assert_eq!(case.sources.len(), 2);
     let _ = bench.place("D1");
+}
+
+fn plain(targets: &Targets) -> Ask<'_> {
+    Ask { why: None, targets, opinion: SecondOpinion::Usual }
 }

@@ -52,7 +52,13 @@ fn case(name: &str, verdict: Verdict, diodes: Vec<DiodeResult>) -> Case {
         truncated: false,
         solves: 2,
         residual: Residual { current: 0.0, voltage: 0.0, relative: 2e-16 },
-        solutions: vec![Solution { diodes, nodes, branches: Vec::new(), unrefined: Vec::new() }],
+        solutions: vec![Solution {
+            diodes,
+            nodes,
+            branches: Vec::new(),
+            differences: Vec::new(),
+            unrefined: Vec::new(),
+        }],
     }
 }
 
