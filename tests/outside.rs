@@ -15,6 +15,8 @@ mod dependent;
 mod enumeration;
 #[path = "outside/examples.rs"]
 mod examples;
+#[path = "outside/exponential.rs"]
+mod exponential;
 #[path = "outside/families.rs"]
 mod families;
 #[path = "outside/run.rs"]

@@ -139,6 +139,9 @@ impl Curve {
 
 /// exp and its derivative, continued along the tangent where it would overflow.
 fn steep(exponent: f64) -> (f64, f64) {
+    if exponent.is_nan() {
+        return (exponent, exponent);
+    }
     let rate = exponent.min(STEEPEST).exp();
     (rate * (1.0 + (exponent - STEEPEST).max(0.0)), rate)
 }

@@ -28,6 +28,11 @@ pub struct Spread {
 }
 
 impl Spread {
+    /// What all others contribute.
+    pub fn others(&self) -> f64 {
+        (self.total - self.own).max(0.0)
+    }
+
     const NOTHING: Spread = Spread { total: 0.0, own: 0.0, most: (NONE, 0.0) };
 
     fn add(&mut self, number: u32, amount: f64, is_own: bool) {
@@ -52,7 +57,8 @@ impl Spread {
 /// Units put into a passive part.
 pub(super) struct Excite<'a, 'b> {
     solve: &'a mut Solve<'b>,
-    doubts: &'a [f64],
+    /// How uncertain each diode is.
+    pub(super) doubts: Vec<f64>,
     /// Tie of each diode in the forest.
     tie: Vec<u32>,
     /// Change of each node's potential above its cluster.
@@ -62,7 +68,7 @@ pub(super) struct Excite<'a, 'b> {
 }
 
 impl<'a, 'b> Excite<'a, 'b> {
-    pub(super) fn new(solve: &'a mut Solve<'b>, doubts: &'a [f64]) -> Self {
+    pub(super) fn new(solve: &'a mut Solve<'b>, doubts: Vec<f64>) -> Self {
         let nodes = solve.part.nodes;
         let mut tie = vec![NONE; solve.part.diodes.len()];
         for &t in solve.forest.up.iter().filter(|t| **t != NONE) {
@@ -70,6 +76,10 @@ impl<'a, 'b> Excite<'a, 'b> {
         }
         let at = vec![0.0; solve.forest.groups];
         Excite { solve, doubts, tie, lift: vec![0.0; nodes], net: vec![0.0; nodes], at }
+    }
+
+    pub(super) fn blocks(&self, k: usize) -> bool {
+        self.solve.guide.states[k] == State::Blocking
     }
 
     /// Of the current of a junction that carries some, or of the voltage of one that blocks.

@@ -35,6 +35,8 @@ mod settle;
 mod smooth;
 mod smooth_general;
 mod smooth_passive;
+#[cfg(test)]
+mod smooth_tests;
 mod solve;
 pub(crate) mod stepping;
 mod supernodal;

@@ -318,8 +318,7 @@ impl<'a> Descent<'a> {
             terms[group as usize] += i;
         }
         // a conductance turns the rounding of a potential into current
-        let from = self.links.len();
-        for ((a, b), g) in self.system.edges().iter().zip(&self.conductances).skip(from) {
+        for ((a, b), g) in self.system.edges().iter().zip(&self.conductances) {
             terms[*a as usize] += 1e-6 * g * self.volts;
             terms[*b as usize] += 1e-6 * g * self.volts;
         }

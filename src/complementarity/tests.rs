@@ -163,7 +163,7 @@ impl Dice {
     }
 }
 
-fn random(dice: &mut Dice, spread: bool) -> Network {
+pub(super) fn random(dice: &mut Dice, spread: bool) -> Network {
     let nodes = 3 + dice.below(7) as u32;
     let mut branches = Vec::new();
     for _ in 0..2 + dice.below(14) {
@@ -190,7 +190,7 @@ fn random(dice: &mut Dice, spread: bool) -> Network {
     network
 }
 
-fn show(network: &Network) -> String {
+pub(super) fn show(network: &Network) -> String {
     let line = |(n, b): (usize, &Branch)| {
         let law = match b.law {
             Law::Junction(j) => {

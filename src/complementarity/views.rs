@@ -20,8 +20,8 @@ pub struct Questions<'a> {
     /// Pairs of nodes whose difference is asked about.
     pub pairs: &'a [(u32, u32)],
     /// How uncertain each junction is, given what it sees: volts of its level where it carries current, amperes that
-    /// it leaks where it blocks.
-    pub doubt: &'a dyn Fn(u32, Option<View>) -> f64,
+    /// it leaks where it blocks and the others move what it sees by so many volts.
+    pub doubt: &'a dyn Fn(u32, Option<View>, f64) -> f64,
 }
 
 /// The answers, in the order of the questions.
@@ -39,7 +39,7 @@ pub struct Looks {
 impl Network {
     /// What each of `junctions` (branch numbers) sees in `solution`.
     pub fn views(&self, solution: &Solution, junctions: &[u32]) -> Vec<Option<View>> {
-        self.look(solution, &Questions { junctions, spreads: false, pairs: &[], doubt: &|_, _| 0.0 }).views
+        self.look(solution, &Questions { junctions, spreads: false, pairs: &[], doubt: &|_, _, _| 0.0 }).views
     }
 
     /// Views, and how far the uncertainty of all junctions spreads, to first order.
@@ -134,12 +134,24 @@ impl Desk<'_> {
     }
 
     fn passive_spreads(&mut self, piece: &Piece, built: &Built, solve: &mut Solve<'_>) {
-        let doubts: Vec<f64> =
-            built.diodes.iter().map(|&b| (self.questions.doubt)(b, self.views[b as usize])).collect();
-        let mut excite = Excite::new(solve, &doubts);
-        for (k, &branch) in built.diodes.iter().enumerate() {
-            if self.questions.spreads && self.wanted[branch as usize] {
-                self.spreads[branch as usize] = excite.junction(k).map(|s| s.numbered(&built.diodes));
+        let views = &self.views;
+        let doubt = |k: usize, more: f64| {
+            let branch = built.diodes[k];
+            (self.questions.doubt)(branch, views[branch as usize], more)
+        };
+        let mut excite = Excite::new(solve, (0..built.diodes.len()).map(|k| doubt(k, 0.0)).collect());
+        // what blocks first: the others may bring it nearer to its knee, and then it leaks more
+        for blocks in [true, false] {
+            for (k, &branch) in built.diodes.iter().enumerate() {
+                let is_wanted = self.questions.spreads && self.wanted[branch as usize];
+                if is_wanted && excite.blocks(k) == blocks {
+                    self.spreads[branch as usize] = excite.junction(k).map(|s| s.numbered(&built.diodes));
+                }
+            }
+            for (k, &branch) in built.diodes.iter().enumerate().filter(|_| blocks) {
+                if let (true, Some(spread)) = (excite.blocks(k), &self.spreads[branch as usize]) {
+                    excite.doubts[k] = doubt(k, spread.others());
+                }
             }
         }
         for (n, &(p, q)) in self.questions.pairs.iter().enumerate() {
@@ -164,7 +176,7 @@ impl Desk<'_> {
                 rails,
                 piece,
                 solution: self.solution,
-                doubt: &|b| (self.questions.doubt)(b, self.views[b as usize]),
+                doubt: &|b, more| (self.questions.doubt)(b, self.views[b as usize], more),
             };
             for (branch, spread) in ask.junctions() {
                 if self.wanted[branch as usize] && self.questions.spreads {

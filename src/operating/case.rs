@@ -382,7 +382,7 @@ impl Maker<'_> {
                 junctions: &wanted,
                 spreads: is_judged,
                 pairs: if is_judged { &nodes } else { &[] },
-                doubt: &|branch, view| judge.doubt(branch, view),
+                doubt: &|branch, view, more| judge.doubt(branch, view, more),
             },
         );
         let count = self.setting.diodes.len();

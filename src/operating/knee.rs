@@ -2,14 +2,16 @@
 //! a blocking diode leaks. Law by law; networks are solved elsewhere.
 
 use super::assemble::Setting;
-use super::drop::Diode;
+use super::drop::{Diode, DropLaw};
 use super::law::thermal_voltage;
 use super::result::Knee;
 use crate::circuit::State;
 use crate::complementarity::{Curve, Tail, View};
 
-/// A drop below this makes an ideal diode: nobody means a junction by it.
-pub(crate) const IDEAL: f64 = 0.1;
+/// A drop below this makes an ideal diode: nobody means a junction by it, unless a model says so.
+const IDEAL: f64 = 0.1;
+/// A model with an emission coefficient below this is meant as an ideal diode.
+const STEEP: f64 = 0.5;
 /// How far a drop that no model gives may be off, volts.
 pub(crate) const UNKNOWN: f64 = 0.1;
 /// What two diodes of one model differ by at one current, as a share of N·kT/q.
@@ -18,7 +20,9 @@ pub(crate) const SCATTER: f64 = 0.25;
 /// The smooth law of a diode with a drop of `drop` volts at `celsius`: its model's, else the one that passes
 /// through the drop at the reference current of its material. `None` for an ideal diode.
 pub(crate) fn curve(diode: &Diode, drop: f64, celsius: f64) -> Option<Curve> {
-    if drop < IDEAL {
+    // a hot Schottky diode has a small drop, but it is a junction
+    let is_junction = matches!(&diode.law, DropLaw::Model { law, .. } if law.emission >= STEEP);
+    if drop < IDEAL && !is_junction {
         return None;
     }
     let thermal = thermal_voltage(celsius);

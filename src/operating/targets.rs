@@ -24,7 +24,7 @@ impl Targets {
     pub fn of(circuit: &Circuit, directory: Option<&Directory>) -> Self {
         let mut targets = Targets::default();
         for note in &circuit.notes {
-            let (NoteKind::Watch { other }, Some(directory)) = (&note.kind, directory) else { continue };
+            let (NoteKind::Watch { other, .. }, Some(directory)) = (&note.kind, directory) else { continue };
             let find = |name| directory.node(note.scope, circuit.text(name));
             match (find(note.subject), other.map(find)) {
                 (Some(node), None) => targets.nodes.push(node),

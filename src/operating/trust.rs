@@ -24,15 +24,15 @@ pub(crate) struct Judge<'a> {
 
 impl Judge<'_> {
     /// How uncertain a junction is: volts of its level where it carries current, amperes that it leaks where it
-    /// blocks.
-    pub fn doubt(&self, branch: u32, view: Option<View>) -> f64 {
+    /// blocks and the other drops move what it sees by `more` volts.
+    pub fn doubt(&self, branch: u32, view: Option<View>, more: f64) -> f64 {
         let Some((diode, curve, drop)) = self.diode_of(branch) else { return 0.0 };
         let place = self.solution.places[branch as usize];
         let current = self.solution.currents[branch as usize].known();
         match place {
             Place::Blocking => {
                 let voltage = self.solution.voltages[branch as usize].known().unwrap_or(0.0);
-                leakage(&curve, view, voltage, 0.0)
+                leakage(&curve, view, voltage, more)
             }
             _ => knee(diode, &curve, drop, state(place), current).uncertainty,
         }
@@ -123,7 +123,7 @@ impl Judge<'_> {
         let branch = self.assembly.branch[id.index()];
         let share = percent(part, current);
         let blocks = self.solution.places.get(branch as usize) == Some(&Place::Blocking);
-        let doubt = self.doubt(branch, None);
+        let doubt = self.doubt(branch, None, 0.0);
         if blocks {
             format!("what the blocking {name} leaks is worth {share} of it")
         } else {
@@ -132,7 +132,7 @@ impl Judge<'_> {
     }
 
     fn blocking(&self, result: &mut DiodeResult, diode: &Diode, law: Option<Curve>, spread: Option<Spread>) {
-        let others = spread.map_or(0.0, |s| (s.total - s.own).max(0.0));
+        let others = spread.map_or(0.0, |s| s.others());
         let Some(law) = law else {
             // an ideal diode leaks nothing, but others may still push it over its corner
             if result.margin.is_some() && spread.is_some() {
@@ -163,22 +163,21 @@ impl Judge<'_> {
         if let (Some(shift), true) = (shift, trust != Trust::Good) {
             result.trust_reasons.push(leak_reason(result, bound, shift));
         }
-        self.edge(result, others, result.knee.map(|k| k.reference));
+        self.edge(result, others + own, result.knee.map(|k| k.reference));
     }
 
-    /// A state whose margin is less than what the others' uncertainty may move is in doubt.
-    fn edge(&self, result: &mut DiodeResult, others: f64, reference: Option<f64>) {
-        let Some(margin) = result.margin.filter(|m| *m < others) else { return };
+    /// A state whose margin is less than what all uncertainty may move is in doubt.
+    fn edge(&self, result: &mut DiodeResult, all: f64, reference: Option<f64>) {
+        let Some(margin) = result.margin.filter(|m| *m < all) else { return };
         result.trust = Some(Trust::Poor);
         let at = reference.map_or(String::new(), |i| format!(" (at {})", compact(i, "A")));
         result.trust_reasons.insert(
             0,
             format!(
-                "its margin of {} to the drop of {}{at} is less than the {} by which the other drops may move what \
-                 it sees: it may conduct",
+                "its margin of {} to the drop of {}{at} is less than the {} to which the drops are known: it may conduct",
                 quantity(margin, "V"),
                 quantity(result.drop.volts, "V"),
-                quantity(others, "V")
+                quantity(all, "V")
             ),
         );
     }

@@ -1,15 +1,24 @@
 //! kneewise as a user of the library calls it: text in, states out.
 
 use kneewise::analysis::{Analysis, analyse};
-use kneewise::config::Options;
+use kneewise::config::{Options, SecondOpinion};
 use kneewise::operating::{Case, Solution};
 use kneewise::text::Memory;
 use std::path::Path;
 
-/// The whole pipeline over a netlist.
+/// The whole pipeline over a netlist, states alone.
 pub fn states(netlist: &str) -> Analysis {
+    with(netlist, SecondOpinion::Nowhere)
+}
+
+/// The same with trust and the second opinion.
+pub fn trusted(netlist: &str) -> Analysis {
+    with(netlist, SecondOpinion::Usual)
+}
+
+fn with(netlist: &str, opinion: SecondOpinion) -> Analysis {
     let mut files = Memory::with("network.cir", netlist.as_bytes());
-    let options = Options { states: true, ..Options::default() };
+    let options = Options { states: true, opinion, ..Options::default() };
     analyse(&mut files, Path::new("network.cir"), &options).expect("the netlist is in memory")
 }
 
