@@ -27,7 +27,7 @@ fn miss(network: &Network, laws: &[Smoothness], smooth: &Smooth) -> f64 {
             (Law::Current(level), _) => (level.value, level.value.abs()),
             (Law::Junction(_), Smoothness::Curve(curve)) => {
                 let i = curve.current(p - q);
-                (i, i.abs() + (i.abs() + curve.saturation()) * 1e-6 * (p.abs() + q.abs()) / curve.slope)
+                (i, i.abs() + (i.abs() + curve.saturation()) * 1e-5 * (p.abs() + q.abs()) / curve.slope)
             }
             _ => (f64::NAN, 0.0),
         };
