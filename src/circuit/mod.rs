@@ -206,6 +206,14 @@ impl Circuit {
         self.path(element.scope, element.name)
     }
 
+    /// The instance's full name, `X1:X2`; empty for the root.
+    pub fn scope_name(&self, id: ScopeId) -> String {
+        match self.scopes.get(id.index()) {
+            Some(Scope { parent: Some(parent), name, .. }) => self.path(*parent, *name),
+            _ => String::new(),
+        }
+    }
+
     /// The node's full name; ground is `0`.
     pub fn node_name(&self, id: NodeId) -> String {
         let node = &self.nodes[id.index()];

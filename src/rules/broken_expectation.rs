@@ -1,8 +1,7 @@
 //! An `expect` note that the circuit does not meet.
 
-use super::{About, Check, Claim, Evidence, Found, Outcome, Rule, claims, in_cases};
-use crate::circuit::{Expectation, State};
-use crate::finding::{Finding, Severity, interval};
+use super::{About, Check, Claim, Evidence, Found, Outcome, Rule, claims, expected, in_cases};
+use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
@@ -33,7 +32,7 @@ pub const RULE: Rule = Rule {
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let (claims, mut findings) = claims(evidence);
-    for claim in &claims {
+    for claim in claims.iter().filter(|c| !c.wanted.over_time) {
         if let Outcome::Broken(found) = claim.judge(evidence, operating, &claims) {
             findings.push(finding(evidence, operating, claim, &found));
         }
@@ -42,10 +41,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
 }
 
 fn finding(evidence: &Evidence<'_>, operating: &Operating, claim: &Claim<'_>, found: &[Found]) -> Finding {
-    let subject = match claim.about {
-        About::Diode(id) => evidence.name(id),
-        About::Node(node) => format!("v({})", evidence.circuit.node_name(node)),
-    };
+    let subject = claim.subject(evidence);
     let expected = expected(claim.wanted);
     let is_named = claim.wanted.at.is_some();
     let found_words: Vec<String> = found.iter().map(|f| words(operating, f, is_named)).collect();
@@ -71,22 +67,4 @@ fn words(operating: &Operating, found: &Found, is_named: bool) -> String {
         (_, cases) => in_cases(operating, cases).replace([')', '('], ""),
     };
     format!("{}{place}", found.words)
-}
-
-/// `conducting 2 mA … 5 mA at VIN=9`
-fn expected(wanted: &Expectation) -> String {
-    let state = match wanted.state {
-        Some(State::Breakdown) => "in breakdown",
-        Some(state) => state.word(),
-        None => "",
-    };
-    let unit = if wanted.is_voltage { "V" } else { "A" };
-    let range = wanted.range.map(|(low, high)| interval(low, high, unit)).unwrap_or_default();
-    let place = match (&wanted.at, wanted.some, wanted.over_time) {
-        (Some(at), _, _) => format!("at {at}"),
-        (_, true, _) => "in some condition".into(),
-        (_, _, true) => "over time".into(),
-        _ => String::new(),
-    };
-    [state, &range, &place].into_iter().filter(|part| !part.is_empty()).collect::<Vec<_>>().join(" ")
 }

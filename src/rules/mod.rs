@@ -4,7 +4,7 @@
 
 mod support;
 
-use support::{About, Claim, Found, LooseEnd, Outcome, claims};
+use support::{About, Claim, Found, LooseEnd, Outcome, claims, expected};
 pub use support::{Check, Evidence, GROUPS, Rule, Skipped, accept, is_hopeless, run};
 use support::{Shown, causes, count, in_cases, is_told, list};
 

@@ -1,6 +1,6 @@
 //! An `expect` note that could not be checked.
 
-use super::{About, Check, Evidence, Outcome, Rule, claims};
+use super::{Check, Evidence, Outcome, Rule, claims};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
@@ -36,10 +36,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut findings = Vec::new();
     for claim in claims.iter().filter(|c| !c.wanted.over_time) {
         let Outcome::Unchecked(why) = claim.judge(evidence, operating, &claims) else { continue };
-        let subject = match claim.about {
-            About::Diode(id) => evidence.name(id),
-            About::Node(node) => format!("v({})", evidence.circuit.node_name(node)),
-        };
+        let subject = claim.subject(evidence);
         let message = format!("what is expected of {subject} could not be checked: {why}");
         findings.push(
             evidence

@@ -129,3 +129,24 @@ fn wrong_usage_is_told() {
         assert!(!run.err.is_empty(), "{arguments:?}");
     }
 }
+
+#[test]
+fn a_whole_instance_is_told_once_and_a_change_inside_a_definition_too() {
+    let old = "lamps\nV1 in 0 5\nX1 in S\nX2 in S\nX3 in S\n.subckt S p\nR1 p m 1k\nD1 m 0 DX\n.ends\n.model DX D\n";
+    let new = old.replace("X3 in S\n", "").replace("D1 m 0", "D1 0 m");
+    let folder = folder("instances", old, &new);
+    let document = json(&folder);
+    let told: Vec<String> = document["wiring"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|w| format!("{} {}", w["element"].as_str().unwrap(), w["what"].as_str().unwrap()))
+        .collect();
+    assert_eq!(
+        told,
+        [
+            "X1:D1 is turned round; it now leads from 0 to X1:m (the same in 2 instances)",
+            "X3 is gone, an instance of S (2 elements)"
+        ]
+    );
+}

@@ -20,7 +20,8 @@ fn the_readme_shows_what_the_program_does() {
         assert_eq!(written, real, "README.md:{}; UPDATE_README=1 writes it anew", line + 1);
     }
     assert_eq!(written.len(), real.len());
-    for command in ["$ kneewise check ", "$ kneewise states "] {
+    for command in ["$ kneewise check ", "$ kneewise states ", "$ kneewise annotate ", "$ kneewise compare "]
+    {
         assert!(written.contains(command), "the README shows no `{command}`");
     }
 }
@@ -53,4 +54,39 @@ fn with_rules(text: &str) -> String {
         writeln!(table, "| `{}` | {} | {} |", rule.name, rule.severity.word(), rule.summary).unwrap();
     }
     format!("{before}{RULES}{table}{RULES}{after}")
+}
+
+/// The lines of the pipeline that the README proposes do what it says, in a repository with a faulty change.
+#[test]
+fn the_pipeline_of_the_readme_runs() {
+    let text = std::fs::read_to_string(root().join("README.md")).unwrap();
+    let after = text.split("<!-- pipeline -->").nth(1).unwrap();
+    let script = after.split(FENCE).nth(1).unwrap();
+    let folder = crate::runner::scratch("readme-pipeline");
+    let sh = |script: &str| {
+        let program = std::path::Path::new(env!("CARGO_BIN_EXE_kneewise")).parent().unwrap();
+        let path = format!("{}:{}", program.display(), std::env::var("PATH").unwrap_or_default());
+        let identity = "export GIT_AUTHOR_NAME=t GIT_AUTHOR_EMAIL=t@example.org GIT_COMMITTER_NAME=t \
+                        GIT_COMMITTER_EMAIL=t@example.org\n";
+        let mut command = std::process::Command::new("sh");
+        command.args(["-c", &format!("{identity}{script}")]).env("PATH", path);
+        command.current_dir(&folder).stdin(std::process::Stdio::null()).output().unwrap()
+    };
+    let made = sh(
+        "git init -q -b main upstream && cd upstream && printf 'lamp\\nV1 a 0 5\\nR1 a b 1M\\nD1 b 0 DX\\n.model DX D\\n' \
+                   > lamp.net && git add . && git commit -qm first && cd .. && git clone -q upstream work",
+    );
+    if !made.status.success() {
+        // a machine without git
+        return;
+    }
+    let clean = sh(&format!("cd work\n{script}"));
+    assert_eq!(clean.status.code(), Some(0), "{}", String::from_utf8_lossy(&clean.stderr));
+    let change = "sed 's/D1 b 0/D1 0 b/' lamp.net > changed && printf 'R2 a 0 2M\\n' >> changed && mv changed lamp.net";
+    let faulty = sh(&format!("cd work\n{change}\n{script}"));
+    assert_eq!(faulty.status.code(), Some(1), "{}", String::from_utf8_lossy(&faulty.stderr));
+    let comment = std::fs::read_to_string(folder.join("work/kneewise.md")).unwrap();
+    assert!(comment.contains("States that flip") && comment.contains("R2"), "{comment}");
+    let log = std::fs::read_to_string(folder.join("work/kneewise.sarif")).unwrap();
+    assert!(log.contains("\"baselineState\":\"new\""), "{log}");
 }

@@ -14,10 +14,16 @@ fn told(notes: &str) -> Vec<(&'static str, String)> {
 }
 
 fn told_in(text: &str) -> Vec<(&'static str, String)> {
-    let options = Options { states: true, ..Options::default() };
+    let options = Options { states: true, swing: true, ..Options::default() };
     let analysis = analyse(&mut Memory::with("a.net", text), Path::new("a.net"), &options).unwrap();
-    let rules =
-        ["broken-expectation", "unchecked-expectation", "unknown-name", "conflicting-notes", "unusable-note"];
+    let rules = [
+        "broken-over-time",
+        "broken-expectation",
+        "unchecked-expectation",
+        "unknown-name",
+        "conflicting-notes",
+        "unusable-note",
+    ];
     let about = analysis.findings.into_iter().filter(|f| rules.contains(&f.rule));
     about.map(|f| (f.rule, format!("{} | {}", f.message, f.help))).collect()
 }
@@ -112,4 +118,23 @@ fn an_instant_does_not_judge_a_part_with_a_memory() {
     // without the capacitor it does
     let plain = detector.replace("C1 out 0 10u\n", "");
     assert!(told_in(&format!("{plain}*@ expect D1 conducting at V1=max\n")).is_empty());
+}
+
+#[test]
+fn over_time_the_state_is_reached_and_the_value_bounds_the_extremes() {
+    // half a wave: crest 10 V less the drop of 0.7 V over 1 kΩ is 9.3 mA, and it conducts a little less than half the time
+    let circuit =
+        "t\nV1 in 0 SIN(0 10 50)\nD1 in out DX\nR1 out 0 1k\nD2 out in DX\n.model DX D\n*@ drop DX 0.7\n";
+    let held = "*@ expect D1 conducting 9.2m..9.4m over time\n*@ expect D1 blocking over time\n*@ expect v(out) -9.4..9.4 over time\n";
+    assert!(told_in(&format!("{circuit}{held}")).is_empty(), "{:?}", told_in(&format!("{circuit}{held}")));
+    let told = told_in(&format!("{circuit}*@ expect D1 conducting 1m..9m over time\n"));
+    assert_eq!(told[0].0, "broken-over-time", "{told:?}");
+    assert!(told[0].1.contains("but its current reaches 9.3 mA | It conducts 47."), "{told:?}");
+    let told = told_in(&format!("{circuit}*@ expect v(out) -5..5 over time\n"));
+    assert!(told[0].1.contains("but falls to -9.3 V"), "{told:?}");
+    let told = told_in(&format!("{circuit}*@ expect D1 breakdown over time\n"));
+    assert!(told[0].1.contains("breakdown does not occur"), "{told:?}");
+    let told =
+        told_in("t\nV1 in 0 5\nR1 in a 1k\nD1 a 0 DX\n.model DX D\n*@ expect D1 conducting over time\n");
+    assert_eq!(told[0].0, "unchecked-expectation", "{told:?}");
 }

@@ -2,7 +2,7 @@
 
 use super::nodes::Nodes;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// An element of both revisions.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -72,7 +72,7 @@ impl Pairs {
             let nodes = ends(new, id, |pin| Some(new.node(id, pin))).unwrap_or_default();
             free.entry((new.element(id).letter, nodes, value(new, id))).or_default().push(id);
         }
-        let mut left = Vec::new();
+        let (mut left, mut taken) = (Vec::new(), BTreeSet::new());
         for id in std::mem::take(&mut self.gone) {
             let found = ends(old, id, |pin| self.nodes.get(old.node(id, pin)))
                 .filter(|nodes| !nodes.is_empty())
@@ -82,13 +82,14 @@ impl Pairs {
                 .map(|ids| ids.remove(0));
             match found {
                 Some(other) => {
-                    self.added.retain(|&a| a != other);
+                    taken.insert(other);
                     self.push(id, other, true);
                 }
                 None => left.push(id),
             }
         }
         self.gone = left;
+        self.added.retain(|id| !taken.contains(id));
     }
 }
 

@@ -2,10 +2,10 @@
 
 use super::matching::{Pair, Pairs};
 use super::outcome::WiringChange;
-use crate::circuit::{Circuit, ElementId, NodeId};
-use crate::finding::list;
+use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
+use crate::finding::{self, list};
 use crate::text::Span;
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// All of them: what changed, what came, what went.
 pub(super) fn between(old: &Circuit, new: &Circuit, pairs: &Pairs) -> Vec<WiringChange> {
@@ -15,13 +15,53 @@ pub(super) fn between(old: &Circuit, new: &Circuit, pairs: &Pairs) -> Vec<Wiring
             told.tell(new, pair.new, what);
         }
     }
+    let added = whole_instances(new, old, &pairs.added);
     for &id in &pairs.added {
-        told.tell(new, id, format!("is new; it joins {}", ends(new, id)));
+        match added.of(new, id) {
+            Some((scope, count)) => told.tell_instance(new, scope, "is new", count),
+            None => told.tell(new, id, format!("is new; it joins {}", ends(new, id))),
+        }
     }
+    let gone = whole_instances(old, new, &pairs.gone);
     for &id in &pairs.gone {
-        told.tell(old, id, format!("is gone; it joined {}", ends(old, id)));
+        match gone.of(old, id) {
+            Some((scope, count)) => told.tell_instance(old, scope, "is gone", count),
+            None => told.tell(old, id, format!("is gone; it joined {}", ends(old, id))),
+        }
     }
     told.finish()
+}
+
+/// Instances that one revision has and the other does not, the outermost ones, with how many of `elements` they hold.
+struct Instances(BTreeMap<ScopeId, (ScopeId, usize)>);
+
+fn whole_instances(circuit: &Circuit, other: &Circuit, elements: &[ElementId]) -> Instances {
+    let known: BTreeSet<String> =
+        (0..other.scopes.len()).map(|n| other.scope_name(ScopeId::new(n)).to_lowercase()).collect();
+    let mut outermost = BTreeMap::new();
+    let mut counts: BTreeMap<ScopeId, usize> = BTreeMap::new();
+    for &id in elements {
+        let scope = circuit.element(id).scope;
+        let missing = scopes_outward(circuit, scope)
+            .filter(|&s| s != ScopeId::ROOT && !known.contains(&circuit.scope_name(s).to_lowercase()))
+            .last();
+        if let Some(found) = missing {
+            outermost.insert(scope, found);
+            *counts.entry(found).or_insert(0) += 1;
+        }
+    }
+    let count = |found: ScopeId| counts.get(&found).copied().unwrap_or(0);
+    Instances(outermost.into_iter().map(|(scope, found)| (scope, (found, count(found)))).collect())
+}
+
+impl Instances {
+    fn of(&self, circuit: &Circuit, id: ElementId) -> Option<(ScopeId, usize)> {
+        self.0.get(&circuit.element(id).scope).copied()
+    }
+}
+
+fn scopes_outward(circuit: &Circuit, scope: ScopeId) -> impl Iterator<Item = ScopeId> + '_ {
+    std::iter::successors(Some(scope), |s| circuit.scopes.get(s.index()).and_then(|s| s.parent))
 }
 
 /// `in to out`
@@ -89,12 +129,23 @@ fn moved_end(old: &Circuit, new: &Circuit, pair: &Pair, pin: usize) -> String {
 struct Told {
     changes: Vec<(WiringChange, usize)>,
     known: BTreeMap<(Span, bool, usize), usize>,
+    instances: BTreeSet<(String, String)>,
 }
 
 impl Told {
+    /// Tells of an instance once, at the first of its elements.
+    fn tell_instance(&mut self, circuit: &Circuit, scope: ScopeId, what: &str, count: usize) {
+        let element = circuit.scope_name(scope);
+        if self.instances.insert((what.to_owned(), element.clone())) {
+            let subcircuit = circuit.text(circuit.scopes[scope.index()].subcircuit);
+            let what = format!("{what}, an instance of {subcircuit} ({})", finding::count(count, "element"));
+            self.changes.push((WiringChange { element, what }, 1));
+        }
+    }
+
     fn tell(&mut self, circuit: &Circuit, id: ElementId, what: String) {
         let element = circuit.element(id);
-        let is_inside = element.scope != crate::circuit::ScopeId::ROOT;
+        let is_inside = element.scope != ScopeId::ROOT;
         let change = WiringChange { element: circuit.element_name(id), what };
         // alike: the same statement, and words of the same shape
         let key = (element.statement, change.what.starts_with("is gone"), change.what.matches(';').count());

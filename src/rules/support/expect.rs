@@ -5,14 +5,15 @@ use super::Evidence;
 use super::condition::same_condition;
 use super::met::{Met, diode_met, node_met};
 use crate::circuit::directory::{Directory, depth, outward};
-use crate::circuit::{Behaviour, ElementId, Expectation, NodeId, Note, NoteKind};
-use crate::finding::{Finding, Severity};
+use crate::circuit::{Behaviour, ElementId, Expectation, NodeId, Note, NoteKind, State};
+use crate::finding::{Finding, Severity, interval};
 use crate::operating::{Case, Operating};
 use crate::text::Span;
+use rustc_hash::FxHashMap;
 use std::collections::BTreeSet;
 
 /// What a note expects something of.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
 pub enum About {
     /// A diode.
     Diode(ElementId),
@@ -130,15 +131,17 @@ fn no_diode(note: &Note, name: &str) -> Finding {
 fn said_twice(evidence: &Evidence<'_>, claims: &[Claim<'_>]) -> Vec<Finding> {
     let mut findings = Vec::new();
     let mut told: BTreeSet<Span> = BTreeSet::new();
-    for (n, claim) in claims.iter().enumerate().filter(|(_, c)| c.is_plain()) {
-        let same = |other: &&Claim<'_>| {
-            other.is_plain()
-                && other.about == claim.about
-                && other.nearness == claim.nearness
+    let mut known: FxHashMap<About, Vec<&Claim<'_>>> = FxHashMap::default();
+    for claim in claims.iter().filter(|c| c.is_plain()) {
+        let same = |other: &&&Claim<'_>| {
+            other.nearness == claim.nearness
                 && other.wanted.at == claim.wanted.at
                 && other.note.span != claim.note.span
         };
-        let Some(earlier) = claims[..n].iter().find(same) else { continue };
+        let earlier = known.entry(claim.about).or_default();
+        let first = earlier.iter().find(same).copied();
+        earlier.push(claim);
+        let Some(earlier) = first else { continue };
         if told.insert(claim.note.span) {
             let name = evidence.circuit.text(claim.note.subject);
             let message = format!("a second `expect` note for `{name}`");
@@ -155,6 +158,14 @@ fn said_twice(evidence: &Evidence<'_>, claims: &[Claim<'_>]) -> Vec<Finding> {
 }
 
 impl Claim<'_> {
+    /// `D1`, `v(out)`.
+    pub fn subject(&self, evidence: &Evidence<'_>) -> String {
+        match self.about {
+            About::Diode(id) => evidence.name(id),
+            About::Node(node) => format!("v({})", evidence.circuit.node_name(node)),
+        }
+    }
+
     /// Neither `in some condition` nor `over time`, of which several make sense.
     fn is_plain(&self) -> bool {
         !self.wanted.some && !self.wanted.over_time
@@ -166,14 +177,13 @@ impl Claim<'_> {
     }
 
     /// Whether a nearer note about the same thing speaks in its place.
-    fn is_outdone(&self, all: &[Claim<'_>], case: &Case) -> bool {
-        let outdoes = |other: &Claim<'_>| {
-            other.about == self.about
-                && other.nearness > self.nearness
+    fn is_outdone(&self, nearer: &[&Claim<'_>], case: &Case) -> bool {
+        let outdoes = |other: &&Claim<'_>| {
+            other.nearness > self.nearness
                 && (other.wanted.some, other.wanted.over_time) == (self.wanted.some, self.wanted.over_time)
                 && other.speaks_of(case)
         };
-        all.iter().any(outdoes)
+        nearer.iter().any(outdoes)
     }
 
     /// Holds the claim against the states.
@@ -195,8 +205,14 @@ impl Claim<'_> {
                     .into(),
             );
         }
+        // most notes stand at one level, and then none is nearer
+        let nearer: Vec<&Claim<'_>> = if all.iter().all(|c| c.nearness == self.nearness) {
+            Vec::new()
+        } else {
+            all.iter().filter(|c| c.about == self.about).collect()
+        };
         let own: Vec<usize> =
-            judged.into_iter().filter(|&n| !self.is_outdone(all, &operating.cases[n])).collect();
+            judged.into_iter().filter(|&n| !self.is_outdone(&nearer, &operating.cases[n])).collect();
         let met: Vec<(usize, Met)> =
             own.iter().flat_map(|&n| self.in_case(evidence, &operating.cases[n], n)).collect();
         if self.wanted.some && met.iter().any(|(_, met)| matches!(met, Met::Yes)) {
@@ -255,4 +271,22 @@ fn gather(operating: &Operating, met: Vec<(usize, Met)>) -> Outcome {
 fn no_condition(operating: &Operating, at: &str) -> String {
     let names: Vec<String> = operating.cases.iter().map(|c| c.name.clone()).collect();
     format!("there is no condition `{at}`; there are {}", super::list(&names))
+}
+
+/// `conducting 2 mA … 5 mA at VIN=9`
+pub fn expected(wanted: &Expectation) -> String {
+    let state = match wanted.state {
+        Some(State::Breakdown) => "in breakdown",
+        Some(state) => state.word(),
+        None => "",
+    };
+    let unit = if wanted.is_voltage { "V" } else { "A" };
+    let range = wanted.range.map(|(low, high)| interval(low, high, unit)).unwrap_or_default();
+    let place = match (&wanted.at, wanted.some, wanted.over_time) {
+        (Some(at), _, _) => format!("at {at}"),
+        (_, true, _) => "in some condition".into(),
+        (_, _, true) => "over time".into(),
+        _ => String::new(),
+    };
+    [state, &range, &place].into_iter().filter(|part| !part.is_empty()).collect::<Vec<_>>().join(" ")
 }

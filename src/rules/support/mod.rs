@@ -16,7 +16,7 @@ mod words;
 pub use accept::{about_note, accept};
 pub use cases::{Shown, causes, finding, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
-pub use expect::{About, Claim, Found, Outcome, claims};
+pub use expect::{About, Claim, Found, Outcome, claims, expected};
 pub use loose::LooseEnd;
 pub use rule::{Check, GROUPS, Rule, Skipped};
 pub use run::run;
