@@ -2,10 +2,10 @@
 //! the file that `--config` names. What a setting means is the library's.
 
 use kneewise::config::{SETTINGS_FILE, Settings, settings};
-use kneewise::finding::Finding;
+use kneewise::finding::{Finding, Severity};
 use kneewise::review::Record;
 use kneewise::rules;
-use kneewise::text::{FileId, Sources};
+use kneewise::text::{FileId, Sources, Span};
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
@@ -59,7 +59,7 @@ impl Shelf {
         }
         let own = directory.join(SETTINGS_FILE);
         let found = if own.is_file() {
-            read(&own).ok().map(|found| self.keep(found))
+            Some(self.keep(read(&own).unwrap_or_else(|problem| unreadable(&own, &problem))))
         } else if directory.join(".git").exists() {
             // what lies above a repository does not belong to it
             None
@@ -86,6 +86,16 @@ impl Shelf {
     pub fn findings(&self) -> impl Iterator<Item = &Finding> {
         self.in_order.iter().flat_map(|f| &f.findings)
     }
+}
+
+/// Settings that are there and cannot be read: whoever wrote them believes that they hold.
+fn unreadable(path: &Path, problem: &std::io::Error) -> Found {
+    let mut sources = Sources::default();
+    let file = sources.add(path.display().to_string(), Vec::new());
+    let message = format!("{SETTINGS_FILE} cannot be read: {problem}");
+    let finding = Finding::new("unreadable-settings", Severity::Error, Span::new(file, 0, 0), message)
+        .help("None of its settings hold. Mend its permissions, or name another with --config.");
+    Found { settings: Settings::default(), base: PathBuf::new(), sources, findings: vec![finding] }
 }
 
 fn read(path: &Path) -> std::io::Result<Found> {

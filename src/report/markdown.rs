@@ -103,7 +103,7 @@ pub(super) fn escaped(text: &str) -> String {
 /// A sentence of ours, in which names stand between backquotes: those become code, the rest is no markup.
 pub(super) fn prose(text: &str) -> String {
     let parts: Vec<&str> = text.split('`').collect();
-    if parts.len() % 2 == 0 {
+    if parts.len().is_multiple_of(2) {
         // a backquote of the input's own: nothing is sure
         return escaped(text);
     }

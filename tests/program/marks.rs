@@ -220,3 +220,25 @@ fn a_full_disk_loses_nothing() {
     assert_eq!(there.unwrap(), padded);
     assert_eq!(left, ["a.net", "ballast"]);
 }
+
+/// Somebody else writes the file while the new one is on its way to the disk: his bytes stay.
+#[test]
+fn what_changes_underneath_is_not_lost() {
+    let (folder, file) = board("underneath");
+    let mut strace = Command::new("strace");
+    // long enough to see the new file appear beside the old one
+    strace.args(["-f", "-qq", "-o", "/dev/null", "-e", "inject=fsync:delay_enter=500000:when=1"]);
+    strace.arg(env!("CARGO_BIN_EXE_kneewise")).args(["annotate", "--write", "a.net"]).current_dir(&folder);
+    let Ok(child) = strace.stdin(Stdio::null()).stderr(Stdio::piped()).spawn() else { return };
+    let begun = std::time::Instant::now();
+    while names(&folder).len() < 2 && begun.elapsed() < Duration::from_secs(20) {
+        std::thread::sleep(Duration::from_millis(2));
+    }
+    std::fs::write(&file, "somebody else's\n").unwrap();
+    let output = child.wait_with_output().unwrap();
+    let told = String::from_utf8_lossy(&output.stderr).into_owned();
+    assert_eq!(output.status.code(), Some(2), "{told}");
+    assert!(told.contains("somebody has changed it in the meantime"), "{told}");
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), "somebody else's\n");
+    assert_eq!(names(&folder), ["a.net"]);
+}

@@ -156,3 +156,13 @@ fn many_files_come_out_in_one_order() {
     let found: Vec<String> = files(&json(&folder, &["check", "."]));
     assert_eq!(found, names.iter().map(|n| format!("./{n}")).collect::<Vec<_>>());
 }
+
+#[test]
+fn settings_that_cannot_be_read_are_told() {
+    let folder = folder("unreadable", &[("a.net", "t\nV1 a 0 5\nR1 a 0 1k\n")]);
+    // not UTF-8 and no TOML, whoever runs the tests
+    std::fs::write(folder.join("kneewise.toml"), b"fail-on = \xFF\xFE\n").unwrap();
+    let run = run_in(&folder, &["check", "a.net"]);
+    assert_eq!(run.code, 1, "{}", run.out);
+    assert!(run.out.contains("error · unreadable-settings · kneewise.toml:1:"), "{}", run.out);
+}

@@ -8,6 +8,7 @@ use crate::analysis::Analysis;
 use crate::circuit::{Behaviour, ElementId};
 use crate::operating::{self, Operating};
 use crate::review::Record;
+use std::collections::BTreeSet;
 
 /// Everything that differs between two analyses.
 pub(super) fn between(old: Analysis, new: Analysis, pairs: &Pairs, share: f64) -> Comparison {
@@ -52,7 +53,7 @@ struct Sides<'a> {
 
 impl Sides<'_> {
     fn add(&self, twin: Twin<'_>, share: f64, comparison: &mut Comparison) {
-        let mut flipped: Vec<ElementId> = Vec::new();
+        let mut flipped: BTreeSet<ElementId> = BTreeSet::new();
         for pair in &self.pairs.elements {
             if !matches!(self.new.circuit.element(pair.new).behaviour, Behaviour::Diode { .. }) {
                 continue;
@@ -61,7 +62,7 @@ impl Sides<'_> {
             let is = seen(self.after, twin.new, pair.new);
             let (Some((old_state, old)), Some((new_state, new))) = (was, is) else { continue };
             if old_state != new_state {
-                flipped.push(pair.new);
+                flipped.insert(pair.new);
                 comparison.states.push(StateChange {
                     diode: self.new.circuit.element_name(pair.new),
                     case: twin.new.name.clone(),

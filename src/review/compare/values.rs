@@ -5,7 +5,7 @@ use super::matching::Pairs;
 use super::outcome::Move;
 use crate::circuit::{Circuit, ElementId, NodeId};
 use crate::operating::{Operating, Quantity, Solution};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// What is below this share of the largest of its kind is rounding.
 const ROUNDING: f64 = 1e-9;
@@ -17,7 +17,7 @@ pub(super) fn currents(
     twin: Twin<'_>,
     pairs: &Pairs,
     share: f64,
-    flipped: &[ElementId],
+    flipped: &BTreeSet<ElementId>,
 ) -> Vec<Move> {
     let ([before], [after]) = (twin.old.solutions.as_slice(), twin.new.solutions.as_slice()) else {
         return Vec::new();
@@ -27,7 +27,7 @@ pub(super) fn currents(
     let is_left = |operating: &Operating, id: &ElementId| operating.left_to_time.binary_search(id).is_ok();
     let judged = pairs.elements.iter().filter(|p| {
         let left = is_left(old, &p.old) || is_left(new.1, &p.new);
-        !flipped.contains(&p.new) && !(twin.new.instant && left)
+        !(flipped.contains(&p.new) || twin.new.instant && left)
     });
     let moves = judged.filter_map(|pair| {
         let sign = if pair.swapped { -1.0 } else { 1.0 };

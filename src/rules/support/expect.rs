@@ -72,7 +72,7 @@ pub fn claims<'a>(evidence: &Evidence<'a>) -> (Vec<Claim<'a>>, Vec<Finding>) {
                 nearness: (depth(circuit, note.scope), is_element),
             })),
             // an instance repeats the notes of its subcircuit
-            Err(finding) if told.insert(note.span) => findings.push(finding),
+            Err(finding) if told.insert(note.span) => findings.push(*finding),
             Err(_) => {}
         }
     }
@@ -86,17 +86,17 @@ fn abouts(
     directory: &Directory,
     note: &Note,
     wanted: &Expectation,
-) -> Result<Vec<(About, bool)>, Finding> {
+) -> Result<Vec<(About, bool)>, Box<Finding>> {
     let circuit = evidence.circuit;
     let name = circuit.text(note.subject);
     if wanted.is_voltage {
-        let node = directory.node(note.scope, name).ok_or_else(|| nothing(note, name, "node"))?;
+        let node = directory.node(note.scope, name).ok_or_else(|| Box::new(nothing(note, name, "node")))?;
         return Ok(vec![(About::Node(node), true)]);
     }
     if let Some(id) = directory.element(note.scope, name) {
         return match circuit.element(id).behaviour {
             Behaviour::Diode { .. } => Ok(vec![(About::Diode(id), true)]),
-            _ => Err(no_diode(note, name)),
+            _ => Err(Box::new(no_diode(note, name))),
         };
     }
     let is_of_model = |id: ElementId| {
@@ -106,7 +106,7 @@ fn abouts(
     };
     let is_model = circuit.models.iter().any(|m| circuit.text(m.name).eq_ignore_ascii_case(name));
     if !is_model {
-        return Err(nothing(note, name, "diode or model"));
+        return Err(Box::new(nothing(note, name, "diode or model")));
     }
     let ids = circuit.elements().map(|(id, _)| id).filter(|&id| is_of_model(id));
     Ok(ids.map(|id| (About::Diode(id), false)).collect())
