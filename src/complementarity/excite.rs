@@ -33,6 +33,12 @@ impl Spread {
         (self.total - self.own).max(0.0)
     }
 
+    /// Both together.
+    pub(super) fn and(self, other: Spread) -> Spread {
+        let most = if self.most.1 >= other.most.1 { self.most } else { other.most };
+        Spread { total: self.total + other.total, own: self.own + other.own, most }
+    }
+
     const NOTHING: Spread = Spread { total: 0.0, own: 0.0, most: (NONE, 0.0) };
 
     fn add(&mut self, number: u32, amount: f64, is_own: bool) {
@@ -292,9 +298,9 @@ impl GeneralSpreads<'_> {
         };
         let all = pairs.iter().enumerate();
         let here = all.filter(|(_, (p, q))| own.contains(p) || own.contains(q));
-        here.filter(|(_, (p, q))| is_known(p) && is_known(q))
-            .map(|(n, &(p, q))| (n, self.sum(&reduced, &change(p, q), &doubts, None)))
-            .collect()
+        // a node of another part contributes there
+        let local = |n: u32| if is_known(&n) { n } else { 0 };
+        here.map(|(n, &(p, q))| (n, self.sum(&reduced, &change(local(p), local(q)), &doubts, None))).collect()
     }
 
     /// How uncertain each member of each bundle is.

@@ -159,10 +159,16 @@ impl Desk<'_> {
                 0 => Some(0),
                 g => piece.groups.binary_search(&g).ok().map(|at| at as u32 + 1),
             };
-            if let (Some(p), Some(q)) = (local(p), local(q))
-                && (p, q) != (0, 0)
-            {
-                self.pairs[n] = excite.between(p, q).map(|s| s.numbered(&built.diodes));
+            let spread = match (local(p), local(q)) {
+                (Some(0), Some(0)) | (None, None) => None,
+                (Some(p), Some(q)) => excite.between(p, q),
+                // the other node is another part's: each contributes what it does against the reference
+                (Some(n), None) | (None, Some(n)) if n != 0 => excite.between(n, 0),
+                _ => None,
+            };
+            if let Some(spread) = spread {
+                let spread = spread.numbered(&built.diodes);
+                self.pairs[n] = Some(self.pairs[n].map_or(spread, |other: Spread| other.and(spread)));
             }
         }
     }
@@ -184,7 +190,7 @@ impl Desk<'_> {
                 }
             }
             for (n, spread) in ask.pairs(self.questions.pairs) {
-                self.pairs[n] = Some(spread);
+                self.pairs[n] = Some(self.pairs[n].map_or(spread, |other: Spread| other.and(spread)));
             }
         }
     }

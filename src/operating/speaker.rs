@@ -237,3 +237,20 @@ impl Speaker<'_> {
         vec![format!("{} is not evaluated: {reason}.", self.name())]
     }
 }
+
+/// How far that may be believed: error bar, reasons, and what the exponential law says.
+pub(crate) fn trust(diode: &DiodeResult) -> Vec<String> {
+    let Some(trust) = diode.trust else { return Vec::new() };
+    let bar = match (diode.state, diode.error) {
+        (_, None) => String::new(),
+        (State::Blocking, Some(bar)) => format!(": it may leak up to {}", quantity(bar.current, "A")),
+        (_, Some(bar)) => format!(": the current is known to ±{}", quantity(bar.current, "A")),
+    };
+    let mut sentences = vec![format!("Trust in this is {}{bar}.", trust.word())];
+    sentences.extend(diode.trust_reasons.iter().map(|reason| sentence(reason)));
+    if let Some(refined) = diode.refined {
+        let (i, v) = (quantity(refined.current, "A"), quantity(refined.voltage, "V"));
+        sentences.push(format!("By the exponential law it carries {i} at {v}."));
+    }
+    sentences
+}

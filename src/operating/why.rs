@@ -70,6 +70,7 @@ impl Reasoner {
             sentences.push(format!("This is set {} of {count} that are consistent.", set + 1));
         }
         sentences.extend(speaker::sentences(setting.circuit, case, diode));
+        sentences.extend(speaker::trust(diode));
         let is_single = count == 1 && diode.state != State::NotEvaluated;
         let search = if is_single { flips(setting, solved, diode.element) } else { Search::default() };
         self.lines.push(Line {

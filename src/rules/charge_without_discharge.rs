@@ -58,14 +58,17 @@ fn only_charges(evidence: &Evidence<'_>, node: NodeId) -> bool {
             Behaviour::Capacitor { farads, .. } => stored |= farads.number > 0.0,
             Behaviour::Diode { model, .. } => {
                 // one that breaks down discharges, one with both ends here does nothing
-                let breaks = model.is_some_and(|m| circuit.model(m).parameter("bv").is_some_and(|v| v.number.abs() < 40.0));
+                let breaks = model
+                    .is_some_and(|m| circuit.model(m).parameter("bv").is_some_and(|v| v.number.abs() < 40.0));
                 if breaks || circuit.node(id, 0) == circuit.node(id, 1) {
                     return false;
                 }
                 if circuit.node(id, 1) == node { ins += 1 } else { outs += 1 }
             }
             // what only listens carries nothing
-            Behaviour::VoltageByVoltage { .. } | Behaviour::CurrentByVoltage { .. } | Behaviour::VoltageSwitch { .. }
+            Behaviour::VoltageByVoltage { .. }
+            | Behaviour::CurrentByVoltage { .. }
+            | Behaviour::VoltageSwitch { .. }
                 if circuit.node(id, 0) != node && circuit.node(id, 1) != node => {}
             _ => return false,
         }

@@ -70,13 +70,20 @@ fn carrier(evidence: &Evidence<'_>) -> Option<f64> {
         },
         _ => None,
     };
-    let sines: Vec<(f64, f64)> = evidence.circuit.elements.iter().filter_map(|e| sine(&e.behaviour)).collect();
+    let sines: Vec<(f64, f64)> =
+        evidence.circuit.elements.iter().filter_map(|e| sine(&e.behaviour)).collect();
     let &(_, carrier) = sines.iter().max_by(|a, b| a.0.total_cmp(&b.0))?;
     let is_side = |f: f64| f != carrier && (f - carrier).abs() < 0.5 * carrier;
     sines.iter().any(|&(_, f)| is_side(f)).then_some(carrier)
 }
 
-fn judge(evidence: &Evidence<'_>, id: ElementId, time: &OverTime, period: f64, carrier: f64) -> Option<Finding> {
+fn judge(
+    evidence: &Evidence<'_>,
+    id: ElementId,
+    time: &OverTime,
+    period: f64,
+    carrier: f64,
+) -> Option<Finding> {
     let (node, constant) = [1, 0].into_iter().find_map(|pin| {
         let node = evidence.circuit.node(id, pin);
         Some((node, time_constant(evidence, id, node)?))

@@ -41,9 +41,11 @@ fn check(evidence: &Evidence<'_>, _operating: &Operating, swing: &Swing) -> Vec<
     if switches.is_empty() {
         return Vec::new();
     }
-    let coupled: FxHashSet<ElementId> = crate::topology::coupled_coils(evidence.circuit).into_iter().collect();
+    let coupled: FxHashSet<ElementId> =
+        crate::topology::coupled_coils(evidence.circuit).into_iter().collect();
     let coils = evidence.circuit.elements().filter(|(id, e)| {
-        matches!(&e.behaviour, Behaviour::Inductor { henries, .. } if henries.number > 0.0) && !coupled.contains(id)
+        matches!(&e.behaviour, Behaviour::Inductor { henries, .. } if henries.number > 0.0)
+            && !coupled.contains(id)
     });
     coils.filter_map(|(id, _)| judge(evidence, swing, id, &switches)).collect()
 }
@@ -62,14 +64,22 @@ fn switches(evidence: &Evidence<'_>) -> FxHashSet<ElementId> {
             found.insert(id);
         }
     }
-    let follows = |b: &Behaviour| matches!(b, Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. });
-    found.extend(circuit.elements().filter(|(id, e)| follows(&e.behaviour) && !held.contains(id)).map(|(id, _)| id));
+    let follows =
+        |b: &Behaviour| matches!(b, Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. });
+    found.extend(
+        circuit.elements().filter(|(id, e)| follows(&e.behaviour) && !held.contains(id)).map(|(id, _)| id),
+    );
     found
 }
 
 /// Walks on both sides of the coil with all switches open: does a closed path lead through it, and does one with them
 /// closed?
-fn judge(evidence: &Evidence<'_>, swing: &Swing, coil: ElementId, switches: &FxHashSet<ElementId>) -> Option<Finding> {
+fn judge(
+    evidence: &Evidence<'_>,
+    swing: &Swing,
+    coil: ElementId,
+    switches: &FxHashSet<ElementId>,
+) -> Option<Finding> {
     let (a, b) = (evidence.circuit.node(coil, 0), evidence.circuit.node(coil, 1));
     let none = FxHashSet::default();
     let opened = switches.iter().copied().collect::<FxHashSet<_>>();
@@ -80,11 +90,13 @@ fn judge(evidence: &Evidence<'_>, swing: &Swing, coil: ElementId, switches: &FxH
     if !(reaches(a, b, &none) || reaches(b, a, &none)) {
         return None; // it never carries anything; other rules tell that
     }
-    let mut near: Vec<ElementId> = switches.iter().copied().filter(|&s| touches_way(evidence, s, a, b, coil)).collect();
+    let mut near: Vec<ElementId> =
+        switches.iter().copied().filter(|&s| touches_way(evidence, s, a, b, coil)).collect();
     near.sort();
     let switch = near.first().copied().or_else(|| switches.iter().min().copied())?;
     let name = evidence.name(coil);
-    let peak = [a, b].into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
+    let peak =
+        [a, b].into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
     let reached = match peak.fold(0.0, f64::max) {
         volts if volts > 0.0 => format!("; its end reaches {} in this model", quantity(volts, "V")),
         _ => String::new(),
@@ -92,7 +104,8 @@ fn judge(evidence: &Evidence<'_>, swing: &Swing, coil: ElementId, switches: &FxH
     let message =
         format!("when {} opens, the current of {name} has no path left{reached}", evidence.name(switch));
     let finding = evidence.about(&RULE, coil, message).label("its current cannot stop at once");
-    let finding = finding.also(evidence.statement(switch), "opens its only path").about(evidence.name(switch));
+    let finding =
+        finding.also(evidence.statement(switch), "opens its only path").about(evidence.name(switch));
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }
 
@@ -103,7 +116,13 @@ fn touches_way(evidence: &Evidence<'_>, switch: ElementId, a: NodeId, b: NodeId,
 }
 
 /// Whether a current may flow from one node to another past the coil; diodes pass it one way.
-fn reaches(evidence: &Evidence<'_>, from: NodeId, to: NodeId, coil: ElementId, open: &FxHashSet<ElementId>) -> bool {
+fn reaches(
+    evidence: &Evidence<'_>,
+    from: NodeId,
+    to: NodeId,
+    coil: ElementId,
+    open: &FxHashSet<ElementId>,
+) -> bool {
     let mut seen: FxHashSet<NodeId> = FxHashSet::default();
     let mut rest = vec![from];
     while let Some(node) = rest.pop() {

@@ -3,6 +3,7 @@
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId, NoteKind};
 use crate::finding::{Finding, Severity};
+use crate::operating::thermal_voltage;
 
 pub const RULE: Rule = Rule {
     name: "parallel-diodes",
@@ -58,10 +59,11 @@ fn judge(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Finding {
     let names: Vec<String> = diodes.iter().map(|&id| evidence.name(id)).collect();
     let (anode, cathode) = (evidence.circuit.node(diodes[0], 0), evidence.circuit.node(diodes[0], 1));
     let message = format!(
-        "{} lie in parallel from `{}` to `{}` with nothing that makes them share the current evenly",
+        "{} lie in parallel from `{}` to `{}` with nothing that makes them share the current evenly: {}",
         list(&names),
         evidence.node(anode),
-        evidence.node(cathode)
+        evidence.node(cathode),
+        shares(evidence, diodes)
     );
     let mut finding = evidence.about(&RULE, diodes[0], message).label("shares its current with");
     for (&id, name) in diodes.iter().zip(&names).skip(1).take(8) {
@@ -69,6 +71,21 @@ fn judge(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Finding {
     }
     finding.subjects.extend(names.into_iter().skip(1));
     finding.help(format!("{} {}", RULE.why, RULE.remedy))
+}
+
+/// What two of them would carry with forward voltages a little apart.
+fn shares(evidence: &Evidence<'_>, diodes: &[ElementId]) -> String {
+    let circuit = evidence.circuit;
+    let model = diodes.first().and_then(|&id| match circuit.element(id).behaviour {
+        Behaviour::Diode { model, .. } => model,
+        _ => None,
+    });
+    let emission = model.and_then(|m| circuit.model(m).parameter("n")).map_or(1.0, |v| v.number.max(0.1));
+    let slope = emission * thermal_voltage(27.0);
+    let share = |apart: f64| 100.0 / (1.0 + (-apart / slope).exp());
+    let parts: Vec<String> =
+        [10e-3, 30e-3, 60e-3].map(|v| format!("{:.0} : {:.0}", share(v), 100.0 - share(v))).to_vec();
+    format!("10, 30 or 60 mV apart, two of them part a current {}", parts.join(", "))
 }
 
 /// A note says that one of them belongs to a matched set.

@@ -84,7 +84,13 @@ fn rating(evidence: &Evidence<'_>, directory: &Directory, id: ElementId) -> Opti
     best.map(|(_, _, volts, span)| (volts, span))
 }
 
-fn over_note(evidence: &Evidence<'_>, id: ElementId, time: &OverTime, volts: f64, span: Span) -> Option<Finding> {
+fn over_note(
+    evidence: &Evidence<'_>,
+    id: ElementId,
+    time: &OverTime,
+    volts: f64,
+    span: Span,
+) -> Option<Finding> {
     if !(time.peak_reverse_voltage > volts * (1.0 + 1e-9)) {
         return None;
     }
@@ -99,7 +105,9 @@ fn over_note(evidence: &Evidence<'_>, id: ElementId, time: &OverTime, volts: f64
 
 /// A rectifier that its model lets break down.
 fn over_model(evidence: &Evidence<'_>, id: ElementId, time: &OverTime, window: f64) -> Option<Finding> {
-    let Behaviour::Diode { model: Some(model), .. } = evidence.circuit.element(id).behaviour else { return None };
+    let Behaviour::Diode { model: Some(model), .. } = evidence.circuit.element(id).behaviour else {
+        return None;
+    };
     let model = evidence.circuit.model(model);
     let breakdown = model.parameter("bv")?.number.abs();
     // forward charge is what a rectifier is for; a clamp that is meant to break down carries little of it
@@ -119,5 +127,8 @@ fn over_model(evidence: &Evidence<'_>, id: ElementId, time: &OverTime, window: f
 }
 
 fn finding(evidence: &Evidence<'_>, id: ElementId, message: String) -> Finding {
-    evidence.about(&RULE, id, message).label("beyond its reverse voltage").help(format!("{} {}", RULE.why, RULE.remedy))
+    evidence
+        .about(&RULE, id, message)
+        .label("beyond its reverse voltage")
+        .help(format!("{} {}", RULE.why, RULE.remedy))
 }

@@ -36,6 +36,7 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     let told: Vec<&str> = groups.iter().flat_map(|g| g.causes.iter().copied()).collect();
     rows::tables(page, circuit, &views, &told);
     left_to_time(page, circuit, operating);
+    unrefined(page, circuit, operating);
     for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
         group.write(page, circuit, operating.cases.len() > 1);
     }
@@ -109,6 +110,16 @@ fn left_to_time(page: &mut Page, circuit: &Circuit, operating: &Operating) {
          or a coupling.",
         some_of(&names)
     );
+    paragraph(page, "", &text);
+}
+
+/// Diodes that have no second opinion although it was sought.
+fn unrefined(page: &mut Page, circuit: &Circuit, operating: &Operating) {
+    let solutions = operating.cases.iter().flat_map(|case| &case.solutions);
+    let Some(part) = solutions.flat_map(|s| &s.unrefined).next() else { return };
+    let names: Vec<String> = part.diodes.iter().map(|&id| circuit.element_name(id)).collect();
+    let names: Vec<&str> = names.iter().map(String::as_str).collect();
+    let text = format!("No second opinion by the exponential law on {}: {}.", some_of(&names), part.reason);
     paragraph(page, "", &text);
 }
 

@@ -5,7 +5,7 @@ use super::super::table::{self, Cell};
 use super::{SetView, WIDTH, some_of};
 use crate::circuit::Circuit;
 use crate::finding::{Figure, figure, interval};
-use crate::operating::{DiodeResult, Drop, Interval, Quantity, State};
+use crate::operating::{DiodeResult, Drop, Interval, Quantity, State, Trust};
 
 /// A number below this share of the largest of its kind is rounding, not an answer.
 const ROUNDING: f64 = 1e-12;
@@ -65,11 +65,17 @@ fn rows_of<'a>(views: &'a [SetView<'a>], n: usize) -> Vec<Row<'a>> {
 }
 
 fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditions: bool, told: &[&str]) {
-    let mut head = vec!["diode", "state", "current", "voltage", "drop", "drop from", "margin"];
+    let refined = rows.iter().any(|row| row.results.iter().any(|(_, d)| d.refined.is_some()));
+    let trust = rows.iter().any(|row| row.results.iter().any(|(_, d)| d.trust.is_some()));
+    let mut head = vec!["diode", "state", "current"];
+    head.extend(refined.then_some("refined"));
+    head.extend(["voltage", "drop", "drop from", "margin"]);
+    head.extend(trust.then_some("trust"));
     if with_conditions {
         head.push("in");
     }
-    let mut cells: Vec<Vec<Cell>> = rows.iter().map(|row| row.cells(circuit, with_conditions)).collect();
+    let mut cells: Vec<Vec<Cell>> =
+        rows.iter().map(|row| row.cells(circuit, with_conditions, refined, trust)).collect();
     for n in (1..cells.len()).rev() {
         // a diode of several rows is named once
         if cells[n][0].text == cells[n - 1][0].text {
@@ -78,6 +84,34 @@ fn write_rows(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], with_conditi
     }
     table::write(page, "  ", &head, &cells);
     unevaluated(page, circuit, rows, told);
+    doubts(page, circuit, rows);
+}
+
+/// Diodes whose doubts are told one by one.
+const DOUBTS_SHOWN: usize = 5;
+
+/// Why trust is less than good, a line for each diode that says something new.
+fn doubts(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>]) {
+    let mut lines: Vec<(Trust, String)> = Vec::new();
+    for row in rows {
+        let worst = row.results.iter().filter(|(_, d)| d.trust.is_some()).min_by_key(|(_, d)| d.trust);
+        let Some((view, result)) = worst else { continue };
+        if let (Some(trust), Some(reason)) = (result.trust, result.trust_reasons.first()) {
+            let name = circuit.element_name(result.element);
+            let at = if row.results.len() > 1 { format!(" ({})", view.name) } else { String::new() };
+            lines.push((trust, format!("{name} {}{at}: {reason}", trust.word())));
+        }
+    }
+    lines.sort_by_key(|(trust, _)| *trust);
+    let more = lines.len().saturating_sub(DOUBTS_SHOWN);
+    for (_, line) in lines.iter().take(DOUBTS_SHOWN) {
+        for (n, part) in wrap(&clean(line), WIDTH - 4).iter().enumerate() {
+            page.plain(if n == 0 { "  " } else { "    " }).ink(Ink::Faint, part).end();
+        }
+    }
+    if more > 0 {
+        page.plain("  ").ink(Ink::Faint, &format!("and {more} more that are less than good")).end();
+    }
 }
 
 /// The diodes that were not evaluated, by reason; `told` are reasons that stand above already.
@@ -101,7 +135,7 @@ fn unevaluated(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], told: &[&st
 }
 
 impl Row<'_> {
-    fn cells(&self, circuit: &Circuit, with_conditions: bool) -> Vec<Cell> {
+    fn cells(&self, circuit: &Circuit, with_conditions: bool, refined: bool, trust: bool) -> Vec<Cell> {
         let Some((_, first)) = self.results.first() else { return Vec::new() };
         let known = |scaled: fn(&SetView<'_>) -> f64, of: fn(&DiodeResult) -> Quantity, unit: &str| {
             span_cell(self.results.iter().map(|(v, d)| settle(of(d), scaled(v))), unit)
@@ -111,11 +145,21 @@ impl Row<'_> {
             Cell::word(clean(&circuit.element_name(first.element))),
             Cell::inked(first.state.word(), state_ink(first.state)),
             known(|v| v.scale.1, |d| d.current, "A"),
+        ];
+        if refined {
+            let of = |d: &DiodeResult| d.refined.map_or(Quantity::Unknown, |r| Quantity::Known(r.current));
+            cells.push(span_cell(self.results.iter().map(|(_, d)| of(d)), "A"));
+        }
+        cells.extend([
             known(|v| v.scale.0, |d| d.voltage, "V"),
             drop_cell(self.results.iter().map(|(_, d)| &d.drop)),
             Cell::inked(clean(&first.drop.origin.to_string()), Some(Ink::Faint)),
             margin.map_or_else(Cell::default, |m| figure(m, "V").into()),
-        ];
+        ]);
+        if trust {
+            let worst = self.results.iter().filter_map(|(_, d)| d.trust).min();
+            cells.push(worst.map_or_else(Cell::default, |t| Cell::inked(t.word(), trust_ink(t))));
+        }
         if with_conditions {
             let names: Vec<&str> = self.results.iter().map(|(v, _)| v.name.as_str()).collect();
             cells.push(Cell::word(clean(&some_of(&names))));
@@ -131,6 +175,14 @@ pub(in crate::report) fn state_ink(state: State) -> Option<Ink> {
         State::Breakdown => Some(Ink::Reverse),
         State::Open => Some(Ink::Warning),
         State::NotEvaluated => Some(Ink::Faint),
+    }
+}
+
+fn trust_ink(trust: Trust) -> Option<Ink> {
+    match trust {
+        Trust::Good => None,
+        Trust::Fair => Some(Ink::Faint),
+        Trust::Poor => Some(Ink::Warning),
     }
 }
 

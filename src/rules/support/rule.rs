@@ -20,8 +20,8 @@ pub enum Check {
 }
 
 /// The groups of rules, in the order in which a file meets them.
-pub const GROUPS: [&str; 8] =
-    ["reading", "wiring", "orientation", "states", "time", "notes", "caution", "settings"];
+pub const GROUPS: [&str; 9] =
+    ["reading", "wiring", "orientation", "states", "trust", "time", "notes", "caution", "settings"];
 
 /// One rule.
 pub struct Rule {

@@ -1,0 +1,97 @@
+//! Currents over time held against the current that the drop belongs to.
+
+use super::support::{by_diode, folded};
+use super::{Check, Evidence, Rule};
+use crate::circuit::{Behaviour, ElementId, ModelId};
+use crate::finding::{Finding, Severity, quantity};
+use crate::operating::{Knee, Operating};
+use crate::swing::Swing;
+
+pub const RULE: Rule = Rule {
+    name: "charge-beyond-drop",
+    group: "trust",
+    severity: Severity::Note,
+    summary: "most of a diode's charge flows at currents far from the one that its drop belongs to",
+    why: "Over time the drop is one voltage too, while a junction needs N times 60 mV more for each decade of current: what the pass over time tells of this diode is then off by that.",
+    remedy: "Give the drop that belongs to the current at which most of the charge flows: a `drop` note, or `--drop`.",
+    source: Some("Slope N kT/q ln 10 of the junction law: Shockley, Bell Syst. Tech. J. 28 (1949)"),
+    failing: "tide gauge buoy: bench supply\n\
+              VS s 0 SIN(0 17 50)\n\
+              D1 s out DREC\n\
+              C1 out 0 1000u\n\
+              RL out 0 150\n\
+              *@ drop D1 0.3\n\
+              .tran 1m 0.2\n\
+              .model DREC D(IS=2n N=1.8 RS=0.05)\n",
+    passing: "tide gauge buoy: bench supply\n\
+              VS s 0 SIN(0 17 50)\n\
+              D1 s out DREC\n\
+              RS out load 10\n\
+              RL load 0 150\n\
+              .tran 1m 0.2\n\
+              .model DREC D(IS=2n N=1.8)\n",
+    check: Check::Time(check),
+};
+
+fn check(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing) -> Vec<Finding> {
+    let drops = by_diode(operating);
+    let knee = |id: ElementId| {
+        let at = drops.binary_search_by_key(&id, |(id, _)| *id).ok()?;
+        let (_, diode) = drops[at].1.first()?;
+        Some((diode.knee?, diode.drop.volts))
+    };
+    // one finding for each model: the legs of a bridge share their cause
+    let mut models: Vec<(Option<ModelId>, Vec<ElementId>, Vec<Finding>)> = Vec::new();
+    for diode in &swing.diodes {
+        let span = diode.over_time.as_ref().and_then(|o| o.charge_span);
+        let (Some(span), Some((knee, drop))) = (span, knee(diode.element)) else { continue };
+        let Some(finding) = judge(evidence, diode.element, span, &knee, drop) else { continue };
+        let model = match evidence.circuit.element(diode.element).behaviour {
+            Behaviour::Diode { model, .. } => model,
+            _ => None,
+        };
+        match models.iter_mut().find(|(known, ..)| *known == model) {
+            Some((_, ids, list)) => {
+                ids.push(diode.element);
+                list.push(finding);
+            }
+            None => models.push((model, vec![diode.element], vec![finding])),
+        }
+    }
+    models.into_iter().filter_map(|(_, ids, list)| folded(evidence, list, &ids)).collect()
+}
+
+fn judge(
+    evidence: &Evidence<'_>,
+    id: ElementId,
+    (low, high): (f64, f64),
+    knee: &Knee,
+    drop: f64,
+) -> Option<Finding> {
+    let decades = |current: f64| (current / knee.reference).log10();
+    // a drop that nobody gave claims nothing about the current at which it holds
+    let usable = knee.is_known && low > 0.0 && high > 0.0 && knee.reference > 0.0;
+    let away = decades(low).abs().max(decades(high).abs());
+    if !usable || away <= NOTE {
+        return None;
+    }
+    let serving = |current: f64| quantity(drop + knee.slope * (current / knee.reference).ln(), "V");
+    let message = format!(
+        "`{}` passes from 5 % to 95 % of its charge at {} to {}, but its drop of {} belongs to {}: {away:.1} decades away",
+        evidence.name(id),
+        quantity(low, "A"),
+        quantity(high, "A"),
+        quantity(drop, "V"),
+        quantity(knee.reference, "A"),
+    );
+    let mut finding = evidence.about(&RULE, id, message).label("its charge flows beside its drop");
+    if away > WARNING {
+        finding.severity = Severity::Warning;
+    }
+    let told = format!("A drop of {} would serve the low end, {} the high end.", serving(low), serving(high));
+    Some(finding.help(format!("{} {told} {}", RULE.why, RULE.remedy)))
+}
+
+/// Decades from which on it is worth a note, and a warning.
+const NOTE: f64 = 1.0;
+const WARNING: f64 = 2.0;
