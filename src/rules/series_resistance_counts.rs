@@ -2,7 +2,7 @@
 
 use super::support::{by_diode, folded, in_case};
 use super::{Check, Evidence, Rule};
-use crate::circuit::{Behaviour, ElementId, ModelId};
+use crate::circuit::{Behaviour, ElementId, ModelId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating};
 
@@ -31,7 +31,11 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     // one finding for each model: what its diodes share
     let mut models: Vec<(Option<ModelId>, Vec<ElementId>, Vec<Finding>)> = Vec::new();
     for (id, results) in by_diode(operating) {
-        let added = |d: &DiodeResult| d.current.known().map_or(0.0, |i| i.abs() * d.series);
+        // in breakdown it is the slope that a Zener's data sheet gives, and meant
+        let added = |d: &DiodeResult| match (d.state, d.current.known()) {
+            (State::Conducting, Some(i)) => i.abs() * d.series,
+            _ => 0.0,
+        };
         let worst = results.iter().max_by(|a, b| added(a.1).total_cmp(&added(b.1)));
         let Some(&(number, diode)) = worst.filter(|(_, d)| added(d) > LEAST) else { continue };
         let message = format!(
