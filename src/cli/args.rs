@@ -141,6 +141,9 @@ pub struct States {
     /// Tell why this diode is in its state
     #[arg(long, value_name = "DIODE")]
     pub why: Option<String>,
+    /// Ask the exponential law in parts of more than 5,000 diodes too
+    #[arg(long)]
+    pub second_opinion: bool,
     /// Text for people, or JSON for programs
     #[arg(long, value_enum, default_value = "text")]
     pub format: Format,

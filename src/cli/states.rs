@@ -6,7 +6,7 @@ use super::input::Input;
 use super::output::Console;
 use super::settings::Shelf;
 use kneewise::analysis::{Analysis, analyse};
-use kneewise::config::Options;
+use kneewise::config::{Options, SecondOpinion};
 use kneewise::finding::{Finding, Severity};
 use kneewise::report::{self, Summary};
 use std::path::Path;
@@ -20,7 +20,9 @@ pub fn run(console: &mut Console, command: &States) -> End {
         }
     };
     let found = shelf.of(&command.file);
-    let options = Options { why: command.why.clone(), ..command.common.circuit.options(found.as_deref()) };
+    let opinion = if command.second_opinion { SecondOpinion::Everywhere } else { SecondOpinion::Usual };
+    let common = command.common.circuit.options(found.as_deref());
+    let options = Options { why: command.why.clone(), opinion, ..common };
     let analysis = match analyse(&mut Input::default(), &command.file, &options) {
         Ok(analysis) => analysis,
         Err(problem) => {

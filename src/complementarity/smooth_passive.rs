@@ -246,8 +246,7 @@ impl<'a> Descent<'a> {
             self.move_by(&step, 1.0);
             let mut farthest = 0.0f64;
             let mut next_points = Vec::with_capacity(self.live.len());
-            for k in 0..self.live.len() {
-                let (_, d, curve) = &self.live[k];
+            for (k, (_, d, curve)) in self.live.iter().enumerate() {
                 let next = limit(curve, &points[k], self.across(d));
                 let point = curve.at(next);
                 let missed = (tangent(curve, k, self.across(d)) - point.i).abs()
