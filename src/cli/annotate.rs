@@ -6,6 +6,7 @@ use super::input::Input;
 use super::output::Console;
 use super::settings::Shelf;
 use kneewise::analysis::analyse;
+use kneewise::config::Options;
 use kneewise::report;
 use kneewise::review::{self, Annotated, DiskDesk};
 use kneewise::text::Loader;
@@ -51,7 +52,8 @@ fn one(console: &mut Console, command: &Annotate, shelf: &mut Shelf, file: &Path
     // what is marked is what was read, even if the file changes meanwhile
     input.hold(file, original.clone());
     let found = shelf.of(file);
-    let options = command.circuit.options(found.as_deref());
+    // a part with a memory shows its states over time only
+    let options = Options { swing: true, ..command.circuit.options(found.as_deref()) };
     let analysis = analyse(&mut input, file, &options).map_err(|e| with_name(&e.0))?;
     let annotated = review::annotate(&analysis, &original);
     for (included, count) in &annotated.elsewhere {

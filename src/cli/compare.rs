@@ -53,7 +53,7 @@ fn compare(console: &mut Console, command: &Compare) -> Result<End, String> {
     for (n, twin) in twins.iter().enumerate() {
         console.progress(n, twins.len());
         found = shelf.of(&twin.name).or_else(|| twin.new.as_ref().and_then(|new| shelf.of(new)));
-        let mut options = command.common.circuit.options(found.as_deref());
+        let mut options = Options { swing: true, ..command.common.circuit.options(found.as_deref()) };
         if let Some(moved) = command.moved {
             options.thresholds.moved = moved;
         }

@@ -170,7 +170,7 @@ mod tests {
     use std::path::Path;
 
     fn annotated(bytes: &[u8]) -> Annotated {
-        let options = Options { states: true, ..Options::default() };
+        let options = Options { states: true, swing: true, ..Options::default() };
         let analysis = analyse(&mut Memory::with("a.net", bytes), Path::new("a.net"), &options).unwrap();
         annotate(&analysis, bytes)
     }
@@ -233,6 +233,16 @@ mod tests {
         assert!(
             text_of(b"t\nV1 in 0 -5\nR1 in a 1k\nD1 a 0 DZ\n.model DZ D(BV=3)\n")
                 .contains("D1 a 0 DZ ;@ breakdown 2.00mA -3.00V\n")
+        );
+    }
+
+    #[test]
+    fn a_diode_that_an_instant_cannot_judge_shows_its_states_over_time() {
+        let supply = "t\nV1 in 0 SIN(0 20 50)\nD1 in out DX\nR1 out 0 1k\nC1 out 0 10u\n.model DX D\n";
+        assert!(text_of(supply.as_bytes()).contains("D1 in out DX ;@ blocking | conducting over time\n"));
+        let plain = supply.replace("C1 out 0 10u\n", "");
+        assert!(
+            text_of(plain.as_bytes()).contains("D1 in out DX ;@ blocking | conducting 19.3mA at V1=max\n")
         );
     }
 

@@ -5,9 +5,12 @@ use super::figures::{amperes, span, volts};
 use crate::analysis::Analysis;
 use crate::circuit::{Behaviour, ElementId, State};
 use crate::operating::{Case, DiodeResult, Interval, Operating, Quantity, Solution};
+use crate::swing::Swing;
 use crate::text::Span;
 use std::collections::BTreeMap;
 
+/// What stands in the place of a condition for the whole period.
+const OVER_TIME: &str = "over time";
 /// Conditions listed by name.
 const MOST_CONDITIONS: usize = 3;
 /// A number below this share of the largest of its kind is rounding, not an answer.
@@ -25,7 +28,16 @@ pub fn marks(analysis: &Analysis) -> BTreeMap<Span, String> {
     let scales: Vec<Vec<(f64, f64)>> =
         operating.cases.iter().map(|case| case.solutions.iter().map(scale).collect()).collect();
     let words = |ids: Vec<ElementId>| {
-        let lives: Vec<Vec<Stay>> = ids.iter().map(|&id| stays(operating, &scales, id)).collect();
+        let life = |&id: &ElementId| {
+            let mut stays = stays(operating, &scales, id);
+            if let Some(swing) = &analysis.swing
+                && operating.left_to_time.binary_search(&id).is_ok()
+            {
+                over_time(swing, id, &mut stays);
+            }
+            stays
+        };
+        let lives: Vec<Vec<Stay>> = ids.iter().map(life).collect();
         match lives.as_slice() {
             [only] => one(only),
             many => summary(many),
@@ -60,6 +72,15 @@ fn stays(operating: &Operating, scales: &[Vec<(f64, f64)>], id: ElementId) -> Ve
         }
     }
     stays
+}
+
+/// What one instant cannot judge: the states that are reached in the period, without numbers, since those of a time pass
+/// are not certain to the last digit.
+fn over_time(swing: &Swing, id: ElementId, stays: &mut Vec<Stay>) {
+    let Some(time) = swing.diode(id).and_then(|d| d.over_time.as_ref()) else { return };
+    for state in time.states(swing.window) {
+        add(stays, state, OVER_TIME.to_owned(), None, None);
+    }
 }
 
 /// `VIN=9`; of several consistent sets `VIN=9#2`.
@@ -121,11 +142,20 @@ fn one(stays: &[Stay]) -> String {
         [only] => only.words(true),
         [first, others @ ..] => {
             let mut parts = vec![first.words(false)];
-            parts.extend(
-                others.iter().map(|s| format!("{} at {}", s.words(false), conditions(&s.conditions))),
-            );
+            parts.extend(others.iter().map(|s| format!("{} {}", s.words(false), place(&s.conditions))));
             parts.join(" | ")
         }
+    }
+}
+
+/// `at VIN=9`, `over time`, `at VIN=9 and over time`
+fn place(conditions: &[String]) -> String {
+    let (period, named): (Vec<String>, Vec<String>) =
+        conditions.iter().cloned().partition(|c| c == OVER_TIME);
+    match (named.is_empty(), period.is_empty()) {
+        (false, true) => format!("at {}", self::conditions(&named)),
+        (false, false) => format!("at {} and {OVER_TIME}", self::conditions(&named)),
+        _ => OVER_TIME.to_owned(),
     }
 }
 

@@ -103,11 +103,7 @@ fn diode(swing: &Swing, claim: &Claim<'_>, time: &OverTime) -> Seen {
         percent(time.conducting_share),
         if broken > 0.0 { format!(" and breaks down {}", percent(broken)) } else { String::new() }
     );
-    let is_reached = match claim.wanted.state {
-        Some(State::Conducting) => time.conducting_share > 0.0,
-        Some(State::Breakdown) => broken > 0.0,
-        _ => time.conducting_share + broken < 1.0 - ROUNDING,
-    };
+    let is_reached = claim.wanted.state.is_none_or(|state| time.states(swing.window).contains(&state));
     if !is_reached {
         let state = claim.wanted.state.map_or("", State::word);
         return Seen::Broken(format!("never is: {state} does not occur"), shares);

@@ -1,7 +1,7 @@
 //! What the time pass and the conditions tell about each diode and node, as plain data in SI units. Currents and
 //! voltages of a diode count from anode to cathode.
 
-use crate::circuit::{ElementId, NodeId};
+use crate::circuit::{ElementId, NodeId, State};
 
 /// Everything found over time and over the conditions.
 #[derive(Debug, Clone, PartialEq, Default)]
@@ -82,6 +82,23 @@ pub struct OverTime {
     pub energy: f64,
     /// Largest forward charge that passes in no time, coulombs: where nothing limits the current at a jump.
     pub impulse: f64,
+}
+
+/// Less than this share of the window is rounding.
+const ROUNDING: f64 = 1e-9;
+
+impl OverTime {
+    /// The states that are reached in a window of so many seconds, in the order of [`State`].
+    pub fn states(&self, window: f64) -> Vec<State> {
+        let broken: f64 = self.breakdown_intervals.iter().map(|(from, to)| to - from).sum();
+        let broken = if window > 0.0 { broken / window } else { 0.0 };
+        let reached = [
+            (State::Conducting, self.conducting_share > 0.0),
+            (State::Blocking, self.conducting_share + broken < 1.0 - ROUNDING),
+            (State::Breakdown, broken > 0.0),
+        ];
+        reached.into_iter().filter(|(_, is)| *is).map(|(state, _)| state).collect()
+    }
 }
 
 /// Forward current of a diode over the conditions in which it conducts.

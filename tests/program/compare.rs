@@ -150,3 +150,21 @@ fn a_whole_instance_is_told_once_and_a_change_inside_a_definition_too() {
         ]
     );
 }
+
+#[test]
+fn a_part_with_a_memory_is_compared_over_time() {
+    let old = "supply\nV1 in 0 SIN(0 20 50)\nD1 in out DX\nR1 out 0 1k\nC1 out 0 100u\n.model DX D\n*@ drop DX 0.7\n";
+    let names = |name: &str, new: &str| {
+        let document = json(&folder(name, old, new));
+        let of = |list: &str, key: &str| -> Vec<String> {
+            let list = document[list].as_array().unwrap().iter();
+            list.map(|m| format!("{} {}", m[key].as_str().unwrap(), m["case"].as_str().unwrap())).collect()
+        };
+        (of("states", "diode"), of("currents", "name"), of("voltages", "name"))
+    };
+    let turned = names("time-turned", &old.replace("D1 in out", "D1 out in"));
+    assert_eq!(turned.0, [] as [&str; 0], "it conducts as much as before, the other way");
+    assert_eq!(turned.2, ["out over time"]);
+    let heavier = names("time-heavier", &old.replace("1k", "500"));
+    assert_eq!((heavier.0.len(), heavier.1), (0, vec!["D1 over time".to_owned()]));
+}

@@ -43,7 +43,8 @@ fn both(out: &mut String, comparison: &Comparison, share: f64) {
         for flip in flips.iter().take(MOST) {
             let cases = escaped(&conditions(&flip.cases));
             let why = escaped(flip.why);
-            let _ = writeln!(out, "| {} | {} | {} | {cases} | {why} |", code(flip.diode), flip.old, flip.new);
+            let _ =
+                writeln!(out, "| {} | {} | {} | {cases} | {why} |", code(&flip.names()), flip.old, flip.new);
         }
         more(out, flips.len());
     }

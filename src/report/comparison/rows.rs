@@ -1,16 +1,19 @@
 //! What differs, put together over the conditions: one row for each flip and for each quantity that moves.
 
 use crate::circuit::State;
-use crate::finding::{Finding, compact, quantity};
+use crate::finding::{Finding, compact, list, quantity};
 use crate::operating::Verdict;
 use crate::review::{Comparison, Move, Record, StateChange, WiringChange};
 
 /// Conditions named in one row.
 const NAMES: usize = 3;
 
-/// A flip and the conditions in which it shows.
+/// Diodes named in one row.
+const DIODES: usize = 4;
+
+/// A flip, the diodes that do it alike, and the conditions in which it shows.
 pub(super) struct Flip<'a> {
-    pub diode: &'a str,
+    diodes: Vec<&'a str>,
     pub old: String,
     pub new: String,
     pub cases: Vec<&'a str>,
@@ -28,7 +31,7 @@ pub(super) fn flips(comparison: &Comparison) -> Vec<Flip<'_>> {
             None => flips.push((
                 change,
                 Flip {
-                    diode: &change.diode,
+                    diodes: vec![&change.diode],
                     old: state(change.old, change.old_current),
                     new: state(change.new, change.new_current),
                     cases: vec![&change.case],
@@ -37,7 +40,31 @@ pub(super) fn flips(comparison: &Comparison) -> Vec<Flip<'_>> {
             )),
         }
     }
-    flips.into_iter().map(|(_, flip)| flip).collect()
+    alike(flips.into_iter().map(|(_, flip)| flip))
+}
+
+/// Diodes that flip alike for the same reason stand together: those of many instances mostly do.
+fn alike<'a>(flips: impl Iterator<Item = Flip<'a>>) -> Vec<Flip<'a>> {
+    let mut rows: Vec<Flip<'a>> = Vec::new();
+    let mut known = std::collections::BTreeMap::new();
+    for flip in flips {
+        let name = flip.diodes.first().copied().unwrap_or("");
+        let why = flip.why.replace(&format!(" {name} "), " it ");
+        let at =
+            *known.entry((flip.old.clone(), flip.new.clone(), flip.cases.clone(), why)).or_insert(rows.len());
+        match rows.get_mut(at) {
+            Some(row) => row.diodes.extend(flip.diodes),
+            None => rows.push(flip),
+        }
+    }
+    rows
+}
+
+impl Flip<'_> {
+    /// `D1`, `X1:D1, X2:D1 and 6 more`
+    pub fn names(&self) -> String {
+        list(&self.diodes, DIODES)
+    }
 }
 
 /// `conducting 4.3 mA`, `blocking`

@@ -59,7 +59,7 @@ fn states(page: &mut Page, comparison: &Comparison) {
     }
     page.ink(Ink::Warning, "  states that flip").end();
     for flip in flips.iter().take(MOST) {
-        page.plain("    ").ink(Ink::Strong, &clean(flip.diode));
+        page.plain("    ").ink(Ink::Strong, &clean(&flip.names()));
         page.plain(&clean(&format!(" {} → {}  ", flip.old, flip.new)));
         page.ink(Ink::Faint, &clean(&conditions(&flip.cases))).end();
         for line in wrap(flip.why, WIDTH - 6) {

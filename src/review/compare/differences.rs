@@ -3,7 +3,7 @@
 use super::cases::{Twin, Twins, current, seen, twins};
 use super::matching::Pairs;
 use super::outcome::{Comparison, StateChange, TrustChange, VerdictChange};
-use super::{findings, values, wiring};
+use super::{findings, period, values, wiring};
 use crate::analysis::Analysis;
 use crate::circuit::{Behaviour, ElementId};
 use crate::operating::{self, Operating};
@@ -16,11 +16,12 @@ pub(super) fn between(old: Analysis, new: Analysis, pairs: &Pairs, share: f64) -
     if let (Some(before), Some(after)) = (&old.operating, &new.operating) {
         let all = twins((&old.circuit, before), (&new.circuit, after), pairs);
         comparison.verdicts = verdicts(&all);
-        let sides = Sides { new: &new, before, after, pairs };
+        let sides = Sides { old: &old, new: &new, before, after, pairs };
         for twin in &all.both {
             sides.add(*twin, share, &mut comparison);
         }
     }
+    period::add(&old, &new, pairs, share, &mut comparison);
     comparison.wiring = wiring::between(&old.circuit, &new.circuit, pairs);
     let (old_circuit, new_circuit) = (old.circuit.clone(), new.circuit.clone());
     comparison.findings = findings::between(
@@ -45,6 +46,7 @@ fn verdicts(twins: &Twins<'_>) -> Vec<VerdictChange> {
 }
 
 struct Sides<'a> {
+    old: &'a Analysis,
     new: &'a Analysis,
     before: &'a Operating,
     after: &'a Operating,
@@ -85,7 +87,8 @@ impl Sides<'_> {
             }
         }
         let new = (&self.new.circuit, self.after);
-        comparison.currents.extend(values::currents(new, self.before, twin, self.pairs, share, &flipped));
+        let old = (&self.old.circuit, self.before);
+        comparison.currents.extend(values::currents(new, old, twin, self.pairs, share, &flipped));
         comparison.voltages.extend(values::voltages(new, self.before, twin, self.pairs, share));
     }
 }

@@ -7,6 +7,7 @@ mod findings;
 mod matching;
 mod nodes;
 mod outcome;
+mod period;
 mod values;
 mod wiring;
 

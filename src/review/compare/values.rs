@@ -13,7 +13,7 @@ const ROUNDING: f64 = 1e-9;
 /// Currents that move, but for those of diodes that flip.
 pub(super) fn currents(
     new: (&Circuit, &Operating),
-    old: &Operating,
+    old: (&Circuit, &Operating),
     twin: Twin<'_>,
     pairs: &Pairs,
     share: f64,
@@ -24,9 +24,14 @@ pub(super) fn currents(
     };
     let (was, is) = (all_currents(before), all_currents(after));
     let floor = ROUNDING * largest(was.values()).max(largest(is.values()));
-    let is_left = |operating: &Operating, id: &ElementId| operating.left_to_time.binary_search(id).is_ok();
+    let is_left = |(circuit, operating): (&Circuit, &Operating), id: ElementId| {
+        let mut nodes = circuit.pins(id).iter().map(|p| p.node);
+        // a source may feed parts with a memory from a node that it holds itself
+        let feeds = b"VEH".contains(&circuit.element(id).letter) && !operating.nodes_left_to_time.is_empty();
+        feeds || nodes.any(|node| operating.nodes_left_to_time.binary_search(&node).is_ok())
+    };
     let judged = pairs.elements.iter().filter(|p| {
-        let left = is_left(old, &p.old) || is_left(new.1, &p.new);
+        let left = is_left(old, p.old) || is_left(new, p.new);
         !(flipped.contains(&p.new) || twin.new.instant && left)
     });
     let moves = judged.filter_map(|pair| {
@@ -72,7 +77,8 @@ pub(super) fn voltages(
     moves.into_iter().map(|m| m.1).collect()
 }
 
-fn moved(old: f64, new: f64, share: f64, floor: f64) -> bool {
+/// Whether a quantity moves by more than `share` of what it was; what is below `floor` is rounding.
+pub(super) fn moved(old: f64, new: f64, share: f64, floor: f64) -> bool {
     let (larger, step) = (old.abs().max(new.abs()), (old - new).abs());
     // of a current that was nothing any share is more
     larger > floor && step > share * old.abs() && step > floor
