@@ -11,7 +11,7 @@ use circuits::{Circuit, large};
 use divan::Bencher;
 use divan::counter::ItemsCount;
 use kneewise::circuit;
-use kneewise::config::Options;
+use kneewise::config::{Options, SecondOpinion};
 use kneewise::operating::evaluate;
 use kneewise::text::Memory;
 use std::path::Path;
@@ -21,7 +21,7 @@ fn main() {
 }
 
 fn states(bencher: Bencher, network: &Circuit) {
-    let options = Options { states: true, ..Options::default() };
+    let options = Options { states: true, opinion: SecondOpinion::Nowhere, ..Options::default() };
     let mut files = Memory::with("network.cir", network.text());
     let reading =
         circuit::read(&mut files, Path::new("network.cir"), &options).expect("the text is in memory");

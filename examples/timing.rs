@@ -11,7 +11,7 @@ mod circuits;
 use circuits::{Circuit, Kind, large};
 use kneewise::analysis::analyse;
 use kneewise::circuit::{self, State};
-use kneewise::config::Options;
+use kneewise::config::{Options, SecondOpinion};
 use kneewise::operating::{Case, evaluate};
 use kneewise::text::Memory;
 use std::collections::HashMap;
@@ -30,7 +30,7 @@ fn main() {
         other => panic!("no network of the kind {other}"),
     };
     let text = network.text();
-    let options = Options { states: true, ..Options::default() };
+    let options = Options { states: true, opinion: SecondOpinion::Nowhere, ..Options::default() };
     let whole = Instant::now();
     let mut files = Memory::with("network.cir", text.as_bytes());
     let analysis = analyse(&mut files, Path::new("network.cir"), &options).expect("the text is in memory");

@@ -247,7 +247,11 @@ pub(crate) fn trust(diode: &DiodeResult) -> Vec<String> {
         (_, Some(bar)) => format!(": the current is known to ±{}", quantity(bar.current, "A")),
     };
     let mut sentences = vec![format!("Trust in this is {}{bar}.", trust.word())];
-    sentences.extend(diode.trust_reasons.iter().map(|reason| sentence(reason)));
+    sentences.extend(diode.trust_reasons.iter().map(|reason| {
+        // a clause without a subject speaks of the diode
+        let is_bare = ["carries", "may", "sees"].iter().any(|verb| reason.starts_with(verb));
+        sentence(&if is_bare { format!("it {reason}") } else { reason.clone() })
+    }));
     if let Some(refined) = diode.refined {
         let (i, v) = (quantity(refined.current, "A"), quantity(refined.voltage, "V"));
         sentences.push(format!("By the exponential law it carries {i} at {v}."));

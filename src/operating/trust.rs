@@ -8,7 +8,7 @@ use super::knee::{SCATTER, UNKNOWN, curve, knee, leakage};
 use super::result::{DiodeResult, ErrorBar, Knee, Trust};
 use crate::circuit::{ElementId, State};
 use crate::complementarity::{Curve, Place, Quantity, Solution, Spread, View};
-use crate::finding::{compact, quantity};
+use crate::finding::quantity;
 
 /// An error bar up to this share of the current is good.
 pub(crate) const GOOD: f64 = 0.05;
@@ -170,7 +170,7 @@ impl Judge<'_> {
     fn edge(&self, result: &mut DiodeResult, all: f64, reference: Option<f64>) {
         let Some(margin) = result.margin.filter(|m| *m < all) else { return };
         result.trust = Some(Trust::Poor);
-        let at = reference.map_or(String::new(), |i| format!(" (at {})", compact(i, "A")));
+        let at = reference.map_or(String::new(), |i| format!(" (at {})", quantity(i, "A")));
         result.trust_reasons.insert(
             0,
             format!(
@@ -194,7 +194,7 @@ fn own_reason(result: &DiodeResult, knee: &Knee, current: f64, own: f64) -> Stri
     let decades = (current / knee.reference).log10();
     let off = decades.abs() * knee.slope * std::f64::consts::LN_10;
     if off > 0.5 * knee.uncertainty {
-        let at = compact(knee.reference, "A");
+        let at = quantity(knee.reference, "A");
         let off = quantity(off, "V");
         format!(
             "its {drop} drop belongs to {at}: {:.1} decades, {off}, {share} of this current",
@@ -221,7 +221,7 @@ fn leak_reason(result: &DiodeResult, bound: f64, shift: f64) -> String {
         )
     } else {
         let ohms = result.view.map_or(0.0, |v| v.resistance);
-        format!("may leak {bound}, which is {shift} across the {} that it sees", quantity(ohms, "ohm"))
+        format!("may leak {bound}, which is {shift} across the {} that it sees", quantity(ohms, "Ω"))
     }
 }
 

@@ -54,6 +54,6 @@ fn leaks(diode: &DiodeResult) -> Option<String> {
         "may leak {} in reverse, which makes {} across the {} that it sees",
         quantity(error.current, "A"),
         quantity(shift, "V"),
-        quantity(view.resistance, "ohm")
+        quantity(view.resistance, "Ω")
     ))
 }

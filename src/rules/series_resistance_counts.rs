@@ -41,7 +41,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         let message = format!(
             "the series resistance of `{}` ({}) adds {} to its drop of {}{}",
             evidence.name(id),
-            quantity(diode.series, "ohm"),
+            quantity(diode.series, "Ω"),
             quantity(added(diode), "V"),
             quantity(diode.drop.volts, "V"),
             in_case(operating, number)

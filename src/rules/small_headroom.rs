@@ -69,8 +69,10 @@ fn finding(
     } else {
         format!("the drops in its path, first of all that of `{}`, are known no better", evidence.name(cause))
     };
+    let all =
+        if error.most.is_some_and(|(_, part)| error.current > 1.25 * part) { "with all drops " } else { "" };
     let message = format!(
-        "`{name}` sees only {left} more than its drop, and {whose}: its {} may be off by {:.0} %{}",
+        "`{name}` sees only {left} more than its drop, and {whose}: {all}its {} may be off by {:.0} %{}",
         quantity(current, "A"),
         (100.0 * error.current / current).min(999.0),
         in_case(operating, number)

@@ -92,20 +92,26 @@ const DOUBTS_SHOWN: usize = 5;
 
 /// Why trust is less than good, a line for each diode that says something new.
 fn doubts(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>]) {
-    let mut lines: Vec<(Trust, String)> = Vec::new();
+    let mut lines: Vec<(Trust, Vec<String>, String, &str)> = Vec::new();
     for row in rows {
         let worst = row.results.iter().filter(|(_, d)| d.trust.is_some()).min_by_key(|(_, d)| d.trust);
         let Some((view, result)) = worst else { continue };
         if let (Some(trust), Some(reason)) = (result.trust, result.trust_reasons.first()) {
             let name = circuit.element_name(result.element);
             let at = if row.results.len() > 1 { format!(" ({})", view.name) } else { String::new() };
-            lines.push((trust, format!("{name} {}{at}: {reason}", trust.word())));
+            // what several have in common is told once
+            match lines.iter_mut().find(|l| l.0 == trust && l.2 == at && l.3 == reason) {
+                Some((_, names, ..)) => names.push(name),
+                None => lines.push((trust, vec![name], at, reason)),
+            }
         }
     }
-    lines.sort_by_key(|(trust, _)| *trust);
-    let more = lines.len().saturating_sub(DOUBTS_SHOWN);
-    for (_, line) in lines.iter().take(DOUBTS_SHOWN) {
-        for (n, part) in wrap(&clean(line), WIDTH - 4).iter().enumerate() {
+    lines.sort_by_key(|(trust, ..)| *trust);
+    let more: usize = lines.iter().skip(DOUBTS_SHOWN).map(|(_, names, ..)| names.len()).sum();
+    for (trust, names, at, reason) in lines.iter().take(DOUBTS_SHOWN) {
+        let names: Vec<&str> = names.iter().map(String::as_str).collect();
+        let line = format!("{} {}{at}: {reason}", some_of(&names), trust.word());
+        for (n, part) in wrap(&clean(&line), WIDTH - 4).iter().enumerate() {
             page.plain(if n == 0 { "  " } else { "    " }).ink(Ink::Faint, part).end();
         }
     }
