@@ -72,7 +72,7 @@ fn judge(
     // a drop that nobody gave claims nothing about the current at which it holds
     let usable = knee.is_known && low > 0.0 && high > 0.0 && knee.reference > 0.0;
     let away = decades(low).abs().max(decades(high).abs());
-    if !usable || away <= NOTE {
+    if !usable || away <= evidence.thresholds.swing_note {
         return None;
     }
     let serving = |current: f64| quantity(drop + knee.slope * (current / knee.reference).ln(), "V");
@@ -85,13 +85,9 @@ fn judge(
         quantity(knee.reference, "A"),
     );
     let mut finding = evidence.about(&RULE, id, message).label("its charge flows beside its drop");
-    if away > WARNING {
+    if away > evidence.thresholds.swing_warning {
         finding.severity = Severity::Warning;
     }
     let told = format!("A drop of {} would serve the low end, {} the high end.", serving(low), serving(high));
     Some(finding.help(format!("{} {told} {}", RULE.why, RULE.remedy)))
 }
-
-/// Decades from which on it is worth a note, and a warning.
-const NOTE: f64 = 1.0;
-const WARNING: f64 = 2.0;

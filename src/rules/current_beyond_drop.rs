@@ -77,7 +77,9 @@ fn judge(
     let away = far.decades().abs();
     // where even so much does not matter to the current, only the largest distance is worth a word
     let matters = far.diode.trust != Some(Trust::Good);
-    if away <= NOTE || (!matters && (away <= WARNING || !far.knee.is_known)) {
+    if away <= evidence.thresholds.swing_note
+        || (!matters && (away <= evidence.thresholds.swing_warning || !far.knee.is_known))
+    {
         return None;
     }
     let name = evidence.name(id);
@@ -102,12 +104,8 @@ fn judge(
         false => format!("A drop of {} would serve this current.", quantity(far.serving(), "V")),
     };
     let mut finding = evidence.about(&RULE, id, message).label("its current leaves the span of its drop");
-    if away > WARNING && matters {
+    if away > evidence.thresholds.swing_warning && matters {
         finding.severity = Severity::Warning;
     }
     Some(finding.help(format!("{} {serving} {}", RULE.why, RULE.remedy)))
 }
-
-/// Decades from which on it is worth a note, and a warning.
-const NOTE: f64 = 1.0;
-const WARNING: f64 = 2.0;

@@ -166,3 +166,19 @@ fn settings_that_cannot_be_read_are_told() {
     assert_eq!(run.code, 1, "{}", run.out);
     assert!(run.out.contains("error · unreadable-settings · kneewise.toml:1:"), "{}", run.out);
 }
+
+#[test]
+fn thresholds_move_the_line() {
+    // 1 mA at nominal and 101 mA at the end of the range: two decades from the drop's own current
+    let board = "lamp\nV1 in 0 1.6\nR1 in a 1k\nD1 a 0 DX\n.model DX D(IS=1n N=1.8)\n*@ range R1 10 1k\n";
+    let folder = folder("thresholds", &[("a.net", board)]);
+    let found = |folder: &Path| {
+        let document = json(folder, &["check", "a.net"]);
+        let list = document["findings"].as_array().unwrap().clone();
+        list.iter().filter(|f| f["rule"] == "current-beyond-drop").count()
+    };
+    assert_eq!(found(&folder), 1);
+    std::fs::write(folder.join("kneewise.toml"), "[thresholds]\nswing-note = 3\nswing-warning = 4\n")
+        .unwrap();
+    assert_eq!(found(&folder), 0);
+}

@@ -4,6 +4,7 @@ use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
 use super::rule::Rule;
 use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
+use crate::config::Thresholds;
 use crate::finding::Finding;
 use crate::text::{Sources, Span};
 use crate::topology::Wiring;
@@ -18,6 +19,8 @@ pub struct Evidence<'a> {
     pub circuit: &'a Circuit,
     /// Its wiring.
     pub wiring: &'a Wiring,
+    /// Where remarks begin.
+    pub thresholds: Thresholds,
     loose: OnceCell<Vec<LooseEnd>>,
     loose_by_scope: OnceCell<FxHashMap<ScopeId, Vec<LooseEnd>>>,
     shorted: OnceCell<FxHashMap<ScopeId, usize>>,
@@ -31,11 +34,19 @@ impl<'a> Evidence<'a> {
             sources,
             circuit,
             wiring,
+            thresholds: Thresholds::default(),
             loose: OnceCell::new(),
             loose_by_scope: OnceCell::new(),
             shorted: OnceCell::new(),
             told: Vec::new(),
         }
+    }
+
+    /// With thresholds of the user's own.
+    #[must_use]
+    pub fn with_thresholds(mut self, thresholds: Thresholds) -> Self {
+        self.thresholds = thresholds;
+        self
     }
 
     /// Nodes with one connection that are very likely meant to have more; found once.
@@ -49,7 +60,8 @@ impl<'a> Evidence<'a> {
     }
 
     pub(super) fn with_told(&self, told: Vec<Finding>) -> Evidence<'a> {
-        Evidence { told, ..Evidence::new(self.sources, self.circuit, self.wiring) }
+        let fresh = Evidence::new(self.sources, self.circuit, self.wiring);
+        Evidence { told, ..fresh.with_thresholds(self.thresholds) }
     }
 
     /// The loose ends of the elements of one instance, in order.
