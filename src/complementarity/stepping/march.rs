@@ -99,6 +99,7 @@ pub(crate) struct March {
     /// Largest magnitude of each state so far, and of all voltages and currents.
     pub(super) most: Vec<f64>,
     volts: f64,
+    given_volts: f64,
     amperes: f64,
     /// Largest capacitance: what rounding of a voltage makes of a current.
     stiffest: f64,
@@ -143,6 +144,7 @@ impl March {
             rates: vec![0.0; states.len()],
             has_rates: false,
             volts,
+            given_volts: volts,
             amperes: 0.0,
             stiffest,
             derivative: None,
@@ -158,6 +160,15 @@ impl March {
     /// Largest voltage so far.
     pub fn volts(&self) -> f64 {
         self.volts
+    }
+
+    /// Forgets how large states have been: a walk that led astray must not coarsen the next.
+    pub(super) fn forget(&mut self) {
+        self.volts = self.given_volts;
+        self.amperes = 0.0;
+        self.most.clear();
+        self.most.extend(self.states.iter().map(|s| s.abs()));
+        self.note_scales();
     }
 
     /// A current that is none: what blocking junctions leak, and rounding.

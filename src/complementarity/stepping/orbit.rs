@@ -3,6 +3,7 @@
 //! large systems, extrapolation from the last periods (Anderson, J. ACM 12 (1965) 547-560).
 
 use super::march::{End, March};
+use super::system::Mode;
 use nalgebra::{DMatrix, DVector};
 
 /// Systems with more cells than this are extrapolated.
@@ -15,9 +16,9 @@ const DEPTH: usize = 8;
 const AIM: f64 = 1e-10;
 const PERIODIC: f64 = 1e-6;
 
-/// Rounds at most, and rounds without a better miss after which the best is taken.
+/// Rounds at most, and rounds without a much better miss after which the best is taken.
 const MOST_ROUNDS: usize = 400;
-const PATIENCE: usize = 12;
+const MOST_STALE: usize = 60;
 
 /// One walk through a period.
 pub(crate) type Walk<'a> = dyn FnMut(&mut March) -> End + 'a;
@@ -35,54 +36,202 @@ pub(crate) struct Orbit {
 
 /// Brings the march to the beginning of a period that repeats itself, as nearly as it can be had.
 pub(crate) fn find_orbit(march: &mut March, walk: &mut Walk<'_>) -> Orbit {
-    let m = march.states.len();
-    let mut orbit = Orbit { end: End::Done, periodic: true, periods: 0 };
-    let by_derivative = m <= MOST_CELLS && march.solver.is_condensed();
-    let mut history = History::default();
-    let (mut best, mut stale) = (f64::INFINITY, 0);
-    let mut best_start: Option<Vec<f64>> = None;
-    let mut jumps = Jumps::default();
+    let mut search = Search {
+        by_derivative: march.states.len() <= MOST_CELLS && march.solver.is_condensed(),
+        orbit: Orbit { end: End::Done, periodic: false, periods: 0 },
+        best: None,
+        source: Source::Steps,
+        differences: 0,
+        damping: 1.0,
+        direction: None,
+        history: History::default(),
+        jumps: Jumps::default(),
+    };
+    let mut stale = 0;
+    let mut least = f64::INFINITY;
     for _ in 0..MOST_ROUNDS {
-        let start = march.states.clone();
-        let modes = march.solver.modes().to_vec();
-        march.derivative = by_derivative.then(|| identity(m));
-        orbit.end = walk(march);
-        orbit.periods += 1;
-        let derivative = march.derivative.take();
-        if orbit.end != End::Done {
-            orbit.periodic = best <= PERIODIC;
-            return orbit;
-        }
-        let miss = miss(march, &start);
-        if miss < 0.5 * best {
-            stale = 0;
-        } else {
-            stale += 1;
-        }
-        if miss < best {
-            best = miss;
-            best_start = Some(march.states.clone());
-        }
-        orbit.periodic = best <= PERIODIC;
-        if miss <= AIM || (orbit.periodic && stale >= 3) || (best <= 1e2 * PERIODIC && stale >= PATIENCE) {
+        let Some(point) = search.round(march, walk) else { break };
+        stale = if point.miss < 0.5 * least { 0 } else { stale + 1 };
+        least = least.min(point.miss);
+        if point.miss <= AIM || (least <= PERIODIC && stale >= 3) || stale >= MOST_STALE {
+            search.keep_better(point);
             break;
         }
-        let end = march.states.clone();
-        history.push(&start, &end);
-        let next = match derivative {
-            Some(derivative) if jumps.may(miss) => newton(m, &derivative, &start, &end),
-            None if jumps.may(miss) => history.extrapolate(march),
-            _ => None,
-        };
-        if let Some(next) = next.filter(|next| next.iter().all(|v| v.is_finite())) {
-            march.states = next;
-            march.solver.set_modes(&modes);
+        let next = search.next(march, walk, point);
+        match next.filter(|next| next.iter().all(|v| v.is_finite())) {
+            Some(next) => march.states = next,
+            None => break,
         }
     }
-    if let Some(best) = best_start {
-        march.states = best;
+    let mut orbit = search.orbit;
+    if let Some(best) = search.best {
+        orbit.periodic = best.miss <= PERIODIC;
+        march.states = best.end;
+        march.solver.set_modes(&best.modes);
     }
     orbit
+}
+
+/// One period that was walked through.
+#[derive(Clone)]
+struct Point {
+    start: Vec<f64>,
+    end: Vec<f64>,
+    /// Modes at its start.
+    modes: Vec<Mode>,
+    miss: f64,
+    /// Of the end by the start, by columns, as the steps carry it along.
+    derivative: Option<Vec<f64>>,
+}
+
+/// Where the derivative of a period comes from. The one that the steps carry along holds the instants of change still;
+/// where moving them matters, differences of whole periods tell.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Source {
+    Steps,
+    Differences,
+}
+
+struct Search {
+    by_derivative: bool,
+    orbit: Orbit,
+    best: Option<Point>,
+    source: Source,
+    /// How often differences were taken.
+    differences: u32,
+    damping: f64,
+    /// From the best point on.
+    direction: Option<Vec<f64>>,
+    history: History,
+    jumps: Jumps,
+}
+
+/// A Newton step that leaves more of the miss than this calls for a better derivative.
+const HEADWAY: f64 = 0.4;
+
+/// Change of a state by which differences are taken, as a share of the largest of its kind.
+const DIFFERENCE: f64 = 1e-4;
+
+/// Most cells and most times for differences.
+const MOST_DIFFERENCES: (usize, u32) = (24, 12);
+
+impl Search {
+    /// Walks through one period from where the march is.
+    fn round(&mut self, march: &mut March, walk: &mut Walk<'_>) -> Option<Point> {
+        let m = march.states.len();
+        let (start, modes) = (march.states.clone(), march.solver.modes().to_vec());
+        march.forget();
+        march.derivative = self.by_derivative.then(|| identity(m));
+        self.orbit.end = walk(march);
+        self.orbit.periods += 1;
+        let derivative = march.derivative.take();
+        if self.orbit.end != End::Done {
+            return None;
+        }
+        let miss = miss(march, &start);
+        Some(Point { start, end: march.states.clone(), modes, miss, derivative })
+    }
+
+    fn keep_better(&mut self, point: Point) {
+        if self.best.as_ref().is_none_or(|best| point.miss < best.miss) {
+            self.best = Some(point);
+        }
+    }
+
+    /// Where the next period should start.
+    fn next(&mut self, march: &mut March, walk: &mut Walk<'_>, point: Point) -> Option<Vec<f64>> {
+        if !self.by_derivative {
+            self.history.push(&point.start, &point.end);
+            let next = if self.jumps.may(point.miss) { self.history.extrapolate(march) } else { None };
+            let end = point.end.clone();
+            self.keep_better(point);
+            return Some(next.unwrap_or(end));
+        }
+        let before = self.best.as_ref().map(|best| best.miss);
+        if before.is_none_or(|before| point.miss < before) {
+            if before.is_some_and(|before| point.miss > HEADWAY * before) {
+                self.source = Source::Differences;
+            }
+            self.best = Some(point);
+            self.damping = 1.0;
+            self.direction = self.newton(march, walk);
+        } else if self.damping > 0.05 && self.direction.is_some() {
+            self.damping *= 0.3;
+        } else if self.source == Source::Steps {
+            self.source = Source::Differences;
+            self.damping = 1.0;
+            self.direction = self.newton(march, walk);
+        } else {
+            self.direction = None;
+        }
+        let best = self.best.as_mut()?;
+        march.solver.set_modes(&best.modes);
+        match &self.direction {
+            Some(direction) => {
+                let step = best.start.iter().zip(direction);
+                Some(step.map(|(start, step)| start + self.damping * step).collect())
+            }
+            None => {
+                // on by itself; whatever comes of it is the new best
+                best.miss = f64::INFINITY;
+                self.source = Source::Steps;
+                Some(best.end.clone())
+            }
+        }
+    }
+
+    /// From the best point to the fixed point of the map as far as its derivative tells; directions that come back
+    /// by themselves are kept.
+    fn newton(&mut self, march: &mut March, walk: &mut Walk<'_>) -> Option<Vec<f64>> {
+        let best = self.best.clone()?;
+        let m = best.start.len();
+        let scale = scales(march);
+        let may_differ = m <= MOST_DIFFERENCES.0 && self.differences < MOST_DIFFERENCES.1;
+        let derivative = match self.source {
+            Source::Differences if may_differ => self.by_differences(march, walk, &best, &scale)?,
+            _ => best.derivative.clone()?,
+        };
+        let entry = |row: usize, col: usize| {
+            let same = if row == col { 1.0 } else { 0.0 };
+            same - derivative[col * m + row] * scale[col] / scale[row]
+        };
+        let inverse = DMatrix::from_fn(m, m, entry).pseudo_inverse(1e-7).ok()?;
+        let gap = best.end.iter().zip(&best.start).zip(&scale).map(|((end, start), s)| (end - start) / s);
+        let step = inverse * DVector::from_iterator(m, gap);
+        Some(step.iter().zip(&scale).map(|(v, s)| v * s).collect())
+    }
+
+    /// The derivative by walking through the period from states that differ a little, one after the other.
+    fn by_differences(
+        &mut self,
+        march: &mut March,
+        walk: &mut Walk<'_>,
+        best: &Point,
+        scale: &[f64],
+    ) -> Option<Vec<f64>> {
+        self.differences += 1;
+        let mut derivative = Vec::with_capacity(scale.len() * scale.len());
+        for (n, s) in scale.iter().enumerate() {
+            march.states.clone_from(&best.start);
+            march.states[n] += DIFFERENCE * s;
+            march.solver.set_modes(&best.modes);
+            let end = walk(march);
+            self.orbit.periods += 1;
+            if end != End::Done {
+                self.orbit.end = end;
+                return None;
+            }
+            derivative.extend(march.states.iter().zip(&best.end).map(|(a, b)| (a - b) / (DIFFERENCE * s)));
+        }
+        Some(derivative)
+    }
+}
+
+/// The scale of each state: its largest value in the last period, or a share of the largest of its kind.
+fn scales(march: &March) -> Vec<f64> {
+    let floors = super::march::floors(march.solver.system(), &march.most);
+    let cells = march.solver.system().cells.iter().zip(&march.most);
+    cells.map(|(cell, most)| most.max(floors[super::march::kind(cell)])).collect()
 }
 
 /// Whether a jump ahead is worth while: not right after one that made things worse.
@@ -113,26 +262,12 @@ impl Jumps {
 
 /// Largest difference between end and start, by scale.
 fn miss(march: &March, start: &[f64]) -> f64 {
-    let floors = super::march::floors(march.solver.system(), &march.most);
-    let cells = march.solver.system().cells.iter().zip(&march.most);
-    let differences = march.states.iter().zip(start);
-    let shares = differences
-        .zip(cells)
-        .map(|((end, start), (cell, most))| (end - start).abs() / most.max(floors[super::march::kind(cell)]));
-    shares.fold(0.0, f64::max)
+    let ends = march.states.iter().zip(start).zip(scales(march));
+    ends.map(|((end, start), scale)| (end - start).abs() / scale).fold(0.0, f64::max)
 }
 
 fn identity(m: usize) -> Vec<f64> {
     (0..m * m).map(|n| if n % (m + 1) == 0 { 1.0 } else { 0.0 }).collect()
-}
-
-/// The fixed point of the map as far as its derivative tells; directions that come back by themselves are kept.
-fn newton(m: usize, derivative: &[f64], start: &[f64], end: &[f64]) -> Option<Vec<f64>> {
-    let matrix = DMatrix::identity(m, m) - DMatrix::from_column_slice(m, m, derivative);
-    let gap = DVector::from_iterator(m, end.iter().zip(start).map(|(end, start)| end - start));
-    let inverse = matrix.pseudo_inverse(1e-9).ok()?;
-    let step = inverse * gap;
-    Some(start.iter().zip(step.iter()).map(|(start, step)| start + step).collect())
 }
 
 /// The last periods' starts and ends.
