@@ -18,7 +18,7 @@ from scipy.special import wrightomega
 
 KELVIN = constants.zero_Celsius
 NEAR = 1e-6
-STEEPEST = 500.0
+STEEPEST = 60.0
 
 
 def thermal(celsius):
@@ -276,20 +276,24 @@ def asked(program, text):
 
 
 def main(program, first=1, count=600):
-    table, failed, passed, given_up, missing = Table(), 0, 0, 0, 0
+    table, failed, passed, given_up, unlimited = Table(), 0, 0, 0, 0
     for seed in range(first, first + count):
         circuit = Circuit(seed, known=seed % 8 != 0)
-        exact = circuit.solved()
+        with np.errstate(all="ignore"):
+            exact = circuit.solved()
+        case = asked(program, circuit.text())
+        if case["verdict"] == "none":
+            # a diode straight across two supplies: unlimited current, no second opinion
+            unlimited += 1
+            continue
         if exact is None:
             given_up += 1
             continue
-        case = asked(program, circuit.text())
         if case["verdict"] != "unique":
             continue
         for diode, law, i in zip(case["solutions"][0]["diodes"], circuit.diodes, exact):
             refined = diode["refined"]
             if refined is None:
-                missing += 1
                 failed += 1
                 print(f"seed {seed}: no second opinion about {diode['name']}")
             elif abs(refined["current_A"] - i) <= NEAR * abs(i) + 1e-9 * law.saturation:
@@ -299,7 +303,7 @@ def main(program, first=1, count=600):
                 print(f"seed {seed}: {diode['name']} carries {i:.9g}, told {refined['current_A']:.9g}")
             if law.known:
                 table.add(diode, i, seed)
-    print(f"networks from seed {first}: {count}, given up by SciPy {given_up}, without second opinion {missing}")
+    print(f"networks from seed {first}: {count}, of unlimited current {unlimited}, given up by SciPy {given_up}")
     missed = table.report()
     for what in missed:
         print(f"missed: {what}")
