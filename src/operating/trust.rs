@@ -151,7 +151,8 @@ impl Judge<'_> {
         result.error = Some(ErrorBar { current: bound, voltage: others, most });
         let shift = result.view.map(|v| bound * (v.resistance - result.series).max(0.0));
         let share = match (result.view, shift) {
-            (Some(view), Some(shift)) if shift > 0.0 => shift / view.open_circuit.abs().max(shift),
+            // a node at rest is not wrong because a microvolt moves it: a drop is the least that matters
+            (Some(view), Some(shift)) => shift / view.open_circuit.abs().max(result.drop.volts),
             _ => 0.0,
         };
         let trust = match share {

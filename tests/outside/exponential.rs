@@ -281,3 +281,18 @@ fn a_zener_carries_ibv_at_bv() {
     let netlist = "t\nI1 a 0 10m\nD1 a 0 DZ\n.model DZ D(IS=1e-14 BV=5.1 IBV=1m NBV=2)\n";
     near(refined(netlist, "D1").voltage, -5.1 - 2.0 * thermal_voltage(27.0) * 10f64.ln(), 1e-9);
 }
+
+// by hand: 3.13 uA through 160 kilohm; the assumed 0.7 V belongs to 1 mA, 2.5 decades of 59.6 mV away (27 degrees), which
+// over 160 kilohm is 30 % of the current. A node at rest beside a blocking diode is in no doubt
+#[test]
+fn reasons_come_with_their_numbers() {
+    let netlist = "t\nV1 p 0 1.2\nR1 p a 160k\nD1 a 0\nR2 b 0 10k\nD2 b 0 DS\n.model DS D(IS=2.5n N=1.75)\n";
+    let got = diode(netlist, "D1");
+    assert_eq!(got.trust, Some(Trust::Poor));
+    let reason = &got.trust_reasons[0];
+    for part in ["3.13 µA", "700 mV", "1 mA", "2.5 decades", "149 mV", "% of this current"] {
+        assert!(reason.contains(part), "{part}: {reason}");
+    }
+    let rest = diode(netlist, "D2");
+    assert_eq!((rest.trust, rest.trust_reasons.len()), (Some(Trust::Good), 0), "{rest:?}");
+}
