@@ -47,8 +47,8 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     });
     let swing = operating.as_ref().filter(|_| options.swing);
     let swing = swing.map(|states| swing::follow(&circuit, states, &wiring.noted, options));
-    let evidence = Evidence::new(&sources, &circuit, &wiring).with_thresholds(options.thresholds);
-    let (judged, skipped) = rules::run(&evidence, operating.as_ref(), swing.as_ref());
+    let mut evidence = Evidence::new(&sources, &circuit, &wiring).with_thresholds(options.thresholds);
+    let (judged, skipped) = rules::run(&mut evidence, &findings, operating.as_ref(), swing.as_ref());
     let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
     findings.extend(judged);
     rules::accept(&evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));

@@ -19,6 +19,8 @@ mod examples;
 mod exponential;
 #[path = "outside/families.rs"]
 mod families;
+#[path = "faults/mod.rs"]
+mod faults;
 #[path = "outside/run.rs"]
 mod run;
 #[path = "outside/shorts.rs"]

@@ -28,7 +28,33 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
-    evidence.circuit.elements().filter_map(|(id, _)| judge(evidence, id)).collect()
+    let judged = |(id, _)| judge(evidence, id).or_else(|| deaf(evidence, id));
+    evidence.circuit.elements().filter_map(judged).collect()
+}
+
+/// A controlled source or switch that listens between a node and itself hears nothing, ever.
+fn deaf(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
+    let circuit = evidence.circuit;
+    let listens = matches!(
+        circuit.element(id).behaviour,
+        Behaviour::VoltageByVoltage { .. } | Behaviour::CurrentByVoltage { .. } | Behaviour::VoltageSwitch { .. }
+    );
+    let [_, _, one, two, ..] = circuit.pins(id) else { return None };
+    let tied = circuit.element(id).scope != crate::circuit::ScopeId::ROOT
+        && !evidence.sources.slice(one.span).eq_ignore_ascii_case(evidence.sources.slice(two.span));
+    if !listens || one.node != two.node || tied {
+        return None;
+    }
+    let (name, node) = (evidence.name(id), evidence.node(one.node));
+    let message = format!("both control nodes of {name} are `{node}`, so it never hears anything but 0 V");
+    Some(
+        evidence
+            .about(&RULE, id, message)
+            .about(node)
+            .also(one.span, "one input")
+            .also(two.span, "the other input")
+            .help(format!("{} {}", RULE.why, RULE.remedy)),
+    )
 }
 
 /// The loose end that an element across one node was probably meant to reach: there is one of each in the

@@ -54,6 +54,11 @@ fn finding(evidence: &Evidence<'_>, operating: &Operating, claim: &Claim<'_>, fo
         let what = found.first().map_or("", |f| f.words.as_str());
         finding = finding.also(evidence.statement(id), what);
     }
+    // whoever looks at a node finds what is expected there
+    match claim.about {
+        About::Diode(id) => evidence.name_nodes(&mut finding, &[id]),
+        About::Node(node) => finding.subjects.push(evidence.node(node)),
+    }
     let why = found.first().map_or("", |f| f.why.as_str());
     finding.help(format!("{why} {}", RULE.remedy).trim().to_owned())
 }

@@ -98,7 +98,7 @@ fn judge(evidence: &Evidence<'_>, ends: &[&LooseEnd]) -> Finding {
         }
     }
     finding = finding.about(name);
-    if ends.iter().all(|e| e.unused_pin) {
+    if ends.iter().all(|e| e.unused_pin && !super::support::is_needed_port(evidence, e)) {
         finding.severity = Severity::Note;
         return finding.help(
             "An unused pin of a part is usual; if it is to be joined, look at the node's name on the instance's line.",

@@ -33,6 +33,8 @@ pub const RULE: Rule = Rule {
 
 /// More than any diode of the table of materials drops; below it the states decide.
 const CLEAR: f64 = 4.5;
+/// More than this through a junction that nothing else protects.
+const SURVIVED: f64 = 10.0;
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     evidence.circuit.elements().filter_map(|(id, _)| judge(evidence, id)).collect()
@@ -43,7 +45,7 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let Behaviour::Diode { model, .. } = circuit.element(id).behaviour else { return None };
     let series = model.and_then(|m| circuit.model(m).parameter("rs")).map_or(0.0, |v| v.number);
     let (anode, cathode) = (circuit.node(id, 0), circuit.node(id, 1));
-    if series != 0.0 || anode == cathode || !evidence.wiring.potentials.joined(anode, cathode) {
+    if anode == cathode || !evidence.wiring.potentials.joined(anode, cathode) {
         return None;
     }
     // where sources contradict each other there is no one voltage; that has been told
@@ -54,7 +56,8 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     }
     let steps = evidence.wiring.potentials.walk(circuit, anode, cathode)?;
     let volts = greatest(circuit, &steps)?;
-    if volts < CLEAR {
+    // its own resistance limits the current, but not to what a junction survives
+    if volts < CLEAR || (series > 0.0 && (volts - CLEAR) / series < SURVIVED) {
         return None;
     }
     let names: Vec<String> = steps.iter().map(|s| evidence.name(s.element)).collect();
@@ -69,6 +72,7 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
         finding = finding.also(evidence.statement(step.element), "drives it");
     }
     finding.subjects.extend(names);
+    evidence.name_nodes(&mut finding, &[id]);
     Some(super::support::turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
 }
 

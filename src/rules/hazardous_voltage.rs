@@ -86,10 +86,33 @@ fn sources<'a>(evidence: &'a Evidence<'_>) -> impl Iterator<Item = Hazard> + 'a 
     })
 }
 
+/// An amplifier as a controlled source has no supply of its own: without a feedback that direct current passes it names
+/// any number of volts. What is beyond all independent sources together is then none that anybody meets.
+fn amplified_limit(evidence: &Evidence<'_>, case: &Case) -> f64 {
+    let is_amplifier = |b: &Behaviour| match b {
+        Behaviour::VoltageByVoltage { gain } | Behaviour::VoltageByCurrent { gain, .. } => {
+            gain.number.abs() >= AMPLIFIER
+        }
+        _ => false,
+    };
+    if !evidence.circuit.elements().any(|(_, e)| is_amplifier(&e.behaviour)) {
+        return f64::INFINITY;
+    }
+    let is_voltage =
+        |id: ElementId| matches!(evidence.circuit.element(id).behaviour, Behaviour::VoltageSource(_));
+    let sources = case.sources.iter().filter(|(id, _)| is_voltage(*id)).map(|(_, v)| v.abs());
+    sources.chain(case.supplies.iter().map(|(_, v)| v.abs())).sum()
+}
+
+/// A gain from here on is an amplifier's, open loop.
+const AMPLIFIER: f64 = 1e3;
+
 /// The greatest difference between two nodes in one condition.
 fn between_nodes(evidence: &Evidence<'_>, case: &Case) -> Option<Hazard> {
     let solution = case.solutions.first()?;
+    let limit = amplified_limit(evidence, case);
     let known = solution.nodes.iter().filter_map(|n| Some((n.voltage.known()?, n.node)));
+    let known = known.filter(|(volts, _)| volts.abs() <= limit);
     let all = || known.clone().chain([(0.0, NodeId::GROUND)]);
     let (high, top) = all().max_by(|a, b| a.0.total_cmp(&b.0).then(b.1.cmp(&a.1)))?;
     let (low, bottom) = all().min_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)))?;
@@ -112,10 +135,11 @@ fn between_nodes(evidence: &Evidence<'_>, case: &Case) -> Option<Hazard> {
 /// Capacitors that hold a dangerous energy in one condition.
 fn stored(evidence: &Evidence<'_>, case: &Case) -> Option<Hazard> {
     let solution = case.solutions.first()?;
+    let limit = amplified_limit(evidence, case);
     let mut volts = vec![None; evidence.circuit.nodes.len()];
     volts[NodeId::GROUND.index()] = Some(0.0);
     for node in &solution.nodes {
-        volts[node.node.index()] = node.voltage.known();
+        volts[node.node.index()] = node.voltage.known().filter(|v| v.abs() <= limit);
     }
     let hazards = evidence.circuit.elements().filter_map(|(id, element)| {
         let Behaviour::Capacitor { farads, .. } = &element.behaviour else { return None };

@@ -128,5 +128,7 @@ fn judge(evidence: &Evidence<'_>, cluster: &[Barred]) -> Finding {
         finding = finding.also(evidence.statement(other.diode), "nor this way");
     }
     finding.subjects.extend(names.into_iter().skip(1));
+    let diodes: Vec<ElementId> = cluster.iter().map(|b| b.diode).collect();
+    evidence.name_nodes(&mut finding, &diodes);
     finding.help(format!("{} {}", RULE.why, RULE.remedy))
 }

@@ -105,7 +105,7 @@ fn pair_at(evidence: &Evidence<'_>, node: NodeId) -> Option<Opposed> {
     let mut touches = evidence.wiring.touching.carrying(circuit, node);
     let (one, two) = (touches.next()?, touches.next()?);
     let is_plain =
-        |id| matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id);
+        |id| matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id, evidence.wiring.available);
     let far = |t: crate::topology::Touch| circuit.node(t.element, 1 - t.pin.min(1) as usize);
     let opposed = touches.next().is_none()
         && one.element != two.element
@@ -132,6 +132,7 @@ fn judge(evidence: &Evidence<'_>, pair: &Opposed, turned: Option<ElementId>) -> 
     if let Some(span) = pin {
         finding = finding.also(span, format!("{one} and {two} meet here"));
     }
+    evidence.name_nodes(&mut finding, &pair.diodes);
     finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
     match turned {
         Some(id) => super::support::turn_round(evidence, id, finding),

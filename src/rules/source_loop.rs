@@ -123,5 +123,7 @@ fn judge(evidence: &Evidence<'_>, walk: &Loop) -> Option<Finding> {
         finding = finding.also(evidence.statement(step.element), "in the same loop");
     }
     finding.subjects.extend(names.into_iter().skip(1));
+    let elements: Vec<ElementId> = walk.steps.iter().map(|s| s.element).collect();
+    evidence.name_nodes(&mut finding, &elements);
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }

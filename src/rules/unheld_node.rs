@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
-use crate::topology::{Cut, Sum};
+use crate::topology::{Cut, Sum, is_sensing};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
@@ -41,7 +41,40 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let is_told = |cut: &&Cut| cut.nodes.iter().any(|n| loose.contains(n));
     let pushed = |cut: &Cut| !cut.sources.is_empty() && !matches!(cut.inflow, Sum::Zero);
     let cuts = evidence.wiring.cuts.iter().filter(|cut| !cut.driven && !cut.isolated && !pushed(cut));
-    cuts.filter(|cut| !is_told(cut)).filter_map(|cut| judge(evidence, cut)).collect()
+    let mut findings: Vec<Finding> =
+        cuts.filter(|cut| !is_told(cut)).filter_map(|cut| judge(evidence, cut)).collect();
+    findings.extend(undriven(evidence));
+    findings
+}
+
+/// Nodes to which several inputs listen and which nothing drives. One alone is a loose end.
+fn undriven(evidence: &Evidence<'_>) -> Vec<Finding> {
+    let circuit = evidence.circuit;
+    let noted = &evidence.wiring.noted;
+    let told: FxHashSet<NodeId> = evidence.wiring.cuts.iter().flat_map(|c| c.nodes.clone()).collect();
+    let mut findings = Vec::new();
+    for n in 1..circuit.nodes.len() {
+        let node = NodeId::new(n);
+        let touches = evidence.wiring.touching.at(node);
+        let only_listens = !touches.is_empty()
+            && touches.iter().all(|t| is_sensing(circuit, t.element, t.pin as usize))
+            && evidence.wiring.touching.only(node).is_none();
+        if !only_listens || told.contains(&node) || noted.is_supplied(node) || noted.is_watched(node) {
+            continue;
+        }
+        let names: Vec<String> = touches.iter().map(|t| evidence.name(t.element)).collect();
+        let Some(pin) = circuit.pins(touches[0].element).get(touches[0].pin as usize) else { continue };
+        let scope = circuit.element(touches[0].element).scope;
+        let message = format!("nothing drives node `{}`: {} only listen to it", evidence.node(node), list(&names));
+        let mut finding = evidence
+            .at(&RULE, scope, pin.span, message)
+            .label("only inputs touch this node")
+            .about(evidence.node(node))
+            .help(format!("{} {}", RULE.why, RULE.remedy));
+        finding.subjects.extend(names);
+        findings.push(finding);
+    }
+    findings
 }
 
 fn judge(evidence: &Evidence<'_>, cut: &Cut) -> Option<Finding> {

@@ -35,8 +35,11 @@ pub struct Barred {
 }
 
 impl OneWay {
-    pub(super) fn of(circuit: &Circuit, joints: &Joints, touching: &Touching) -> Self {
-        let two_way = joints.two_way();
+    /// Of currents of any kind, or of lasting ones only (`steady`): those find no way through a capacitor or a gate.
+    /// Means of periodic currents obey the same law as lasting ones, since no capacitor carries a mean current.
+    pub(super) fn of(circuit: &Circuit, joints: &Joints, touching: &Touching, steady: bool) -> Self {
+        let two_way = joints.two_way(steady);
+        let is_one_way = |circuit: &Circuit, id| is_one_way(circuit, id, joints.available);
         let mut graph: DiGraph<(), ElementId> = DiGraph::with_capacity(two_way.count(), 0);
         for _ in 0..two_way.count() {
             graph.add_node(());

@@ -72,15 +72,17 @@ pub(super) struct Joints {
     joints: Vec<Joint>,
     /// Nodes that what is not known, or a note, may join to ground.
     grounded: Vec<NodeId>,
+    /// The most that the sources together can bring about, in volts.
+    pub(super) available: f64,
 }
 
 impl Joints {
-    pub(super) fn of(circuit: &Circuit, noted: &Noted) -> Self {
+    pub(super) fn of(circuit: &Circuit, noted: &Noted, available: f64) -> Self {
         let mut joints = Vec::with_capacity(circuit.elements.len());
         let mut grounded = noted.supplied.clone();
         for (id, _) in circuit.elements() {
             let pins = circuit.pins(id);
-            let one_way = is_one_way(circuit, id);
+            let one_way = is_one_way(circuit, id, available);
             for (a, b, link) in links(circuit, id) {
                 joints.push(Joint { nodes: (pins[a].node, pins[b].node), link, one_way });
             }
@@ -88,7 +90,7 @@ impl Joints {
                 grounded.extend(pins.first().map(|pin| pin.node));
             }
         }
-        Joints { count: circuit.nodes.len(), joints, grounded }
+        Joints { count: circuit.nodes.len(), joints, grounded, available }
     }
 
     fn by(&self, wanted: impl Fn(&Joint) -> bool) -> UnionFind<u32> {
@@ -102,9 +104,10 @@ impl Joints {
         sets
     }
 
-    /// Nodes joined by what passes current both ways.
-    pub(super) fn two_way(&self) -> Groups {
-        Groups::from(self.by(|joint| !joint.one_way))
+    /// Nodes joined by what passes current both ways: any current, or a lasting one.
+    pub(super) fn two_way(&self, steady: bool) -> Groups {
+        let passes = |link: Link| !steady || link != Link::Capacitive;
+        Groups::from(self.by(|joint| !joint.one_way && passes(joint.link)))
     }
 
     /// Islands; and those that are related, by couplings, sensing inputs and control currents as well.

@@ -1,7 +1,7 @@
 //! How each kind of element joins its pins: what passes a direct current, what only a changing one, what
 //! merely listens.
 
-use crate::circuit::{Behaviour, Circuit, ElementId};
+use crate::circuit::{Behaviour, Circuit, ElementId, NoteKind};
 
 /// What passes between two pins.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -65,15 +65,61 @@ pub fn is_sensing(circuit: &Circuit, id: ElementId, pin: usize) -> bool {
     }
 }
 
-/// The diode may pass a reverse current: its model gives a breakdown voltage, or is not there to tell.
-pub fn can_break_down(circuit: &Circuit, id: ElementId) -> bool {
+/// The diode may pass a reverse current: its model gives a breakdown voltage no greater than `available`, the most that
+/// the circuit's sources can bring about, or is not there to tell.
+pub fn can_break_down(circuit: &Circuit, id: ElementId, available: f64) -> bool {
     match circuit.element(id).behaviour {
-        Behaviour::Diode { model: Some(model), .. } => circuit.model(model).parameter("bv").is_some(),
+        Behaviour::Diode { model: Some(model), .. } => {
+            circuit.model(model).parameter("bv").is_some_and(|bv| bv.number.abs() <= available)
+        }
         _ => true,
     }
 }
 
 /// A diode that passes current one way only.
-pub(super) fn is_one_way(circuit: &Circuit, id: ElementId) -> bool {
-    matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id)
+pub(super) fn is_one_way(circuit: &Circuit, id: ElementId, available: f64) -> bool {
+    matches!(circuit.element(id).behaviour, Behaviour::Diode { .. })
+        && !can_break_down(circuit, id, available)
+}
+
+/// The sum of the greatest values of all voltage sources and supplies, in volts, which no difference of potentials
+/// exceeds; without bound where a current, a controlled source or an inductor may raise more.
+pub fn available_volts(circuit: &Circuit) -> f64 {
+    let stop = circuit.transient.map(|t| t.stop);
+    let mut sum = 0.0;
+    let coils = super::cuts::coupled_coils(circuit);
+    let (mut least, mut most) = (f64::INFINITY, 0.0_f64);
+    for (id, element) in circuit.elements() {
+        match &element.behaviour {
+            Behaviour::VoltageSource(source) => {
+                let (low, high) = super::loops::span_of_values(source, stop);
+                sum += low.abs().max(high.abs());
+            }
+            Behaviour::Resistor(_)
+            | Behaviour::Diode { .. }
+            | Behaviour::Capacitor { initial: None, .. }
+            | Behaviour::VoltageSwitch { .. }
+            | Behaviour::CurrentSwitch { .. }
+            | Behaviour::Transistor { .. }
+            | Behaviour::Coupling { .. } => {}
+            Behaviour::Inductor { henries, initial: None } if coils.contains(&id) => {
+                (least, most) = (least.min(henries.number), most.max(henries.number));
+            }
+            _ => return f64::INFINITY,
+        }
+    }
+    for note in &circuit.notes {
+        match &note.kind {
+            NoteKind::Supply { volts, range } => {
+                let ends = range.unwrap_or((volts.number, volts.number));
+                sum += volts.number.abs().max(ends.0.abs()).max(ends.1.abs());
+            }
+            NoteKind::Range { from, to } => sum += from.abs().max(to.abs()),
+            _ => {}
+        }
+    }
+    // windings transform by the root of their inductances at most
+    let ratio = if most > 0.0 && least > 0.0 { 1.0 + (most / least).sqrt() } else { 1.0 };
+    // a sweep names a source by name only
+    ratio * sum + circuit.sweeps.iter().map(|s| s.from.abs().max(s.to.abs())).sum::<f64>()
 }

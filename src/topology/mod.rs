@@ -3,24 +3,32 @@
 //! one is a mistake is for `rules` to say. All in linear time and without recursion.
 
 mod arcs;
+mod blocks;
 mod cuts;
 mod decimal;
 mod groups;
 mod links;
 mod loops;
 mod noted;
+mod ports;
+mod rails;
 mod similar;
 mod touching;
+mod walks;
 
 pub use arcs::{Barred, OneWay};
+pub use blocks::Unfed;
 pub use cuts::{Cut, coupled_coils};
 pub use decimal::{Sum, sum};
 pub use groups::Groups;
 pub use links::{Link, can_break_down, is_opaque, is_sensing, links};
 pub use loops::{Loop, Potentials, Step, dc_value, span_of_values, total};
 pub use noted::Noted;
+pub use ports::Driven;
+pub use rails::Rails;
 pub use similar::{Similar, is_slip, similar};
 pub use touching::{Touch, Touching};
+pub use walks::{Walk, is_lead, main_path};
 
 use crate::circuit::Circuit;
 
@@ -47,6 +55,16 @@ pub struct Wiring {
     pub potentials: Potentials,
     /// What the diodes that pass current one way only make of the rest.
     pub one_way: OneWay,
+    /// The same for lasting currents, which no capacitor passes.
+    pub steady: OneWay,
+    /// The most that the sources together can bring about between two nodes, in volts; may be without bound.
+    pub available: f64,
+    /// Loops in which nothing drives a current.
+    pub unfed: Vec<Unfed>,
+    /// Nodes that sources hold against ground.
+    pub rails: Rails,
+    /// Ends of what drives alternating current.
+    pub driven: Vec<Driven>,
 }
 
 impl Wiring {
@@ -54,13 +72,33 @@ impl Wiring {
     pub fn of(circuit: &Circuit) -> Self {
         let touching = Touching::of(circuit);
         let noted = Noted::of(circuit);
-        let joints = groups::Joints::of(circuit, &noted);
+        let available = links::available_volts(circuit);
+        let joints = groups::Joints::of(circuit, &noted, available);
         let (islands, related) = joints.islands_and_related(circuit);
         let held = joints.held(circuit);
         let cuts = cuts::cuts(circuit, &touching, &held, &islands);
         let potentials = Potentials::of(circuit);
         let loops = loops::loops(circuit, &potentials);
-        let one_way = OneWay::of(circuit, &joints, &touching);
-        Wiring { touching, noted, islands, related, held, cuts, loops, potentials, one_way }
+        let one_way = OneWay::of(circuit, &joints, &touching, false);
+        let steady = OneWay::of(circuit, &joints, &touching, true);
+        let unfed = blocks::unfed(circuit, &noted);
+        let rails = Rails::of(circuit, &noted);
+        let driven = ports::driven(circuit, &touching, &rails);
+        Wiring {
+            touching,
+            noted,
+            islands,
+            related,
+            held,
+            cuts,
+            loops,
+            potentials,
+            one_way,
+            steady,
+            available,
+            unfed,
+            rails,
+            driven,
+        }
     }
 }

@@ -38,7 +38,8 @@ fn random_lines(dice: &mut Dice) -> Vec<Line> {
 }
 
 fn netlist(lines: &[Line]) -> String {
-    let mut text = String::from("random buoy circuit\n.model DP D(IS=1n)\n.model DZ D(BV=5)\n");
+    // DZ breaks down at whatever voltage there is; a greater BV than all sources together is none
+    let mut text = String::from("random buoy circuit\n.model DP D(IS=1n)\n.model DZ D(BV=0)\n");
     for (n, &(letter, a, b)) in lines.iter().enumerate() {
         let (name, value) = match letter {
             'D' => (format!("D{n}"), "DP"),

@@ -21,7 +21,7 @@ pub fn causes<'o>(evidence: &Evidence<'_>, operating: &'o Operating, verdict: Ve
     let mut known: FxHashMap<(Vec<ElementId>, &str), usize> = FxHashMap::default();
     for (number, case) in operating.cases.iter().enumerate() {
         for cause in case.causes.iter().filter(|c| c.verdict == verdict) {
-            if is_left_to_time(evidence, cause) {
+            if is_no_matter_of_an_instant(evidence, cause) {
                 continue;
             }
             let at = *known.entry(identity(cause)).or_insert(causes.len());
@@ -40,13 +40,13 @@ pub fn is_hopeless(evidence: &Evidence<'_>, operating: &Operating) -> bool {
     let counts = |verdict| matches!(verdict, Verdict::None | Verdict::Unverified);
     operating.cases.iter().filter(|case| counts(case.verdict)).any(|case| {
         let mut causes = case.causes.iter().filter(|c| counts(c.verdict)).peekable();
-        causes.peek().is_none() || causes.any(|c| !is_left_to_time(evidence, c))
+        causes.peek().is_none() || causes.any(|c| !is_no_matter_of_an_instant(evidence, c))
     })
 }
 
 /// What one instant cannot judge: a moving source that drives an inductor, and a controlled current into
 /// capacitors alone, which integrates: what feedback makes of it is no matter of one instant.
-fn is_left_to_time(evidence: &Evidence<'_>, cause: &Cause) -> bool {
+fn is_no_matter_of_an_instant(evidence: &Evidence<'_>, cause: &Cause) -> bool {
     let mut driven = evidence.wiring.cuts.iter().filter(|cut| cut.driven).flat_map(|cut| &cut.leads);
     cause.left_to_time || driven.any(|id| cause.elements.contains(id))
 }
@@ -102,6 +102,7 @@ pub fn finding(
         }
         finding.subjects.push(evidence.name(id));
     }
+    evidence.name_nodes(&mut finding, elements);
     finding.help(format!("{} {}", rule.why, rule.remedy))
 }
 

@@ -3,13 +3,18 @@
 use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
 use super::rule::Rule;
-use crate::circuit::{Circuit, ElementId, NodeId, ScopeId};
+use super::standing::Standing;
+use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, ScopeId};
 use crate::config::Thresholds;
-use crate::finding::Finding;
+use crate::finding::{Finding, Severity};
+use crate::operating::Operating;
 use crate::text::{Sources, Span};
-use crate::topology::Wiring;
-use rustc_hash::FxHashMap;
+use crate::topology::{Wiring, coupled_coils};
+use rustc_hash::{FxHashMap, FxHashSet};
 use std::cell::OnceCell;
+
+/// Elements whose nodes one finding names at most.
+const MOST_NAMED: usize = 40;
 
 /// What rules judge.
 pub struct Evidence<'a> {
@@ -24,6 +29,8 @@ pub struct Evidence<'a> {
     loose: OnceCell<Vec<LooseEnd>>,
     loose_by_scope: OnceCell<FxHashMap<ScopeId, Vec<LooseEnd>>>,
     shorted: OnceCell<FxHashMap<ScopeId, usize>>,
+    coupled: OnceCell<FxHashSet<ElementId>>,
+    standing: OnceCell<Standing>,
     told: Vec<Finding>,
 }
 
@@ -38,6 +45,8 @@ impl<'a> Evidence<'a> {
             loose: OnceCell::new(),
             loose_by_scope: OnceCell::new(),
             shorted: OnceCell::new(),
+            coupled: OnceCell::new(),
+            standing: OnceCell::new(),
             told: Vec::new(),
         }
     }
@@ -59,9 +68,41 @@ impl<'a> Evidence<'a> {
         &self.told
     }
 
-    pub(super) fn with_told(&self, told: Vec<Finding>) -> Evidence<'a> {
-        let fresh = Evidence::new(self.sources, self.circuit, self.wiring);
-        Evidence { told, ..fresh.with_thresholds(self.thresholds) }
+    /// A warning or error that was found already names the element or one of its nodes that is no rail.
+    pub(in crate::rules) fn is_told_near(&self, id: ElementId) -> bool {
+        let near = |node: NodeId| node != NodeId::GROUND && !self.wiring.rails.is_rail(node);
+        let nodes = self.circuit.pins(id).iter().map(|p| p.node).filter(|&n| near(n));
+        let names: Vec<String> = nodes.map(|n| self.node(n)).chain([self.name(id)]).collect();
+        let serious = self.told.iter().filter(|f| f.severity > Severity::Note);
+        serious.into_iter().any(|f| names.iter().any(|n| f.subjects.contains(n)))
+    }
+
+    /// Keeps what the rules on the wiring have found, and all facts that they looked up.
+    pub(super) fn keep_told(&mut self, told: Vec<Finding>) {
+        self.told = told;
+    }
+
+    /// A coupling names this coil.
+    pub(in crate::rules) fn is_coupled(&self, id: ElementId) -> bool {
+        self.coupled.get_or_init(|| coupled_coils(self.circuit)).contains(&id)
+    }
+
+    /// What the states say about diodes and rails over all conditions; read once.
+    pub(in crate::rules) fn standing(&self, operating: &Operating) -> &Standing {
+        self.standing.get_or_init(|| Standing::of(self, operating))
+    }
+
+    /// The names of elements' nodes, each once, ground and those that are named already left out: a finding about
+    /// elements is found under their nodes too.
+    pub(in crate::rules) fn name_nodes(&self, finding: &mut Finding, elements: &[ElementId]) {
+        for &id in elements.iter().take(MOST_NAMED) {
+            for pin in self.circuit.pins(id) {
+                let name = self.node(pin.node);
+                if pin.node != NodeId::GROUND && !finding.subjects.contains(&name) {
+                    finding.subjects.push(name);
+                }
+            }
+        }
     }
 
     /// The loose ends of the elements of one instance, in order.
@@ -91,9 +132,9 @@ impl<'a> Evidence<'a> {
         counts.get(&scope).copied().unwrap_or(0)
     }
 
-    /// Nothing in the circuit touches ground.
+    /// Nothing in the circuit touches ground. Two supplies feed what lies between them without it; one alone does not.
     pub(in crate::rules) fn is_groundless(&self) -> bool {
-        self.wiring.touching.at(NodeId::GROUND).is_empty() && self.wiring.noted.supplied.is_empty()
+        self.wiring.touching.at(NodeId::GROUND).is_empty() && self.wiring.noted.supplied.len() < 2
     }
 
     /// A finding of `rule` about an element: marks its statement, names it, and tells the way to its instance.
@@ -112,6 +153,16 @@ impl<'a> Evidence<'a> {
     /// Full name of an element.
     pub fn name(&self, element: ElementId) -> String {
         self.circuit.element_name(element)
+    }
+
+    /// The name of a diode's model.
+    pub(in crate::rules) fn model_name(&self, element: ElementId) -> Option<&str> {
+        match self.circuit.element(element).behaviour {
+            Behaviour::Diode { model: Some(model), .. } => {
+                Some(self.circuit.text(self.circuit.model(model).name))
+            }
+            _ => None,
+        }
     }
 
     /// Full name of a node.

@@ -2,7 +2,7 @@
 //! the pen in a node's name is found here too, since a slip and its loose end are one cause.
 
 use super::Evidence;
-use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, ScopeId};
 use crate::topology::{Touch, coupled_coils, is_opaque, is_slip, similar};
 use rustc_hash::FxHashSet;
 
@@ -28,7 +28,7 @@ pub fn find(evidence: &Evidence<'_>) -> Vec<LooseEnd> {
     let mut loose = Vec::new();
     for n in 1..circuit.nodes.len() {
         let node = NodeId::new(n);
-        let Some(touch) = touching.only(node) else { continue };
+        let Some(touch) = touching.only(node).or_else(|| single_port(evidence, node)) else { continue };
         if noted.is_supplied(node) || noted.is_watched(node) || may_end_here(evidence, touch, &coupled) {
             continue;
         }
@@ -41,6 +41,85 @@ pub fn find(evidence: &Evidence<'_>) -> Vec<LooseEnd> {
     }
     find_slips(evidence, &mut loose);
     loose
+}
+
+/// The first pin inside an instance to which a node leads that nothing else touches: all its pins lie inside that one
+/// instance and bear one name there. (Two ports of an instance that are tied together are joined by that.)
+fn single_port(evidence: &Evidence<'_>, node: NodeId) -> Option<Touch> {
+    let circuit = evidence.circuit;
+    let outer = circuit.nodes[node.index()].scope;
+    let touches = evidence.wiring.touching.at(node);
+    let first = *touches.first()?;
+    let instance = instance_below(circuit, circuit.element(first.element).scope, outer)?;
+    let mut port: Option<String> = None;
+    for touch in touches {
+        let element = circuit.element(touch.element);
+        if instance_below(circuit, element.scope, outer) != Some(instance) {
+            return None;
+        }
+        // what lies deeper has names of its own
+        let pin = circuit.pins(touch.element).get(touch.pin as usize).filter(|_| element.scope == instance);
+        if let Some(pin) = pin {
+            let name = evidence.sources.slice(pin.span).to_lowercase();
+            if port.get_or_insert_with(|| name.clone()) != &name {
+                return None;
+            }
+        }
+    }
+    port.map(|_| first)
+}
+
+/// The instance directly inside `outer` that holds `scope`.
+pub fn instance_below(circuit: &Circuit, scope: ScopeId, outer: ScopeId) -> Option<ScopeId> {
+    let mut at = scope;
+    loop {
+        let parent = circuit.scopes.get(at.index())?.parent?;
+        if parent == outer {
+            return Some(at);
+        }
+        at = parent;
+    }
+}
+
+/// A part of two or three ports of which one leads nowhere does nothing any more; an end of a single resistor inside, as
+/// in a potentiometer, may well be left open.
+pub fn is_needed_port(evidence: &Evidence<'_>, end: &LooseEnd) -> bool {
+    let circuit = evidence.circuit;
+    let touches = evidence.wiring.touching.at(end.node);
+    let outer = circuit.nodes[end.node.index()].scope;
+    let Some(instance) = instance_below(circuit, circuit.element(end.touch.element).scope, outer) else {
+        return false;
+    };
+    let is_resistor = |t: &Touch| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_));
+    match ports_of(circuit, instance).len() {
+        0..=2 => true,
+        3 => !matches!(touches, [one] if is_resistor(one) && leads_to_resistors(evidence, one)),
+        _ => false,
+    }
+}
+
+/// Nothing but resistors meets at the far end of a resistor, as at a wiper.
+fn leads_to_resistors(evidence: &Evidence<'_>, touch: &Touch) -> bool {
+    let circuit = evidence.circuit;
+    let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+    let is_resistor = |t: &Touch| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_));
+    evidence.wiring.touching.at(far).iter().all(is_resistor)
+}
+
+/// The nodes of outer circuits that an instance touches.
+fn ports_of(circuit: &Circuit, instance: ScopeId) -> FxHashSet<NodeId> {
+    let inside = |mut scope: ScopeId| loop {
+        if scope == instance {
+            return true;
+        }
+        match circuit.scopes.get(scope.index()).and_then(|s| s.parent) {
+            Some(parent) => scope = parent,
+            None => return false,
+        }
+    };
+    let elements = circuit.elements().filter(|(_, e)| inside(e.scope));
+    let pins = elements.flat_map(|(id, _)| circuit.pins(id)).map(|p| p.node);
+    pins.filter(|n| !inside(circuit.nodes[n.index()].scope)).collect()
 }
 
 /// Elements whose pin may well be left open: unknown ones, positive outputs of controlled voltage sources, the ends of

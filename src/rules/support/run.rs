@@ -1,15 +1,16 @@
 //! Runs every rule whose evidence is there.
 
 use super::rule::{Check, Skipped};
-use super::{Evidence, instances};
+use super::{Evidence, consequences, instances};
 use crate::finding::Finding;
 use crate::operating::Operating;
 use crate::swing::Swing;
 
 /// All findings of all rules, and those that could not judge, with the reason. Findings of reading are not among
-/// them: they were made by `circuit::read`.
+/// them: they were made by `circuit::read`, and are given as `reading` so that one cause is told once.
 pub fn run(
-    evidence: &Evidence<'_>,
+    evidence: &mut Evidence<'_>,
+    reading: &[Finding],
     operating: Option<&Operating>,
     swing: Option<&Swing>,
 ) -> (Vec<Finding>, Vec<Skipped>) {
@@ -30,15 +31,18 @@ pub fn run(
         }
     }
     let mut findings = told.clone();
+    told.extend(reading.iter().cloned());
+    evidence.keep_told(told);
+    let evidence = &*evidence;
     if let Some(states) = operating {
-        let evidence = evidence.with_told(told);
         for rule in super::super::all() {
             match (&rule.check, swing) {
-                (Check::States(check), _) => findings.extend(check(&evidence, states)),
-                (Check::Time(check), Some(swing)) => findings.extend(check(&evidence, states, swing)),
+                (Check::States(check), _) => findings.extend(check(evidence, states)),
+                (Check::Time(check), Some(swing)) => findings.extend(check(evidence, states, swing)),
                 _ => {}
             }
         }
     }
+    consequences::fold(&mut findings);
     (instances::fold(evidence.circuit, findings), skipped)
 }

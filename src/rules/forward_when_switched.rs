@@ -1,0 +1,154 @@
+//! A diode beside a transistor or switch that lies forward across the supply as soon as that one closes: a freewheel
+//! diode or a snubber the wrong way round.
+
+use super::{Check, Evidence, Rule, turn_round};
+use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::finding::{Finding, Severity, quantity};
+use crate::operating::Operating;
+use crate::topology::{is_lead, main_path};
+
+pub const RULE: Rule = Rule {
+    name: "forward-when-switched",
+    group: "orientation",
+    severity: Severity::Warning,
+    summary: "a diode at a switched node conducts whenever the switch closes: a freewheel diode the wrong way round",
+    why: "A freewheel diode carries the coil's current on when the switch opens, and blocks while it is closed. The \
+          other way round it stands forward across the supply with nothing but the switch to limit the current.",
+    remedy: "Turn it round: it points from the lower potential to the higher. If the supply itself stands on its head, \
+             turn that one.",
+    source: None,
+    failing: "tide gauge buoy: latch relay driver\n\
+              VBUS bus 0 12\n\
+              LCOIL bus mid 95m\n\
+              RCOIL mid drain 180\n\
+              D1 bus drain DRECT\n\
+              Q1 drain base 0 QSW\n\
+              VCTRL ctrl 0 3.3\n\
+              RB ctrl base 1k\n\
+              .model DRECT D(IS=2.6n N=1.9)\n\
+              .model QSW NPN(IS=14f BF=200)\n",
+    passing: "tide gauge buoy: bus monitor\n\
+              VBUS bus 0 12\n\
+              R1 bus mon 47k\n\
+              R2 mon 0 10k\n\
+              D1 0 mon DRECT\n\
+              .model DRECT D(IS=2.6n N=1.9)\n",
+    check: Check::States(check),
+};
+
+/// A switch between a node and a rail.
+struct Switch {
+    element: ElementId,
+    node: NodeId,
+    rail: NodeId,
+}
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    let mut findings: Vec<Finding> = Vec::new();
+    let mut told: Vec<ElementId> = Vec::new();
+    for switch in switches(evidence) {
+        let touches = evidence.wiring.touching.at(switch.node);
+        for touch in touches {
+            let is_diode = matches!(evidence.circuit.element(touch.element).behaviour, Behaviour::Diode { .. });
+            if is_diode
+                && !told.contains(&touch.element)
+                && let Some(finding) = judge(evidence, operating, &switch, touch.element, touch.pin)
+            {
+                told.push(touch.element);
+                findings.push(finding);
+            }
+        }
+    }
+    findings
+}
+
+fn switches(evidence: &Evidence<'_>) -> Vec<Switch> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let mut switches = Vec::new();
+    for (id, element) in circuit.elements() {
+        let is_switch = matches!(
+            element.behaviour,
+            Behaviour::Transistor { .. } | Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. }
+        );
+        let Some((one, two)) = main_path(circuit, id).filter(|_| is_switch) else { continue };
+        let (a, b) = (circuit.node(id, one), circuit.node(id, two));
+        for (node, far) in [(a, b), (b, a)] {
+            let end = evidence.wiring.touching.walk(circuit, rails, far, id, |b| is_small(b));
+            if rails.is_rail(end.end) && !rails.is_rail(node) {
+                switches.push(Switch { element: id, node, rail: end.end });
+            }
+        }
+    }
+    switches
+}
+
+/// What measures the current of a switch.
+fn is_small(behaviour: &Behaviour) -> bool {
+    matches!(behaviour, Behaviour::Resistor(ohms) if ohms.number <= 1.0)
+}
+
+fn judge(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    switch: &Switch,
+    diode: ElementId,
+    pin: u32,
+) -> Option<Finding> {
+    let circuit = evidence.circuit;
+    let standing = evidence.standing(operating);
+    let far = circuit.node(diode, 1 - pin as usize);
+    let (rail, through) = match evidence.wiring.rails.is_rail(far) {
+        true => (far, false),
+        false => (snubbed_to(evidence, diode, far)?, true),
+    };
+    if rail == switch.rail {
+        return None;
+    }
+    let (here, there) = (standing.rail(rail)?, standing.rail(switch.rail)?);
+    // volts that stand across the diode, forward, when the switch is closed
+    let forward = if pin == 0 { there.0 - here.1 } else { here.0 - there.1 };
+    let drop = standing.diode(diode).map_or(0.7, |d| d.drop);
+    if forward < drop + 0.5 {
+        return None;
+    }
+    let name = evidence.name(diode);
+    let what = if through {
+        format!("and the snubber's resistor carries it all the time that {} is on", evidence.name(switch.element))
+    } else {
+        "and nothing limits its current".into()
+    };
+    let message = format!(
+        "{name} conducts whenever {} closes: it then stands forward across {}, {what}",
+        evidence.name(switch.element),
+        quantity(forward, "V")
+    );
+    let mut finding = evidence
+        .about(&RULE, diode, message)
+        .label("forward when the switch is closed")
+        .also(evidence.statement(switch.element), "the switch")
+        .about(evidence.name(switch.element));
+    for node in [rail, switch.rail] {
+        if let Some(source) = evidence.wiring.rails.source(node) {
+            finding = finding.also(evidence.statement(source), "drives it");
+            finding.subjects.extend([evidence.name(source), evidence.node(node)]);
+        }
+    }
+    evidence.name_nodes(&mut finding, &[diode]);
+    Some(turn_round(evidence, diode, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
+}
+
+/// The rail to which a resistor and a capacitor side by side lead from the far end of a snubber's diode.
+fn snubbed_to(evidence: &Evidence<'_>, diode: ElementId, node: NodeId) -> Option<NodeId> {
+    let circuit = evidence.circuit;
+    let (mut resistor, mut capacitor) = (None, None);
+    for touch in evidence.wiring.touching.carrying(circuit, node).filter(|t| t.element != diode) {
+        let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+        match &circuit.element(touch.element).behaviour {
+            b if is_lead(b) && resistor.is_none() => resistor = Some(far),
+            Behaviour::Capacitor { .. } if capacitor.is_none() => capacitor = Some(far),
+            _ => return None,
+        }
+    }
+    (resistor == capacitor).then_some(resistor?).filter(|&n| evidence.wiring.rails.is_rail(n))
+}

@@ -1,0 +1,59 @@
+//! A light-emitting diode that gets some forward voltage in every condition, but never enough.
+
+use super::{Check, Evidence, Rule};
+use crate::circuit::{Behaviour, ElementId, State};
+use crate::finding::{Finding, Severity, quantity};
+use crate::operating::Operating;
+
+pub const RULE: Rule = Rule {
+    name: "indicator-never-lit",
+    group: "orientation",
+    severity: Severity::Warning,
+    summary: "a light-emitting diode stands at less than its drop in every condition, so it never lights",
+    why: "Something across it, or too many diodes in series with it, leaves it less than the voltage it needs, so it \
+          stays dark whatever happens.",
+    remedy: "Look for what holds its node down: another string, a wire to the wrong node, a missing resistor of its own.",
+    source: None,
+    failing: "tide gauge buoy: two lamps on one resistor\n\
+              VBUS bus 0 12\n\
+              R1 bus lamps 470\n\
+              DRED lamps 0 LRED\n\
+              DBLUE lamps 0 LBLUE\n\
+              .model LRED D(IS=1e-18 N=2)\n\
+              .model LBLUE D(IS=1e-27 N=2)\n",
+    passing: "tide gauge buoy: two lamps, each with its resistor\n\
+              VBUS bus 0 12\n\
+              R1 bus lamp1 470\n\
+              R2 bus lamp2 470\n\
+              DRED lamp1 0 LRED\n\
+              DBLUE lamp2 0 LBLUE\n\
+              .model LRED D(IS=1e-18 N=2)\n\
+              .model LBLUE D(IS=1e-27 N=2)\n",
+    check: Check::States(check),
+};
+
+/// Less than this forward is no attempt to light it.
+const SOME: f64 = 0.2;
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    let is_diode = |b: &Behaviour| matches!(b, Behaviour::Diode { .. });
+    let diodes = evidence.circuit.elements().filter(|(_, e)| is_diode(&e.behaviour));
+    diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
+}
+
+fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
+    let seen = evidence.standing(operating).diode(id)?;
+    let is_dark = seen.is_led() && seen.is_always(State::Blocking) && seen.least >= SOME;
+    if !is_dark || seen.greatest >= seen.drop || evidence.is_told_near(id) {
+        return None;
+    }
+    let message = format!(
+        "{} never lights: it stands at {} at most and needs {}",
+        evidence.name(id),
+        quantity(seen.greatest, "V"),
+        quantity(seen.drop, "V")
+    );
+    let mut finding = evidence.about(&RULE, id, message).label("stays dark");
+    evidence.name_nodes(&mut finding, &[id]);
+    Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
+}

@@ -1,0 +1,82 @@
+//! A bridge rectifier of three legs.
+
+use super::reversed_bridge_leg::{Leg, legs};
+use super::{Check, Evidence, Rule};
+use crate::circuit::{ElementId, NodeId};
+use crate::finding::{Finding, Severity};
+
+pub const RULE: Rule = Rule {
+    name: "missing-bridge-leg",
+    group: "wiring",
+    severity: Severity::Warning,
+    summary: "a bridge rectifier has three legs: one is missing",
+    why: "One output of the bridge is joined to both ends of the winding, the other to one of them only, so the current \
+          has no way back in every other half-wave.",
+    remedy: "Put the fourth diode in.",
+    source: Some("Bridge rectifier, common practice"),
+    failing: "tide gauge buoy: bench supply\n\
+              VSEC w1 w2 SIN(0 17 50)\n\
+              RSEC w1 ac1 0.8\n\
+              D1 ac1 raw DRECT\n\
+              D2 w2 raw DRECT\n\
+              D3 0 ac1 DRECT\n\
+              C1 raw 0 2200u\n\
+              R1 raw 0 100\n\
+              .model DRECT D(IS=2.6n N=1.9)\n",
+    passing: "tide gauge buoy: bench supply\n\
+              VSEC w1 w2 SIN(0 17 50)\n\
+              RSEC w1 ac1 0.8\n\
+              D1 ac1 raw DRECT\n\
+              D2 w2 raw DRECT\n\
+              D3 0 ac1 DRECT\n\
+              D4 0 w2 DRECT\n\
+              C1 raw 0 2200u\n\
+              R1 raw 0 100\n\
+              .model DRECT D(IS=2.6n N=1.9)\n",
+    check: Check::Wiring(check),
+};
+
+fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
+    let mut findings = Vec::new();
+    for driven in &evidence.wiring.driven {
+        let outputs = legs(evidence, driven);
+        for (&whole, two) in &outputs {
+            let [one, other] = two.as_slice() else { continue };
+            if one.end == other.end || one.out != other.out {
+                continue;
+            }
+            for (&half, legs) in &outputs {
+                let [single] = legs.as_slice() else { continue };
+                let belongs = single.out != one.out && [one.end, other.end].contains(&single.end);
+                if half != whole && belongs && !leads_elsewhere(evidence, half, single) {
+                    let bare = if single.end == one.end { other.end } else { one.end };
+                    findings.push(judge(evidence, (whole, [*one, *other]), (half, *single), bare));
+                }
+            }
+        }
+    }
+    findings
+}
+
+/// The single leg is a clamp to a supply of its own, not the way back of the load.
+fn leads_elsewhere(evidence: &Evidence<'_>, output: NodeId, _: &Leg) -> bool {
+    output != NodeId::GROUND && evidence.wiring.rails.is_rail(output)
+}
+
+fn judge(evidence: &Evidence<'_>, whole: (NodeId, [Leg; 2]), half: (NodeId, Leg), bare: NodeId) -> Finding {
+    let name = evidence.name(half.1.diode);
+    let [one, two] = whole.1.map(|l| evidence.name(l.diode));
+    let (plus, minus, end) = (evidence.node(whole.0), evidence.node(half.0), evidence.node(bare));
+    let message = format!(
+        "{one} and {two} join both ends of the winding to `{plus}`, but only {name} joins one of them to `{minus}`: a leg \
+         between `{minus}` and `{end}` is missing"
+    );
+    let mut finding = evidence.about(&RULE, half.1.diode, message).label("has no partner");
+    for leg in whole.1 {
+        finding = finding.also(evidence.statement(leg.diode), "one of the pair on the other side");
+    }
+    finding.subjects.extend([one, two, end]);
+    let diodes: Vec<ElementId> = whole.1.iter().map(|l| l.diode).chain([half.1.diode]).collect();
+    evidence.name_nodes(&mut finding, &diodes);
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
+}

@@ -1,0 +1,145 @@
+//! A diode that points the other way than all its sisters in a matrix or at a gate.
+
+use super::{Check, Evidence, Rule, behind, list, turn_round};
+use crate::circuit::{Behaviour, ElementId, ModelId, NodeId};
+use crate::finding::{Finding, Severity};
+use petgraph::unionfind::UnionFind;
+use rustc_hash::FxHashMap;
+
+pub const RULE: Rule = Rule {
+    name: "odd-one-out",
+    group: "orientation",
+    severity: Severity::Warning,
+    summary: "one diode of a matrix or a gate points the other way than all the others of its kind",
+    why: "In a matrix all diodes lead from one set of lines to the other, and at a gate all lead to the common node or \
+          all away from it. One that points back passes current where none is meant, or none where some is.",
+    remedy: "Turn it round.",
+    source: None,
+    failing: "tide gauge buoy: lamp matrix\n\
+              VA ra 0 5\n\
+              VB rb 0 0\n\
+              R1 ra row1 10\n\
+              R2 rb row2 10\n\
+              D11 row1 col1 DRED\n\
+              D12 row1 col2 DRED\n\
+              D13 row1 col3 DRED\n\
+              D21 row2 col1 DRED\n\
+              D22 col2 row2 DRED\n\
+              D23 row2 col3 DRED\n\
+              RC1 col1 0 270\n\
+              RC2 col2 0 270\n\
+              RC3 col3 0 270\n\
+              .model DRED D(IS=1e-18 N=2)\n",
+    passing: "tide gauge buoy: alarm gate\n\
+              VA a 0 0\n\
+              VB b 0 3.3\n\
+              VC c 0 3.3\n\
+              D1 a any DSW\n\
+              D2 b any DSW2\n\
+              D3 c any DSW3\n\
+              R1 any 0 10k\n\
+              .model DSW D(IS=2.5n N=1.75)\n\
+              .model DSW2 D(IS=2.6n N=1.75)\n\
+              .model DSW3 D(IS=2.7n N=1.75)\n",
+    check: Check::Wiring(check),
+};
+
+fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
+    let circuit = evidence.circuit;
+    let mut by_model: FxHashMap<ModelId, Vec<ElementId>> = FxHashMap::default();
+    for (id, element) in circuit.elements() {
+        if let Behaviour::Diode { model: Some(model), .. } = element.behaviour
+            && circuit.node(id, 0) != circuit.node(id, 1)
+        {
+            by_model.entry(model).or_default().push(id);
+        }
+    }
+    let mut found: Vec<(ElementId, Vec<ElementId>)> =
+        by_model.values().filter(|d| d.len() > 2).flat_map(|d| odd_ones(evidence, d)).collect();
+    found.sort();
+    found.iter().map(|(odd, sisters)| judge(evidence, *odd, sisters)).collect()
+}
+
+/// Diodes of one kind that stand out, each with its sisters.
+fn odd_ones(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Vec<(ElementId, Vec<ElementId>)> {
+    let circuit = evidence.circuit;
+    let mut at: FxHashMap<NodeId, Vec<(ElementId, usize)>> = FxHashMap::default();
+    for &id in diodes {
+        for pin in [0, 1] {
+            at.entry(circuit.node(id, pin)).or_default().push((id, pin));
+        }
+    }
+    let odd = |&id: &ElementId| {
+        in_matrix(evidence, diodes, &at, id).or_else(|| at_gate(evidence, &at, id)).map(|sisters| (id, sisters))
+    };
+    diodes.iter().filter_map(odd).collect()
+}
+
+type Meeting = FxHashMap<NodeId, Vec<(ElementId, usize)>>;
+
+/// All others at its anode have their cathodes there, all others at its cathode their anodes, and the lines hang together
+/// without it.
+fn in_matrix(evidence: &Evidence<'_>, diodes: &[ElementId], at: &Meeting, id: ElementId) -> Option<Vec<ElementId>> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let mut sisters = Vec::new();
+    for pin in [0, 1] {
+        let node = circuit.node(id, pin);
+        let others: Vec<&(ElementId, usize)> = at.get(&node)?.iter().filter(|o| o.0 != id).collect();
+        if others.is_empty() || others.iter().any(|o| o.1 == pin) || rails.is_rail(node) {
+            return None;
+        }
+        sisters.extend(others.iter().map(|o| o.0));
+    }
+    if sisters.len() < 3 {
+        return None;
+    }
+    let mut sets = UnionFind::<u32>::new(circuit.nodes.len().max(1));
+    for &other in diodes.iter().filter(|&&d| d != id) {
+        // ground joins what does not belong together
+        let ends = (circuit.node(other, 0), circuit.node(other, 1));
+        if ends.0 != NodeId::GROUND && ends.1 != NodeId::GROUND {
+            sets.union(ends.0.0, ends.1.0);
+        }
+    }
+    sets.equiv(circuit.node(id, 0).0, circuit.node(id, 1).0).then_some(sisters)
+}
+
+/// At a node that is no rail two or more sisters point one way, this one the other, and behind each of them stands a
+/// source of its own.
+fn at_gate(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> Option<Vec<ElementId>> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let is_source = |id: ElementId, pin: usize| {
+        let end = behind(evidence, id, pin).end;
+        (rails.is_rail(end) && end != NodeId::GROUND).then_some(end)
+    };
+    for pin in [0, 1] {
+        let node = circuit.node(id, pin);
+        let others: Vec<&(ElementId, usize)> = at.get(&node)?.iter().filter(|o| o.0 != id).collect();
+        let stands_out = others.len() >= 2 && others.iter().all(|o| o.1 != pin) && !rails.is_rail(node);
+        let own = is_source(id, 1 - pin);
+        if !stands_out || own.is_none() {
+            continue;
+        }
+        let behind_others: Vec<Option<NodeId>> = others.iter().map(|o| is_source(o.0, 1 - o.1)).collect();
+        if behind_others.iter().all(|end| end.is_some() && *end != own) {
+            return Some(others.iter().map(|o| o.0).collect());
+        }
+    }
+    None
+}
+
+fn judge(evidence: &Evidence<'_>, odd: ElementId, sisters: &[ElementId]) -> Finding {
+    let mut names: Vec<String> = sisters.iter().map(|&id| evidence.name(id)).collect();
+    names.sort();
+    names.dedup();
+    let message =
+        format!("{} points the other way than {}, which are of its kind and share its nodes", evidence.name(odd), list(&names));
+    let mut finding = evidence.about(&RULE, odd, message).label("points back");
+    for &id in sisters.iter().take(4) {
+        finding = finding.also(evidence.statement(id), "as the others do");
+    }
+    evidence.name_nodes(&mut finding, &[odd]);
+    turn_round(evidence, odd, finding.help(format!("{} {}", RULE.why, RULE.remedy)))
+}

@@ -1,0 +1,79 @@
+//! A Zener diode across a supply that conducts forward instead of breaking down.
+
+use super::{Check, Evidence, Rule, turn_round};
+use crate::circuit::{Behaviour, ElementId, State};
+use crate::finding::{Finding, Severity, quantity};
+use crate::operating::Operating;
+
+pub const RULE: Rule = Rule {
+    name: "zener-forward",
+    group: "orientation",
+    severity: Severity::Warning,
+    summary: "a Zener or surge diode across a supply lies in its forward direction",
+    why: "There is voltage enough to hold the diode at its breakdown voltage, but it conducts forward in every condition \
+          and holds the node at less than a volt instead.",
+    remedy: "Turn it round: a Zener diode has its cathode at the positive end. If the source behind it stands on its \
+             head, turn that one.",
+    source: None,
+    failing: "tide gauge buoy: reference of the pressure cell\n\
+              VBUS bus 0 12\n\
+              R1 bus vref 470\n\
+              D1 vref 0 DZ5V1\n\
+              RCELL vref 0 3k3\n\
+              .model DZ5V1 D(IS=1n N=1.3 RS=7 BV=5.1)\n",
+    passing: "tide gauge buoy: reference of the pressure cell\n\
+              VBUS bus 0 12\n\
+              R1 bus vref 470\n\
+              D1 0 vref DZ5V1\n\
+              RCELL vref 0 3k3\n\
+              .model DZ5V1 D(IS=1n N=1.3 RS=7 BV=5.1)\n",
+    check: Check::States(check),
+};
+
+/// Junctions with less are Schottky or germanium: their breakdown voltage is a limit, not a use.
+const SILICON: f64 = 0.45;
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    let diodes =
+        evidence.circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
+    diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
+}
+
+fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
+    let seen = evidence.standing(operating).diode(id)?;
+    let breakdown = seen.breakdown?;
+    let rails = &evidence.wiring.rails;
+    let circuit = evidence.circuit;
+    // one end on a rail, the other held by what lies around it
+    let (low, high) = (circuit.node(id, 1), circuit.node(id, 0));
+    let shunts = rails.is_rail(low) != rails.is_rail(high);
+    let would_hold = seen.open_circuit >= MARGIN * breakdown && breakdown <= MOST && seen.drop >= SILICON;
+    if !seen.is_always(State::Conducting) || seen.is_led() || !shunts || !would_hold {
+        return None;
+    }
+    let free = if rails.is_rail(low) { high } else { low };
+    let message = format!(
+        "{} breaks down at {} but conducts forward in every condition: it holds `{}` at {} where {} would stand without it",
+        evidence.name(id),
+        quantity(breakdown, "V"),
+        evidence.node(free),
+        quantity(seen.greatest, "V"),
+        quantity(seen.open_circuit, "V")
+    );
+    let mut finding = evidence.about(&RULE, id, message).label("forward across the supply");
+    evidence.name_nodes(&mut finding, &[id]);
+    let feeds = evidence.wiring.touching.direct(circuit, free).filter(|t| t.element != id);
+    for touch in feeds.take(4).collect::<Vec<_>>() {
+        let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+        let end = evidence.wiring.touching.walk(circuit, rails, far, touch.element, crate::topology::is_lead).end;
+        if let Some(source) = rails.source(end) {
+            finding.subjects.extend([evidence.name(source), evidence.node(end)]);
+        }
+    }
+    Some(turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
+}
+
+/// A surge diode is chosen to break down somewhat above its supply.
+const MARGIN: f64 = 0.6;
+/// Beyond this a breakdown voltage is a rectifier's limit.
+const MOST: f64 = 60.0;
