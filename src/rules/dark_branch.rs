@@ -28,6 +28,8 @@ pub const RULE: Rule = Rule {
     check: Check::States(check),
 };
 
+/// Ohms through which a leakage is measured.
+const LEAKAGE: f64 = 1e6;
 /// Less than this across a branch is no supply.
 const SUPPLY: f64 = 1.0;
 
@@ -73,13 +75,15 @@ fn branch(evidence: &Evidence<'_>, id: ElementId) -> Option<Branch> {
     if before.end == after.end {
         return None;
     }
-    let mut all = before.passed;
+    let mut all = before.passed.clone();
     all.push(id);
-    all.extend(after.passed);
+    all.extend(&after.passed);
     let is_diode = |id: &ElementId| matches!(circuit.element(*id).behaviour, Behaviour::Diode { .. });
     let (mut diodes, others): (Vec<ElementId>, Vec<ElementId>) = all.into_iter().partition(is_diode);
     diodes.sort();
-    let has_resistor = others.iter().any(|&id| matches!(circuit.element(id).behaviour, Behaviour::Resistor(_)));
+    // beside so great a resistance a diode that blocks is there for its leakage
+    let ohms: f64 = before.ohms + after.ohms;
+    let has_resistor = ohms < LEAKAGE && others.iter().any(|&id| matches!(circuit.element(id).behaviour, Behaviour::Resistor(_)));
     has_resistor.then_some(Branch { diodes, others, anode_end: before.end, cathode_end: after.end })
 }
 
@@ -87,6 +91,10 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
     let standing = evidence.standing(operating);
     let seen: Vec<&Seen> = branch.diodes.iter().filter_map(|&id| standing.diode(id)).collect();
     let lights = seen.iter().all(|d| d.is_led());
+    // a plain diode between two supplies may be a clamp that waits for its signal
+    if !lights && branch.anode_end != NodeId::GROUND && branch.cathode_end != NodeId::GROUND {
+        return None;
+    }
     let is_timed = |node: NodeId| operating.nodes_left_to_time.binary_search(&node).is_ok();
     let volts = |node: NodeId| match evidence.wiring.rails.is_rail(node) {
         true => standing.rail(node),

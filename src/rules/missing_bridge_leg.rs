@@ -15,7 +15,7 @@ pub const RULE: Rule = Rule {
     remedy: "Put the fourth diode in.",
     source: Some("Bridge rectifier, common practice"),
     failing: "tide gauge buoy: bench supply\n\
-              VSEC w1 w2 SIN(0 17 50)\n\
+              VSEC w1 w2 17\n\
               RSEC w1 ac1 0.8\n\
               D1 ac1 raw DRECT\n\
               D2 w2 raw DRECT\n\
@@ -24,7 +24,7 @@ pub const RULE: Rule = Rule {
               R1 raw 0 100\n\
               .model DRECT D(IS=2.6n N=1.9)\n",
     passing: "tide gauge buoy: bench supply\n\
-              VSEC w1 w2 SIN(0 17 50)\n\
+              VSEC w1 w2 17\n\
               RSEC w1 ac1 0.8\n\
               D1 ac1 raw DRECT\n\
               D2 w2 raw DRECT\n\

@@ -22,18 +22,18 @@ pub const RULE: Rule = Rule {
         "Mean currents of a periodic state obey Kirchhoff's law with all capacitors open, so a diode in a directed cut \
          of what is left has none: G. J. Minty, Monotone networks, Proc. R. Soc. Lond. A 257 (1960) 194-212",
     ),
-    failing: "tide gauge buoy: peak of the ping, its bleeder forgotten\n\
-              VPING rx 0 SIN(0 2 40k)\n\
-              R1 rx ping 150\n\
-              D1 ping peak DSW\n\
-              C1 peak 0 10n\n\
+    failing: "tide gauge buoy: store of the sounder, its load forgotten\n\
+              VBUS bus 0 12\n\
+              R1 bus pre 100\n\
+              D1 pre store DSW\n\
+              C1 store 0 4700u\n\
               .model DSW D(IS=2.5n N=1.75)\n",
-    passing: "tide gauge buoy: peak of the ping\n\
-              VPING rx 0 SIN(0 2 40k)\n\
-              R1 rx ping 150\n\
-              D1 ping peak DSW\n\
-              C1 peak 0 10n\n\
-              R2 peak 0 220k\n\
+    passing: "tide gauge buoy: store of the sounder\n\
+              VBUS bus 0 12\n\
+              R1 bus pre 100\n\
+              D1 pre store DSW\n\
+              C1 store 0 4700u\n\
+              R2 store 0 1k\n\
               .model DSW D(IS=2.5n N=1.75)\n",
     check: Check::Wiring(check),
 };

@@ -32,8 +32,8 @@ pub const RULE: Rule = Rule {
               .model DRED D(IS=1e-18 N=2)\n",
     passing: "tide gauge buoy: alarm gate\n\
               VA a 0 0\n\
-              VB b 0 3.3\n\
-              VC c 0 3.3\n\
+              VB b 0 12\n\
+              VC c 0 0\n\
               D1 a any DSW\n\
               D2 b any DSW2\n\
               D3 c any DSW3\n\

@@ -28,20 +28,15 @@ pub const RULE: Rule = Rule {
               D4 gout bot DSW\n\
               RHOLD gout 0 100k\n\
               .model DSW D(IS=2.5n N=1.75)\n",
-    passing: "tide gauge buoy: sampling gate\n\
-              VUP up 0 6\n\
-              RUP up top 2k\n\
-              VDN dn 0 -6\n\
-              RDN dn bot 2k\n\
-              VSIG sig 0 0.3\n\
-              RSIG sig gin 50\n\
-              D1 top gin DSW\n\
-              D2 top gout DSW2\n\
-              D3 gin bot DSW2\n\
-              D4 gout bot DSW\n\
-              RHOLD gout 0 100k\n\
-              .model DSW D(IS=2.5n N=1.75 RS=1)\n\
-              .model DSW2 D(IS=2.6n N=1.75 RS=1)\n",
+    passing: "tide gauge buoy: modem that may be plugged in either way round\n\
+              VLINE la lb 24\n\
+              RWIRE la ta 1.5\n\
+              D1 ta plus DRECT\n\
+              D2 lb plus DRECT\n\
+              D3 0 ta DRECT\n\
+              D4 0 lb DRECT\n\
+              RMODEM plus 0 330\n\
+              .model DRECT D(IS=2.6n N=1.9)\n",
     check: Check::Wiring(check),
 };
 

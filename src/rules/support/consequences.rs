@@ -4,7 +4,7 @@ use crate::finding::{Finding, Severity};
 
 /// Rules from cause to consequence: of two findings that name one diode, the one whose rule stands first is the cause.
 /// Rules that are not listed are neither.
-const FROM_CAUSE: [&str; 27] = [
+const FROM_CAUSE: [&str; 38] = [
     "forward-across-source",
     "opposed-in-series",
     "reversed-bridge-leg",
@@ -32,6 +32,17 @@ const FROM_CAUSE: [&str; 27] = [
     "parallel-diodes",
     "open-split",
     "open-potential",
+    "charge-without-discharge",
+    "charge-beyond-drop",
+    "current-beyond-drop",
+    "small-headroom",
+    "leakage-matters",
+    "opinions-differ",
+    "below-the-knee",
+    "series-resistance-counts",
+    "temperature-decides",
+    "detector-time-constant",
+    "ripple-beyond-limit",
 ];
 
 /// Leaves out each finding about something that an earlier cause names. Order is kept. Findings that an expectation or a
