@@ -74,7 +74,7 @@ fn switches(evidence: &Evidence<'_>) -> Vec<Switch> {
         let Some((one, two)) = main_path(circuit, id).filter(|_| is_switch) else { continue };
         let (a, b) = (circuit.node(id, one), circuit.node(id, two));
         for (node, far) in [(a, b), (b, a)] {
-            let end = evidence.wiring.touching.walk(circuit, rails, far, id, |b| is_small(b));
+            let end = evidence.wiring.touching.walk(circuit, rails, far, id, is_small);
             if rails.is_rail(end.end) && !rails.is_rail(node) {
                 switches.push(Switch { element: id, node, rail: end.end });
             }
