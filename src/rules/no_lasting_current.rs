@@ -121,7 +121,11 @@ fn is_restorer(evidence: &Evidence<'_>, cluster: &[Barred], ends: &[NodeId]) -> 
         .filter(|t| matches!(circuit.element(t.element).behaviour, Behaviour::Capacitor { .. }));
     let (Some(one), None) = (capacitors.next(), capacitors.next()) else { return false };
     let far = circuit.node(one.element, 1 - one.pin.min(1) as usize);
-    far != NodeId::GROUND && !evidence.wiring.rails.is_rail(far)
+    let rails = &evidence.wiring.rails;
+    let is_moving = rails.source(far).is_some_and(|id| {
+        matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_some())
+    });
+    far != NodeId::GROUND && (is_moving || !rails.is_rail(far))
 }
 
 fn is_loose(evidence: &Evidence<'_>, cluster: &[Barred]) -> bool {

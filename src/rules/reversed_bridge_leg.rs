@@ -74,10 +74,10 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let mut found: FxHashMap<ElementId, Finding> = FxHashMap::default();
     for driven in &evidence.wiring.driven {
         let outputs = legs(evidence, driven);
-        for (&output, legs) in outputs.iter().filter(|(_, legs)| legs.len() > 1) {
-            let apart = |a: &Leg, b: &Leg| a.end != b.end && a.out != b.out;
-            let mixed = legs.iter().any(|a| legs.iter().any(|b| apart(a, b)));
-            if mixed && has_load(evidence, output, legs) {
+        // where the legs of every output point both ways, they are meant to: a ring modulator
+        let mixed = outputs.values().filter(|legs| is_mixed(legs)).count();
+        for (&output, legs) in outputs.iter().filter(|_| mixed == 1) {
+            if is_mixed(legs) && has_load(evidence, output, legs) {
                 let turned = turned(&outputs, output, legs);
                 let finding = judge(evidence, output, legs, turned);
                 found.entry(turned.unwrap_or(legs[0]).diode).or_insert(finding);
@@ -87,6 +87,12 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let mut findings: Vec<(ElementId, Finding)> = found.into_iter().collect();
     findings.sort_by_key(|f| f.0);
     findings.into_iter().map(|f| f.1).collect()
+}
+
+/// Two of the legs lead from one end of the winding straight to another.
+fn is_mixed(legs: &[Leg]) -> bool {
+    let apart = |a: &Leg, b: &Leg| a.end != b.end && a.out != b.out;
+    legs.iter().any(|a| legs.iter().any(|b| apart(a, b)))
 }
 
 /// Something else leads on from the output: without it the two are a limiter across the winding.

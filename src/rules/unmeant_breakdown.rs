@@ -34,7 +34,7 @@ pub const RULE: Rule = Rule {
 /// From here on a breakdown voltage is a rectifier's.
 const RECTIFIER: f64 = 50.0;
 /// Schottky and germanium junctions drop less.
-const SILICON: f64 = 0.45;
+const SILICON: f64 = 0.35;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut broken: BTreeMap<ElementId, (f64, Vec<usize>)> = BTreeMap::new();

@@ -31,7 +31,7 @@ pub const RULE: Rule = Rule {
 };
 
 /// Junctions with less are Schottky or germanium: their breakdown voltage is a limit, not a use.
-const SILICON: f64 = 0.45;
+const SILICON: f64 = 0.35;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let diodes =
