@@ -3,7 +3,7 @@
 use crate::circuit::State;
 use crate::finding::{Finding, compact, list, quantity};
 use crate::operating::Verdict;
-use crate::review::{Comparison, Move, Record, StateChange, WiringChange};
+use crate::review::{Comparison, Move, Record, WiringChange};
 
 /// Conditions named in one row.
 const NAMES: usize = 3;
@@ -21,26 +21,23 @@ pub(super) struct Flip<'a> {
 }
 
 pub(super) fn flips(comparison: &Comparison) -> Vec<Flip<'_>> {
-    let mut flips: Vec<(&StateChange, Flip<'_>)> = Vec::new();
+    let mut flips: Vec<Flip<'_>> = Vec::new();
+    let mut known = std::collections::BTreeMap::new();
     for change in &comparison.states {
-        let same = |(first, _): &&mut (&StateChange, Flip<'_>)| {
-            first.diode == change.diode && first.old == change.old && first.new == change.new
-        };
-        match flips.iter_mut().find(same) {
-            Some((_, flip)) => flip.cases.push(&change.case),
-            None => flips.push((
-                change,
-                Flip {
-                    diodes: vec![&change.diode],
-                    old: state(change.old, change.old_current),
-                    new: state(change.new, change.new_current),
-                    cases: vec![&change.case],
-                    why: &change.why,
-                },
-            )),
+        let key = (&change.diode, change.old, change.new);
+        let at = *known.entry(key).or_insert(flips.len());
+        match flips.get_mut(at) {
+            Some(flip) => flip.cases.push(&change.case),
+            None => flips.push(Flip {
+                diodes: vec![&change.diode],
+                old: state(change.old, change.old_current),
+                new: state(change.new, change.new_current),
+                cases: vec![&change.case],
+                why: &change.why,
+            }),
         }
     }
-    alike(flips.into_iter().map(|(_, flip)| flip))
+    alike(flips.into_iter())
 }
 
 /// Diodes that flip alike for the same reason stand together: those of many instances mostly do.
@@ -176,11 +173,16 @@ pub(super) fn verdicts(comparison: &Comparison) -> Vec<String> {
 /// `D1: trust good → poor (nominal)`
 pub(super) fn trust(comparison: &Comparison) -> Vec<String> {
     let mut rows: Vec<(String, Vec<&str>)> = Vec::new();
+    let mut known = std::collections::BTreeMap::new();
     for change in &comparison.trust {
-        let head = format!("{}: trust {} → {}", change.diode, change.old.word(), change.new.word());
-        match rows.iter_mut().find(|(known, _)| *known == head) {
+        let at = *known.entry((&change.diode, change.old, change.new)).or_insert(rows.len());
+        match rows.get_mut(at) {
             Some((_, cases)) => cases.push(&change.case),
-            None => rows.push((head, vec![&change.case])),
+            None => {
+                let words = (change.old.word(), change.new.word());
+                let head = format!("{}: trust {} → {}", change.diode, words.0, words.1);
+                rows.push((head, vec![&change.case]));
+            }
         }
     }
     rows.into_iter().map(|(head, cases)| format!("{head} ({})", conditions(&cases))).collect()

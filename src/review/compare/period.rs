@@ -8,6 +8,7 @@ use crate::analysis::Analysis;
 use crate::circuit::{ElementId, NodeId, State};
 use crate::operating::Operating;
 use crate::swing::{OverTime, Swing};
+use std::collections::BTreeSet;
 
 /// Stands in the place of a condition.
 const CASE: &str = "over time";
@@ -43,15 +44,15 @@ fn states(
     after: Side<'_>,
     pairs: &Pairs,
     comparison: &mut Comparison,
-) -> Vec<ElementId> {
-    let mut flipped = Vec::new();
+) -> BTreeSet<ElementId> {
+    let mut flipped = BTreeSet::new();
     for pair in &pairs.elements {
         let (Some(was), Some(is)) = (figures(before, pair.old), figures(after, pair.new)) else { continue };
         let (old_state, new_state) = (telling(was, before.0.window), telling(is, after.0.window));
         if old_state == new_state {
             continue;
         }
-        flipped.push(pair.new);
+        flipped.insert(pair.new);
         let percent = |time: &OverTime| format!("{:.3}", 100.0 * time.conducting_share);
         comparison.states.push(StateChange {
             diode: new.circuit.element_name(pair.new),
@@ -72,7 +73,7 @@ fn currents(
     after: Side<'_>,
     pairs: &Pairs,
     share: f64,
-    flipped: &[ElementId],
+    flipped: &BTreeSet<ElementId>,
     comparison: &mut Comparison,
 ) {
     let largest = |(swing, _): Side<'_>| {
