@@ -29,8 +29,8 @@ pub const RULE: Rule = Rule {
               K1 L1 L2 0.98\n\
               RS s1 s2 10k\n\
               D1 s1 raw DRECT\n\
-              C1 raw ret 470u\n\
-              RLOAD raw ret 1k\n\
+              C1 raw ret 4u7\n\
+              RLOAD raw ret 100k\n\
               .model DRECT D(IS=2.5n N=1.7)\n",
     passing: "tide gauge buoy: isolated sensor supply\n\
               V1 prim 0 SIN(0 12 50)\n\
@@ -40,8 +40,8 @@ pub const RULE: Rule = Rule {
               K1 L1 L2 0.98\n\
               RS s1 0 10k\n\
               D1 s1 raw DRECT\n\
-              C1 raw 0 470u\n\
-              RLOAD raw 0 1k\n\
+              C1 raw 0 4u7\n\
+              RLOAD raw 0 100k\n\
               .model DRECT D(IS=2.5n N=1.7)\n",
     check: Check::Wiring(check),
 };

@@ -171,14 +171,14 @@ fn assert_targets(outcomes: &[Outcome], missed: &[String]) {
 /// The states of the clean netlists at rest, against the exact enumeration.
 #[test]
 fn states_of_the_clean_netlists_agree_with_the_enumeration() {
-    use super::states::{Condition, at_rest, conditions};
+    use super::states::{at_rest, conditions};
     let mut compared = 0;
     let mut wrong = String::new();
     for which in ["clean", "held-out"] {
         for (name, text) in netlists(which) {
             let flat = super::netlist::Flat::read(&text, &[]);
             let transistors = flat.parts.iter().any(|p| "QMJ".contains(p.letter));
-            let nominal = conditions(&flat, false).into_iter().next().unwrap_or_else(Condition::default);
+            let nominal = conditions(&flat, false).into_iter().next().unwrap_or_default();
             let Some(expected) = at_rest(&flat, &nominal).filter(|_| !transistors) else { continue };
             let analysis = check(&text);
             let solution = &analysis.operating.as_ref().expect("asked for").cases[0].solutions;
