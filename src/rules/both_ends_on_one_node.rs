@@ -37,7 +37,9 @@ fn deaf(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let circuit = evidence.circuit;
     let listens = matches!(
         circuit.element(id).behaviour,
-        Behaviour::VoltageByVoltage { .. } | Behaviour::CurrentByVoltage { .. } | Behaviour::VoltageSwitch { .. }
+        Behaviour::VoltageByVoltage { .. }
+            | Behaviour::CurrentByVoltage { .. }
+            | Behaviour::VoltageSwitch { .. }
     );
     let [_, _, one, two, ..] = circuit.pins(id) else { return None };
     let tied = circuit.element(id).scope != crate::circuit::ScopeId::ROOT

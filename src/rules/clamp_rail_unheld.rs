@@ -65,9 +65,9 @@ fn is_signal(evidence: &Evidence<'_>, node: NodeId) -> bool {
     let circuit = evidence.circuit;
     let (touching, rails) = (&evidence.wiring.touching, &evidence.wiring.rails);
     let steady = |rail: NodeId| {
-        rails.source(rail).is_some_and(|id| {
-            matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none())
-        })
+        rails.source(rail).is_some_and(
+            |id| matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none()),
+        )
     };
     let is_driven = touching.direct(circuit, node).any(|t| {
         let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
@@ -96,8 +96,11 @@ fn is_only_clamped(evidence: &Evidence<'_>, rail: NodeId, clamps: &[ElementId]) 
 fn judge(evidence: &Evidence<'_>, rail: NodeId, clamps: &[ElementId]) -> Finding {
     let names: Vec<String> = clamps.iter().map(|&id| evidence.name(id)).collect();
     let node = evidence.node(rail);
-    let message =
-        format!("nothing holds `{node}` but the inputs that {} {} to clamp to it", list(&names), if names.len() == 1 { "is" } else { "are" });
+    let message = format!(
+        "nothing holds `{node}` but the inputs that {} {} to clamp to it",
+        list(&names),
+        if names.len() == 1 { "is" } else { "are" }
+    );
     let mut finding = evidence.about(&RULE, clamps[0], message).label("leads to a rail that nothing holds");
     for &id in clamps.iter().skip(1).take(4) {
         finding = finding.also(evidence.statement(id), "as does this");

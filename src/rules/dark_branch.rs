@@ -83,7 +83,8 @@ fn branch(evidence: &Evidence<'_>, id: ElementId) -> Option<Branch> {
     diodes.sort();
     // beside so great a resistance a diode that blocks is there for its leakage
     let ohms: f64 = before.ohms + after.ohms;
-    let has_resistor = ohms < LEAKAGE && others.iter().any(|&id| matches!(circuit.element(id).behaviour, Behaviour::Resistor(_)));
+    let has_resistor = ohms < LEAKAGE
+        && others.iter().any(|&id| matches!(circuit.element(id).behaviour, Behaviour::Resistor(_)));
     has_resistor.then_some(Branch { diodes, others, anode_end: before.end, cathode_end: after.end })
 }
 
@@ -103,7 +104,10 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
     };
     let (above, below) = (volts(branch.anode_end)?, volts(branch.cathode_end)?);
     let most = above.1 - below.0;
-    if seen.len() != branch.diodes.len() || seen.iter().any(|d| d.clamps_near(most)) || are_opposed(evidence, branch) {
+    if seen.len() != branch.diodes.len()
+        || seen.iter().any(|d| d.clamps_near(most))
+        || are_opposed(evidence, branch)
+    {
         return None;
     }
     if branch.diodes.iter().any(|&id| evidence.is_told_near(id)) {

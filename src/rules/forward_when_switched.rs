@@ -49,7 +49,8 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     for switch in switches(evidence) {
         let touches = evidence.wiring.touching.at(switch.node);
         for touch in touches {
-            let is_diode = matches!(evidence.circuit.element(touch.element).behaviour, Behaviour::Diode { .. });
+            let is_diode =
+                matches!(evidence.circuit.element(touch.element).behaviour, Behaviour::Diode { .. });
             if is_diode
                 && !told.contains(&touch.element)
                 && let Some(finding) = judge(evidence, operating, &switch, touch.element, touch.pin)
@@ -114,7 +115,10 @@ fn judge(
     }
     let name = evidence.name(diode);
     let what = if through {
-        format!("and the snubber's resistor carries it all the time that {} is on", evidence.name(switch.element))
+        format!(
+            "and the snubber's resistor carries it all the time that {} is on",
+            evidence.name(switch.element)
+        )
     } else {
         "and nothing limits its current".into()
     };

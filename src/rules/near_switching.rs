@@ -40,7 +40,9 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     for (number, case) in operating.cases.iter().enumerate() {
         for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
             let is_left = case.instant && operating.left_to_time.binary_search(&diode.element).is_ok();
-            let Some(margin) = diode.margin.filter(|m| *m >= 0.0 && *m < uncertainty(diode)) else { continue };
+            let Some(margin) = diode.margin.filter(|m| *m >= 0.0 && *m < uncertainty(diode)) else {
+                continue;
+            };
             // at zero volts of an idle part nothing is near
             // beside an equal one it only shares what that one would carry alone
             let idle = diode.view.is_none_or(|v| v.open_circuit == 0.0 || v.resistance < SHARED);

@@ -52,8 +52,12 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
 fn clusters(evidence: &Evidence<'_>) -> Vec<Vec<Barred>> {
     let facts = &evidence.wiring.steady;
     let circuit = evidence.circuit;
-    let barred: Vec<Barred> =
-        facts.barred.iter().filter(|b| circuit.node(b.diode, 0) != circuit.node(b.diode, 1)).copied().collect();
+    let barred: Vec<Barred> = facts
+        .barred
+        .iter()
+        .filter(|b| circuit.node(b.diode, 0) != circuit.node(b.diode, 1))
+        .copied()
+        .collect();
     let mut sets = UnionFind::<u32>::new(barred.len());
     let mut first_at: FxHashMap<u32, u32> = FxHashMap::default();
     for (n, b) in barred.iter().enumerate() {
@@ -122,22 +126,25 @@ fn is_restorer(evidence: &Evidence<'_>, cluster: &[Barred], ends: &[NodeId]) -> 
     let (Some(one), None) = (capacitors.next(), capacitors.next()) else { return false };
     let far = circuit.node(one.element, 1 - one.pin.min(1) as usize);
     let rails = &evidence.wiring.rails;
-    let is_moving = rails.source(far).is_some_and(|id| {
-        matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_some())
-    });
+    let is_moving = rails.source(far).is_some_and(
+        |id| matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_some()),
+    );
     far != NodeId::GROUND && (is_moving || !rails.is_rail(far))
 }
 
 fn is_loose(evidence: &Evidence<'_>, cluster: &[Barred]) -> bool {
     let slips = evidence.loose_ends().iter().flat_map(|end| [Some(end.node), end.meant]).flatten();
     let loose: FxHashSet<NodeId> = slips.filter(|&n| n != NodeId::GROUND).collect();
-    cluster.iter().any(|b| b.loose_end || evidence.circuit.pins(b.diode).iter().any(|p| loose.contains(&p.node)))
+    cluster
+        .iter()
+        .any(|b| b.loose_end || evidence.circuit.pins(b.diode).iter().any(|p| loose.contains(&p.node)))
 }
 
 fn judge(evidence: &Evidence<'_>, cluster: &[Barred]) -> Finding {
     let first = cluster[0].diode;
     let names: Vec<String> = cluster.iter().map(|b| evidence.name(b.diode)).collect();
-    let ends: Vec<String> = dead_ends(evidence, cluster).iter().map(|&n| format!("`{}`", evidence.node(n))).collect();
+    let ends: Vec<String> =
+        dead_ends(evidence, cluster).iter().map(|&n| format!("`{}`", evidence.node(n))).collect();
     let (what, verb) = if names.len() == 1 { ("it", "carries") } else { ("they", "carry") };
     let message = format!(
         "{} {verb} no lasting current: nothing but capacitors leads on from {}, which {what} can only charge once",

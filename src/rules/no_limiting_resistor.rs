@@ -73,7 +73,8 @@ fn closed(
     let circuit = evidence.circuit;
     let Some(solution) = case.solutions.first() else { return Vec::new() };
     let carries = |d: &&DiodeResult| {
-        matches!(d.state, State::Conducting | State::Breakdown) && d.current.known().is_some_and(|i| i.abs() > 1e-3)
+        matches!(d.state, State::Conducting | State::Breakdown)
+            && d.current.known().is_some_and(|i| i.abs() > 1e-3)
     };
     if !solution.diodes.iter().any(|d| carries(&d)) {
         return Vec::new();
@@ -150,7 +151,12 @@ fn closed(
     loops.collect()
 }
 
-fn judge(evidence: &Evidence<'_>, operating: &Operating, diodes: &[ElementId], one: &Loop) -> Option<Finding> {
+fn judge(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    diodes: &[ElementId],
+    one: &Loop,
+) -> Option<Finding> {
     let (&first, others) = diodes.split_first()?;
     // a lead that is told, such as a megohm read as a milliohm, is no lead
     if one.leads.iter().any(|&id| evidence.is_told_near(id)) {

@@ -70,7 +70,9 @@ fn odd_ones(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Vec<(ElementId, Ve
         }
     }
     let odd = |&id: &ElementId| {
-        in_matrix(evidence, diodes, &at, id).or_else(|| at_gate(evidence, &at, id)).map(|sisters| (id, sisters))
+        in_matrix(evidence, diodes, &at, id)
+            .or_else(|| at_gate(evidence, &at, id))
+            .map(|sisters| (id, sisters))
     };
     diodes.iter().filter_map(odd).collect()
 }
@@ -79,7 +81,12 @@ type Meeting = FxHashMap<NodeId, Vec<(ElementId, usize)>>;
 
 /// All others at its anode have their cathodes there, all others at its cathode their anodes, and the lines hang together
 /// without it.
-fn in_matrix(evidence: &Evidence<'_>, diodes: &[ElementId], at: &Meeting, id: ElementId) -> Option<Vec<ElementId>> {
+fn in_matrix(
+    evidence: &Evidence<'_>,
+    diodes: &[ElementId],
+    at: &Meeting,
+    id: ElementId,
+) -> Option<Vec<ElementId>> {
     let circuit = evidence.circuit;
     let rails = &evidence.wiring.rails;
     let mut sisters = Vec::new();
@@ -134,8 +141,11 @@ fn judge(evidence: &Evidence<'_>, odd: ElementId, sisters: &[ElementId]) -> Find
     let mut names: Vec<String> = sisters.iter().map(|&id| evidence.name(id)).collect();
     names.sort();
     names.dedup();
-    let message =
-        format!("{} points the other way than {}, which are of its kind and share its nodes", evidence.name(odd), list(&names));
+    let message = format!(
+        "{} points the other way than {}, which are of its kind and share its nodes",
+        evidence.name(odd),
+        list(&names)
+    );
     let mut finding = evidence.about(&RULE, odd, message).label("points back");
     for &id in sisters.iter().take(4) {
         finding = finding.also(evidence.statement(id), "as the others do");

@@ -104,8 +104,10 @@ fn pair_at(evidence: &Evidence<'_>, node: NodeId) -> Option<Opposed> {
     }
     let mut touches = evidence.wiring.touching.carrying(circuit, node);
     let (one, two) = (touches.next()?, touches.next()?);
-    let is_plain =
-        |id| matches!(circuit.element(id).behaviour, Behaviour::Diode { .. }) && !can_break_down(circuit, id, evidence.wiring.available);
+    let is_plain = |id| {
+        matches!(circuit.element(id).behaviour, Behaviour::Diode { .. })
+            && !can_break_down(circuit, id, evidence.wiring.available)
+    };
     let far = |t: crate::topology::Touch| circuit.node(t.element, 1 - t.pin.min(1) as usize);
     let opposed = touches.next().is_none()
         && one.element != two.element

@@ -92,9 +92,9 @@ fn judge(evidence: &Evidence<'_>, node: NodeId, feeds: &[Feed]) -> Vec<Finding> 
         let feeding_pin = if sign > 0.0 { 1 } else { 0 };
         let best = feeds.iter().filter(|f| f.pin == feeding_pin && level(f).1 >= 0.0);
         let good = best.max_by(|a, b| level(a).1.total_cmp(&level(b).1));
-        let turned: Vec<&Feed> = feeds.iter().filter(|f| f.pin != feeding_pin && level(f).0 > SUPPLY).collect();
-        let is_negative =
-            |f: &&Feed| f.pin == feeding_pin && level(f).1 <= 0.0 && level(f).0 < -SUPPLY;
+        let turned: Vec<&Feed> =
+            feeds.iter().filter(|f| f.pin != feeding_pin && level(f).0 > SUPPLY).collect();
+        let is_negative = |f: &&Feed| f.pin == feeding_pin && level(f).1 <= 0.0 && level(f).0 < -SUPPLY;
         let feeds_some = good.is_some_and(|g| level(g).1 > SUPPLY);
         let negative: Vec<&Feed> = feeds.iter().filter(is_negative).filter(|_| feeds_some).collect();
         (good, turned, negative)

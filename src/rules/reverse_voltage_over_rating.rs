@@ -91,7 +91,8 @@ fn over_note(
     volts: f64,
     span: Span,
 ) -> Option<Finding> {
-    if !(time.peak_reverse_voltage > volts * (1.0 + 1e-9)) {
+    let is_over = time.peak_reverse_voltage > volts * (1.0 + 1e-9);
+    if !is_over {
         return None;
     }
     let message = format!(

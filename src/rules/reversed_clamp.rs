@@ -92,7 +92,8 @@ fn arms(evidence: &Evidence<'_>, operating: &Operating, node: NodeId, pin: u32) 
         let rail = evidence.circuit.node(diode, 1 - pin as usize);
         let (low, high) = standing.rail(rail).filter(|_| is_diode)?;
         let seen = standing.diode(diode)?;
-        let plain = !seen.is_led() && !seen.breakdown.is_some_and(|bv| bv <= 1.5 * low.abs().max(high.abs()).max(5.0));
+        let plain = !seen.is_led()
+            && !seen.breakdown.is_some_and(|bv| bv <= 1.5 * low.abs().max(high.abs()).max(5.0));
         plain.then_some(Arm { diode, rail, low, high })
     };
     touches.filter_map(|t| arm(t.element)).collect()
@@ -114,8 +115,12 @@ fn same_way(
     for arms in [out, into] {
         for lower in arms {
             for upper in arms {
-                let surge = [lower, upper].iter().any(|a| standing.diode(a.diode).is_some_and(|d| d.clamps_near(upper.high - lower.low)));
-                let rails = !surge && apart(lower, upper) && (is_ground(lower) || is_ground(upper) || signs(lower, upper));
+                let surge = [lower, upper]
+                    .iter()
+                    .any(|a| standing.diode(a.diode).is_some_and(|d| d.clamps_near(upper.high - lower.low)));
+                let rails = !surge
+                    && apart(lower, upper)
+                    && (is_ground(lower) || is_ground(upper) || signs(lower, upper));
                 if !rails {
                     continue;
                 }
@@ -129,8 +134,11 @@ fn same_way(
                 let message = format!(
                     "{} leads {} and holds `{}` at {} it, so {} ({} `{}`, {}) can never act",
                     evidence.name(wrong.diode),
-                    if away { format!("from `{}` to `{}`", evidence.node(node), evidence.node(wrong.rail)) }
-                    else { format!("from `{}` to `{}`", evidence.node(wrong.rail), evidence.node(node)) },
+                    if away {
+                        format!("from `{}` to `{}`", evidence.node(node), evidence.node(wrong.rail))
+                    } else {
+                        format!("from `{}` to `{}`", evidence.node(wrong.rail), evidence.node(node))
+                    },
                     evidence.node(node),
                     if away { "no more than a drop above" } else { "no less than a drop below" },
                     evidence.name(idle.diode),
@@ -174,8 +182,7 @@ fn wrong_order(evidence: &Evidence<'_>, node: NodeId, into: &[Arm], out: &[Arm])
 fn leads_to(evidence: &Evidence<'_>, node: NodeId) -> Vec<NodeId> {
     let circuit = evidence.circuit;
     let (touching, rails) = (&evidence.wiring.touching, &evidence.wiring.rails);
-    let resistors =
-        touching.direct(circuit, node).filter(|t| is_lead(&circuit.element(t.element).behaviour));
+    let resistors = touching.direct(circuit, node).filter(|t| is_lead(&circuit.element(t.element).behaviour));
     let end = |t: crate::topology::Touch| {
         let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
         touching.walk(circuit, rails, far, t.element, is_lead).end
@@ -192,11 +199,12 @@ fn below(
     out: &[Arm],
 ) -> Option<Wrong> {
     let standing = evidence.standing(operating);
-    let from = into.first().filter(|a| standing.diode(a.diode).is_some_and(|d| d.is_always(State::Conducting)))?;
+    let from =
+        into.first().filter(|a| standing.diode(a.diode).is_some_and(|d| d.is_always(State::Conducting)))?;
     let to = out.first().filter(|to| to.low > from.high)?;
-    let signal = leads_to(evidence, node).into_iter().find(|&rail| {
-        standing.rail(rail).is_some_and(|(_, high)| high < from.low) && rail != from.rail
-    })?;
+    let signal = leads_to(evidence, node)
+        .into_iter()
+        .find(|&rail| standing.rail(rail).is_some_and(|(_, high)| high < from.low) && rail != from.rail)?;
     let volts = standing.rail(signal)?.1;
     let message = format!(
         "{} conducts in every condition: the signal `{}` stands at {}, below the lower rail `{}` of `{}`",
@@ -213,7 +221,8 @@ fn tell(evidence: &Evidence<'_>, node: NodeId, wrong: &Wrong) -> Finding {
     let [main, other] = wrong.diodes;
     let mut finding = evidence.about(&RULE, main.diode, wrong.message.clone());
     finding.label = if wrong.turn { "lies the wrong way round".into() } else { "one of the clamps".into() };
-    finding = finding.also(evidence.statement(other.diode), "the other clamp").about(evidence.name(other.diode));
+    finding =
+        finding.also(evidence.statement(other.diode), "the other clamp").about(evidence.name(other.diode));
     for &rail in &wrong.doubtful {
         if let Some(source) = evidence.wiring.rails.source(rail) {
             finding = finding.also(evidence.statement(source), format!("holds `{}`", evidence.node(rail)));

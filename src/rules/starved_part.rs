@@ -65,7 +65,8 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
             }
         }
     }
-    let judged = starved.iter().filter_map(|(&region, feeders)| judge(evidence, &regions, region, feeders, operating));
+    let judged =
+        starved.iter().filter_map(|(&region, feeders)| judge(evidence, &regions, region, feeders, operating));
     judged.collect()
 }
 
@@ -130,7 +131,9 @@ fn consumers(evidence: &Evidence<'_>, regions: &Regions, region: u32) -> Vec<Ele
     let is_inside = |id: ElementId| {
         circuit.pins(id).iter().take(2).any(|p| !rails.is_rail(p.node) && regions.region(p.node) == region)
     };
-    let takes = |b: &Behaviour| matches!(b, Behaviour::Resistor(_) | Behaviour::Inductor { .. } | Behaviour::Transistor { .. });
+    let takes = |b: &Behaviour| {
+        matches!(b, Behaviour::Resistor(_) | Behaviour::Inductor { .. } | Behaviour::Transistor { .. })
+    };
     circuit.elements().filter(|(id, e)| takes(&e.behaviour) && is_inside(*id)).map(|(id, _)| id).collect()
 }
 

@@ -56,7 +56,13 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
 }
 
 /// Leads from the node at the far end to other rails; each pair is told from the element that is written first.
-fn beyond(evidence: &Evidence<'_>, operating: &Operating, id: ElementId, rail: NodeId, node: NodeId) -> Vec<Finding> {
+fn beyond(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    id: ElementId,
+    rail: NodeId,
+    node: NodeId,
+) -> Vec<Finding> {
     let circuit = evidence.circuit;
     let lead = |touch: &Touch| {
         let Behaviour::Resistor(ohms) = &circuit.element(touch.element).behaviour else { return None };
@@ -78,9 +84,7 @@ fn judge(
     let standing = evidence.standing(operating);
     let rails = &evidence.wiring.rails;
     let (source, other) = (rails.source(one)?, rails.source(two)?);
-    let is_steady = |id: ElementId| {
-        matches!(&evidence.circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none())
-    };
+    let is_steady = |id: ElementId| matches!(&evidence.circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none());
     let (a, b) = (standing.rail(one)?, standing.rail(two)?);
     // ammeters and references of 0 V are no supplies
     let least = a.0.abs().min(b.0.abs());

@@ -76,7 +76,8 @@ fn uneven(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Vec<[ElementId; 4]> 
     for &id in diodes {
         from.entry(circuit.node(id, 0)).or_default().push((circuit.node(id, 1), id));
     }
-    let onward = |node: NodeId| from.get(&node).map_or(&[][..], |list| if list.len() > MOST { &[] } else { list });
+    let onward =
+        |node: NodeId| from.get(&node).map_or(&[][..], |list| if list.len() > MOST { &[] } else { list });
     let mut rings = Vec::new();
     for &single in diodes {
         let (start, end) = (circuit.node(single, 0), circuit.node(single, 1));

@@ -55,7 +55,9 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         .filter(|&n| n != NodeId::GROUND)
         .collect();
     let is_told = |part: &&Unfed| {
-        part.nodes.iter().any(|n| beyond.contains(n)) || part.nodes.iter().any(|n| loose.contains(n)) || part.nodes.iter().all(|&n| related.of(n) != 0)
+        part.nodes.iter().any(|n| beyond.contains(n))
+            || part.nodes.iter().any(|n| loose.contains(n))
+            || part.nodes.iter().all(|&n| related.of(n) != 0)
     };
     evidence.wiring.unfed.iter().filter(|part| !is_told(part)).map(|part| judge(evidence, part)).collect()
 }
@@ -77,7 +79,9 @@ fn judge(evidence: &Evidence<'_>, part: &Unfed) -> Finding {
         part.nodes.iter().filter(|&&n| n != NodeId::GROUND).map(|&n| evidence.node(n)).collect();
     let place = match nodes.as_slice() {
         [one] => format!("node `{one}`"),
-        many => format!("{} around `{}`", count(many.len(), "node"), many.first().map_or("0", String::as_str)),
+        many => {
+            format!("{} around `{}`", count(many.len(), "node"), many.first().map_or("0", String::as_str))
+        }
     };
     let message = format!("no source drives {}: they carry no current ({place})", list(&names));
     let mut finding = evidence.about(&RULE, first, message).label("carries nothing");

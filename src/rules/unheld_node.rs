@@ -65,7 +65,8 @@ fn undriven(evidence: &Evidence<'_>) -> Vec<Finding> {
         let names: Vec<String> = touches.iter().map(|t| evidence.name(t.element)).collect();
         let Some(pin) = circuit.pins(touches[0].element).get(touches[0].pin as usize) else { continue };
         let scope = circuit.element(touches[0].element).scope;
-        let message = format!("nothing drives node `{}`: {} only listen to it", evidence.node(node), list(&names));
+        let message =
+            format!("nothing drives node `{}`: {} only listen to it", evidence.node(node), list(&names));
         let mut finding = evidence
             .at(&RULE, scope, pin.span, message)
             .label("only inputs touch this node")

@@ -71,7 +71,10 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         // a current source drives on whatever stands in its way
         let ends = evidence.circuit.pins(id).iter().map(|p| p.node).collect::<Vec<_>>();
         let drivers = ends.iter().flat_map(|&n| evidence.wiring.touching.at(n)).filter(|t| {
-            matches!(evidence.circuit.element(t.element).behaviour, crate::circuit::Behaviour::CurrentSource(_))
+            matches!(
+                evidence.circuit.element(t.element).behaviour,
+                crate::circuit::Behaviour::CurrentSource(_)
+            )
         });
         finding.subjects.extend(drivers.map(|t| evidence.name(t.element)).collect::<Vec<_>>());
         finding.help(format!("{} {}", RULE.why, RULE.remedy))

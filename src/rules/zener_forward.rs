@@ -34,8 +34,7 @@ pub const RULE: Rule = Rule {
 const SILICON: f64 = 0.35;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    let diodes =
-        evidence.circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
+    let diodes = evidence.circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
     diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
 }
 
@@ -65,7 +64,8 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     let feeds = evidence.wiring.touching.direct(circuit, free).filter(|t| t.element != id);
     for touch in feeds.take(4).collect::<Vec<_>>() {
         let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
-        let end = evidence.wiring.touching.walk(circuit, rails, far, touch.element, crate::topology::is_lead).end;
+        let end =
+            evidence.wiring.touching.walk(circuit, rails, far, touch.element, crate::topology::is_lead).end;
         if let Some(source) = rails.source(end) {
             finding.subjects.extend([evidence.name(source), evidence.node(end)]);
         }

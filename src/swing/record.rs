@@ -29,7 +29,7 @@ pub(super) struct Recorder<'a> {
 
 /// Weights of the beginning, the middle and the end of a step by the parabola through them (interpolatory rule on 0,
 /// γ = 1 − 1/√2 and 1). Where nothing is stored no charge has to balance, so they may stand in for the method's own.
-const PARABOLA: [f64; 3] = [-0.069_035_593_728_849_2, 0.804_737_854_124_365_2, 0.264_297_739_604_484_0];
+const PARABOLA: [f64; 3] = [-0.069_035_593_728_849_2, 0.804_737_854_124_365_2, 0.264_297_739_604_484];
 
 #[derive(Default)]
 struct DiodeRecord {
