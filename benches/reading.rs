@@ -22,13 +22,16 @@ const LINES: u32 = 1_000_000;
 /// Rounds; each runs every stage once, so that what else the machine does falls on all of them.
 const ROUNDS: usize = 9;
 
+/// Name, text, and what is done with it.
+type Stage<'a> = (&'a str, &'a str, fn(&str) -> usize);
+
 fn main() {
     // asked by `cargo test` whether there are tests in here
     if std::env::args().any(|argument| argument == "--test" || argument == "--list") {
         return;
     }
     let (clean, loose) = (text(false), text(true));
-    let stages: [(&str, &str, fn(&str) -> usize); 5] = [
+    let stages: [Stage<'_>; 5] = [
         ("floor", &clean, floor),
         ("lines and words", &clean, words),
         ("read: nodes, values, models, instances", &clean, read),

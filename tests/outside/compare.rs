@@ -232,15 +232,25 @@ impl Differences<'_> {
         }
         let (parts, holders) = divide(self.circuit, Division::Direct);
         let contested = self.contested(&parts, &holders);
-        // what the other parts push through a source of 0 V decides how much of it an ideal diode beside it may carry,
-        // and what a part without a solution pushes is not defined
-        let ideal = |at: &usize| matches!(&self.circuit.elements[*at].kind, Kind::D(d) if d.drop.is_zero() && d.series.is_zero());
+        // what the other parts push through a source of 0 V decides how much of it an ideal diode beside it may carry
         let pushes = |at: &usize| matches!(self.circuit.elements[*at].kind, Kind::I(_) | Kind::R(_));
         let fed = parts.iter().any(|part| part.nodes.is_empty() && part.elements.iter().any(pushes));
-        let idle =
-            holders.iter().any(|&at| matches!(self.circuit.elements[at].kind, Kind::V(v) if v.is_zero()));
+        let idle = self.idle_nodes(&holders);
+        // and what a part without a solution pushes is not defined
+        let unsolved: Vec<bool> =
+            parts.iter().map(|part| !solve(&self.alone(part, &holders)).solvable()).collect();
+        let undefined: Vec<usize> = parts
+            .iter()
+            .zip(&unsolved)
+            .filter(|(_, unsolved)| **unsolved)
+            .flat_map(|(part, _)| self.ends(part))
+            .filter(|node| idle.contains(node))
+            .collect();
+        let ideal = |at: &usize| matches!(&self.circuit.elements[*at].kind, Kind::D(d) if d.drop.is_zero() && d.series.is_zero());
         for part in parts {
-            if idle && (part.nodes.is_empty() && fed || part.elements.iter().any(ideal)) {
+            let beside = part.elements.iter().any(ideal)
+                && self.ends(&part).iter().any(|node| undefined.contains(node));
+            if beside || part.nodes.is_empty() && fed && !idle.is_empty() {
                 continue;
             }
             let alone = self.alone(&part, &holders);
@@ -269,6 +279,18 @@ impl Differences<'_> {
             found.part(&Named::new(analysis, solution), &answer, &part.nodes, &inside);
             self.list.extend(found.list);
         }
+    }
+
+    fn ends(&self, part: &Part) -> Vec<usize> {
+        let elements = part.elements.iter().map(|&at| &self.circuit.elements[at]);
+        elements.flat_map(|e| [e.from, e.to]).collect()
+    }
+
+    /// Nodes that sources of 0 V hold.
+    fn idle_nodes(&self, holders: &[usize]) -> Vec<usize> {
+        let holders = holders.iter().map(|&at| &self.circuit.elements[at]);
+        let idle = holders.filter(|e| matches!(e.kind, Kind::V(v) if v.is_zero()));
+        idle.flat_map(|e| [e.from, e.to]).filter(|&node| node != 0).collect()
     }
 
     fn alone(&self, part: &Part, holders: &[usize]) -> Circuit {
