@@ -29,3 +29,5 @@ mod shorts;
 mod shrink;
 #[path = "outside/theorems.rs"]
 mod theorems;
+#[path = "outside/time.rs"]
+mod time;

@@ -9,7 +9,7 @@ use crate::complementarity::stepping::Segment;
 const LEAST_HALVINGS: u32 = 4;
 
 /// Finest step as halvings of the fastest period, by the number of diodes of a part.
-const FINEST: [(usize, u32); 3] = [(16, 22), (64, 18), (usize::MAX, 13)];
+const FINEST: [(usize, u32); 3] = [(16, 20), (64, 17), (usize::MAX, 13)];
 
 /// Periods of the slowest source that are walked through where there is no common period.
 const PERIODS: f64 = 10.0;
@@ -78,6 +78,12 @@ impl Timing {
     /// Ends of the stretches between two times in which no source has a corner.
     pub fn edges(&self, shapes: &[&Shape], from: f64, to: f64) -> Vec<f64> {
         let mut edges = vec![from, to];
+        if let Some(period) = self.period.filter(|period| (to - from) < rhythm::MOST_CORNERS as f64 * period)
+        {
+            // period by period, counted from the end, so that each is divided as the window is
+            let count = ((to - from) / period - 1e-9).floor().max(0.0) as u64;
+            edges.extend((1..=count).map(|n| to - n as f64 * period).filter(|t| *t > from));
+        }
         for shape in shapes {
             rhythm::corners(shape, from, to, &mut edges);
         }

@@ -55,6 +55,87 @@ fn states_obey_their_schema() {
     }
 }
 
+#[test]
+fn swings_obey_their_schema() {
+    let schema = schema("swing.schema.json");
+    for name in fixtures() {
+        check(&schema, &run(&["swing", &name, "--format", "json"]).out, &name);
+    }
+    for netlist in [
+        "",
+        "t\nV1 a 0 SIN(0 5 50)\nD1 a b DX\nR1 b 0 1k\n.model DX D\n",
+        "t\nV1 a 0 SIN(0 5 50)\nD1 a 0 DX\n.model DX D\n",
+        "t\nV1 a 0 SIN(0 5 50)\nQ1 a b 0 QN\nD1 a b DX\n.model DX D\n.model QN NPN\n",
+        "t\nC1 a 0 1u IC=1\nR1 a 0 1k\n.tran 1u 1m uic\n",
+        "t\nC1 a 0 1u IC=1\nD1 a b DX\nC2 b 0 1u\n.tran 1u 1m uic\n.model DX D\n",
+    ] {
+        check(&schema, &feed(&["swing", "-", "--format", "json"], netlist).out, netlist);
+    }
+    let text = feed(
+        &["swing", "-", "--format", "json"],
+        "t\nV1 a 0 SIN(0 5 50)\nD1 a b DX\nR1 b 0 1k\n.model DX D\n",
+    )
+    .out;
+    let mut wrong = check(&schema, &text, "a half wave");
+    wrong["diodes"][0]["conducting_share"] = 2.into();
+    assert!(!schema.is_valid(&wrong));
+    assert_order(
+        &text,
+        &[
+            "format",
+            "version",
+            "file",
+            "span_s",
+            "period_s",
+            "periodic",
+            "diodes",
+            "name",
+            "conducting_share",
+            "intervals_s",
+            "current_mean_A",
+            "current_rms_A",
+            "current_peak_A",
+            "charge_span_A",
+            "decades",
+            "peak_reverse_V",
+            "over_conditions",
+            "nodes",
+            "name",
+            "mean_V",
+            "min_V",
+            "max_V",
+            "ripple_V",
+        ],
+    );
+}
+
+#[test]
+fn pictures_are_drawn_and_the_same_every_time() {
+    let folder = std::env::temp_dir().join(format!("kneewise-pictures-{}", std::process::id()));
+    std::fs::create_dir_all(&folder).unwrap();
+    for (name, begins) in [("a.svg", "<svg"), ("b.html", "<!doctype html>")] {
+        let path = folder.join(name).display().to_string();
+        let mut drawn = Vec::new();
+        for _ in 0..2 {
+            run(&["swing", "fixtures/bench-supply.net", "--plot", &path]);
+            drawn.push(std::fs::read_to_string(&path).unwrap());
+        }
+        assert_eq!(drawn[0], drawn[1]);
+        assert!(drawn[0].starts_with(begins), "{}", &drawn[0][..80]);
+        for word in [
+            "conducting",
+            "blocking",
+            "v(raw)",
+            "peak to peak",
+            "where the drop holds",
+            "prefers-color-scheme",
+        ] {
+            assert!(drawn[0].contains(word), "{name} says nothing of {word}");
+        }
+    }
+    std::fs::remove_dir_all(&folder).unwrap();
+}
+
 /// Fails unless these keys stand in this order, others between them or not.
 fn assert_order(text: &str, keys: &[&str]) {
     let mut rest = text;

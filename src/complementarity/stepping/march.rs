@@ -221,6 +221,7 @@ impl March {
             if self.steps & 63 == 0 && (limits.is_cancelled)() {
                 return End::Cancelled;
             }
+            self.spent += std::mem::take(&mut self.solver.uncounted);
             if self.spent > limits.budget {
                 return End::Spent;
             }
@@ -353,6 +354,7 @@ impl March {
             let weight = (1.0 - GAMMA) / GAMMA;
             if let Some(kept) = self.solver.transfer(g) {
                 let m = self.states.len();
+                self.spent += 2 * (m * m * m) as u64;
                 for column in derivative.chunks_exact_mut(m.max(1)) {
                     let first: Vec<f64> = (0..m).map(|row| kept.transfer(row, column)).collect();
                     let middle: Vec<f64> =

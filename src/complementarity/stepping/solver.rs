@@ -45,6 +45,8 @@ pub(crate) struct Solver {
     sparse: Option<Box<Sparse>>,
     /// Factorizations done.
     pub(crate) factorizations: u64,
+    /// Work that they took and nobody has counted yet, in multiplications.
+    pub(super) uncounted: u64,
     right: Vec<f64>,
     unknowns: Vec<f64>,
 }
@@ -68,6 +70,7 @@ impl Solver {
             kept_size: 0,
             sparse,
             factorizations: 0,
+            uncounted: 0,
             right: vec![0.0; n],
             unknowns: vec![0.0; n],
         };
@@ -92,6 +95,13 @@ impl Solver {
             None => (60 + (m + d) * (m + k + 1)) as u64,
             Some(sparse) => sparse.cost(),
         }
+    }
+
+    /// What condensing a stage costs, in multiplications.
+    fn condensing(&self) -> u64 {
+        let n = self.system.unknowns() as u64;
+        let width = (self.system.cells.len() + self.system.inputs + 1) as u64;
+        n * n * (n / 3 + 2 * width) + 1000
     }
 
     /// The modes of the junctions.
@@ -131,6 +141,7 @@ impl Solver {
         }
         let Some(made) = Condensed::new(&self.system, &self.pattern, &|_| g) else { return false };
         self.factorizations += 1;
+        self.uncounted += self.condensing();
         let is_done = made.stage(from, inputs, answer);
         if self.kept_size > MOST_KEPT {
             self.kept.clear();
@@ -154,6 +165,7 @@ impl Solver {
             return self.sparse_stage(&g, f64::NAN, from, inputs, answer);
         }
         self.factorizations += 1;
+        self.uncounted += self.condensing();
         let made = Condensed::new(&self.system, &self.pattern, &g);
         made.is_some_and(|made| made.stage(from, inputs, answer))
     }
@@ -166,14 +178,18 @@ impl Solver {
         inputs: &[f64],
         answer: &mut Answer,
     ) -> bool {
-        let Solver { system, pattern, pattern_id, sparse, right, unknowns, factorizations, .. } = self;
+        let Solver {
+            system, pattern, pattern_id, sparse, right, unknowns, factorizations, uncounted, ..
+        } = self;
         let Some(sparse) = sparse else { return false };
+        let before = *factorizations;
         system.right_side(&pattern.modes, &pattern.closed, g, from, inputs, right);
         if !sparse.prepare(system, pattern, (*pattern_id, bits(key)), g, factorizations)
             || !sparse.solve(right, unknowns)
         {
             return false;
         }
+        *uncounted += (*factorizations - before) * 8 * sparse.cost();
         answer.states.resize(system.cells.len(), 0.0);
         system.states(unknowns, inputs, &mut answer.states);
         answer.tests.clear();
