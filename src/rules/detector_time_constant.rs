@@ -32,7 +32,7 @@ pub const RULE: Rule = Rule {
               VU c2 c1 SIN(0 0.8 51k)\n\
               VL rf c2 SIN(0 0.8 49k)\n\
               D1 rf env DDET\n\
-              C1 env 0 6.8n\n\
+              C1 env 0 3.9n\n\
               R1 env 0 10k\n\
               .model DDET D(RS=10)\n\
               *@ made-of DDET germanium\n",

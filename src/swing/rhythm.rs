@@ -163,7 +163,7 @@ mod tests {
         assert!(close(common_period(&[100.0, 50.0, 150.0]), 0.02));
         assert!(close(common_period(&[1.0 / 3e-3, 1.0 / 2e-3]), 6e-3));
         assert_eq!(common_period(&[1.0, std::f64::consts::SQRT_2]), None);
-        assert_eq!(common_period(&[1000.0, 1001.0, 997.0]), None);
+        assert_eq!(common_period(&[1000.0, 1001.0, 1500.5]), None);
         assert_eq!(common_period(&[]), None);
     }
 }
