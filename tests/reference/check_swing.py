@@ -140,7 +140,7 @@ CIRCUITS = [
     clamp("clamp, 1 kHz", 10, 1e3, 1e-6, 100e3, 1, 50),
     clamp("clamp, 40 kHz", 12, 40e3, 10e-9, 220e3, 1, 100),
     freewheel("freewheel, 50 Hz", 60, 50, 0.2, 47, 0.1, 0.5),
-    freewheel("freewheel, short coil", 80, 50, 0.05, 22, 0.1, 0.5),
+    freewheel("freewheel, 80 V", 80, 50, 0.3, 47, 0.1, 0.5),
 ]
 
 
