@@ -235,25 +235,19 @@ impl Differences<'_> {
         // what the other parts push through a source of 0 V decides how much of it an ideal diode beside it may carry
         let pushes = |at: &usize| matches!(self.circuit.elements[*at].kind, Kind::I(_) | Kind::R(_));
         let fed = parts.iter().any(|part| part.nodes.is_empty() && part.elements.iter().any(pushes));
-        let idle = self.idle_nodes(&holders);
-        // and what a part without a solution pushes is not defined
-        let unsolved: Vec<bool> =
-            parts.iter().map(|part| !solve(&self.alone(part, &holders)).solvable()).collect();
-        let undefined: Vec<usize> = parts
-            .iter()
-            .zip(&unsolved)
-            .filter(|(_, unsolved)| **unsolved)
-            .flat_map(|(part, _)| self.ends(part))
-            .filter(|node| idle.contains(node))
-            .collect();
+        let idle = self.idle_nodes();
+        let touched: Vec<Vec<usize>> = parts.iter().map(|part| self.ends(part)).collect();
+        let on_idle = |ends: &[usize]| ends.iter().any(|node| idle.contains(node));
         let ideal = |at: &usize| matches!(&self.circuit.elements[*at].kind, Kind::D(d) if d.drop.is_zero() && d.series.is_zero());
-        for part in parts {
+        for (number, part) in parts.iter().enumerate() {
+            let others = touched.iter().enumerate().filter(|(other, _)| *other != number);
             let beside = part.elements.iter().any(ideal)
-                && self.ends(&part).iter().any(|node| undefined.contains(node));
+                && on_idle(&touched[number])
+                && others.into_iter().any(|(_, ends)| on_idle(ends));
             if beside || part.nodes.is_empty() && fed && !idle.is_empty() {
                 continue;
             }
-            let alone = self.alone(&part, &holders);
+            let alone = self.alone(part, &holders);
             let answer = solve(&alone);
             let ends =
                 part.elements.iter().map(|&at| &self.circuit.elements[at]).flat_map(|e| [e.from, e.to]);
@@ -286,10 +280,9 @@ impl Differences<'_> {
         elements.flat_map(|e| [e.from, e.to]).collect()
     }
 
-    /// Nodes that sources of 0 V hold.
-    fn idle_nodes(&self, holders: &[usize]) -> Vec<usize> {
-        let holders = holders.iter().map(|&at| &self.circuit.elements[at]);
-        let idle = holders.filter(|e| matches!(e.kind, Kind::V(v) if v.is_zero()));
+    /// Nodes at sources of 0 V.
+    fn idle_nodes(&self) -> Vec<usize> {
+        let idle = self.circuit.elements.iter().filter(|e| matches!(e.kind, Kind::V(v) if v.is_zero()));
         idle.flat_map(|e| [e.from, e.to]).filter(|&node| node != 0).collect()
     }
 
