@@ -79,15 +79,17 @@ fn check(console: &mut Console, command: &Check) -> Result<End, String> {
             }
         }
     }
-    for mut record in shelf.records() {
+    let mut settings_records = shelf.records();
+    for record in &mut settings_records {
         if let Some(old) = &mut old {
-            old.sift_settings(&mut record);
+            old.sift_settings(record);
         }
         let mut own = Summary::default();
-        own.add(&record);
+        own.add(record);
         fails |= command.common.fails_on(None, own.worst());
-        records.insert(0, record);
     }
+    // what the settings say stands before what they are used for
+    records.splice(0..0, settings_records);
     failed |= !show(console, command, &records);
     Ok(match (failed, fails) {
         (true, _) => End::Failed,
@@ -136,11 +138,11 @@ fn included(jobs: &[Job], outcomes: &[Result<Record, String>]) -> BTreeSet<usize
             .collect();
     }
     // of two that include each other the first stays
-    let is_part = |&n: &usize| {
-        (0..jobs.len())
-            .any(|other| includes[other].contains(&n) && !(includes[n].contains(&other) && n < other))
-    };
-    (0..jobs.len()).filter(|&n| jobs[n].walked).filter(is_part).collect()
+    let mut parts = BTreeSet::new();
+    for (whole, list) in includes.iter().enumerate() {
+        parts.extend(list.iter().filter(|&&n| !(n < whole && includes[n].contains(&whole))));
+    }
+    parts
 }
 
 /// What was told about included files: two netlists that share a file share its findings, told once.

@@ -5,7 +5,8 @@ use std::sync::atomic::{AtomicUsize, Ordering};
 use std::sync::mpsc;
 use std::thread;
 
-/// As much as the main thread has: deep circuits need it.
+/// Bytes of stack for each thread: twice what a main thread usually has, since the default of other threads is too
+/// little for deep circuits.
 const STACK: usize = 16 << 20;
 
 /// Does `work` on every job, on as many threads as the machine has; `done` hears how many are finished.

@@ -3,13 +3,14 @@
 
 use super::figures::agree;
 use super::mark::marks;
+use super::wording::is_mark;
 use crate::analysis::Analysis;
 use crate::syntax::{Line, LineKind, Token, lines, tokens};
 use crate::text::{Encoding, FileId, Span, decode, encode, original_offsets};
 use std::collections::BTreeMap;
 use std::ops::Range;
 
-/// How a mark begins; white space follows.
+/// How a mark begins; white space follows, and words of its grammar.
 const SIGN: &str = ";@";
 
 /// One mark that is put, renewed or taken away.
@@ -112,8 +113,9 @@ fn statement(text: &str, line: &Line, tokens: &[Token], wanted: Option<&String>,
         let is_comment = shown.trim_start_matches(|c: char| c <= ' ').starts_with(['*', ';', '$']);
         if !is_comment || last {
             let from = comment_start(tokens, start, line_end);
-            let mark = mark_at(text, from..line_end);
-            out.extend(edit(text, name, mark, line_end, wanted.filter(|_| last)));
+            let mut marks = marks_in(text, from..line_end).into_iter();
+            out.extend(edit(text, name, marks.next(), line_end, wanted.filter(|_| last)));
+            out.extend(marks.filter_map(|mark| edit(text, name, Some(mark), line_end, None)));
         }
         start += physical.len();
     }
@@ -126,17 +128,20 @@ fn comment_start(tokens: &[Token], start: usize, end: usize) -> usize {
     last.map_or(start, |t| (t.end as usize).clamp(start, end))
 }
 
-/// The mark in a trailing comment: from its sign to the line's end.
-fn mark_at(text: &str, comment: Range<usize>) -> Option<Range<usize>> {
-    let inside = text.get(comment.clone())?;
-    let is_sign = |at: &usize| {
-        let after = inside.get(at + SIGN.len()..).unwrap_or("");
-        after.is_empty() || after.starts_with([' ', '\t'])
-    };
-    let at = inside.match_indices(SIGN).map(|(at, _)| at).find(is_sign)?;
-    Some(comment.start + at..comment.end)
+/// The marks in a trailing comment, each with its sign. What only begins like one is a person's and stays; so is what
+/// follows one behind a `;`.
+fn marks_in(text: &str, comment: Range<usize>) -> Vec<Range<usize>> {
+    let Some(inside) = text.get(comment.clone()) else { return Vec::new() };
+    let found = inside.match_indices(SIGN).filter_map(|(at, _)| {
+        let said = inside.get(at + SIGN.len()..)?;
+        let said = said.split(';').next().unwrap_or("").trim_end_matches(|c: char| c <= ' ');
+        let start = comment.start + at;
+        (said.starts_with([' ', '\t']) && is_mark(said)).then(|| start..start + SIGN.len() + said.len())
+    });
+    found.collect()
 }
 
+/// What becomes of one mark, or where there is none, of the line's end.
 fn edit(
     text: &str,
     name: &str,
@@ -209,6 +214,31 @@ mod tests {
         assert_eq!(marked("D1 a 0 DX ;@todo"), format!("D1 a 0 DX ;@todo {MARK}"));
         assert_eq!(marked("R2 a 0 1k ;@ conducting 4.30mA"), "R2 a 0 1k");
         assert_eq!(marked("*D1 a 0 DX ;@ blocking"), "*D1 a 0 DX ;@ blocking");
+    }
+
+    #[test]
+    fn a_persons_words_stay_whatever_they_begin_with() {
+        for words in [
+            ";@ todo: check",
+            ";@",
+            ";@ blocking?",
+            ";@ blocking in the cold",
+            ";@ conducting 4.30mA measured",
+            ";@ open question",
+            ";@ see X | Y",
+        ] {
+            let line = format!("D1 a 0 DX {words}");
+            assert_eq!(marked(&line), format!("{line} {MARK}"));
+            let other = format!("R2 a 0 1k {words}");
+            assert_eq!(marked(&other), other);
+            assert_eq!(strip(line.as_bytes()), line.as_bytes());
+        }
+        let line = "D1 a 0 DX ;@ blocking -3V ; pressure cell";
+        assert_eq!(marked(line), format!("D1 a 0 DX {MARK} ; pressure cell"));
+        assert_eq!(marked("R2 a 0 1k ;@ blocking -3V ; pressure cell"), "R2 a 0 1k ; pressure cell");
+        assert_eq!(strip(format!("t\n{line}\n").as_bytes()), b"t\nD1 a 0 DX ; pressure cell\n");
+        // one mark is enough
+        assert_eq!(marked("D1 a 0 DX ;@ blocking -3V ;@ todo ;@ open"), format!("D1 a 0 DX {MARK} ;@ todo"));
     }
 
     #[test]

@@ -68,6 +68,22 @@ fn ends_agree(old: &str, new: &str) -> bool {
     a.unit == b.unit && (a.value - b.value).abs() <= slack
 }
 
+/// Whether a word is one or two printed numbers of a unit, `A` or `V`: `4.31mA`, `-3.20V..inf`.
+pub(super) fn is_span(word: &str, unit: char) -> bool {
+    let is_number = |text: &str| {
+        text.trim_start_matches('-').starts_with(|c: char| c.is_ascii_digit())
+            && Printed::read(text).is_some_and(|p| p.unit == unit)
+    };
+    match word.split_once("..") {
+        None => is_number(word),
+        Some((low, high)) => {
+            (low == "-inf" || is_number(low))
+                && (high == "inf" || is_number(high))
+                && (low, high) != ("-inf", "inf")
+        }
+    }
+}
+
 /// A printed number read back.
 struct Printed {
     value: f64,

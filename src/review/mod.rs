@@ -8,6 +8,7 @@ mod figures;
 mod mark;
 mod record;
 mod save;
+mod wording;
 
 pub use annotate::{Annotated, Change, annotate, strip};
 pub use baseline::Baseline;

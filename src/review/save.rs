@@ -59,7 +59,12 @@ impl Desk for DiskDesk {
         fs::read(path)
     }
     fn create(&mut self, path: &Path) -> io::Result<()> {
-        self.file = Some(OpenOptions::new().write(true).create_new(true).open(path)?);
+        let mut options = OpenOptions::new();
+        options.write(true).create_new(true);
+        // nobody else may read it before it has the permissions of the old file
+        #[cfg(unix)]
+        std::os::unix::fs::OpenOptionsExt::mode(&mut options, 0o600);
+        self.file = Some(options.open(path)?);
         Ok(())
     }
     fn write(&mut self, bytes: &[u8]) -> io::Result<usize> {

@@ -5,6 +5,7 @@ use crate::circuit::{Behaviour, ElementId, NodeId, Shape};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 use crate::swing::{OverTime, Swing};
+use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "detector-time-constant",
@@ -126,22 +127,25 @@ fn longest_gap(time: &OverTime, period: f64) -> f64 {
 /// R·C of a node to which a capacitor and resistors lead, all to one and the same other node.
 fn time_constant(evidence: &Evidence<'_>, diode: ElementId, node: NodeId) -> Option<f64> {
     let circuit = evidence.circuit;
-    let (mut farads, mut siemens) = (0.0, 0.0);
-    let mut far: Option<NodeId> = None;
+    // by the other node: whether a coupling part stands first in the file must not matter
+    let mut far: BTreeMap<NodeId, (f64, f64)> = BTreeMap::new();
     for touch in evidence.wiring.touching.at(node) {
         let id = touch.element;
         if id == diode {
             continue;
         }
-        let other = circuit.pins(id).iter().map(|p| p.node).find(|n| *n != node);
+        let Some(other) = circuit.pins(id).iter().map(|p| p.node).find(|n| *n != node) else { continue };
         match &circuit.element(id).behaviour {
-            Behaviour::Capacitor { farads: c, .. } if far.is_none() || far == other => {
-                farads += c.number;
-                far = other;
+            Behaviour::Capacitor { farads, .. } if farads.number > 0.0 => {
+                far.entry(other).or_default().0 += farads.number;
             }
-            Behaviour::Resistor(ohms) if ohms.number > 0.0 => siemens += 1.0 / ohms.number,
+            Behaviour::Resistor(ohms) if ohms.number > 0.0 => {
+                far.entry(other).or_default().1 += 1.0 / ohms.number;
+            }
             _ => {}
         }
     }
-    (farads > 0.0 && siemens > 0.0).then(|| farads / siemens)
+    // of several the largest capacitor smooths
+    let both = far.into_values().filter(|(farads, siemens)| *farads > 0.0 && *siemens > 0.0);
+    both.max_by(|a, b| a.0.total_cmp(&b.0)).map(|(farads, siemens)| farads / siemens)
 }

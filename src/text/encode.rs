@@ -8,20 +8,25 @@ use super::decode::Encoding;
 pub fn original_offsets(bytes: &[u8], encoding: Encoding, places: &[usize]) -> Vec<usize> {
     let mut walk = lengths(bytes, encoding);
     let (mut decoded, mut original) = (0, mark_length(bytes, encoding));
+    // what is left of a long stretch that is alike in both and was entered in the middle
+    let mut alike = 0;
     let offset = |&place: &usize| {
         while decoded < place {
-            let Some((in_text, in_file)) = walk.next() else { break };
-            // a long stretch that is alike in both is entered in the middle
-            let step = if in_text == in_file { in_text.min(place - decoded) } else { in_text };
-            decoded += step;
-            original += if in_text == in_file { step } else { in_file };
-            if step < in_text {
-                let rest = in_text - step;
-                walk = Box::new(
-                    std::iter::once((rest, rest))
-                        .chain(std::mem::replace(&mut walk, Box::new(std::iter::empty()))),
-                );
+            if alike == 0 {
+                match walk.next() {
+                    Some((in_text, in_file)) if in_text == in_file => alike = in_text,
+                    Some((in_text, in_file)) => {
+                        decoded += in_text;
+                        original += in_file;
+                        continue;
+                    }
+                    None => break,
+                }
             }
+            let step = alike.min(place - decoded);
+            decoded += step;
+            original += step;
+            alike -= step;
         }
         original
     };
@@ -116,6 +121,17 @@ mod tests {
             check(&[&order[..], &bytes, &[0x00, 0xD8, 0x41, 0x00], &[0x41]].concat());
         }
         check(b"");
+    }
+
+    #[test]
+    fn a_million_places_are_found() {
+        let bytes = vec![b'a'; 1_000_000];
+        let places: Vec<usize> = (0..=bytes.len()).collect();
+        assert_eq!(original_offsets(&bytes, Encoding::Utf8, &places), places);
+        let stray = [&bytes[..], b"\xB5", &bytes].concat();
+        let (text, encoding) = decode(&stray[..]);
+        let places: Vec<usize> = text.char_indices().map(|(at, _)| at).collect();
+        assert!(original_offsets(&stray, encoding, &places).into_iter().eq(0..stray.len()));
     }
 
     #[test]

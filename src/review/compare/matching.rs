@@ -2,7 +2,7 @@
 
 use super::nodes::Nodes;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
-use std::collections::{BTreeMap, BTreeSet};
+use std::collections::{BTreeMap, BTreeSet, VecDeque};
 
 /// An element of both revisions.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -29,13 +29,13 @@ impl Pairs {
     /// Matches two circuits.
     pub fn of(old: &Circuit, new: &Circuit) -> Self {
         let mut pairs = Pairs::default();
-        let mut by_name: BTreeMap<(u8, String), Vec<ElementId>> = BTreeMap::new();
+        let mut by_name: BTreeMap<(u8, String), VecDeque<ElementId>> = BTreeMap::new();
         for (id, element) in new.elements() {
-            by_name.entry((element.letter, new.element_name(id).to_lowercase())).or_default().push(id);
+            by_name.entry((element.letter, new.element_name(id).to_lowercase())).or_default().push_back(id);
         }
         for (id, element) in old.elements() {
             let key = (element.letter, old.element_name(id).to_lowercase());
-            let found = by_name.get_mut(&key).filter(|ids| !ids.is_empty()).map(|ids| ids.remove(0));
+            let found = by_name.get_mut(&key).and_then(VecDeque::pop_front);
             match found {
                 Some(other) => pairs.push(id, other, false),
                 None => pairs.gone.push(id),
@@ -66,20 +66,18 @@ impl Pairs {
 
     /// Elements of one kind between the same nodes, and at first of the same value, that have another name.
     fn match_by_wiring(&mut self, old: &Circuit, new: &Circuit, same_value: bool) {
-        let mut free: BTreeMap<(u8, Vec<NodeId>, String), Vec<ElementId>> = BTreeMap::new();
+        let mut free: BTreeMap<(u8, Vec<NodeId>, String), VecDeque<ElementId>> = BTreeMap::new();
         let value = |circuit: &Circuit, id| if same_value { value(circuit, id) } else { String::new() };
         for &id in &self.added {
             let nodes = ends(new, id, |pin| Some(new.node(id, pin))).unwrap_or_default();
-            free.entry((new.element(id).letter, nodes, value(new, id))).or_default().push(id);
+            free.entry((new.element(id).letter, nodes, value(new, id))).or_default().push_back(id);
         }
         let (mut left, mut taken) = (Vec::new(), BTreeSet::new());
         for id in std::mem::take(&mut self.gone) {
             let found = ends(old, id, |pin| self.nodes.get(old.node(id, pin)))
                 .filter(|nodes| !nodes.is_empty())
                 .map(|nodes| (old.element(id).letter, nodes, value(old, id)))
-                .and_then(|key| free.get_mut(&key))
-                .filter(|ids| !ids.is_empty())
-                .map(|ids| ids.remove(0));
+                .and_then(|key| free.get_mut(&key)?.pop_front());
             match found {
                 Some(other) => {
                     taken.insert(other);

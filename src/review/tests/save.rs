@@ -159,3 +159,15 @@ fn a_read_only_file_stays_and_nothing_is_written_for_nothing() {
     assert_eq!(save(&mut trap, Path::new("a.net"), OLD, OLD), Ok(()));
     assert_eq!(trap.steps, 0);
 }
+
+#[cfg(unix)]
+#[test]
+fn nobody_else_may_read_the_new_file_before_it_has_its_permissions() {
+    use std::os::unix::fs::PermissionsExt;
+    let path = std::env::temp_dir().join(format!("kneewise-save-{}", std::process::id()));
+    let mut desk = DiskDesk::default();
+    desk.create(&path).unwrap();
+    let mode = std::fs::metadata(&path).unwrap().permissions().mode();
+    desk.remove(&path).unwrap();
+    assert_eq!(mode & 0o777, 0o600);
+}
