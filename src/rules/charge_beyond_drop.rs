@@ -4,8 +4,9 @@ use super::support::{by_diode, folded};
 use super::{Check, Evidence, Rule};
 use crate::circuit::{Behaviour, ElementId, ModelId};
 use crate::finding::{Finding, Severity, quantity};
-use crate::operating::{Knee, Operating};
+use crate::operating::{DropOrigin, Knee, Operating, Quantity};
 use crate::swing::Swing;
+use std::collections::BTreeSet;
 
 pub const RULE: Rule = Rule {
     name: "charge-beyond-drop",
@@ -38,14 +39,19 @@ fn check(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing) -> Vec<F
     let knee = |id: ElementId| {
         let at = drops.binary_search_by_key(&id, |(id, _)| *id).ok()?;
         let (_, diode) = drops[at].1.first()?;
-        Some((diode.knee?, diode.drop.volts))
+        Some((diode.knee?, &diode.drop))
     };
+    let carrying = carrying(operating);
     // one finding for each model: the legs of a bridge share their cause
     let mut models: Vec<(Option<ModelId>, Vec<ElementId>, Vec<Finding>)> = Vec::new();
     for diode in &swing.diodes {
         let span = diode.over_time.as_ref().and_then(|o| o.charge_span);
         let (Some(span), Some((knee, drop))) = (span, knee(diode.element)) else { continue };
-        let Some(finding) = judge(evidence, diode.element, span, &knee, drop) else { continue };
+        let Some(mut finding) = judge(evidence, diode.element, span, &knee, drop.volts) else { continue };
+        // where no instant by itself shows a forward current, 1 mA stands in for it, and nobody chose that
+        if matches!(drop.origin, DropOrigin::Model { .. }) && !carrying.contains(&diode.element) {
+            finding.severity = Severity::Note;
+        }
         let model = match evidence.circuit.element(diode.element).behaviour {
             Behaviour::Diode { model, .. } => model,
             _ => None,
@@ -59,6 +65,17 @@ fn check(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing) -> Vec<F
         }
     }
     models.into_iter().filter_map(|(_, ids, list)| folded(evidence, list, &ids)).collect()
+}
+
+/// Diodes that carry a forward current in some condition or instant.
+fn carrying(operating: &Operating) -> BTreeSet<ElementId> {
+    let diodes = operating.cases.iter().flat_map(|case| &case.solutions).flat_map(|s| &s.diodes);
+    let carries = |current: Quantity| match current {
+        Quantity::Known(i) => i > 0.0,
+        Quantity::Open(range) => range.high > 0.0,
+        Quantity::Unknown => false,
+    };
+    diodes.filter(|d| carries(d.current)).map(|d| d.element).collect()
 }
 
 fn judge(
