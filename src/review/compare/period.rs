@@ -53,7 +53,10 @@ fn states(
             continue;
         }
         flipped.insert(pair.new);
-        let percent = |time: &OverTime| format!("{:.3}", 100.0 * time.conducting_share);
+        let often = |time: &OverTime| match 100.0 * time.conducting_share {
+            share if share < 5e-4 => "never".to_owned(),
+            share => format!("{share:.3} % of the time"),
+        };
         comparison.states.push(StateChange {
             diode: new.circuit.element_name(pair.new),
             case: CASE.to_owned(),
@@ -61,7 +64,7 @@ fn states(
             new: Some(new_state),
             old_current: Some(was.current_peak),
             new_current: Some(is.current_peak),
-            why: format!("It conducts {} % of the time, where it was {} %.", percent(is), percent(was)),
+            why: format!("It conducts {}, where it was {}.", often(is), often(was)),
         });
     }
     flipped
