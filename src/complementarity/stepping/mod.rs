@@ -12,6 +12,8 @@ mod settle;
 mod solver;
 mod sparse;
 mod system;
+#[cfg(test)]
+mod tests;
 
 pub(crate) use march::{Drive, End, Limits, March, Observer, Segment, Step};
 pub(crate) use orbit::find_orbit;
