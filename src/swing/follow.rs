@@ -5,7 +5,7 @@ use super::equations::equations;
 use super::inputs::Given;
 use super::parts::{PartList, parts};
 use super::result::{DiodeSwing, Effort, Level, NodeSwing, Swing, Wave};
-use super::run::{Pass, Ran, run};
+use super::run::{Failed, Pass, Ran, run};
 use super::timing::Timing;
 use crate::circuit::{Behaviour, Circuit, NodeId};
 use crate::config::Options;
@@ -14,6 +14,8 @@ use crate::topology::Noted;
 
 /// Work that one run of `check` spends on the time pass of one file, in multiplications.
 const WORK: u64 = 600_000_000;
+
+const SPENT: &str = "the work that was allowed was spent on other parts";
 
 /// Most waveforms that are kept.
 const MOST_WAVES: usize = 8;
@@ -70,12 +72,17 @@ fn over_time(circuit: &Circuit, basis: &Basis, noted: &Noted, options: &Options,
     let total = WORK.saturating_mul(u64::from(options.patience.max(1)));
     let mut pass = Pass { circuit, given: &given, timing, budget: total, is_cancelled: &is_cancelled };
     let shown = Shown::of(circuit, noted);
-    held_nodes(&pass, &shown, swing);
-    let mut left = total;
+    pass.budget = total / 4;
+    let mut left = total.saturating_sub(held_nodes(&pass, &shown, swing));
     for (n, part) in all.iter().enumerate() {
         monitor.report((1000 * n / all.len()) as u32);
-        // what parts leave unused is for the rest, but no part is left without anything
-        pass.budget = (left / (all.len() - n).clamp(1, 8) as u64).max(total / 1000);
+        if left == 0 {
+            give_up(part, SPENT, swing);
+            swing.cut_short.get_or_insert_with(|| SPENT.to_owned());
+            continue;
+        }
+        // what parts leave unused is for the rest, and as long as there is any, a part gets enough to begin with
+        pass.budget = (left / (all.len() - n).clamp(1, 8) as u64).max(left.min(total / 1000));
         left = left.saturating_sub(one_part(&pass, basis, &shown, part, swing));
     }
     monitor.report(1000);
@@ -89,20 +96,17 @@ fn over_time(circuit: &Circuit, basis: &Basis, noted: &Noted, options: &Options,
 
 /// Follows one part and enters its figures; gives the work that it took.
 fn one_part(pass: &Pass<'_>, basis: &Basis, shown: &Shown, part: &PartList, swing: &mut Swing) -> u64 {
-    let followed = equations(pass.circuit, basis, pass.given, part).and_then(|equations| {
+    let written = equations(pass.circuit, basis, pass.given, part).map_err(Failed::from);
+    let followed = written.and_then(|equations| {
         let watched = shown.places(part);
         let nodes: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
         let ran = run(pass, &equations, watched)?;
         Ok((equations.diodes, nodes, ran))
     });
     match followed {
-        Err(reason) => {
-            for id in &part.elements {
-                if let Ok(at) = swing.diodes.binary_search_by_key(id, |d| d.element) {
-                    swing.diodes[at].not_evaluated = Some(reason.clone());
-                }
-            }
-            0
+        Err(Failed { reason, work }) => {
+            give_up(part, &reason, swing);
+            work
         }
         Ok((diodes, watched, ran)) => {
             let work = ran.work;
@@ -115,6 +119,16 @@ fn one_part(pass: &Pass<'_>, basis: &Basis, shown: &Shown, part: &PartList, swin
             work
         }
     }
+}
+
+/// Enters why a part was not followed; nobody knows then whether everything comes back.
+fn give_up(part: &PartList, reason: &str, swing: &mut Swing) {
+    for id in &part.elements {
+        if let Ok(at) = swing.diodes.binary_search_by_key(id, |d| d.element) {
+            swing.diodes[at].not_evaluated = Some(reason.to_owned());
+        }
+    }
+    swing.periodic = false;
 }
 
 /// Nodes whose waveforms are kept: those that notes watch, else some where a diode meets a capacitor.
@@ -174,21 +188,26 @@ fn finite(level: Level) -> Option<Level> {
     (level.mean.is_finite() && level.min.is_finite() && level.max.is_finite()).then_some(level)
 }
 
-/// Nodes that sources hold: their courses are given.
-fn held_nodes(pass: &Pass<'_>, shown: &Shown, swing: &mut Swing) {
+/// Nodes that sources hold: their courses are given. Gives the work that it took.
+fn held_nodes(pass: &Pass<'_>, shown: &Shown, swing: &mut Swing) -> u64 {
     let nodes: Vec<NodeId> =
         (1..pass.given.held.len()).filter(|&n| pass.given.held[n].is_some()).map(NodeId::new).collect();
     if nodes.is_empty() {
-        return;
+        return 0;
     }
     let part = PartList { elements: Vec::new(), nodes };
     let given = super::equations::held(pass.given, &part);
     let watched = shown.places(&part);
     let names: Vec<NodeId> = watched.iter().map(|&n| part.nodes[n]).collect();
-    if let Ok(mut ran) = run(pass, &given, watched) {
-        ran.effort = Effort::default();
-        // what is given repeats itself as the sources do
-        ran.periodic = true;
-        enter(&part, &names, ran, swing);
+    match run(pass, &given, watched) {
+        Ok(mut ran) => {
+            let work = ran.work;
+            ran.effort = Effort::default();
+            // what is given repeats itself as the sources do
+            ran.periodic = true;
+            enter(&part, &names, ran, swing);
+            work
+        }
+        Err(failed) => failed.work,
     }
 }

@@ -5,6 +5,10 @@ use crate::complementarity::stepping::Affine;
 use crate::operating::Basis;
 use rustc_hash::FxHashSet;
 
+/// Moving sources in series up to which a node counts as held: each node of a stack has a term for every source below
+/// it, so that longer ones would take memory and time by the square of their length.
+const MOST_STACKED: usize = 64;
+
 /// The inputs and the held nodes of a circuit.
 pub(super) struct Given<'a> {
     circuit: &'a Circuit,
@@ -41,7 +45,8 @@ impl<'a> Given<'a> {
         Affine { constant: level.map_or(0.0, |l| l.value), ..Affine::default() }
     }
 
-    /// Follows voltage sources from ground, those aside whose current somebody listens to.
+    /// Follows voltage sources from ground, those aside whose current somebody listens to, and what is behind a long
+    /// stack of them: it is solved for like any other part.
     fn hold(&mut self) {
         let circuit = self.circuit;
         let listened: FxHashSet<ElementId> =
@@ -68,12 +73,16 @@ impl<'a> Given<'a> {
         while let Some(node) = open.pop() {
             let Some(here) = self.held[node.index()].clone() else { continue };
             for (next, rise, source) in std::mem::take(&mut around[node.index()]) {
+                if self.held[next.index()].is_none() {
+                    let there = here.minus(&none.minus(&rise));
+                    if there.inputs.len() > MOST_STACKED {
+                        continue;
+                    }
+                    self.held[next.index()] = Some(there);
+                    open.push(next);
+                }
                 if let Some(id) = source {
                     self.is_boundary[id.index()] = true;
-                }
-                if self.held[next.index()].is_none() {
-                    self.held[next.index()] = Some(here.minus(&none.minus(&rise)));
-                    open.push(next);
                 }
             }
         }

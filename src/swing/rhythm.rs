@@ -106,11 +106,16 @@ pub(super) fn longest_step(shape: &Shape) -> Option<f64> {
     }
 }
 
-/// Times at which the course of the shape has a corner, within a span; unsorted.
-pub(super) fn corners(shape: &Shape, from: f64, to: f64, out: &mut Vec<f64>) {
+/// Times at which the course of the shape has a corner, within a span; unsorted. `false` where there are too many.
+pub(super) fn corners(shape: &Shape, from: f64, to: f64, out: &mut Vec<f64>) -> bool {
+    let mut is_complete = true;
     let mut add = |t: f64| {
-        if t > from && t < to && out.len() <= MOST_CORNERS {
-            out.push(t);
+        if t > from && t < to {
+            if out.len() <= MOST_CORNERS {
+                out.push(t);
+            } else {
+                is_complete = false;
+            }
         }
     };
     match *shape {
@@ -121,16 +126,20 @@ pub(super) fn corners(shape: &Shape, from: f64, to: f64, out: &mut Vec<f64>) {
         Shape::Pulse { delay, rise, fall, width, period, .. } => {
             let edges = [0.0, rise, rise + width, rise + width + fall];
             if !(period > 0.0 && period.is_finite()) {
-                return edges.into_iter().for_each(|edge| add(delay + edge));
+                edges.into_iter().for_each(|edge| add(delay + edge));
+                return is_complete;
             }
             let first = ((from - delay) / period).floor().max(0.0);
-            let count = (((to - delay) / period).ceil() - first).clamp(0.0, MOST_CORNERS as f64) as u64;
+            // one turn more than there may be corners, so that too many are noticed
+            let most = (MOST_CORNERS + 1) as f64;
+            let count = (((to - delay) / period).ceil() - first).clamp(0.0, most) as u64;
             for n in 0..=count {
                 let start = delay + (first + n as f64) * period;
                 edges.into_iter().filter(|edge| *edge <= period).for_each(|edge| add(start + edge));
             }
         }
     }
+    is_complete
 }
 
 /// Into how many pieces a stretch without corners is cut to look for crossings.

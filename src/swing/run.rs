@@ -19,6 +19,7 @@ const COARSE_TOLERANCE: f64 = 1e-6;
 
 const MANY_PERIODS: &str = "the span asked for holds too many periods to walk through all of them, so the periodic state was sought instead";
 const NOT_PERIODIC: &str = "the periodic state was not reached within the work that was allowed";
+const MANY_CORNERS: &str = "sources have more edges in the time looked at than are kept apart, so that narrow pulses may have been stepped over";
 const LONG_WINDOW: &str = "the time looked at takes more work than was allowed, so its end is missing";
 
 /// What the whole pass may know and spend.
@@ -55,24 +56,45 @@ impl Drive for Inputs<'_> {
     }
 }
 
-/// Follows a part. An error is the reason why it could not be.
-pub(super) fn run(pass: &Pass<'_>, equations: &Equations, watched: Vec<usize>) -> Result<Ran, String> {
+/// Why a part could not be followed, and the work that was spent on finding out.
+pub(super) struct Failed {
+    pub reason: String,
+    pub work: u64,
+}
+
+impl From<String> for Failed {
+    fn from(reason: String) -> Self {
+        Failed { reason, work: 0 }
+    }
+}
+
+/// Follows a part.
+pub(super) fn run(pass: &Pass<'_>, equations: &Equations, watched: Vec<usize>) -> Result<Ran, Failed> {
     let Some(solver) = Solver::new(equations.system.clone()) else {
-        return Err(match equations.system.one_sided {
-            true => "its part is too large to be followed over time with controlled sources in it".into(),
-            false => "its part is too large to be followed over time".into(),
-        });
+        return Err(Failed::from(match equations.system.one_sided {
+            true => "its part is too large to be followed over time with controlled sources in it".to_owned(),
+            false => "its part is too large to be followed over time".to_owned(),
+        }));
     };
     let drive = Inputs { shapes: equations.inputs.iter().map(|&n| pass.given.shapes[n]).collect() };
     let tolerance = if solver.is_condensed() { TOLERANCE } else { COARSE_TOLERANCE };
     let mut march =
         March::new(solver, vec![0.0; equations.system.cells.len()], volts(equations, &drive, pass));
     let closed = vec![false; equations.followers.len()];
-    let mut road = Road { pass, equations, drive, closed, tolerance };
+    let mut road = Road {
+        pass,
+        equations,
+        drive,
+        closed,
+        tolerance,
+        budget: pass.budget,
+        edges: None,
+        is_complete: true,
+    };
     road.turn_gates(&mut march, pass.timing.first);
     start::settle(pass, equations, &road.drive, &mut march);
-    let approach = road.approach(&mut march)?;
-    road.window(&mut march, watched, approach)
+    let ran = road.approach(&mut march).and_then(|approach| road.window(&mut march, watched, approach));
+    ran.map_err(|reason| Failed { reason, work: march.work() })
 }
 
 /// Largest voltage that the sources of a part reach.
@@ -90,7 +112,6 @@ struct Approach {
     cut_short: Option<&'static str>,
     periods: u64,
     periodic: bool,
-    work: u64,
 }
 
 /// The time of one part, and how to walk along it.
@@ -101,6 +122,12 @@ struct Road<'a> {
     /// Positions of the gates now.
     closed: Vec<bool>,
     tolerance: f64,
+    /// All work up to which the walk in hand may go.
+    budget: u64,
+    /// Ends of the stretches between two times that were walked last.
+    edges: Option<((f64, f64), Vec<f64>)>,
+    /// No corner was left out so far.
+    is_complete: bool,
 }
 
 impl Road<'_> {
@@ -108,16 +135,29 @@ impl Road<'_> {
     fn approach(&mut self, march: &mut March) -> Result<Approach, String> {
         let timing = self.pass.timing;
         let (from, to) = timing.window;
-        let mut approach = Approach { cut_short: None, periods: 0, periodic: true, work: 0 };
+        let mut approach = Approach { cut_short: None, periods: 0, periodic: true };
+        let all = self.pass.budget;
+        // where the periodic state can be sought instead, half is left for that
+        self.budget = if timing.period.is_some() { all / 2 } else { all };
         let mut end = self.walk(march, timing.first, from, None);
         if end == End::Spent && timing.period.is_some() {
             approach.cut_short = Some(MANY_PERIODS);
-            approach.work += std::mem::take(&mut march.spent);
             end = End::Done;
         }
         if end == End::Done && timing.period.is_some() && (timing.seeks_orbit || approach.cut_short.is_some())
         {
-            let orbit = find_orbit(march, &mut |march| self.walk(march, from, to, None));
+            let mut longest = 0;
+            let orbit = find_orbit(march, &mut |march| {
+                let before = march.work();
+                // the window must be walked through once more, and costs what a period does
+                self.budget = match longest {
+                    0 => before + all.saturating_sub(before) / 2,
+                    longest => all.saturating_sub(longest + longest / 4),
+                };
+                let end = self.walk(march, from, to, None);
+                longest = longest.max(march.work() - before);
+                end
+            });
             approach.periods = orbit.periods;
             approach.periodic = orbit.periodic;
             end = orbit.end;
@@ -127,7 +167,6 @@ impl Road<'_> {
             }
         }
         self.fail(end)?;
-        approach.work += march.spent;
         Ok(approach)
     }
 
@@ -137,13 +176,15 @@ impl Road<'_> {
         let (kept, factored) = (march.steps, march.solver.factorizations);
         let mut recorder = Recorder::new(self.equations, from, march.nothing(), watched);
         let mut cut_short = approach.cut_short;
-        // the window itself is always walked through once
-        march.spent = 0;
+        self.budget = self.pass.budget;
         let end = self.walk(march, from, to, Some(&mut recorder));
         if end == End::Spent {
             cut_short = Some(LONG_WINDOW);
         } else {
             self.fail(end)?;
+        }
+        if !self.is_complete {
+            cut_short = cut_short.or(Some(MANY_CORNERS));
         }
         let is_still = self.equations.inputs.is_empty() && self.equations.followers.is_empty();
         let periodic = approach.periodic
@@ -155,7 +196,7 @@ impl Road<'_> {
             waves: recorder.waves(),
             periodic,
             cut_short: cut_short.map(str::to_owned),
-            work: approach.work + march.spent,
+            work: march.work(),
             effort: Effort {
                 steps: march.steps,
                 rejected: march.rejected,
@@ -181,26 +222,41 @@ impl Road<'_> {
     }
 
     /// Walks from one time to another, corner by corner.
-    fn walk(
-        &mut self,
-        march: &mut March,
-        from: f64,
-        to: f64,
-        mut observer: Option<&mut dyn Observer>,
-    ) -> End {
+    fn walk(&mut self, march: &mut March, from: f64, to: f64, observer: Option<&mut dyn Observer>) -> End {
         if to <= from {
             return End::Done;
         }
-        let mut edges = self.pass.timing.edges(&self.drive.shapes, from, to);
-        let crossings = self.crossings(&edges);
+        let edges = match self.edges.take() {
+            Some((span, edges)) if span == (from, to) => edges,
+            _ => match self.stretches(march, from, to) {
+                Ok(edges) => edges,
+                Err(end) => return end,
+            },
+        };
+        let end = self.walk_along(march, &edges, observer);
+        self.edges = Some(((from, to), edges));
+        end
+    }
+
+    /// Ends of the stretches in which no source has a corner and no switch turns.
+    fn stretches(&mut self, march: &mut March, from: f64, to: f64) -> Result<Vec<f64>, End> {
+        let (mut edges, is_complete) = self.pass.timing.edges(&self.drive.shapes, from, to);
+        self.is_complete &= is_complete;
+        let crossings = self.crossings(march, &edges)?;
         edges.extend(crossings);
         edges.sort_by(f64::total_cmp);
         edges.dedup_by(|b, a| *b - *a <= 1e-12 * (to - from));
-        let limits = Limits {
-            tolerance: self.tolerance,
-            budget: self.pass.budget,
-            is_cancelled: self.pass.is_cancelled,
-        };
+        Ok(edges)
+    }
+
+    fn walk_along(
+        &mut self,
+        march: &mut March,
+        edges: &[f64],
+        mut observer: Option<&mut dyn Observer>,
+    ) -> End {
+        let limits =
+            Limits { tolerance: self.tolerance, budget: self.budget, is_cancelled: self.pass.is_cancelled };
         for pair in edges.windows(2) {
             let (a, b) = (pair[0], pair[1]);
             self.turn_gates(march, 0.5 * (a + b));
@@ -243,27 +299,40 @@ impl Road<'_> {
     }
 
     /// Times at which a control voltage passes a level.
-    fn crossings(&self, edges: &[f64]) -> Vec<f64> {
+    fn crossings(&self, march: &mut March, edges: &[f64]) -> Result<Vec<f64>, End> {
         let mut found = Vec::new();
         for n in 0..self.closed.len() {
             let (closes, opens) = self.equations.followers[n].levels;
+            let moving = self.equations.followers[n].control.inputs.len() as u64;
             for pair in edges.windows(2) {
+                march.spent += rhythm::CROSSING_STEPS as u64 * VALUE * (moving + 1);
+                if (self.pass.is_cancelled)() {
+                    return Err(End::Cancelled);
+                }
+                if march.work() > self.budget {
+                    return Err(End::Spent);
+                }
+                let at = |k: usize| pair[0] + (pair[1] - pair[0]) * k as f64 / rhythm::CROSSING_STEPS as f64;
+                let mut before = self.control(n, at(0));
                 for step in 0..rhythm::CROSSING_STEPS {
-                    let at =
-                        |k: usize| pair[0] + (pair[1] - pair[0]) * k as f64 / rhythm::CROSSING_STEPS as f64;
+                    let after = self.control(n, at(step + 1));
                     for level in [closes, opens] {
-                        found.extend(rhythm::crossing(
-                            |t| self.control(n, t) - level,
-                            at(step),
-                            at(step + 1),
-                        ));
+                        // most stretches cross nothing
+                        if (before > level) != (after > level) {
+                            let value = |t| self.control(n, t) - level;
+                            found.extend(rhythm::crossing(value, at(step), at(step + 1)));
+                        }
                     }
+                    before = after;
                 }
             }
         }
-        found
+        Ok(found)
     }
 }
+
+/// What one value of a source costs, in multiplications.
+const VALUE: u64 = 16;
 
 /// Whether the states at the end of the window are those at its beginning, within two millionths.
 fn comes_back(before: &[f64], after: &[f64]) -> bool {

@@ -75,8 +75,8 @@ impl Timing {
         }
     }
 
-    /// Ends of the stretches between two times in which no source has a corner.
-    pub fn edges(&self, shapes: &[&Shape], from: f64, to: f64) -> Vec<f64> {
+    /// Ends of the stretches between two times in which no source has a corner, and whether those are all.
+    pub fn edges(&self, shapes: &[&Shape], from: f64, to: f64) -> (Vec<f64>, bool) {
         let mut edges = vec![from, to];
         if let Some(period) = self.period.filter(|period| (to - from) < rhythm::MOST_CORNERS as f64 * period)
         {
@@ -84,12 +84,13 @@ impl Timing {
             let count = ((to - from) / period - 1e-9).floor().max(0.0) as u64;
             edges.extend((1..=count).map(|n| to - n as f64 * period).filter(|t| *t > from));
         }
+        let mut is_complete = true;
         for shape in shapes {
-            rhythm::corners(shape, from, to, &mut edges);
+            is_complete &= rhythm::corners(shape, from, to, &mut edges);
         }
         edges.sort_by(f64::total_cmp);
         edges.dedup_by(|b, a| *b - *a <= 1e-12 * (to - from));
-        edges
+        (edges, is_complete)
     }
 
     /// How a stretch is divided, for a part of so many diodes.

@@ -157,6 +157,12 @@ impl March {
         }
     }
 
+    /// Work so far, in multiplications, that of the stages included.
+    pub fn work(&mut self) -> u64 {
+        self.spent += std::mem::take(&mut self.solver.uncounted);
+        self.spent
+    }
+
     /// Largest voltage so far.
     pub fn volts(&self) -> f64 {
         self.volts
@@ -216,19 +222,16 @@ impl March {
         let mut must_jump = true;
         let clock = Clock { segment, ticks };
         self.has_rates = false;
-        let cost = self.solver.cost();
         while at < ticks {
             if self.steps & 63 == 0 && (limits.is_cancelled)() {
                 return End::Cancelled;
             }
-            self.spent += std::mem::take(&mut self.solver.uncounted);
-            if self.spent > limits.budget {
+            if self.work() > limits.budget {
                 return End::Spent;
             }
             let jump_size = 1u64 << (finest - jump_level);
             if must_jump {
                 let size = jump_size.min(ticks - at);
-                self.spent += 4 * cost;
                 if let Err(end) =
                     self.jump(clock.time(at), clock.length(size), drive, observer.as_deref_mut())
                 {
@@ -246,7 +249,6 @@ impl March {
             }
             let size = 1u64 << (finest - level);
             let (from, length) = (clock.time(at), clock.length(size));
-            self.spent += 2 * cost;
             match self.attempt(from, length, drive, limits.tolerance, level < finest) {
                 Tried::Kept(error) => {
                     if let Some(observer) = observer.as_deref_mut() {
@@ -419,6 +421,7 @@ impl March {
         }
         if let (Some(derivative), Some(kept)) = (&mut self.derivative, self.solver.transfer(h)) {
             let m = self.states.len();
+            self.spent += (m * m * m) as u64;
             for column in derivative.chunks_exact_mut(m.max(1)) {
                 let next: Vec<f64> = (0..m).map(|row| kept.transfer(row, column)).collect();
                 column.copy_from_slice(&next);

@@ -185,6 +185,8 @@ impl Search {
     fn newton(&mut self, march: &mut March, walk: &mut Walk<'_>) -> Option<Vec<f64>> {
         let best = self.best.clone()?;
         let m = best.start.len();
+        // of the singular values that the inverse is made of
+        march.spent += 30 * (m * m * m) as u64;
         let scale = scales(march);
         let may_differ = m <= MOST_DIFFERENCES.0 && self.differences < MOST_DIFFERENCES.1;
         let derivative = match self.source {

@@ -92,8 +92,8 @@ impl Solver {
     pub fn cost(&self) -> u64 {
         let (m, d, k) = (self.system.cells.len(), self.system.junctions.len(), self.system.inputs);
         match &self.sparse {
-            None => (60 + (m + d) * (m + k + 1)) as u64,
-            Some(sparse) => sparse.cost(),
+            None => (60 + 8 * k + (m + d) * (m + k + 1)) as u64,
+            Some(sparse) => sparse.cost() + 8 * k as u64,
         }
     }
 
@@ -132,6 +132,7 @@ impl Solver {
 
     /// Solves a stage of length `g` for the modes that are assumed now. `false` where that cannot be solved.
     pub(super) fn stage(&mut self, g: f64, from: &[f64], inputs: &[f64], answer: &mut Answer) -> bool {
+        self.uncounted += self.cost();
         if self.sparse.is_some() {
             return self.sparse_stage(&|_| g, g, from, inputs, answer);
         }
@@ -139,9 +140,9 @@ impl Solver {
         if let Some(kept) = self.kept.get(&key) {
             return kept.stage(from, inputs, answer);
         }
+        self.uncounted += self.condensing();
         let Some(made) = Condensed::new(&self.system, &self.pattern, &|_| g) else { return false };
         self.factorizations += 1;
-        self.uncounted += self.condensing();
         let is_done = made.stage(from, inputs, answer);
         if self.kept_size > MOST_KEPT {
             self.kept.clear();
@@ -161,6 +162,7 @@ impl Solver {
         answer: &mut Answer,
     ) -> bool {
         let g = |n: usize| lengths.get(n).copied().unwrap_or(1.0);
+        self.uncounted += self.cost();
         if self.sparse.is_some() {
             return self.sparse_stage(&g, f64::NAN, from, inputs, answer);
         }
@@ -184,12 +186,11 @@ impl Solver {
         let Some(sparse) = sparse else { return false };
         let before = *factorizations;
         system.right_side(&pattern.modes, &pattern.closed, g, from, inputs, right);
-        if !sparse.prepare(system, pattern, (*pattern_id, bits(key)), g, factorizations)
-            || !sparse.solve(right, unknowns)
-        {
+        let is_prepared = sparse.prepare(system, pattern, (*pattern_id, bits(key)), g, factorizations);
+        *uncounted += (*factorizations - before) * 8 * sparse.cost();
+        if !is_prepared || !sparse.solve(right, unknowns) {
             return false;
         }
-        *uncounted += (*factorizations - before) * 8 * sparse.cost();
         answer.states.resize(system.cells.len(), 0.0);
         system.states(unknowns, inputs, &mut answer.states);
         answer.tests.clear();
@@ -206,6 +207,7 @@ impl Solver {
         if self.sparse.is_some() {
             out.copy_from_slice(&self.unknowns);
         } else if let Some(kept) = self.kept.get(&(self.pattern_id, bits(g))) {
+            self.uncounted += (out.len() * (from.len() + inputs.len() + 1)) as u64;
             kept.unknowns(from, inputs, out);
         }
     }
@@ -224,6 +226,7 @@ impl Solver {
             scratch.extend((0..errors.len()).map(|row| kept.transfer(row, errors)));
             errors.copy_from_slice(scratch);
         } else if self.sparse.is_some() {
+            self.uncounted += self.cost() / 8;
             self.sparse_filter(g, errors);
         }
     }
