@@ -50,9 +50,7 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     let mut evidence = Evidence::new(&sources, &circuit, &wiring).with_thresholds(options.thresholds);
     let (judged, skipped) = rules::run(&mut evidence, &findings, operating.as_ref(), swing.as_ref());
     let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
-    findings.extend(judged);
-    rules::accept(&evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));
-    finding::set_levels(&mut findings, &options.levels);
+    let mut findings = rules::settle(&evidence, findings, judged, &skipped, &options.levels);
     finding::sort(&mut findings);
     Ok(Analysis { sources, circuit, wiring, operating, swing, hopeless, findings, skipped })
 }

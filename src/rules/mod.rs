@@ -5,7 +5,7 @@
 mod support;
 
 use support::{About, Claim, Found, LooseEnd, Outcome, claims, expected};
-pub use support::{Check, Evidence, GROUPS, Rule, Skipped, accept, is_hopeless, run};
+pub use support::{Check, Evidence, GROUPS, Rule, Skipped, is_hopeless, run, settle};
 use support::{Regions, Seen, Shown, behind, causes, count, in_cases, is_told, list, turn_round};
 
 include!(concat!(env!("OUT_DIR"), "/rules.rs"));

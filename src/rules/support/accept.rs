@@ -7,9 +7,9 @@ use crate::finding::{Finding, Severity};
 use crate::text::Span;
 use rustc_hash::FxHashMap;
 
-/// Marks the findings that `accept` notes silence with the reason given, and adds findings about accepts that
-/// give no reason or silence nothing. `ran` tells whether the rule of that name has judged at all in this run.
-pub fn accept(evidence: &Evidence<'_>, findings: &mut Vec<Finding>, ran: impl Fn(&str) -> bool) {
+/// Marks the findings that `accept` notes silence with the reason given; the findings about accepts that give no reason
+/// or silence nothing. `ran` tells whether the rule of that name has judged at all in this run.
+pub fn accept(evidence: &Evidence<'_>, findings: &mut [Finding], ran: impl Fn(&str) -> bool) -> Vec<Finding> {
     let mut own = Vec::new();
     for copies in copies(&evidence.circuit.notes) {
         let Some(note) = copies.first() else { continue };
@@ -29,7 +29,7 @@ pub fn accept(evidence: &Evidence<'_>, findings: &mut Vec<Finding>, ran: impl Fn
             own.push(idle_accept::finding(evidence, note, rule));
         }
     }
-    findings.extend(own);
+    own
 }
 
 /// The notes by the line they stand on: one in a subcircuit has a copy for each instance.

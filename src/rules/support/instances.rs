@@ -10,14 +10,16 @@ use rustc_hash::FxHashMap;
 pub fn fold(circuit: &Circuit, findings: Vec<Finding>) -> Vec<Finding> {
     let instances = count_instances(circuit);
     let mut kept: Vec<(Finding, usize)> = Vec::with_capacity(findings.len());
-    let mut seen: FxHashMap<(&'static str, Span, Vec<Span>), usize> = FxHashMap::default();
+    let mut seen: FxHashMap<(&'static str, bool, Span, Vec<Span>), usize> = FxHashMap::default();
     for finding in findings {
         // a trail that ends in an include leads to no instance
         if !finding.trail.last().is_some_and(|step| instances.contains_key(&step.span)) {
             kept.push((finding, 1));
             continue;
         }
-        let key = (finding.rule, finding.span, finding.labels.iter().map(|l| l.span).collect());
+        // what is accepted in one instance may not be in another
+        let accepted = finding.accepted.is_some();
+        let key = (finding.rule, accepted, finding.span, finding.labels.iter().map(|l| l.span).collect());
         let at = *seen.entry(key).or_insert(kept.len());
         match kept.get_mut(at) {
             Some((_, count)) => *count += 1,

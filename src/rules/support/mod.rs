@@ -16,13 +16,13 @@ mod trusted;
 mod turn;
 mod words;
 
-pub use accept::{about_note, accept};
+pub use accept::about_note;
 pub use cases::{Shown, causes, finding, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
 pub use expect::{About, Claim, Found, Outcome, claims, expected};
 pub use loose::{LooseEnd, is_needed_port};
 pub use rule::{Check, GROUPS, Rule, Skipped};
-pub use run::run;
+pub use run::{run, settle};
 pub use standing::{Regions, Seen, behind};
 pub use trusted::{In, by_diode, folded, in_case};
 pub use turn::turn_round;

@@ -1,12 +1,13 @@
 //! Runs every rule whose evidence is there.
 
 use super::rule::{Check, Skipped};
-use super::{Evidence, consequences, instances};
-use crate::finding::Finding;
+use super::{Evidence, accept, consequences, instances};
+use crate::finding::{Finding, Severity, set_levels};
 use crate::operating::Operating;
 use crate::swing::Swing;
+use std::collections::BTreeMap;
 
-/// All findings of all rules, and those that could not judge, with the reason. Findings of reading are not among
+/// All findings of all rules as they come, and those that could not judge, with the reason. Findings of reading are not among
 /// them: they were made by `circuit::read`, and are given as `reading` so that one cause is told once.
 pub fn run(
     evidence: &mut Evidence<'_>,
@@ -43,6 +44,28 @@ pub fn run(
             }
         }
     }
-    consequences::fold(&mut findings);
-    (instances::fold(evidence.circuit, findings), skipped)
+    (findings, skipped)
+}
+
+/// What is shown: all findings with `accept` notes and levels applied, and of what is left one finding for each cause
+/// and each definition. `judged` come from [`run`], `reading` from the stages before it.
+pub fn settle(
+    evidence: &Evidence<'_>,
+    reading: Vec<Finding>,
+    judged: Vec<Finding>,
+    skipped: &[Skipped],
+    levels: &BTreeMap<String, Option<Severity>>,
+) -> Vec<Finding> {
+    let mut findings = reading;
+    let before = findings.len();
+    findings.extend(judged);
+    let about_accepts =
+        accept::accept(evidence, &mut findings, |rule| !skipped.iter().any(|s| s.rule == rule));
+    let mut judged = findings.split_off(before);
+    findings.extend(about_accepts);
+    set_levels(&mut findings, levels);
+    set_levels(&mut judged, levels);
+    consequences::fold(&mut judged);
+    findings.extend(instances::fold(evidence.circuit, judged));
+    findings
 }
