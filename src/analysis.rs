@@ -48,9 +48,10 @@ pub fn analyse(loader: &mut dyn Loader, root: &Path, options: &Options) -> Resul
     let swing = operating.as_ref().filter(|_| options.swing);
     let swing = swing.map(|states| swing::follow(&circuit, states, &wiring.noted, options));
     let mut evidence = Evidence::new(&sources, &circuit, &wiring).with_thresholds(options.thresholds);
-    let (judged, skipped) = rules::run(&mut evidence, &findings, operating.as_ref(), swing.as_ref());
+    let levels = &options.levels;
+    let (judged, skipped) = rules::run(&mut evidence, &findings, operating.as_ref(), swing.as_ref(), levels);
     let hopeless = operating.as_ref().is_some_and(|o| rules::is_hopeless(&evidence, o));
-    let mut findings = rules::settle(&evidence, findings, judged, &skipped, &options.levels);
+    let mut findings = rules::settle(&evidence, findings, judged, &skipped, levels);
     finding::sort(&mut findings);
     Ok(Analysis { sources, circuit, wiring, operating, swing, hopeless, findings, skipped })
 }

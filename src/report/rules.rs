@@ -17,7 +17,7 @@ pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
             .map(|rule| {
                 vec![
                     Cell::word(rule.name),
-                    Cell::inked(rule.severity.word(), Some(ink(rule.severity))),
+                    Cell::inked(rule.severity_words(), Some(ink(rule.worst()))),
                     Cell::word(rule.summary),
                 ]
             })
@@ -34,7 +34,7 @@ pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
 /// Writes one rule in full.
 pub fn rule(page: &mut Page, rule: &Rule) {
     page.ink(Ink::Strong, rule.name).plain("   ");
-    page.ink(ink(rule.severity), rule.severity.word()).plain(", ").plain(rule.group).end();
+    page.ink(ink(rule.worst()), &rule.severity_words()).plain(", ").plain(rule.group).end();
     paragraph(page, rule.summary);
     paragraph(page, rule.why);
     paragraph(page, rule.remedy);

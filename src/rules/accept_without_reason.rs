@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "accept-without-reason",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "an `accept` note gives no reason, so it silences nothing",
     why: "Whoever reads the circuit next must know whether the finding was looked at or only switched off.",
     remedy: "Say why: `*@ accept RULE NAME because …`.",

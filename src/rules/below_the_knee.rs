@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "below-the-knee",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "a Zener diode carries too little current for its breakdown voltage to hold",
     why: "Below the knee a Zener's voltage sags: its slope is 400 to 1000 ohms at a quarter to one milliampere, against 2 to 40 ohms at the test current, so the constant breakdown voltage is too high.",
     remedy: "Give it more current (a smaller series resistor), or a part that is made for little.",
@@ -36,7 +37,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         let Some(&(number, diode)) = found else { continue };
         let current = diode.current.known().map_or(0.0, f64::abs);
         let message = format!(
-            "`{}` is to hold {}, but carries only {} of the {} at which it has that voltage{}",
+            "{} is to hold {}, but carries only {} of the {} at which it has that voltage{}",
             evidence.name(id),
             quantity(diode.breakdown.unwrap_or(0.0), "V"),
             quantity(current, "A"),

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "blocked-current",
     group: "states",
     severity: Severity::Error,
+    also: None,
     summary: "a current source drives a current that no diode lets pass",
     why: "Every way on from the source leads through a diode that points against it and has no breakdown \
           voltage, so what flows in cannot flow out: there is no operating point.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "both-ends-on-one-node",
     group: "wiring",
     severity: Severity::Warning,
+    also: Some(Severity::Error),
     summary: "both ends of an element are on one node",
     why: "An element across one node has no voltage and takes no part in the circuit; usually one of its node \
           names is wrong.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "broken-expectation",
     group: "notes",
     severity: Severity::Error,
+    also: None,
     summary: "a diode or a node is not as an `expect` note says",
     why: "Somebody wrote down what this circuit must do, and as it stands it does something else.",
     remedy: "Mend the circuit, or, where the change was meant, the note.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "broken-over-time",
     group: "time",
     severity: Severity::Error,
+    also: None,
     summary: "a diode or a node does not do over time what an `expect … over time` note says",
     why: "Somebody wrote down what this circuit must do while its sources move, and as it stands it does something else.",
     remedy: "Mend the circuit, or, where the change was meant, the note.",

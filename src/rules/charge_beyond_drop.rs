@@ -12,6 +12,7 @@ pub const RULE: Rule = Rule {
     name: "charge-beyond-drop",
     group: "trust",
     severity: Severity::Note,
+    also: Some(Severity::Warning),
     summary: "most of a diode's charge flows at currents far from the one that its drop belongs to",
     why: "Over time the drop is one voltage too, while a junction needs N times 60 mV more for each decade of current: what the pass over time tells of this diode is then off by that.",
     remedy: "Give the drop that belongs to the current at which most of the charge flows: a `drop` note, or `--drop`.",
@@ -94,7 +95,7 @@ fn judge(
     }
     let serving = |current: f64| quantity(drop + knee.slope * (current / knee.reference).ln(), "V");
     let message = format!(
-        "`{}` passes from 5 % to 95 % of its charge at {} to {}, but its drop of {} belongs to {}: {away:.1} decades away",
+        "{} passes from 5 % to 95 % of its charge at {} to {}, but its drop of {} belongs to {}: {away:.1} decades away",
         evidence.name(id),
         quantity(low, "A"),
         quantity(high, "A"),

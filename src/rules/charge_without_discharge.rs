@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "charge-without-discharge",
     group: "time",
     severity: Severity::Note,
+    also: None,
     summary: "a diode charges a capacitor that nothing discharges: the clamp or detector holds its first peak",
     why: "Once charged to the largest peak the capacitor keeps it, and the diode never conducts again: what comes \
           later and is smaller is not seen, and where the voltage goes in the end leakage decides.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "clamp-rail-unheld",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "the supply that input clamps lead to is held by nothing, so the inputs feed it",
     why: "A clamp keeps a signal below its rail only where a source holds the rail. Here nothing feeds the node but the \
           signals themselves, through the clamps that are to protect them.",

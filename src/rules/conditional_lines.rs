@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "conditional-lines",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "lines that hang on a condition are not read",
     why: "Conditions are not decided here, so the elements and values between `.if` and `.endif` are missing from the circuit, and whatever is said about it is said without them.",
     remedy: "Take the lines that hold out of the condition, or choose them by an include.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "conflicting-notes",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "two notes of one kind on one name and level",
     why: "Only one of them can hold, and nobody can see which was meant.",
     remedy: "Keep one of them.",

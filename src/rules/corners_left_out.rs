@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "corners-left-out",
     group: "notes",
     severity: Severity::Note,
+    also: None,
     summary: "more ranges than can be examined in all combinations",
     why: "Seven ranges have 128 corners; beyond 64 each end is examined alone, so a state that only a combination brings about is not seen.",
     remedy: "Keep ranges of what matters together.",

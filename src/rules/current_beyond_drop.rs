@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "current-beyond-drop",
     group: "trust",
     severity: Severity::Note,
+    also: Some(Severity::Warning),
     summary: "a diode's current lies more than a decade from the current that its drop belongs to",
     why: "A drop is one voltage; a junction needs N times 60 mV more for each decade of current. More than a decade away the drop is off by more than its scatter, more than two it no longer describes the diode.",
     remedy: "Look at the ends apart, each with the drop that serves it: `--drop`, or a `drop` note for what matters.",
@@ -89,7 +90,7 @@ fn judge(
         false => quantity(far.current, "A"),
     };
     let message = format!(
-        "`{name}` carries {span}, but its drop of {} belongs to {}: {:.1} decades {side} it{}",
+        "{name} carries {span}, but its drop of {} belongs to {}: {:.1} decades {side} it{}",
         quantity(far.diode.drop.volts, "V"),
         quantity(far.knee.reference, "A"),
         away,

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "current-without-return",
     group: "wiring",
     severity: Severity::Error,
+    also: None,
     summary: "current sources push a direct current into nodes that it cannot leave",
     why: "What flows into a node must flow out of it. Capacitors carry no direct current and sources impose \
           theirs, so the circuit has no operating point.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "dangling-node",
     group: "wiring",
     severity: Severity::Warning,
+    also: Some(Severity::Note),
     summary: "a node has one connection only",
     why: "No current can flow where one element alone touches a node, so that element does nothing.",
     remedy: "Join the node to what it was meant for, or take the element out. Where the end is meant to be open, \

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "dark-branch",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a branch between two supplies never carries current: its diodes lie the wrong way round or need more voltage",
     why: "The branch has nothing but these elements in series, and in every condition the voltage across it is one \
           that its diodes do not pass, so an indicator in it never lights and a sensor in it never works.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "decimal-comma",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a number with a decimal comma",
     why: "A comma separates words: `0,1u` is the number 0 and the word 1u to most readers, so the part gets another value than its writer meant. It is read here as meant.",
     remedy: "Write a decimal point.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "defined-twice",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "two different definitions of one model or subcircuit",
     why: "Tools differ in which of the two they take, so the circuit means different things to different readers. The last one counts here.",
     remedy: "Rename or remove one.",

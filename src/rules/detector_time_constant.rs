@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "detector-time-constant",
     group: "time",
     severity: Severity::Warning,
+    also: None,
     summary: "the R·C of an envelope detector is too long for its modulation, or too short for its carrier",
     why: "Between two crests of the carrier the capacitor must keep its voltage, and over one swing of the modulation it \
           must lose it: 1/fc is far below R·C, and R·C is at most √(1 − m²)/(2π·m·fm). Too long, and the output sails \

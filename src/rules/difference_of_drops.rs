@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "difference-of-drops",
     group: "trust",
     severity: Severity::Note,
+    also: Some(Severity::Warning),
     summary: "a voltage that matters is little more than a difference of drops",
     why: "One drop a diode says nothing about how two drops differ: that follows from the ratio of their currents, about 60 mV a decade (times N), and from their temperatures.",
     remedy: "Take this voltage from the exponential law, and the currents from here.",
@@ -57,6 +58,15 @@ fn is_outside(difference: &DifferenceResult) -> bool {
     difference.error >= 5e-3 && difference.error >= 0.5 * difference.voltage.abs()
 }
 
+/// Volts by which the two opinions may differ and still say one thing.
+const ALIKE: f64 = 2e-3;
+
+/// Whoever reads the voltage that the drops give is misled. Where the exponential law gives the same, as for matched
+/// diodes at equal currents, the doubt is only worth knowing.
+fn is_misled(by_drops: f64, refined: Option<f64>) -> bool {
+    refined.is_none_or(|v| (v - by_drops).abs() > ALIKE)
+}
+
 fn finding(evidence: &Evidence<'_>, operating: &Operating, number: usize, d: &DifferenceResult) -> Finding {
     let between = match (d.from, d.to) {
         (from, NodeId::GROUND) => format!("v({})", evidence.node(from)),
@@ -87,7 +97,7 @@ fn finding(evidence: &Evidence<'_>, operating: &Operating, number: usize, d: &Di
             evidence.at(&RULE, scope, span, message).about(evidence.node(d.from))
         }
     };
-    if d.of == DifferenceOf::Watched {
+    if d.of == DifferenceOf::Watched && is_misled(d.voltage, d.refined) {
         finding.severity = Severity::Warning;
     }
     finding.label("a difference of drops").help(format!("{} {}", RULE.why, RULE.remedy))
@@ -114,10 +124,11 @@ fn matched(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
             if error < 5e-3 || error < 0.5 * (va - vb).abs() {
                 continue;
             }
-            let exact = a.refined.zip(b.refined).map(|(a, b)| quantity(a.voltage - b.voltage, "V"));
-            let exact = exact.map_or(String::new(), |v| format!("; by the exponential law it is {v}"));
+            let refined = a.refined.zip(b.refined).map(|(a, b)| a.voltage - b.voltage);
+            let exact = refined
+                .map_or(String::new(), |v| format!("; by the exponential law it is {}", quantity(v, "V")));
             let message = format!(
-                "the matched `{}` and `{}` differ by {} ± {} by their drops{exact}{}",
+                "the matched {} and {} differ by {} ± {} by their drops{exact}{}",
                 evidence.name(*first),
                 evidence.name(*second),
                 quantity(va - vb, "V"),
@@ -125,7 +136,9 @@ fn matched(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
                 in_case(operating, number)
             );
             let mut finding = evidence.about(&RULE, *first, message).about(evidence.name(*second));
-            finding.severity = Severity::Warning;
+            if is_misled(va - vb, refined) {
+                finding.severity = Severity::Warning;
+            }
             finding = finding.label("matched").also(evidence.statement(*second), "with this one");
             findings.push(finding.help(format!("{} {}", RULE.why, RULE.remedy)));
         }

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "division-by-zero",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an expression divides by zero",
     why: "What it stands for is not evaluated.",
     remedy: "Correct the parameter that is zero.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "drop-taken-from-vj",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "a drop is given that is the model's built-in potential",
     why: "VJ is the built-in potential that shapes the junction's capacitance. It is no forward drop: that follows from IS, N and the current.",
     remedy: "Take the note away and let IS and N speak, or give the drop that the data sheet prints at your current.",

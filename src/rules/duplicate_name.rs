@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "duplicate-name",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "two elements or two instances of one name",
     why: "Results and notes go by names, and other tools refuse such a file or drop one of the two.",
     remedy: "Rename one of them.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "expression-without-value",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an expression that has no value, or one beyond all numbers",
     why: "The square root of a negative number, the logarithm of zero: what it stands for is not evaluated.",
     remedy: "Look at the values that go in.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "floating-part",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "a part of the circuit is joined neither to ground nor to the rest",
     why: "Its voltages against ground are not determined, and it exchanges nothing with the rest. Usually one \
           node name on its border is wrong or its return is missing.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "forward-across-source",
     group: "orientation",
     severity: Severity::Error,
+    also: None,
     summary: "a diode lies forward across a voltage source, and no resistance limits its current",
     why: "The source holds more than any diode drops, so the current has no limit but what the parts survive; \
           the model has no solution.",

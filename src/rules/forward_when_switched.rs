@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "forward-when-switched",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a diode at a switched node conducts whenever the switch closes: a freewheel diode the wrong way round",
     why: "A freewheel diode carries the coil's current on when the switch opens, and blocks while it is closed. The \
           other way round it stands forward across the supply with nothing but the switch to limit the current.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "hazardous-voltage",
     group: "caution",
     severity: Severity::Note,
+    also: None,
     summary: "a voltage passes the limits of extra-low voltage, or a capacitor stores a dangerous energy",
     why: "Above 50 V AC (70.7 V peak) or 120 V DC, or with 10 J and more stored at 100 V and more, touching the \
           circuit can injure or kill.",

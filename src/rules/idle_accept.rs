@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "idle-accept",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "an `accept` note silences nothing",
     why: "The finding it stood for is gone, or a name in it is wrong. Left standing it would hide the same \
           finding when it comes back for another reason.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "include-cycle",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a file that includes itself, directly or through others",
     why: "It would be read without end.",
     remedy: "Remove one of the include lines.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "include-not-found",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an included file, or its section, is not there",
     why: "Models and subcircuits that it may define are missing; they are not reported one by one.",
     remedy: "Correct the path, or name the place with `--include-dir`.",

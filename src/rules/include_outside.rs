@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "include-outside",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an included file lies where nothing may be opened",
     why: "A netlist from elsewhere could otherwise have any file of the machine read. Only files of its own repository or directory are opened.",
     remedy: "Name the place with `--include-dir` if it is to be trusted.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "indicator-never-lit",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a light-emitting diode stands at less than its drop in every condition, so it never lights",
     why: "Something across it, or too many diodes in series with it, leaves it less than the voltage it needs, so it \
           stays dark whatever happens.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "leakage-matters",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "a blocking diode's leakage moves a node of high impedance",
     why: "A blocking diode is no open circuit: its leakage flows through whatever it sees, and in a large resistance that is a voltage. It doubles about every 10 degrees.",
     remedy: "Lower the resistance that it sees, take a diode of low leakage, or count the leakage in.",
@@ -33,7 +34,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut findings = Vec::new();
     for (id, results) in by_diode(operating) {
         let Some((number, told)) = results.iter().find_map(|&(n, d)| Some((n, leaks(d)?))) else { continue };
-        let message = format!("`{}` {told}{}", evidence.name(id), in_case(operating, number));
+        let message = format!("{} {told}{}", evidence.name(id), in_case(operating, number));
         let finding = evidence.about(&RULE, id, message).label("blocks, but leaks");
         findings.push(finding.help(format!("{} {}", RULE.why, RULE.remedy)));
     }

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "limit-reached",
     group: "reading",
     severity: Severity::Error,
+    also: Some(Severity::Note),
     summary: "a circuit, file, statement or expression that is too large or too deep",
     why: "A few lines can ask for a billion elements. Reading stops at a stated bound, so that nothing hangs, and what is beyond counts as unknown.",
     remedy: "Check the parts one by one.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "mega-in-letter-code",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a value such as `4M7`, in which M is mega",
     why: "In the letter code of IEC 60062 the letter stands at the decimal point and M is mega, whereas behind all digits it is milli. Other readers of netlists may take it otherwise.",
     remedy: "Write `4.7Meg` to leave no doubt.",

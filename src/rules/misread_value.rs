@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "misread-value",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a value whose last letter means something else than it seems to",
     why: "Scale letters are case-blind: `1M` is a thousandth and `1F` is a femto. A resistor of 1 MΩ becomes one of 1 mΩ, which shorts what it should barely load.",
     remedy: "Write `Meg` for a million; give farads without a letter.",

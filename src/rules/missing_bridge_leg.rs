@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "missing-bridge-leg",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "a bridge rectifier has three legs: one is missing",
     why: "One output of the bridge is joined to both ends of the winding, the other to one of them only, so the current \
           has no way back in every other half-wave.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "missing-element",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an element names another that is not there",
     why: "A controlled source without its control, or a coupling without its coils, means nothing.",
     remedy: "Correct the name.",

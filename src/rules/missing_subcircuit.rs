@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "missing-subcircuit",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an instance of a subcircuit that is defined nowhere",
     why: "What is inside cannot be examined. The instance stays on its nodes as an unknown element.",
     remedy: "Add the definition, or include the file that holds it.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "near-miss-name",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "a node's name is one letter away from another's, and it has one connection only",
     why: "A misspelt name makes a new node, and the element on it is cut off from the node it was meant for.",
     remedy: "Write the name of the other node; if the node is meant to be one of its own, join something to it.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "near-switching",
     group: "states",
     severity: Severity::Note,
+    also: None,
     summary: "a diode's state hangs on less than the uncertainty of its drop",
     why: "The voltage that the diode would see differs from its drop by less than the drop itself is known to, so the \
           real part may stand in the other state, or on the soft knee between the two.",

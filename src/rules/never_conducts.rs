@@ -13,6 +13,7 @@ pub const RULE: Rule = Rule {
     name: "never-conducts",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "no closed path lets a diode conduct, whatever the values are",
     why: "A current needs a closed path. Every path through this diode ends, or meets another diode that only \
           passes the other way, so it never carries forward current.",

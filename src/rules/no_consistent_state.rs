@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "no-consistent-state",
     group: "states",
     severity: Severity::Error,
+    also: None,
     summary: "no set of states satisfies the circuit's laws",
     why: "Whatever states are assumed, some law fails, so the circuit as written has no operating point: \
           sources contradict one another, or a controlled source drives itself without bound.",

@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "no-freewheel-path",
     group: "time",
     severity: Severity::Warning,
+    also: None,
     summary: "an inductor is switched off and its current has no other path",
     why: "The current of an inductor cannot stop at once: when the switch opens, the voltage rises until something \
           gives way, usually the switch.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "no-ground",
     group: "wiring",
     severity: Severity::Error,
+    also: None,
     summary: "nothing in the circuit is joined to ground",
     why: "Voltages are counted from node 0. Where no element touches it, no node has a voltage, and a supply \
           that should return there has no way back.",

@@ -12,6 +12,7 @@ pub const RULE: Rule = Rule {
     name: "no-lasting-current",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a diode charges a capacitor that nothing discharges, so it carries no lasting current",
     why: "A capacitor carries no mean current, so what flows in through a diode must flow out some other way than \
           through capacitors. Here every other way is a diode that points against it: the capacitor charges once and \

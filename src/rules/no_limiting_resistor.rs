@@ -13,6 +13,7 @@ pub const RULE: Rule = Rule {
     name: "no-limiting-resistor",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a source drives its current straight through diodes, with nothing but their own resistance to limit it",
     why: "Around the loop there is no load: the source stands across the diodes, and the few ohms of leads and \
           junctions take what their drops leave over. Real parts would not survive it.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "not-evaluated",
     group: "states",
     severity: Severity::Note,
+    also: None,
     summary: "diodes could not be evaluated, since what is around them is not known to the model",
     why: "An element whose law is not known (a transistor, an unknown part, a value that could not be read) leaves \
           everything it couples to undetermined. Their wiring is checked all the same.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "nothing-to-check",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a file without any element of its own",
     why: "A library that only defines models and subcircuits is examined where a circuit uses it.",
     remedy: "Check the circuit that includes it.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "odd-one-out",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "one diode of a matrix or a gate points the other way than all the others of its kind",
     why: "In a matrix all diodes lead from one set of lines to the other, and at a gate all lead to the common node or \
           all away from it. One that points back passes current where none is meant, or none where some is.",

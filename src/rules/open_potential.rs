@@ -13,6 +13,7 @@ pub const RULE: Rule = Rule {
     name: "open-potential",
     group: "states",
     severity: Severity::Note,
+    also: None,
     summary: "a node's voltage is left open, since only blocking diodes and current sources lead to it",
     why: "No current flows there whatever the voltage is, within the limits that keep the diodes blocking. \
           Leakage decides in the real circuit; the table prints the interval.",

@@ -12,6 +12,7 @@ pub const RULE: Rule = Rule {
     name: "open-split",
     group: "states",
     severity: Severity::Note,
+    also: None,
     summary: "how a current splits between branches is left open by the constant-drop model",
     why: "Around the loop the drops and sources sum to exactly zero, so every split of the current satisfies the \
           laws. Real parts decide by their spread; the table prints the interval.",

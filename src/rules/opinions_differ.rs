@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "opinions-differ",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "the exponential law sees a diode in another state than its drop does",
     why: "A knee is soft: near it a diode carries current before its drop is reached, and beside another diode it takes its share although its drop is a little higher.",
     remedy: "Believe neither state where it matters; give the diode more headroom, or look at it with the drop of its true current.",
@@ -32,7 +33,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut findings = Vec::new();
     for (id, results) in by_diode(operating) {
         if let Some((number, told)) = results.iter().find_map(|&(n, d)| Some((n, differs(d)?))) {
-            let message = format!("`{}` {told}{}", evidence.name(id), in_case(operating, number));
+            let message = format!("{} {told}{}", evidence.name(id), in_case(operating, number));
             let finding = evidence.about(&RULE, id, message).label("its state is a matter of opinion");
             findings.push(finding.help(format!("{} {}", RULE.why, RULE.remedy)));
         }

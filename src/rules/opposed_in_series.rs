@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "opposed-in-series",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "two diodes in series point against each other, and nothing else joins their common node",
     why: "Whichever way the current wants to go, one of the two blocks it; without a breakdown voltage on either \
           model neither ever carries anything.",

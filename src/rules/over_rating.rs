@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "over-rating",
     group: "states",
     severity: Severity::Warning,
+    also: None,
     summary: "a current, a reverse voltage or a power exceeds the rating that a note gives",
     why: "A part beyond its rating fails early or at once.",
     remedy: "Take a part of a higher rating, or change what loads it; if the rating in the note is wrong, correct it.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "parallel-diodes",
     group: "orientation",
     severity: Severity::Note,
+    also: None,
     summary: "diodes of one model share a current with nothing that makes them share it evenly",
     why: "10 mV between two forward voltages parts the currents by nearly 1.5 to 1, 60 mV by ten to one, and \
           the diode that takes more grows warmer and takes more still.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "parameter-cycle",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a parameter that needs its own value",
     why: "It has none, and nothing that uses it can be evaluated.",
     remedy: "Give one parameter of the circle a number.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "points-at-its-source",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "where diodes join supplies on one node, one of them cannot let its supply through",
     why: "The node is fed through diodes only. One of them has its cathode at the positive end of its source (or its \
           source has the wrong sign), so that source can never feed the node, and the others may drive current into it.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "port-count",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an instance with more or fewer nodes than its subcircuit has ports",
     why: "Which node belongs to which port cannot be known, so the instance is not expanded.",
     remedy: "Give one node for each port, in the order of the definition.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "range-without-value",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "a range on a source that moves over time and has no DC value",
     why: "A range replaces a DC value. Without one there is nothing to replace, and the source's extreme instants are examined anyway.",
     remedy: "Give the source a DC value beside its shape, or leave the range out.",

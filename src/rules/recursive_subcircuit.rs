@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "recursive-subcircuit",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a subcircuit that holds an instance of itself",
     why: "It would be expanded without end.",
     remedy: "Remove the inner instance.",

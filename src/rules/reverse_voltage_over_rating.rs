@@ -12,6 +12,7 @@ pub const RULE: Rule = Rule {
     name: "reverse-voltage-over-rating",
     group: "time",
     severity: Severity::Warning,
+    also: None,
     summary: "over time a diode sees more reverse voltage than it is rated for",
     why: "A rectifier diode meets its largest reverse voltage a half-wave after the reservoir has charged, when no DC \
           answer looks. Beyond its rating it breaks down, and the charge it lets back flows at that full voltage.",

@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "reversed-bridge-leg",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a leg of a rectifier lies the wrong way round and shorts the winding through another",
     why: "All legs at one output of a rectifier point the same way. Where one points back, two of them lead from one end \
           of the winding straight to the other past the load, and short it in every other half-wave.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "reversed-clamp",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "of two clamp diodes at one node one lies the wrong way round, or its rail or its signal has the wrong sign",
     why: "A node is clamped between two rails by a diode from the lower one and a diode to the higher one. Any other \
           way the first of them to conduct holds the node at its rail whatever the signal is, and the second never acts.",

@@ -11,6 +11,7 @@ pub const RULE: Rule = Rule {
     name: "ripple-beyond-limit",
     group: "time",
     severity: Severity::Warning,
+    also: None,
     summary: "a watched node ripples more than its note allows",
     why: "What hangs on the node sees the whole ripple: a regulator drops out in its valleys, a measurement follows \
           its crests.",

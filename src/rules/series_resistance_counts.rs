@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "series-resistance-counts",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "a diode's series resistance adds more than 50 mV to its drop",
     why: "At high current a diode is a drop and a resistor: the voltage at its terminals is higher than the drop, and grows with the current in a straight line.",
     remedy: "Count with the terminal voltage; where the difference matters, take a larger diode.",
@@ -39,7 +40,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         let worst = results.iter().max_by(|a, b| added(a.1).total_cmp(&added(b.1)));
         let Some(&(number, diode)) = worst.filter(|(_, d)| added(d) > LEAST) else { continue };
         let message = format!(
-            "the series resistance of `{}` ({}) adds {} to its drop of {}{}",
+            "the series resistance of {} ({}) adds {} to its drop of {}{}",
             evidence.name(id),
             quantity(diode.series, "Ω"),
             quantity(added(diode), "V"),

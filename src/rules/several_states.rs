@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "several-states",
     group: "states",
     severity: Severity::Note,
+    also: None,
     summary: "more than one set of states satisfies the circuit's laws",
     why: "Feedback through a controlled source, or a negative resistance, makes the circuit remember: which set \
           holds depends on how it was switched on. All sets are listed.",

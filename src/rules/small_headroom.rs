@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "small-headroom",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "the voltage left over for a current is small against the uncertainty of the drops in its path",
     why: "A current set by a supply minus drops is off by the error of the drops over what is left of the supply: with 0.3 V left, 0.1 V is a third of it.",
     remedy: "Leave more headroom, or set the current by a source that does not hang on the drops.",
@@ -67,12 +68,12 @@ fn finding(
         let knee = diode.knee?;
         format!("its drop of {drop} is known to {} only", quantity(knee.uncertainty, "V"))
     } else {
-        format!("the drops in its path, first of all that of `{}`, are known no better", evidence.name(cause))
+        format!("the drops in its path, first of all that of {}, are known no better", evidence.name(cause))
     };
     let all =
         if error.most.is_some_and(|(_, part)| error.current > 1.25 * part) { "with all drops " } else { "" };
     let message = format!(
-        "`{name}` sees only {left} more than its drop, and {whose}: {all}its {} may be off by {:.0} %{}",
+        "{name} sees only {left} more than its drop, and {whose}: {all}its {} may be off by {:.0} %{}",
         quantity(current, "A"),
         (100.0 * error.current / current).min(999.0),
         in_case(operating, number)

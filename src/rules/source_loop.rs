@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "source-loop",
     group: "wiring",
     severity: Severity::Error,
+    also: Some(Severity::Warning),
     summary: "voltage sources form a closed loop without resistance",
     why: "Around a loop the voltages must sum to zero. Where they do not, no current satisfies the sources (or, \
           through an inductor, it grows without limit); where they do, nothing tells how the sources share it.",

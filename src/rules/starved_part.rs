@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "starved-part",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a diode holds off the feed in every condition, and what lies behind it has no other",
     why: "In every condition that was examined the diode blocks against a voltage that it was to pass on, so what it \
           feeds gets nothing.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "stray-continuation",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a `+` line with nothing above it to continue",
     why: "What stands on such a line is lost.",
     remedy: "Put it behind the statement that it belongs to.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "stray-ends",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "an `.ends` line that ends nothing, or something else than it says",
     why: "A definition ends elsewhere than its writer thinks.",
     remedy: "Remove it or correct its name.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "supplies-tied",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "two supplies of clearly different voltage are joined by a few ohms, with nothing that keeps them apart",
     why: "The higher one drives its current straight into the lower one, and only their own resistance limits it. \
           Supplies meet through diodes, or through a resistance that is meant.",

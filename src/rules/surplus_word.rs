@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "surplus-word",
     group: "reading",
     severity: Severity::Warning,
+    also: Some(Severity::Note),
     summary: "words behind a complete element",
     why: "They are not read. Most often they belong to the next statement, whose line end is missing, or continue a line that was commented out: then an element is lost without a word.",
     remedy: "Give them a line of their own, mend the line they continue, or put `;` before a comment.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "temperature-decides",
     group: "trust",
     severity: Severity::Note,
+    also: None,
     summary: "temperature moves a drop by more than the margin of its state",
     why: "A drop falls by about 2 mV for each degree. Where the margin is smaller than what the declared temperatures make of that, the state is decided by the weather.",
     remedy: "Leave more margin, or check the state at both ends with an `expect` note.",
@@ -43,7 +44,7 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
             continue;
         };
         let message = format!(
-            "over the declared temperatures the drop of `{}` moves by {}, more than its margin of {}{}",
+            "over the declared temperatures the drop of {} moves by {}, more than its margin of {}{}",
             evidence.name(id),
             quantity(moved, "V"),
             quantity(margin, "V"),

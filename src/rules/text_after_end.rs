@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "text-after-end",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "statements behind `.end`",
     why: "They are not read. A file that was put together from two has often lost its second half that way.",
     remedy: "Move them above `.end`, or remove them.",

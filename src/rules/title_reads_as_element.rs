@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "title-reads-as-element",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "line 1 is taken as the title, yet reads as an element",
     why: "The first line of a netlist is its title, whatever it says. Many first elements are lost that way.",
     remedy: "Put a title line above it.",

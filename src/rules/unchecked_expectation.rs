@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unchecked-expectation",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "an `expect` note could not be checked",
     why: "Whoever wrote it relies on it, and nothing here shows whether it holds.",
     remedy: "Correct the condition it names, or say with a `hold`, `supply` or `made-of` note what is missing.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unclosed-subcircuit",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a `.subckt` without its `.ends`",
     why: "All lines behind it count as its inside, and are missing from the circuit.",
     remedy: "Put `.ends` where the definition should end.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unconnected-port",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a port that nothing inside its subcircuit touches",
     why: "An outside node that ends at it is joined to nothing.",
     remedy: "Remove the port, or look whether a node inside is misspelt.",

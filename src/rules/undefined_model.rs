@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "undefined-model",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a model that is named and defined nowhere",
     why: "Nothing is known about the part. A diode counts as silicon with the default drop, and trust in it is at best fair.",
     remedy: "Add the `.model` line, or include the file that holds it.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "uneven-ring",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "in a ring of four diodes one lies the wrong way round: three in series lie across the fourth",
     why: "In a bridge two ways of two diodes each lead from one corner to the opposite one. Here one diode alone leads \
           where the other three lead in series, and its drop keeps those three from ever conducting together.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "unfed-part",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "elements form loops that no source drives, so they carry no current",
     why: "A current flows only around a loop that holds a source, and these elements meet the rest of the circuit in \
           one node at most. Usually a source is missing, an element that led here was taken out, or two nodes have \

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "unheld-node",
     group: "wiring",
     severity: Severity::Warning,
+    also: None,
     summary: "nothing that passes a direct current holds a node's voltage",
     why: "Only capacitors, gates or sensing inputs touch the node, so its direct voltage drifts with the first \
           leakage and no operating point tells it.",

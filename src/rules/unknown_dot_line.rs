@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-dot-line",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a dot line that means nothing here",
     why: "If it was meant for another tool nothing is wrong; if it is misspelt it has no effect.",
     remedy: "Correct the word.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-element",
     group: "reading",
     severity: Severity::Warning,
+    also: Some(Severity::Note),
     summary: "an element whose letter is not known here",
     why: "Nothing can be said about what it does. It stays on its nodes as an unknown element.",
     remedy: "Begin prose with `*`; correct the letter of a misspelt element.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-name",
     group: "notes",
     severity: Severity::Warning,
+    also: Some(Severity::Error),
     summary: "a note, `.dc` line or option names nothing in this circuit",
     why: "What it says has no effect, so the states are not those that its writer expects.",
     remedy: "Correct the name; inside an instance write the path, such as `X1:D3`.",

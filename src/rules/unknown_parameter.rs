@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-parameter",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an expression uses a parameter or function that is not known",
     why: "What it stands for is not evaluated.",
     remedy: "Define it with `.param`, or correct the name.",

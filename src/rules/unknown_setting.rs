@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-setting",
     group: "settings",
     severity: Severity::Warning,
+    also: None,
     summary: "a key of `kneewise.toml` that is not known",
     why: "A misspelt key has no effect, and whoever wrote it believes that it has.",
     remedy: "Correct the key; the nearest known one is proposed.",

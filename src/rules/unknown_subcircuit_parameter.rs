@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unknown-subcircuit-parameter",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "an instance sets a parameter that its subcircuit does not have",
     why: "The setting has no effect, so the default stands.",
     remedy: "Correct the name, or declare the parameter on the `.subckt` line.",

@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "unlimited-current",
     group: "states",
     severity: Severity::Error,
+    also: None,
     summary: "sources drive an unlimited current through diodes, since nothing in the loop has a resistance",
     why: "The voltages around the loop exceed the drops of its diodes, so whatever current flows there the sum \
           does not come to zero: the model has no solution, and the real parts would find theirs the hard way.",

@@ -10,6 +10,7 @@ pub const RULE: Rule = Rule {
     name: "unmeant-breakdown",
     group: "states",
     severity: Severity::Warning,
+    also: None,
     summary: "a rectifier, signal diode or LED is driven into reverse breakdown",
     why: "The breakdown voltage of such a diode is a limit, not a working point: what it dissipates there soon destroys \
           it.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unreadable-expression",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "an expression that cannot be read",
     why: "What it stands for is not evaluated.",
     remedy: "Mend the expression.",

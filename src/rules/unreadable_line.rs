@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unreadable-line",
     group: "reading",
     severity: Severity::Error,
+    also: None,
     summary: "a line, or a part of it, that cannot be read",
     why: "An element without its nodes or its value cannot be examined. The next line is read all the same, and the element stays on its nodes as an unknown one, so that it causes no false alarm there.",
     remedy: "Complete or mend the line; a comment begins with `*`.",

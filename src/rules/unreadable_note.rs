@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unreadable-note",
     group: "notes",
     severity: Severity::Warning,
+    also: None,
     summary: "a note that cannot be read",
     why: "It has no effect.",
     remedy: "Correct its first word or its shape.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unreadable-settings",
     group: "settings",
     severity: Severity::Error,
+    also: None,
     summary: "a line of `kneewise.toml` that is no TOML",
     why: "What stands there has no effect.",
     remedy: "Mend the line; the TOML language is described at toml.io.",

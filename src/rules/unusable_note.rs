@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unusable-note",
     group: "notes",
     severity: Severity::Warning,
+    also: Some(Severity::Error),
     summary: "a note that cannot apply to what it names",
     why: "A drop below zero, a material that is not in the table, a `hold` on something that has no main path, a supply for a node that the netlist already holds: the note is not used.",
     remedy: "Correct the note or remove it.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unusable-setting",
     group: "settings",
     severity: Severity::Warning,
+    also: None,
     summary: "a value of `kneewise.toml` that cannot be used",
     why: "The setting has no effect, and whoever wrote it believes that it has.",
     remedy: "Write a value of the kind that is named.",

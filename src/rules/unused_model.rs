@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unused-model",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a model that nothing uses",
     why: "Often the name is misspelt where it should be used.",
     remedy: "Remove it or correct the name.",

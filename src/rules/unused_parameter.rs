@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unused-parameter",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a parameter that nothing uses",
     why: "Often the name is misspelt where it should be used.",
     remedy: "Remove it or correct the name.",

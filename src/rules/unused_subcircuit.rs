@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unused-subcircuit",
     group: "reading",
     severity: Severity::Note,
+    also: None,
     summary: "a subcircuit of which there is no instance",
     why: "Nothing in it is examined.",
     remedy: "Remove it, or add the instance.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "unverified-result",
     group: "states",
     severity: Severity::Error,
+    also: None,
     summary: "a result does not satisfy the circuit's laws when it is put back into them, so it is not given",
     why: "Values that differ by more than double precision can hold leave a residual beyond 1e-9 of the largest \
           term; an answer that cannot be proved is not printed.",

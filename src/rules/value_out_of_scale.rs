@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "value-out-of-scale",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a value that no part has",
     why: "A capacitor of a million farads is a slip of the scale letter.",
     remedy: "Correct the scale letter.",

@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "wrong-model-type",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a model of another type than the element's letter takes",
     why: "The element counts as having no model.",
     remedy: "Correct the model's name or its type.",

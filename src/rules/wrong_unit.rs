@@ -8,6 +8,7 @@ pub const RULE: Rule = Rule {
     name: "wrong-unit",
     group: "reading",
     severity: Severity::Warning,
+    also: None,
     summary: "a value in the unit of another quantity",
     why: "Unit letters are ignored, so a resistor of `10uF` is one of 10 µΩ. Most likely the letter at the head of the line is wrong, or the value belongs to another line.",
     remedy: "Correct the value or the element's letter.",

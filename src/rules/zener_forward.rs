@@ -9,6 +9,7 @@ pub const RULE: Rule = Rule {
     name: "zener-forward",
     group: "orientation",
     severity: Severity::Warning,
+    also: None,
     summary: "a Zener or surge diode across a supply lies in its forward direction",
     why: "There is voltage enough to hold the diode at its breakdown voltage, but it conducts forward in every condition \
           and holds the node at less than a volt instead.",

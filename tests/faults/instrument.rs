@@ -113,9 +113,7 @@ fn no_clean_netlist_gives_a_warning() {
     let mut told = String::new();
     for which in ["clean", "held-out"] {
         for (name, text) in netlists(which) {
-            let judges = |f: &&Finding| kneewise::rules::find(f.rule).is_none_or(|r| r.group != "trust");
-            // how far the model may be believed is told of good circuits too
-            for finding in serious(&check_over_time(&text)).filter(judges) {
+            for finding in serious(&check_over_time(&text)) {
                 told.push_str(&format!("{which}/{name}: {} {}\n", finding.rule, finding.message));
             }
         }
@@ -147,9 +145,10 @@ fn seeded_faults_are_caught() {
         assert_targets(&outcomes, &missed);
     } else {
         // a dozen of one operator say little; all of a group together say enough
-        for (operators, target) in [(&WIRING[..], 0.95), (&ORIENTATION[..], 0.8)] {
+        for (operators, target) in [(&WIRING[..], 0.95), (&ORIENTATION[..], 0.85)] {
             let pooled = Row::of(outcomes.iter().filter(|o| operators.contains(&o.operator)));
-            assert!(pooled.share() >= target, "{pooled:?}\n{}", missed.join("\n"));
+            let enough = pooled.mistakes() >= 4 * operators.len();
+            assert!(enough && pooled.share() >= target, "{pooled:?}\n{}", missed.join("\n"));
         }
     }
 }

@@ -2,8 +2,10 @@
 //! Which mutants are no mistakes is for `judge` to say, which never sees kneewise.
 //!
 //! An ordinary run takes a sample of each operator. `KNEEWISE_FAULTS=all cargo test --test outside faults -- --nocapture`
-//! makes and judges every mutant and prints the table; `KNEEWISE_FAULTS=held-out` does so over the netlists that no
-//! rule was built against; `KNEEWISE_MISSED=1` lists what was missed.
+//! makes and judges every mutant and prints the table; `KNEEWISE_FAULTS=held-out` does so over the netlists of
+//! `held-out`. Those stand apart from the ones that the rules were written against, but no file here may give a warning,
+//! and where one of them did its rule was mended: a second sample, not a blind one. `KNEEWISE_MISSED=1` lists what was
+//! missed.
 
 mod instrument;
 mod isomorphic;

@@ -37,10 +37,14 @@ impl Row {
         row
     }
 
-    /// Caught among those that are mistakes; all where there are none.
+    /// How many are mistakes.
+    pub fn mistakes(&self) -> usize {
+        self.mutants - self.equivalent - self.intent
+    }
+
+    /// Caught among those that are mistakes; none where there are none, so that no share is over nothing.
     pub fn share(&self) -> f64 {
-        let mistakes = self.mutants - self.equivalent - self.intent;
-        if mistakes == 0 { 1.0 } else { self.caught as f64 / mistakes as f64 }
+        self.caught as f64 / self.mistakes().max(1) as f64
     }
 }
 

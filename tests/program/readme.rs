@@ -51,7 +51,7 @@ fn with_rules(text: &str) -> String {
     let [before, _, after] = parts[..] else { panic!("the README has no two `{RULES}` marks") };
     let mut table = String::from("\n| rule | severity | what it reports |\n|---|---|---|\n");
     for rule in kneewise::rules::all() {
-        writeln!(table, "| `{}` | {} | {} |", rule.name, rule.severity.word(), rule.summary).unwrap();
+        writeln!(table, "| `{}` | {} | {} |", rule.name, rule.severity_words(), rule.summary).unwrap();
     }
     format!("{before}{RULES}{table}{RULES}{after}")
 }

@@ -53,6 +53,31 @@ fn the_nearest_settings_above_a_file_hold() {
     assert_eq!(run_in(&folder, &["check", "a.net", "--config", "missing.toml"]).code, 2);
 }
 
+/// One cause gives one finding; where that one is accepted or switched off, what it led to is told.
+#[test]
+fn what_is_accepted_or_switched_off_hides_nothing_else() {
+    let lamp = "lamp\nV1 v5 0 5\nD1 v5 0 DL\n.model DL D(IS=1e-20 N=2)\n";
+    let accepted = format!("{lamp}*@ accept forward-across-source D1 because the bench limits it\n");
+    let folder = folder(
+        "cause",
+        &[
+            ("a.net", lamp),
+            ("b.net", &accepted),
+            ("off.toml", "[levels]\nforward-across-source = \"off\"\n"),
+            ("none.toml", ""),
+        ],
+    );
+    let rules = |file: &str, settings: &str| {
+        let document = json(&folder, &["check", file, "--config", settings]);
+        let shown = document["findings"].as_array().unwrap().iter().filter(|f| f["accepted"].is_null());
+        shown.map(|f| f["rule"].as_str().unwrap().to_owned()).collect::<Vec<_>>()
+    };
+    assert_eq!(rules("a.net", "none.toml"), ["forward-across-source"]);
+    assert_eq!(rules("b.net", "none.toml"), ["unlimited-current"]);
+    assert_eq!(rules("a.net", "off.toml"), ["unlimited-current"]);
+    assert_eq!(run_in(&folder, &["check", "b.net", "--fail-on", "error"]).code, 1);
+}
+
 #[test]
 fn settings_above_a_repository_are_not_its_own() {
     let folder = folder(

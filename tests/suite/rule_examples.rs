@@ -66,8 +66,12 @@ fn complaints(rule: &Rule) -> Vec<String> {
         wrong.push(format!("{}, passing example:\n{}", rule.name, tell(&passing)));
     }
     for finding in failing.findings.iter().chain(&passing.findings) {
-        if rules::find(finding.rule).is_none() {
-            wrong.push(format!("no rule file for {}", finding.rule));
+        match rules::find(finding.rule) {
+            None => wrong.push(format!("no rule file for {}", finding.rule)),
+            Some(found) if ![Some(found.severity), found.also].contains(&Some(finding.severity)) => {
+                wrong.push(format!("{} does not declare {}", found.name, finding.severity.word()));
+            }
+            Some(_) => {}
         }
         wrong.extend(style(finding).map(|what| format!("{}: {what}\n{}", rule.name, tell(&failing))));
     }

@@ -111,7 +111,7 @@ fn descriptor(rule: &'static Rule) -> Descriptor<'static> {
         short_description: Text::of(rule.summary),
         full_description: Text::of(rule.why),
         help: Rich { text, markdown },
-        default_configuration: Configuration { level: level(rule.severity) },
+        default_configuration: Configuration { level: level(rule.worst()) },
         properties: Tags { tags: vec![rule.group] },
     }
 }

@@ -31,6 +31,8 @@ pub struct Rule {
     pub group: &'static str,
     /// Its severity.
     pub severity: Severity,
+    /// The severity of some of its findings, where they are worse or milder.
+    pub also: Option<Severity>,
     /// One line.
     pub summary: &'static str,
     /// Why it matters.
@@ -45,6 +47,21 @@ pub struct Rule {
     pub passing: &'static str,
     /// The check.
     pub check: Check,
+}
+
+impl Rule {
+    /// The worst that it finds.
+    pub fn worst(&self) -> Severity {
+        self.severity.max(self.also.unwrap_or(Severity::Note))
+    }
+
+    /// As it is printed: `warning`; `note, warning` where it has two severities.
+    pub fn severity_words(&self) -> String {
+        match self.also {
+            None => self.severity.word().to_owned(),
+            Some(also) => format!("{}, {}", self.severity.min(also).word(), self.worst().word()),
+        }
+    }
 }
 
 /// A rule that could not judge.

@@ -14,6 +14,7 @@ pub fn run(
     reading: &[Finding],
     operating: Option<&Operating>,
     swing: Option<&Swing>,
+    levels: &BTreeMap<String, Option<Severity>>,
 ) -> (Vec<Finding>, Vec<Skipped>) {
     let mut told = Vec::new();
     let mut skipped = Vec::new();
@@ -33,6 +34,10 @@ pub fn run(
     }
     let mut findings = told.clone();
     told.extend(reading.iter().cloned());
+    // what is accepted or switched off has told nobody its consequences
+    accept::accept(evidence, &mut told, |_| false);
+    told.retain(|finding| finding.accepted.is_none());
+    set_levels(&mut told, levels);
     evidence.keep_told(told);
     let evidence = &*evidence;
     if let Some(states) = operating {
