@@ -1,10 +1,11 @@
 //! Currents, reverse voltages and powers beyond what `rating` notes allow.
 
+use super::support::Limit;
 use super::{Check, Evidence, Rule, in_cases};
-use crate::circuit::directory::Directory;
-use crate::circuit::{Behaviour, ElementId, Note, NoteKind};
+use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{Case, Operating};
+use rustc_hash::FxHashMap;
 use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
@@ -31,6 +32,9 @@ pub const RULE: Rule = Rule {
     check: Check::States(check),
 };
 
+/// A rating that is met exactly is no rating passed.
+pub(super) const BEYOND: f64 = 1.0 + 1e-9;
+
 /// What one element has to bear in one condition.
 #[derive(Default, Clone, Copy)]
 struct Load {
@@ -40,56 +44,58 @@ struct Load {
 }
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    let circuit = evidence.circuit;
-    let is_rating = |n: &&Note| matches!(n.kind, NoteKind::Rating(_));
-    let notes: Vec<&Note> = circuit.notes.iter().filter(is_rating).collect();
-    if notes.is_empty() {
+    let rated = evidence.ratings();
+    if rated.is_empty() {
         return Vec::new();
     }
-    let directory = Directory::of(circuit);
+    let branches = operating.cases.iter().map(branches).collect::<Vec<_>>();
     let mut findings = Vec::new();
-    for note in notes {
-        let NoteKind::Rating(limits) = &note.kind else { continue };
-        for id in rated(evidence, &directory, note) {
-            for (key, limit) in limits {
-                findings.extend(judge(evidence, operating, note, id, key, *limit));
-            }
-        }
+    for (&id, limits) in rated {
+        let load = |(n, case)| (n, load(evidence, case, &branches[n], id));
+        let loads: Vec<(usize, Load)> = judging(operating, id).map(load).collect();
+        findings.extend(limits.iter().filter_map(|limit| judge(evidence, operating, limit, id, &loads)));
     }
     findings
 }
 
-/// The element that a note names, or all diodes of the model that it names.
-fn rated(evidence: &Evidence<'_>, directory: &Directory, note: &Note) -> Vec<ElementId> {
-    let name = evidence.circuit.text(note.subject);
-    if let Some(id) = directory.element(note.scope, name) {
-        return vec![id];
-    }
-    let is_named = |id: &ElementId| evidence.model_name(*id).is_some_and(|m| m.eq_ignore_ascii_case(name));
-    evidence.circuit.elements().map(|(id, _)| id).filter(is_named).collect()
+/// Conditions that judge the element; an instant does not judge what is left to time.
+fn judging(operating: &Operating, id: ElementId) -> impl Iterator<Item = (usize, &Case)> {
+    let timed = operating.left_to_time.binary_search(&id).is_ok();
+    operating.cases.iter().enumerate().filter(move |(_, case)| !(case.instant && timed))
+}
+
+/// The greatest reverse voltage of a diode over the conditions that judge it; 0 where there is none.
+pub(super) fn reverse_voltage(operating: &Operating, id: ElementId) -> f64 {
+    let diode = |case: &Case| {
+        let diodes = &case.solutions.first()?.diodes;
+        diodes.binary_search_by_key(&id, |d| d.element).ok().and_then(|at| diodes[at].voltage.known())
+    };
+    judging(operating, id).filter_map(|(_, case)| diode(case)).fold(0.0, |most, v| (-v).max(most))
+}
+
+/// Currents of what is no diode, in one condition.
+fn branches(case: &Case) -> FxHashMap<ElementId, f64> {
+    let all = case.solutions.first().into_iter().flat_map(|s| &s.branches);
+    all.filter_map(|b| Some((b.element, b.current.known()?))).collect()
 }
 
 fn judge(
     evidence: &Evidence<'_>,
     operating: &Operating,
-    note: &Note,
+    rating: &Limit<'_>,
     id: ElementId,
-    key: &str,
-    limit: f64,
+    loads: &[(usize, Load)],
 ) -> Option<Finding> {
+    let Limit { note, key, limit, .. } = *rating;
     let mut over: BTreeMap<usize, f64> = BTreeMap::new();
-    for (number, case) in operating.cases.iter().enumerate() {
-        if case.instant && operating.left_to_time.binary_search(&id).is_ok() {
-            continue;
-        }
-        let load = load(evidence, case, id);
+    for &(number, load) in loads {
         let value = match key {
             "i" => load.current,
             "vr" => load.reverse,
             "p" => load.power,
             _ => None,
         };
-        if let Some(value) = value.filter(|v| *v > limit * (1.0 + 1e-9)) {
+        if let Some(value) = value.filter(|v| *v > limit * BEYOND) {
             over.insert(number, value);
         }
     }
@@ -119,7 +125,7 @@ fn judge(
     Some(finding)
 }
 
-fn load(evidence: &Evidence<'_>, case: &Case, id: ElementId) -> Load {
+fn load(evidence: &Evidence<'_>, case: &Case, branches: &FxHashMap<ElementId, f64>, id: ElementId) -> Load {
     let Some(solution) = case.solutions.first() else { return Load::default() };
     if let Ok(at) = solution.diodes.binary_search_by_key(&id, |d| d.element) {
         let diode = &solution.diodes[at];
@@ -130,7 +136,7 @@ fn load(evidence: &Evidence<'_>, case: &Case, id: ElementId) -> Load {
             power: diode.power,
         };
     }
-    let current = solution.branches.iter().find(|b| b.element == id).and_then(|b| b.current.known());
+    let current = branches.get(&id).copied();
     let power = match evidence.circuit.element(id).behaviour {
         Behaviour::Resistor(ohms) => current.map(|i| i * i * ohms.number),
         _ => None,

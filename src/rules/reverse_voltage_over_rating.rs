@@ -1,8 +1,8 @@
 //! A diode whose peak inverse voltage over time passes what it is rated for.
 
+use super::over_rating::{self, BEYOND};
 use super::{Check, Evidence, Rule};
-use crate::circuit::directory::{Directory, depth, outward};
-use crate::circuit::{Behaviour, ElementId, NoteKind};
+use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 use crate::swing::{OverTime, Swing};
@@ -42,47 +42,19 @@ pub const RULE: Rule = Rule {
 /// Breakdown voltages below this are those of diodes that are meant to break down.
 const MEANT: f64 = 40.0;
 
-fn check(evidence: &Evidence<'_>, _operating: &Operating, swing: &Swing) -> Vec<Finding> {
+fn check(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing) -> Vec<Finding> {
     if swing.span.is_none() {
         return Vec::new();
     }
-    let has_rating = evidence.circuit.notes.iter().any(|n| matches!(n.kind, NoteKind::Rating(_)));
-    let directory = has_rating.then(|| Directory::of(evidence.circuit));
     let timed = swing.diodes.iter().filter_map(|d| Some((d.element, d.over_time.as_ref()?)));
     timed
-        .filter_map(|(id, time)| match directory.as_ref().and_then(|d| rating(evidence, d, id)) {
-            Some((volts, span)) => over_note(evidence, id, time, volts, span),
+        .filter_map(|(id, time)| match evidence.reverse_rating(id) {
+            // a condition that passes it already has its finding
+            Some((volts, _)) if over_rating::reverse_voltage(operating, id) > volts * BEYOND => None,
+            Some((volts, note)) => over_note(evidence, id, time, volts, note.span),
             None => over_model(evidence, id, time, swing.window),
         })
         .collect()
-}
-
-/// The `vr` of the note that holds for a diode: the innermost, the element's before its model's.
-fn rating(evidence: &Evidence<'_>, directory: &Directory, id: ElementId) -> Option<(f64, Span)> {
-    let circuit = evidence.circuit;
-    let element = circuit.element(id);
-    let model = match element.behaviour {
-        Behaviour::Diode { model, .. } => model.map(|m| circuit.text(circuit.model(m).name).to_lowercase()),
-        _ => None,
-    };
-    let mut best: Option<(usize, bool, f64, Span)> = None;
-    for note in &circuit.notes {
-        let NoteKind::Rating(list) = &note.kind else { continue };
-        let Some(&(_, volts)) = list.iter().find(|(key, _)| key == "vr") else { continue };
-        if !outward(circuit, element.scope).any(|scope| scope == note.scope) {
-            continue;
-        }
-        let name = circuit.text(note.subject);
-        let found = directory.element(note.scope, name);
-        let is_own = found == Some(id);
-        let is_model = found.is_none() && model.as_deref() == Some(&name.to_lowercase());
-        let level = depth(circuit, note.scope);
-        let is_better = best.is_none_or(|(known, own, ..)| (level, is_own) > (known, own));
-        if (is_own || is_model) && is_better {
-            best = Some((level, is_own, volts, note.span));
-        }
-    }
-    best.map(|(_, _, volts, span)| (volts, span))
 }
 
 fn over_note(
@@ -92,7 +64,7 @@ fn over_note(
     volts: f64,
     span: Span,
 ) -> Option<Finding> {
-    let is_over = time.peak_reverse_voltage > volts * (1.0 + 1e-9);
+    let is_over = time.peak_reverse_voltage > volts * BEYOND;
     if !is_over {
         return None;
     }

@@ -2,6 +2,7 @@
 
 use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
+use super::ratings::{self, Limit};
 use super::rule::Rule;
 use super::standing::Standing;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, ScopeId};
@@ -12,6 +13,7 @@ use crate::text::{Sources, Span};
 use crate::topology::{Wiring, coupled_coils};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::cell::OnceCell;
+use std::collections::BTreeMap;
 
 /// Elements whose nodes one finding names at most.
 const MOST_NAMED: usize = 40;
@@ -31,6 +33,7 @@ pub struct Evidence<'a> {
     shorted: OnceCell<FxHashMap<ScopeId, usize>>,
     coupled: OnceCell<FxHashSet<ElementId>>,
     standing: OnceCell<Standing>,
+    ratings: OnceCell<BTreeMap<ElementId, Vec<Limit<'a>>>>,
     told: Vec<Finding>,
 }
 
@@ -47,6 +50,7 @@ impl<'a> Evidence<'a> {
             shorted: OnceCell::new(),
             coupled: OnceCell::new(),
             standing: OnceCell::new(),
+            ratings: OnceCell::new(),
             told: Vec::new(),
         }
     }
@@ -90,6 +94,11 @@ impl<'a> Evidence<'a> {
     /// What the states say about diodes and rails over all conditions; read once.
     pub(in crate::rules) fn standing(&self, operating: &Operating) -> &Standing {
         self.standing.get_or_init(|| Standing::of(self, operating))
+    }
+
+    /// What `rating` notes allow each element; read once.
+    pub(in crate::rules) fn ratings(&self) -> &BTreeMap<ElementId, Vec<Limit<'a>>> {
+        self.ratings.get_or_init(|| ratings::ratings(self.circuit))
     }
 
     /// The names of elements' nodes, each once, ground and those that are named already left out: a finding about
