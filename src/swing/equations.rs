@@ -46,7 +46,7 @@ pub(super) fn equations(
     given: &Given<'_>,
     part: &PartList,
 ) -> Result<Equations, String> {
-    let mut writer = Writer::new(circuit, basis, given, part);
+    let mut writer = Writer::new(circuit, basis, given);
     writer.potentials(part);
     for &id in &part.elements {
         writer.element(id)?;
@@ -75,7 +75,7 @@ struct Writer<'a> {
 }
 
 impl<'a> Writer<'a> {
-    fn new(circuit: &'a Circuit, basis: &'a Basis, given: &'a Given<'a>, _part: &PartList) -> Self {
+    fn new(circuit: &'a Circuit, basis: &'a Basis, given: &'a Given<'a>) -> Self {
         Writer {
             circuit,
             basis,

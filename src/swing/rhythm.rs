@@ -175,4 +175,22 @@ mod tests {
         assert_eq!(common_period(&[1000.0, 1001.0, 1500.5]), None);
         assert_eq!(common_period(&[]), None);
     }
+
+    #[test]
+    fn too_many_corners_are_told() {
+        let pulse = |period| Shape::Pulse {
+            low: 0.0,
+            high: 5.0,
+            delay: 0.0,
+            rise: 1e-9,
+            fall: 1e-9,
+            width: 1e-8,
+            period,
+        };
+        let mut few = Vec::new();
+        assert!(corners(&pulse(1e-3), 0.0, 1.0, &mut few));
+        // four in each period, but for the one at the beginning of the span
+        assert_eq!(few.len(), 3999);
+        assert!(!corners(&pulse(1e-6), 0.0, 1.0, &mut Vec::new()));
+    }
 }
