@@ -1,6 +1,6 @@
 //! An `expect` note that the circuit does not meet.
 
-use super::{About, Check, Claim, Evidence, Found, Outcome, Rule, claims, expected, in_cases};
+use super::{About, Check, Claim, Evidence, Found, Outcome, Rivals, Rule, claims, expected, in_cases};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
@@ -33,8 +33,9 @@ pub const RULE: Rule = Rule {
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let (claims, mut findings) = claims(evidence);
+    let rivals = Rivals::of(&claims);
     for claim in claims.iter().filter(|c| !c.wanted.over_time) {
-        if let Outcome::Broken(found) = claim.judge(evidence, operating, &claims) {
+        if let Outcome::Broken(found) = claim.judge(evidence, operating, &rivals) {
             findings.push(finding(evidence, operating, claim, &found));
         }
     }

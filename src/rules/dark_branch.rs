@@ -114,11 +114,25 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
     if branch.diodes.iter().any(|&id| evidence.is_told_near(id)) {
         return None;
     }
+    let (message, label) = told(evidence, branch, &seen, most)?;
+    let first = *branch.diodes.first()?;
+    let finding = named(evidence, branch, evidence.about(&RULE, first, message).label(label));
+    let single = branch.diodes.len() == 1 && most < 0.0;
+    Some(if single { turn_round(evidence, first, finding) } else { finding })
+}
+
+/// The message and the label, where the greatest voltage across the branch keeps it dark.
+fn told(
+    evidence: &Evidence<'_>,
+    branch: &Branch,
+    seen: &[&Seen],
+    most: f64,
+) -> Option<(String, &'static str)> {
     let needed: f64 = seen.iter().map(|d| d.drop).sum();
     let names: Vec<String> = branch.diodes.iter().map(|&id| evidence.name(id)).collect();
     let ends = (evidence.node(branch.anode_end), evidence.node(branch.cathode_end));
-    let (message, label) = if most <= -SUPPLY {
-        (
+    if most <= -SUPPLY {
+        Some((
             format!(
                 "{} never {}: {} anode leads to `{}`, which stands {} below `{}` at best",
                 list(&names),
@@ -129,9 +143,9 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
                 ends.1
             ),
             "lies the wrong way round",
-        )
+        ))
     } else if most > SUPPLY && most < needed && seen.iter().all(|d| d.is_led()) {
-        (
+        Some((
             format!(
                 "{} cannot light: together they need {}, and `{}` stands only {} above `{}`",
                 list(&names),
@@ -141,16 +155,18 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
                 ends.1
             ),
             "needs more voltage than there is",
-        )
+        ))
     } else {
-        return None;
-    };
-    let first = *branch.diodes.first()?;
-    let mut finding = evidence.about(&RULE, first, message).label(label);
+        None
+    }
+}
+
+/// With everything that belongs to the branch marked and named.
+fn named(evidence: &Evidence<'_>, branch: &Branch, mut finding: Finding) -> Finding {
     for &id in branch.diodes.iter().skip(1).take(6) {
         finding = finding.also(evidence.statement(id), "in the same branch");
     }
-    finding.subjects.extend(names.iter().skip(1).cloned());
+    finding.subjects.extend(branch.diodes.iter().skip(1).map(|&id| evidence.name(id)));
     for rail in [branch.anode_end, branch.cathode_end] {
         if let Some(source) = evidence.wiring.rails.source(rail) {
             finding = finding.also(evidence.statement(source), format!("holds `{}`", evidence.node(rail)));
@@ -160,9 +176,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
     finding.subjects.extend(branch.others.iter().map(|&id| evidence.name(id)));
     evidence.name_nodes(&mut finding, &branch.diodes);
     evidence.name_nodes(&mut finding, &branch.others);
-    let finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
-    let single = branch.diodes.len() == 1 && most < 0.0;
-    Some(if single { turn_round(evidence, first, finding) } else { finding })
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
 }
 
 /// Two of its diodes point against each other, which is told as such.

@@ -4,7 +4,7 @@
 
 mod support;
 
-use support::{About, Claim, Found, LooseEnd, Outcome, claims, expected};
+use support::{About, Claim, Found, LooseEnd, Outcome, Rivals, claims, expected};
 pub use support::{Check, Evidence, GROUPS, Rule, Skipped, is_hopeless, run, settle};
 use support::{Regions, Seen, Shown, behind, causes, count, in_cases, is_told, list, turn_round};
 

@@ -83,9 +83,8 @@ fn judge(
 ) -> Option<Finding> {
     let (a, b) = (evidence.circuit.node(coil, 0), evidence.circuit.node(coil, 1));
     let none = FxHashSet::default();
-    let opened = switches.iter().copied().collect::<FxHashSet<_>>();
     let reaches = |from, to, open: &FxHashSet<ElementId>| reaches(evidence, from, to, coil, open);
-    if a == b || reaches(a, b, &opened) || reaches(b, a, &opened) {
+    if a == b || reaches(a, b, switches) || reaches(b, a, switches) {
         return None;
     }
     if !(reaches(a, b, &none) || reaches(b, a, &none)) {

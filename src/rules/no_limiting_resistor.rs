@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Rule, in_cases, list};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
-use crate::operating::{Case, DiodeResult, Operating};
+use crate::operating::{Case, DiodeResult, Operating, Solution};
 use petgraph::algo::kosaraju_scc;
 use petgraph::graph::{DiGraph, NodeIndex};
 use petgraph::unionfind::UnionFind;
@@ -71,15 +71,42 @@ fn closed(
     case: &Case,
     with_leads: bool,
 ) -> Vec<(Vec<ElementId>, f64, Vec<ElementId>)> {
-    let circuit = evidence.circuit;
     let Some(solution) = case.solutions.first() else { return Vec::new() };
-    let carries = |d: &&DiodeResult| {
-        matches!(d.state, State::Conducting | State::Breakdown)
-            && d.current.known().is_some_and(|i| i.abs() > 1e-3)
-    };
-    if !solution.diodes.iter().any(|d| carries(&d)) {
+    let is_timed = |d: &DiodeResult| case.instant && operating.left_to_time.binary_search(&d.element).is_ok();
+    let carrying: Vec<&DiodeResult> = solution.diodes.iter().filter(|d| carries(d) && !is_timed(d)).collect();
+    if carrying.is_empty() {
         return Vec::new();
     }
+    let (sets, leads) = stiff(evidence, case, solution, with_leads);
+    let is_short = |diodes: &[&DiodeResult]| {
+        let amps = |d: &&DiodeResult| d.current.known().unwrap_or(0.0).abs();
+        let most = diodes.iter().map(amps).fold(0.0, f64::max);
+        let left_over: f64 = diodes.iter().map(|d| amps(d) * d.series).sum();
+        (if with_leads { most >= SHORT } else { left_over >= LEFT_OVER }).then_some(most)
+    };
+    let loops = round_loops(evidence, &carrying, &sets).into_iter().filter_map(|diodes| {
+        let most = is_short(&diodes)?;
+        let mut ids: Vec<ElementId> = diodes.iter().map(|d| d.element).collect();
+        ids.sort();
+        ids.dedup();
+        Some((ids, most, leads.clone()))
+    });
+    loops.collect()
+}
+
+fn carries(diode: &DiodeResult) -> bool {
+    matches!(diode.state, State::Conducting | State::Breakdown)
+        && diode.current.known().is_some_and(|i| i.abs() > 1e-3)
+}
+
+/// Nodes that sources and closed switches join without resistance, or with no more than that of leads, and the leads.
+fn stiff(
+    evidence: &Evidence<'_>,
+    case: &Case,
+    solution: &Solution,
+    with_leads: bool,
+) -> (UnionFind<u32>, Vec<ElementId>) {
+    let circuit = evidence.circuit;
     let volts = |node: NodeId| match node {
         NodeId::GROUND => Some(0.0),
         _ => solution.nodes.get(node.index() - 1).and_then(|n| n.voltage.known()),
@@ -108,14 +135,20 @@ fn closed(
     for (node, _) in &case.supplies {
         sets.union(node.0, 0);
     }
+    (sets, leads)
+}
+
+/// The diodes of each directed loop that they form over joined nodes.
+fn round_loops<'o>(
+    evidence: &Evidence<'_>,
+    carrying: &[&'o DiodeResult],
+    sets: &UnionFind<u32>,
+) -> Vec<Vec<&'o DiodeResult>> {
     let mut graph: DiGraph<(), usize> = DiGraph::new();
     let mut places: BTreeMap<u32, NodeIndex> = BTreeMap::new();
-    for (n, diode) in solution.diodes.iter().enumerate().filter(|(_, d)| carries(d)) {
-        if case.instant && operating.left_to_time.binary_search(&diode.element).is_ok() {
-            continue;
-        }
+    for (n, diode) in carrying.iter().enumerate() {
         let mut place = |pin: usize| {
-            let set = sets.find(circuit.node(diode.element, pin).0);
+            let set = sets.find(evidence.circuit.node(diode.element, pin).0);
             *places.entry(set).or_insert_with(|| graph.add_node(()))
         };
         let (anode, cathode) = (place(0), place(1));
@@ -133,23 +166,10 @@ fn closed(
         if let Some((a, b)) = graph.edge_endpoints(edge)
             && component[a.index()] == component[b.index()]
         {
-            found.entry(component[a.index()]).or_default().push(&solution.diodes[graph[edge]]);
+            found.entry(component[a.index()]).or_default().push(carrying[graph[edge]]);
         }
     }
-    let is_short = |diodes: &Vec<&DiodeResult>| {
-        let amps = |d: &&DiodeResult| d.current.known().unwrap_or(0.0).abs();
-        let most = diodes.iter().map(amps).fold(0.0, f64::max);
-        let left_over: f64 = diodes.iter().map(|d| amps(d) * d.series).sum();
-        (if with_leads { most >= SHORT } else { left_over >= LEFT_OVER }).then_some(most)
-    };
-    let loops = found.into_values().filter_map(|diodes| {
-        let most = is_short(&diodes)?;
-        let mut ids: Vec<ElementId> = diodes.iter().map(|d| d.element).collect();
-        ids.sort();
-        ids.dedup();
-        Some((ids, most, leads.clone()))
-    });
-    loops.collect()
+    found.into_values().collect()
 }
 
 fn judge(

@@ -1,6 +1,6 @@
 //! An `expect` note that could not be checked.
 
-use super::{Check, Evidence, Outcome, Rule, claims};
+use super::{Check, Evidence, Outcome, Rivals, Rule, claims};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
@@ -34,9 +34,10 @@ pub const RULE: Rule = Rule {
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let (claims, _) = claims(evidence);
+    let rivals = Rivals::of(&claims);
     let mut findings = Vec::new();
     for claim in claims.iter().filter(|c| !c.wanted.over_time) {
-        let Outcome::Unchecked(why) = claim.judge(evidence, operating, &claims) else { continue };
+        let Outcome::Unchecked(why) = claim.judge(evidence, operating, &rivals) else { continue };
         let subject = claim.subject(evidence);
         let message = format!("what is expected of {subject} could not be checked: {why}");
         findings.push(

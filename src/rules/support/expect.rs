@@ -157,6 +157,20 @@ fn said_twice(evidence: &Evidence<'_>, claims: &[Claim<'_>]) -> Vec<Finding> {
     findings
 }
 
+/// The claims about each thing, looked up once: any of them may be nearer than another.
+pub struct Rivals<'c, 'a>(FxHashMap<About, Vec<&'c Claim<'a>>>);
+
+impl<'c, 'a> Rivals<'c, 'a> {
+    /// Among all claims.
+    pub fn of(all: &'c [Claim<'a>]) -> Self {
+        let mut by_thing: FxHashMap<About, Vec<&'c Claim<'a>>> = FxHashMap::default();
+        for claim in all {
+            by_thing.entry(claim.about).or_default().push(claim);
+        }
+        Rivals(by_thing)
+    }
+}
+
 impl Claim<'_> {
     /// `D1`, `v(out)`.
     pub fn subject(&self, evidence: &Evidence<'_>) -> String {
@@ -187,7 +201,7 @@ impl Claim<'_> {
     }
 
     /// Holds the claim against the states.
-    pub fn judge(&self, evidence: &Evidence<'_>, operating: &Operating, all: &[Claim<'_>]) -> Outcome {
+    pub fn judge(&self, evidence: &Evidence<'_>, operating: &Operating, rivals: &Rivals<'_, '_>) -> Outcome {
         let spoken: Vec<usize> =
             (0..operating.cases.len()).filter(|&n| self.speaks_of(&operating.cases[n])).collect();
         if spoken.is_empty() {
@@ -205,14 +219,9 @@ impl Claim<'_> {
                     .into(),
             );
         }
-        // most notes stand at one level, and then none is nearer
-        let nearer: Vec<&Claim<'_>> = if all.iter().all(|c| c.nearness == self.nearness) {
-            Vec::new()
-        } else {
-            all.iter().filter(|c| c.about == self.about).collect()
-        };
+        let nearer = rivals.0.get(&self.about).map_or(&[][..], Vec::as_slice);
         let own: Vec<usize> =
-            judged.into_iter().filter(|&n| !self.is_outdone(&nearer, &operating.cases[n])).collect();
+            judged.into_iter().filter(|&n| !self.is_outdone(nearer, &operating.cases[n])).collect();
         let met: Vec<(usize, Met)> =
             own.iter().flat_map(|&n| self.in_case(evidence, &operating.cases[n], n)).collect();
         if self.wanted.some && met.iter().any(|(_, met)| matches!(met, Met::Yes)) {

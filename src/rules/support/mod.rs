@@ -20,7 +20,7 @@ mod words;
 pub use accept::about_note;
 pub use cases::{Shown, causes, finding, in_cases, is_hopeless, is_told};
 pub use evidence::Evidence;
-pub use expect::{About, Claim, Found, Outcome, claims, expected};
+pub use expect::{About, Claim, Found, Outcome, Rivals, claims, expected};
 pub use loose::{LooseEnd, is_needed_port};
 pub use ratings::Limit;
 pub use rule::{Check, GROUPS, Rule, Skipped};
