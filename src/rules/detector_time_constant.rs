@@ -150,26 +150,3 @@ fn time_constant(evidence: &Evidence<'_>, diode: ElementId, node: NodeId) -> Opt
     let both = far.into_values().filter(|(farads, siemens)| *farads > 0.0 && *siemens > 0.0);
     both.max_by(|a, b| a.0.total_cmp(&b.0)).map(|(farads, siemens)| farads / siemens)
 }
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-    use crate::analysis::analyse;
-    use crate::config::Options;
-    use crate::text::Memory;
-    use std::path::Path;
-
-    /// A resistor that hands the envelope on to a high-resistance stage, written before the detector's own parts.
-    #[test]
-    fn a_coupling_resistor_discharges_nothing() {
-        let coupled = |text: &str| text.replace("C1 env", "RK env next 1k\nRN next 0 1g\nC1 env");
-        let finds = |text: &str| {
-            let options = Options { states: true, swing: true, ..Options::default() };
-            let mut memory = Memory::with("a.net", text.as_bytes());
-            let analysis = analyse(&mut memory, Path::new("a.net"), &options).unwrap();
-            analysis.findings.iter().filter(|f| f.rule == RULE.name).count()
-        };
-        assert_eq!(finds(&coupled(RULE.failing)), 1);
-        assert_eq!(finds(&coupled(&RULE.failing.replace("100n", "3.9n"))), 0);
-    }
-}

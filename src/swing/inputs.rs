@@ -102,33 +102,3 @@ pub(super) fn listens_to(behaviour: &Behaviour) -> Option<ElementId> {
         _ => None,
     }
 }
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-    use crate::analysis::analyse;
-    use crate::config::Options;
-    use crate::text::Memory;
-    use std::path::Path;
-
-    /// Kirchhoff's voltage law: the diode sees the sum of the stack, whichever of its nodes are held.
-    #[test]
-    fn a_long_stack_of_moving_sources_is_solved_for() {
-        let count = MOST_STACKED + 8;
-        let mut text = String::from("stack\n");
-        for n in 0..count {
-            text += &format!(
-                "V{n} n{} {} SIN(0 0.05 50)\n",
-                n + 1,
-                if n == 0 { "0".into() } else { format!("n{n}") }
-            );
-        }
-        text += &format!("D1 n{count} out DX\nR1 out 0 1k\n.model DX D\n*@ drop DX 0.6\n");
-        let options = Options { states: true, swing: true, ..Options::default() };
-        let mut memory = Memory::with("a.net", text.as_bytes());
-        let analysis = analyse(&mut memory, Path::new("a.net"), &options).unwrap();
-        let peak = analysis.swing.unwrap().diodes[0].over_time.as_ref().unwrap().current_peak;
-        let expected = (0.05 * count as f64 - 0.6) / 1e3;
-        assert!((peak - expected).abs() < 1e-4 * expected, "{peak} {expected}");
-    }
-}

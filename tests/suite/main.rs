@@ -3,6 +3,7 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
 
 mod expectations;
+mod over_time;
 mod rule_examples;
 mod trails;
 mod wiring_facts;
