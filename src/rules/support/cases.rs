@@ -77,6 +77,9 @@ pub fn is_told(evidence: &Evidence<'_>, elements: &[ElementId]) -> bool {
     if distinct.len() < names.len() {
         return true;
     }
+    if !names.iter().all(|name| evidence.mentions(name)) {
+        return false;
+    }
     let tells = |f: &Finding| names.iter().all(|name| f.subjects.contains(name));
     !names.is_empty() && evidence.told().iter().any(tells)
 }

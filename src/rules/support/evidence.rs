@@ -35,6 +35,9 @@ pub struct Evidence<'a> {
     standing: OnceCell<Standing>,
     ratings: OnceCell<BTreeMap<ElementId, Vec<Limit<'a>>>>,
     told: Vec<Finding>,
+    /// Everything that a warning or error among those names, and everything that any of them does.
+    named: FxHashSet<String>,
+    mentioned: FxHashSet<String>,
 }
 
 impl<'a> Evidence<'a> {
@@ -52,6 +55,8 @@ impl<'a> Evidence<'a> {
             standing: OnceCell::new(),
             ratings: OnceCell::new(),
             told: Vec::new(),
+            named: FxHashSet::default(),
+            mentioned: FxHashSet::default(),
         }
     }
 
@@ -72,17 +77,23 @@ impl<'a> Evidence<'a> {
         &self.told
     }
 
+    /// Some of those findings names this.
+    pub(in crate::rules) fn mentions(&self, name: &str) -> bool {
+        self.mentioned.contains(name)
+    }
+
     /// A warning or error that was found already names the element or one of its nodes that is no rail.
     pub(in crate::rules) fn is_told_near(&self, id: ElementId) -> bool {
         let near = |node: NodeId| node != NodeId::GROUND && !self.wiring.rails.is_rail(node);
-        let nodes = self.circuit.pins(id).iter().map(|p| p.node).filter(|&n| near(n));
-        let names: Vec<String> = nodes.map(|n| self.node(n)).chain([self.name(id)]).collect();
-        let serious = self.told.iter().filter(|f| f.severity > Severity::Note);
-        serious.into_iter().any(|f| names.iter().any(|n| f.subjects.contains(n)))
+        let mut nodes = self.circuit.pins(id).iter().map(|p| p.node).filter(|&n| near(n));
+        self.named.contains(&self.name(id)) || nodes.any(|n| self.named.contains(&self.node(n)))
     }
 
     /// Keeps what the rules on the wiring have found, and all facts that they looked up.
     pub(super) fn keep_told(&mut self, told: Vec<Finding>) {
+        let serious = told.iter().filter(|f| f.severity > Severity::Note);
+        self.named = serious.flat_map(|f| &f.subjects).cloned().collect();
+        self.mentioned = told.iter().flat_map(|f| &f.subjects).cloned().collect();
         self.told = told;
     }
 
