@@ -3,8 +3,7 @@
 use super::{Check, Evidence, Rule, behind, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId};
 use crate::finding::{Finding, Severity};
-use petgraph::unionfind::UnionFind;
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "odd-one-out",
@@ -71,30 +70,29 @@ fn odd_ones(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Vec<(ElementId, Ve
         }
     }
     let odd = |&id: &ElementId| {
-        in_matrix(evidence, diodes, &at, id)
-            .or_else(|| at_gate(evidence, &at, id))
-            .map(|sisters| (id, sisters))
+        in_matrix(evidence, &at, id).or_else(|| at_gate(evidence, &at, id)).map(|sisters| (id, sisters))
     };
     diodes.iter().filter_map(odd).collect()
 }
+
+/// Lines of a matrix that are gone through at most.
+const WIDEST: usize = 2000;
 
 type Meeting = FxHashMap<NodeId, Vec<(ElementId, usize)>>;
 
 /// All others at its anode have their cathodes there, all others at its cathode their anodes, and the lines hang together
 /// without it.
-fn in_matrix(
-    evidence: &Evidence<'_>,
-    diodes: &[ElementId],
-    at: &Meeting,
-    id: ElementId,
-) -> Option<Vec<ElementId>> {
+fn in_matrix(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> Option<Vec<ElementId>> {
     let circuit = evidence.circuit;
     let rails = &evidence.wiring.rails;
     let mut sisters = Vec::new();
     for pin in [0, 1] {
         let node = circuit.node(id, pin);
+        if rails.is_rail(node) {
+            return None;
+        }
         let others: Vec<&(ElementId, usize)> = at.get(&node)?.iter().filter(|o| o.0 != id).collect();
-        if others.is_empty() || others.iter().any(|o| o.1 == pin) || rails.is_rail(node) {
+        if others.is_empty() || others.iter().any(|o| o.1 == pin) {
             return None;
         }
         sisters.extend(others.iter().map(|o| o.0));
@@ -102,15 +100,28 @@ fn in_matrix(
     if sisters.len() < 3 {
         return None;
     }
-    let mut sets = UnionFind::<u32>::new(circuit.nodes.len().max(1));
-    for &other in diodes.iter().filter(|&&d| d != id) {
-        // ground joins what does not belong together
-        let ends = (circuit.node(other, 0), circuit.node(other, 1));
-        if ends.0 != NodeId::GROUND && ends.1 != NodeId::GROUND {
-            sets.union(ends.0.0, ends.1.0);
+    hang_together(evidence, at, id).then_some(sisters)
+}
+
+/// Whether the lines at both ends of a diode hang together without it, as far as a matrix may reach.
+fn hang_together(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> bool {
+    let circuit = evidence.circuit;
+    let (start, goal) = (circuit.node(id, 0), circuit.node(id, 1));
+    let mut seen = FxHashSet::from_iter([start]);
+    let mut queue = vec![start];
+    while let Some(node) = queue.pop() {
+        for &(other, pin) in at.get(&node).into_iter().flatten().filter(|o| o.0 != id) {
+            let far = circuit.node(other, 1 - pin);
+            if far == goal {
+                return true;
+            }
+            // ground joins what does not belong together
+            if far != NodeId::GROUND && seen.len() < WIDEST && seen.insert(far) {
+                queue.push(far);
+            }
         }
     }
-    sets.equiv(circuit.node(id, 0).0, circuit.node(id, 1).0).then_some(sisters)
+    false
 }
 
 /// At a node that is no rail two or more sisters point one way, this one the other, and behind each of them stands a
@@ -124,8 +135,11 @@ fn at_gate(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> Option<Vec<E
     };
     for pin in [0, 1] {
         let node = circuit.node(id, pin);
+        if rails.is_rail(node) {
+            continue;
+        }
         let others: Vec<&(ElementId, usize)> = at.get(&node)?.iter().filter(|o| o.0 != id).collect();
-        let stands_out = others.len() >= 2 && others.iter().all(|o| o.1 != pin) && !rails.is_rail(node);
+        let stands_out = others.len() >= 2 && others.iter().all(|o| o.1 != pin);
         let own = is_source(id, 1 - pin);
         if !stands_out || own.is_none() {
             continue;
