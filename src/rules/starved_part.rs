@@ -66,8 +66,11 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
             }
         }
     }
-    let judged =
-        starved.iter().filter_map(|(&region, feeders)| judge(evidence, &regions, region, feeders, operating));
+    let fed = consumers(evidence, &regions, &starved);
+    let none = Vec::new();
+    let judged = starved.iter().filter_map(|(region, feeders)| {
+        judge(evidence, &regions, fed.get(region).unwrap_or(&none), feeders, operating)
+    });
     judged.collect()
 }
 
@@ -79,13 +82,12 @@ fn holds_off(seen: &Seen) -> bool {
 fn judge(
     evidence: &Evidence<'_>,
     regions: &Regions,
-    region: u32,
+    fed: &[ElementId],
     feeders: &[(ElementId, usize)],
     operating: &Operating,
 ) -> Option<Finding> {
     let circuit = evidence.circuit;
     let &(id, pin) = feeders.first()?;
-    let fed = consumers(evidence, regions, region);
     // the node of a clamp pair and nothing else: the pair is as it should be
     if fed.is_empty() || evidence.is_told_near(id) || is_clamped(evidence, circuit.node(id, pin)) {
         return None;
@@ -119,23 +121,41 @@ fn judge(
     }
     finding.subjects.extend(feeders.iter().skip(1).map(|&(d, _)| evidence.name(d)));
     finding.subjects.extend(names);
-    evidence.name_nodes(&mut finding, &fed);
+    evidence.name_nodes(&mut finding, fed);
     evidence.name_nodes(&mut finding, &feeders.iter().map(|f| f.0).collect::<Vec<_>>());
     let finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
     Some(if feeders.len() == 1 { turn_round(evidence, id, finding) } else { finding })
 }
 
-/// What lies in the region and takes current, in order.
-fn consumers(evidence: &Evidence<'_>, regions: &Regions, region: u32) -> Vec<ElementId> {
+/// What lies in each starved region and takes current, in order; all elements gone through once.
+fn consumers(
+    evidence: &Evidence<'_>,
+    regions: &Regions,
+    starved: &BTreeMap<u32, Vec<(ElementId, usize)>>,
+) -> BTreeMap<u32, Vec<ElementId>> {
     let circuit = evidence.circuit;
     let rails = &evidence.wiring.rails;
-    let is_inside = |id: ElementId| {
-        circuit.pins(id).iter().take(2).any(|p| !rails.is_rail(p.node) && regions.region(p.node) == region)
-    };
-    let takes = |b: &Behaviour| {
-        matches!(b, Behaviour::Resistor(_) | Behaviour::Inductor { .. } | Behaviour::Transistor { .. })
-    };
-    circuit.elements().filter(|(id, e)| takes(&e.behaviour) && is_inside(*id)).map(|(id, _)| id).collect()
+    let mut fed: BTreeMap<u32, Vec<ElementId>> = BTreeMap::new();
+    for (id, element) in circuit.elements() {
+        let takes = matches!(
+            element.behaviour,
+            Behaviour::Resistor(_) | Behaviour::Inductor { .. } | Behaviour::Transistor { .. }
+        );
+        if !takes {
+            continue;
+        }
+        for pin in circuit.pins(id).iter().take(2).filter(|p| !rails.is_rail(p.node)) {
+            let region = regions.region(pin.node);
+            if !starved.contains_key(&region) {
+                continue;
+            }
+            let inside = fed.entry(region).or_default();
+            if inside.last() != Some(&id) {
+                inside.push(id);
+            }
+        }
+    }
+    fed
 }
 
 /// A diode from ground (or another rail) and one to a rail meet there.
