@@ -24,6 +24,8 @@ pub enum Shape {
     Pulse { low: f64, high: f64, delay: f64, rise: f64, fall: f64, width: f64, period: f64 },
     /// `PWL(t v …)`, times ascending.
     Points(Vec<(f64, f64)>),
+    /// `PWL(t v …) r=from`: the course from `from` to the last time, over and over; `from` is before the last time.
+    Repeated { points: Vec<(f64, f64)>, from: f64 },
     /// `EXP(v1 v2 delay1 tau1 delay2 tau2)`.
     Exponential { low: f64, high: f64, delay1: f64, tau1: f64, delay2: f64, tau2: f64 },
     /// `SFFM(offset amplitude carrier index signal)`.

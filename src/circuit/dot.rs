@@ -268,6 +268,38 @@ impl Reader<'_> {
             let value = line.at(token);
             self.parsed.options.push(Setting { name: "temp".into(), name_span: line.head(), value });
         }
+        if let (Some(from), Some(last)) = (line.word(2), line.word(line.len() - 1)) {
+            self.tell_more_temperatures(line, line.at(from).to(line.at(last)));
+        }
+    }
+
+    /// Each further temperature of `.temp` asks for a run of its own.
+    fn tell_more_temperatures(&mut self, line: &Line<'_>, span: Span) {
+        let values: Vec<(f64, &str)> = (1..line.len())
+            .map(|n| line.word_str(n))
+            .filter_map(|text| syntax::sound_number(text).map(|number| (number.value, text)))
+            .collect();
+        let coldest = values.iter().min_by(|a, b| a.0.total_cmp(&b.0));
+        let hottest = values.iter().max_by(|a, b| a.0.total_cmp(&b.0));
+        let help = match (coldest, hottest) {
+            (Some(low), Some(high)) => {
+                format!(
+                    "To examine the coldest and the hottest too, write `*@ range temp {} {}`.",
+                    low.1, high.1
+                )
+            }
+            _ => "To examine further temperatures, write `*@ range temp LOW HIGH`.".to_owned(),
+        };
+        let message = format!(
+            "of the {} temperatures of this line only the first counts: everything is examined at {} °C",
+            line.len() - 1,
+            line.word_str(1)
+        );
+        let finding = Finding::new("surplus-word", Severity::Note, span, message)
+            .label("not examined")
+            .about(".temp")
+            .help(help);
+        self.tell(finding);
     }
 
     /// `ic-line = ".ic" 1*( "v(" node ")" "=" value )`

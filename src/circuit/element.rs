@@ -180,7 +180,10 @@ impl Expander<'_> {
                 span: line.at(token),
                 message: format!("the value of {name}, {}, is no number", line.str(token)),
                 reason: "a value that could not be read",
-                help: "Write a number such as 4.7k, an expression in braces, or the name of a parameter or model.".into(),
+                help: match syntax::number_meant(line.str(token)) {
+                    Some(meant) => format!("Write `{meant}` if that is what was meant: there is a letter where a digit should be."),
+                    None => "Write a number such as 4.7k, an expression in braces, or the name of a parameter or model.".into(),
+                },
             },
             None => Problem {
                 told: false,

@@ -192,6 +192,7 @@ impl Expander<'_> {
             return 1.0;
         };
         let worth = self.worth(line.at(token));
+        self.judge_slip(line.word_str(0), worth);
         match worth {
             Worth::Is(value) if value.number > 0.0 => return value.number,
             Worth::Told => return 1.0,

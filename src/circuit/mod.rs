@@ -22,6 +22,7 @@ mod read;
 mod semiconductor;
 mod settings;
 mod shape;
+mod slip;
 mod source;
 mod surplus;
 #[cfg(test)]

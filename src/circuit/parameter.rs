@@ -85,7 +85,9 @@ impl Context<'_> {
 impl<'a> Expander<'a> {
     /// The value of the text under a span, seen from the innermost instance; findings told where it has none.
     pub(super) fn evaluate(&mut self, span: Span) -> Option<Value> {
-        self.worth(span).value()
+        let worth = self.worth(span);
+        self.judge_slip("", worth);
+        worth.value()
     }
 
     pub(super) fn worth(&mut self, span: Span) -> Worth {
@@ -162,7 +164,10 @@ impl<'a> Expander<'a> {
 
     fn node_of_tree(&mut self, context: Context<'_>, tree: &Expression) -> Result<f64, Worth> {
         match tree {
-            Expression::Number(number) => Ok(*number),
+            Expression::Number(number, place) => {
+                self.judge_number("", context.at(place));
+                Ok(*number)
+            }
             Expression::Name(name) => self.name(context, name).value_or_self(),
             Expression::Negative(inner) => Ok(-self.tree(context, inner)?),
             Expression::Not(inner) => Ok(f64::from(self.tree(context, inner)? == 0.0)),
@@ -369,7 +374,7 @@ impl<'a> Expander<'a> {
     /// Whether every name in an expression is a parameter, and there is one.
     fn knows_all(&self, frame: usize, text: &str, tree: &Expression) -> bool {
         match tree {
-            Expression::Number(_) => true,
+            Expression::Number(..) => true,
             Expression::Name(name) => {
                 let name = text.get(name.clone()).unwrap_or("").to_ascii_lowercase();
                 self.holder(frame, &name).is_some() || matches!(name.as_str(), "pi" | "temper")
@@ -406,6 +411,7 @@ impl<'a> Expander<'a> {
             Worth::Word => self.tell_no_value(name, value),
             other => other,
         };
+        self.judge_slip(name, worth);
         if let Some(parameter) = self.frames.get_mut(holder).and_then(|f| f.parameters.table.get_mut(name)) {
             parameter.state = Evaluation::Done(worth);
         }

@@ -106,7 +106,9 @@ impl Expander<'_> {
         let name = self.circuit.names.intern(self.sources.slice(line.name_span));
         let mut parameters = Vec::with_capacity(line.settings.len());
         for setting in &line.settings {
-            if let Some(value) = self.worth_in(frame, setting.value, false).value() {
+            let worth = self.worth_in(frame, setting.value, false);
+            self.judge_slip(self.sources.slice(line.name_span), worth);
+            if let Some(value) = worth.value() {
                 parameters.push((setting.name.clone(), value));
             }
         }

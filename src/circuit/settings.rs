@@ -87,6 +87,7 @@ impl Expander<'_> {
     /// A number that a dot line gives; told where it is none.
     fn number(&mut self, place: Span, what: &str) -> Option<f64> {
         let worth = self.worth(place);
+        self.judge_slip("", worth);
         match worth {
             Worth::Is(value) => return Some(value.number),
             Worth::Told => return None,

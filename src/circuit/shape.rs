@@ -23,8 +23,9 @@ impl Shape {
             Shape::Pulse { low, high, delay, rise, fall, width, period } => {
                 Shape::Pulse { low: low * factor, high: high * factor, delay, rise, fall, width, period }
             }
-            Shape::Points(points) => {
-                Shape::Points(points.into_iter().map(|(t, v)| (t, v * factor)).collect())
+            Shape::Points(points) => Shape::Points(points_times(points, factor)),
+            Shape::Repeated { points, from } => {
+                Shape::Repeated { points: points_times(points, factor), from }
             }
             Shape::Exponential { low, high, delay1, tau1, delay2, tau2 } => {
                 Shape::Exponential { low: low * factor, high: high * factor, delay1, tau1, delay2, tau2 }
@@ -49,6 +50,7 @@ impl Shape {
             }
             Shape::Pulse { .. } => self.pulse(t),
             Shape::Points(ref points) => interpolate(points, t),
+            Shape::Repeated { ref points, from } => interpolate(points, folded(t, points, from)),
             Shape::Exponential { low, high, delay1, tau1, delay2, tau2 } => {
                 let rise = |from: f64, tau: f64| if t > from { -f64::exp_m1(-(t - from) / tau) } else { 0.0 };
                 low + (high - low) * (rise(delay1, tau1) - rise(delay2, tau2))
@@ -90,7 +92,10 @@ impl Shape {
             Shape::Pulse { delay, rise, fall, width, .. } => {
                 vec![delay, delay + rise, delay + rise + width + fall]
             }
-            Shape::Points(ref points) => points.iter().map(|p| p.0).collect(),
+            // one run through all of them passes every value that a repetition has
+            Shape::Points(ref points) | Shape::Repeated { ref points, .. } => {
+                points.iter().map(|p| p.0).collect()
+            }
             Shape::Exponential { delay1, tau1, delay2, tau2, .. } => {
                 // where the second exponential is the faster, the sum undershoots and turns once more
                 let turn = (delay2 / tau2 - delay1 / tau1 + (tau1 / tau2).ln()) / (1.0 / tau2 - 1.0 / tau1);
@@ -120,6 +125,16 @@ impl Shape {
         }
         (most.0, least.0)
     }
+}
+
+fn points_times(points: Vec<(f64, f64)>, factor: f64) -> Vec<(f64, f64)> {
+    points.into_iter().map(|(t, v)| (t, v * factor)).collect()
+}
+
+/// The time of the first run that shows what a repeated course is worth at `t`.
+fn folded(t: f64, points: &[(f64, f64)], from: f64) -> f64 {
+    let last = points.last().map_or(0.0, |p| p.0);
+    if t <= last || last <= from { t } else { from + (t - from).rem_euclid(last - from) }
 }
 
 /// Turning points of a (damped) sine in its first period, and the end of the growth where it grows.
@@ -256,6 +271,20 @@ mod tests {
         close(points.value(9.0), -1.0);
         assert_eq!(points.extremes(None), (1.0, 3.0));
         assert_eq!(Shape::Points(vec![(1.0, 7.0)]).value(0.0), 7.0);
+    }
+
+    #[test]
+    fn a_repeated_course_begins_again_at_its_mark() {
+        let points = vec![(0.0, 9.0), (1.0, 0.0), (2.0, 4.0), (3.0, 0.0)];
+        let course = Shape::Repeated { points, from: 1.0 };
+        for turns in [0.0, 1.0, 2.0, 50.0] {
+            close(course.value(1.5 + 2.0 * turns), 2.0);
+            close(course.value(2.0 + 2.0 * turns), 4.0);
+            close(course.value(2.75 + 2.0 * turns), 1.0);
+        }
+        close(course.value(0.0), 9.0);
+        assert_eq!(course.extremes(None), (0.0, 1.0));
+        close(course.times(-2.0).value(4.0), -8.0);
     }
 
     #[test]

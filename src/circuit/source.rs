@@ -6,6 +6,7 @@ use super::expand::Expander;
 use super::line::Line;
 use super::parameter::Worth;
 use super::value::Quantity;
+use crate::finding::{Finding, Severity};
 use crate::syntax::Token;
 use crate::text::Span;
 
@@ -48,7 +49,8 @@ impl Expander<'_> {
             } else if let Some(kind) = shape_word(word) {
                 let limit = if kind == "pwl" { usize::MAX } else { 8 };
                 let values = self.numbers(line, at + 1, limit)?;
-                source.shape = Some(self.shape(line, at, kind, &values)?);
+                let shape = self.shape(line, at, kind, &values)?;
+                source.shape = Some(self.repeated(line, shape));
                 at += 1 + values.len();
             } else if let Some(range) =
                 line.fields.decimal_comma(line.text, at).filter(|_| source.dc.is_none())
@@ -91,7 +93,9 @@ impl Expander<'_> {
             if shape_word(line.str(token)).is_some() || is_keyword(line.str(token)) {
                 break;
             }
-            match self.worth(line.at(token)) {
+            let worth = self.worth(line.at(token));
+            self.judge_slip(line.word_str(0), worth);
+            match worth {
                 Worth::Is(value) => out.push(value.number),
                 Worth::Word => break,
                 // a shape with a hole in it would be another shape
@@ -149,6 +153,42 @@ impl Expander<'_> {
             }),
             _ => points(line, at, values),
         }
+    }
+}
+
+impl Expander<'_> {
+    /// `r=` behind points: from that time on they are gone through over and over. Below zero it means not at all.
+    fn repeated(&mut self, line: &Line<'_>, shape: Shape) -> Shape {
+        let Shape::Points(points) = shape else { return shape };
+        if let Some(delay) = line.pair("td") {
+            self.tell_no_effect(line, delay, "a PWL shape has no delay here".to_owned());
+        }
+        let Some(token) = line.pair("r") else { return Shape::Points(points) };
+        let last = points.last().map_or(0.0, |p| p.0);
+        match self.evaluate(line.at(token)).map(|v| v.number) {
+            Some(from) if from >= 0.0 && from < last => return Shape::Repeated { points, from },
+            Some(from) if from < 0.0 => {}
+            Some(_) => {
+                let last = crate::finding::quantity(last, "s");
+                self.tell_no_effect(
+                    line,
+                    token,
+                    format!("the shape ends at {last}, so that nothing is left to repeat"),
+                );
+            }
+            None => self.tell_no_effect(line, token, "it has no value here".to_owned()),
+        }
+        Shape::Points(points)
+    }
+
+    fn tell_no_effect(&mut self, line: &Line<'_>, token: Token, why: String) {
+        let (name, text) = (line.word_str(0), line.str(token));
+        let message = format!("the {text} behind the PWL shape of {name} has no effect: {why}");
+        let finding = Finding::new("surplus-word", Severity::Warning, line.at(token), message)
+            .label("has no effect")
+            .about(self.here(name))
+            .help("Give the times themselves; `r=` takes the time, before the last, from which the points repeat.");
+        self.tell(finding);
     }
 }
 

@@ -6,7 +6,7 @@ use super::expand::Expander;
 use super::line::Line;
 use super::parameter::Worth;
 use crate::finding::{Edit, Finding, Severity, quantity};
-use crate::syntax::{self, Number, Token};
+use crate::syntax::{self, Behind, Number, Token, Unit};
 
 /// What kind of quantity a value is read for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -61,6 +61,8 @@ struct Suspect<'t> {
     value: Value,
     quantity: Quantity,
     text: &'t str,
+    /// Whether it is written on the line itself, and not a parameter's.
+    is_own: bool,
 }
 
 impl Suspect<'_> {
@@ -76,7 +78,10 @@ impl Expander<'_> {
         let worth = self.worth(line.at(token));
         if let Worth::Is(value) = worth {
             let text = self.sources().slice(value.span);
-            self.judge(Suspect { name: line.word_str(0), value, quantity, text });
+            let own = line.at(token);
+            let is_own =
+                own.file == value.span.file && own.start <= value.span.start && value.span.end <= own.end;
+            self.judge(Suspect { name: line.word_str(0), value, quantity, text, is_own });
         }
         worth
     }
@@ -89,36 +94,60 @@ impl Expander<'_> {
         }
         // nearly all values hold only digits and a small scale letter, and set no trap
         let harmless = |b| matches!(b, b'0'..=b'9' | b'.' | b'-' | b'e' | b'k' | b'm' | b'u' | b'n' | b'p');
-        if !value.written || quantity == Quantity::Plain || text.bytes().all(harmless) {
+        let letters = text.bytes().filter(u8::is_ascii_lowercase).count();
+        if !value.written || text.bytes().all(harmless) && letters < 2 {
+            return;
+        }
+        if quantity == Quantity::Plain {
+            if suspect.is_own {
+                self.judge_number(suspect.name, value.span);
+            }
             return;
         }
         let Some(number) = syntax::number(text.as_bytes()) else { return };
         let suffix = text.get(number.digits..number.digits + number.suffix).unwrap_or("");
-        let unit = text.get(number.digits + number.suffix..).unwrap_or("");
+        let unit = text.get(number.length()..).unwrap_or("");
+        let behind = syntax::behind(text, number);
         match (suffix, quantity) {
             ("M", _) if number.letter_code => self.tell_mega_code(suspect),
-            _ if number.letter_code => {}
+            _ if number.letter_code || behind.is_slip() => self.judge_unit(suspect, behind),
             ("M", Quantity::Ohms) => {
                 self.tell_misread(suspect, "milli", &format!("{}Meg", digits(text, number)))
             }
             ("F", Quantity::Farads) if unit.is_empty() => {
                 self.tell_misread(suspect, "femto", digits(text, number))
             }
-            ("F" | "f", Quantity::Ohms | Quantity::Henries) if unit.is_empty() => {
+            ("F" | "f", Quantity::Farads) if is_farad(unit) => {
+                self.tell_misread(suspect, "femto", digits(text, number))
+            }
+            ("F" | "f", Quantity::Ohms | Quantity::Henries) if unit.is_empty() || is_farad(unit) => {
                 self.tell_unit(suspect, "farads")
             }
-            _ => {
-                if let Some(other) = other_unit(unit, quantity) {
+            // 10E is 10 Ω to some
+            ("", Quantity::Ohms) if unit.eq_ignore_ascii_case("e") => {}
+            _ => self.judge_unit(suspect, behind),
+        }
+    }
+
+    fn judge_unit(&mut self, suspect: Suspect<'_>, behind: Behind<'_>) {
+        match behind {
+            Behind::Unit(unit) => {
+                if let Some(other) = other_unit(unit, suspect.quantity) {
                     self.tell_unit(suspect, other);
                 }
             }
+            behind if suspect.is_own => {
+                self.tell_behind(suspect.name, suspect.value.span, &suspect.read(), behind);
+            }
+            _ => {}
         }
     }
 
     fn tell_misread(&mut self, suspect: Suspect<'_>, scale: &str, meant: &str) {
         let Suspect { name, value, text, .. } = suspect;
         let read = suspect.read();
-        let message = format!("{name} is {read}: in {text} the last letter means {scale}, whatever its case");
+        let letter = text.chars().find(char::is_ascii_alphabetic).unwrap_or('M');
+        let message = format!("{name} is {read}: in {text} the {letter} means {scale}, whatever its case");
         let finding = Finding::new("misread-value", Severity::Warning, value.span, message)
             .label(format!("read as {read}"))
             .about(self.here(name))
@@ -143,7 +172,7 @@ impl Expander<'_> {
     }
 
     fn tell_unit(&mut self, suspect: Suspect<'_>, unit: &str) {
-        let Suspect { name, value, text, quantity } = suspect;
+        let Suspect { name, value, text, quantity, .. } = suspect;
         let read = suspect.read();
         let message = format!(
             "the {text} of {name} is in {unit} where {} belongs; unit letters are ignored, so it is {read}",
@@ -157,7 +186,7 @@ impl Expander<'_> {
     }
 
     fn tell_size(&mut self, suspect: Suspect<'_>) {
-        let Suspect { name, value, text, quantity } = suspect;
+        let Suspect { name, value, text, quantity, .. } = suspect;
         let read = suspect.read();
         let message = format!("the {text} of {name} gives {} of {read}, which no part has", quantity.word());
         let finding = Finding::new("value-out-of-scale", Severity::Warning, value.span, message)
@@ -172,15 +201,24 @@ fn digits(text: &str, number: Number) -> &str {
     text.get(..number.digits).unwrap_or(text)
 }
 
-/// The quantity whose unit this is, where it is another than wanted.
-fn other_unit(unit: &str, wanted: Quantity) -> Option<&'static str> {
-    let (quantity, word) = match unit.to_ascii_lowercase().as_str() {
-        "f" | "farad" | "farads" => (Quantity::Farads, "farads"),
-        "h" | "henry" | "henries" | "henrys" => (Quantity::Henries, "henries"),
-        "ohm" | "ohms" | "Ω" | "r" => (Quantity::Ohms, "ohms"),
-        "v" | "volt" | "volts" => (Quantity::Volts, "volts"),
-        "a" | "amp" | "amps" | "ampere" | "amperes" => (Quantity::Amperes, "amperes"),
-        _ => return None,
+/// What is left of `1Farad` when its F is taken for femto.
+fn is_farad(unit: &str) -> bool {
+    unit.eq_ignore_ascii_case("arad") || unit.eq_ignore_ascii_case("arads")
+}
+
+/// The plural of a unit that measures something else than what is wanted.
+fn other_unit(unit: Unit, wanted: Quantity) -> Option<&'static str> {
+    let (quantity, word) = match unit {
+        Unit::Farad => (Some(Quantity::Farads), "farads"),
+        Unit::Henry => (Some(Quantity::Henries), "henries"),
+        Unit::Ohm => (Some(Quantity::Ohms), "ohms"),
+        Unit::Volt => (Some(Quantity::Volts), "volts"),
+        Unit::Ampere => (Some(Quantity::Amperes), "amperes"),
+        Unit::Hertz => (None, "hertz"),
+        Unit::Second => (None, "seconds"),
+        Unit::Watt => (None, "watts"),
+        Unit::Metre => (None, "metres"),
+        Unit::Celsius | Unit::Plain => return None,
     };
-    (quantity != wanted).then_some(word)
+    (quantity != Some(wanted)).then_some(word)
 }

@@ -266,7 +266,7 @@ impl FailOn {
 
 /// A number as netlists write it: `650m`, `4k7`.
 fn value(text: &str) -> Result<f64, String> {
-    let number = kneewise::syntax::number(text.trim().as_bytes()).map(|n| n.value);
+    let number = kneewise::syntax::sound_number(text.trim()).map(|n| n.value);
     number
         .filter(|n| n.is_finite())
         .ok_or_else(|| format!("`{text}` is not a number as netlists write it, such as 12, 650m or 4k7"))

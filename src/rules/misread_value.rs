@@ -1,4 +1,4 @@
-//! A value whose last letter means something else than it seems to. Found while reading.
+//! A value whose letters mean something else than they seem to. Found while reading.
 
 use super::{Check, Rule};
 use crate::finding::Severity;
@@ -8,10 +8,10 @@ pub const RULE: Rule = Rule {
     name: "misread-value",
     group: "reading",
     severity: Severity::Warning,
-    also: None,
-    summary: "a value whose last letter means something else than it seems to",
-    why: "Scale letters are case-blind: `1M` is a thousandth and `1F` is a femto. A resistor of 1 MΩ becomes one of 1 mΩ, which shorts what it should barely load.",
-    remedy: "Write `Meg` for a million; give farads without a letter.",
+    also: Some(Severity::Note),
+    summary: "a value whose letters mean something else than they seem to",
+    why: "Scale letters are case-blind: `1M` is a thousandth and `1F` is a femto. A resistor of 1 MΩ becomes one of 1 mΩ, which shorts what it should barely load. Letters behind a value and its scale are ignored as a unit is: `1O`, with the letter O, is one, and the last letter of `4k7k` means nothing.",
+    remedy: "Write `Meg` for a million; give farads without a letter; use one scale letter and digits for digits.",
     source: None,
     failing: "tide gauge buoy: beacon LED\n\
               V1 in 0 5\n\

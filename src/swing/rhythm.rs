@@ -43,6 +43,14 @@ pub(super) fn rhythm(shape: &Shape, stop: Option<f64>) -> Rhythm {
             }
         }
         Shape::Points(ref points) => Rhythm::Once(points.last().map_or(0.0, |p| p.0)),
+        Shape::Repeated { ref points, from } => {
+            let last = points.last().map_or(0.0, |p| p.0);
+            if stop.is_some_and(|stop| last >= stop * (1.0 + 1e-9)) || last <= from {
+                Rhythm::Once(last)
+            } else {
+                Rhythm::Always(from, [Some(1.0 / (last - from)), None])
+            }
+        }
         Shape::Exponential { delay1, tau1, delay2, tau2, .. } => {
             Rhythm::Once(delay2.max(delay1) + 12.0 * tau1.max(tau2))
         }
@@ -102,7 +110,7 @@ pub(super) fn longest_step(shape: &Shape) -> Option<f64> {
             let fastest = carrier.abs() + (index * signal).abs();
             (fastest > 0.0).then(|| 1.0 / (STEPS_IN_A_PERIOD * fastest))
         }
-        Shape::Pulse { .. } | Shape::Points(_) => None,
+        Shape::Pulse { .. } | Shape::Points(_) | Shape::Repeated { .. } => None,
     }
 }
 
@@ -121,6 +129,14 @@ pub(super) fn corners(shape: &Shape, from: f64, to: f64, out: &mut Vec<f64>) -> 
     match *shape {
         Shape::Sine { delay, .. } => add(delay),
         Shape::Points(ref points) => points.iter().for_each(|p| add(p.0)),
+        Shape::Repeated { ref points, from: mark } => {
+            points.iter().for_each(|p| add(p.0));
+            let period = points.last().map_or(0.0, |p| p.0) - mark;
+            let again: Vec<f64> = points.iter().map(|p| p.0 - mark).filter(|t| *t >= 0.0).collect();
+            for start in turns(mark, period, from, to).filter(|start| *start > mark) {
+                again.iter().for_each(|t| add(start + t));
+            }
+        }
         Shape::Exponential { delay1, delay2, .. } => [delay1, delay2].into_iter().for_each(add),
         Shape::Modulated { .. } => {}
         Shape::Pulse { delay, rise, fall, width, period, .. } => {
@@ -129,17 +145,21 @@ pub(super) fn corners(shape: &Shape, from: f64, to: f64, out: &mut Vec<f64>) -> 
                 edges.into_iter().for_each(|edge| add(delay + edge));
                 return is_complete;
             }
-            let first = ((from - delay) / period).floor().max(0.0);
-            // one turn more than there may be corners, so that too many are noticed
-            let most = (MOST_CORNERS + 1) as f64;
-            let count = (((to - delay) / period).ceil() - first).clamp(0.0, most) as u64;
-            for n in 0..=count {
-                let start = delay + (first + n as f64) * period;
+            for start in turns(delay, period, from, to) {
                 edges.into_iter().filter(|edge| *edge <= period).for_each(|edge| add(start + edge));
             }
         }
     }
     is_complete
+}
+
+/// Beginnings of the periods that touch a span, of a course that repeats from `begin` on; one turn more than there may be
+/// corners at most, so that too many are noticed.
+fn turns(begin: f64, period: f64, from: f64, to: f64) -> impl Iterator<Item = f64> {
+    let first = ((from - begin) / period).floor().max(0.0);
+    let most = (MOST_CORNERS + 1) as f64;
+    let count = (((to - begin) / period).ceil() - first).clamp(0.0, most) as u64;
+    (0..=count).map(move |n| begin + (first + n as f64) * period)
 }
 
 /// Into how many pieces a stretch without corners is cut to look for crossings.
@@ -174,6 +194,23 @@ mod tests {
         assert_eq!(common_period(&[1.0, std::f64::consts::SQRT_2]), None);
         assert_eq!(common_period(&[1000.0, 1001.0, 1500.5]), None);
         assert_eq!(common_period(&[]), None);
+    }
+
+    // by hand: 1 ms to 3 ms over and over, with corners at 1, 2, 3 ms and then at every millisecond
+    #[test]
+    fn a_repeated_course_has_its_corners_in_every_turn() {
+        let points = vec![(0.0, 0.0), (1e-3, 0.0), (2e-3, 4.0), (3e-3, 0.0)];
+        let course = Shape::Repeated { points, from: 1e-3 };
+        let Rhythm::Always(from, [Some(frequency), None]) = rhythm(&course, None) else { panic!() };
+        assert!((from - 1e-3).abs() < 1e-15 && (frequency - 500.0).abs() < 1e-9);
+        assert_eq!(rhythm(&course, Some(2e-3)), Rhythm::Once(3e-3));
+        let mut corners_found = Vec::new();
+        assert!(corners(&course, 0.0, 8.5e-3, &mut corners_found));
+        corners_found.sort_by(f64::total_cmp);
+        corners_found.dedup_by(|a, b| (*a - *b).abs() < 1e-12);
+        let expected: Vec<f64> = (1..=8).map(|n| f64::from(n) * 1e-3).collect();
+        assert!(corners_found.iter().zip(&expected).all(|(a, b)| (a - b).abs() < 1e-12), "{corners_found:?}");
+        assert_eq!(corners_found.len(), expected.len());
     }
 
     #[test]

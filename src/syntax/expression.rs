@@ -42,8 +42,8 @@ pub enum Binary {
 /// An expression. Ranges count bytes of the text that was read.
 #[derive(Debug, Clone, PartialEq)]
 pub enum Expression {
-    /// A number, its scale applied; whether it stands alone is for the caller to see.
-    Number(f64),
+    /// A number, its scale applied, and where it stands.
+    Number(f64, Range<usize>),
     /// A parameter.
     Name(Range<usize>),
     /// A function: its name, its arguments.
@@ -225,7 +225,7 @@ impl Reader<'_> {
         let length = number_run(self.rest());
         self.at += length;
         match number(self.text.get(start..self.at).unwrap_or_default()) {
-            Some(number) => Ok(Expression::Number(number.value)),
+            Some(number) => Ok(Expression::Number(number.value, start..self.at)),
             None => {
                 self.at = start;
                 Err(self.problem("this is no number"))

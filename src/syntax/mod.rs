@@ -8,6 +8,7 @@ mod lines;
 mod note;
 mod number;
 mod tokens;
+mod unit;
 
 pub use expression::{Binary, Expression, ExpressionProblem, expression};
 pub use fields::{Fields, Pair};
@@ -15,3 +16,4 @@ pub use lines::{Line, LineKind, Lines, lines};
 pub use note::{ExpectText, HoldWord, NOTE_WORDS, NoteProblem, NoteText, NoteWord, note};
 pub use number::{Number, number, plain_number};
 pub use tokens::{Broken, Token, TokenKind, tokens};
+pub use unit::{Behind, Unit, behind, number_meant, sound_number};

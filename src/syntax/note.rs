@@ -1,6 +1,6 @@
 //! The grammar of notes, `*@ …`: words and places only; names are resolved and numbers judged by `circuit`.
 
-use super::number::number;
+use super::unit::sound_number;
 
 /// A word of a note: its bytes counted from the start of the note.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -301,7 +301,7 @@ fn rating_note<'t>(words: &[NoteWord<'t>]) -> Taken<'t> {
     let mut ratings = Vec::new();
     for (n, word) in words.iter().enumerate().skip(1) {
         let (key, value) = word.text.split_once('=').ok_or(n)?;
-        let value = number(value.as_bytes()).ok_or(n)?.value;
+        let value = sound_number(value).ok_or(n)?.value;
         if !["i", "vr", "p"].iter().any(|k| key.eq_ignore_ascii_case(k)) {
             return Err(n);
         }
@@ -328,7 +328,7 @@ fn word<'t>(words: &[NoteWord<'t>], at: usize) -> Result<NoteWord<'t>, usize> {
 }
 
 fn number_at(words: &[NoteWord<'_>], at: usize) -> Result<f64, usize> {
-    number(word(words, at)?.text.as_bytes()).map(|n| n.value).ok_or(at)
+    sound_number(word(words, at)?.text).map(|n| n.value).ok_or(at)
 }
 
 fn end(words: &[NoteWord<'_>], at: usize) -> Result<(), usize> {
@@ -338,12 +338,12 @@ fn end(words: &[NoteWord<'_>], at: usize) -> Result<(), usize> {
 /// `span = number ".." number`
 fn span(text: &str) -> Option<(f64, f64)> {
     let (low, high) = text.split_once("..")?;
-    Some((number(low.as_bytes())?.value, number(high.as_bytes())?.value))
+    Some((sound_number(low)?.value, sound_number(high)?.value))
 }
 
 /// `percent = number "%"`
 fn percent(text: &str) -> Option<f64> {
-    number(text.strip_suffix('%')?.as_bytes()).map(|n| n.value)
+    sound_number(text.strip_suffix('%')?).map(|n| n.value)
 }
 
 #[cfg(test)]

@@ -10,8 +10,17 @@ pub struct Number {
     pub digits: usize,
     /// How many bytes the scale suffix takes; 0 where there is none.
     pub suffix: usize,
+    /// How many bytes of digits stand behind the letter of the letter code; 0 elsewhere.
+    pub fraction: usize,
     /// Whether it is written in the letter code, `4k7`.
     pub letter_code: bool,
+}
+
+impl Number {
+    /// Bytes that are read; behind them stands a unit or what else is ignored.
+    pub fn length(&self) -> usize {
+        self.digits + self.suffix + self.fraction
+    }
 }
 
 /// A number that may also be written in the letter code. `None` where the text is none.
@@ -28,7 +37,7 @@ pub fn plain_number(text: &[u8]) -> Option<Number> {
         return None;
     }
     let value = decimal.scaled(power, factor)?;
-    Some(Number { value, digits, suffix, letter_code: false })
+    Some(Number { value, digits, suffix, fraction: 0, letter_code: false })
 }
 
 /// `letter-code = [sign] digits code-letter digits *unit-letter` (IEC 60062; there `M` is mega and `m` milli)
@@ -46,7 +55,7 @@ fn letter_code(text: &[u8]) -> Option<Number> {
     decimal.push_all(&text[after..end]);
     decimal.exponent -= i32::try_from(end - after).ok()?;
     let value = decimal.scaled(power, 1)?;
-    Some(Number { value, digits: whole, suffix: letter_len, letter_code: true })
+    Some(Number { value, digits: whole, suffix: letter_len, fraction: end - after, letter_code: true })
 }
 
 fn code_letter(text: &[u8]) -> Option<(usize, i32)> {

@@ -149,6 +149,10 @@ fn source_text(source: &Source) -> String {
             let points: Vec<String> = points.iter().map(|(t, v)| format!("{t:?} {v:?}")).collect();
             format!("PWL({})", points.join(" "))
         }
+        Some(Shape::Repeated { points, from }) => {
+            let points: Vec<String> = points.iter().map(|(t, v)| format!("{t:?} {v:?}")).collect();
+            format!("PWL({}) r={from:?}", points.join(" "))
+        }
         Some(Shape::Exponential { low, high, delay1, tau1, delay2, tau2 }) => {
             format!("EXP({low:?} {high:?} {delay1:?} {tau1:?} {delay2:?} {tau2:?})")
         }
