@@ -1,54 +1,38 @@
 //! Finds what a name means: elements, nodes and scopes by path (`X1:D3`), case ignored. Built only where
 //! something asks by name. What the named thing then does is not known here.
 
+use super::ids::Names;
 use super::{Circuit, ElementId, NodeId, ScopeId, Symbol};
-use rustc_hash::FxHashMap;
+use std::borrow::Cow;
 
 /// All names of a circuit.
-pub(crate) struct Directory {
-    /// Lower-case spelling to its number.
-    folded: FxHashMap<String, u32>,
-    elements: FxHashMap<(ScopeId, u32), ElementId>,
-    nodes: FxHashMap<(ScopeId, u32), NodeId>,
-    children: FxHashMap<(ScopeId, u32), ScopeId>,
+pub(crate) struct Directory<'a> {
+    circuit: &'a Circuit,
+    elements: Index,
+    nodes: Index,
+    children: Index,
 }
 
-impl Directory {
+impl<'a> Directory<'a> {
     /// Reads every name once.
-    pub fn of(circuit: &Circuit) -> Self {
-        let mut folder = Folder { folded: FxHashMap::default(), of_symbol: FxHashMap::default() };
-        let mut directory = Directory {
-            folded: FxHashMap::default(),
-            elements: FxHashMap::default(),
-            nodes: FxHashMap::default(),
-            children: FxHashMap::default(),
+    pub fn of(circuit: &'a Circuit) -> Self {
+        let key = |scope: ScopeId, name: Symbol| (scope, hash(circuit.text(name)));
+        let child = |scope: &super::Scope| match scope.parent {
+            Some(parent) => key(parent, scope.name),
+            None => (ScopeId(u32::MAX), 0), // the root is nobody's child
         };
-        for (id, element) in circuit.elements() {
-            let name = folder.fold(circuit, element.name);
-            // of two elements of one name the first is meant; the second has a finding of its own
-            directory.elements.entry((element.scope, name)).or_insert(id);
+        Directory {
+            circuit,
+            elements: Index::of(circuit.elements.iter().map(|e| key(e.scope, e.name))),
+            nodes: Index::of(circuit.nodes.iter().map(|n| key(n.scope, n.name))),
+            children: Index::of(circuit.scopes.iter().map(child)),
         }
-        for (n, node) in circuit.nodes.iter().enumerate() {
-            let name = folder.fold(circuit, node.name);
-            directory.nodes.entry((node.scope, name)).or_insert(NodeId::new(n));
-        }
-        for (n, scope) in circuit.scopes.iter().enumerate() {
-            if let Some(parent) = scope.parent {
-                let name = folder.fold(circuit, scope.name);
-                directory.children.entry((parent, name)).or_insert(ScopeId::new(n));
-            }
-        }
-        directory.folded = folder.folded;
-        directory
-    }
-
-    fn folded(&self, text: &str) -> Option<u32> {
-        self.folded.get(&text.to_lowercase()).copied()
     }
 
     /// The element of that name or path, seen from `scope`.
     pub fn element(&self, scope: ScopeId, name: &str) -> Option<ElementId> {
-        self.find(scope, name, &self.elements)
+        let named = |at: u32| self.circuit.elements[at as usize].name;
+        self.find(scope, name, &self.elements, named).map(ElementId)
     }
 
     /// The node of that name or path, seen from `scope`; `gnd` is `0`. Globals are the root's.
@@ -56,36 +40,62 @@ impl Directory {
         if name == "0" || name.eq_ignore_ascii_case("gnd") {
             return Some(NodeId::GROUND);
         }
-        self.find(scope, name, &self.nodes).or_else(|| self.find(ScopeId::ROOT, name, &self.nodes))
+        let named = |at: u32| self.circuit.nodes[at as usize].name;
+        let find = |scope| self.find(scope, name, &self.nodes, named);
+        find(scope).or_else(|| find(ScopeId::ROOT)).map(NodeId)
     }
 
-    fn find<T: Copy>(&self, scope: ScopeId, name: &str, map: &FxHashMap<(ScopeId, u32), T>) -> Option<T> {
-        let whole = self.folded(name).and_then(|n| map.get(&(scope, n)));
-        if let Some(&found) = whole {
+    fn find(
+        &self,
+        scope: ScopeId,
+        name: &str,
+        index: &Index,
+        named: impl Copy + Fn(u32) -> Symbol,
+    ) -> Option<u32> {
+        // of two of one name the first is meant; the second has a finding of its own
+        let first = |index: &Index, scope, name: &str, named: &dyn Fn(u32) -> Symbol| {
+            let mut alike = index.alike(scope, hash(name));
+            alike.find(|&at| is_same(self.circuit.text(named(at)), name))
+        };
+        if let Some(found) = first(index, scope, name, &named) {
             return Some(found);
         }
         let (instance, rest) = name.split_once(':')?;
-        let inner = *self.children.get(&(scope, self.folded(instance)?))?;
-        self.find(inner, rest, map)
+        let inner = first(&self.children, scope, instance, &|at| self.circuit.scopes[at as usize].name)?;
+        self.find(ScopeId(inner), rest, index, named)
     }
 }
 
-/// Folds each distinct spelling once.
-struct Folder {
-    folded: FxHashMap<String, u32>,
-    of_symbol: FxHashMap<Symbol, u32>,
+/// Things by the scope they stand in and the hash of their name, those of one key in their order.
+struct Index(Vec<((ScopeId, u32), u32)>);
+
+impl Index {
+    fn of(keys: impl Iterator<Item = (ScopeId, u32)>) -> Self {
+        let mut list: Vec<_> = keys.zip(0..).collect();
+        list.sort_unstable();
+        Index(list)
+    }
+
+    fn alike(&self, scope: ScopeId, hash: u32) -> impl Iterator<Item = u32> + '_ {
+        let key = (scope, hash);
+        let first = self.0.partition_point(|(k, _)| *k < key);
+        self.0[first..].iter().take_while(move |(k, _)| *k == key).map(|(_, at)| *at)
+    }
 }
 
-impl Folder {
-    fn fold(&mut self, circuit: &Circuit, symbol: Symbol) -> u32 {
-        if let Some(&known) = self.of_symbol.get(&symbol) {
-            return known;
-        }
-        let next = self.folded.len() as u32;
-        let number = *self.folded.entry(circuit.text(symbol).to_lowercase()).or_insert(next);
-        self.of_symbol.insert(symbol, number);
-        number
-    }
+/// In lower case, where that takes more than the letters of ASCII.
+fn folded(text: &str) -> Cow<'_, str> {
+    if text.is_ascii() { text.into() } else { text.to_lowercase().into() }
+}
+
+/// Alike for names that differ in case only.
+fn hash(text: &str) -> u32 {
+    Names::hash(&folded(text))
+}
+
+fn is_same(a: &str, b: &str) -> bool {
+    a.eq_ignore_ascii_case(b)
+        || (!(a.is_ascii() && b.is_ascii()) && folded(a).eq_ignore_ascii_case(&folded(b)))
 }
 
 /// The scope and all that hold it, innermost first.

@@ -270,6 +270,10 @@ impl Maker<'_> {
         part.is_some_and(|p| self.withheld.parts[p].is_some())
     }
 
+    fn is_partial(&self, part: Option<usize>) -> bool {
+        part.is_some_and(|p| self.solved.outcome.parts[p].verdict == Verdict::Partial)
+    }
+
     fn solution(&self, solution: &complementarity::Solution) -> Solution {
         let circuit = self.setting.circuit;
         let pairs = self.pairs(solution);
@@ -420,6 +424,7 @@ impl Maker<'_> {
             element: diode.element,
             state: state(place),
             not_evaluated: (place == Place::Unknown).then(|| self.reason(part, is_withheld)),
+            unmodelled: place == Place::Unknown && !is_withheld && self.is_partial(part),
             voltage,
             current,
             power,

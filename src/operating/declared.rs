@@ -65,7 +65,7 @@ pub(crate) const USUAL_TEMPERATURE: f64 = 27.0;
 pub(crate) fn declared(
     circuit: &Circuit,
     parsed: Option<&Parsed>,
-    directory: Option<&Directory>,
+    directory: Option<&Directory<'_>>,
     options: &Options,
     findings: &mut Vec<Finding>,
 ) -> Declared {
@@ -119,7 +119,7 @@ struct Reader<'a> {
     circuit: &'a Circuit,
     /// What the text declares, where it is at hand: its parameters can have ranges.
     parsed: Option<&'a Parsed>,
-    directory: Option<&'a Directory>,
+    directory: Option<&'a Directory<'a>>,
     declared: Declared,
     /// Nodes, by number, with a voltage source to ground; empty where no note holds a node.
     fed: Vec<bool>,

@@ -99,7 +99,7 @@ impl Diode {
 /// All diodes in the order of the text, with what notes and options say about them.
 pub(crate) fn diodes(
     circuit: &Circuit,
-    directory: Option<&Directory>,
+    directory: Option<&Directory<'_>>,
     options: &Options,
     findings: &mut Vec<Finding>,
 ) -> Vec<Diode> {

@@ -74,7 +74,7 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
 /// The diode that `--why` asks about.
 fn asked(
     circuit: &Circuit,
-    directory: Option<&Directory>,
+    directory: Option<&Directory<'_>>,
     options: &Options,
     findings: &mut Vec<Finding>,
 ) -> Option<ElementId> {
@@ -96,7 +96,7 @@ fn asked(
 struct Run<'a> {
     circuit: &'a Circuit,
     text: Option<Text<'a>>,
-    directory: Option<&'a Directory>,
+    directory: Option<&'a Directory<'a>>,
     options: &'a Options,
     plan: &'a Plan,
     slots: &'a Slots,

@@ -23,7 +23,7 @@ impl<T> Named<T> {
     /// element that is no diode are findings.
     pub fn collect(
         circuit: &Circuit,
-        directory: Option<&Directory>,
+        directory: Option<&Directory<'_>>,
         word: &str,
         meaning: impl Fn(&Note) -> Option<Result<T, Finding>>,
         findings: &mut Vec<Finding>,
@@ -115,7 +115,7 @@ enum Target {
     Nothing,
 }
 
-fn target(circuit: &Circuit, directory: &Directory, models: &[String], note: &Note) -> Target {
+fn target(circuit: &Circuit, directory: &Directory<'_>, models: &[String], note: &Note) -> Target {
     let name = circuit.text(note.subject);
     if let Some(id) = directory.element(note.scope, name) {
         let is_diode = matches!(circuit.element(id).behaviour, Behaviour::Diode { .. });

@@ -176,6 +176,8 @@ pub struct DiodeResult {
     pub state: State,
     /// Why it was not evaluated, where so.
     pub not_evaluated: Option<String>,
+    /// It was not evaluated because its part holds something whose law is not known.
+    pub unmodelled: bool,
     /// At its terminals, series resistance included.
     pub voltage: Quantity,
     /// From anode to cathode.

@@ -21,7 +21,7 @@ pub(crate) struct Targets {
 
 impl Targets {
     /// Of a circuit.
-    pub fn of(circuit: &Circuit, directory: Option<&Directory>) -> Self {
+    pub fn of(circuit: &Circuit, directory: Option<&Directory<'_>>) -> Self {
         let mut targets = Targets::default();
         for note in &circuit.notes {
             let (NoteKind::Watch { other, .. }, Some(directory)) = (&note.kind, directory) else { continue };

@@ -1,11 +1,13 @@
 //! An inductor whose current has nowhere to go when the switch in its way opens.
 
 use super::{Check, Evidence, Rule};
-use crate::circuit::{Behaviour, ElementId, NodeId, NoteKind};
+use crate::circuit::directory::Directory;
+use crate::circuit::{Behaviour, ElementId, Hold, NodeId, NoteKind};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 use crate::swing::Swing;
-use rustc_hash::FxHashSet;
+use crate::topology::Ways;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "no-freewheel-path",
@@ -38,17 +40,40 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(evidence: &Evidence<'_>, _operating: &Operating, swing: &Swing) -> Vec<Finding> {
-    let switches = switches(evidence);
+    let circuit = evidence.circuit;
+    let mut switches: Vec<ElementId> = switches(evidence).into_iter().collect();
     if switches.is_empty() {
         return Vec::new();
     }
-    let coupled: FxHashSet<ElementId> =
-        crate::topology::coupled_coils(evidence.circuit).into_iter().collect();
-    let coils = evidence.circuit.elements().filter(|(id, e)| {
+    switches.sort();
+    let open: FxHashSet<ElementId> = switches.iter().copied().collect();
+    let ways = [&open, &FxHashSet::default()].map(|open| Ways::of(circuit, &evidence.wiring.noted, open));
+    let mut near: FxHashMap<NodeId, ElementId> = FxHashMap::default();
+    for &switch in &switches {
+        let (p, q) = crate::operating::main_path(circuit, switch);
+        for node in [p, q] {
+            near.entry(node).or_insert(switch);
+        }
+    }
+    let coils = circuit.elements().filter(|(id, e)| {
         matches!(&e.behaviour, Behaviour::Inductor { henries, .. } if henries.number > 0.0)
-            && !coupled.contains(id)
+            && !evidence.is_coupled(*id)
     });
-    coils.filter_map(|(id, _)| judge(evidence, swing, id, &switches)).collect()
+    let mut findings = Vec::new();
+    for (coil, _) in coils.filter(|(id, _)| is_cut_off(&ways, *id)) {
+        let ends = [circuit.node(coil, 0), circuit.node(coil, 1)];
+        let beside = ends.iter().filter_map(|n| near.get(n).copied()).min();
+        if let Some(switch) = beside.or(switches.first().copied()) {
+            findings.push(tell(evidence, swing, coil, ends, switch));
+        }
+    }
+    findings
+}
+
+/// A closed path leads through the coil with all switches closed, and none with them open.
+fn is_cut_off([open, closed]: &[Ways; 2], coil: ElementId) -> bool {
+    // a coil that never carries anything is for other rules to tell
+    !open.closes(coil) && closed.closes(coil)
 }
 
 /// Switches that follow a control, and transistors and switches that a note holds on and off.
@@ -56,12 +81,13 @@ fn switches(evidence: &Evidence<'_>) -> FxHashSet<ElementId> {
     let circuit = evidence.circuit;
     let mut found: FxHashSet<ElementId> = FxHashSet::default();
     let mut held: FxHashSet<ElementId> = FxHashSet::default();
-    let directory = crate::circuit::directory::Directory::of(circuit);
-    for note in &circuit.notes {
-        let NoteKind::Hold(how) = note.kind else { continue };
-        let Some(id) = directory.element(note.scope, circuit.text(note.subject)) else { continue };
+    let holds = || circuit.notes.iter().filter(|note| matches!(note.kind, NoteKind::Hold(_)));
+    let directory = holds().next().map(|_| Directory::of(circuit));
+    for note in holds() {
+        let subject = circuit.text(note.subject);
+        let Some(id) = directory.as_ref().and_then(|d| d.element(note.scope, subject)) else { continue };
         held.insert(id);
-        if how == crate::circuit::Hold::Both {
+        if matches!(note.kind, NoteKind::Hold(Hold::Both)) {
             found.insert(id);
         }
     }
@@ -73,30 +99,15 @@ fn switches(evidence: &Evidence<'_>) -> FxHashSet<ElementId> {
     found
 }
 
-/// Walks on both sides of the coil with all switches open: does a closed path lead through it, and does one with them
-/// closed?
-fn judge(
+fn tell(
     evidence: &Evidence<'_>,
     swing: &Swing,
     coil: ElementId,
-    switches: &FxHashSet<ElementId>,
-) -> Option<Finding> {
-    let (a, b) = (evidence.circuit.node(coil, 0), evidence.circuit.node(coil, 1));
-    let none = FxHashSet::default();
-    let reaches = |from, to, open: &FxHashSet<ElementId>| reaches(evidence, from, to, coil, open);
-    if a == b || reaches(a, b, switches) || reaches(b, a, switches) {
-        return None;
-    }
-    if !(reaches(a, b, &none) || reaches(b, a, &none)) {
-        return None; // it never carries anything; other rules tell that
-    }
-    let mut near: Vec<ElementId> =
-        switches.iter().copied().filter(|&s| touches_way(evidence, s, a, b, coil)).collect();
-    near.sort();
-    let switch = near.first().copied().or_else(|| switches.iter().min().copied())?;
+    ends: [NodeId; 2],
+    switch: ElementId,
+) -> Finding {
     let name = evidence.name(coil);
-    let peak =
-        [a, b].into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
+    let peak = ends.into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
     let reached = match peak.fold(0.0, f64::max) {
         volts if volts > 0.0 => format!("; its end reaches {} in this model", quantity(volts, "V")),
         _ => String::new(),
@@ -106,66 +117,5 @@ fn judge(
     let finding = evidence.about(&RULE, coil, message).label("its current cannot stop at once");
     let finding =
         finding.also(evidence.statement(switch), "opens its only path").about(evidence.name(switch));
-    Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
-}
-
-/// Whether a switch stands at an end of the coil.
-fn touches_way(evidence: &Evidence<'_>, switch: ElementId, a: NodeId, b: NodeId, coil: ElementId) -> bool {
-    let (p, q) = crate::operating::main_path(evidence.circuit, switch);
-    switch != coil && [p, q].iter().any(|n| *n == a || *n == b)
-}
-
-/// Whether a current may flow from one node to another past the coil; diodes pass it one way.
-fn reaches(
-    evidence: &Evidence<'_>,
-    from: NodeId,
-    to: NodeId,
-    coil: ElementId,
-    open: &FxHashSet<ElementId>,
-) -> bool {
-    let mut seen: FxHashSet<NodeId> = FxHashSet::default();
-    let mut rest = vec![from];
-    while let Some(node) = rest.pop() {
-        if node == to {
-            return true;
-        }
-        if !seen.insert(node) {
-            continue;
-        }
-        // supplied nodes lead to ground
-        if node != NodeId::GROUND && evidence.wiring.noted.is_supplied(node) {
-            rest.push(NodeId::GROUND);
-        }
-        if node == NodeId::GROUND {
-            rest.extend(&evidence.wiring.noted.supplied);
-        }
-        for touch in evidence.wiring.touching.at(node) {
-            let id = touch.element;
-            if id != coil && !open.contains(&id) {
-                rest.extend(onward(evidence, id, node));
-            }
-        }
-    }
-    false
-}
-
-/// Nodes that a current reaches through an element from one of its nodes.
-fn onward(evidence: &Evidence<'_>, id: ElementId, node: NodeId) -> Vec<NodeId> {
-    let circuit = evidence.circuit;
-    let others = || circuit.pins(id).iter().map(|p| p.node).filter(|n| *n != node).collect::<Vec<_>>();
-    match &circuit.element(id).behaviour {
-        Behaviour::Diode { model, .. } => {
-            let breaks = model.is_some_and(|m| circuit.model(m).parameter("bv").is_some());
-            if breaks || circuit.node(id, 0) == node { others() } else { Vec::new() }
-        }
-        Behaviour::CurrentSource(_) | Behaviour::Coupling { .. } => Vec::new(),
-        Behaviour::VoltageByVoltage { .. }
-        | Behaviour::CurrentByVoltage { .. }
-        | Behaviour::VoltageSwitch { .. } => {
-            let (p, q) = (circuit.node(id, 0), circuit.node(id, 1));
-            [(p, q), (q, p)].into_iter().filter(|(x, _)| *x == node).map(|(_, y)| y).collect()
-        }
-        // what is not known may lead anywhere
-        _ => others(),
-    }
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
 }

@@ -1,7 +1,7 @@
 //! Diodes whose state could not be found because the model of something around them is not known.
 
 use super::{Check, Evidence, Rule, in_cases, list};
-use crate::circuit::{ElementId, State};
+use crate::circuit::ElementId;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Case, Operating, Verdict};
 use std::collections::{BTreeMap, BTreeSet};
@@ -47,13 +47,8 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let mut groups: BTreeMap<String, Group> = BTreeMap::new();
     for (number, case) in operating.cases.iter().enumerate() {
         // a part without a solution, or with one that does not check, is told as such
-        let unknown: Vec<&str> =
-            case.causes.iter().filter(|c| c.verdict == Verdict::Partial).map(|c| c.text.as_str()).collect();
-        for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes) {
+        for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes).filter(|d| d.unmodelled) {
             let why = diode.not_evaluated.as_deref().unwrap_or_default();
-            if diode.state != State::NotEvaluated || !unknown.iter().any(|text| why.contains(text)) {
-                continue;
-            }
             let group = groups.entry(why.to_owned()).or_default();
             if group.cases.last() != Some(&number) {
                 group.cases.push(number);

@@ -48,7 +48,7 @@ fn check(evidence: &Evidence<'_>, _operating: &Operating, swing: &Swing) -> Vec<
     notes.iter().filter_map(|note| judge(evidence, &directory, swing, note)).collect()
 }
 
-fn judge(evidence: &Evidence<'_>, directory: &Directory, swing: &Swing, note: &Note) -> Option<Finding> {
+fn judge(evidence: &Evidence<'_>, directory: &Directory<'_>, swing: &Swing, note: &Note) -> Option<Finding> {
     let NoteKind::Watch { other, ripple: Some(limit) } = &note.kind else { return None };
     if other.is_some() {
         return None; // the difference of two nodes has no figures of its own

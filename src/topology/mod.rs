@@ -15,6 +15,7 @@ mod rails;
 mod similar;
 mod touching;
 mod walks;
+mod ways;
 
 pub use arcs::{Barred, OneWay};
 pub use blocks::Unfed;
@@ -29,6 +30,7 @@ pub use rails::Rails;
 pub use similar::{Similar, is_slip, similar};
 pub use touching::{Touch, Touching};
 pub use walks::{Walk, is_lead, main_path};
+pub use ways::Ways;
 
 use crate::circuit::Circuit;
 

@@ -15,6 +15,7 @@ fn diode(element: usize, state: State, current: Quantity, voltage: f64) -> Diode
         element: ElementId::new(element),
         state,
         not_evaluated: None,
+        unmodelled: false,
         voltage: Quantity::Known(voltage),
         current,
         power: None,

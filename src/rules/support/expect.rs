@@ -83,7 +83,7 @@ pub fn claims<'a>(evidence: &Evidence<'a>) -> (Vec<Claim<'a>>, Vec<Finding>) {
 /// The diodes or the node that a note names, and whether it names the element itself.
 fn abouts(
     evidence: &Evidence<'_>,
-    directory: &Directory,
+    directory: &Directory<'_>,
     note: &Note,
     wanted: &Expectation,
 ) -> Result<Vec<(About, bool)>, Box<Finding>> {
