@@ -6,6 +6,8 @@ use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, Source};
 use crate::complementarity::Level;
 use crate::finding::{Finding, Severity};
 use crate::text::{FileId, Span};
+use rustc_hash::{FxHashMap, FxHasher};
+use std::hash::{Hash, Hasher};
 
 /// Most corners that are examined.
 pub(crate) const MOST_CORNERS: usize = 64;
@@ -172,7 +174,46 @@ fn moves(shape: &crate::circuit::Shape) -> bool {
     shape.value(most) != shape.value(least)
 }
 
+impl Condition {
+    /// Whether both ask the same question, whatever they are called.
+    fn is_alike(&self, other: &Condition) -> bool {
+        self.sources == other.sources
+            && self.fixed == other.fixed
+            && self.supplies == other.supplies
+            && self.resistors == other.resistors
+            && self.parameters == other.parameters
+            && self.temperature == other.temperature
+            && self.held == other.held
+            && self.instant == other.instant
+    }
+
+    /// Alike for the values of conditions that are alike.
+    fn fingerprint(&self) -> u64 {
+        let mut hasher = FxHasher::default();
+        for level in self.sources.iter().chain(&self.supplies) {
+            level.value.to_bits().hash(&mut hasher);
+        }
+        for (id, ohms) in &self.resistors {
+            (id, ohms.to_bits()).hash(&mut hasher);
+        }
+        self.held.hash(&mut hasher);
+        (self.temperature.to_bits(), self.instant).hash(&mut hasher);
+        hasher.finish()
+    }
+}
+
 impl Plan {
+    /// For each condition the first that is alike: sources that move together have their extreme instants together,
+    /// and one answer holds for all of them.
+    pub(crate) fn twins(&self) -> Vec<usize> {
+        let mut first: FxHashMap<u64, usize> = FxHashMap::default();
+        let twin = |(number, condition): (usize, &Condition)| {
+            let known = *first.entry(condition.fingerprint()).or_insert(number);
+            if self.conditions[known].is_alike(condition) { known } else { number }
+        };
+        self.conditions.iter().enumerate().map(twin).collect()
+    }
+
     /// Each end alone, each held thing on and off, then all corners, and all corners with each thing on.
     fn add_ranges(&mut self, circuit: &Circuit, declared: &Declared) {
         let ends: Vec<Vec<Change<'_>>> = declared.ranges.iter().map(ends).collect();

@@ -56,6 +56,7 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
         options,
         plan: &plan,
         slots: &slots,
+        twins: plan.twins(),
         first: Vec::new(),
         spent: Vec::new(),
         why: asked(circuit, directory, options, &mut findings),
@@ -64,7 +65,11 @@ pub fn evaluate(circuit: &Circuit, text: Option<Text<'_>>, options: &Options) ->
     };
     run.first_pass(&mut list);
     let (left_to_time, nodes_left_to_time) = left_to_time(circuit, &plan);
-    let cases = (0..plan.conditions.len()).map(|n| run.case(&list, n)).collect();
+    let mut cases = Vec::with_capacity(plan.conditions.len());
+    for number in 0..plan.conditions.len() {
+        let case = run.twin(&cases, number).unwrap_or_else(|| run.case(&list, number));
+        cases.push(case);
+    }
     let reasonings = run.reasoner.finish();
     let why = run.why.map(|element| Why { element, reasonings });
     let basis = Some(Box::new(Basis { plan, diodes: list }));
@@ -100,6 +105,8 @@ struct Run<'a> {
     options: &'a Options,
     plan: &'a Plan,
     slots: &'a Slots,
+    /// For each condition the first that asks the same.
+    twins: Vec<usize>,
     /// What the first pass solved, by condition, where it still holds.
     first: Vec<Option<Solved>>,
     /// Factorizations of the first pass that were not kept, by condition.
@@ -127,7 +134,7 @@ impl Run<'_> {
         let mut greatest: Vec<Option<f64>> = vec![None; diodes.len()];
         for (number, condition) in self.plan.conditions.iter().enumerate() {
             // ranges do not count: one drop holds over all of them
-            if number == 0 || condition.instant {
+            if (number == 0 || condition.instant) && self.twins[number] == number {
                 let solved = solve(&self.setting(diodes, condition));
                 note_currents(&solved, diodes, &mut greatest);
                 self.first[number] = Some(solved);
@@ -155,6 +162,13 @@ impl Run<'_> {
         } else {
             held.get(&self.circuit.element_name(diode).to_lowercase()).copied()
         }
+    }
+
+    /// The answer to a condition that asks what an earlier one did; where somebody asks why, all are told.
+    fn twin(&self, cases: &[Case], number: usize) -> Option<Case> {
+        let twin = self.twins[number];
+        let name = self.plan.conditions[number].name.clone();
+        (twin < number && self.why.is_none()).then(|| Case { name, ..cases[twin].clone() })
     }
 
     fn case(&mut self, diodes: &[Diode], number: usize) -> Case {

@@ -1,6 +1,6 @@
 //! Which conditions there are, how they are named, and what stands where in them.
 
-use super::Laid;
+use super::{Laid, evaluated};
 use crate::config::Options;
 
 #[test]
@@ -139,4 +139,30 @@ fn names_show_no_digits_that_arithmetic_left_behind() {
 fn a_range_of_one_value_is_one_condition() {
     let laid = Laid::out("V1 a 0 3\nR1 a 0 1k\n.dc V1 5 5 1\n*@ range temp 0 50", &Options::default());
     assert_eq!(laid.names(), ["nominal", "V1=5", "temp=0", "temp=50", "V1=5,temp=0", "V1=5,temp=50"]);
+}
+
+#[test]
+fn sources_that_move_together_are_examined_once() {
+    let text = |phase: u32| {
+        let mut text = String::from(".tran 1m 40m\n");
+        for n in 0..20 {
+            text += &format!("V{n} a{n} 0 SIN(0 9 50 0 0 {})\n", n * phase);
+            text += &format!("D{n} a{n} b{n}\nR{n} b{n} 0 1k\n");
+        }
+        text
+    };
+    let different = |phase| {
+        let mut twins = Laid::out(&text(phase), &Options::default()).plan.twins();
+        twins.dedup();
+        (twins.len(), twins)
+    };
+    // nominal, then the two instants of all; with phases of their own each has its own
+    assert_eq!(different(0).0, 41); // as many as conditions, since they alternate
+    assert!(different(0).1.iter().all(|&twin| twin < 3));
+    assert_eq!(different(7).1, (0..41).collect::<Vec<_>>());
+    // each has its own name and the answer of its first
+    let (operating, ..) = evaluated(&text(0), &Options::default());
+    let named = |name: &str| operating.cases.iter().find(|c| c.name == name).unwrap();
+    assert_eq!(named("V0=max").solutions, named("V19=max").solutions);
+    assert_ne!(named("V0=max").solutions, named("V19=min").solutions);
 }
