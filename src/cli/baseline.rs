@@ -4,6 +4,7 @@ use super::input::{Input, Job};
 use kneewise::analysis::analyse;
 use kneewise::config::Options;
 use kneewise::review::{Baseline, Record};
+use kneewise::text::trouble;
 use std::path::{Path, PathBuf};
 
 /// The older state.
@@ -19,7 +20,8 @@ impl Old {
     pub fn read(old: &Path, paths: &[PathBuf], jobs: &[Job], options: &[Options]) -> Result<Self, String> {
         let is_saved = old.extension().is_some_and(|e| e.eq_ignore_ascii_case("json"));
         if is_saved {
-            let text = std::fs::read_to_string(old).map_err(|e| format!("{}: {e}", old.display()))?;
+            let text = std::fs::read_to_string(old)
+                .map_err(|e| format!("{}: {}", old.display(), trouble::reading(&e)))?;
             let baseline = Baseline::from_json(&text).map_err(|e| format!("{}: {e}", old.display()))?;
             return Ok(Old { baseline, root: None });
         }

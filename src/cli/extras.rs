@@ -4,6 +4,7 @@ use super::End;
 use super::args::Args;
 use super::output::Console;
 use clap::CommandFactory;
+use kneewise::text::trouble;
 
 pub fn completions(console: &mut Console, shell: clap_complete::Shell) -> End {
     let mut out = Vec::new();
@@ -32,7 +33,7 @@ pub fn manual(console: &mut Console) -> End {
                 .and_then(|()| page.render_options_section(&mut out)),
         };
         if let Err(problem) = rendered {
-            console.say(&format!("the manual page could not be written: {problem}"));
+            console.say(&format!("the manual page could not be written: {}", trouble::writing(&problem)));
             return End::Failed;
         }
     }

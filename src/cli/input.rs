@@ -1,7 +1,7 @@
 //! Where netlists come from: files, directories that are walked, and standard input as `-`.
 
 use super::settings::Shelf;
-use kneewise::text::{Disk, LoadProblem, Loader, bounded};
+use kneewise::text::{Disk, LoadProblem, Loader, bounded, trouble};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -44,7 +44,7 @@ impl Input {
 }
 
 fn read_standard() -> Result<Arc<Vec<u8>>, LoadProblem> {
-    let bytes = bounded(std::io::stdin().lock()).map_err(|e| LoadProblem(e.to_string()))?;
+    let bytes = bounded(std::io::stdin().lock()).map_err(|e| LoadProblem(trouble::reading(&e)))?;
     Ok(Arc::new(bytes))
 }
 
@@ -131,7 +131,7 @@ fn walk(directory: &Path, endings: &[String], wanted: &mut Wanted) {
                 wanted.jobs.push(Job { path: entry.into_path(), walked: true });
             }
             Ok(_) => {}
-            Err(problem) => wanted.problems.push(problem.to_string()),
+            Err(problem) => wanted.problems.push(trouble_of_walk(&problem)),
         }
     }
     if (wanted.jobs.len(), wanted.problems.len()) == before {
@@ -141,6 +141,17 @@ fn walk(directory: &Path, endings: &[String], wanted: &mut Wanted) {
             directory.display(),
             endings.join(", ")
         ));
+    }
+}
+
+/// What stood in the way of a walk, and where.
+fn trouble_of_walk(problem: &ignore::Error) -> String {
+    use ignore::Error;
+    match problem {
+        Error::WithPath { path, err } => format!("{}: {}", path.display(), trouble_of_walk(err)),
+        Error::WithDepth { err, .. } | Error::WithLineNumber { err, .. } => trouble_of_walk(err),
+        Error::Io(error) => trouble::reading(error),
+        other => other.to_string(),
     }
 }
 

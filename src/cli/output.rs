@@ -2,6 +2,7 @@
 
 use clap::ColorChoice;
 use kneewise::report::Page;
+use kneewise::text::trouble;
 use std::io::{self, IsTerminal, Write};
 use std::time::{Duration, Instant};
 
@@ -54,7 +55,7 @@ impl Console {
                 true
             }
             Err(problem) => {
-                self.say(&format!("the results could not be written: {problem}"));
+                self.say(&format!("the results could not be written: {}", trouble::writing(&problem)));
                 false
             }
         }

@@ -5,7 +5,7 @@ use kneewise::config::{SETTINGS_FILE, Settings, settings};
 use kneewise::finding::{Finding, Severity};
 use kneewise::review::Record;
 use kneewise::rules;
-use kneewise::text::{FileId, Sources, Span};
+use kneewise::text::{FileId, Sources, Span, trouble};
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
@@ -37,7 +37,7 @@ impl Shelf {
     pub fn new(chosen: Option<&Path>) -> Result<Self, String> {
         let mut shelf = Shelf::default();
         if let Some(path) = chosen {
-            let found = read(path).map_err(|e| format!("{}: {e}", path.display()))?;
+            let found = read(path).map_err(|e| format!("{}: {}", path.display(), trouble::reading(&e)))?;
             shelf.chosen = Some(shelf.keep(found));
         }
         Ok(shelf)
@@ -92,7 +92,7 @@ impl Shelf {
 fn unreadable(path: &Path, problem: &std::io::Error) -> Found {
     let mut sources = Sources::default();
     let file = sources.add(path.display().to_string(), Vec::new());
-    let message = format!("{SETTINGS_FILE} cannot be read: {problem}");
+    let message = format!("{SETTINGS_FILE} cannot be read: {}", trouble::reading(problem));
     let finding = Finding::new("unreadable-settings", Severity::Error, Span::new(file, 0, 0), message)
         .help("None of its settings hold. Mend its permissions, or name another with --config.");
     Found { settings: Settings::default(), base: PathBuf::new(), sources, findings: vec![finding] }

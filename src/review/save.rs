@@ -1,6 +1,7 @@
 //! Rewrites a file so that at every moment either the old or the new one is there, whole: written beside, flushed,
 //! renamed. Every step is one call on a [`Desk`], so that tests can stop at each.
 
+use crate::text::trouble;
 use std::fs::{self, File, OpenOptions};
 use std::io::{self, Write};
 use std::path::{Path, PathBuf};
@@ -108,7 +109,7 @@ pub fn save(desk: &mut dyn Desk, path: &Path, before: &[u8], after: &[u8]) -> Re
         return Ok(());
     }
     let problem = |what: &str, error: &io::Error| {
-        SaveProblem(format!("{} stays as it was: {what}: {error}", path.display()))
+        SaveProblem(format!("{} stays as it was: {what}: {}", path.display(), trouble::writing(error)))
     };
     let target = desk.resolve(path).map_err(|e| problem("it cannot be found any more", &e))?;
     if desk.is_read_only(&target).map_err(|e| problem("its permissions cannot be read", &e))? {

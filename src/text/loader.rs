@@ -1,5 +1,6 @@
 //! Where bytes come from: the disk, or memory (tests, standard input, two revisions side by side).
 
+use super::trouble;
 use std::collections::BTreeMap;
 use std::io::Read;
 use std::path::{Path, PathBuf};
@@ -50,7 +51,7 @@ pub struct Disk;
 
 impl Loader for Disk {
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
-        std::fs::File::open(path).and_then(bounded).map_err(|e| LoadProblem(e.to_string()))
+        std::fs::File::open(path).and_then(bounded).map_err(|e| LoadProblem(trouble::reading(&e)))
     }
     fn size(&self, path: &Path) -> Option<u64> {
         std::fs::metadata(path).ok().filter(std::fs::Metadata::is_file).map(|m| m.len())
@@ -89,7 +90,7 @@ impl Memory {
 
 impl Loader for Memory {
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
-        self.files.get(&self.resolve(path)).cloned().ok_or_else(|| LoadProblem("no such file".into()))
+        self.files.get(&self.resolve(path)).cloned().ok_or_else(|| LoadProblem("there is no such file".into()))
     }
     fn exists(&self, path: &Path) -> bool {
         self.files.contains_key(&self.resolve(path))

@@ -6,6 +6,7 @@ mod encode;
 mod loader;
 mod nearest;
 mod span;
+pub mod trouble;
 
 pub use decode::{Encoding, decode};
 pub use encode::{encode, original_offsets};

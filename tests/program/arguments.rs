@@ -1,6 +1,6 @@
 //! Arguments and exit codes: 0 clean, 1 something at or above `--fail-on`, 2 the job could not be done.
 
-use crate::runner::{feed, run, scratch};
+use crate::runner::{feed, run, run_in, scratch};
 
 const CLEAN: &str = "Sounder supply\nV1 vin 0 5\nR1 vin led 330\nD1 led 0 DLED\n*@ made-of DLED red-led\n\
                      .model DLED D(IS=1e-20 N=1.7)\n.end\n";
@@ -193,4 +193,27 @@ fn a_watched_node_that_is_not_there_is_told() {
     let run = feed(&["check", "-"], &CLEAN.replace(".end", "*@ watch led\n*@ watch led lde\n.end"));
     assert_eq!(run.out.matches("unknown-name").count(), 1, "{}", run.out);
     assert!(run.out.contains("no node here is named `lde`"), "{}", run.out);
+}
+
+#[test]
+fn troubles_with_files_are_told_in_plain_words() {
+    let folder = scratch("troubles");
+    std::fs::write(folder.join("a.net"), CLEAN).unwrap();
+    std::fs::write(folder.join("latin.json"), b"\xff\xfe\xfd").unwrap();
+    for (arguments, words) in [
+        (&["check", "gone.net"][..], "gone.net: there is no such file"),
+        (&["states", "."], ".: it is a directory"),
+        (&["swing", "gone.net"], "gone.net: there is no such file"),
+        (&["annotate", "."], ".: it is a directory"),
+        (&["compare", "a.net", "gone.net"], "gone.net: there is no such file"),
+        (&["check", "a.net/b.net"], "a.net/b.net: a part of its path is a file and no directory"),
+        (&["check", "a.net", "--config", "gone.toml"], "gone.toml: there is no such file"),
+        (&["check", "a.net", "--against", "latin.json"], "latin.json: it is no text in UTF-8"),
+        (&["swing", "a.net", "--plot", "gone/a.svg"], "gone/a.svg: the picture could not be written: its directory"),
+    ] {
+        let run = run_in(&folder, arguments);
+        assert_eq!(run.code, 2, "{arguments:?}");
+        assert!(run.err.starts_with(&format!("kneewise: {words}")), "{arguments:?}: {}", run.err);
+        assert!(!run.err.contains("os error"), "{arguments:?}: {}", run.err);
+    }
 }
