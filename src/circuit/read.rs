@@ -2,7 +2,7 @@
 
 use super::dot::Next;
 use super::parsed::{Block, Parsed, Statement};
-use super::title::reads_as_element;
+use super::title::{reads_as_dot_line, reads_as_element};
 use crate::config::Options;
 use crate::finding::{Edit, Finding, Severity};
 use crate::syntax::{self, Fields, Line as Cut, LineKind};
@@ -189,18 +189,27 @@ impl Reader<'_> {
         let text = self.sources.slice(span);
         let whole = self.sources.get(span.file).map_or("", |f| f.text.as_str());
         let rest = whole.get(span.end as usize..).unwrap_or("");
-        let Some(name) = reads_as_element(text, rest) else { return };
+        let (name, message, help) = match (reads_as_element(text, rest), reads_as_dot_line(text)) {
+            (Some(name), _) => (
+                name,
+                format!("line 1 is the title and never an element, yet it reads as the element {name}"),
+                "If it is an element, put a title line above it; if it is a title, begin it with a word that is no element.",
+            ),
+            (None, Some(word)) => (
+                word,
+                format!("line 1 is the title, so this {word} line is not read"),
+                "Put a title line above it; a file that is included needs none.",
+            ),
+            (None, None) => return,
+        };
+        let (name, is_dot) = (name.to_owned(), name.starts_with('.'));
+        self.parsed.incomplete |= is_dot;
         let above = Edit { span: Span { end: span.start, ..span }, replacement: "Circuit\n".into() };
-        let finding = Finding::new(
-            "title-reads-as-element",
-            Severity::Warning,
-            span,
-            format!("line 1 is the title and never an element, yet it reads as the element {name}"),
-        )
-        .label("taken as the title")
-        .about(name)
-        .help("If it is an element, put a title line above it; if it is a title, begin it with a word that is no element.")
-        .fix("put a title line above it", vec![above]);
+        let finding = Finding::new("title-reads-as-element", Severity::Warning, span, message)
+            .label("taken as the title")
+            .about(name)
+            .help(help)
+            .fix("put a title line above it", vec![above]);
         self.tell(finding);
     }
 

@@ -7,6 +7,7 @@ use super::ids::{ElementId, ModelId, ScopeId};
 use super::line::Line;
 use crate::finding::{Finding, Severity, list};
 use crate::syntax;
+use crate::text::Span;
 
 impl Expander<'_> {
     /// `diode = name node node [model] [area] *pair`
@@ -142,22 +143,36 @@ impl Expander<'_> {
         let mut seen = rustc_hash::FxHashSet::default();
         spans.retain(|(span, _)| seen.insert(self.sources.slice(*span).to_ascii_lowercase()));
         let Some((&(first, id), rest)) = spans.split_first() else { return };
-        let names: Vec<&str> = spans.iter().map(|(s, _)| self.sources.slice(*s)).collect();
-        let without_word = self.circuit.element(id).name_span == first;
-        let message = match (names.as_slice(), without_word) {
-            ([only], true) => format!("{only} names no model, so nothing is known about it"),
-            ([only], false) => format!("the model {only} is not defined"),
-            _ => format!("{} models are named and not defined: {}", names.len(), shortened(&names)),
+        let is_bare = |&(span, id): &(Span, ElementId)| self.circuit.element(id).name_span == span;
+        let label = |place: &(Span, ElementId)| if is_bare(place) { "names no model" } else { "not defined" };
+        let names = |bare: bool| -> Vec<&str> {
+            spans.iter().filter(|place| is_bare(place) == bare).map(|(s, _)| self.sources.slice(*s)).collect()
         };
-        let mut finding = Finding::new("undefined-model", Severity::Warning, first, message)
-            .label("not defined")
-            .about(names.first().copied().unwrap_or(""))
-            .help("Add its .model line or include the file that holds it; until then a diode counts as silicon with the default drop.");
-        for &(span, _) in rest.iter().take(7) {
-            finding = finding.also(span, "not defined");
+        let mut finding =
+            Finding::new("undefined-model", Severity::Warning, first, without_model(&names(true), &names(false)))
+                .label(label(&(first, id)))
+                .about(self.sources.slice(first))
+                .help("Add its .model line or include the file that holds it; until then a diode counts as silicon with the default drop.");
+        for place in rest.iter().take(7) {
+            finding = finding.also(place.0, label(place));
         }
         self.tell(finding);
     }
+}
+
+/// Elements that name no model, and models that are named and not defined, in one sentence.
+fn without_model(bare: &[&str], undefined: &[&str]) -> String {
+    let first = match undefined {
+        [] => None,
+        [only] => Some(format!("the model {only} is not defined")),
+        _ => Some(format!("{} models are named and not defined: {}", undefined.len(), shortened(undefined))),
+    };
+    let second = match bare {
+        [] => None,
+        [only] => Some(format!("{only} names no model, so nothing is known about it")),
+        _ => Some(format!("{} name no model, so nothing is known about them", shortened(bare))),
+    };
+    first.into_iter().chain(second).collect::<Vec<_>>().join("; ")
 }
 
 /// Up to eight names.

@@ -44,6 +44,14 @@ fn is_touched(node: &str, rest: &str) -> bool {
     lines.flat_map(|line| line.split_whitespace().skip(1).take(4)).any(|word| word.eq_ignore_ascii_case(node))
 }
 
+/// The word of a title that reads as a dot line which defines or includes something.
+pub(super) fn reads_as_dot_line(text: &str) -> Option<&str> {
+    let word = text.split_whitespace().next()?;
+    let known = [".model", ".subckt", ".param", ".include", ".inc", ".lib", ".global", ".macro"];
+    (known.iter().any(|k| word.eq_ignore_ascii_case(k)) && text.split_whitespace().count() > 1)
+        .then_some(word)
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -53,6 +61,10 @@ mod tests {
         let rest = "* for board and divider\nR9 in out 1k\n.end\n";
         for text in ["R1 a b 1k", "VIN in 0 5", "V1 in 0 SIN(0 5 50)", "D1 a b 1N4148", "Q1 c b e BC547"] {
             assert!(reads_as_element(text, rest).is_some(), "{text}");
+        }
+        assert_eq!(reads_as_dot_line(".SUBCKT LAMP a k"), Some(".SUBCKT"));
+        for text in [".title Charger", ".model", "Charger .model", "", ".end"] {
+            assert!(reads_as_dot_line(text).is_none(), "{text}");
         }
         for text in [
             "Rectifier with 2 diodes",

@@ -116,7 +116,10 @@ impl<'a> Expander<'a> {
         let definitions = self.parsed.blocks.len() - 1;
         let models = self.parsed.models.len();
         let span = self.parsed.title.unwrap_or(Span::new(ROOT_FILE, 0, 0));
-        let message = if definitions + models == 0 {
+        let is_empty = self.sources.get(ROOT_FILE).is_none_or(|file| file.text.trim().is_empty());
+        let message = if is_empty {
+            "this file is empty, so there is nothing to check".to_owned()
+        } else if definitions + models == 0 {
             "there are no elements in this file, so there is nothing to check".to_owned()
         } else {
             let counted = |count: usize, what: &str| match count {
@@ -128,9 +131,17 @@ impl<'a> Expander<'a> {
             let parts: Vec<String> = parts.into_iter().flatten().collect();
             format!("this file only defines {}, so there is nothing to check", parts.join(" and "))
         };
+        let help = match definitions + models {
+            0 => {
+                "A netlist is a title line and then one element a line, such as `R1 in out 1k`; its first line is never an element."
+            }
+            _ => {
+                "Check a circuit that uses what is defined here; the first line of a file is its title and never an element."
+            }
+        };
         let finding = Finding::new("nothing-to-check", Severity::Note, span, message)
             .label("no element behind this title")
-            .help("Check a circuit that uses what is defined here; the first line of a file is its title and never an element.");
+            .help(help);
         self.tell(finding);
     }
 

@@ -120,14 +120,20 @@ pub struct Annotate {
 
 #[derive(Debug, Group)]
 pub struct Compare {
-    /// Two netlists or two directories
-    #[arg(required = true, value_names = ["OLD", "NEW"], num_args = 1..=9)]
-    pub paths: Vec<PathBuf>,
+    /// The older netlist, or a directory of them
+    #[arg(value_name = "OLD")]
+    pub old: PathBuf,
+    /// The newer netlist, or directory
+    #[arg(value_name = "NEW", required = !is_called())]
+    pub new: Option<PathBuf>,
+    /// What version control says of them besides
+    #[arg(hide = true, num_args = 0..=7)]
+    pub rest: Vec<PathBuf>,
     /// Text for people, JSON for programs, Markdown for a comment
     #[arg(long, value_enum, default_value = "text")]
     pub format: CompareFormat,
     /// Share by which a current or voltage must move to be told, such as 0.1 or 10% [default: 5%]
-    #[arg(long, value_name = "SHARE", value_parser = share)]
+    #[arg(long, value_name = "SHARE", value_parser = share, allow_negative_numbers = true)]
     pub moved: Option<f64>,
     #[command(flatten)]
     pub common: Common,
@@ -195,7 +201,7 @@ impl Common {
 #[derive(Debug, Group)]
 pub struct CircuitOptions {
     /// One drop for every diode, in volts
-    #[arg(long, value_name = "VOLTS", value_parser = drop_volts)]
+    #[arg(long, value_name = "VOLTS", value_parser = drop_volts, allow_negative_numbers = true)]
     pub drop: Option<f64>,
     /// Hold a source at a value; may be repeated
     #[arg(long, value_name = "NAME=VALUE", value_parser = setting)]
@@ -261,6 +267,18 @@ impl FailOn {
             FailOn::Warning => Severity::Warning,
             FailOn::Note => Severity::Note,
         }
+    }
+}
+
+/// Whether version control runs this as its external comparison.
+pub fn is_called() -> bool {
+    std::env::var_os("GIT_DIFF_PATH_COUNTER").is_some()
+}
+
+impl Compare {
+    /// All paths in their order.
+    pub fn paths(&self) -> Vec<PathBuf> {
+        std::iter::once(&self.old).chain(&self.new).chain(&self.rest).cloned().collect()
     }
 }
 

@@ -2,7 +2,7 @@
 //! external comparison.
 
 use super::End;
-use super::args::{Compare, CompareFormat};
+use super::args::{Compare, CompareFormat, is_called};
 use super::input::{Input, wanted};
 use super::output::Console;
 use super::settings::{Found, Shelf};
@@ -35,19 +35,14 @@ pub fn run(console: &mut Console, command: &Compare) -> End {
         Err(problem) => {
             console.say(&problem);
             // version control takes a failure for a crash, and shows no other file
-            if command.paths.len() == 1 && is_called() { End::Clean } else { End::Failed }
+            if command.new.is_none() && is_called() { End::Clean } else { End::Failed }
         }
     }
 }
 
-/// Whether version control runs this as its external comparison.
-fn is_called() -> bool {
-    std::env::var_os("GIT_DIFF_PATH_COUNTER").is_some()
-}
-
 fn compare(console: &mut Console, command: &Compare) -> Result<End, String> {
     let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
-    let (twins, is_called) = twins(&command.paths, &mut shelf)?;
+    let (twins, is_called) = twins(&command.paths(), &mut shelf)?;
     let (mut files, mut share, mut found) = (Vec::new(), 0.0, None);
     let mut parts: BTreeSet<PathBuf> = BTreeSet::new();
     for (n, twin) in twins.iter().enumerate() {

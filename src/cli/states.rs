@@ -11,6 +11,9 @@ use kneewise::finding::{Finding, Severity};
 use kneewise::report::{self, Summary};
 use std::path::Path;
 
+/// So many errors are told, since the states may hang on them; `check` tells all.
+const ERRORS_SHOWN: usize = 3;
+
 pub fn run(console: &mut Console, command: &States) -> End {
     let mut shelf = match Shelf::new(command.common.circuit.config.as_deref()) {
         Ok(shelf) => shelf,
@@ -77,6 +80,12 @@ pub fn worst<'f>(
     let mut summary = Summary::default();
     summary.count_all(&analysis.findings);
     of_settings.for_each(|f| summary.count_all(std::slice::from_ref(f)));
+    let errors = analysis.findings.iter().filter(|f| f.severity == Severity::Error && f.accepted.is_none());
+    for error in errors.take(ERRORS_SHOWN) {
+        let (place, _) = analysis.sources.positions(error.span);
+        let name = analysis.sources.name(error.span.file);
+        console.say(&format!("{name}:{}:{}: {}", place.line, place.column, error.message));
+    }
     if summary.errors + summary.warnings > 0 {
         let file = file.display();
         let drop = circuit.drop.iter().map(|volts| format!(" --drop {volts}"));

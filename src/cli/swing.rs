@@ -70,7 +70,8 @@ pub fn run(console: &mut Console, command: &Swing) -> End {
 fn picture(console: &mut Console, analysis: &Analysis, path: &Path) -> bool {
     let is_svg = path.extension().is_some_and(|e| e.eq_ignore_ascii_case("svg"));
     let drawn = if is_svg { report::plot::svg(analysis) } else { report::plot::html(analysis) };
-    let done = drawn.and_then(|text| std::fs::write(path, text).map_err(|problem| trouble::writing(&problem)));
+    let done =
+        drawn.and_then(|text| std::fs::write(path, text).map_err(|problem| trouble::writing(&problem)));
     if let Err(problem) = &done {
         console.say(&format!("{}: the picture could not be written: {problem}", path.display()));
     }

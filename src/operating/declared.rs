@@ -11,6 +11,9 @@ use crate::config::Options;
 use crate::finding::{Finding, Severity};
 use crate::text::{FileId, Span};
 
+/// Names among which the one that was meant is looked for.
+const MOST_CANDIDATES: usize = 2000;
+
 /// What a range is about.
 #[derive(Debug, Clone, PartialEq)]
 pub(crate) enum Subject {
@@ -318,9 +321,18 @@ fn not_holdable(name: &str, note: &Note) -> Finding {
 
 fn not_settable(circuit: &Circuit, name: &str) -> Finding {
     let place = circuit.title.unwrap_or(Span::new(FileId(0), 0, 0));
+    let sources = (0..circuit.elements.len())
+        .map(ElementId::new)
+        .filter(|&id| source(circuit, id).is_some())
+        .take(MOST_CANDIDATES);
+    let names: Vec<String> = sources.map(|id| circuit.element_name(id)).collect();
+    let meant = match crate::text::nearest(name, names.iter().map(String::as_str)) {
+        Some(near) => format!("Did you mean `{near}`? "),
+        None => String::new(),
+    };
     Finding::new("unknown-name", Severity::Error, place, format!("`--set {name}=…` names no source of this circuit"))
         .about(name)
-        .help("Only independent sources, nodes held by a `supply` note, and `temp` can be set; inside an instance write the path, such as `X1:V1`.")
+        .help(format!("{meant}Only independent sources, nodes held by a `supply` note, and `temp` can be set; inside an instance write the path, such as `X1:V1`."))
 }
 
 fn unknown_sweep(sweep: &Sweep) -> Finding {

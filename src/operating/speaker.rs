@@ -253,7 +253,10 @@ pub(crate) fn trust(diode: &DiodeResult) -> Vec<String> {
         sentence(&if is_bare { format!("it {reason}") } else { reason.clone() })
     }));
     if let Some(refined) = diode.refined {
-        let (i, v) = (quantity(refined.current, "A"), quantity(refined.voltage, "V"));
+        let v = quantity(refined.voltage, "V");
+        // surfaces leak more
+        let is_nothing = refined.current.abs() < 1e-12;
+        let i = if is_nothing { "under 1 pA".to_owned() } else { quantity(refined.current, "A") };
         sentences.push(format!("By the exponential law it carries {i} at {v}."));
     }
     sentences

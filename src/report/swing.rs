@@ -21,10 +21,11 @@ pub fn swing(page: &mut Page, analysis: &Analysis) {
         page.plain("Nothing was followed.").end();
         return;
     };
-    heading(page, swing);
+    let cases = analysis.operating.as_ref().map_or(0, |o| o.cases.len());
+    heading(page, swing, cases);
     diodes_over_time(page, &analysis.circuit, swing);
     nodes(page, analysis, swing);
-    conditions(page, &analysis.circuit, swing, analysis.operating.as_ref().map_or(0, |o| o.cases.len()));
+    conditions(page, &analysis.circuit, swing, cases);
     missing(page, &analysis.circuit, swing);
 }
 
@@ -38,12 +39,9 @@ fn paragraph(page: &mut Page, ink: Option<Ink>, text: &str) {
 }
 
 /// Which time the figures hold for.
-fn heading(page: &mut Page, swing: &Swing) {
+fn heading(page: &mut Page, swing: &Swing, cases: usize) {
     let text = match (swing.span, swing.period) {
-        (None, _) => {
-            "No source moves, so nothing happens over time; what follows are the ranges over the conditions."
-                .into()
-        }
+        (None, _) => resting(swing, cases),
         (Some(_), Some(period)) if swing.periodic => {
             format!("Periodic state, one period of {}:", quantity(period, "s"))
         }
@@ -62,6 +60,18 @@ fn heading(page: &mut Page, swing: &Swing) {
         paragraph(page, Some(Ink::Warning), &format!("Cut short: {}.", clean(reason)));
     }
     page.end();
+}
+
+/// What there is to tell where no source moves.
+fn resting(swing: &Swing, cases: usize) -> String {
+    let carries = swing.diodes.iter().any(|d| d.over_conditions.is_some());
+    let rest = match (swing.diodes.is_empty(), carries, cases) {
+        (true, _, _) => "there is no diode whose current could move.",
+        (_, false, _) => "no diode carries a forward current in any condition.",
+        (_, true, 0 | 1) => "no range is declared (`*@ range VIN 9 16`), so that this is the only condition:",
+        (_, true, _) => "what follows are the ranges over the conditions.",
+    };
+    format!("No source moves, so nothing happens over time; {rest}")
 }
 
 fn diodes_over_time(page: &mut Page, circuit: &Circuit, swing: &Swing) {
@@ -198,7 +208,9 @@ fn conditions(page: &mut Page, circuit: &Circuit, swing: &Swing, cases: usize) {
     if rows.is_empty() {
         return;
     }
-    page.ink(Ink::Strong, &format!("forward current over {}", counted(cases, "condition"))).end();
+    if cases > 1 {
+        page.ink(Ink::Strong, &format!("forward current over {}", counted(cases, "condition"))).end();
+    }
     table::write(page, "  ", &["diode", "least", "greatest", "decades", "least in", "greatest in"], &rows);
     page.end();
 }

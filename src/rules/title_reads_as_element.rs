@@ -1,4 +1,4 @@
-//! Line 1 is taken as the title, yet reads as an element. Found while reading.
+//! Line 1 is taken as the title, yet reads as an element or a dot line. Found while reading.
 
 use super::{Check, Rule};
 use crate::finding::Severity;
@@ -9,7 +9,7 @@ pub const RULE: Rule = Rule {
     group: "reading",
     severity: Severity::Warning,
     also: None,
-    summary: "line 1 is taken as the title, yet reads as an element",
+    summary: "line 1 is taken as the title, yet reads as an element or a dot line",
     why: "The first line of a netlist is its title, whatever it says. Many first elements are lost that way.",
     remedy: "Put a title line above it.",
     source: None,

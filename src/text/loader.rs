@@ -90,7 +90,10 @@ impl Memory {
 
 impl Loader for Memory {
     fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
-        self.files.get(&self.resolve(path)).cloned().ok_or_else(|| LoadProblem("there is no such file".into()))
+        self.files
+            .get(&self.resolve(path))
+            .cloned()
+            .ok_or_else(|| LoadProblem("there is no such file".into()))
     }
     fn exists(&self, path: &Path) -> bool {
         self.files.contains_key(&self.resolve(path))

@@ -209,11 +209,75 @@ fn troubles_with_files_are_told_in_plain_words() {
         (&["check", "a.net/b.net"], "a.net/b.net: a part of its path is a file and no directory"),
         (&["check", "a.net", "--config", "gone.toml"], "gone.toml: there is no such file"),
         (&["check", "a.net", "--against", "latin.json"], "latin.json: it is no text in UTF-8"),
-        (&["swing", "a.net", "--plot", "gone/a.svg"], "gone/a.svg: the picture could not be written: its directory"),
+        (
+            &["swing", "a.net", "--plot", "gone/a.svg"],
+            "gone/a.svg: the picture could not be written: its directory",
+        ),
     ] {
         let run = run_in(&folder, arguments);
         assert_eq!(run.code, 2, "{arguments:?}");
         assert!(run.err.starts_with(&format!("kneewise: {words}")), "{arguments:?}: {}", run.err);
         assert!(!run.err.contains("os error"), "{arguments:?}: {}", run.err);
     }
+}
+
+#[test]
+fn a_source_that_is_not_there_is_named_where_the_states_are_shown() {
+    for command in ["states", "swing"] {
+        let run = feed(&[command, "-", "--set", "VIM=3"], CLEAN);
+        assert_eq!(run.code, 1, "{command}");
+        assert!(run.err.contains("`--set VIM=…` names no source of this circuit"), "{command}: {}", run.err);
+    }
+    let run = feed(&["check", "-", "--set", "V2=3"], CLEAN);
+    assert!(run.out.contains("Did you mean `V1`?"), "{}", run.out);
+    let run = feed(&["annotate", "-", "--set", "V2=3"], CLEAN);
+    assert_eq!((run.code, run.out.as_str()), (2, ""), "{}", run.err);
+    assert!(run.err.contains("`--set V2=…` names no source"), "{}", run.err);
+}
+
+#[test]
+fn a_negative_drop_is_refused_for_what_it_is() {
+    for arguments in [&["states", "-", "--drop", "-1"][..], &["states", "-", "--drop=-1"]] {
+        let run = run(arguments);
+        assert_eq!(run.code, 2);
+        assert!(run.err.contains("it cannot be negative") && !run.err.contains("tip:"), "{}", run.err);
+    }
+}
+
+#[test]
+fn compare_asks_for_both_sides() {
+    for arguments in [&["compare"][..], &["compare", "a.net"]] {
+        let run = run(arguments);
+        assert_eq!(run.code, 2);
+        assert!(run.err.contains("<NEW>") && !run.err.contains("[NEW]"), "{}", run.err);
+        assert!(run.err.contains("Usage: kneewise compare [OPTIONS] <OLD> <NEW>"), "{}", run.err);
+    }
+    let help = run(&["compare", "--help"]);
+    assert!(!help.out.contains("[NEW]") && !help.out.contains("REST"), "{}", help.out);
+}
+
+#[test]
+fn nothing_to_show_is_said_and_not_announced() {
+    let library = "Parts of the board\n.model DX D\n.subckt A p n\nR1 p n 1k\n.ends\n";
+    let run = feed(&["swing", "-"], library);
+    assert_eq!(run.out, "No source moves, so nothing happens over time; there is no diode whose current could move.\n\n");
+    let run = feed(&["check", "-"], "");
+    assert!(run.out.contains("this file is empty") && !run.out.contains("defined here"), "{}", run.out);
+}
+
+#[test]
+fn currents_that_no_board_shows_are_told_as_that() {
+    let reverse = "t\nV1 a 0 5\nR1 a b 1k\nD1 0 b DX\n.model DX D(IS=1e-15)\n.end\n";
+    let run = feed(&["states", "-"], reverse);
+    assert!(run.out.contains("< 1 pA") && !run.out.contains("fA"), "{}", run.out);
+    let run = feed(&["states", "-", "--why", "D1"], reverse);
+    assert!(run.out.contains("under 1 pA"), "{}", run.out);
+}
+
+#[test]
+fn what_names_no_model_is_told_apart_from_models_that_are_missing() {
+    let text = "t\nV1 a 0 5\nR1 a b 1k\nD1 b 0\nD2 b 0 DNONE\n.end\n";
+    let run = feed(&["check", "-"], text);
+    let words = "the model DNONE is not defined; D1 names no model, so nothing is known about it";
+    assert!(run.out.split_whitespace().collect::<Vec<_>>().join(" ").contains(words), "{}", run.out);
 }

@@ -66,9 +66,19 @@ fn draw(analysis: &Analysis, text: &mut String) -> Drawn {
     }
     if currents.height() > 0 {
         currents.draw(&root, top)?;
+    } else if top == style::TITLE {
+        style::note(&root, top as i32 + 14, nothing(analysis))?;
     }
     root.present()?;
     Ok(())
+}
+
+/// Why there is nothing to draw.
+fn nothing(analysis: &Analysis) -> &'static str {
+    match analysis.circuit.elements.len() {
+        0 => "There are no elements in this file, so there is nothing to draw.",
+        _ => "No source moves and no diode carries a forward current, so there is nothing to draw.",
+    }
 }
 
 fn heading(analysis: &Analysis) -> String {

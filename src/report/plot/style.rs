@@ -64,6 +64,11 @@ pub(super) fn title(area: &Area<'_>, text: &str) -> Result<(), Box<dyn Error + S
     write(area, text, (16, TITLE as i32 / 2), &words(15, INK, HPos::Left))
 }
 
+/// A sentence under the title.
+pub(super) fn note(area: &Area<'_>, y: i32, text: &str) -> Result<(), Box<dyn Error + Send + Sync>> {
+    write(area, text, (16, y), &words(12, FAINT, HPos::Left))
+}
+
 /// A colour as the picture writes it.
 fn hex(colour: RGBColor) -> String {
     format!("#{:02X}{:02X}{:02X}", colour.0, colour.1, colour.2)

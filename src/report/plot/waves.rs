@@ -44,27 +44,39 @@ pub(super) fn waves(analysis: &Analysis) -> Vec<Curve<'_>> {
 impl Curve<'_> {
     pub fn draw(&self, root: &Area<'_>, top: u32) -> Drawn {
         let (top, bottom) = (top as i32 + ABOVE, (top + HEIGHT) as i32 - BELOW);
-        name(root, &format!("v({})", self.title), top + 12)?;
+        // between the two levels, whose labels stand at both ends
+        name(root, &format!("v({})", self.title), (top + bottom) / 2)?;
         self.axis(root, top, bottom)?;
         let ripple = self.level.ripple();
         let (low, high) = self.limits();
         let y = |volts: f64| bottom - (f64::from(bottom - top) * (volts - low) / (high - low)).round() as i32;
-        for volts in [self.level.min, self.level.max] {
+        for (volts, label) in self.labels() {
             let dashes = (LEFT..WIDTH as i32 - RIGHT).step_by(8);
             for x in dashes {
                 root.draw(&PathElement::new(vec![(x, y(volts)), (x + 4, y(volts))], FAINT))?;
             }
-            style::write(
-                root,
-                &quantity(volts, "V"),
-                (LEFT - 10, y(volts)),
-                &style::words(11, FAINT, HPos::Right),
-            )?;
+            style::write(root, &label, (LEFT - 10, y(volts)), &style::words(11, FAINT, HPos::Right))?;
         }
         let line: Vec<(i32, i32)> = self.points.iter().map(|&(t, v)| (self.x(t), y(v))).collect();
         root.draw(&PathElement::new(thinned(line), WAVE.stroke_width(2)))?;
         let text = format!("peak to peak {}, mean {}", quantity(ripple, "V"), quantity(self.level.mean, "V"));
         style::write(root, &text, (WIDTH as i32 - RIGHT, top - 9), &style::words(11, INK, HPos::Right))
+    }
+
+    /// Both levels with as many decimals as tell them apart; one where they are one.
+    fn labels(&self) -> Vec<(f64, String)> {
+        let (low, high) = (self.level.min, self.level.max);
+        let largest = high.abs().max(low.abs());
+        if high - low <= 1e-9 * largest {
+            return vec![(high, quantity(high, "V"))];
+        }
+        let short = [quantity(low, "V"), quantity(high, "V")];
+        if short[0] != short[1] {
+            return vec![(low, short[0].clone()), (high, short[1].clone())];
+        }
+        // one decimal more than the distance needs
+        let decimals = (1.0 - (high - low).log10().floor()).clamp(0.0, 12.0) as usize;
+        [low, high].map(|volts| (volts, format!("{volts:.decimals$} V"))).to_vec()
     }
 
     fn limits(&self) -> (f64, f64) {

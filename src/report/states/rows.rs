@@ -9,6 +9,8 @@ use crate::operating::{DiodeResult, Drop, Interval, Quantity, State, Trust};
 
 /// A number below this share of the largest of its kind is rounding, not an answer.
 const ROUNDING: f64 = 1e-12;
+/// The least current by the exponential law that is told as a figure, amperes.
+const LEAST_REFINED: f64 = 1e-12;
 
 /// One diode over all sets in which it is in one state.
 struct Row<'a> {
@@ -153,8 +155,7 @@ impl Row<'_> {
             known(|v| v.scale.1, |d| d.current, "A"),
         ];
         if refined {
-            let of = |d: &DiodeResult| d.refined.map_or(Quantity::Unknown, |r| Quantity::Known(r.current));
-            cells.push(span_cell(self.results.iter().map(|(_, d)| of(d)), "A"));
+            cells.push(refined_cell(self.results.iter().filter_map(|(_, d)| d.refined).map(|r| r.current)));
         }
         cells.extend([
             known(|v| v.scale.0, |d| d.voltage, "V"),
@@ -220,6 +221,17 @@ fn span_cell(values: impl Iterator<Item = Quantity>, unit: &str) -> Cell {
         (_, true) => Cell::inked(format!("open: {}", interval(low, high, unit)), Some(Ink::Warning)),
         _ => between(figure(low, unit), figure(high, unit)),
     }
+}
+
+/// Currents by the exponential law. Beneath a picoampere it tells nothing that a board would show: there surfaces leak
+/// more.
+fn refined_cell(currents: impl Iterator<Item = f64>) -> Cell {
+    let told: Vec<f64> = currents.collect();
+    if !told.is_empty() && told.iter().all(|i| i.abs() < LEAST_REFINED) && told.iter().any(|i| *i != 0.0) {
+        return Figure { number: "< 1".into(), unit: "pA".into() }.into();
+    }
+    let settled = |i: f64| if i.abs() < LEAST_REFINED { 0.0 } else { i };
+    span_cell(told.into_iter().map(|i| Quantity::Known(settled(i))), "A")
 }
 
 /// `4.10 … 8.30` `mA`
