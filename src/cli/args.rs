@@ -3,8 +3,9 @@
 use super::settings::Found;
 use clap::builder::styling::{AnsiColor, Style, Styles};
 use clap::{Args as Group, ColorChoice, Parser, Subcommand, ValueEnum};
+use kneewise::analysis::Analysis;
 use kneewise::config::Options;
-use kneewise::finding::Severity;
+use kneewise::finding::{Finding, Severity};
 use std::path::PathBuf;
 
 const STYLES: Styles = Styles::styled()
@@ -55,8 +56,11 @@ Examples:
     #[command(after_help = "\
 Examples:
   kneewise annotate charger.net             shows it, changes nothing
-  kneewise annotate charger.net --write     puts the marks into the file
-  kneewise annotate *.net --verify          fails when a mark is out of date
+  kneewise annotate charger.net --write     puts the marks into the file, and into what it includes
+  kneewise annotate boards/ --verify        fails when a mark is out of date
+
+A file that several netlists include gets one mark a diode for all that are named, so name them all, \
+or their directory.
 
 Exit code: 0 done, 1 marks are out of date (--verify), 2 the job could not be done.")]
     Annotate(Annotate),
@@ -66,7 +70,8 @@ Exit code: 0 done, 1 marks are out of date (--verify), 2 the job could not be do
 Examples:
   kneewise compare old/charger.net charger.net
   kneewise compare main/boards boards --format markdown
-It also takes the seven arguments with which version control calls an external comparison; then the
+
+It also takes the seven arguments with which version control calls an external comparison; then the \
 exit code is 0 whatever differs.")]
     Compare(Compare),
     /// List the rules, or tell one in full with its examples
@@ -102,7 +107,7 @@ pub struct Check {
 
 #[derive(Debug, Group)]
 pub struct Annotate {
-    /// Netlists; several with --write or --verify only; `-` is standard input
+    /// Netlists or directories; several with --write or --verify only; `-` is standard input
     #[arg(required = true, value_name = "FILE")]
     pub files: Vec<PathBuf>,
     /// Put the marks into the files themselves
@@ -215,6 +220,16 @@ pub struct CircuitOptions {
 }
 
 impl CircuitOptions {
+    /// The finding that says what `--set` asks for and the circuit does not have, for commands that list no findings.
+    pub fn not_set<'a>(&self, analysis: &'a Analysis) -> Option<&'a str> {
+        let is_ours = |f: &&Finding| {
+            f.rule == "unknown-name"
+                && f.severity == Severity::Error
+                && self.set.iter().any(|(name, _)| f.subjects.contains(name))
+        };
+        analysis.findings.iter().find(is_ours).map(|f| f.message.as_str())
+    }
+
     /// What the analysis is to do with a file for which these settings hold.
     pub fn options(&self, found: Option<&Found>) -> Options {
         let mut include_dirs = self.include_dir.clone();

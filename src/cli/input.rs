@@ -2,6 +2,7 @@
 
 use super::settings::Shelf;
 use kneewise::text::{Disk, LoadProblem, Loader, bounded, trouble};
+use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -9,7 +10,7 @@ use std::sync::Arc;
 const ENDINGS: [&str; 3] = ["net", "cir", "ckt"];
 
 /// Whether a path means standard input.
-fn is_standard_input(path: &Path) -> bool {
+pub fn is_standard_input(path: &Path) -> bool {
     path == Path::new("-")
 }
 
@@ -20,12 +21,24 @@ pub struct Input {
     /// Standard input, which can be read once only.
     standard: Option<Arc<Vec<u8>>>,
     held: Vec<(PathBuf, Vec<u8>)>,
+    /// What was read, by resolved path, where it is to be kept.
+    kept: Option<BTreeMap<PathBuf, Vec<u8>>>,
 }
 
 impl Input {
     /// With what stands on standard input, where it was read already.
     pub fn with(standard: Option<Arc<Vec<u8>>>) -> Self {
         Input { standard, ..Input::default() }
+    }
+
+    /// Reads every file once only, and keeps what it held then.
+    pub fn keeping() -> Self {
+        Input { kept: Some(BTreeMap::new()), ..Input::default() }
+    }
+
+    /// What the file at a resolved path held when it was read.
+    pub fn kept(&self, path: &Path) -> Option<&[u8]> {
+        self.kept.as_ref()?.get(path).map(Vec::as_slice)
     }
 
     /// What stands on standard input, where one of the jobs wants it and it can be read.
@@ -54,10 +67,21 @@ impl Loader for Input {
             return Ok(bytes.clone());
         }
         if !is_standard_input(path) {
-            return self.disk.load(path);
+            let Some(kept) = &mut self.kept else { return self.disk.load(path) };
+            let resolved = self.disk.resolve(path);
+            if let Some(bytes) = kept.get(&resolved) {
+                return Ok(bytes.clone());
+            }
+            let bytes = self.disk.load(path)?;
+            kept.insert(resolved, bytes.clone());
+            return Ok(bytes);
         }
         if self.standard.is_none() {
             self.standard = Some(read_standard()?);
+        }
+        let resolved = self.resolve(path);
+        if let (Some(kept), Some(bytes)) = (&mut self.kept, self.standard.as_deref()) {
+            kept.insert(resolved, bytes.clone());
         }
         Ok(self.standard.as_deref().cloned().unwrap_or_default())
     }

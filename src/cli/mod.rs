@@ -22,7 +22,7 @@ use output::Console;
 use std::process::ExitCode;
 
 /// How a run ends.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 enum End {
     /// Done, nothing at or above `--fail-on`.
     Clean,

@@ -21,9 +21,9 @@ pub fn marks(page: &mut Page, name: &str, annotated: &Annotated) {
         }
     }
     if !annotated.changes.is_empty() {
-        let verb = if annotated.changes.len() == 1 { "is" } else { "are" };
+        let (verb, them) = if annotated.changes.len() == 1 { ("is", "it") } else { ("are", "them") };
         let text = format!(
-            "{}: {} {verb} out of date; `kneewise annotate --write` puts them right",
+            "{}: {} {verb} out of date; `kneewise annotate --write` puts {them} right",
             clean(name),
             counted(annotated.changes.len(), "mark"),
         );

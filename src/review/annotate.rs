@@ -1,12 +1,13 @@
 //! Puts marks behind the diodes of a file, and takes them away. Changes nothing else: the edits are made in the bytes
-//! that were read, whatever their encoding, line ends and blanks.
+//! that were read, whatever their encoding, line ends and blanks. A file that several circuits include gets one mark a
+//! diode, which speaks for all of them.
 
 use super::figures::agree;
-use super::mark::marks;
+use super::mark::{Life, lives, words};
 use super::wording::is_mark;
 use crate::analysis::Analysis;
 use crate::syntax::{Line, LineKind, Token, lines, tokens};
-use crate::text::{Encoding, FileId, Span, decode, encode, original_offsets};
+use crate::text::{Encoding, SourceFile, Sources, Span, decode, encode, original_offsets};
 use std::collections::BTreeMap;
 use std::ops::Range;
 
@@ -38,39 +39,88 @@ pub struct Annotated {
     pub changes: Vec<Change>,
     /// Diode lines of this file.
     pub marks: usize,
-    /// Diode lines of included files, which are not marked here, by file.
-    pub elsewhere: BTreeMap<String, usize>,
 }
 
-/// The root file of `analysis` with a mark behind every diode; `original` are the bytes it was read from. A mark that
-/// says the same, but for noise in the last digit, stays as it is; one behind anything but a diode goes.
-pub fn annotate(analysis: &Analysis, original: &[u8]) -> Annotated {
-    let root = FileId(0);
-    let mut wanted = BTreeMap::new();
-    let mut elsewhere = BTreeMap::new();
-    for (statement, words) in marks(analysis) {
-        if statement.file == root {
-            wanted.insert(statement.start, words);
-        } else {
-            *elsewhere.entry(analysis.sources.name(statement.file).to_owned()).or_insert(0) += 1;
+/// What becomes of the diodes that stand in one file, as one circuit sees it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct FileMarks {
+    /// The file, as the circuit names it.
+    pub name: String,
+    /// Lives of the diodes by the first byte of their statement.
+    lives: BTreeMap<u32, Vec<Life>>,
+}
+
+impl FileMarks {
+    /// Of a file of which nothing is known but its name.
+    pub fn none(name: String) -> Self {
+        FileMarks { name, lives: BTreeMap::new() }
+    }
+
+    /// Diode lines.
+    pub fn count(&self) -> usize {
+        self.lives.len()
+    }
+}
+
+/// What a file is to the netlists of a run.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Role {
+    /// A netlist: its first line is the title, and a mark behind anything but a diode goes.
+    Root,
+    /// Included: it has no title, and what this run does not reach (a section, a subcircuit that nobody here uses) keeps
+    /// its marks, since other netlists may reach it.
+    Part,
+}
+
+/// What the circuit of `analysis` says of each of its files; the first is the root.
+pub fn file_marks(analysis: &Analysis) -> Vec<FileMarks> {
+    let named = |file: &SourceFile| FileMarks { name: file.name.clone(), lives: BTreeMap::new() };
+    let mut files: Vec<FileMarks> = analysis.sources.files().map(|(_, file)| named(file)).collect();
+    for (statement, lives) in lives(analysis) {
+        if let Some(file) = files.get_mut(statement.file.0 as usize) {
+            file.lives.insert(statement.start, lives);
         }
     }
-    let Some(file) = analysis.sources.get(root) else {
-        return Annotated { bytes: original.to_vec(), changes: Vec::new(), marks: 0, elsewhere };
-    };
-    let mut changes = changes(&file.text, &wanted);
-    for change in &mut changes {
-        change.line =
-            analysis.sources.positions(Span::new(root, change.range.start, change.range.end)).0.line;
-    }
-    let bytes = apply(original, file.encoding, &changes);
-    Annotated { bytes, changes, marks: wanted.len(), elsewhere }
+    files
 }
 
-/// The file without its marks.
+/// The root file of `analysis` with a mark behind every diode; `original` are the bytes it was read from.
+pub fn annotate(analysis: &Analysis, original: &[u8]) -> Annotated {
+    let files = file_marks(analysis);
+    annotate_file(original, Role::Root, &files.iter().take(1).collect::<Vec<_>>())
+}
+
+/// A file with a mark behind every diode of it that one of the circuits has; `original` are its bytes, `seen` what each
+/// circuit says of it. A mark that says the same, but for noise in the last digit, stays as it is.
+pub fn annotate_file(original: &[u8], role: Role, seen: &[&FileMarks]) -> Annotated {
+    let mut together: BTreeMap<u32, Vec<Life>> = BTreeMap::new();
+    for (&statement, lives) in seen.iter().flat_map(|marks| &marks.lives) {
+        together.entry(statement).or_default().extend(lives.iter().cloned());
+    }
+    let wanted: BTreeMap<u32, String> = together.iter().map(|(at, lives)| (*at, words(lives))).collect();
+    let mut sources = Sources::default();
+    let file = sources.add("", original);
+    let Some(decoded) = sources.get(file) else {
+        return Annotated { bytes: original.to_vec(), changes: Vec::new(), marks: 0 };
+    };
+    let mut changes = changes(&decoded.text, role, &wanted);
+    for change in &mut changes {
+        change.line = sources.positions(Span::new(file, change.range.start, change.range.end)).0.line;
+    }
+    let bytes = apply(original, decoded.encoding, &changes);
+    Annotated { bytes, changes, marks: wanted.len() }
+}
+
+/// The netlist without its marks.
 pub fn strip(original: &[u8]) -> Vec<u8> {
     let (text, encoding) = decode(original);
-    apply(original, encoding, &changes(&text, &BTreeMap::new()))
+    apply(original, encoding, &every_mark_gone(&text, Role::Root))
+}
+
+/// A file that is included without its marks.
+pub fn strip_part(original: &[u8]) -> Vec<u8> {
+    let (text, encoding) = decode(original);
+    apply(original, encoding, &every_mark_gone(&text, Role::Part))
 }
 
 /// Makes the edits in the bytes of the file.
@@ -89,12 +139,27 @@ fn apply(original: &[u8], encoding: Encoding, changes: &[Change]) -> Vec<u8> {
 }
 
 /// The edits of a text, in order. `wanted` holds the marks by the first byte of their statement.
-fn changes(text: &str, wanted: &BTreeMap<u32, String>) -> Vec<Change> {
+fn changes(text: &str, role: Role, wanted: &BTreeMap<u32, String>) -> Vec<Change> {
+    let is_left_alone = |line: &Line| {
+        let letter = text.as_bytes().get(line.start as usize);
+        role == Role::Part && matches!(letter, Some(b'd' | b'D')) && !wanted.contains_key(&line.start)
+    };
+    edits(text, role, |line| (!is_left_alone(line)).then(|| wanted.get(&line.start)))
+}
+
+fn every_mark_gone(text: &str, role: Role) -> Vec<Change> {
+    edits(text, role, |_| Some(None))
+}
+
+/// The edits of the statements to which `wanted` gives a mark or none; what it knows nothing of stays.
+fn edits<'w>(text: &str, role: Role, wanted: impl Fn(&Line) -> Option<Option<&'w String>>) -> Vec<Change> {
     let (mut changes, mut buffer) = (Vec::new(), Vec::new());
-    for line in lines(text, true).lines.iter().filter(|l| l.kind == LineKind::Element) {
+    let cut = lines(text, role == Role::Root);
+    for line in cut.lines.iter().filter(|l| l.kind == LineKind::Element) {
+        let Some(mark) = wanted(line) else { continue };
         // a statement that cannot be cut up has no end to put a mark at
         if tokens(text, line.start, line.end, &mut buffer).is_ok() {
-            statement(text, line, &buffer, wanted.get(&line.start), &mut changes);
+            statement(text, line, &buffer, mark, &mut changes);
         }
     }
     changes
@@ -178,6 +243,41 @@ mod tests {
         let options = Options { states: true, swing: true, ..Options::default() };
         let analysis = analyse(&mut Memory::with("a.net", bytes), Path::new("a.net"), &options).unwrap();
         annotate(&analysis, bytes)
+    }
+
+    /// What `root` says of the file that it includes.
+    fn part_of(root: &str, part: &str) -> FileMarks {
+        let mut files = Memory::with("a.net", root);
+        files.insert("part.inc", part);
+        let options = Options { states: true, ..Options::default() };
+        let analysis = analyse(&mut files, Path::new("a.net"), &options).unwrap();
+        file_marks(&analysis).pop().unwrap()
+    }
+
+    #[test]
+    fn a_file_that_several_circuits_include_speaks_for_all_of_them() {
+        let part = "D1 a 0 DX ;@ open\n.subckt S p\nD2 p 0 DX ;@ blocking\nR2 p 0 1k ;@ blocking\n.ends\n";
+        let root = |volts: &str| {
+            format!("t\nV1 in 0 {volts}\nR1 in a 1k\n*@ drop DX 0.7\n.model DX D\n.include part.inc\n")
+        };
+        let (high, low) = (part_of(&root("5"), part), part_of(&root("-5"), part));
+        assert_eq!((high.name.as_str(), high.count()), ("part.inc", 1));
+        let text = |seen: &[&FileMarks]| {
+            String::from_utf8(annotate_file(part.as_bytes(), Role::Part, seen).bytes).unwrap()
+        };
+        assert!(text(&[&high]).starts_with(&format!("D1 a 0 DX {MARK}\n")));
+        let both = text(&[&high, &low]);
+        assert!(
+            both.starts_with("D1 a 0 DX ;@ in 2 instances: 1 conducting 4.30mA | 1 blocking\n"),
+            "{both}"
+        );
+        // nobody here uses the subcircuit, but somebody else may
+        assert!(both.contains("D2 p 0 DX ;@ blocking\n"), "{both}");
+        assert!(both.contains("R2 p 0 1k\n"), "{both}");
+        assert_eq!(
+            strip_part(both.as_bytes()),
+            part.replace(" ;@ open", "").replace(" ;@ blocking", "").as_bytes()
+        );
     }
 
     fn text_of(bytes: &[u8]) -> String {

@@ -16,8 +16,24 @@ const MOST_CONDITIONS: usize = 3;
 /// A number below this share of the largest of its kind is rounding, not an answer.
 const ROUNDING: f64 = 1e-12;
 
+/// What one diode goes through: its states in the order in which the conditions show them.
+pub(super) type Life = Vec<Stay>;
+
 /// The mark of every diode statement, without its `;@`, by the statement's place; those of included files too.
 pub fn marks(analysis: &Analysis) -> BTreeMap<Span, String> {
+    lives(analysis).into_iter().map(|(statement, lives)| (statement, words(&lives))).collect()
+}
+
+/// What a mark says of all diodes of one statement.
+pub(super) fn words(lives: &[Life]) -> String {
+    match lives {
+        [only] => one(only),
+        many => summary(many),
+    }
+}
+
+/// The lives of every diode statement, one for each instance, by the statement's place.
+pub(super) fn lives(analysis: &Analysis) -> BTreeMap<Span, Vec<Life>> {
     let mut instances: BTreeMap<Span, Vec<ElementId>> = BTreeMap::new();
     for (id, element) in analysis.circuit.elements() {
         if matches!(element.behaviour, Behaviour::Diode { .. }) {
@@ -27,27 +43,21 @@ pub fn marks(analysis: &Analysis) -> BTreeMap<Span, String> {
     let Some(operating) = &analysis.operating else { return BTreeMap::new() };
     let scales: Vec<Vec<(f64, f64)>> =
         operating.cases.iter().map(|case| case.solutions.iter().map(scale).collect()).collect();
-    let words = |ids: Vec<ElementId>| {
-        let life = |&id: &ElementId| {
-            let mut stays = stays(operating, &scales, id);
-            if let Some(swing) = &analysis.swing
-                && operating.left_to_time.binary_search(&id).is_ok()
-            {
-                over_time(swing, id, &mut stays);
-            }
-            stays
-        };
-        let lives: Vec<Vec<Stay>> = ids.iter().map(life).collect();
-        match lives.as_slice() {
-            [only] => one(only),
-            many => summary(many),
+    let life = |&id: &ElementId| {
+        let mut stays = stays(operating, &scales, id);
+        if let Some(swing) = &analysis.swing
+            && operating.left_to_time.binary_search(&id).is_ok()
+        {
+            over_time(swing, id, &mut stays);
         }
+        stays
     };
-    instances.into_iter().map(|(statement, ids)| (statement, words(ids))).collect()
+    instances.into_iter().map(|(statement, ids)| (statement, ids.iter().map(life).collect())).collect()
 }
 
 /// One state and the conditions in which it holds.
-struct Stay {
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Stay {
     state: State,
     conditions: Vec<String>,
     current: Option<(f64, f64)>,
@@ -187,7 +197,7 @@ impl Stay {
 }
 
 /// `in 12 instances: conducting 4.31mA..9.10mA 0.652V..0.660V`, `in 12 instances: 8 conducting 4.31mA | 4 blocking`
-fn summary(lives: &[Vec<Stay>]) -> String {
+fn summary(lives: &[Life]) -> String {
     let mut kinds: Vec<(String, usize, Vec<Stay>)> = Vec::new();
     for life in lives {
         let states: Vec<&str> = life.iter().map(|s| s.state.word()).collect();

@@ -10,7 +10,9 @@ mod record;
 mod save;
 mod wording;
 
-pub use annotate::{Annotated, Change, annotate, strip};
+pub use annotate::{
+    Annotated, Change, FileMarks, Role, annotate, annotate_file, file_marks, strip, strip_part,
+};
 pub use baseline::Baseline;
 pub use compare::{
     Comparison, FindingsChange, Move, Revision, StateChange, TrustChange, VerdictChange, WiringChange,

@@ -204,7 +204,7 @@ fn troubles_with_files_are_told_in_plain_words() {
         (&["check", "gone.net"][..], "gone.net: there is no such file"),
         (&["states", "."], ".: it is a directory"),
         (&["swing", "gone.net"], "gone.net: there is no such file"),
-        (&["annotate", "."], ".: it is a directory"),
+        (&["annotate", "."], ".: it is a directory, which can only be written or verified"),
         (&["compare", "a.net", "gone.net"], "gone.net: there is no such file"),
         (&["check", "a.net/b.net"], "a.net/b.net: a part of its path is a file and no directory"),
         (&["check", "a.net", "--config", "gone.toml"], "gone.toml: there is no such file"),
@@ -260,7 +260,10 @@ fn compare_asks_for_both_sides() {
 fn nothing_to_show_is_said_and_not_announced() {
     let library = "Parts of the board\n.model DX D\n.subckt A p n\nR1 p n 1k\n.ends\n";
     let run = feed(&["swing", "-"], library);
-    assert_eq!(run.out, "No source moves, so nothing happens over time; there is no diode whose current could move.\n\n");
+    assert_eq!(
+        run.out,
+        "No source moves, so nothing happens over time; there is no diode whose current could move.\n\n"
+    );
     let run = feed(&["check", "-"], "");
     assert!(run.out.contains("this file is empty") && !run.out.contains("defined here"), "{}", run.out);
 }

@@ -71,15 +71,101 @@ fn what_cannot_be_done_is_wrong_usage() {
     }
 }
 
+/// A board with a part in a file of its own, and a second board that includes it the other way round.
+fn boards(name: &str) -> PathBuf {
+    let folder = scratch(&format!("marks-{name}"));
+    std::fs::create_dir_all(folder.join("parts")).unwrap();
+    std::fs::create_dir_all(folder.join(".git")).unwrap();
+    std::fs::write(folder.join("parts/more.inc"), "D2 0 a DX\n").unwrap();
+    let include = ".include parts/more.inc\r\n";
+    std::fs::write(folder.join("a.net"), format!("{BOARD}\r\n{include}")).unwrap();
+    std::fs::write(folder.join("b.net"), format!("{}\r\n{include}", BOARD.replace("0 5", "0 -5"))).unwrap();
+    folder
+}
+
+fn more(folder: &Path) -> String {
+    std::fs::read_to_string(folder.join("parts/more.inc")).unwrap()
+}
+
 #[test]
-fn included_diodes_are_named_and_their_file_stays() {
-    let (folder, file) = board("included");
-    std::fs::write(folder.join("more.inc"), "D2 0 a DX\n").unwrap();
-    std::fs::write(&file, format!("{BOARD}\r\n.include more.inc\r\n")).unwrap();
+fn included_diodes_are_marked_too() {
+    let folder = boards("included");
+    let shown = run_in(&folder, &["annotate", "a.net"]);
+    assert!(
+        shown.err.contains("1 diode in parts/more.inc, which it includes; --write marks"),
+        "{}",
+        shown.err
+    );
+    assert_eq!(shown.out, format!("{}\r\n.include parts/more.inc\r\n", marked()));
+    let verified = run_in(&folder, &["annotate", "--verify", "a.net"]);
+    assert_eq!(verified.code, 1);
+    assert!(verified.out.contains("parts/more.inc:1  D2\n"), "{}", verified.out);
+    let written = run_in(&folder, &["annotate", "--write", "a.net"]);
+    assert_eq!((written.code, written.err.as_str()), (0, ""));
+    assert_eq!(more(&folder), "D2 0 a DX ;@ blocking -0.700V\n");
+    assert_eq!(std::fs::read_to_string(folder.join("a.net")).unwrap(), shown.out);
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "a.net"]).code, 0);
+    // the mark of one netlist is not that of two
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "b.net"]).code, 1);
+    assert_eq!(run_in(&folder, &["annotate", "--strip", "--write", "a.net"]).code, 0);
+    assert_eq!(more(&folder), "D2 0 a DX\n");
+}
+
+#[test]
+fn a_part_of_several_netlists_is_written_once_and_speaks_for_all() {
+    let folder = boards("shared");
+    assert_eq!(run_in(&folder, &["annotate", "--write", "a.net", "b.net"]).code, 0);
+    let both = "D2 0 a DX ;@ in 2 instances: 1 blocking | 1 conducting 4.30mA\n";
+    assert_eq!(more(&folder), both);
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "."]).code, 0);
+    assert_eq!(run_in(&folder, &["annotate", "--verify", "a.net"]).code, 1);
+    // found in a directory, what another netlist includes is a part of it
+    std::fs::rename(folder.join("parts/more.inc"), folder.join("parts/more.net")).unwrap();
+    for board in ["a.net", "b.net"] {
+        let text = std::fs::read_to_string(folder.join(board)).unwrap().replace("more.inc", "more.net");
+        std::fs::write(folder.join(board), text).unwrap();
+    }
+    let run = run_in(&folder, &["annotate", "--verify", "."]);
+    assert_eq!((run.code, run.out.as_str()), (0, ""));
+    assert_eq!(run_in(&folder, &["annotate", "--strip", "--write", "."]).code, 0);
+    assert_eq!(std::fs::read_to_string(folder.join("parts/more.net")).unwrap(), "D2 0 a DX\n");
+    assert_eq!(names(&folder.join("parts")), ["more.net"]);
+}
+
+#[test]
+fn a_part_from_outside_of_the_project_stays_as_it_is() {
+    let folder = boards("outside");
+    let outside = scratch("marks-outside-library");
+    std::fs::write(outside.join("far.inc"), "D3 a 0 DX\n").unwrap();
+    let text = std::fs::read_to_string(folder.join("a.net")).unwrap();
+    std::fs::write(folder.join("a.net"), format!("{text}.include far.inc\n")).unwrap();
+    let run = run_in(&folder, &["annotate", "--write", "a.net", "--include-dir", outside.to_str().unwrap()]);
+    assert_eq!(run.code, 0, "{}", run.err);
+    assert!(run.err.contains("from outside of its project, has no mark"), "{}", run.err);
+    assert_eq!(std::fs::read_to_string(outside.join("far.inc")).unwrap(), "D3 a 0 DX\n");
+    assert!(more(&folder).contains(";@"));
+}
+
+#[test]
+fn a_part_that_cannot_be_written_is_told_and_hides_no_other() {
+    let folder = boards("part-refused");
+    let part = folder.join("parts/more.inc");
+    let mut permissions = std::fs::metadata(&part).unwrap().permissions();
+    permissions.set_readonly(true);
+    std::fs::set_permissions(&part, permissions).unwrap();
     let run = run_in(&folder, &["annotate", "--write", "a.net"]);
-    assert!(run.err.contains("1 diode in more.inc"), "{}", run.err);
-    assert_eq!(std::fs::read_to_string(folder.join("more.inc")).unwrap(), "D2 0 a DX\n");
-    assert_eq!(std::fs::read_to_string(&file).unwrap(), format!("{}\r\n.include more.inc\r\n", marked()));
+    assert_eq!(run.code, 2);
+    assert!(run.err.contains("parts/more.inc stays as it was: it is read-only"), "{}", run.err);
+    assert_eq!(more(&folder), "D2 0 a DX\n");
+    assert!(std::fs::read_to_string(folder.join("a.net")).unwrap().contains(";@ conducting"));
+}
+
+#[test]
+fn a_directory_is_only_written_or_verified() {
+    let folder = boards("directory");
+    let run = run_in(&folder, &["annotate", "."]);
+    assert_eq!((run.code, run.out.as_str()), (2, ""));
+    assert!(run.err.contains("add --write or --verify"), "{}", run.err);
 }
 
 #[cfg(unix)]
