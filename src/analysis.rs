@@ -32,6 +32,19 @@ pub struct Analysis {
     pub skipped: Vec<Skipped>,
 }
 
+impl Analysis {
+    /// The finding about a source that the options set and the circuit does not have: whoever lists no findings must tell
+    /// this one, since the figures are not those that were asked for.
+    pub fn not_set(&self, options: &Options) -> Option<&Finding> {
+        let is_ours = |f: &&Finding| {
+            f.rule == "unknown-name"
+                && f.severity == finding::Severity::Error
+                && options.set.iter().any(|(name, _)| f.subjects.contains(name))
+        };
+        self.findings.iter().find(is_ours)
+    }
+}
+
 /// Analyses the file at `root`.
 ///
 /// # Errors

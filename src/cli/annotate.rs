@@ -118,8 +118,8 @@ fn circuit(command: &Annotate, shelf: &mut Shelf, input: &mut Input, job: &Job) 
         reading.sources.files().map(|(_, file)| FileMarks::none(file.name.clone())).collect()
     } else {
         let analysis = analyse(input, &job.path, &options).map_err(|e| with_name(&e.0))?;
-        if let Some(problem) = command.circuit.not_set(&analysis) {
-            return Err(with_name(problem));
+        if let Some(finding) = analysis.not_set(&options) {
+            return Err(with_name(&finding.message));
         }
         review::file_marks(&analysis)
     };

@@ -3,9 +3,8 @@
 use super::settings::Found;
 use clap::builder::styling::{AnsiColor, Style, Styles};
 use clap::{Args as Group, ColorChoice, Parser, Subcommand, ValueEnum};
-use kneewise::analysis::Analysis;
 use kneewise::config::Options;
-use kneewise::finding::{Finding, Severity};
+use kneewise::finding::Severity;
 use std::path::PathBuf;
 
 const STYLES: Styles = Styles::styled()
@@ -220,16 +219,6 @@ pub struct CircuitOptions {
 }
 
 impl CircuitOptions {
-    /// The finding that says what `--set` asks for and the circuit does not have, for commands that list no findings.
-    pub fn not_set<'a>(&self, analysis: &'a Analysis) -> Option<&'a str> {
-        let is_ours = |f: &&Finding| {
-            f.rule == "unknown-name"
-                && f.severity == Severity::Error
-                && self.set.iter().any(|(name, _)| f.subjects.contains(name))
-        };
-        analysis.findings.iter().find(is_ours).map(|f| f.message.as_str())
-    }
-
     /// What the analysis is to do with a file for which these settings hold.
     pub fn options(&self, found: Option<&Found>) -> Options {
         let mut include_dirs = self.include_dir.clone();

@@ -152,7 +152,14 @@ fn one(twin: &Twin, options: &Options) -> Result<Compared, String> {
         }
         (Some(_), None) | (None, None) => Fate::Gone,
     };
-    Ok(Compared { file, fate })
+    let shares_parts = twin.is_borrowed && includes(&fate);
+    Ok(Compared { file, fate, shares_parts })
+}
+
+/// Whether both sides are there, and one of them includes other files.
+fn includes(fate: &Fate) -> bool {
+    let Fate::Both(comparison) = fate else { return false };
+    [&comparison.findings.new, &comparison.findings.gone].iter().any(|r| r.sources.files().count() > 1)
 }
 
 /// Where a side is read from, and under which name.

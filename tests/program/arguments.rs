@@ -233,6 +233,13 @@ fn a_source_that_is_not_there_is_named_where_the_states_are_shown() {
     let run = feed(&["annotate", "-", "--set", "V2=3"], CLEAN);
     assert_eq!((run.code, run.out.as_str()), (2, ""), "{}", run.err);
     assert!(run.err.contains("`--set V2=…` names no source"), "{}", run.err);
+    let folder = scratch("set-nowhere");
+    for name in ["a.net", "b.net"] {
+        std::fs::write(folder.join(name), CLEAN).unwrap();
+    }
+    let run = run_in(&folder, &["compare", "a.net", "b.net", "--set", "V2=3"]);
+    assert_eq!((run.code, run.out.as_str()), (2, ""), "{}", run.err);
+    assert!(run.err.contains("`--set V2=…` names no source"), "{}", run.err);
 }
 
 #[test]

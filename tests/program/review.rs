@@ -171,6 +171,14 @@ fn version_control_calls_the_comparison() {
     };
     assert_eq!(run.code, 0, "{}", run.err);
     screen("git-diff", &["compare", "(called by git diff)"], &run);
+    assert!(!run.out.contains("Files that it includes"), "{}", run.out);
+
+    // what it includes is read as it is now, and that is said
+    std::fs::write(folder.join("boards/part.inc"), "R9 in 0 1k\n").unwrap();
+    let board = format!("{}.include part.inc\n.end\n", BOARD.replace(".end\n", ""));
+    std::fs::write(folder.join("boards/charger.net"), board).unwrap();
+    let shown = String::from_utf8(git(&["diff", "boards/charger.net"]).unwrap().stdout).unwrap();
+    assert!(shown.contains("Files that it includes were read as they are now"), "{shown}");
 }
 
 #[test]

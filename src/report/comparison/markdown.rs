@@ -3,7 +3,7 @@
 use super::super::markdown::{code, escaped, prose};
 use super::super::summary::counted;
 use super::rows::{conditions, flips, moves, trust, verdicts, wiring, worst_first};
-use super::{Compared, Fate, MOST};
+use super::{Compared, Fate, MOST, SHARED};
 use crate::finding::quantity;
 use crate::review::{Comparison, Record};
 use std::fmt::Write as _;
@@ -11,12 +11,15 @@ use std::fmt::Write as _;
 /// What differs in all files.
 pub fn markdown(files: &[Compared], share: f64) -> String {
     let mut out = String::from("### kneewise: what this change does\n");
-    for compared in files.iter().filter(|c| c.differs()) {
+    for compared in files.iter().filter(|c| c.differs() || c.shares_parts) {
         let file = code(&compared.file);
         match &compared.fate {
             Fate::Both(comparison) => {
                 let _ = write!(out, "\n#### {file}\n");
                 both(&mut out, comparison, share);
+                if compared.shares_parts {
+                    let _ = write!(out, "\n{}\n", prose(SHARED));
+                }
             }
             Fate::New(record) => {
                 let scope = [counted(record.elements, "element"), counted(record.diodes, "diode")];

@@ -18,7 +18,14 @@ pub struct Compared {
     pub file: String,
     /// Its fate.
     pub fate: Fate,
+    /// Both sides took what they include from one place, so that a change there does not show.
+    pub shares_parts: bool,
 }
+
+/// What is said of files that share their parts.
+const SHARED: &str = "Files that it includes were read as they are now, for both sides: version control hands over this file \
+    alone, and does not say which revision it is of. A change in them does not show here; `kneewise compare` on \
+    two directories shows it.";
 
 /// Whether a file is in both revisions.
 #[derive(Debug)]

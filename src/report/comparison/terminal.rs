@@ -5,7 +5,7 @@ use super::super::summary::counted;
 use super::super::table::{self, Cell};
 use super::super::terminal::ink;
 use super::rows::{conditions, flips, moves, trust, verdicts, wiring, worst_first};
-use super::{Compared, Fate, MOST};
+use super::{Compared, Fate, MOST, SHARED};
 use crate::finding::{Finding, figure};
 use crate::review::{Comparison, Record};
 
@@ -14,12 +14,17 @@ const WIDTH: usize = 96;
 
 /// Writes what differs in all files, and a closing line. `share` is what a quantity must move by to be told.
 pub fn comparison(page: &mut Page, files: &[Compared], share: f64) {
-    for compared in files.iter().filter(|c| c.differs()) {
+    for compared in files.iter().filter(|c| c.differs() || c.shares_parts) {
         page.ink(Ink::Strong, &clean(&compared.file));
         match &compared.fate {
             Fate::Both(comparison) => {
                 page.end();
                 both(page, comparison, share);
+                if compared.shares_parts {
+                    for line in wrap(SHARED, WIDTH - 2) {
+                        page.plain("  ").ink(Ink::Faint, &line).end();
+                    }
+                }
             }
             Fate::New(record) => {
                 page.plain(" is new: ").plain(&counted(record.elements, "element")).plain(", ");

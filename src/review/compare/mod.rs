@@ -36,7 +36,7 @@ pub struct Revision<'a> {
 /// that the edge of a decade is no news.
 ///
 /// # Errors
-/// Where a root file cannot be had; the words say which.
+/// Where a root file cannot be had, or the options set a source that neither revision has; the words say which.
 pub fn compare(old: Revision<'_>, new: Revision<'_>) -> Result<Comparison, LoadProblem> {
     let named = |path: &Path, problem: LoadProblem| LoadProblem(format!("{}: {}", path.display(), problem.0));
     let before = analyse(old.loader, old.root, old.options).map_err(|e| named(old.root, e))?;
@@ -44,6 +44,9 @@ pub fn compare(old: Revision<'_>, new: Revision<'_>) -> Result<Comparison, LoadP
     let pairs = Pairs::of(&before.circuit, &reading.circuit);
     let options = Options { decades: decades(&before, &reading.circuit, &pairs), ..new.options.clone() };
     let after = analyse(new.loader, new.root, &options).map_err(|e| named(new.root, e))?;
+    if let (Some(_), Some(finding)) = (before.not_set(old.options), after.not_set(new.options)) {
+        return Err(named(new.root, LoadProblem(finding.message.clone())));
+    }
     Ok(differences::between(before, after, &pairs, new.options.thresholds.moved))
 }
 
