@@ -15,16 +15,6 @@ use kneewise::text::Loader;
 use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Path, PathBuf};
 
-pub fn run(console: &mut Console, command: &Annotate) -> End {
-    match annotate(console, command) {
-        Ok(end) => end,
-        Err(problem) => {
-            console.say(&problem);
-            End::Failed
-        }
-    }
-}
-
 /// One netlist of the run, as far as it was read.
 struct Circuit {
     job: Job,
@@ -42,7 +32,7 @@ struct File<'c> {
     seen: Vec<&'c FileMarks>,
 }
 
-fn annotate(console: &mut Console, command: &Annotate) -> Result<End, String> {
+pub fn run(console: &mut Console, command: &Annotate) -> Result<End, String> {
     let mut shelf = Shelf::new(command.circuit.config.as_deref())?;
     let jobs = jobs(console, command, &mut shelf)?;
     let mut input = Input::keeping();
@@ -50,12 +40,9 @@ fn annotate(console: &mut Console, command: &Annotate) -> Result<End, String> {
     let mut circuits = Vec::new();
     for (n, job) in jobs.iter().enumerate() {
         console.progress(n, jobs.len());
-        match circuit(command, &mut shelf, &mut input, job) {
-            Ok(circuit) => circuits.push(circuit),
-            Err(problem) => {
-                console.say(&problem);
-                worst = End::Failed;
-            }
+        match console.told(circuit(command, &mut shelf, &mut input, job)) {
+            Some(circuit) => circuits.push(circuit),
+            None => worst = End::Failed,
         }
     }
     let (files, alone) = files(&circuits);
@@ -66,14 +53,8 @@ fn annotate(console: &mut Console, command: &Annotate) -> Result<End, String> {
         return Ok(show(console, command, &input, &circuits).max(worst));
     }
     for (path, file) in &files {
-        let end = match one(console, command, &input, path, file) {
-            Ok(end) => end,
-            Err(problem) => {
-                console.say(&problem);
-                End::Failed
-            }
-        };
-        worst = worst.max(end);
+        let done = one(console, command, &input, path, file);
+        worst = worst.max(console.told(done).unwrap_or(End::Failed));
     }
     Ok(worst)
 }
@@ -224,7 +205,7 @@ fn one(
         (false, role) => {
             let annotated = review::annotate_file(original, role, &file.seen);
             if command.verify {
-                return verify(console, file.name, &annotated);
+                return Ok(verify(console, file.name, &annotated));
             }
             annotated.bytes
         }
@@ -234,13 +215,9 @@ fn one(
     Ok(End::Clean)
 }
 
-fn verify(console: &mut Console, name: &str, annotated: &Annotated) -> Result<End, String> {
+fn verify(console: &mut Console, name: &str, annotated: &Annotated) -> End {
     let mut page = console.page();
     report::marks(&mut page, name, annotated);
     let written = console.result(page.text());
-    Ok(match (written, annotated.changes.is_empty()) {
-        (false, _) => End::Failed,
-        (true, true) => End::Clean,
-        (true, false) => End::Found,
-    })
+    End::of(written, !annotated.changes.is_empty())
 }

@@ -20,17 +20,7 @@ use std::sync::Arc;
 /// Number of the root file in its own sources.
 const ROOT: FileId = FileId(0);
 
-pub fn run(console: &mut Console, command: &Check) -> End {
-    match check(console, command) {
-        Ok(end) => end,
-        Err(problem) => {
-            console.say(&problem);
-            End::Failed
-        }
-    }
-}
-
-fn check(console: &mut Console, command: &Check) -> Result<End, String> {
+pub fn run(console: &mut Console, command: &Check) -> Result<End, String> {
     let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
     let wanted = wanted(&command.paths, &mut shelf);
     let mut failed = !wanted.problems.is_empty();
@@ -91,11 +81,7 @@ fn check(console: &mut Console, command: &Check) -> Result<End, String> {
     // what the settings say stands before what they are used for
     records.splice(0..0, settings_records);
     failed |= !show(console, command, &records);
-    Ok(match (failed, fails) {
-        (true, _) => End::Failed,
-        (_, true) => End::Found,
-        _ => End::Clean,
-    })
+    Ok(End::of(!failed, fails))
 }
 
 /// Analyses all files at once.

@@ -29,14 +29,14 @@ struct Twin {
     walked: bool,
 }
 
-pub fn run(console: &mut Console, command: &Compare) -> End {
+pub fn run(console: &mut Console, command: &Compare) -> Result<End, String> {
     match compare(console, command) {
-        Ok(end) => end,
-        Err(problem) => {
+        // version control takes a failure for a crash, and shows no other file
+        Err(problem) if command.new.is_none() && is_called() => {
             console.say(&problem);
-            // version control takes a failure for a crash, and shows no other file
-            if command.new.is_none() && is_called() { End::Clean } else { End::Failed }
+            Ok(End::Clean)
         }
+        done => done,
     }
 }
 
@@ -213,12 +213,6 @@ fn show(console: &mut Console, format: CompareFormat, files: &[Compared], share:
             console.result(page.text())
         }
         CompareFormat::Markdown => console.result(&report::comparison_markdown(files, share)),
-        CompareFormat::Json => match report::json::comparison(files) {
-            Ok(text) => console.result(&text),
-            Err(problem) => {
-                console.say(&format!("the comparison could not be written as JSON: {problem}"));
-                false
-            }
-        },
+        CompareFormat::Json => console.document("comparison", report::json::comparison(files)),
     }
 }

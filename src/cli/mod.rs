@@ -32,6 +32,17 @@ enum End {
     Failed,
 }
 
+impl End {
+    /// Of a run whose results were `written`, and that `fails` by what it found.
+    fn of(written: bool, fails: bool) -> Self {
+        match (written, fails) {
+            (false, _) => End::Failed,
+            (true, true) => End::Found,
+            (true, false) => End::Clean,
+        }
+    }
+}
+
 /// Reads the arguments, does what they ask for, and gives the exit code.
 pub fn run() -> ExitCode {
     let args = match Args::try_parse() {
@@ -43,17 +54,17 @@ pub fn run() -> ExitCode {
         }
     };
     let mut console = Console::new(args.color);
-    let end = match &args.command {
+    let done = match &args.command {
         Command::Check(command) => check::run(&mut console, command),
         Command::States(command) => states::run(&mut console, command),
         Command::Swing(command) => swing::run(&mut console, command),
         Command::Annotate(command) => annotate::run(&mut console, command),
         Command::Compare(command) => compare::run(&mut console, command),
-        Command::Rules(command) => rules::run(&mut console, command),
-        Command::Completions { shell } => extras::completions(&mut console, *shell),
-        Command::Manual => extras::manual(&mut console),
+        Command::Rules(command) => Ok(rules::run(&mut console, command)),
+        Command::Completions { shell } => Ok(extras::completions(&mut console, *shell)),
+        Command::Manual => Ok(extras::manual(&mut console)),
     };
-    ExitCode::from(match end {
+    ExitCode::from(match console.told(done).unwrap_or(End::Failed) {
         End::Clean => 0,
         End::Found => 1,
         End::Failed => 2,

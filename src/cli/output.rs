@@ -61,6 +61,23 @@ impl Console {
         }
     }
 
+    /// What came out of a step; what stood in its way is said.
+    pub fn told<T>(&mut self, outcome: Result<T, String>) -> Option<T> {
+        outcome.map_err(|problem| self.say(&problem)).ok()
+    }
+
+    /// Writes a document for programs, or says why there is none.
+    pub fn document(&mut self, what: &str, document: Result<String, impl std::fmt::Display>) -> bool {
+        let problem = |e: &dyn std::fmt::Display| format!("the {what} could not be written as JSON: {e}");
+        match document {
+            Ok(text) => self.result(&text),
+            Err(error) => {
+                self.say(&problem(&error));
+                false
+            }
+        }
+    }
+
     /// Says something about the run.
     pub fn say(&mut self, text: &str) {
         self.clear_progress();

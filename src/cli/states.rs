@@ -14,28 +14,16 @@ use std::path::Path;
 /// So many errors are told, since the states may hang on them; `check` tells all.
 const ERRORS_SHOWN: usize = 3;
 
-pub fn run(console: &mut Console, command: &States) -> End {
-    let mut shelf = match Shelf::new(command.common.circuit.config.as_deref()) {
-        Ok(shelf) => shelf,
-        Err(problem) => {
-            console.say(&problem);
-            return End::Failed;
-        }
-    };
+pub fn run(console: &mut Console, command: &States) -> Result<End, String> {
+    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
     let found = shelf.of(&command.file);
     let opinion = if command.second_opinion { SecondOpinion::Everywhere } else { SecondOpinion::Usual };
     let common = command.common.circuit.options(found.as_deref());
     let options = Options { why: command.why.clone(), opinion, ..common };
-    let analysis = match analyse(&mut Input::default(), &command.file, &options) {
-        Ok(analysis) => analysis,
-        Err(problem) => {
-            console.say(&format!("{}: {}", command.file.display(), problem.0));
-            return End::Failed;
-        }
-    };
+    let analysis = analyse(&mut Input::default(), &command.file, &options)
+        .map_err(|problem| format!("{}: {}", command.file.display(), problem.0))?;
     if let Some(name) = missing_diode(&analysis, command.why.as_deref()) {
-        console.say(&format!("there is no diode `{name}` in {}", command.file.display()));
-        return End::Failed;
+        return Err(format!("there is no diode `{name}` in {}", command.file.display()));
     }
     let written = match command.format {
         Format::Text => {
@@ -46,20 +34,10 @@ pub fn run(console: &mut Console, command: &States) -> End {
             }
             console.result(page.text())
         }
-        Format::Json => match report::json::states(&analysis) {
-            Ok(text) => console.result(&text),
-            Err(problem) => {
-                console.say(&format!("the states could not be written as JSON: {problem}"));
-                false
-            }
-        },
+        Format::Json => console.document("states", report::json::states(&analysis)),
     };
     let worst = worst(console, &command.file, &command.common.circuit, &analysis, shelf.findings());
-    match written {
-        false => End::Failed,
-        true if command.common.fails_on(found.as_deref(), worst) => End::Found,
-        true => End::Clean,
-    }
+    Ok(End::of(written, command.common.fails_on(found.as_deref(), worst)))
 }
 
 /// The name that `--why` asks about, where no diode has it.

@@ -15,40 +15,22 @@ use std::path::Path;
 /// Whoever asks for the time pass has more patience than a check that runs it by the way.
 const PATIENCE: u32 = 20;
 
-pub fn run(console: &mut Console, command: &Swing) -> End {
-    let mut shelf = match Shelf::new(command.common.circuit.config.as_deref()) {
-        Ok(shelf) => shelf,
-        Err(problem) => {
-            console.say(&problem);
-            return End::Failed;
-        }
-    };
+pub fn run(console: &mut Console, command: &Swing) -> Result<End, String> {
+    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
     let found = shelf.of(&command.file);
     let circuit = command.common.circuit.options(found.as_deref());
     let options = Options { swing: true, patience: PATIENCE, ..circuit };
     let waiting = Waiting::new(&options.monitor, true);
     let analysed = analyse(&mut Input::default(), &command.file, &options);
     drop(waiting);
-    let analysis = match analysed {
-        Ok(analysis) => analysis,
-        Err(problem) => {
-            console.say(&format!("{}: {}", command.file.display(), problem.0));
-            return End::Failed;
-        }
-    };
+    let analysis = analysed.map_err(|problem| format!("{}: {}", command.file.display(), problem.0))?;
     let mut written = match command.format {
         Format::Text => {
             let mut page = console.page();
             report::swing(&mut page, &analysis);
             console.result(page.text())
         }
-        Format::Json => match report::json::swing(&analysis) {
-            Ok(text) => console.result(&text),
-            Err(problem) => {
-                console.say(&format!("the swings could not be written as JSON: {problem}"));
-                false
-            }
-        },
+        Format::Json => console.document("swings", report::json::swing(&analysis)),
     };
     if let Some(path) = &command.plot {
         written &= picture(console, &analysis, path);
@@ -59,11 +41,7 @@ pub fn run(console: &mut Console, command: &Swing) -> End {
     }
     let worst =
         super::states::worst(console, &command.file, &command.common.circuit, &analysis, shelf.findings());
-    match written {
-        false => End::Failed,
-        true if command.common.fails_on(found.as_deref(), worst) => End::Found,
-        true => End::Clean,
-    }
+    Ok(End::of(written, command.common.fails_on(found.as_deref(), worst)))
 }
 
 /// Writes the picture. `false` where it could not be written.
