@@ -38,7 +38,7 @@ pub(super) struct Equations<'a> {
     pub(super) floating: Vec<u32>,
     pub(super) matrix: Vec<Entry>,
     pub(super) ports: Vec<Entry>,
-    pub(super) rhs: Vec<f64>,
+    pub(super) rhs: Vec<Dd>,
     /// Unknown of each node; boundaries have their potential from the rails.
     place: FxHashMap<u32, usize>,
     spots: FxHashMap<u32, Spot>,
@@ -50,14 +50,23 @@ pub(super) struct Equations<'a> {
 struct Form {
     x: Vec<(usize, f64)>,
     port: Vec<(usize, f64)>,
-    constant: f64,
+    /// Potentials of boundaries, each with its factor: rounded together with those of unknowns or not at all, so that what
+    /// stands at such a potential is found there.
+    held: Vec<(Dd, f64)>,
+    constant: Dd,
 }
 
 impl Form {
     fn add(&mut self, other: &Form, factor: f64) {
         self.x.extend(other.x.iter().map(|&(n, c)| (n, c * factor)));
         self.port.extend(other.port.iter().map(|&(n, c)| (n, c * factor)));
-        self.constant += other.constant * factor;
+        self.held.extend(other.held.iter().map(|&(v, c)| (v, c * factor)));
+        self.constant += other.constant.times(factor);
+    }
+
+    /// What does not depend on unknowns.
+    fn known(&self) -> Dd {
+        self.held.iter().fold(self.constant, |sum, &(v, c)| sum + v.times(c))
     }
 }
 
@@ -124,7 +133,7 @@ impl<'a> Equations<'a> {
                 self.spots.insert(c, spot);
             }
         }
-        self.rhs = vec![0.0; unknown];
+        self.rhs = vec![Dd::ZERO; unknown];
     }
 
     /// One node of each island that no branch ties to a boundary; its island floats.
@@ -176,7 +185,7 @@ impl<'a> Equations<'a> {
         self.matrix.retain(|(row, ..)| !pinned.contains(row));
         self.ports.retain(|(row, ..)| !pinned.contains(row));
         for &k in pins {
-            self.rhs[k] = 0.0;
+            self.rhs[k] = Dd::ZERO;
             self.matrix.push((k, k, 1.0));
         }
     }
@@ -188,16 +197,16 @@ impl<'a> Equations<'a> {
         for &(n, c) in &form.port {
             self.ports.push((row, n, c * factor));
         }
-        self.rhs[row] -= form.constant * factor;
+        self.rhs[row] += -form.known().times(factor);
     }
 
     fn form_of_node(&self, node: u32) -> Form {
         match self.place.get(&node) {
             Some(&k) => Form { x: vec![(k, 1.0)], ..Form::default() },
             None if self.rails.forest.group[node as usize] == 0 => {
-                Form { constant: self.rails.forest.offset[node as usize].round(), ..Form::default() }
+                Form { held: vec![(self.rails.forest.offset[node as usize], 1.0)], ..Form::default() }
             }
-            None => Form { constant: f64::NAN, ..Form::default() },
+            None => Form { constant: f64::NAN.into(), ..Form::default() },
         }
     }
 
@@ -210,7 +219,7 @@ impl<'a> Equations<'a> {
     fn form_of_current(&self, network: &Network, n: u32) -> Form {
         let b = &network.branches[n as usize];
         match self.spots.get(&n) {
-            Some(Spot::Known(i)) => Form { constant: *i, ..Form::default() },
+            Some(Spot::Known(i)) => Form { constant: (*i).into(), ..Form::default() },
             Some(Spot::Unknown(k)) => Form { x: vec![(*k, 1.0)], ..Form::default() },
             Some(Spot::Port(k)) => Form { port: vec![(*k, 1.0)], ..Form::default() },
             Some(Spot::Ohm(r)) => {
@@ -225,7 +234,7 @@ impl<'a> Equations<'a> {
                 }
                 form
             }
-            Some(Spot::Elsewhere) | None => Form { constant: f64::NAN, ..Form::default() },
+            Some(Spot::Elsewhere) | None => Form { constant: f64::NAN.into(), ..Form::default() },
         }
     }
 
@@ -245,7 +254,7 @@ impl<'a> Equations<'a> {
             }
             law => {
                 let mut form = self.form_of_voltage(b.from, b.to);
-                form.constant -= fixed(law).map_or(f64::NAN, |l| l.value);
+                form.constant += (-fixed(law).map_or(f64::NAN, |l| l.value)).into();
                 form
             }
         }
@@ -260,7 +269,7 @@ impl<'a> Equations<'a> {
 
     /// Whether every law could be written down.
     pub(super) fn complete(&self) -> bool {
-        self.rhs.iter().all(|v| v.is_finite()) && self.matrix.iter().all(|(.., v)| v.is_finite())
+        self.rhs.iter().all(|v| v.round().is_finite()) && self.matrix.iter().all(|(.., v)| v.is_finite())
     }
 
     /// Potential of a node at `x` (unknowns, then junction currents).
@@ -293,9 +302,21 @@ impl<'a> Equations<'a> {
         self.change(&self.form_of_current(network, n), change)
     }
 
+    /// Largest current that a potential at an end of a resistance would drive through it alone: what such currents
+    /// are differences of.
+    pub(super) fn largest_term(&self, x: &[Dd]) -> f64 {
+        let term = |n: &u32| match (self.spots.get(n), self.ends.get(n)) {
+            (Some(Spot::Ohm(r)), Some(&(from, to))) => {
+                self.potential(x, from).abs().max(self.potential(x, to).abs()) / r.abs()
+            }
+            _ => 0.0,
+        };
+        self.branches.iter().map(term).filter(|t| t.is_finite()).fold(0.0, f64::max)
+    }
+
     fn value(&self, form: &Form, x: &[Dd]) -> Dd {
         let ports = form.port.iter().map(|&(k, c)| (self.rhs.len() + k, c));
-        let mut sum = Dd::from(form.constant);
+        let mut sum = form.known();
         for (k, c) in form.x.iter().copied().chain(ports) {
             sum += x[k].times(c);
         }
@@ -308,10 +329,11 @@ impl<'a> Equations<'a> {
     }
 
     /// Nodes between which a junction stands, as a row over the unknowns and a constant.
-    pub(super) fn voltage_row(&self, n: u32) -> (Vec<(usize, f64)>, f64) {
+    pub(super) fn voltage_row(&self, n: u32) -> (Vec<(usize, f64)>, Dd) {
         let (from, to) = self.ends.get(&n).copied().unwrap_or((0, 0));
         let form = self.form_of_voltage(from, to);
-        (form.x, form.constant)
+        let known = form.known();
+        (form.x, known)
     }
 }
 

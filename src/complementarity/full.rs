@@ -42,7 +42,7 @@ pub(super) fn enumerate(equations: &Equations<'_>) -> Option<Vec<Whole>> {
                     found.push(Whole { x, places });
                 }
             }
-            None if contradicts(&linear::dense(rhs.len(), &entries), &DVector::from_vec(rhs)) => {}
+            None if contradicts(&linear::dense(rhs.len(), &entries), &rounded(&rhs)) => {}
             None => return None,
         }
     }
@@ -50,7 +50,7 @@ pub(super) fn enumerate(equations: &Equations<'_>) -> Option<Vec<Whole>> {
 }
 
 /// The part's equations, then the law of each junction in its place.
-fn system(equations: &Equations<'_>, places: &[Place]) -> (Vec<Entry>, Vec<f64>) {
+fn system(equations: &Equations<'_>, places: &[Place]) -> (Vec<Entry>, Vec<Dd>) {
     let size = equations.rhs.len();
     let mut entries = equations.matrix.clone();
     entries.extend(equations.ports.iter().map(|&(row, port, factor)| (row, size + port, factor)));
@@ -62,22 +62,27 @@ fn system(equations: &Equations<'_>, places: &[Place]) -> (Vec<Entry>, Vec<f64>)
             Place::Breakdown => -bundle.law.reverse.map_or(0.0, |r| r.value),
             _ => {
                 entries.push((row, row, 1.0));
-                rhs.push(0.0);
+                rhs.push(Dd::ZERO);
                 continue;
             }
         };
         let (terms, constant) = equations.voltage_row(bundle.members[0]);
         entries.extend(terms.into_iter().map(|(x, factor)| (row, x, factor)));
         entries.push((row, row, -bundle.law.series));
-        rhs.push(level - constant);
+        rhs.push(Dd::from(level) - constant);
     }
     (entries, rhs)
 }
 
-/// Unknowns, then junction currents, of junctions in these places, with twice the digits; `None` without full rank.
+/// Unknowns, then junction currents, of junctions in these places, with twice the digits, where these places are known to
+/// have one answer; `None` where that many digits cannot be had.
 pub(super) fn exactly(equations: &Equations<'_>, places: &[Place]) -> Option<Vec<Dd>> {
     let (entries, rhs) = system(equations, places);
-    linear::refined(rhs.len(), &entries, &rhs)
+    linear::refined_of_full_rank(rhs.len(), &entries, &rhs)
+}
+
+fn rounded(list: &[Dd]) -> DVector<f64> {
+    DVector::from_iterator(list.len(), list.iter().map(|v| v.round()))
 }
 
 /// Whether no solution exists at all, by least squares on scaled rows.
@@ -101,6 +106,7 @@ fn holds(equations: &Equations<'_>, laws: &[Junction], places: &[Place], x: &[f6
     let amperes = x[equations.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
     laws.iter().zip(places).enumerate().all(|(k, (law, place))| {
         let (row, constant) = equations.voltage_row(equations.bundles[k].members[0]);
+        let constant = constant.round();
         let v = row.iter().map(|&(n, c)| c * x[n]).sum::<f64>() + constant;
         let inner = v - law.series * x[size + k];
         let room = 1e-10 * (volts + constant.abs());

@@ -164,7 +164,8 @@ fn set_of_trial(network: &Network, equations: &Equations<'_>, ports: &Ports, tri
     let (x, rounding) = match exact {
         Some(x) => {
             let largest = x[equations.nodes.len()..].iter().fold(0.0, |m: f64, i| m.max(i.abs()));
-            (x, EXACT * largest)
+            let terms = equations.largest_term(&x);
+            (x, (EXACT * largest).max(EXACT_TERM * terms))
         }
         None => {
             let x = ports.expand(&trial.currents).into_iter().map(Dd::from).collect();
@@ -236,6 +237,10 @@ fn snapped(range: Interval) -> Interval {
 
 /// Share of the largest current that is rounding where a solution has twice the digits.
 const EXACT: f64 = 1e-22;
+
+/// Share of the largest term of Ohm's law that is rounding there: where all currents of a part are 0, only such terms
+/// say what a current is.
+const EXACT_TERM: f64 = 1e-26;
 
 const ANYWHERE: Interval = Interval { low: f64::NEG_INFINITY, high: f64::INFINITY };
 

@@ -14,8 +14,12 @@ use nalgebra::{DMatrix, Dyn, FullPivLU};
 const RANK: f64 = 1e-11;
 /// Unknowns up to which elimination is dense.
 const DENSE: usize = 200;
-/// Steps of refinement with residuals of twice the digits: each adds as many digits as the condition leaves.
-const STEPS: usize = 4;
+/// Ratio of pivots where the rank is known: what is smaller is rounding of what is larger.
+const SPREAD: f64 = 1e-18;
+/// Steps of refinement with residuals of twice the digits at most: each adds as many digits as the condition leaves.
+const MOST_STEPS: usize = 12;
+/// Share of the largest unknown by which a last step may move.
+const SETTLED: f64 = 1e-24;
 
 /// Solves for every column of `right`.
 pub(super) fn solve(size: usize, entries: &[Entry], right: DMatrix<f64>) -> Option<DMatrix<f64>> {
@@ -38,11 +42,20 @@ pub(super) fn solve(size: usize, entries: &[Entry], right: DMatrix<f64>) -> Opti
 }
 
 /// Solves for one right side with twice the digits.
-pub(super) fn refined(size: usize, entries: &[Entry], right: &[f64]) -> Option<Vec<Dd>> {
-    let factor = Factor::new(size, entries)?;
+pub(super) fn refined(size: usize, entries: &[Entry], right: &[Dd]) -> Option<Vec<Dd>> {
+    refine(&Factor::new(size, entries)?, size, entries, right)
+}
+
+/// The same where that the system has full rank is known already: its pivots may then be as far apart as its numbers
+/// are, and that the refinement settles is asked for instead.
+pub(super) fn refined_of_full_rank(size: usize, entries: &[Entry], right: &[Dd]) -> Option<Vec<Dd>> {
+    refine(&Factor::with_pivots(size, entries, SPREAD)?, size, entries, right)
+}
+
+fn refine(factor: &Factor, size: usize, entries: &[Entry], right: &[Dd]) -> Option<Vec<Dd>> {
     let mut x = vec![Dd::ZERO; size];
-    for _ in 0..STEPS {
-        let mut miss: Vec<Dd> = right.iter().map(|&b| b.into()).collect();
+    for _ in 0..MOST_STEPS {
+        let mut miss: Vec<Dd> = right.to_vec();
         for &(r, c, v) in entries {
             miss[r] += -x[c].times(v);
         }
@@ -51,8 +64,17 @@ pub(super) fn refined(size: usize, entries: &[Entry], right: &[f64]) -> Option<V
             return None;
         }
         x.iter_mut().zip(change.iter()).for_each(|(x, &by)| *x += by.into());
+        if !x.iter().all(|v| v.round().is_finite()) {
+            return None;
+        }
+        let scaled = |of: f64, (most, column): (f64, &f64)| most.max((of / column).abs());
+        let moved = change.iter().zip(&factor.columns).fold(0.0, |most, (&by, c)| scaled(by, (most, c)));
+        let whole = x.iter().zip(&factor.columns).fold(0.0, |most, (v, c)| scaled(v.round(), (most, c)));
+        if moved <= SETTLED * whole {
+            return Some(x);
+        }
     }
-    x.iter().all(|v| v.round().is_finite()).then_some(x)
+    None
 }
 
 /// Solves a square system after scaling rows and columns; `None` without full rank.
@@ -89,6 +111,11 @@ enum Kind {
 
 impl Factor {
     fn new(size: usize, entries: &[Entry]) -> Option<Self> {
+        Self::with_pivots(size, entries, RANK)
+    }
+
+    /// `None` where pivots are further apart than `spread`.
+    fn with_pivots(size: usize, entries: &[Entry], spread: f64) -> Option<Self> {
         let mut entries = summed(entries);
         let mut rows = vec![0.0f64; size];
         entries.iter().for_each(|&(r, _, v)| rows[r] = rows[r].max(v.abs()));
@@ -103,7 +130,7 @@ impl Factor {
             1..=DENSE => {
                 let lu = dense(size, &entries).full_piv_lu();
                 let pivots = lu.u().diagonal().abs();
-                (pivots.min() > RANK * pivots.max()).then_some(Kind::Dense(Box::new(lu)))?
+                (pivots.min() > spread * pivots.max()).then_some(Kind::Dense(Box::new(lu)))?
             }
             _ => sparse(size, &entries)?,
         };

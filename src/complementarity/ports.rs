@@ -57,18 +57,18 @@ impl Ports {
         let rows: Vec<_> = equations.bundles.iter().map(|b| equations.voltage_row(b.members[0])).collect();
         let mut matrix = equations.matrix.clone();
         let mut right = DMatrix::zeros(size, count + 1);
-        right.set_column(0, &DVector::from_column_slice(&equations.rhs));
+        right.set_column(0, &DVector::from_iterator(size, equations.rhs.iter().map(|v| v.round())));
         for &(row, k, factor) in &equations.ports {
             let factor = factor / rho;
             matrix.extend(rows[k].0.iter().map(|&(x, c)| -> Entry { (row, x, factor * c) }));
-            right[(row, 0)] -= factor * rows[k].1;
+            right[(row, 0)] -= factor * rows[k].1.round();
             right[(row, k + 1)] += factor;
         }
         let solution = linear::solve(size, &matrix, right)?;
         let voltage = |k: usize, column: usize| -> f64 {
             rows[k].0.iter().map(|&(x, c)| c * solution[(x, column)]).sum()
         };
-        let v0 = DVector::from_fn(count, |k, _| voltage(k, 0) + rows[k].1);
+        let v0 = DVector::from_fn(count, |k, _| voltage(k, 0) + rows[k].1.round());
         let v_of_a = DMatrix::from_fn(count, count, |k, a| voltage(k, a + 1));
         // a rest that blows the smallest input up this far has no full rank but for rounding
         if count > 0 && v_of_a.amax() > BLOWN_UP {

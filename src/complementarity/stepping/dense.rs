@@ -24,10 +24,13 @@ impl Condensed {
             matrix[(row as usize, col as usize)] += value;
         });
         let mut right = right_sides(system, pattern, g);
+        let leaks = leaks(system, &pattern.modes);
+        leaks.iter().for_each(|&at| matrix.column_mut(at).scale_mut(LEAK));
         scale_rows(&mut matrix, &mut right);
         if n > 0 && !matrix.lu().solve_mut(&mut right) {
             return None;
         }
+        leaks.iter().for_each(|&at| right.row_mut(at).scale_mut(LEAK));
         if right.iter().any(|v| !v.is_finite()) {
             return None;
         }
@@ -118,6 +121,13 @@ impl Condensed {
         let at = row * (self.states + self.inputs + 1);
         self.rows[at..at + self.states].iter().zip(changes).map(|(factor, change)| factor * change).sum()
     }
+}
+
+/// Currents of blocking junctions: their voltages are solved for in their place. As a current among others of its node
+/// such a leak would be lost in their rounding, and its voltage with it.
+fn leaks(system: &System, modes: &[Mode]) -> Vec<usize> {
+    let blocking = system.junctions.iter().zip(modes).filter(|(_, mode)| **mode == Mode::Blocking);
+    blocking.map(|(junction, _)| junction.current as usize).collect()
 }
 
 /// One column for each state at the start, each input, and the constant.

@@ -3,7 +3,7 @@
 
 use super::dense::Condensed;
 use super::sparse::Sparse;
-use super::system::{LEAK, Mode, System};
+use super::system::{Mode, System};
 use rustc_hash::FxHashMap;
 
 /// More unknowns than this are factored as a sparse matrix.
@@ -195,8 +195,11 @@ impl Solver {
         system.states(unknowns, inputs, &mut answer.states);
         answer.tests.clear();
         answer.tests.extend(system.junctions.iter().zip(&pattern.modes).map(|(junction, mode)| {
-            let current = unknowns[junction.current as usize];
-            if *mode == Mode::Blocking { current / LEAK } else { current }
+            // a leak is nothing among currents, and its voltage is not to be told from it
+            match mode {
+                Mode::Blocking => junction.across.at(unknowns, inputs),
+                _ => unknowns[junction.current as usize],
+            }
         }));
         true
     }

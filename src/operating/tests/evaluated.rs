@@ -156,3 +156,48 @@ fn the_view_and_the_margin_of_one_diode() {
     assert!((view.open_circuit - 5.0).abs() < 1e-12 && (view.resistance - 1010.0).abs() < 1e-9, "{view:?}");
     assert!((diode.margin.unwrap() - 4.3).abs() < 1e-12);
 }
+
+/// Nothing flows where a diode blocks in front of a follower, a chain of them, or sources that sense it: every node behind
+/// it is at 0 V and the one before it at the source's voltage, by Kirchhoff's laws alone.
+#[test]
+fn what_stands_still_behind_a_controlled_source_is_proved() {
+    let behind = [
+        "E1 out 0 hold 0 1\nR3 out adc 1k\nR4 adc 0 47k",
+        "E1 e1 0 hold 0 1\nE2 e2 0 e1 0 -3.3\nE3 e3 0 e2 e1 7\nR3 e2 q 3.3k\nR4 q e3 47k\nR5 e3 0 1meg",
+        "G1 0 g hold 0 3m\nR3 g 0 3.3k\nF1 f 0 E1 30\nE1 e 0 g hold 11\nR4 e 0 910\nR5 f f2 1.1k\nR6 f2 0 3k",
+        "E1 out 0 a in 1000\nR3 out mid 0.3\nR4 mid adc 4.7g\nR5 adc 0 9.1\nH1 h 0 V1 70\nR6 h 0 11",
+    ];
+    for (behind, volts) in behind.iter().flat_map(|b| [-3.0, -0.1, -7.7, -1234.5].map(|v| (b, v))) {
+        for ohms in ["1m", "33", "100", "4.7k", "1.3g", "2t"] {
+            let lines = format!(
+                "V1 in 0 {volts}\nR1 in a {ohms}\nD1 a hold DX\nR2 hold 0 100k\n{behind}\n.model DX D"
+            );
+            let (operating, circuit, _) = evaluated(&lines, &Options::default());
+            let case = &operating.cases[0];
+            assert_eq!(case.verdict, Verdict::Unique, "{lines}\n{:?}", case.causes);
+            for node in &case.solutions[0].nodes {
+                let name = circuit.node_name(node.node);
+                let expected = if ["in", "a"].contains(&name.as_str()) { volts } else { 0.0 };
+                assert_eq!(node.voltage.known(), Some(expected), "{name} of\n{lines}");
+            }
+            for branch in &case.solutions[0].branches {
+                assert_eq!(branch.current.known(), Some(0.0), "{lines}");
+            }
+        }
+    }
+}
+
+/// Where nanoamperes are real beside kiloamperes they are told: (1 V − 0)/1 GΩ in front of a follower, and the follower's
+/// 1 V across 1 mΩ behind it, by Ohm's law.
+#[test]
+fn small_currents_beside_a_follower_are_no_rounding() {
+    let lines = "V1 in 0 1\nR1 in a 1g\nV0 a 0 0\nE1 out 0 in 0 1\nR2 out x 1m\nV2 x 0 0\nR3 x y 1t\nV3 y 0 -1\nR4 out z 1n\nD1 z 0 DX\n.model DX D";
+    let (operating, circuit, _) = evaluated(lines, &Options::default());
+    let case = &operating.cases[0];
+    assert_eq!(case.verdict, Verdict::Unique, "{:?}", case.causes);
+    for (name, expected) in [("R1", 1e-9), ("R2", 1e3), ("R3", 1e-12)] {
+        let found = case.solutions[0].branches.iter().find(|b| circuit.element_name(b.element) == name);
+        let current = found.and_then(|b| b.current.known()).unwrap();
+        assert!((current - expected).abs() <= 1e-12 * expected, "{name}: {current}");
+    }
+}
