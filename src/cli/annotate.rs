@@ -33,7 +33,7 @@ struct File<'c> {
 }
 
 pub fn run(console: &mut Console, command: &Annotate) -> Result<End, String> {
-    let mut shelf = Shelf::new(command.circuit.config.as_deref())?;
+    let mut shelf = Shelf::new(&command.circuit)?;
     let jobs = jobs(console, command, &mut shelf)?;
     let mut input = Input::keeping();
     let mut worst = if jobs.is_empty() { End::Failed } else { End::Clean };

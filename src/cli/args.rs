@@ -20,7 +20,6 @@ Exit code: 0 nothing at or above --fail-on, 1 something is, 2 the job could not 
 /// conduct, block or break down? Every answer is proved by putting it back into the circuit laws.
 #[derive(Debug, Parser)]
 #[command(name = "kneewise", version, styles = STYLES, after_help = EXIT, max_term_width = 100)]
-#[command(disable_help_subcommand = true)]
 pub struct Args {
     /// When to colour the output
     #[arg(long, global = true, value_name = "WHEN", default_value = "auto")]

@@ -21,7 +21,7 @@ use std::sync::Arc;
 const ROOT: FileId = FileId(0);
 
 pub fn run(console: &mut Console, command: &Check) -> Result<End, String> {
-    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
+    let mut shelf = Shelf::new(&command.common.circuit)?;
     let wanted = wanted(&command.paths, &mut shelf);
     let mut failed = !wanted.problems.is_empty();
     for problem in &wanted.problems {

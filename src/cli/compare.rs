@@ -3,7 +3,7 @@
 
 use super::End;
 use super::args::{Compare, CompareFormat, is_called};
-use super::input::{Input, wanted};
+use super::input::{Input, is_standard_input, wanted};
 use super::output::Console;
 use super::settings::{Found, Shelf};
 use kneewise::analysis::analyse;
@@ -41,7 +41,7 @@ pub fn run(console: &mut Console, command: &Compare) -> Result<End, String> {
 }
 
 fn compare(console: &mut Console, command: &Compare) -> Result<End, String> {
-    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
+    let mut shelf = Shelf::new(&command.common.circuit)?;
     let (twins, is_called) = twins(&command.paths(), &mut shelf)?;
     let (mut files, mut share, mut found) = (Vec::new(), 0.0, None);
     let mut parts: BTreeSet<PathBuf> = BTreeSet::new();
@@ -87,6 +87,9 @@ fn twins(paths: &[PathBuf], shelf: &mut Shelf) -> Result<(Vec<Twin>, bool), Stri
         [old, new] if old.is_dir() && new.is_dir() => Ok((in_directories(old, new, shelf)?, false)),
         [old, new] if old.is_dir() || new.is_dir() => {
             Err("compare two files or two directories, not one of each".into())
+        }
+        [old, new] if is_standard_input(old) && is_standard_input(new) => {
+            Err("standard input can be one side of a comparison, not both".into())
         }
         [old, new] => {
             let (old, new) = (Some(old.clone()), Some(new.clone()));

@@ -137,7 +137,10 @@ pub fn wanted(paths: &[PathBuf], shelf: &mut Shelf) -> Wanted {
         }
     }
     let mut seen = std::collections::BTreeSet::new();
-    wanted.jobs.retain(|job| seen.insert(job.path.clone()));
+    wanted.jobs.retain(|job| {
+        let known = if is_standard_input(&job.path) { job.path.clone() } else { Disk.resolve(&job.path) };
+        seen.insert(known)
+    });
     wanted
 }
 

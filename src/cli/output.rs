@@ -33,7 +33,8 @@ impl Console {
 
     /// An empty page in the colours of this run.
     pub fn page(&self) -> Page {
-        Page::new(self.colour)
+        let terminal = terminal_size::terminal_size_of(io::stdout());
+        Page::new(self.colour).on_terminal(terminal.map(|(width, _)| usize::from(width.0)))
     }
 
     /// Writes results. `false` where they could not be written for any other reason than a closed pipe.

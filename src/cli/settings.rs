@@ -1,6 +1,7 @@
 //! Finds the settings of each file: `kneewise.toml` in its directory or one above, up to the repository it lies in, or
 //! the file that `--config` names. What a setting means is the library's.
 
+use super::args::CircuitOptions;
 use kneewise::config::{SETTINGS_FILE, Settings, settings};
 use kneewise::finding::{Finding, Severity};
 use kneewise::review::Record;
@@ -30,11 +31,18 @@ pub struct Shelf {
 }
 
 impl Shelf {
-    /// With the file that `--config` names, which then holds for every netlist.
+    /// For the options of a run: the file that `--config` names holds for every netlist.
     ///
     /// # Errors
-    /// Why that file cannot be read.
-    pub fn new(chosen: Option<&Path>) -> Result<Self, String> {
+    /// Why that file cannot be read, or that a directory of `--include-dir` is not there.
+    pub fn new(options: &CircuitOptions) -> Result<Self, String> {
+        if let Some(gone) = options.include_dir.iter().find(|dir| !dir.is_dir()) {
+            return Err(format!(
+                "{}: there is no such directory to look for included files in",
+                gone.display()
+            ));
+        }
+        let chosen = options.config.as_deref();
         let mut shelf = Shelf::default();
         if let Some(path) = chosen {
             let found = read(path).map_err(|e| format!("{}: {}", path.display(), trouble::reading(&e)))?;

@@ -6,24 +6,29 @@ use super::input::Input;
 use super::output::Console;
 use super::settings::Shelf;
 use kneewise::analysis::{Analysis, analyse};
+use kneewise::circuit::Behaviour;
 use kneewise::config::{Options, SecondOpinion};
 use kneewise::finding::{Finding, Severity};
 use kneewise::report::{self, Summary};
+use kneewise::text::nearest;
 use std::path::Path;
 
 /// So many errors are told, since the states may hang on them; `check` tells all.
 const ERRORS_SHOWN: usize = 3;
 
+/// Names among which the one that was meant is looked for.
+const MOST_CANDIDATES: usize = 2000;
+
 pub fn run(console: &mut Console, command: &States) -> Result<End, String> {
-    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
+    let mut shelf = Shelf::new(&command.common.circuit)?;
     let found = shelf.of(&command.file);
     let opinion = if command.second_opinion { SecondOpinion::Everywhere } else { SecondOpinion::Usual };
     let common = command.common.circuit.options(found.as_deref());
     let options = Options { why: command.why.clone(), opinion, ..common };
     let analysis = analyse(&mut Input::default(), &command.file, &options)
         .map_err(|problem| format!("{}: {}", command.file.display(), problem.0))?;
-    if let Some(name) = missing_diode(&analysis, command.why.as_deref()) {
-        return Err(format!("there is no diode `{name}` in {}", command.file.display()));
+    if let Some(problem) = missing_diode(&analysis, command.why.as_deref(), &command.file) {
+        return Err(problem);
     }
     let written = match command.format {
         Format::Text => {
@@ -40,10 +45,23 @@ pub fn run(console: &mut Console, command: &States) -> Result<End, String> {
     Ok(End::of(written, command.common.fails_on(found.as_deref(), worst)))
 }
 
-/// The name that `--why` asks about, where no diode has it.
-fn missing_diode<'a>(analysis: &Analysis, why: Option<&'a str>) -> Option<&'a str> {
+/// Why there is no reasoning about the diode that `--why` asks about, where none has that name.
+fn missing_diode(analysis: &Analysis, why: Option<&str>, file: &Path) -> Option<String> {
     let found = analysis.operating.as_ref().is_some_and(|o| o.why.is_some());
-    why.filter(|_| !found)
+    let name = why.filter(|_| !found)?;
+    let circuit = &analysis.circuit;
+    if circuit.elements().any(|(id, _)| circuit.element_name(id).eq_ignore_ascii_case(name)) {
+        return Some(format!(
+            "{name} in {} is no diode, and states are reasoned about for diodes only",
+            file.display()
+        ));
+    }
+    let is_diode = |behaviour: &Behaviour| matches!(behaviour, Behaviour::Diode { .. });
+    let diodes = circuit.elements().filter(|(_, e)| is_diode(&e.behaviour)).take(MOST_CANDIDATES);
+    let names: Vec<String> = diodes.map(|(id, _)| circuit.element_name(id)).collect();
+    let near = nearest(name, names.iter().map(String::as_str));
+    let hint = near.map_or(String::new(), |near| format!("; did you mean `{near}`?"));
+    Some(format!("there is no diode `{name}` in {}{hint}", file.display()))
 }
 
 /// The most serious of the findings and the verdicts; says on standard error that there are findings, since

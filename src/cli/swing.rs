@@ -16,7 +16,7 @@ use std::path::Path;
 const PATIENCE: u32 = 20;
 
 pub fn run(console: &mut Console, command: &Swing) -> Result<End, String> {
-    let mut shelf = Shelf::new(command.common.circuit.config.as_deref())?;
+    let mut shelf = Shelf::new(&command.common.circuit)?;
     let found = shelf.of(&command.file);
     let circuit = command.common.circuit.options(found.as_deref());
     let options = Options { swing: true, patience: PATIENCE, ..circuit };

@@ -43,12 +43,29 @@ impl Ink {
 pub struct Page {
     text: String,
     colour: bool,
+    /// Columns of the terminal, where it is one.
+    columns: Option<usize>,
 }
+
+/// Running text is not broken narrower than this, however narrow the terminal.
+const NARROWEST: usize = 36;
 
 impl Page {
     /// An empty page, with colour or without.
     pub fn new(colour: bool) -> Self {
-        Page { text: String::new(), colour }
+        Page { text: String::new(), colour, columns: None }
+    }
+
+    /// The same for a terminal of so many columns: running text is broken there at the latest.
+    #[must_use]
+    pub fn on_terminal(self, columns: Option<usize>) -> Self {
+        Page { columns, ..self }
+    }
+
+    /// At which width running text is broken that would like to be as wide as `wanted`.
+    pub(super) fn room(&self, wanted: usize) -> usize {
+        // what is indented is narrower by its indent already, but for the two columns of a paragraph
+        self.columns.map_or(wanted, |columns| wanted.min(columns.saturating_sub(2).max(NARROWEST)))
     }
 
     /// The text written so far.

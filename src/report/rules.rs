@@ -47,7 +47,7 @@ pub fn rule(page: &mut Page, rule: &Rule) {
 
 fn paragraph(page: &mut Page, text: &str) {
     page.end();
-    for line in wrap(text, WIDTH) {
+    for line in wrap(text, page.room(WIDTH)) {
         page.plain("  ").plain(&line).end();
     }
 }

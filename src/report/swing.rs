@@ -30,7 +30,7 @@ pub fn swing(page: &mut Page, analysis: &Analysis) {
 }
 
 fn paragraph(page: &mut Page, ink: Option<Ink>, text: &str) {
-    for line in wrap(text, WIDTH) {
+    for line in wrap(text, page.room(WIDTH)) {
         match ink {
             Some(ink) => page.ink(ink, &line).end(),
             None => page.plain(&line).end(),

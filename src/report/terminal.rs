@@ -17,7 +17,7 @@ const WIDTH: usize = 100;
 pub fn findings(page: &mut Page, sources: &Sources, findings: &[Finding]) {
     for finding in findings.iter().filter(|f| f.accepted.is_none()) {
         headline(page, sources, finding);
-        for line in wrap(&finding.message, WIDTH) {
+        for line in wrap(&finding.message, page.room(WIDTH)) {
             page.plain(INDENT).ink(Ink::Strong, &line).end();
         }
         snippet(page, sources, finding);
@@ -36,7 +36,7 @@ pub fn accepted(page: &mut Page, sources: &Sources, findings: &[Finding]) {
         let name = whole(sources.name(finding.span.file));
         page.ink(Ink::Faint, "accepted").plain(" · ").plain(finding.rule).plain(" · ");
         page.plain(&format!("{name}:{}:{}", start.line, start.column)).end();
-        for line in wrap(&finding.message, WIDTH) {
+        for line in wrap(&finding.message, page.room(WIDTH)) {
             page.plain(INDENT).plain(&line).end();
         }
         paragraph(page, "because ", reason);
@@ -48,7 +48,7 @@ pub fn accepted(page: &mut Page, sources: &Sources, findings: &[Finding]) {
 pub fn skipped(page: &mut Page, skipped: &[Skipped]) {
     for skip in skipped {
         let text = format!("not judged: {}, because {}", skip.rule, clean(&skip.reason));
-        for line in wrap(&text, WIDTH) {
+        for line in wrap(&text, page.room(WIDTH)) {
             page.ink(Ink::Faint, &line).end();
         }
     }
@@ -78,7 +78,7 @@ fn paragraph(page: &mut Page, lead: &str, text: &str) {
         return;
     }
     let hang = " ".repeat(lead.chars().count());
-    for (n, line) in wrap(text, WIDTH - hang.len()).iter().enumerate() {
+    for (n, line) in wrap(text, page.room(WIDTH) - hang.len()).iter().enumerate() {
         page.plain(INDENT);
         match n {
             0 => page.ink(Ink::Second, lead),

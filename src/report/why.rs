@@ -46,7 +46,7 @@ fn item(page: &mut Page, lead: &str, sentence: &str) {
         return;
     }
     let room = lead.chars().count();
-    for (n, line) in wrap(sentence, WIDTH - room).iter().enumerate() {
+    for (n, line) in wrap(sentence, page.room(WIDTH) - room).iter().enumerate() {
         match n {
             0 => page.ink(Ink::Faint, lead),
             _ => page.plain(&" ".repeat(room)),

@@ -291,3 +291,33 @@ fn what_names_no_model_is_told_apart_from_models_that_are_missing() {
     let words = "the model DNONE is not defined; D1 names no model, so nothing is known about it";
     assert!(run.out.split_whitespace().collect::<Vec<_>>().join(" ").contains(words), "{}", run.out);
 }
+
+#[test]
+fn what_was_meant_is_proposed() {
+    for (arguments, words) in [
+        (&["states", "-", "--why", "R1"][..], "R1 in - is no diode"),
+        (&["states", "-", "--why", "D2"], "did you mean `D1`?"),
+        (&["rules", "never"], "did you mean one of"),
+        (&["compare", "-", "-"], "standard input can be one side"),
+        (&["check", "-", "--include-dir", "no-such-dir"], "no-such-dir: there is no such directory"),
+    ] {
+        let run = feed(arguments, CLEAN);
+        assert_eq!((run.code, run.out.as_str()), (2, ""), "{arguments:?}");
+        assert!(run.err.contains(words), "{arguments:?}: {}", run.err);
+    }
+    assert!(run(&["help", "check"]).out.contains("Usage: kneewise check"));
+}
+
+#[test]
+fn one_file_under_two_names_is_examined_once() {
+    let folder = scratch("twice-named");
+    std::fs::write(folder.join("a.net"), CLEAN).unwrap();
+    let run = run_in(&folder, &["check", "a.net", "./a.net", "."]);
+    assert!(run.out.starts_with("1 file, "), "{}", run.out);
+}
+
+#[test]
+fn a_file_without_elements_has_no_states() {
+    let run = feed(&["states", "-"], "");
+    assert_eq!(run.out, "There are no elements in this file, so there are no states.\n");
+}

@@ -77,3 +77,18 @@ fn two_runs_give_the_same_bytes() {
         }
     }
 }
+
+#[test]
+fn running_text_is_broken_where_the_terminal_ends() {
+    let program = env!("CARGO_BIN_EXE_kneewise");
+    let line = format!("stty cols 60 rows 20; {program} rules never-conducts");
+    let output = std::process::Command::new("script")
+        .args(["-q", "-e", "-c", &line, "/dev/null"])
+        .env("NO_COLOR", "1")
+        .stdin(Stdio::null())
+        .output();
+    let Some(output) = output.ok().filter(|o| o.status.success()) else { return };
+    let text = String::from_utf8_lossy(&output.stdout);
+    let widest = text.lines().map(|l| l.trim_end().chars().count()).max().unwrap_or(0);
+    assert!((30..=60).contains(&widest), "{widest} columns:\n{text}");
+}

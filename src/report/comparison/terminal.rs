@@ -21,7 +21,7 @@ pub fn comparison(page: &mut Page, files: &[Compared], share: f64) {
                 page.end();
                 both(page, comparison, share);
                 if compared.shares_parts {
-                    for line in wrap(SHARED, WIDTH - 2) {
+                    for line in wrap(SHARED, page.room(WIDTH) - 2) {
                         page.plain("  ").ink(Ink::Faint, &line).end();
                     }
                 }
@@ -67,7 +67,7 @@ fn states(page: &mut Page, comparison: &Comparison) {
         page.plain("    ").ink(Ink::Strong, &clean(&flip.names()));
         page.plain(&clean(&format!(" {} → {}  ", flip.old, flip.new)));
         page.ink(Ink::Faint, &clean(&conditions(&flip.cases))).end();
-        for line in wrap(flip.why, WIDTH - 6) {
+        for line in wrap(flip.why, page.room(WIDTH) - 6) {
             page.plain("      ").plain(&line).end();
         }
     }
@@ -108,7 +108,7 @@ fn list_findings(page: &mut Page, what: &str, record: &Record) {
     for finding in worst_first(record).into_iter().take(MOST) {
         page.plain("    ").ink(ink(finding.severity), finding.severity.word());
         page.plain(&format!(" · {} · {}", finding.rule, clean(&place(record, finding)))).end();
-        for line in wrap(&finding.message, WIDTH - 6) {
+        for line in wrap(&finding.message, page.room(WIDTH) - 6) {
             page.plain("      ").plain(&line).end();
         }
     }
@@ -126,7 +126,7 @@ fn section(page: &mut Page, title: &str, rows: &[String]) {
     }
     page.ink(Ink::Second, &format!("  {title}")).end();
     for row in rows.iter().take(MOST) {
-        for (n, line) in wrap(row, WIDTH - 6).iter().enumerate() {
+        for (n, line) in wrap(row, page.room(WIDTH) - 6).iter().enumerate() {
             page.plain(if n == 0 { "    " } else { "      " }).plain(line).end();
         }
     }

@@ -56,7 +56,7 @@ impl Group<'_> {
         let place = if with_names { format!(" in {}", some_of(&names)) } else { String::new() };
         let word = self.verdict().word();
         let sentence = format!("{word}{place}: {}", self.meaning());
-        for (n, line) in wrap(&sentence, WIDTH).iter().enumerate() {
+        for (n, line) in wrap(&sentence, page.room(WIDTH)).iter().enumerate() {
             match line.strip_prefix(word).filter(|_| n == 0) {
                 Some(rest) => page.ink(self.ink(), word).plain(rest).end(),
                 None => page.plain(line).end(),

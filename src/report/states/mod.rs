@@ -26,6 +26,10 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
         page.plain("No states were asked for.").end();
         return;
     };
+    if circuit.elements.is_empty() {
+        page.plain("There are no elements in this file, so there are no states.").end();
+        return;
+    }
     conditions::write(page, circuit, operating);
     let groups = conditions::groups(operating);
     for group in groups.iter().filter(|g| g.verdict() != Verdict::Unique) {
@@ -93,7 +97,7 @@ fn some_of(names: &[&str]) -> String {
 }
 
 fn paragraph(page: &mut Page, indent: &str, text: &str) {
-    for line in wrap(text, WIDTH - indent.len()) {
+    for line in wrap(text, page.room(WIDTH) - indent.len()) {
         page.plain(indent).plain(&line).end();
     }
 }

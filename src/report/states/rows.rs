@@ -113,7 +113,7 @@ fn doubts(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>]) {
     for (trust, names, at, reason) in lines.iter().take(DOUBTS_SHOWN) {
         let names: Vec<&str> = names.iter().map(String::as_str).collect();
         let line = format!("{} {}{at}: {reason}", some_of(&names), trust.word());
-        for (n, part) in wrap(&clean(&line), WIDTH - 4).iter().enumerate() {
+        for (n, part) in wrap(&clean(&line), page.room(WIDTH) - 4).iter().enumerate() {
             page.plain(if n == 0 { "  " } else { "    " }).ink(Ink::Faint, part).end();
         }
     }
@@ -136,7 +136,7 @@ fn unevaluated(page: &mut Page, circuit: &Circuit, rows: &[Row<'_>], told: &[&st
     for (reason, names) in reasons {
         let names: Vec<&str> = names.iter().map(String::as_str).collect();
         let verb = if names.len() == 1 { "is" } else { "are" };
-        for line in wrap(&format!("{} {verb} not evaluated: {reason}", some_of(&names)), WIDTH) {
+        for line in wrap(&format!("{} {verb} not evaluated: {reason}", some_of(&names)), page.room(WIDTH)) {
             page.plain("  ").ink(Ink::Faint, &line).end();
         }
     }
