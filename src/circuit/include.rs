@@ -1,7 +1,7 @@
 //! Includes: where files are looked for, which may be opened, and the sections of libraries.
 
 use super::line::Line;
-use super::read::{Reader, load};
+use super::read::{Opened, Reader, load};
 use crate::finding::{Finding, Severity};
 use crate::syntax::{Line as Cut, LineKind, Token};
 use crate::text::{FileId, Span};
@@ -15,8 +15,10 @@ const MOST_FILES: usize = 10_000;
 const MOST_BYTES: usize = if cfg!(test) { 1 << 20 } else { 1 << 30 };
 
 /// What looking for a file gives.
-enum Found {
-    At(PathBuf),
+#[derive(Clone)]
+pub(super) enum Found {
+    /// The path as it is shown, and as the file system resolves it.
+    At(PathBuf, PathBuf),
     Outside,
     Nowhere,
 }
@@ -57,24 +59,25 @@ impl Reader<'_> {
         let span =
             Span::new(line.file(), line.at(token).start as usize, line.at(token).start as usize + written.1);
         let wanted = PathBuf::from(written.0.replace('\\', "/"));
-        let path = match self.find(line.file(), &wanted) {
-            Found::At(path) => path,
+        let (shown, path) = match self.find(line.file(), wanted) {
+            Found::At(shown, path) => (shown, path),
             Found::Outside => return self.tell_outside(span, written.0),
             Found::Nowhere => return self.tell_not_found(span, written.0),
         };
-        let key = (self.loader.resolve(&path), section.clone());
-        if self.stack.contains(&key) {
+        // a file without sections is the same whatever section of it is asked for
+        let is_open = |o: &Opened| o.path == path && (o.is_plain || o.section == section);
+        if self.stack.iter().any(is_open) {
             return self.tell_cycle(span, written.0);
         }
         if self.stack.len() >= DEEPEST || self.parsed.includes.len() >= MOST_FILES {
             return self.tell_too_deep(span);
         }
-        match load(self.loader, &path) {
+        match load(self.loader, &shown) {
             Ok((bytes, _)) if self.bytes.saturating_add(bytes.len()) > MOST_BYTES => self.tell_too_much(span),
             Ok((bytes, length)) => {
-                self.stack.push(key);
+                self.stack.push(Opened { path, section: section.clone(), is_plain: false });
                 let fields = std::mem::take(&mut self.fields);
-                self.file(&path, bytes, length, Some(line.span), section.as_deref());
+                self.file(&shown, bytes, length, Some(line.span), section.as_deref());
                 self.fields = fields;
                 self.stack.pop();
             }
@@ -82,16 +85,28 @@ impl Reader<'_> {
         }
     }
 
-    /// Beside the including file, then in the further places.
-    fn find(&self, file: FileId, wanted: &Path) -> Found {
+    /// Beside the including file, then in the further places. Each place is asked once: files may name each other
+    /// very often.
+    fn find(&mut self, file: FileId, wanted: PathBuf) -> Found {
         let beside = Path::new(self.sources.name(file)).parent().unwrap_or(Path::new(""));
+        let key = (beside.to_owned(), wanted);
+        if let Some(known) = self.found.get(&key) {
+            return known.clone();
+        }
+        let found = self.look_for(&key.0, &key.1);
+        self.found.insert(key, found.clone());
+        found
+    }
+
+    fn look_for(&self, beside: &Path, wanted: &Path) -> Found {
         let mut outside = false;
         for place in std::iter::once(beside).chain(self.options.include_dirs.iter().map(PathBuf::as_path)) {
             let path = place.join(wanted);
             if !self.is_allowed(&path) {
                 outside = true;
             } else if self.loader.exists(&path) {
-                return Found::At(path);
+                let resolved = self.loader.resolve(&path);
+                return Found::At(path, resolved);
             }
         }
         if outside { Found::Outside } else { Found::Nowhere }
@@ -183,8 +198,11 @@ impl Reader<'_> {
         wanted: Option<&str>,
         from: Option<Span>,
     ) -> Vec<Cut> {
-        let text = self.text(file);
+        let text = self.sources.get(file).map_or("", |f| f.text.as_str());
         let sections = sections(text, &lines);
+        if let Some(opened) = self.stack.last_mut() {
+            opened.is_plain = sections.is_empty();
+        }
         if sections.is_empty() && wanted.is_none() {
             return lines;
         }

@@ -1,6 +1,7 @@
 //! Files to blocks: goes through the lines of each file, keeps elements and notes, and hands dot lines on.
 
 use super::dot::Next;
+use super::include::Found;
 use super::parsed::{Block, Parsed, Statement};
 use super::title::{reads_as_dot_line, reads_as_element};
 use crate::config::Options;
@@ -13,14 +14,25 @@ use std::path::{Path, PathBuf};
 /// Longest statement that is read, in bytes, its continuation lines included.
 pub(super) const LONGEST_STATEMENT: u32 = 1 << 20;
 
+/// A file that is being read.
+pub(super) struct Opened {
+    pub path: PathBuf,
+    /// The section asked for.
+    pub section: Option<String>,
+    /// It has no sections, so that all of it is read whatever was asked for.
+    pub is_plain: bool,
+}
+
 /// The work in progress.
 pub(super) struct Reader<'a> {
     pub loader: &'a mut dyn Loader,
     pub options: &'a Options,
     pub sources: Sources,
     pub parsed: Parsed,
-    /// Files that are being read, outermost first: their paths and the sections asked for.
-    pub stack: Vec<(PathBuf, Option<String>)>,
+    /// Files that are being read, outermost first.
+    pub stack: Vec<Opened>,
+    /// Where the files were found that were asked for from a folder.
+    pub found: FxHashMap<(PathBuf, PathBuf), Found>,
     /// Subcircuit definitions that are open, the root first.
     pub open: Vec<usize>,
     /// Included files must lie below this.
@@ -48,6 +60,7 @@ pub(super) fn read_files(
         sources: Sources::default(),
         parsed: Parsed::default(),
         stack: Vec::new(),
+        found: FxHashMap::default(),
         open: vec![0],
         boundary,
         fields: Fields::default(),
@@ -55,7 +68,7 @@ pub(super) fn read_files(
         told_words: FxHashSet::default(),
         counts: FxHashMap::default(),
     };
-    reader.stack.push((reader.loader.resolve(root), None));
+    reader.stack.push(Opened { path: reader.loader.resolve(root), section: None, is_plain: false });
     reader.file(root, bytes, length, None, None);
     super::told::tell_rest(&mut reader.parsed.findings, &reader.counts);
     Ok((reader.sources, reader.parsed))

@@ -186,6 +186,47 @@ fn includes_are_looked_up_and_confined() {
     assert_eq!(misread.trail.len(), 2);
 }
 
+/// Files in memory that count what is asked of them.
+#[derive(Default)]
+struct Counting {
+    files: Memory,
+    loads: usize,
+    asked: std::cell::Cell<usize>,
+}
+
+impl Loader for Counting {
+    fn load(&mut self, path: &Path) -> Result<Vec<u8>, LoadProblem> {
+        self.loads += 1;
+        self.files.load(path)
+    }
+    fn exists(&self, path: &Path) -> bool {
+        self.asked.set(self.asked.get() + 1);
+        self.files.exists(path)
+    }
+    fn resolve(&self, path: &Path) -> PathBuf {
+        self.asked.set(self.asked.get() + 1);
+        self.files.resolve(path)
+    }
+}
+
+#[test]
+fn a_file_that_asks_itself_for_ever_new_sections_is_read_once() {
+    let lines =
+        |range: std::ops::Range<u32>| range.map(|n| format!(".lib root.cir s{n}\n")).collect::<String>();
+    let mut loader = Counting::default();
+    loader.files.insert("root.cir", format!("t\nR1 a 0 1k\n{}", lines(0..100)));
+    let reading = read(&mut loader, Path::new("root.cir"), &Options::default()).unwrap();
+    assert_eq!((loader.loads, reading.circuit.elements.len()), (1, 1));
+    assert!(told(&reading).iter().all(|t| t.0 == "include-cycle"));
+    // sections of its own that ask for each other are read until the limit says no, and its place is looked up once
+    let sections: String = (0..12).map(|n| format!(".lib s{n}\n{}.endl\n", lines(0..12))).collect();
+    let mut loader = Counting::default();
+    loader.files.insert("root.cir", format!("t\n.lib root.cir s0\n{sections}"));
+    let reading = read(&mut loader, Path::new("root.cir"), &Options::default()).unwrap();
+    assert!(reading.findings.iter().any(|f| f.rule == "limit-reached"));
+    assert!(loader.asked.get() < 10, "{}", loader.asked.get());
+}
+
 #[test]
 fn include_directories_may_lie_anywhere() {
     let mut memory = Memory::with("a/root.cir", "t\n.include parts.inc\n");
