@@ -7,7 +7,7 @@ use super::line::Line;
 use super::parameter::Worth;
 use super::value::Quantity;
 use crate::finding::{Finding, Severity};
-use crate::syntax::Token;
+use crate::syntax::{Pair, Token};
 use crate::text::Span;
 
 impl Expander<'_> {
@@ -35,6 +35,7 @@ impl Expander<'_> {
         if let Some(token) = line.pair("ac") {
             source.ac = self.evaluate(line.at(token)).map(|v| v.number);
         }
+        self.tell_unread_pairs(line);
         while let Some(token) = line.word(at) {
             let word = line.str(token);
             if word.eq_ignore_ascii_case("dc") {
@@ -51,6 +52,9 @@ impl Expander<'_> {
                 let values = self.numbers(line, at + 1, limit)?;
                 let shape = self.shape(line, at, kind, &values)?;
                 source.shape = Some(self.repeated(line, shape));
+                if kind == "pwl" {
+                    self.judge_times(line, at + 1, &values);
+                }
                 at += 1 + values.len();
             } else if let Some(range) =
                 line.fields.decimal_comma(line.text, at).filter(|_| source.dc.is_none())
@@ -157,6 +161,54 @@ impl Expander<'_> {
 }
 
 impl Expander<'_> {
+    /// A sign before a time: some readers count such a time from the point before it.
+    fn judge_times(&mut self, line: &Line<'_>, first: usize, values: &[f64]) {
+        let times =
+            (2..values.len()).step_by(2).filter(|&n| values.get(n - 2).is_some_and(|before| *before != 0.0));
+        let signed = |n: &usize| line.word_str(first + n).starts_with('+');
+        let Some((token, value)) =
+            times.filter(signed).find_map(|n| Some((line.word(first + n)?, *values.get(n)?)))
+        else {
+            return;
+        };
+        let (name, text) = (line.word_str(0), line.str(token));
+        let message = format!(
+            "the time {text} of {name} counts from the beginning here, so it is {}; some readers count a time with a + \
+             from the point before it",
+            crate::finding::quantity(value, "s")
+        );
+        let finding = Finding::new("misread-value", Severity::Warning, line.at(token), message)
+            .label("counts from the beginning")
+            .about(self.here(name))
+            .help("Write the time from the beginning without a sign, so that every reader takes it alike.");
+        self.tell(finding);
+    }
+
+    /// Pairs that a source does not have here, in one finding.
+    fn tell_unread_pairs(&mut self, line: &Line<'_>) {
+        const READ: [&str; 7] = ["dc", "ac", "m", "r", "td", "temp", "tc"];
+        let is_unread = |p: &&Pair| !READ.iter().any(|key| line.str(p.key).eq_ignore_ascii_case(key));
+        let unread: Vec<Pair> = line.fields.pairs.iter().filter(is_unread).copied().collect();
+        let (Some(first), Some(last)) = (unread.first(), unread.last()) else { return };
+        let words: Vec<&str> = unread.iter().map(|p| line.str(p.key)).collect();
+        let name = line.word_str(0);
+        let verb = if words.len() == 1 { "is" } else { "are" };
+        let message =
+            format!("{} of the source {name} {verb} not read", super::semiconductor::shortened(&words));
+        let finding = Finding::new(
+            "surplus-word",
+            Severity::Note,
+            line.at(first.key).to(line.at(last.value)),
+            message,
+        )
+        .label("has no effect")
+        .about(self.here(name))
+        .help(
+            "If it stands for a part, such as a resistance inside of the source, give it a line of its own.",
+        );
+        self.tell(finding);
+    }
+
     /// `r=` behind points: from that time on they are gone through over and over. Below zero it means not at all.
     fn repeated(&mut self, line: &Line<'_>, shape: Shape) -> Shape {
         let Shape::Points(points) = shape else { return shape };
@@ -228,6 +280,11 @@ fn positive(value: f64, default: f64) -> f64 {
     if value > 0.0 { value } else { default }
 }
 
+/// The shape that a misspelt word comes nearest to.
+fn near_shape(word: &str) -> Option<&'static str> {
+    crate::text::nearest(word, ["SIN", "PULSE", "PWL", "EXP", "SFFM"])
+}
+
 fn shape_word(word: &str) -> Option<&'static str> {
     ["sin", "pulse", "pwl", "exp", "sffm"].into_iter().find(|s| word.eq_ignore_ascii_case(s))
 }
@@ -246,7 +303,10 @@ fn no_number(line: &Line<'_>, word: usize, place: &str) -> Problem {
             _ => format!("{} has {text} {place}, which is no number", line.word_str(0)),
         },
         reason: "a value that could not be read",
-        help: "Write a value, DC and a value, or a shape such as `SIN(0 5 50)`.".into(),
+        help: match near_shape(text) {
+            Some(near) => format!("Did you mean `{near}`?"),
+            None => "Write a value, DC and a value, or a shape such as `SIN(0 5 50)`.".into(),
+        },
     }
 }
 
@@ -261,11 +321,16 @@ fn no_text(line: &Line<'_>, token: Token) -> Problem {
 }
 
 fn too_few(line: &Line<'_>, at: usize, count: usize, given: usize) -> Problem {
+    let numbers = if given == 1 { "1 number" } else { &format!("{given} numbers") };
+    let stop = match line.word_str(at + 1 + given) {
+        "" => String::new(),
+        word => format!(" before {word}"),
+    };
     Problem {
         told: false,
         span: line.word(at).map_or(line.span, |t| line.at(t)),
         message: format!(
-            "the {} shape of {} has {given} numbers and needs at least {count}",
+            "the {} shape of {} has {numbers}{stop} and needs at least {count}",
             line.word_str(at),
             line.word_str(0)
         ),

@@ -4,8 +4,8 @@
 use super::behaviour::Behaviour;
 use super::expand::Expander;
 use super::line::Line;
-use crate::finding::{Finding, Severity};
-use crate::syntax::{self, TokenKind};
+use crate::finding::{Edit, Finding, Severity};
+use crate::syntax::{self, Behind, TokenKind};
 use crate::text::Span;
 
 impl Expander<'_> {
@@ -54,8 +54,33 @@ impl Expander<'_> {
         }
     }
 
-    /// Tells the words from number `first` on.
+    /// Tells the words from number `first` on, unless the first of them is a unit that stands apart from its value.
     pub(super) fn tell_surplus_from(&mut self, line: &Line<'_>, first: usize) {
+        match apart(line, first) {
+            Some(Apart::Scale(meant)) => self.tell_apart(line, first, &meant),
+            Some(Apart::Unit) if first + 1 < line.len() => self.tell_words(line, first + 1),
+            Some(Apart::Unit) => {}
+            None => self.tell_words(line, first),
+        }
+    }
+
+    /// A scale letter that a blank parts from its value, as in `4.7 k`.
+    fn tell_apart(&mut self, line: &Line<'_>, first: usize, meant: &str) {
+        let (Some(value), Some(scale)) = (line.word(first - 1), line.word(first)) else { return };
+        let (name, digits, letter) = (line.word_str(0), line.str(value), line.str(scale));
+        let span = line.at(value).to(line.at(scale));
+        let message = format!(
+            "the {letter} behind the {digits} of {name} stands apart from it, so the value is read as {digits}"
+        );
+        let finding = Finding::new("misread-value", Severity::Warning, span, message)
+            .label(format!("read as {digits}"))
+            .about(self.here(name))
+            .help(format!("Write `{meant}` if that is what was meant."))
+            .fix(format!("write `{meant}`"), vec![Edit { span, replacement: meant.to_owned() }]);
+        self.tell(finding);
+    }
+
+    fn tell_words(&mut self, line: &Line<'_>, first: usize) {
         let (Some(from), Some(last)) = (line.word(first), line.word(line.len().saturating_sub(1))) else {
             return;
         };
@@ -87,6 +112,32 @@ impl Expander<'_> {
         .about(self.here(name))
         .help(help);
         self.tell(finding);
+    }
+}
+
+/// What stands behind a value with a blank between.
+enum Apart {
+    /// A scale letter; the value as it was meant.
+    Scale(String),
+    /// A unit.
+    Unit,
+}
+
+/// Whether word `first` is a scale letter or a unit of the plain number before it, on the same line of text.
+fn apart(line: &Line<'_>, first: usize) -> Option<Apart> {
+    let (value, word) = (line.word(first.checked_sub(1)?)?, line.word(first)?);
+    let (digits, tail) = (line.str(value), line.str(word));
+    let is_near =
+        line.text.get(value.end as usize..word.start as usize)?.bytes().all(|b| matches!(b, b' ' | b'\t'));
+    let begins = tail.starts_with(|c: char| c.is_alphabetic() || matches!(c, '%' | '\u{b0}'));
+    let plain = syntax::number(digits.as_bytes()).filter(|n| n.length() == digits.len() && n.suffix == 0)?;
+    let whole = format!("{digits}{tail}");
+    let joined =
+        syntax::number(whole.as_bytes()).filter(|n| is_near && begins && n.digits == plain.digits)?;
+    match (syntax::behind(&whole, joined), joined.suffix) {
+        (Behind::Unit(_), 0) => Some(Apart::Unit),
+        (Behind::Nothing | Behind::Unit(_), 1..) if !joined.letter_code => Some(Apart::Scale(whole)),
+        _ => None,
     }
 }
 

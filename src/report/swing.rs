@@ -12,6 +12,9 @@ use crate::swing::{DiodeSwing, Level, OverTime, Swing};
 /// Running text is broken at this width.
 const WIDTH: usize = 96;
 
+/// A current or power beneath this share of the greatest of its kind is rounding.
+const ROUNDING: f64 = 1e-9;
+
 /// Nodes that are listed unless a note watches them.
 const MOST_NODES: usize = 12;
 
@@ -68,7 +71,7 @@ fn resting(swing: &Swing, cases: usize) -> String {
     let rest = match (swing.diodes.is_empty(), carries, cases) {
         (true, _, _) => "there is no diode whose current could move.",
         (_, false, _) => "no diode carries a forward current in any condition.",
-        (_, true, 0 | 1) => "no range is declared (`*@ range VIN 9 16`), so that this is the only condition:",
+        (_, true, 0 | 1) => "no range is declared (`*@ range VIN 9 16`), so this is the only condition:",
         (_, true, _) => "what follows are the ranges over the conditions.",
     };
     format!("No source moves, so nothing happens over time; {rest}")
@@ -82,20 +85,25 @@ fn diodes_over_time(page: &mut Page, circuit: &Circuit, swing: &Swing) {
     }
     let head =
         ["diode", "conducts", "mean", "rms", "peak", "5 % … 95 % of charge", "decades", "reverse", "power"];
+    let largest = told.iter().map(|(_, time)| time.current_peak.max(time.reverse_peak)).fold(0.0, f64::max);
+    // rounding of the largest is no answer about the others
+    let settle = |value: f64, largest: f64| if value.abs() < ROUNDING * largest { 0.0 } else { value };
+    let powers = || told.iter().map(|(_, time)| (time.energy / swing.window).abs());
+    let most_power = powers().fold(0.0, f64::max);
     let rows: Vec<Vec<Cell>> = told
         .iter()
         .map(|(diode, time)| {
             let mut cells = vec![
                 Cell::word(clean(&circuit.element_name(diode.element))),
                 share(time),
-                figure(time.current_mean, "A").into(),
-                figure(time.current_rms, "A").into(),
+                figure(settle(time.current_mean, largest), "A").into(),
+                figure(settle(time.current_rms, largest), "A").into(),
                 peak(time),
             ];
             cells.push(time.charge_span.map_or_else(Cell::default, |(low, high)| span(low, high)));
             cells.push(time.decades.map_or_else(Cell::default, |d| Cell::word(format!("{d:.2}"))));
             cells.push(figure(time.peak_reverse_voltage, "V").into());
-            cells.push(figure(time.energy / swing.window, "W").into());
+            cells.push(figure(settle(time.energy / swing.window, most_power), "W").into());
             cells
         })
         .collect();

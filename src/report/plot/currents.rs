@@ -98,8 +98,10 @@ impl Currents {
             root.draw(&PathElement::new(vec![(x, y - 10), (x, y + 5)], CONDUCTING.stroke_width(2)))?;
         }
         if let Some((low, high)) = row.cases {
-            let right = self.x(high).max(self.x(low) + 3);
-            root.draw(&Rectangle::new([(self.x(low), y + 5), (right, y + 8)], CASES.filled()))?;
+            // one value is a dot that can be seen
+            let widen = (6 - (self.x(high) - self.x(low))).max(0) / 2;
+            let ends = [(self.x(low) - widen, y + 5), (self.x(high) + widen, y + 8)];
+            root.draw(&Rectangle::new(ends, CASES.filled()))?;
         }
         Ok(())
     }
