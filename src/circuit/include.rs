@@ -4,7 +4,7 @@ use super::line::Line;
 use super::read::{Opened, Reader, load};
 use crate::finding::{Finding, Severity};
 use crate::syntax::{Line as Cut, LineKind, Token};
-use crate::text::{FileId, Span};
+use crate::text::{FileId, Span, nearest};
 use std::path::{Component, Path, PathBuf};
 
 /// Files within files.
@@ -27,8 +27,8 @@ impl Reader<'_> {
     /// `include-line = ".include" path`
     pub(super) fn include_line(&mut self, line: &Line<'_>) {
         match line.word(1) {
-            Some(token) => self.include(line, token, None),
-            None => self.tell_no_path(line),
+            Some(token) if !path_text(line, token).0.is_empty() => self.include(line, token, None),
+            _ => self.tell_no_path(line),
         }
     }
 
@@ -36,8 +36,8 @@ impl Reader<'_> {
     pub(super) fn lib_line(&mut self, line: &Line<'_>) {
         let section = line.word(2).map(|t| unquoted(line.str(t)).to_owned());
         match line.word(1) {
-            Some(token) => self.include(line, token, section),
-            None => self.tell_no_path(line),
+            Some(token) if !path_text(line, token).0.is_empty() => self.include(line, token, section),
+            _ => self.tell_no_path(line),
         }
     }
 
@@ -217,6 +217,7 @@ impl Reader<'_> {
             // a plain file: all of it is meant
             return lines;
         }
+        let names: Vec<String> = sections.iter().map(|s| s.0.to_owned()).collect();
         let path = self.sources.name(file).to_owned();
         let span = from.unwrap_or(Span::new(file, 0, 0));
         let finding = Finding::new(
@@ -227,7 +228,10 @@ impl Reader<'_> {
         )
         .label("nothing read")
         .about(name)
-        .help("Correct the section's name.");
+        .help(match nearest(name, names.iter().map(String::as_str)) {
+            Some(near) => format!("Did you mean `{near}`?"),
+            None => format!("It has {}.", crate::finding::list(&names, 8)),
+        });
         self.missing(finding);
         Vec::new()
     }

@@ -34,6 +34,13 @@ impl Old {
         if !old.exists() {
             return Err(format!("{}: there is no such file or directory", old.display()));
         }
+        if old.is_file() && root.is_dir() {
+            return Err(format!(
+                "{}: it is a file, and {} is a directory; give --against the older directory, or saved findings as .json",
+                old.display(),
+                root.display()
+            ));
+        }
         for (job, options) in jobs.iter().zip(options) {
             let label = label(&job.path, root);
             let path = if old.is_dir() { beside(old, &label, &job.path) } else { old.to_path_buf() };

@@ -207,6 +207,7 @@ fn troubles_with_files_are_told_in_plain_words() {
         (&["annotate", "."], ".: it is a directory, which can only be written or verified"),
         (&["compare", "a.net", "gone.net"], "gone.net: there is no such file"),
         (&["check", "a.net/b.net"], "a.net/b.net: a part of its path is a file and no directory"),
+        (&["check", ".", "--against", "a.net"], "a.net: it is a file, and . is a directory"),
         (&["check", "a.net", "--config", "gone.toml"], "gone.toml: there is no such file"),
         (&["check", "a.net", "--against", "latin.json"], "latin.json: it is no text in UTF-8"),
         (

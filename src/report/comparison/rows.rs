@@ -115,7 +115,7 @@ fn share(old: f64, new: f64) -> f64 {
 }
 
 impl Moved<'_> {
-    /// `+12 %`, `× 3.2`, `reversed`
+    /// `+12 %`, `× 3.2`, `÷ 3.6`, `reversed`
     pub fn change(&self) -> String {
         let ratio = self.new / self.old;
         if self.old == 0.0 {
@@ -127,8 +127,11 @@ impl Moved<'_> {
         if ratio < 0.0 {
             return "reversed".into();
         }
-        if !(0.5..2.0).contains(&ratio) {
+        if ratio >= 2.0 {
             return format!("× {}", compact(ratio, ""));
+        }
+        if ratio < 0.5 {
+            return format!("÷ {}", compact(1.0 / ratio, ""));
         }
         format!("{:+.0} %", 100.0 * (ratio - 1.0))
     }
