@@ -264,7 +264,7 @@ impl<'a> Expander<'a> {
             scope,
             letter,
             statement: line.span,
-            name_span: line.head(),
+            name_at: u16::try_from(line.head().start - line.span.start).unwrap_or(0),
             behaviour,
             first_pin: u32::try_from(first_pin).unwrap_or(NONE),
             pin_count: u32::try_from(pin_count).unwrap_or(NONE),
@@ -314,16 +314,15 @@ impl<'a> Expander<'a> {
     }
 
     fn tell_duplicate(&mut self, first: ElementId, second: ElementId) {
-        let (first, second) = (self.circuit.element(first), self.circuit.element(second));
-        let name = self.circuit.text(second.name).to_owned();
+        let name = self.circuit.text(self.circuit.element(second).name).to_owned();
         let finding = Finding::new(
             "duplicate-name",
             Severity::Error,
-            second.name_span,
+            self.circuit.name_span(second),
             format!("{name} is the name of two elements"),
         )
         .label("the second of that name")
-        .also(first.name_span, "the first of that name")
+        .also(self.circuit.name_span(first), "the first of that name")
         .about(self.here(&name))
         .help("Rename one of them: other tools refuse the file or drop one of the two without a word.");
         self.tell(finding);

@@ -63,10 +63,10 @@ pub struct Element {
     pub letter: u8,
     /// Its whole statement (all its continuation lines).
     pub statement: Span,
-    /// The name at the head of the statement.
-    pub name_span: Span,
     /// What it does.
     pub behaviour: Behaviour,
+    /// Bytes between the beginning of the statement and its name: commas and brackets count for nothing.
+    pub(crate) name_at: u16,
     pub(crate) first_pin: u32,
     pub(crate) pin_count: u32,
 }
@@ -165,6 +165,14 @@ impl Circuit {
     /// All elements with their numbers.
     pub fn elements(&self) -> impl DoubleEndedIterator<Item = (ElementId, &Element)> + ExactSizeIterator {
         self.elements.iter().enumerate().map(|(n, e)| (ElementId::new(n), e))
+    }
+
+    /// The name at the head of the element's statement; not kept, since its text tells its length.
+    pub fn name_span(&self, id: ElementId) -> Span {
+        let Element { name, statement, name_at, .. } = self.element(id);
+        let length = u32::try_from(self.text(*name).len()).unwrap_or(u32::MAX);
+        let start = statement.start + u32::from(*name_at);
+        Span { file: statement.file, start, end: start.saturating_add(length).min(statement.end) }
     }
 
     /// The element's pins in the order of its line (for a diode: anode, cathode).

@@ -143,7 +143,7 @@ impl Expander<'_> {
         let mut seen = rustc_hash::FxHashSet::default();
         spans.retain(|(span, _)| seen.insert(self.sources.slice(*span).to_ascii_lowercase()));
         let Some((&(first, id), rest)) = spans.split_first() else { return };
-        let is_bare = |&(span, id): &(Span, ElementId)| self.circuit.element(id).name_span == span;
+        let is_bare = |&(span, id): &(Span, ElementId)| self.circuit.name_span(id) == span;
         let label = |place: &(Span, ElementId)| if is_bare(place) { "names no model" } else { "not defined" };
         let names = |bare: bool| -> Vec<&str> {
             spans.iter().filter(|place| is_bare(place) == bare).map(|(s, _)| self.sources.slice(*s)).collect()

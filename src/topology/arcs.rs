@@ -3,6 +3,7 @@
 //! connected components of it lies in no directed loop but in a directed cut, so it never carries forward
 //! current whatever the values are (colouring lemma: Minty 1960).
 
+use super::adjacent::Adjacent;
 use super::groups::{Groups, Joints};
 use super::links::is_one_way;
 use super::touching::Touching;
@@ -97,7 +98,9 @@ impl Bridges {
     /// Depth-first search with the least entry number that a subtree reaches (Tarjan 1974), without recursion.
     fn of(graph: &DiGraph<(), ElementId>, loose: &[u32], ground: usize) -> Self {
         let count = graph.node_count();
-        let adjacent = Adjacent::of(graph);
+        let ends =
+            |edge| graph.edge_endpoints(edge).map_or((0, 0), |(a, b)| (a.index() as u32, b.index() as u32));
+        let adjacent = Adjacent::of(count, graph.edge_indices().map(ends));
         let mut verdict = vec![(false, false); graph.edge_count()];
         let mut entry = vec![u32::MAX; count];
         let mut low = vec![u32::MAX; count];
@@ -144,40 +147,5 @@ impl Bridges {
             }
         }
         Bridges { verdict }
-    }
-}
-
-/// Neighbours and edge numbers by node, both directions.
-struct Adjacent {
-    starts: Vec<u32>,
-    pairs: Vec<(u32, u32)>,
-}
-
-impl Adjacent {
-    fn of(graph: &DiGraph<(), ElementId>) -> Self {
-        let mut starts = vec![0u32; graph.node_count() + 1];
-        let ends = |edge| graph.edge_endpoints(edge).map_or((0, 0), |(a, b)| (a.index(), b.index()));
-        for edge in graph.edge_indices() {
-            let (a, b) = ends(edge);
-            starts[a + 1] += 1;
-            starts[b + 1] += 1;
-        }
-        for n in 1..starts.len() {
-            starts[n] += starts[n - 1];
-        }
-        let mut next = starts.clone();
-        let mut pairs = vec![(0, 0); 2 * graph.edge_count()];
-        for edge in graph.edge_indices() {
-            let (a, b) = ends(edge);
-            for (from, to) in [(a, b), (b, a)] {
-                pairs[next[from] as usize] = (to as u32, edge.index() as u32);
-                next[from] += 1;
-            }
-        }
-        Adjacent { starts, pairs }
-    }
-
-    fn of_node(&self, node: usize) -> &[(u32, u32)] {
-        &self.pairs[self.starts[node] as usize..self.starts[node + 1] as usize]
     }
 }

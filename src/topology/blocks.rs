@@ -2,6 +2,7 @@
 //! touch in one node, so a block without a source carries none at all, and an element that is a block of its own (a
 //! bridge) carries none either.
 
+use super::adjacent::Adjacent;
 use super::cuts::coupled_coils;
 use super::links::{is_opaque, links};
 use super::noted::Noted;
@@ -81,11 +82,7 @@ pub(super) fn unfed(circuit: &Circuit, noted: &Noted) -> Vec<Unfed> {
 /// The blocks as lists of edge numbers: depth-first search with the least entry number that a subtree reaches (Hopcroft
 /// and Tarjan 1973), without recursion; parallel edges are told apart by their numbers.
 fn blocks(count: usize, edges: &[Edge]) -> Vec<Vec<u32>> {
-    let mut around: Vec<Vec<(u32, u32)>> = vec![Vec::new(); count];
-    for (number, edge) in edges.iter().enumerate() {
-        around[edge.ends.0 as usize].push((edge.ends.1, number as u32));
-        around[edge.ends.1 as usize].push((edge.ends.0, number as u32));
-    }
+    let around = Adjacent::of(count, edges.iter().map(|edge| edge.ends));
     let mut entry = vec![u32::MAX; count];
     let mut low = vec![u32::MAX; count];
     let mut clock = 0;
@@ -104,7 +101,7 @@ fn blocks(count: usize, edges: &[Edge]) -> Vec<Vec<u32>> {
                 low[at] = clock;
                 clock += 1;
             }
-            if let Some(&(to, edge)) = around[at].get(*next) {
+            if let Some(&(to, edge)) = around.of_node(at).get(*next) {
                 *next += 1;
                 let to = to as usize;
                 if edge == by {

@@ -2,6 +2,7 @@
 //! node, islands, what holds a node, loops of voltages, one-way reachability, names alike. Facts only: whether
 //! one is a mistake is for `rules` to say. All in linear time and without recursion.
 
+mod adjacent;
 mod arcs;
 mod blocks;
 mod cuts;
@@ -83,6 +84,7 @@ impl Wiring {
         let loops = loops::loops(circuit, &potentials);
         let one_way = OneWay::of(circuit, &joints, &touching, false);
         let steady = OneWay::of(circuit, &joints, &touching, true);
+        drop(joints); // what comes needs its room
         let unfed = blocks::unfed(circuit, &noted);
         let rails = Rails::of(circuit, &noted);
         let driven = ports::driven(circuit, &touching, &rails);

@@ -1,6 +1,7 @@
 //! Nodes that voltage sources hold against ground, along chains of sources: rails. What they are worth in a condition is
 //! summed along the chain; the values themselves are the caller's.
 
+use super::adjacent::Adjacent;
 use super::noted::Noted;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 
@@ -15,6 +16,13 @@ enum Hold {
     Driven,
 }
 
+/// What holds voltages, by node.
+struct Around<'a> {
+    circuit: &'a Circuit,
+    sources: &'a [ElementId],
+    around: &'a Adjacent,
+}
+
 /// All rails. Ground is one.
 #[derive(Debug, Clone, Default)]
 pub struct Rails {
@@ -26,8 +34,7 @@ pub struct Rails {
 impl Rails {
     pub(super) fn of(circuit: &Circuit, noted: &Noted) -> Self {
         let count = circuit.nodes.len().max(1);
-        let mut around: Vec<Vec<(NodeId, ElementId, bool)>> = vec![Vec::new(); count];
-        let mut driven = Vec::new();
+        let (mut sources, mut driven) = (Vec::new(), Vec::new());
         for (id, element) in circuit.elements() {
             let (a, b) = (circuit.node(id, 0), circuit.node(id, 1));
             match &element.behaviour {
@@ -39,9 +46,11 @@ impl Rails {
                 }
                 _ => continue,
             }
-            around[a.index()].push((b, id, false));
-            around[b.index()].push((a, id, true));
+            sources.push(id);
         }
+        let ends = |&id: &ElementId| (circuit.node(id, 0).0, circuit.node(id, 1).0);
+        let around = Adjacent::of(count, sources.iter().map(ends));
+        let around = Around { circuit, sources: &sources, around: &around };
         let mut rails = Rails { holds: vec![None; count], order: Vec::new() };
         rails.holds[0] = Some(Hold::Supply);
         let mut open = vec![NodeId::GROUND];
@@ -61,13 +70,15 @@ impl Rails {
         rails
     }
 
-    fn spread(&mut self, around: &[Vec<(NodeId, ElementId, bool)>], mut open: Vec<NodeId>) {
+    fn spread(&mut self, around: &Around<'_>, mut open: Vec<NodeId>) {
         while let Some(node) = open.pop() {
             self.order.push(node);
-            for &(next, id, forward) in &around[node.index()] {
-                if self.holds[next.index()].is_none() {
-                    self.holds[next.index()] = Some(Hold::Element { id, forward: !forward, from: node });
-                    open.push(next);
+            for &(next, number) in around.around.of_node(node.index()) {
+                if self.holds[next as usize].is_none() {
+                    let id = around.sources[number as usize];
+                    let forward = around.circuit.node(id, 0) == node;
+                    self.holds[next as usize] = Some(Hold::Element { id, forward, from: node });
+                    open.push(NodeId(next));
                 }
             }
         }

@@ -58,7 +58,9 @@ fn assert_places(analysis: &Analysis) {
     }
     for (id, element) in analysis.circuit.elements() {
         assert_inside(sources, element.statement, "a statement");
-        assert_inside(sources, element.name_span, "a name");
+        let name = analysis.circuit.name_span(id);
+        assert_inside(sources, name, "a name");
+        assert!(sources.slice(name).eq_ignore_ascii_case(analysis.circuit.text(element.name)));
         for pin in analysis.circuit.pins(id) {
             assert_inside(sources, pin.span, "a node");
         }
