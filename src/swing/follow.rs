@@ -121,14 +121,13 @@ fn one_part(pass: &Pass<'_>, basis: &Basis, shown: &Shown, part: &PartList, swin
     }
 }
 
-/// Enters why a part was not followed; nobody knows then whether everything comes back.
+/// Enters why a part was not followed; whether the others come back is theirs to say.
 fn give_up(part: &PartList, reason: &str, swing: &mut Swing) {
     for id in &part.elements {
         if let Ok(at) = swing.diodes.binary_search_by_key(id, |d| d.element) {
             swing.diodes[at].not_evaluated = Some(reason.to_owned());
         }
     }
-    swing.periodic = false;
 }
 
 /// Nodes whose waveforms are kept: those that notes watch, else some where a diode meets a capacitor.

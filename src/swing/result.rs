@@ -15,7 +15,7 @@ pub struct Swing {
     pub start: f64,
     /// Length of that window in seconds; 0 where nothing moves.
     pub window: f64,
-    /// Whether the window repeats itself: every part ends it as it began it.
+    /// Whether the window repeats itself: every part that was followed ends it as it began it.
     pub periodic: bool,
     /// Why the run was cut short, or did not reach the periodic state, where so; a whole sentence.
     pub cut_short: Option<String>,

@@ -17,6 +17,11 @@ const TOLERANCE: f64 = 4e-9;
 /// The same in large systems, where a step costs much.
 const COARSE_TOLERANCE: f64 = 1e-6;
 
+/// Periods from which the work of all is reckoned up, and what share of what is allowed that may seem to be: a state that
+/// settles takes fewer steps.
+const TRIED_PERIODS: f64 = 8.0;
+const ROOM: f64 = 1.5;
+
 const MANY_PERIODS: &str = "the span asked for holds too many periods to walk through all of them, so the periodic state was sought instead";
 const NOT_PERIODIC: &str = "the periodic state was not reached within the work that was allowed";
 const MANY_CORNERS: &str = "sources have more edges in the time looked at than are kept apart, so that narrow pulses may have been stepped over";
@@ -139,7 +144,7 @@ impl Road<'_> {
         let all = self.pass.budget;
         // where the periodic state can be sought instead, half is left for that
         self.budget = if timing.period.is_some() { all / 2 } else { all };
-        let mut end = self.walk(march, timing.first, from, None);
+        let mut end = self.walk_up(march, timing.first, from);
         if end == End::Spent && timing.period.is_some() {
             approach.cut_short = Some(MANY_PERIODS);
             end = End::Done;
@@ -168,6 +173,30 @@ impl Road<'_> {
         }
         self.fail(end)?;
         Ok(approach)
+    }
+
+    /// From one time to another where a period ends. Where the first of many periods show that all of them would take more
+    /// than is allowed, it ends as if that were spent already.
+    fn walk_up(&mut self, march: &mut March, from: f64, to: f64) -> End {
+        let timing = self.pass.timing;
+        let periods = timing.period.map_or(0.0, |period| ((to - from) / period).floor());
+        if periods < 4.0 * TRIED_PERIODS {
+            return self.walk(march, from, to, None);
+        }
+        let after = |walked: f64| to - (periods - walked) * timing.period.unwrap_or(0.0);
+        let (first, second) = (after(TRIED_PERIODS), after(2.0 * TRIED_PERIODS));
+        // the first ones cost more, since what is prepared for them is kept for the rest
+        let mut end = self.walk(march, from, first, None);
+        let before = march.work();
+        if end == End::Done {
+            end = self.walk(march, first, second, None);
+        }
+        let each = (march.work() - before) as f64 / TRIED_PERIODS;
+        match end {
+            End::Done if each * periods > ROOM * self.budget as f64 => End::Spent,
+            End::Done => self.walk(march, second, to, None),
+            end => end,
+        }
     }
 
     fn window(&mut self, march: &mut March, watched: Vec<usize>, approach: Approach) -> Result<Ran, String> {
