@@ -47,9 +47,12 @@ pub fn run(console: &mut Console, command: &Check) -> Result<End, String> {
         console.say("ended by Ctrl-C");
         failed = true;
     }
+    let mut sieve = Sieve { command, old: old.as_mut(), fails: false };
+    let mut records = shelf.records();
+    // what the settings say stands before what they are used for
+    records.iter_mut().for_each(|record| sieve.settings(record));
     let included = included(&wanted.jobs, &outcomes);
-    let (mut records, mut told) = (Vec::new(), Told::default());
-    let mut fails = false;
+    let mut told = Told::default();
     for (n, (job, outcome)) in wanted.jobs.iter().zip(outcomes).enumerate() {
         match outcome {
             Err(problem) => {
@@ -59,29 +62,43 @@ pub fn run(console: &mut Console, command: &Check) -> Result<End, String> {
             Ok(_) if included.contains(&n) => {}
             Ok(mut record) => {
                 told.keep_new(&mut record);
-                if let Some(old) = &mut old {
-                    old.sift(&mut record, job);
-                }
-                let mut own = Summary::default();
-                own.add(&record);
-                fails |= command.common.fails_on(settings[n].as_deref(), own.worst());
+                sieve.file(&mut record, job, settings[n].as_deref());
                 records.push(record);
             }
         }
     }
-    let mut settings_records = shelf.records();
-    for record in &mut settings_records {
-        if let Some(old) = &mut old {
-            old.sift_settings(record);
-        }
-        let mut own = Summary::default();
-        own.add(record);
-        fails |= command.common.fails_on(None, own.worst());
-    }
-    // what the settings say stands before what they are used for
-    records.splice(0..0, settings_records);
+    let fails = sieve.fails;
     failed |= !show(console, command, &records);
     Ok(End::of(!failed, fails))
+}
+
+/// Takes out of what was found what an older state has already, and sees whether the rest makes the run fail.
+struct Sieve<'a> {
+    command: &'a Check,
+    old: Option<&'a mut Old>,
+    fails: bool,
+}
+
+impl Sieve<'_> {
+    fn file(&mut self, record: &mut Record, job: &Job, settings: Option<&Found>) {
+        if let Some(old) = &mut self.old {
+            old.sift(record, job);
+        }
+        self.judge(record, settings);
+    }
+
+    fn settings(&mut self, record: &mut Record) {
+        if let Some(old) = &mut self.old {
+            old.sift_settings(record);
+        }
+        self.judge(record, None);
+    }
+
+    fn judge(&mut self, record: &Record, settings: Option<&Found>) {
+        let mut own = Summary::default();
+        own.add(record);
+        self.fails |= self.command.common.fails_on(settings, own.worst());
+    }
 }
 
 /// Analyses all files at once.

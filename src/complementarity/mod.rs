@@ -20,6 +20,7 @@ mod idle;
 mod interior;
 mod laplacian;
 mod linear;
+mod lower;
 mod mesh;
 mod network;
 mod openness;

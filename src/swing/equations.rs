@@ -254,39 +254,17 @@ impl<'a> Writer<'a> {
             Behaviour::Capacitor { farads, .. } => self.capacitor(id, farads.number),
             Behaviour::Inductor { henries, .. } => self.inductor(id, henries.number),
             Behaviour::Coupling { .. } => Ok(()),
-            Behaviour::VoltageSource(_) => {
-                let (across, value) = (self.across(id), self.given.source(id));
-                let value = self.local(value);
-                self.voltage(id, &across, &value, 0.0);
-                Ok(())
-            }
-            Behaviour::CurrentSource(_) => {
-                let (across, value) = (self.across(id), self.given.source(id));
-                let value = self.local(value);
-                self.push(&across, &value);
+            Behaviour::VoltageSource(_) | Behaviour::CurrentSource(_) => {
+                self.source(id);
                 Ok(())
             }
             Behaviour::Diode { .. } => self.diode(id),
             Behaviour::VoltageByVoltage { gain } => {
-                let (across, gain) = (self.across(id), gain.number);
-                let control = self.between(circuit.node(id, 2), circuit.node(id, 3));
-                self.system.one_sided = true;
-                let row = self.voltage(id, &across, &scaled(&control, gain), 0.0);
-                for &(col, factor) in &control.unknowns {
-                    self.system.entries.push((row, col, -gain * factor));
-                }
+                self.voltage_by_voltage(id, gain.number);
                 Ok(())
             }
             Behaviour::CurrentByVoltage { gain } => {
-                let (across, gain) = (self.across(id), gain.number);
-                let control = self.between(circuit.node(id, 2), circuit.node(id, 3));
-                self.system.one_sided = true;
-                for &(row, a) in &across.unknowns {
-                    for &(col, b) in &control.unknowns {
-                        self.system.entries.push((row, col, gain * a * b));
-                    }
-                }
-                self.push(&across, &Affine { unknowns: Vec::new(), ..scaled(&control, gain) });
+                self.current_by_voltage(id, gain.number);
                 Ok(())
             }
             Behaviour::VoltageByCurrent { .. } => {
@@ -306,6 +284,41 @@ impl<'a> Writer<'a> {
                 Err(format!("{} is not evaluated: {reason}", circuit.element_name(id)))
             }
         }
+    }
+
+    fn source(&mut self, id: ElementId) {
+        let (across, value) = (self.across(id), self.given.source(id));
+        let value = self.local(value);
+        if matches!(self.circuit.element(id).behaviour, Behaviour::CurrentSource(_)) {
+            self.push(&across, &value);
+        } else {
+            self.voltage(id, &across, &value, 0.0);
+        }
+    }
+
+    fn voltage_by_voltage(&mut self, id: ElementId, gain: f64) {
+        let (across, control) = (self.across(id), self.control(id));
+        self.system.one_sided = true;
+        let row = self.voltage(id, &across, &scaled(&control, gain), 0.0);
+        for &(col, factor) in &control.unknowns {
+            self.system.entries.push((row, col, -gain * factor));
+        }
+    }
+
+    fn current_by_voltage(&mut self, id: ElementId, gain: f64) {
+        let (across, control) = (self.across(id), self.control(id));
+        self.system.one_sided = true;
+        for &(row, a) in &across.unknowns {
+            for &(col, b) in &control.unknowns {
+                self.system.entries.push((row, col, gain * a * b));
+            }
+        }
+        self.push(&across, &Affine { unknowns: Vec::new(), ..scaled(&control, gain) });
+    }
+
+    /// What a controlled source listens to: the voltage between its third and fourth node.
+    fn control(&mut self, id: ElementId) -> Affine {
+        self.between(self.circuit.node(id, 2), self.circuit.node(id, 3))
     }
 
     /// A given current along `across`.

@@ -2,6 +2,7 @@
 //! again, so that factors can be kept; a change of modes is closed in upon until it lies within the finest step, which
 //! is then an implicit Euler step with modes of its own.
 
+use super::pace::Pace;
 use super::settle::Slack;
 use super::solver::{Answer, Solver};
 use super::system::{Cell, Mode};
@@ -13,17 +14,11 @@ pub(super) const GAMMA: f64 = 1.0 - std::f64::consts::FRAC_1_SQRT_2;
 /// expansion of its stability function), doubled, over 0.586, since the first stage is of first order only.
 const ERROR: f64 = 0.138;
 
-/// A step is doubled where its error is below this share of what is allowed: an eighth, and some room.
-const ROOM: f64 = 0.1;
-
 /// Share of the largest voltage or current that a test may miss.
 const SLACK: f64 = 1e-9;
 
 /// A current beyond this is one that nothing limits, amperes.
 const UNLIMITED: f64 = 1e6;
-
-/// Finest steps in a row after which a coarser one may carry a change.
-const CROWD: u32 = 48;
 
 /// What the inputs are worth.
 pub(crate) trait Drive {
@@ -215,41 +210,26 @@ impl March {
         mut observer: Option<&mut dyn Observer>,
         limits: &Limits<'_>,
     ) -> End {
-        let finest = segment.finest.clamp(1, 40);
-        let ticks = 1u64 << finest;
-        let (mut at, mut level) = (0u64, (segment.coarsest + 8).min(finest));
-        let (mut jump_level, mut crowd) = (finest, 0u32);
-        let mut must_jump = true;
-        let clock = Clock { segment, ticks };
+        let mut pace = Pace::of(&segment);
+        let clock = Clock { segment, ticks: pace.ticks };
         self.has_rates = false;
-        while at < ticks {
+        while pace.at < pace.ticks {
             if self.steps & 63 == 0 && (limits.is_cancelled)() {
                 return End::Cancelled;
             }
             if self.work() > limits.budget {
                 return End::Spent;
             }
-            let jump_size = 1u64 << (finest - jump_level);
-            if must_jump {
-                let size = jump_size.min(ticks - at);
-                if let Err(end) =
-                    self.jump(clock.time(at), clock.length(size), drive, observer.as_deref_mut())
-                {
+            let (size, from) = (pace.size(), clock.time(pace.at));
+            let length = clock.length(size);
+            if pace.must_jump {
+                if let Err(end) = self.jump(from, length, drive, observer.as_deref_mut()) {
                     return end;
                 }
-                at += size;
-                crowd += 1;
-                if crowd > CROWD && jump_level > segment.coarsest {
-                    (jump_level, crowd) = (jump_level - 1, 0);
-                }
-                must_jump = false;
-                // back onto the grid with the longest step that it allows, at most the last one's
-                level = jump_level.max(finest - (at.trailing_zeros()).min(finest));
+                pace.jumped(size);
                 continue;
             }
-            let size = 1u64 << (finest - level);
-            let (from, length) = (clock.time(at), clock.length(size));
-            match self.attempt(from, length, drive, limits.tolerance, level < finest) {
+            match self.attempt(from, length, drive, limits.tolerance, pace.can_halve()) {
                 Tried::Kept(error) => {
                     if let Some(observer) = observer.as_deref_mut() {
                         self.show(from, length, observer);
@@ -257,27 +237,13 @@ impl March {
                     if let Some(end) = self.keep(length) {
                         return end;
                     }
-                    at += size;
-                    if level <= segment.coarsest + 2 {
-                        (jump_level, crowd) = (finest, 0);
-                    }
-                    if error <= ROOM && level > segment.coarsest && at.is_multiple_of(2 * size) {
-                        level -= 1;
-                    }
-                }
-                Tried::Coarse => {
-                    self.rejected += 1;
-                    level += 1;
-                }
-                Tried::Changed if level < jump_level => {
-                    self.rejected += 1;
-                    level += 1;
-                }
-                Tried::Changed => {
-                    self.rejected += 1;
-                    must_jump = true;
+                    pace.kept(size, error);
                 }
                 Tried::Unsolved => return End::Unsolved,
+                tried @ (Tried::Coarse | Tried::Changed) => {
+                    self.rejected += 1;
+                    pace.rejected(matches!(tried, Tried::Changed));
+                }
             }
         }
         End::Done

@@ -8,6 +8,7 @@
 mod dense;
 mod march;
 mod orbit;
+mod pace;
 mod settle;
 mod solver;
 mod sparse;

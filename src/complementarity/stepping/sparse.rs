@@ -1,12 +1,9 @@
-//! A stage of a large system: the symmetric matrix is factored as LDLᵀ (faer) with a small shift on its diagonal, which
+//! A stage of a large system: the symmetric matrix is factored as LDLᵀ with a small shift on its diagonal, which
 //! refinement takes back. Its pattern never changes, so it is ordered once.
 
+use super::super::lower::{Kind, Lower};
 use super::solver::Pattern;
 use super::system::{Mode, System, TIE};
-use faer::dyn_stack::{MemBuffer, MemStack};
-use faer::sparse::linalg::cholesky as ch;
-use faer::sparse::{SparseColMatRef, SymbolicSparseColMatRef};
-use faer::{Conj, MatMut, Par, Side};
 
 /// Pattern number and length of the stage.
 type Key = (u32, u64);
@@ -24,24 +21,17 @@ const REFINED: f64 = 1e-11;
 
 /// Pattern, order and numbers.
 pub(super) struct Sparse {
-    n: usize,
+    matrix: Lower,
     is_current: Vec<bool>,
-    col_ptr: Vec<usize>,
-    row_idx: Vec<usize>,
     /// Place of each entry, in the order in which the system tells them; upper ones have none.
     slots: Vec<u32>,
     diagonal: Vec<usize>,
-    symbolic: ch::SymbolicCholesky<usize>,
     /// Numbers of the matrix as it is.
     values: Vec<f64>,
     values_key: Option<Key>,
     factors: Vec<(Key, Vec<f64>)>,
-    memory: MemBuffer,
-    solve_memory: MemBuffer,
     residual: Vec<f64>,
 }
-
-const NOWHERE: u32 = u32::MAX;
 
 impl Sparse {
     pub(super) fn new(system: &System) -> Option<Self> {
@@ -51,54 +41,24 @@ impl Sparse {
         let n = system.unknowns();
         let modes = vec![Mode::Blocking; system.junctions.len()];
         let closed = vec![false; system.gates.len()];
-        let mut pairs: Vec<(u32, u32)> = (0..n as u32).map(|k| (k, k)).collect();
         let mut told: Vec<(u32, u32)> = Vec::new();
         system.entries(&modes, &closed, &|_| 1.0, |row, col, _| told.push((col, row)));
-        pairs.extend(told.iter().filter(|(col, row)| row >= col));
-        pairs.sort_unstable();
-        pairs.dedup();
-        let place = |pair: &(u32, u32)| pairs.binary_search(pair).map_or(NOWHERE, |at| at as u32);
-        let slots = told.iter().map(place).collect();
-        let diagonal = (0..n as u32).map(|k| place(&(k, k)) as usize).collect();
-        let mut col_ptr = vec![0usize; n + 1];
-        for (col, _) in &pairs {
-            col_ptr[*col as usize + 1] += 1;
-        }
-        for k in 0..n {
-            col_ptr[k + 1] += col_ptr[k];
-        }
-        let row_idx: Vec<usize> = pairs.iter().map(|(_, row)| *row as usize).collect();
-        let pattern = SymbolicSparseColMatRef::new_checked(n, n, &col_ptr, None, &row_idx);
-        let symbolic = ch::factorize_symbolic_cholesky(
-            pattern,
-            Side::Lower,
-            ch::SymmetricOrdering::Amd,
-            Default::default(),
-        )
-        .ok()?;
-        if symbolic.len_val() > MOST_NUMBERS {
-            return None;
-        }
-        let scratch = symbolic.factorize_numeric_ldlt_scratch::<f64>(Par::Seq, Default::default());
+        let pairs = told.iter().copied().filter(|(col, row)| row >= col);
+        let matrix = Lower::new(Kind::Signed, n, pairs, MOST_NUMBERS)?;
         Some(Sparse {
-            n,
             is_current: system.is_current.clone(),
-            values: vec![0.0; row_idx.len()],
+            values: vec![0.0; matrix.entries()],
             residual: vec![0.0; n],
-            memory: MemBuffer::try_new(scratch).ok()?,
-            solve_memory: MemBuffer::try_new(symbolic.solve_in_place_scratch::<f64>(1, Par::Seq)).ok()?,
-            col_ptr,
-            row_idx,
-            slots,
-            diagonal,
-            symbolic,
+            slots: told.iter().map(|&(col, row)| matrix.place(col, row)).collect(),
+            diagonal: (0..n as u32).map(|k| matrix.place(k, k) as usize).collect(),
+            matrix,
             values_key: None,
             factors: Vec::new(),
         })
     }
 
     pub(super) fn cost(&self) -> u64 {
-        8 * (self.symbolic.len_val() + self.row_idx.len()) as u64
+        8 * (self.matrix.factor_length() + self.matrix.entries()) as u64
     }
 
     /// Makes matrix and factor those of a pattern and a length.
@@ -135,11 +95,11 @@ impl Sparse {
     }
 
     fn factor(&mut self, key: Key) -> bool {
-        let most = (MOST_NUMBERS / self.symbolic.len_val().max(1)).clamp(1, MOST_FACTORS);
+        let most = (MOST_NUMBERS / self.matrix.factor_length().max(1)).clamp(1, MOST_FACTORS);
         let mut numbers = if self.factors.len() >= most {
             self.factors.remove(0).1
         } else {
-            vec![0.0; self.symbolic.len_val()]
+            vec![0.0; self.matrix.factor_length()]
         };
         let mut shifted = self.values.clone();
         let typical = self.typical();
@@ -151,20 +111,7 @@ impl Sparse {
                 shifted[at] += SHIFT * if own > 2.0 * TIE { own } else { typical };
             }
         }
-        let pattern =
-            SymbolicSparseColMatRef::new_checked(self.n, self.n, &self.col_ptr, None, &self.row_idx);
-        let is_done = self
-            .symbolic
-            .factorize_numeric_ldlt(
-                &mut numbers,
-                SparseColMatRef::new(pattern, &shifted),
-                Side::Lower,
-                Default::default(),
-                Par::Seq,
-                MemStack::new(&mut self.memory),
-                Default::default(),
-            )
-            .is_ok();
+        let is_done = self.matrix.factor(&shifted, &mut numbers);
         self.factors.push((key, numbers));
         is_done
     }
@@ -172,7 +119,7 @@ impl Sparse {
     /// Median of the conductances on the diagonal.
     fn typical(&self) -> f64 {
         let own = |row: &usize| self.values[self.diagonal[*row]].abs();
-        let mut all: Vec<f64> = (0..self.n)
+        let mut all: Vec<f64> = (0..self.diagonal.len())
             .filter(|&r| !self.is_current[r])
             .map(|r| own(&r))
             .filter(|v| *v > 2.0 * TIE)
@@ -185,21 +132,16 @@ impl Sparse {
     pub(super) fn rough(&mut self, right: &[f64], out: &mut [f64]) {
         out.copy_from_slice(right);
         let Some((_, numbers)) = self.factors.last() else { return };
-        ch::LdltRef::new(&self.symbolic, numbers).solve_in_place_with_conj(
-            Conj::No,
-            MatMut::from_column_major_slice_mut(out, self.n, 1),
-            Par::Seq,
-            MemStack::new(&mut self.solve_memory),
-        );
+        self.matrix.solve(numbers, out);
     }
 
     /// Solves, starting from what `unknowns` holds. `false` where the rounds do not settle.
     pub(super) fn solve(&mut self, right: &[f64], unknowns: &mut [f64]) -> bool {
         let mut residual = std::mem::take(&mut self.residual);
-        let mut step = vec![0.0; self.n];
+        let mut step = vec![0.0; residual.len()];
         let mut is_settled = false;
         for _ in 0..MOST_ROUNDS {
-            self.miss(right, unknowns, &mut residual);
+            self.matrix.miss(&self.values, right, unknowns, &mut residual);
             self.rough(&residual, &mut step);
             let (mut moved, mut most) = ([0.0f64; 2], [0.0f64; 2]);
             for ((value, change), &kind) in unknowns.iter_mut().zip(&step).zip(&self.is_current) {
@@ -220,19 +162,5 @@ impl Sparse {
             unknowns.fill(0.0);
         }
         is_settled
-    }
-
-    /// `right − matrix·unknowns`.
-    fn miss(&self, right: &[f64], unknowns: &[f64], out: &mut [f64]) {
-        out.copy_from_slice(right);
-        for col in 0..self.n {
-            for at in self.col_ptr[col]..self.col_ptr[col + 1] {
-                let (row, value) = (self.row_idx[at], self.values[at]);
-                out[row] -= value * unknowns[col];
-                if row != col {
-                    out[col] -= value * unknowns[row];
-                }
-            }
-        }
     }
 }
