@@ -16,6 +16,9 @@ use std::path::Path;
 /// So many errors are told, since the states may hang on them; `check` tells all.
 const ERRORS_SHOWN: usize = 3;
 
+/// Diodes of one name in several instances that are listed.
+const INSTANCES_SHOWN: usize = 4;
+
 /// Names among which the one that was meant is looked for.
 const MOST_CANDIDATES: usize = 2000;
 
@@ -59,6 +62,15 @@ fn missing_diode(analysis: &Analysis, why: Option<&str>, file: &Path) -> Option<
     let is_diode = |behaviour: &Behaviour| matches!(behaviour, Behaviour::Diode { .. });
     let diodes = circuit.elements().filter(|(_, e)| is_diode(&e.behaviour)).take(MOST_CANDIDATES);
     let names: Vec<String> = diodes.map(|(id, _)| circuit.element_name(id)).collect();
+    let inside = |full: &&String| full.rsplit(':').next().is_some_and(|last| last.eq_ignore_ascii_case(name));
+    let inside: Vec<&str> = names.iter().filter(inside).map(String::as_str).collect();
+    if let [_, ..] = inside.as_slice() {
+        let known = inside.iter().take(INSTANCES_SHOWN).copied().collect::<Vec<_>>().join(", ");
+        return Some(format!(
+            "{name} in {} stands inside of instances; write its path, such as {known}",
+            file.display()
+        ));
+    }
     let near = nearest(name, names.iter().map(String::as_str));
     let hint = near.map_or(String::new(), |near| format!("; did you mean `{near}`?"));
     Some(format!("there is no diode `{name}` in {}{hint}", file.display()))

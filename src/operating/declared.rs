@@ -220,7 +220,14 @@ impl Reader<'_> {
             } else if name.eq_ignore_ascii_case("temp") {
                 self.declared.temperature = *value;
             } else {
-                let found = not_settable(self.circuit, name);
+                let other = match self.element(ScopeId::ROOT, name) {
+                    Some(_) => Some("is no source"),
+                    None if self.parsed.is_some_and(|p| p.has_parameter(&name.to_lowercase())) => {
+                        Some("is a parameter and no source")
+                    }
+                    None => None,
+                };
+                let found = not_settable(self.circuit, name, other);
                 self.findings.push(found);
             }
         }
@@ -319,18 +326,24 @@ fn not_holdable(name: &str, note: &Note) -> Finding {
         .help("`hold` applies to elements Q, M, J, S and W. The note is not used.")
 }
 
-fn not_settable(circuit: &Circuit, name: &str) -> Finding {
+/// `other`: what the name stands for instead.
+fn not_settable(circuit: &Circuit, name: &str, other: Option<&str>) -> Finding {
     let place = circuit.title.unwrap_or(Span::new(FileId(0), 0, 0));
     let sources = (0..circuit.elements.len())
         .map(ElementId::new)
         .filter(|&id| source(circuit, id).is_some())
         .take(MOST_CANDIDATES);
     let names: Vec<String> = sources.map(|id| circuit.element_name(id)).collect();
-    let meant = match crate::text::nearest(name, names.iter().map(String::as_str)) {
-        Some(near) => format!("Did you mean `{near}`? "),
-        None => String::new(),
+    let meant = match (other, crate::text::nearest(name, names.iter().map(String::as_str))) {
+        (Some(_), _) => "A `*@ range` note examines other values of a resistor or a parameter. ".to_owned(),
+        (None, Some(near)) => format!("Did you mean `{near}`? "),
+        (None, None) => String::new(),
     };
-    Finding::new("unknown-name", Severity::Error, place, format!("`--set {name}=…` names no source of this circuit"))
+    let message = match other {
+        Some(what) => format!("`--set {name}=…` cannot be done: {name} {what}"),
+        None => format!("`--set {name}=…` names no source of this circuit"),
+    };
+    Finding::new("unknown-name", Severity::Error, place, message)
         .about(name)
         .help(format!("{meant}Only independent sources, nodes held by a `supply` note, and `temp` can be set; inside an instance write the path, such as `X1:V1`."))
 }

@@ -2,7 +2,7 @@
 //! which source would change it. The sentences come from `operating`; only their layout is made here.
 
 use super::paint::{Ink, Page, clean, wrap};
-use super::states::state_ink;
+use super::states::{all_conditions, state_ink};
 use crate::analysis::Analysis;
 use crate::operating::{Reasoning, State};
 
@@ -20,20 +20,30 @@ pub fn why(page: &mut Page, analysis: &Analysis) {
     page.ink(Ink::Strong, &format!("why {name}")).plain("   ");
     let place = format!("{}:{}  {}", analysis.sources.name(span.file), start.line, line);
     page.ink(Ink::Faint, &clean(&place)).end();
+    let all = analysis.operating.as_ref().map_or(0, |o| o.cases.len());
     for reasoning in &why.reasonings {
-        write_reasoning(page, &name, reasoning);
+        write_reasoning(page, &name, reasoning, all);
     }
     page.end();
 }
 
-fn write_reasoning(page: &mut Page, name: &str, reasoning: &Reasoning) {
+fn write_reasoning(page: &mut Page, name: &str, reasoning: &Reasoning, all: usize) {
     let state = reasoning.state.word();
     page.plain("  ").plain(name).plain(if reasoning.state == State::Breakdown { " is in " } else { " is " });
     match state_ink(reasoning.state) {
         Some(ink) => page.ink(ink, state),
         None => page.plain(state),
     };
-    page.plain(": ").ink(Ink::Faint, &clean(&reasoning.cases.join(", "))).end();
+    if reasoning.cases.len() == all && all > 1 {
+        page.plain(" in ").ink(Ink::Faint, &all_conditions(all)).end();
+    } else {
+        page.plain(": ");
+        // the first line is shorter by what stands before it
+        let cases = clean(&reasoning.cases.join(", "));
+        for (n, line) in wrap(&cases, page.room(WIDTH) - 20).iter().enumerate() {
+            page.plain(if n == 0 { "" } else { "    " }).ink(Ink::Faint, line).end();
+        }
+    }
     for (n, sentence) in reasoning.sentences.iter().enumerate() {
         item(page, &format!("{:>4}. ", n + 1), sentence);
     }

@@ -138,9 +138,19 @@ pub fn note(text: &str) -> Result<NoteText<'_>, NoteProblem> {
             start,
             end,
             message: format!("this note {found}; its shape is: {}", SHAPES[kind]),
-            nearest: None,
+            nearest: word.and_then(|w| crate::text::nearest(w.text, inner_words(kind).iter().copied())),
         }
     })
+}
+
+/// The words that a kind of note takes besides names and numbers.
+fn inner_words(kind: usize) -> &'static [&'static str] {
+    match kind {
+        4 => &["on", "off", "both"],
+        5 => &["conducting", "blocking", "breakdown"],
+        6 => &["ripple"],
+        _ => &[],
+    }
 }
 
 /// The words behind `*@`, up to a `;` (which stands in no name, and begins a trailing comment everywhere).
@@ -386,6 +396,7 @@ mod tests {
         assert_eq!((problem.start, problem.end), (3, 7));
         assert!(note("*@ drop D1").is_err());
         assert!(note("*@ hold Q1 perhaps").is_err());
+        assert_eq!(note("*@ expect D1 conductng").unwrap_err().nearest, Some("conducting"));
         assert!(note("*@").is_err());
     }
 

@@ -298,6 +298,7 @@ fn what_was_meant_is_proposed() {
     for (arguments, words) in [
         (&["states", "-", "--why", "R1"][..], "R1 in - is no diode"),
         (&["states", "-", "--why", "D2"], "did you mean `D1`?"),
+        (&["annotate", "-", "--set", "R1=3"], "R1 is no source"),
         (&["rules", "never"], "did you mean one of"),
         (&["compare", "-", "-"], "standard input can be one side"),
         (&["check", "-", "--include-dir", "no-such-dir"], "no-such-dir: there is no such directory"),
@@ -321,4 +322,20 @@ fn one_file_under_two_names_is_examined_once() {
 fn a_file_without_elements_has_no_states() {
     let run = feed(&["states", "-"], "");
     assert_eq!(run.out, "There are no elements in this file, so there are no states.\n");
+}
+
+#[test]
+fn a_diode_inside_of_instances_is_named_by_its_paths() {
+    let lamps = "t\nV1 in 0 5\nXA in S\nXB in S\n.subckt S p\nR1 p m 1k\nD1 m 0 DX\n.ends\n.model DX D\n";
+    let run = feed(&["states", "-", "--why", "D1"], lamps);
+    assert!(run.err.contains("write its path, such as XA:D1, XB:D1"), "{}", run.err);
+}
+
+#[test]
+fn conditions_that_are_all_alike_are_not_listed() {
+    let ranged = CLEAN.replace(".end", "*@ range V1 4 6\n*@ range temp -10 50\n.end");
+    let run = feed(&["states", "-"], &ranged);
+    assert!(run.out.contains("unique in all 9 conditions"), "{}", run.out);
+    let run = feed(&["states", "-", "--why", "D1"], &ranged);
+    assert!(run.out.contains("D1 is conducting in all 9 conditions"), "{}", run.out);
 }

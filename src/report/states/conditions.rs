@@ -1,7 +1,7 @@
 //! The conditions: what the sources are, and how each group of conditions that end alike ends.
 
 use super::super::paint::{Ink, Page, clean, wrap};
-use super::{WIDTH, paragraph, some_of};
+use super::{WIDTH, all_conditions, paragraph, some_of};
 use crate::circuit::Circuit;
 use crate::finding::{interval, quantity};
 use crate::operating::{Case, Interval, Operating, Solution, Verdict};
@@ -50,10 +50,14 @@ impl Group<'_> {
     }
 
     /// The verdict, where it holds, what it means, its causes, and what is open.
-    pub(super) fn write(&self, page: &mut Page, circuit: &Circuit, with_names: bool) {
+    pub(super) fn write(&self, page: &mut Page, circuit: &Circuit, all: usize) {
         let Some(first) = self.cases.first() else { return };
         let names: Vec<&str> = self.cases.iter().map(|c| c.name.as_str()).collect();
-        let place = if with_names { format!(" in {}", some_of(&names)) } else { String::new() };
+        let place = match self.cases.len() {
+            _ if all == 1 => String::new(),
+            count if count == all => format!(" in {}", all_conditions(all)),
+            _ => format!(" in {}", some_of(&names)),
+        };
         let word = self.verdict().word();
         let sentence = format!("{word}{place}: {}", self.meaning());
         for (n, line) in wrap(&sentence, page.room(WIDTH)).iter().enumerate() {

@@ -33,7 +33,7 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     conditions::write(page, circuit, operating);
     let groups = conditions::groups(operating);
     for group in groups.iter().filter(|g| g.verdict() != Verdict::Unique) {
-        group.write(page, circuit, operating.cases.len() > 1);
+        group.write(page, circuit, operating.cases.len());
     }
     page.end();
     let views = views(operating);
@@ -42,7 +42,7 @@ pub fn states(page: &mut Page, analysis: &Analysis) {
     left_to_time(page, circuit, operating);
     unrefined(page, circuit, operating);
     for group in groups.iter().filter(|g| g.verdict() == Verdict::Unique) {
-        group.write(page, circuit, operating.cases.len() > 1);
+        group.write(page, circuit, operating.cases.len());
     }
     closing(page, circuit, operating, &views);
 }
@@ -94,6 +94,11 @@ fn some_of(names: &[&str]) -> String {
         0 => shown.join(", "),
         more => format!("{} and {more} more", shown.join(", ")),
     }
+}
+
+/// `both conditions`, `all 9 conditions`
+pub(super) fn all_conditions(count: usize) -> String {
+    if count == 2 { "both conditions".into() } else { format!("all {count} conditions") }
 }
 
 fn paragraph(page: &mut Page, indent: &str, text: &str) {

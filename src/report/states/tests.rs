@@ -100,7 +100,7 @@ the same state in every condition
   D2      conducting   400 µA … 1.00 mA         700 mV   700 mV   model DX at 1mA   1.23 V
   D3      blocking                 0 A    -11.3 … 0 V    700 mV   model DX at 1mA   1.23 V
 
-unique in nominal, V1=0.5: one set of states and no other; put back into the circuit laws, it
+unique in both conditions: one set of states and no other; put back into the circuit laws, it
 misses none by more than 2e-16 of the largest term
 3 diodes: 2 conducting, 1 blocking (nominal); 2 conditions, 4 factorizations
 ";
