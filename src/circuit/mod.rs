@@ -14,6 +14,7 @@ mod ids;
 mod include;
 mod instance;
 mod line;
+mod misworded;
 mod note;
 mod notes;
 mod parameter;

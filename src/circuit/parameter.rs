@@ -7,7 +7,7 @@ use super::functions::{self, Called};
 use super::parsed::Setting;
 use crate::finding::{Finding, Severity};
 use crate::syntax::{self, Binary, Expression};
-use crate::text::{Span, nearest};
+use crate::text::Span;
 use rustc_hash::FxHashMap;
 use std::ops::Range;
 
@@ -61,22 +61,20 @@ pub(super) enum Evaluation {
 const DEEPEST: usize = 400;
 /// Bytes of function bodies that are evaluated in all: forty functions that each call another twice would take longer
 /// than anyone lives. Fewer in tests, which must be quick.
-const MOST_OF_FUNCTIONS: usize = if cfg!(test) { 1 << 20 } else { 100 << 20 };
-/// Names among which the one that was meant is looked for.
-const MOST_CANDIDATES: usize = 2000;
+pub(super) const MOST_OF_FUNCTIONS: usize = if cfg!(test) { 1 << 20 } else { 100 << 20 };
 
 /// An expression under evaluation: where its text stands and in which frame it is looked at.
 #[derive(Clone, Copy)]
-struct Context<'t> {
-    text: &'t str,
+pub(super) struct Context<'t> {
+    pub(super) text: &'t str,
     inner: Span,
-    frame: usize,
+    pub(super) frame: usize,
     /// Arguments of the function whose body this is.
     bound: Option<(&'t [String], &'t [f64])>,
 }
 
 impl Context<'_> {
-    fn at(&self, range: &Range<usize>) -> Span {
+    pub(super) fn at(&self, range: &Range<usize>) -> Span {
         let start = self.inner.start as usize;
         Span::new(self.inner.file, start + range.start, start + range.end)
     }
@@ -122,24 +120,6 @@ impl<'a> Expander<'a> {
             Ok(number) => Worth::Is(Value { number, written: false, span }),
             Err(worth) => worth,
         }
-    }
-
-    fn tell_unreadable(&mut self, inner: Span, text: &str, problem: &syntax::ExpressionProblem) -> Worth {
-        let at = inner.start as usize + problem.at.min(text.len());
-        let end = text[problem.at.min(text.len())..].chars().next().map_or(at, |c| at + c.len_utf8());
-        let span = Span::new(inner.file, at, end);
-        let rule = if problem.is_limit { "limit-reached" } else { "unreadable-expression" };
-        let shown: String = text.chars().take(60).collect();
-        let finding = Finding::new(
-            rule,
-            Severity::Error,
-            span,
-            format!("the expression {shown} cannot be read: {}", problem.what),
-        )
-        .label(problem.what)
-        .help("Mend the expression; until then what it stands for is not evaluated.");
-        self.tell(finding);
-        Worth::Told
     }
 
     fn tree(&mut self, context: Context<'_>, tree: &Expression) -> Result<f64, Worth> {
@@ -277,76 +257,6 @@ impl<'a> Expander<'a> {
         }
     }
 
-    fn tell_functions(&mut self, body: Span) -> Worth {
-        let message =
-            format!("functions call functions until {MOST_OF_FUNCTIONS} bytes of them are evaluated");
-        let finding = Finding::new("limit-reached", Severity::Error, body, message)
-            .label("not evaluated any more")
-            .help("Break the chain of functions, or write the number.");
-        self.tell(finding);
-        Worth::Told
-    }
-
-    fn tell_arguments(
-        &mut self,
-        context: Context<'_>,
-        name: &Range<usize>,
-        count: &str,
-    ) -> Result<f64, Worth> {
-        let text = context.text.get(name.clone()).unwrap_or("");
-        let finding = Finding::new(
-            "unreadable-expression",
-            Severity::Error,
-            context.at(name),
-            format!("the function {text} takes {count}"),
-        )
-        .label(format!("takes {count}"))
-        .help("Mend the call; until then what the expression stands for is not evaluated.");
-        self.tell(finding);
-        Err(Worth::Told)
-    }
-
-    fn tell_unknown(
-        &mut self,
-        context: Context<'_>,
-        name: &Range<usize>,
-        is_function: bool,
-    ) -> Result<f64, Worth> {
-        let text = context.text.get(name.clone()).unwrap_or("");
-        let kind = if is_function { "function" } else { "parameter" };
-        let near = if is_function {
-            nearest(text, functions::FUNCTIONS).map(str::to_owned)
-        } else {
-            self.near_parameter(context.frame, text)
-        };
-        let help = match near {
-            Some(near) => format!("Did you mean `{near}`? Until it is known, what the expression stands for is not evaluated."),
-            None => "Define it with `.param`, or correct the name; until then what the expression stands for is not evaluated.".to_owned(),
-        };
-        let finding = Finding::new(
-            "unknown-parameter",
-            Severity::Error,
-            context.at(name),
-            format!("there is no {kind} {text} here"),
-        )
-        .label(format!("no such {kind}"))
-        .about(text)
-        .help(help);
-        self.tell(finding);
-        Err(Worth::Told)
-    }
-
-    fn near_parameter(&self, frame: usize, text: &str) -> Option<String> {
-        let known: usize = self.frames.iter().map(|f| f.parameters.table.len()).sum();
-        if known > MOST_CANDIDATES || self.told.is_full("unknown-parameter") {
-            return None;
-        }
-        let mut names: Vec<&str> =
-            self.frames.iter().take(frame + 1).flat_map(|f| f.parameters.table.keys().copied()).collect();
-        names.sort_unstable();
-        nearest(text, names).map(str::to_owned)
-    }
-
     /// The worth of a parameter, a function's argument or a constant.
     fn name(&mut self, context: Context<'_>, range: &Range<usize>) -> Worth {
         let text = context.text.get(range.clone()).unwrap_or("");
@@ -416,35 +326,6 @@ impl<'a> Expander<'a> {
             parameter.state = Evaluation::Done(worth);
         }
         worth
-    }
-
-    fn tell_cycle(&mut self, name: &str, user: Span) -> Worth {
-        let finding = Finding::new(
-            "parameter-cycle",
-            Severity::Error,
-            user,
-            format!("the parameter {name} needs its own value to be evaluated"),
-        )
-        .label("needs itself, directly or through others")
-        .about(name)
-        .help("Break the circle by giving one of them a number.");
-        self.tell(finding);
-        Worth::Told
-    }
-
-    fn tell_no_value(&mut self, name: &str, value: Span) -> Worth {
-        let text = self.sources.slice(value);
-        let finding = Finding::new(
-            "unknown-parameter",
-            Severity::Error,
-            value,
-            format!("the value of parameter {name}, {text}, is no number and no parameter"),
-        )
-        .label("no value")
-        .about(name)
-        .help("Write a number, an expression, or the name of a parameter.");
-        self.tell(finding);
-        Worth::Told
     }
 }
 
