@@ -133,8 +133,8 @@ impl Lower {
     pub fn miss(&self, entries: &[f64], right: &[f64], values: &[f64], out: &mut [f64]) {
         out.copy_from_slice(right);
         for col in 0..self.n {
-            for at in self.col_ptr[col]..self.col_ptr[col + 1] {
-                let (row, entry) = (self.row_idx[at], entries[at]);
+            let range = self.col_ptr[col]..self.col_ptr[col + 1];
+            for (&row, entry) in self.row_idx[range.clone()].iter().zip(&entries[range]) {
                 out[row] -= entry * values[col];
                 if row != col {
                     out[col] -= entry * values[row];

@@ -22,14 +22,12 @@ impl Adjacent {
         }
         // filled from behind, so that the ends of the lists become their starts
         let mut pairs = vec![(0, 0); sum as usize];
-        let mut number = 0;
-        for (a, b) in edges {
+        for (number, (a, b)) in (0u32..).zip(edges) {
             for (from, to) in [(a, b), (b, a)] {
                 let at = &mut starts[from as usize];
                 *at -= 1;
                 pairs[*at as usize] = (to, number);
             }
-            number += 1;
         }
         let mut adjacent = Adjacent { starts, pairs };
         for node in 0..nodes {
