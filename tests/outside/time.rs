@@ -265,6 +265,27 @@ fn a_multiplier_drops_and_ripples_as_its_formula_says() {
     }
 }
 
+// in the periodic state of a cascade each diode passes the load's charge once a period (charge balance), also where nothing
+// but their drops takes power, so that a derivative of the period tells little
+#[test]
+fn a_cascade_without_resistance_settles_too() {
+    for stages in [2, 4, 6] {
+        let mut netlist = String::from("t\nV1 a0 0 SIN(0 100 1k)\n");
+        for k in 1..=stages {
+            let (a, b) = (k - 1, if k == 1 { "0".to_owned() } else { format!("b{}", k - 1) });
+            netlist +=
+                &format!("CA{k} a{a} a{k} 1u\nDA{k} {b} a{k} DX\nDB{k} a{k} b{k} DX\nCB{k} {b} b{k} 1u\n");
+        }
+        let netlist = format!("{netlist}I1 b{stages} 0 1m\n.model DX D(RS=0)\n*@ drop DX 0.7\n");
+        let cascade = swing(&netlist);
+        assert!(cascade.swing.as_ref().is_some_and(|s| s.periodic), "{stages}");
+        for k in 1..=stages {
+            close(diode(&cascade, &format!("DA{k}")).current_mean, 1e-3, 1e-5);
+            close(diode(&cascade, &format!("DB{k}")).current_mean, 1e-3, 1e-5);
+        }
+    }
+}
+
 // no diagonal clipping while RC ≤ √(1 − m²)/(2π·m·fm): 55.13 µs for m = 0.5 and 5 kHz, 23.87 µs for m = 0.8
 #[test]
 fn a_detector_follows_its_envelope_up_to_the_bound() {

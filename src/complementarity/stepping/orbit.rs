@@ -19,6 +19,8 @@ const PERIODIC: f64 = 1e-6;
 /// Rounds at most, and rounds without a much better miss after which the best is taken.
 const MOST_ROUNDS: usize = 400;
 const MOST_STALE: usize = 60;
+/// Such rounds by derivatives, after which extrapolation has its turn.
+const MOST_STALE_BY_DERIVATIVE: usize = 20;
 
 /// One walk through a period.
 pub(crate) type Walk<'a> = dyn FnMut(&mut March) -> End + 'a;
@@ -57,7 +59,13 @@ pub(crate) fn find_orbit(march: &mut March, walk: &mut Walk<'_>) -> Orbit {
             search.keep_better(point);
             break;
         }
-        let next = search.next(march, walk, point);
+        let next = if search.by_derivative && stale >= MOST_STALE_BY_DERIVATIVE {
+            stale = 0;
+            search.keep_better(point);
+            search.extrapolate_from_best(march)
+        } else {
+            search.next(march, walk, point)
+        };
         match next.filter(|next| next.iter().all(|v| v.is_finite())) {
             Some(next) => march.states = next,
             None => break,
@@ -171,13 +179,22 @@ impl Search {
                 let step = best.start.iter().zip(direction);
                 Some(step.map(|(start, step)| start + self.damping * step).collect())
             }
-            None => {
+            None if self.differences < MOST_DIFFERENCES.1 && best.start.len() <= MOST_DIFFERENCES.0 => {
                 // on by itself; whatever comes of it is the new best
                 best.miss = f64::INFINITY;
                 self.source = Source::Steps;
                 Some(best.end.clone())
             }
+            None => self.extrapolate_from_best(march),
         }
+    }
+
+    /// No derivative has led there: extrapolation takes over.
+    fn extrapolate_from_best(&mut self, march: &mut March) -> Option<Vec<f64>> {
+        self.by_derivative = false;
+        let best = self.best.as_ref()?;
+        march.solver.set_modes(&best.modes);
+        Some(best.end.clone())
     }
 
     /// From the best point to the fixed point of the map as far as its derivative tells; directions that come back
@@ -191,6 +208,8 @@ impl Search {
         let may_differ = m <= MOST_DIFFERENCES.0 && self.differences < MOST_DIFFERENCES.1;
         let derivative = match self.source {
             Source::Differences if may_differ => self.by_differences(march, walk, &best, &scale)?,
+            // taken before, they have not led there, and the other one still less
+            Source::Differences if self.differences > 0 => return None,
             _ => best.derivative.clone()?,
         };
         let entry = |row: usize, col: usize| {
