@@ -283,11 +283,15 @@ impl Maker<'_> {
                 .filter(|(n, _)| *n != card.line)
                 .map(|(_, l)| format!("{l}\n"))
                 .collect();
+            // the line of the neighbour at the node that is gone is changed with it
+            let mut names = self.names(card);
+            let neighbours = self.cards.iter().filter(|c| c.inside == card.inside && c.nodes.contains(&gone));
+            names.extend(neighbours.flat_map(|c| self.names(c)));
             all.push(Mutant {
                 operator: "take out a series resistor",
                 what: self.lines[card.line].to_owned(),
                 text,
-                names: self.names(card),
+                names,
             });
         }
     }
