@@ -4,7 +4,7 @@ use super::support::{In, by_diode, in_case};
 use super::{Check, Evidence, Rule};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
-use crate::operating::{DiodeResult, Knee, Operating, Trust};
+use crate::operating::{DiodeResult, DropOrigin, Knee, Operating, Trust};
 
 pub const RULE: Rule = Rule {
     name: "current-beyond-drop",
@@ -35,6 +35,14 @@ pub const RULE: Rule = Rule {
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     by_diode(operating).iter().filter_map(|(id, results)| judge(evidence, operating, *id, results)).collect()
+}
+
+/// The diode carries nothing in the conditions that a model's drop is read from, so 1 mA stands in for its current there:
+/// nobody chose that, and the other feed of a pair is no mistake.
+fn stands_in(operating: &Operating, diode: &DiodeResult, results: &[In<'_>]) -> bool {
+    let is_read = |number: usize| number == 0 || operating.cases.get(number).is_some_and(|c| c.instant);
+    let carries = |r: &In<'_>| is_read(r.0) && r.1.state == State::Conducting;
+    matches!(diode.drop.origin, DropOrigin::Model { .. }) && !results.iter().any(carries)
 }
 
 /// One end of the span of currents.
@@ -105,7 +113,7 @@ fn judge(
         false => format!("A drop of {} would serve this current.", quantity(far.serving(), "V")),
     };
     let mut finding = evidence.about(&RULE, id, message).label("its current leaves the span of its drop");
-    if away > evidence.thresholds.swing_warning && matters {
+    if away > evidence.thresholds.swing_warning && matters && !stands_in(operating, far.diode, results) {
         finding.severity = Severity::Warning;
     }
     Some(finding.help(format!("{} {serving} {}", RULE.why, RULE.remedy)))

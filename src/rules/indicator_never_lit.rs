@@ -42,10 +42,21 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
 }
 
+/// Another diode lies across it the other way round: the pair is driven both ways, one of them at a time, and three
+/// lines of such pairs leave some voltage across those that are not meant.
+fn has_partner(evidence: &Evidence<'_>, id: ElementId) -> bool {
+    let circuit = evidence.circuit;
+    let (anode, cathode) = (circuit.node(id, 0), circuit.node(id, 1));
+    let is_partner = |other: ElementId| {
+        matches!(circuit.element(other).behaviour, Behaviour::Diode { .. }) && circuit.node(other, 1) == anode
+    };
+    evidence.wiring.touching.at(cathode).iter().any(|t| t.pin == 0 && is_partner(t.element))
+}
+
 fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
     let seen = evidence.standing(operating).diode(id)?;
     let is_dark = seen.is_led() && seen.is_always(State::Blocking) && seen.least >= SOME;
-    if !is_dark || seen.greatest >= seen.drop || evidence.is_told_near(id) {
+    if !is_dark || seen.greatest >= seen.drop || has_partner(evidence, id) || evidence.is_told_near(id) {
         return None;
     }
     let message = format!(

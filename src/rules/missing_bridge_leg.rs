@@ -4,6 +4,7 @@ use super::reversed_bridge_leg::{Leg, legs};
 use super::{Check, Evidence, Rule};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
+use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "missing-bridge-leg",
@@ -49,7 +50,8 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
             for (&half, legs) in &outputs {
                 let [single] = legs.as_slice() else { continue };
                 let belongs = single.out != one.out && [one.end, other.end].contains(&single.end);
-                if half != whole && belongs && !leads_elsewhere(evidence, half, single) {
+                let bridges = || has_load(evidence, &driven.ends, (whole, half), &[*one, *other, *single]);
+                if half != whole && belongs && !leads_elsewhere(evidence, half) && bridges() {
                     let bare = if single.end == one.end { other.end } else { one.end };
                     findings.push(judge(evidence, (whole, [*one, *other]), (half, *single), bare));
                 }
@@ -60,8 +62,36 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
 }
 
 /// The single leg is a clamp to a supply of its own, not the way back of the load.
-fn leads_elsewhere(evidence: &Evidence<'_>, output: NodeId, _: &Leg) -> bool {
+fn leads_elsewhere(evidence: &Evidence<'_>, output: NodeId) -> bool {
     output != NodeId::GROUND && evidence.wiring.rails.is_rail(output)
+}
+
+/// Nodes of a load that are gone through at most.
+const WIDEST: usize = 500;
+
+/// Something leads from one output to the other past the winding and its legs: what else would the bridge feed?
+fn has_load(evidence: &Evidence<'_>, ends: &[NodeId], outputs: (NodeId, NodeId), legs: &[Leg]) -> bool {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let mut seen = FxHashSet::from_iter([outputs.0]);
+    let mut open = vec![outputs.0];
+    while let Some(node) = open.pop() {
+        for touch in evidence.wiring.touching.carrying(circuit, node) {
+            if legs.iter().any(|l| l.diode == touch.element) {
+                continue;
+            }
+            for pin in circuit.pins(touch.element) {
+                if pin.node == outputs.1 {
+                    return true;
+                }
+                let passes = !rails.is_rail(pin.node) && !ends.contains(&pin.node);
+                if passes && seen.len() < WIDEST && seen.insert(pin.node) {
+                    open.push(pin.node);
+                }
+            }
+        }
+    }
+    false
 }
 
 fn judge(evidence: &Evidence<'_>, whole: (NodeId, [Leg; 2]), half: (NodeId, Leg), bare: NodeId) -> Finding {

@@ -75,8 +75,8 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let mut found: FxHashMap<ElementId, Finding> = FxHashMap::default();
     for driven in &evidence.wiring.driven {
         let outputs = legs(evidence, driven);
-        // where the legs of every output point both ways, they are meant to: a ring modulator
-        let mixed = outputs.values().filter(|legs| is_mixed(legs)).count();
+        // where the legs of several outputs point both ways, they are meant to: a ring modulator, a sampling gate
+        let mixed = outputs.values().filter(|legs| is_mixed(legs)).count() + between_ends(evidence, driven);
         for (&output, legs) in outputs.iter().filter(|_| mixed == 1) {
             if is_mixed(legs) && has_load(evidence, output, legs) {
                 let turned = turned(&outputs, output, legs);
@@ -88,6 +88,24 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let mut findings: Vec<(ElementId, Finding)> = found.into_iter().collect();
     findings.sort_by_key(|f| f.0);
     findings.into_iter().map(|f| f.1).collect()
+}
+
+/// Ends of which diodes lead in from one other end and out to another, as if they were outputs themselves.
+fn between_ends(evidence: &Evidence<'_>, driven: &Driven) -> usize {
+    let circuit = evidence.circuit;
+    let ends: FxHashSet<NodeId> = driven.ends.iter().copied().collect();
+    let legs_at = |output: NodeId| -> Vec<Leg> {
+        let touches = evidence.wiring.touching.at(output).iter();
+        let diodes =
+            touches.filter(|t| matches!(circuit.element(t.element).behaviour, Behaviour::Diode { .. }));
+        let leg = diodes.map(|t| Leg {
+            end: circuit.node(t.element, 1 - t.pin.min(1) as usize),
+            out: t.pin == 1,
+            diode: t.element,
+        });
+        leg.filter(|l| ends.contains(&l.end) && l.end != output).collect()
+    };
+    driven.ends.iter().filter(|&&end| end != NodeId::GROUND && is_mixed(&legs_at(end))).count()
 }
 
 /// Two of the legs lead from one end of the winding straight to another.

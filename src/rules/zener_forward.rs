@@ -47,7 +47,8 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     // one end on a rail, the other held by what lies around it
     let (low, high) = (circuit.node(id, 1), circuit.node(id, 0));
     let shunts = rails.is_rail(low) != rails.is_rail(high);
-    let would_hold = seen.open_circuit >= MARGIN * breakdown && breakdown <= MOST && seen.drop >= SILICON;
+    let pressed = (MARGIN * breakdown..ABSURD).contains(&seen.open_circuit);
+    let would_hold = pressed && breakdown <= MOST && seen.drop >= SILICON;
     if !seen.is_always(State::Conducting) || seen.is_led() || !shunts || !would_hold {
         return None;
     }
@@ -76,5 +77,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
 
 /// A surge diode is chosen to break down somewhat above its supply.
 const MARGIN: f64 = 0.6;
+/// More than any source gives: an amplifier with the diode in its feedback, or a current source.
+const ABSURD: f64 = 10_000.0;
 /// Beyond this a breakdown voltage is a rectifier's limit.
 const MOST: f64 = 60.0;

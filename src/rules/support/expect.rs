@@ -207,11 +207,12 @@ impl Claim<'_> {
         if spoken.is_empty() {
             return Outcome::Unchecked(no_condition(operating, self.wanted.at.as_deref().unwrap_or("")));
         }
-        // an extreme instant says nothing final about a part with a memory
+        // an extreme instant says nothing final about a part with a memory; who names it asks about that instant
+        let named = self.wanted.at.is_some();
         let judged: Vec<usize> = spoken
             .iter()
             .copied()
-            .filter(|&n| !(operating.cases[n].instant && self.is_left_to_time(operating)))
+            .filter(|&n| named || !(operating.cases[n].instant && self.is_left_to_time(operating)))
             .collect();
         if judged.is_empty() {
             return Outcome::Unchecked(
