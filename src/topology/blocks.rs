@@ -28,7 +28,7 @@ struct Edge {
 pub(super) fn unfed(circuit: &Circuit, noted: &Noted) -> Vec<Unfed> {
     let mut edges = Vec::new();
     for (id, _) in circuit.elements() {
-        for (a, b, _) in links(circuit, id) {
+        for (a, b) in ways(circuit, id) {
             let ends = (circuit.node(id, a).0, circuit.node(id, b).0);
             if ends.0 != ends.1 {
                 edges.push(Edge { ends, element: Some(id) });
@@ -77,6 +77,16 @@ pub(super) fn unfed(circuit: &Circuit, noted: &Noted) -> Vec<Unfed> {
         .collect();
     found.sort_by(|a, b| a.elements.cmp(&b.elements));
     found
+}
+
+/// The pins between which an element passes what a source drives. The junction from base to collector is there, but
+/// nothing is fed through it: what hangs on a collector alone has no other feed than the emitter.
+fn ways(circuit: &Circuit, id: ElementId) -> Vec<(usize, usize)> {
+    let element = circuit.element(id);
+    if matches!(element.behaviour, Behaviour::Transistor { .. }) && element.letter != b'M' {
+        return [(0, 2), (1, 2), (2, 3)].into_iter().filter(|w| w.1 < circuit.pins(id).len()).collect();
+    }
+    links(circuit, id).map(|(a, b, _)| (a, b)).collect()
 }
 
 /// The blocks as lists of edge numbers: depth-first search with the least entry number that a subtree reaches (Hopcroft

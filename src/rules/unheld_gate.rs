@@ -1,0 +1,173 @@
+//! An insulated gate that only a transistor or a switch drives: with that one off, nothing holds it.
+
+use super::{Check, Evidence, Rule, list};
+use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
+use crate::finding::{Finding, Severity};
+use crate::topology::{Touch, is_opaque, is_sensing, main_path};
+use rustc_hash::FxHashSet;
+
+pub const RULE: Rule = Rule {
+    name: "unheld-gate",
+    group: "wiring",
+    severity: Severity::Warning,
+    also: None,
+    summary: "nothing holds an insulated gate while its driver is off",
+    why: "A gate takes no current, so it keeps what charge it has and leakage decides whether the transistor is on: a load \
+          that should be off then gets warm or stays on.",
+    remedy: "Put a resistor from the gate to the potential at which the transistor is off, usually its source.",
+    source: None,
+    failing: "tide gauge buoy: high-side switch of the modem\n\
+              VBUS bus 0 12\n\
+              M1 modem gate bus bus PSW\n\
+              RON gate pull 10k\n\
+              Q1 pull base 0 QSW\n\
+              VON on 0 3.3\n\
+              RB on base 10k\n\
+              RMOD modem 0 82\n\
+              .model PSW PMOS(VTO=-2 KP=10)\n\
+              .model QSW NPN(IS=14f BF=200)\n",
+    passing: "tide gauge buoy: float switch\n\
+              VBUS bus 0 12\n\
+              RPULL bus sense 10k\n\
+              RLOW sense 0 100k\n",
+    check: Check::Wiring(check),
+};
+
+fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
+    let circuit = evidence.circuit;
+    let mut told: FxHashSet<NodeId> = FxHashSet::default();
+    let mut findings = Vec::new();
+    for (id, element) in circuit.elements() {
+        let is_insulated =
+            matches!(element.behaviour, Behaviour::Transistor { .. }) && element.letter == b'M';
+        if !is_insulated {
+            continue;
+        }
+        let gate = circuit.node(id, 1);
+        if told.contains(&gate) {
+            continue;
+        }
+        let Some(lead) = lead_of(evidence, gate) else { continue };
+        if lead.drivers.is_empty() || lead.is_held() {
+            continue;
+        }
+        told.extend(&lead.nodes);
+        findings.push(judge(evidence, id, gate, &lead));
+    }
+    findings
+}
+
+/// What a gate hangs on.
+#[derive(Default)]
+struct Lead {
+    /// Nodes joined to it by resistors and inductors.
+    nodes: Vec<NodeId>,
+    /// Transistors and switches there, with what they do to it when on.
+    drivers: Vec<(ElementId, Pull)>,
+    /// Diodes there that are no clamps.
+    diodes: Vec<Pull>,
+}
+
+/// Which way a driver takes the gate.
+#[derive(Clone, Copy, PartialEq, Eq)]
+enum Pull {
+    Up,
+    Down,
+    Either,
+}
+
+impl Lead {
+    /// One of several is always on: a push-pull stage, a change-over switch, a gate of diodes with its pull.
+    fn is_held(&self) -> bool {
+        let pulls = || self.drivers.iter().map(|d| d.1).chain(self.diodes.iter().copied());
+        let either = pulls().filter(|&p| p == Pull::Either).count();
+        let both = pulls().any(|p| p == Pull::Up) && pulls().any(|p| p == Pull::Down);
+        both || either > 1 || (either == 1 && pulls().count() > 1)
+    }
+}
+
+/// Nodes of a lead that are gone through at most.
+const WIDEST: usize = 64;
+
+/// `None` where something holds it.
+fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
+    let circuit = evidence.circuit;
+    let noted = &evidence.wiring.noted;
+    let mut lead = Lead { nodes: vec![gate], ..Lead::default() };
+    let mut at = 0;
+    while let Some(&node) = lead.nodes.get(at) {
+        at += 1;
+        if evidence.wiring.rails.is_rail(node) || noted.is_supplied(node) || lead.nodes.len() > WIDEST {
+            return None;
+        }
+        for &touch in evidence.wiring.touching.at(node) {
+            match circuit.element(touch.element).behaviour {
+                _ if is_sensing(circuit, touch.element, touch.pin as usize) => {}
+                Behaviour::Capacitor { .. } => {}
+                Behaviour::Resistor(_) | Behaviour::Inductor { .. } => {
+                    let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+                    if !lead.nodes.contains(&far) {
+                        lead.nodes.push(far);
+                    }
+                }
+                Behaviour::Diode { .. } => lead.diodes.extend(diode_pull(evidence, touch)),
+                Behaviour::Transistor { .. } => match transistor_pull(circuit, touch) {
+                    Some(Some(pull)) => lead.drivers.push((touch.element, pull)),
+                    Some(None) => {}
+                    None => return None,
+                },
+                Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. } => {
+                    lead.drivers.push((touch.element, Pull::Either));
+                }
+                _ if is_opaque(circuit, touch.element) => return None,
+                _ => return None,
+            }
+        }
+    }
+    Some(lead)
+}
+
+/// A diode to a rail is a clamp and does not speak until the gate leaves its limits.
+fn diode_pull(evidence: &Evidence<'_>, touch: Touch) -> Option<Pull> {
+    let far = evidence.circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+    let pull = if touch.pin == 0 { Pull::Down } else { Pull::Up };
+    (!evidence.wiring.rails.is_rail(far)).then_some(pull)
+}
+
+/// `Some(None)` for a gate, which does nothing; `None` where the model does not tell.
+fn transistor_pull(circuit: &Circuit, touch: Touch) -> Option<Option<Pull>> {
+    let element = circuit.element(touch.element);
+    let Behaviour::Transistor { model } = element.behaviour else { return None };
+    let (one, two) = main_path(circuit, touch.element)?;
+    let pin = touch.pin as usize;
+    if element.letter == b'M' && pin == 1 {
+        return Some(None);
+    }
+    let sinks = match (circuit.model(model?).kind, pin) {
+        (ModelKind::Npn | ModelKind::Nmos, pin) if pin == one => true,
+        (ModelKind::Pnp | ModelKind::Pmos, pin) if pin == one => false,
+        (ModelKind::Npn, pin) if pin == two => false,
+        (ModelKind::Pnp, pin) if pin == two => true,
+        _ => return None,
+    };
+    Some(Some(if sinks { Pull::Down } else { Pull::Up }))
+}
+
+fn judge(evidence: &Evidence<'_>, id: ElementId, gate: NodeId, lead: &Lead) -> Finding {
+    let name = evidence.name(id);
+    let drivers: Vec<String> = lead.drivers.iter().map(|d| evidence.name(d.0)).collect();
+    let message = format!(
+        "nothing holds the gate of {name} (`{}`) while {} {} off",
+        evidence.node(gate),
+        list(&drivers),
+        if drivers.len() == 1 { "is" } else { "are" }
+    );
+    let mut finding = evidence.about(&RULE, id, message).label("its gate is left to leakage");
+    for &(driver, _) in lead.drivers.iter().take(4) {
+        finding = finding.also(evidence.statement(driver), "its only driver");
+    }
+    finding.subjects.extend(drivers);
+    finding.subjects.extend(lead.nodes.iter().map(|&n| evidence.node(n)));
+    evidence.name_nodes(&mut finding, &[id]);
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
+}
