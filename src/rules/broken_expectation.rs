@@ -1,6 +1,9 @@
 //! An `expect` note that the circuit does not meet.
 
-use super::{About, Check, Claim, Evidence, Found, Outcome, Rivals, Rule, claims, expected, in_cases};
+use super::{
+    About, Check, Claim, Evidence, Found, Outcome, Regions, Rivals, Rule, claims, expected, in_cases,
+};
+use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
@@ -34,15 +37,48 @@ pub const RULE: Rule = Rule {
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let (claims, mut findings) = claims(evidence);
     let rivals = Rivals::of(&claims);
+    let mut regions = None;
     for claim in claims.iter().filter(|c| !c.wanted.over_time) {
         if let Outcome::Broken(found) = claim.judge(evidence, operating, &rivals) {
-            findings.push(finding(evidence, operating, claim, &found));
+            let regions = regions.get_or_insert_with(|| Regions::of(evidence, |_| false));
+            findings.push(finding(evidence, operating, regions, claim, &found));
         }
     }
     findings
 }
 
-fn finding(evidence: &Evidence<'_>, operating: &Operating, claim: &Claim<'_>, found: &[Found]) -> Finding {
+/// More sources around than this explain nothing.
+const FEW: usize = 4;
+
+/// The sources that hold the nodes around it: one of them is often what changed.
+fn feeding(evidence: &Evidence<'_>, regions: &Regions, about: About) -> Vec<ElementId> {
+    let rails = &evidence.wiring.rails;
+    let nodes: Vec<NodeId> = match about {
+        About::Diode(id) => evidence.circuit.pins(id).iter().map(|p| p.node).collect(),
+        About::Node(node) => vec![node],
+    };
+    let mut sources: Vec<ElementId> = Vec::new();
+    for node in nodes {
+        match rails.is_rail(node) {
+            true => sources.extend(rails.source(node)),
+            false => {
+                let borders = regions.borders(regions.region(node));
+                sources.extend(borders.iter().filter_map(|&rail| rails.source(rail)));
+            }
+        }
+    }
+    sources.sort();
+    sources.dedup();
+    if sources.len() > FEW { Vec::new() } else { sources }
+}
+
+fn finding(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    regions: &Regions,
+    claim: &Claim<'_>,
+    found: &[Found],
+) -> Finding {
     let subject = claim.subject(evidence);
     let expected = expected(claim.wanted);
     let is_named = claim.wanted.at.is_some();
@@ -60,6 +96,10 @@ fn finding(evidence: &Evidence<'_>, operating: &Operating, claim: &Claim<'_>, fo
     match claim.about {
         About::Diode(id) => evidence.name_nodes(&mut finding, &[id]),
         About::Node(node) => finding.subjects.push(evidence.node(node)),
+    }
+    for source in feeding(evidence, regions, claim.about) {
+        finding = finding.also(evidence.statement(source), "drives it").about(evidence.name(source));
+        evidence.name_nodes(&mut finding, &[source]);
     }
     let why = found.first().map_or("", |f| f.why.as_str());
     finding.help(format!("{why} {}", RULE.remedy).trim().to_owned())

@@ -107,7 +107,8 @@ fn tell(
     switch: ElementId,
 ) -> Finding {
     let name = evidence.name(coil);
-    let peak = ends.into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
+    let peak =
+        ends.into_iter().filter_map(|n| swing.node(n)?.over_time).map(|l| l.max.abs().max(l.min.abs()));
     let reached = match peak.fold(0.0, f64::max) {
         volts if volts > 0.0 => format!("; its end reaches {} in this model", quantity(volts, "V")),
         _ => String::new(),

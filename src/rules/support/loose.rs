@@ -122,12 +122,17 @@ fn ports_of(circuit: &Circuit, instance: ScopeId) -> FxHashSet<NodeId> {
     pins.filter(|n| !inside(circuit.nodes[n.index()].scope)).collect()
 }
 
+/// A gain from here on needs feedback, or a load that it switches.
+const AMPLIFIER: f64 = 1000.0;
+
 /// Elements whose pin may well be left open: unknown ones, positive outputs of controlled voltage sources, the ends of
 /// an unused winding.
 fn may_end_here(evidence: &Evidence<'_>, touch: Touch, coupled: &FxHashSet<ElementId>) -> bool {
     let circuit = evidence.circuit;
     match circuit.element(touch.element).behaviour {
-        Behaviour::VoltageByVoltage { .. } | Behaviour::VoltageByCurrent { .. } => touch.pin == 0,
+        // a probe may; an amplifier of high gain is there to drive something
+        Behaviour::VoltageByVoltage { ref gain } => touch.pin == 0 && gain.number.abs() < AMPLIFIER,
+        Behaviour::VoltageByCurrent { .. } => touch.pin == 0,
         Behaviour::Inductor { .. } if coupled.contains(&touch.element) => {
             circuit.pins(touch.element).iter().all(|p| evidence.wiring.touching.only(p.node).is_some())
         }

@@ -1,0 +1,141 @@
+//! A node whose name says what it stands at, held by a source that says otherwise.
+
+use super::{Check, Evidence, Rule, turn_round};
+use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::finding::{Finding, Severity, quantity};
+use crate::operating::Operating;
+
+pub const RULE: Rule = Rule {
+    name: "supply-against-its-name",
+    group: "orientation",
+    severity: Severity::Warning,
+    also: None,
+    summary: "a supply stands at another polarity, or at another power of ten, than its name says",
+    why: "Everybody who joins a part to such a node trusts its name. A source whose nodes are swapped, or whose unit \
+          slipped, turns it into its opposite.",
+    remedy: "Swap the nodes of the source, correct its value, or give the node another name.",
+    source: Some("Supply names: VCC and VDD above ground, VEE below, `3V3` for 3.3 V; common practice"),
+    failing: "tide gauge buoy: pull-up of the float switch\n\
+              VS 0 vcc 5\n\
+              R1 vcc float 10k\n\
+              R2 float 0 100k\n",
+    passing: "tide gauge buoy: pull-up of the float switch\n\
+              VS 3V3 0 3.3\n\
+              VN -5V 0 -5\n\
+              R1 3V3 float 10k\n\
+              R2 float -5V 100k\n",
+    check: Check::States(check),
+};
+
+/// Less than this, in volts, has no polarity worth a word.
+const SOME: f64 = 0.1;
+
+/// A name and a voltage this many times apart have no tolerance between them but a slip of the unit.
+const SLIP: f64 = 20.0;
+
+fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    let nodes = (1..evidence.circuit.nodes.len()).map(NodeId::new);
+    nodes.filter_map(|node| judge(evidence, operating, node)).collect()
+}
+
+/// What a name says.
+#[derive(Debug, Clone, Copy, PartialEq)]
+struct Said {
+    /// 1 above ground, −1 below.
+    sign: f64,
+    /// Volts, as a magnitude, where it gives them.
+    volts: Option<f64>,
+}
+
+/// What the last part of a node's name says.
+fn said(name: &str) -> Option<Said> {
+    let own = name.rsplit([':', '/']).next().unwrap_or(name).to_ascii_uppercase();
+    if let Some(volts) = own.split(['_', '.']).find_map(in_volts) {
+        let below = own.starts_with('-') || own.contains("NEG") || own.contains("MINUS");
+        return Some(Said { sign: if below { -1.0 } else { 1.0 }, volts: Some(volts) });
+    }
+    let is_turned = own.starts_with('-') || own.ends_with('-') || own.contains("NEG");
+    let above = ["VCC", "VDD", "AVCC", "AVDD", "DVDD"].iter().any(|s| own.starts_with(s));
+    match (above, own.starts_with("VEE")) {
+        _ if is_turned => None,
+        (true, _) => Some(Said { sign: 1.0, volts: None }),
+        (_, true) => Some(Said { sign: -1.0, volts: None }),
+        _ => None,
+    }
+}
+
+/// `5V`, `+12V`, `3V3`, `-5V0`: the magnitude. `V5` may be the fifth node as well and says nothing.
+fn in_volts(word: &str) -> Option<f64> {
+    let digits = word.strip_prefix(['+', '-']).unwrap_or(word);
+    let (whole, part) = digits.split_once('V')?;
+    let is_number = |s: &str| s.bytes().all(|b| b.is_ascii_digit());
+    if whole.is_empty() || whole.len() > 4 || part.len() > 2 || !is_number(whole) || !is_number(part) {
+        return None;
+    }
+    format!("{whole}.{part}0").parse().ok().filter(|v: &f64| *v > 0.0)
+}
+
+fn judge(evidence: &Evidence<'_>, operating: &Operating, node: NodeId) -> Option<Finding> {
+    let source = evidence.wiring.rails.source(node)?;
+    let (low, high) = evidence.standing(operating).rail(node)?;
+    let name = evidence.node(node);
+    let said = said(&name)?;
+    let is_opposite = if said.sign > 0.0 { high < -SOME } else { low > SOME };
+    let most = low.abs().max(high.abs());
+    let slipped = |volts: f64| most > 0.0 && (most > SLIP * volts || most * SLIP < volts);
+    let is_slip = said.volts.is_some_and(slipped) && moves_not(evidence, source);
+    let stands = if said.sign > 0.0 { high } else { low };
+    let message = match is_opposite {
+        true => format!(
+            "`{name}` is {} by its name, but {} holds it at {}",
+            if said.sign > 0.0 { "above ground" } else { "below ground" },
+            evidence.name(source),
+            quantity(stands, "V")
+        ),
+        false if is_slip => format!(
+            "`{name}` stands at {}, which is no {} supply: {} holds it",
+            quantity(stands, "V"),
+            quantity(said.sign * said.volts?, "V"),
+            evidence.name(source)
+        ),
+        false => return None,
+    };
+    let mut finding = evidence.about(&RULE, source, message).label("holds it").about(&name);
+    evidence.name_nodes(&mut finding, &[source]);
+    let finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
+    let is_alone = [0, 1].iter().any(|&pin| evidence.circuit.node(source, pin) == NodeId::GROUND);
+    Some(if is_opposite && is_alone { turn_round(evidence, source, finding) } else { finding })
+}
+
+fn moves_not(evidence: &Evidence<'_>, source: ElementId) -> bool {
+    matches!(&evidence.circuit.element(source).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    // names as boards carry them, common practice
+    #[test]
+    fn names_say_polarity_and_volts_or_nothing() {
+        let plain = |sign| Some(Said { sign, volts: None });
+        let full = |sign, volts| Some(Said { sign, volts: Some(volts) });
+        for (name, wanted) in [
+            ("vcc", plain(1.0)),
+            ("X1:VDDA", plain(1.0)),
+            ("vee", plain(-1.0)),
+            ("-vcc", None),
+            ("+12V", full(1.0, 12.0)),
+            ("/PWR/3V3", full(1.0, 3.3)),
+            ("VCC_1V8", full(1.0, 1.8)),
+            ("-5V", full(-1.0, 5.0)),
+            ("5V_NEG", full(-1.0, 5.0)),
+            ("v5", None),
+            ("vin", None),
+            ("12", None),
+            ("0V", None),
+        ] {
+            assert_eq!(said(name), wanted, "{name}");
+        }
+    }
+}
