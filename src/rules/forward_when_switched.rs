@@ -102,7 +102,10 @@ fn judge(
     let far = circuit.node(diode, 1 - pin as usize);
     let (rail, through) = match evidence.wiring.rails.is_rail(far) {
         true => (far, false),
-        false => (snubbed_to(evidence, diode, far)?, true),
+        false => {
+            let slowed = || freewheels_to(evidence, switch.node, diode, far);
+            (snubbed_to(evidence, diode, far).or_else(slowed)?, true)
+        }
     };
     if rail == switch.rail {
         return None;
@@ -117,7 +120,7 @@ fn judge(
     let name = evidence.name(diode);
     let what = if through {
         format!(
-            "and the snubber's resistor carries it all the time that {} is on",
+            "and the resistor behind it carries its current all the time that {} is on",
             evidence.name(switch.element)
         )
     } else {
@@ -141,6 +144,31 @@ fn judge(
     }
     evidence.name_nodes(&mut finding, &[diode]);
     Some(turn_round(evidence, diode, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
+}
+
+/// The rail to which a resistor alone leads from the far end of the diode, where a coil leads from the switch to the
+/// same one: the resistor makes its current die faster.
+fn freewheels_to(
+    evidence: &Evidence<'_>,
+    switched: NodeId,
+    diode: ElementId,
+    node: NodeId,
+) -> Option<NodeId> {
+    let circuit = evidence.circuit;
+    let (touching, rails) = (&evidence.wiring.touching, &evidence.wiring.rails);
+    let rail = touching.walk(circuit, rails, node, diode, is_lead).end;
+    if !rails.is_rail(rail) {
+        return None;
+    }
+    let is_coil = |id: &ElementId| matches!(circuit.element(*id).behaviour, Behaviour::Inductor { .. });
+    let has_coil = touching.direct(circuit, switched).filter(|t| t.element != diode).any(|t| {
+        let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
+        let walk = touching.walk(circuit, rails, far, t.element, is_lead);
+        is_lead(&circuit.element(t.element).behaviour)
+            && walk.end == rail
+            && (is_coil(&t.element) || walk.passed.iter().any(is_coil))
+    });
+    has_coil.then_some(rail)
 }
 
 /// The rail to which a resistor and a capacitor side by side lead from the far end of a snubber's diode.

@@ -1,7 +1,7 @@
 //! A diode that no closed path lets conduct.
 
 use super::{Check, Evidence, Rule, list};
-use crate::circuit::{Behaviour, ElementId};
+use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::Barred;
 use petgraph::unionfind::UnionFind;
@@ -84,6 +84,22 @@ fn clusters(evidence: &Evidence<'_>) -> Vec<Vec<Barred>> {
     clusters
 }
 
+/// Nodes named of what the cluster leads into or out of.
+const MOST_NAMED: usize = 12;
+
+/// The nodes into or out of which no current can close its path, because of this cluster: what misses its feed or its
+/// return is among them.
+fn cut_off(evidence: &Evidence<'_>, cluster: &[Barred]) -> Vec<NodeId> {
+    let facts = &evidence.wiring.one_way;
+    let sides = cluster.iter().flat_map(|b| [b.components.0, b.components.1]);
+    let sides: FxHashSet<u32> = sides.filter(|&c| c != facts.ground).collect();
+    let is_inside =
+        |node: &NodeId| facts.component.get(facts.two_way.of(*node)).is_some_and(|c| sides.contains(c));
+    let nodes = (1..evidence.circuit.nodes.len()).map(NodeId::new);
+    let inside: Vec<NodeId> = nodes.filter(is_inside).take(MOST_NAMED + 1).collect();
+    if inside.len() > MOST_NAMED { Vec::new() } else { inside }
+}
+
 fn is_shorted(evidence: &Evidence<'_>, id: ElementId) -> bool {
     evidence.circuit.node(id, 0) == evidence.circuit.node(id, 1)
 }
@@ -131,5 +147,11 @@ fn judge(evidence: &Evidence<'_>, cluster: &[Barred]) -> Finding {
     finding.subjects.extend(names.into_iter().skip(1));
     let diodes: Vec<ElementId> = cluster.iter().map(|b| b.diode).collect();
     evidence.name_nodes(&mut finding, &diodes);
+    for node in cut_off(evidence, cluster) {
+        let name = evidence.node(node);
+        if !finding.subjects.contains(&name) {
+            finding.subjects.push(name);
+        }
+    }
     finding.help(format!("{} {}", RULE.why, RULE.remedy))
 }

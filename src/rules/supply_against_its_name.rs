@@ -64,6 +64,27 @@ fn said(name: &str) -> Option<Said> {
     }
 }
 
+/// What a source's own name says of its first node, where its other one is ground: `VCC`; `V24` where it gives 24 V.
+fn said_by(evidence: &Evidence<'_>, source: ElementId, node: NodeId, volts: f64) -> Option<Said> {
+    let circuit = evidence.circuit;
+    let ends = [circuit.node(source, 0), circuit.node(source, 1)];
+    if !ends.contains(&node) || !ends.contains(&NodeId::GROUND) {
+        return None;
+    }
+    let name = evidence.name(source);
+    let own = name.rsplit(':').next().unwrap_or(&name);
+    let node = evidence.node(node);
+    let node = node.rsplit([':', '/']).next().unwrap_or(&node);
+    let counts = |word: &str| {
+        let digits = word.strip_prefix(['V', 'v'])?;
+        let value: f64 = digits.parse().ok().filter(|_| digits.bytes().all(|b| b.is_ascii_digit()))?;
+        // V33 may be 3.3 V
+        let fits = |v: f64| v >= 2.0 && (v - volts).abs() <= 0.05 * volts;
+        (fits(value) || fits(value / 10.0)).then_some(Said { sign: 1.0, volts: None })
+    };
+    said(own).filter(|s| s.volts.is_none()).or_else(|| counts(own)).or_else(|| counts(node))
+}
+
 /// `5V`, `+12V`, `3V3`, `-5V0`: the magnitude. `V5` may be the fifth node as well and says nothing.
 fn in_volts(word: &str) -> Option<f64> {
     let digits = word.strip_prefix(['+', '-']).unwrap_or(word);
@@ -79,7 +100,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, node: NodeId) -> Option
     let source = evidence.wiring.rails.source(node)?;
     let (low, high) = evidence.standing(operating).rail(node)?;
     let name = evidence.node(node);
-    let said = said(&name)?;
+    let said = said(&name).or_else(|| said_by(evidence, source, node, low.abs().max(high.abs())))?;
     let is_opposite = if said.sign > 0.0 { high < -SOME } else { low > SOME };
     let most = low.abs().max(high.abs());
     let slipped = |volts: f64| most > 0.0 && (most > SLIP * volts || most * SLIP < volts);
@@ -87,8 +108,8 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, node: NodeId) -> Option
     let stands = if said.sign > 0.0 { high } else { low };
     let message = match is_opposite {
         true => format!(
-            "`{name}` is {} by its name, but {} holds it at {}",
-            if said.sign > 0.0 { "above ground" } else { "below ground" },
+            "`{name}` is a supply {} ground by its name or its source's, but {} holds it at {}",
+            if said.sign > 0.0 { "above" } else { "below" },
             evidence.name(source),
             quantity(stands, "V")
         ),

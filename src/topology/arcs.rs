@@ -1,13 +1,13 @@
-//! Currents that must go one way. Everything but a diode without breakdown passes current both ways and is
-//! contracted; what is left is a directed graph of diodes. A diode whose ends lie in different strongly
+//! Currents that must go one way. Everything but diodes without breakdown and bipolar transistors passes current both
+//! ways and is contracted; what is left is a directed graph of these. A diode whose ends lie in different strongly
 //! connected components of it lies in no directed loop but in a directed cut, so it never carries forward
 //! current whatever the values are (colouring lemma: Minty 1960).
 
 use super::adjacent::Adjacent;
 use super::groups::{Groups, Joints};
-use super::links::is_one_way;
+use super::links::arcs;
 use super::touching::Touching;
-use crate::circuit::{Circuit, ElementId, NodeId};
+use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use petgraph::algo::kosaraju_scc;
 use petgraph::graph::{DiGraph, NodeIndex};
 
@@ -20,6 +20,8 @@ pub struct OneWay {
     pub barred: Vec<Barred>,
     /// Component of ground.
     pub ground: u32,
+    /// Component of each group.
+    pub component: Vec<u32>,
 }
 
 /// A diode that no closed path lets conduct.
@@ -40,14 +42,14 @@ impl OneWay {
     /// Means of periodic currents obey the same law as lasting ones, since no capacitor carries a mean current.
     pub(super) fn of(circuit: &Circuit, joints: &Joints, touching: &Touching, steady: bool) -> Self {
         let two_way = joints.two_way(steady);
-        let is_one_way = |circuit: &Circuit, id| is_one_way(circuit, id, joints.available);
         let mut graph: DiGraph<(), ElementId> = DiGraph::with_capacity(two_way.count(), 0);
         for _ in 0..two_way.count() {
             graph.add_node(());
         }
-        for (id, _) in circuit.elements().filter(|(id, _)| is_one_way(circuit, *id)) {
-            let (anode, cathode) = (two_way.of(circuit.node(id, 0)), two_way.of(circuit.node(id, 1)));
-            graph.add_edge(NodeIndex::new(anode), NodeIndex::new(cathode), id);
+        for (id, _) in circuit.elements() {
+            for (from, to) in arcs(circuit, id, joints.available) {
+                graph.add_edge(NodeIndex::new(two_way.of(from)), NodeIndex::new(two_way.of(to)), id);
+            }
         }
         let mut component = vec![0u32; two_way.count()];
         for (number, members) in kosaraju_scc(&graph).iter().enumerate() {
@@ -63,7 +65,8 @@ impl OneWay {
                 let (from, to) = graph.edge_endpoints(edge)?;
                 let components = (component[from.index()], component[to.index()]);
                 let (dead_end, loose_end) = bridges.verdict[edge.index()];
-                (components.0 != components.1).then(|| Barred {
+                let is_diode = matches!(circuit.element(graph[edge]).behaviour, Behaviour::Diode { .. });
+                (is_diode && components.0 != components.1).then(|| Barred {
                     diode: graph[edge],
                     components,
                     dead_end,
@@ -71,7 +74,7 @@ impl OneWay {
                 })
             })
             .collect();
-        OneWay { ground: component[two_way.of(NodeId::GROUND)], two_way, barred }
+        OneWay { ground: component[two_way.of(NodeId::GROUND)], two_way, barred, component }
     }
 }
 

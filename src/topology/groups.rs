@@ -1,6 +1,6 @@
 //! Nodes grouped by what joins them: islands, related islands, and groups held by direct-current paths.
 
-use super::links::{Link, is_one_way, is_opaque, links};
+use super::links::{Link, arcs, is_opaque, links};
 use super::noted::Noted;
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use petgraph::unionfind::UnionFind;
@@ -62,7 +62,7 @@ fn join(circuit: &Circuit, sets: &mut UnionFind<u32>, id: ElementId, a: usize, b
 struct Joint {
     nodes: (NodeId, NodeId),
     link: Link,
-    /// The link is a diode that passes current one way only.
+    /// The link is a diode or a junction that passes current one way only.
     one_way: bool,
 }
 
@@ -82,8 +82,10 @@ impl Joints {
         let mut grounded = noted.supplied.clone();
         for (id, _) in circuit.elements() {
             let pins = circuit.pins(id);
-            let one_way = is_one_way(circuit, id, available);
+            let arcs = arcs(circuit, id, available);
             for (a, b, link) in links(circuit, id) {
+                // a substrate is no matter of direction
+                let one_way = !arcs.is_empty() && a.max(b) < 3;
                 joints.push(Joint { nodes: (pins[a].node, pins[b].node), link, one_way });
             }
             if is_opaque(circuit, id) {

@@ -1,7 +1,7 @@
 //! How each kind of element joins its pins: what passes a direct current, what only a changing one, what
 //! merely listens.
 
-use crate::circuit::{Behaviour, Circuit, ElementId, NoteKind};
+use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId, NoteKind};
 
 /// What passes between two pins.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -77,9 +77,29 @@ pub fn can_break_down(circuit: &Circuit, id: ElementId, available: f64) -> bool 
 }
 
 /// A diode that passes current one way only.
-pub(super) fn is_one_way(circuit: &Circuit, id: ElementId, available: f64) -> bool {
+fn is_one_way(circuit: &Circuit, id: ElementId, available: f64) -> bool {
     matches!(circuit.element(id).behaviour, Behaviour::Diode { .. })
         && !can_break_down(circuit, id, available)
+}
+
+/// What passes current one way only, from node to node: a diode without breakdown, and the junctions and the main path
+/// of a bipolar transistor, of which only the junction from base to collector works both for and against it.
+pub(super) fn arcs(circuit: &Circuit, id: ElementId, available: f64) -> Vec<(NodeId, NodeId)> {
+    let element = circuit.element(id);
+    match element.behaviour {
+        Behaviour::Diode { .. } if is_one_way(circuit, id, available) => {
+            vec![(circuit.node(id, 0), circuit.node(id, 1))]
+        }
+        Behaviour::Transistor { model: Some(model) } if element.letter == b'Q' => {
+            let [c, b, e] = [0, 1, 2].map(|pin| circuit.node(id, pin));
+            match circuit.model(model).kind {
+                ModelKind::Npn => vec![(c, e), (b, e), (b, c)],
+                ModelKind::Pnp => vec![(e, c), (e, b), (c, b)],
+                _ => Vec::new(),
+            }
+        }
+        _ => Vec::new(),
+    }
 }
 
 /// The sum of the greatest values of all voltage sources and supplies, in volts, which no difference of potentials

@@ -55,7 +55,8 @@ fn is_caught(analysis: &Analysis, mutant: &Mutant) -> bool {
             return true;
         }
         // what lies inside an instance is a part of it
-        let names = |s: &String| s.to_lowercase().split(':').any(|part| mutant.names.iter().any(|n| n == part));
+        let names =
+            |s: &String| s.to_lowercase().split(':').any(|part| mutant.names.iter().any(|n| n == part));
         mutant.names.is_empty() || finding.subjects.iter().any(names)
     })
 }

@@ -4,11 +4,12 @@ use super::super::both_ends_on_one_node;
 use super::loose::{self, LooseEnd};
 use super::ratings::{self, Limit};
 use super::rule::Rule;
-use super::standing::Standing;
+use super::standing::{Standing, Timed, timed};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId, ScopeId};
 use crate::config::Thresholds;
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
+use crate::swing::Swing;
 use crate::text::{Sources, Span};
 use crate::topology::{Wiring, coupled_coils};
 use rustc_hash::{FxHashMap, FxHashSet};
@@ -34,6 +35,8 @@ pub struct Evidence<'a> {
     coupled: OnceCell<FxHashSet<ElementId>>,
     standing: OnceCell<Standing>,
     ratings: OnceCell<BTreeMap<ElementId, Vec<Limit<'a>>>>,
+    /// What the time pass has seen of each diode.
+    timed: FxHashMap<ElementId, Timed>,
     told: Vec<Finding>,
     /// Everything that a warning or error among those names, and everything that any of them does.
     named: FxHashSet<String>,
@@ -54,6 +57,7 @@ impl<'a> Evidence<'a> {
             coupled: OnceCell::new(),
             standing: OnceCell::new(),
             ratings: OnceCell::new(),
+            timed: FxHashMap::default(),
             told: Vec::new(),
             named: FxHashSet::default(),
             mentioned: FxHashSet::default(),
@@ -95,6 +99,16 @@ impl<'a> Evidence<'a> {
         self.named = serious.flat_map(|f| &f.subjects).cloned().collect();
         self.mentioned = told.iter().flat_map(|f| &f.subjects).cloned().collect();
         self.told = told;
+    }
+
+    /// Keeps what the time pass has seen, for diodes that no instant can judge.
+    pub(super) fn keep_time(&mut self, swing: &Swing) {
+        self.timed = timed(swing);
+    }
+
+    /// What the time pass has seen of a diode.
+    pub(super) fn timed(&self, id: ElementId) -> Option<Timed> {
+        self.timed.get(&id).copied()
     }
 
     /// A coupling names this coil.

@@ -39,6 +39,9 @@ pub fn run(
     told.retain(|finding| finding.accepted.is_none());
     set_levels(&mut told, levels);
     evidence.keep_told(told);
+    if let Some(swing) = swing {
+        evidence.keep_time(swing);
+    }
     let evidence = &*evidence;
     if let Some(states) = operating {
         for rule in super::super::all() {

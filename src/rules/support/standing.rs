@@ -4,6 +4,7 @@
 use super::Evidence;
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::operating::Operating;
+use crate::swing::Swing;
 use crate::topology::{Link, Walk, is_lead, is_opaque, links};
 use petgraph::unionfind::UnionFind;
 use rustc_hash::FxHashMap;
@@ -27,6 +28,28 @@ pub struct Seen {
     pub breakdown: Option<f64>,
 }
 
+/// What the time pass has seen of a diode.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Timed {
+    /// Its state, where it is the same all the time.
+    always: Option<State>,
+    /// Largest voltage from cathode to anode, volts.
+    reverse: f64,
+}
+
+/// What was seen of each diode that was followed.
+pub fn timed(swing: &Swing) -> FxHashMap<ElementId, Timed> {
+    let of = |diode: &crate::swing::DiodeSwing| {
+        let time = diode.over_time.as_ref()?;
+        let always = match time.states(swing.window).as_slice() {
+            [one] => Some(*one),
+            _ => None,
+        };
+        Some((diode.element, Timed { always, reverse: time.peak_reverse_voltage }))
+    };
+    if swing.span.is_none() { FxHashMap::default() } else { swing.diodes.iter().filter_map(of).collect() }
+}
+
 /// The whole.
 #[derive(Debug, Default)]
 pub struct Standing {
@@ -44,6 +67,21 @@ impl Seen {
     /// By its drop, it gives light.
     pub fn is_led(&self) -> bool {
         (LED..LED_AT_MOST).contains(&self.drop)
+    }
+
+    /// Joins what time has shown to what the conditions have.
+    fn follow(&mut self, timed: Option<Timed>) {
+        let Some(timed) = timed else {
+            self.always = None;
+            return;
+        };
+        if self.always != timed.always {
+            self.always = None;
+        }
+        self.least = self.least.min(-timed.reverse);
+        if timed.always == Some(State::Blocking) {
+            self.greatest = self.greatest.max(0.0);
+        }
     }
 
     /// It is the same state in every condition.
@@ -105,12 +143,14 @@ impl Standing {
                 seen.open_circuit = seen.open_circuit.max(view);
             }
         }
-        // a condition without an answer, and one that time must judge, leave nothing certain
+        // a condition without an answer, and one that time must judge and did not, leave nothing certain
         let hopeless = operating.cases.iter().any(|case| case.solutions.is_empty());
         for (id, seen) in &mut standing.diodes {
             let is_timed = operating.left_to_time.binary_search(id).is_ok();
-            if hopeless || is_timed || matches!(seen.always, Some(State::NotEvaluated | State::Open)) {
+            if hopeless || matches!(seen.always, Some(State::NotEvaluated | State::Open)) {
                 seen.always = None;
+            } else if is_timed {
+                seen.follow(evidence.timed(*id));
             }
         }
         standing

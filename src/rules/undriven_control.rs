@@ -1,4 +1,5 @@
-//! An insulated gate that only a transistor or a switch drives: with that one off, nothing holds it.
+//! A base that nothing drives, and an insulated gate that only a transistor or a switch drives: with that one off,
+//! nothing holds it.
 
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
@@ -7,14 +8,14 @@ use crate::topology::{Touch, is_opaque, is_sensing, main_path};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
-    name: "unheld-gate",
+    name: "undriven-control",
     group: "wiring",
     severity: Severity::Warning,
     also: None,
-    summary: "nothing holds an insulated gate while its driver is off",
+    summary: "nothing drives a base, or holds an insulated gate while its driver is off",
     why: "A gate takes no current, so it keeps what charge it has and leakage decides whether the transistor is on: a load \
           that should be off then gets warm or stays on.",
-    remedy: "Put a resistor from the gate to the potential at which the transistor is off, usually its source.",
+    remedy: "Join a base to what is to drive it. Put a resistor from a gate to the potential at which the transistor is off, usually its source.",
     source: None,
     failing: "tide gauge buoy: high-side switch of the modem\n\
               VBUS bus 0 12\n\
@@ -37,18 +38,24 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let circuit = evidence.circuit;
     let mut told: FxHashSet<NodeId> = FxHashSet::default();
     let mut findings = Vec::new();
+    if evidence.is_groundless() {
+        return findings;
+    }
     for (id, element) in circuit.elements() {
-        let is_insulated =
-            matches!(element.behaviour, Behaviour::Transistor { .. }) && element.letter == b'M';
-        if !is_insulated {
-            continue;
-        }
-        let gate = circuit.node(id, 1);
+        let gate = match element.behaviour {
+            Behaviour::Transistor { model: Some(_) } if element.letter != b'J' => circuit.node(id, 1),
+            _ => continue,
+        };
         if told.contains(&gate) {
             continue;
         }
         let Some(lead) = lead_of(evidence, gate) else { continue };
-        if lead.drivers.is_empty() || lead.is_held() {
+        let is_left = match element.letter {
+            b'M' => !lead.drivers.is_empty() && !lead.is_held(),
+            // a base takes current, so a driver that is off leaves it at rest
+            _ => lead.is_idle(circuit.node(id, 2)),
+        };
+        if !is_left {
             continue;
         }
         told.extend(&lead.nodes);
@@ -66,6 +73,10 @@ struct Lead {
     drivers: Vec<(ElementId, Pull)>,
     /// Diodes there that are no clamps.
     diodes: Vec<Pull>,
+    /// Rails there.
+    rails: Vec<NodeId>,
+    /// A capacitor leads from there to what may drive it.
+    is_coupled: bool,
 }
 
 /// Which way a driver takes the gate.
@@ -77,12 +88,20 @@ enum Pull {
 }
 
 impl Lead {
+    /// Nothing there drives the base of a transistor whose emitter is at `emitter`.
+    fn is_idle(&self, emitter: NodeId) -> bool {
+        self.drivers.is_empty()
+            && self.diodes.is_empty()
+            && !self.is_coupled
+            && self.rails.iter().all(|&rail| rail == emitter)
+    }
+
     /// One of several is always on: a push-pull stage, a change-over switch, a gate of diodes with its pull.
     fn is_held(&self) -> bool {
         let pulls = || self.drivers.iter().map(|d| d.1).chain(self.diodes.iter().copied());
         let either = pulls().filter(|&p| p == Pull::Either).count();
         let both = pulls().any(|p| p == Pull::Up) && pulls().any(|p| p == Pull::Down);
-        both || either > 1 || (either == 1 && pulls().count() > 1)
+        !self.rails.is_empty() || both || either > 1 || (either == 1 && pulls().count() > 1)
     }
 }
 
@@ -97,13 +116,20 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
     let mut at = 0;
     while let Some(&node) = lead.nodes.get(at) {
         at += 1;
-        if evidence.wiring.rails.is_rail(node) || noted.is_supplied(node) || lead.nodes.len() > WIDEST {
+        if noted.is_supplied(node) || lead.nodes.len() > WIDEST {
             return None;
+        }
+        if evidence.wiring.rails.is_rail(node) {
+            lead.rails.push(node);
+            continue;
         }
         for &touch in evidence.wiring.touching.at(node) {
             match circuit.element(touch.element).behaviour {
                 _ if is_sensing(circuit, touch.element, touch.pin as usize) => {}
-                Behaviour::Capacitor { .. } => {}
+                Behaviour::Capacitor { .. } => {
+                    let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+                    lead.is_coupled |= far != NodeId::GROUND;
+                }
                 Behaviour::Resistor(_) | Behaviour::Inductor { .. } => {
                     let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
                     if !lead.nodes.contains(&far) {
@@ -140,7 +166,7 @@ fn transistor_pull(circuit: &Circuit, touch: Touch) -> Option<Option<Pull>> {
     let Behaviour::Transistor { model } = element.behaviour else { return None };
     let (one, two) = main_path(circuit, touch.element)?;
     let pin = touch.pin as usize;
-    if element.letter == b'M' && pin == 1 {
+    if pin == 1 {
         return Some(None);
     }
     let sinks = match (circuit.model(model?).kind, pin) {
@@ -156,13 +182,18 @@ fn transistor_pull(circuit: &Circuit, touch: Touch) -> Option<Option<Pull>> {
 fn judge(evidence: &Evidence<'_>, id: ElementId, gate: NodeId, lead: &Lead) -> Finding {
     let name = evidence.name(id);
     let drivers: Vec<String> = lead.drivers.iter().map(|d| evidence.name(d.0)).collect();
-    let message = format!(
-        "nothing holds the gate of {name} (`{}`) while {} {} off",
-        evidence.node(gate),
-        list(&drivers),
-        if drivers.len() == 1 { "is" } else { "are" }
-    );
-    let mut finding = evidence.about(&RULE, id, message).label("its gate is left to leakage");
+    let message = match drivers.as_slice() {
+        [] => format!("nothing drives the base of {name} (`{}`), so it never turns on", evidence.node(gate)),
+        drivers => format!(
+            "nothing holds the gate of {name} (`{}`) while {} {} off",
+            evidence.node(gate),
+            list(drivers),
+            if drivers.len() == 1 { "is" } else { "are" }
+        ),
+    };
+    let label =
+        if drivers.is_empty() { "its base is driven by nothing" } else { "its gate is left to leakage" };
+    let mut finding = evidence.about(&RULE, id, message).label(label);
     for &(driver, _) in lead.drivers.iter().take(4) {
         finding = finding.also(evidence.statement(driver), "its only driver");
     }
