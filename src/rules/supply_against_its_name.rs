@@ -75,9 +75,12 @@ fn said_by(evidence: &Evidence<'_>, source: ElementId, node: NodeId, volts: f64)
     let own = name.rsplit(':').next().unwrap_or(&name);
     let node = evidence.node(node);
     let node = node.rsplit([':', '/']).next().unwrap_or(&node);
+    // V2 may be the second source; V2 at `v2`, or V24, is a voltage
+    let is_pair = own.eq_ignore_ascii_case(node);
     let counts = |word: &str| {
         let digits = word.strip_prefix(['V', 'v'])?;
-        let value: f64 = digits.parse().ok().filter(|_| digits.bytes().all(|b| b.is_ascii_digit()))?;
+        let is_number = digits.bytes().all(|b| b.is_ascii_digit()) && (is_pair || digits.len() > 1);
+        let value: f64 = digits.parse().ok().filter(|_| is_number)?;
         // V33 may be 3.3 V
         let fits = |v: f64| v >= 2.0 && (v - volts).abs() <= 0.05 * volts;
         (fits(value) || fits(value / 10.0)).then_some(Said { sign: 1.0, volts: None })
