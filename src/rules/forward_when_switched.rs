@@ -114,6 +114,10 @@ fn judge(
     // volts that stand across the diode, forward, when the switch is closed
     let forward = if pin == 0 { there.0 - here.1 } else { here.0 - there.1 };
     let drop = standing.diode(diode).map_or(0.7, |d| d.drop);
+    // a lamp beside the coil shows that the switch is closed
+    if through && standing.diode(diode).is_some_and(super::Seen::is_led) {
+        return None;
+    }
     if forward < drop + 0.5 {
         return None;
     }

@@ -131,25 +131,37 @@ fn at_gate(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> Option<Vec<E
     let rails = &evidence.wiring.rails;
     let is_source = |id: ElementId, pin: usize| {
         let end = behind(evidence, id, pin).end;
-        (rails.is_rail(end) && end != NodeId::GROUND).then_some(end)
+        let is_source = |&end: &NodeId| rails.is_rail(end) && end != NodeId::GROUND;
+        Some(end).filter(is_source).or_else(|| beside(evidence, circuit.node(id, pin)).filter(is_source))
     };
     for pin in [0, 1] {
         let node = circuit.node(id, pin);
         if rails.is_rail(node) {
             continue;
         }
-        let others: Vec<&(ElementId, usize)> = at.get(&node)?.iter().filter(|o| o.0 != id).collect();
-        let stands_out = others.len() >= 2 && others.iter().all(|o| o.1 != pin);
-        let own = is_source(id, 1 - pin);
-        if !stands_out || own.is_none() {
-            continue;
-        }
-        let behind_others: Vec<Option<NodeId>> = others.iter().map(|o| is_source(o.0, 1 - o.1)).collect();
-        if behind_others.iter().all(|end| end.is_some() && *end != own) {
+        let Some(own) = is_source(id, 1 - pin) else { continue };
+        // what leads on from the gate has no source behind it
+        let others: Vec<(ElementId, usize, NodeId)> = at
+            .get(&node)?
+            .iter()
+            .filter(|o| o.0 != id)
+            .filter_map(|o| Some((o.0, o.1, is_source(o.0, 1 - o.1)?)))
+            .collect();
+        if others.len() >= 2 && others.iter().all(|o| o.1 != pin && o.2 != own) {
             return Some(others.iter().map(|o| o.0).collect());
         }
     }
     None
+}
+
+/// The rail to which the only resistor at a node leads, whatever else is there.
+fn beside(evidence: &Evidence<'_>, node: NodeId) -> Option<NodeId> {
+    let circuit = evidence.circuit;
+    let touches = evidence.wiring.touching.at(node).iter();
+    let mut resistors =
+        touches.filter(|t| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_)));
+    let (Some(one), None) = (resistors.next(), resistors.next()) else { return None };
+    Some(circuit.node(one.element, 1 - one.pin.min(1) as usize))
 }
 
 fn judge(evidence: &Evidence<'_>, odd: ElementId, sisters: &[ElementId]) -> Finding {

@@ -1,6 +1,6 @@
 //! A transistor whose supply, or whose drive, has the polarity of the other type.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Rule, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -48,7 +48,8 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
         ModelKind::Pnp | ModelKind::Pmos => -1.0,
         _ => return None,
     };
-    let lower = rails_around(evidence, circuit.node(id, 2))?;
+    let (comes, goes) = if sign > 0.0 { (1, 0) } else { (0, 1) };
+    let lower = rails_around(evidence, circuit.node(id, 2), goes).unwrap_or_default();
     let is_channel = circuit.element(id).letter == b'M';
     // turned round on purpose, with the load at its source, a channel guards against a supply that is turned round
     let guards = |rail: &NodeId| (*rail == NodeId::GROUND) != (sign > 0.0);
@@ -60,9 +61,12 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     } else {
         [("collector", "emitter"), ("base", "emitter")]
     };
+    if let Some(diode) = led_away(evidence, id, sign) {
+        return Some(by_diode(evidence, id, words[0].0, diode));
+    }
     let tried = [(0, COLLECTOR, words[0]), (1, BASE, words[1])];
     tried.into_iter().find_map(|(pin, margin, words)| {
-        let upper = rails_around(evidence, circuit.node(id, pin))?;
+        let upper = rails_around(evidence, circuit.node(id, pin), comes)?;
         let own: Vec<NodeId> = upper.into_iter().filter(|n| !lower.contains(n)).collect();
         let (above, below) =
             (reach(evidence, operating, &own, sign)?, reach(evidence, operating, &lower, -sign)?);
@@ -85,9 +89,9 @@ fn reach(evidence: &Evidence<'_>, operating: &Operating, rails: &[NodeId], sign:
 /// Nodes gone through at most from one terminal.
 const WIDEST: usize = 24;
 
-/// The rails to which resistors and inductors lead from a node; `None` where anything else but diodes, capacitors and
-/// transistors feeds it, or none is found.
-fn rails_around(evidence: &Evidence<'_>, from: NodeId) -> Option<Vec<NodeId>> {
+/// The rails to which resistors and inductors lead from a node; `None` where a diode with that pin there, or anything else
+/// but capacitors and transistors, leads the current that counts, or none is found.
+fn rails_around(evidence: &Evidence<'_>, from: NodeId, leads: u32) -> Option<Vec<NodeId>> {
     let circuit = evidence.circuit;
     let rails = &evidence.wiring.rails;
     let mut nodes = vec![from];
@@ -110,12 +114,60 @@ fn rails_around(evidence: &Evidence<'_>, from: NodeId) -> Option<Vec<NodeId>> {
                         nodes.push(far);
                     }
                 }
+                Behaviour::Diode { .. } if touch.pin == leads => return None,
                 Behaviour::Capacitor { .. } | Behaviour::Diode { .. } | Behaviour::Transistor { .. } => {}
                 _ => return None,
             }
         }
     }
     (!found.is_empty()).then_some(found)
+}
+
+/// The diode that leads away from what is to feed a collector or drain, where nothing else leads there but resistors,
+/// transistors and capacitors to ground: with `sign` 1 current must come in, with −1 go out.
+fn led_away(evidence: &Evidence<'_>, id: ElementId, sign: f64) -> Option<ElementId> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let away = if sign > 0.0 { 0 } else { 1 };
+    let mut nodes = vec![circuit.node(id, 0)];
+    let (mut found, mut at) = (None, 0);
+    while let Some(&node) = nodes.get(at) {
+        at += 1;
+        if rails.is_rail(node) {
+            return None;
+        }
+        for touch in evidence.wiring.touching.at(node) {
+            let far = || circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+            match &circuit.element(touch.element).behaviour {
+                Behaviour::Resistor(_) if far() == NodeId::GROUND => {}
+                b if is_lead(b) && nodes.len() < WIDEST => {
+                    if !nodes.contains(&far()) {
+                        nodes.push(far());
+                    }
+                }
+                // from ground it is a clamp or a Zener diode
+                Behaviour::Diode { .. } if far() == NodeId::GROUND => {}
+                Behaviour::Diode { .. } if touch.pin == away => found = Some(touch.element),
+                Behaviour::Capacitor { .. } if far() == NodeId::GROUND => {}
+                Behaviour::Transistor { .. } if touch.element == id || touch.pin == 1 => {}
+                _ => return None,
+            }
+        }
+    }
+    found
+}
+
+fn by_diode(evidence: &Evidence<'_>, id: ElementId, word: &str, diode: ElementId) -> Finding {
+    let (name, leads) = (evidence.name(id), evidence.name(diode));
+    let message =
+        format!("nothing can feed the {word} of {name}: {leads}, the only way there, points the other way");
+    let mut finding = evidence
+        .about(&RULE, diode, message)
+        .label("leads away from what it should feed")
+        .also(evidence.statement(id), "gets nothing")
+        .about(name);
+    evidence.name_nodes(&mut finding, &[diode, id]);
+    turn_round(evidence, diode, finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }
 
 fn finding(

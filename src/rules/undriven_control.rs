@@ -4,7 +4,7 @@
 use super::{Check, Evidence, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
-use crate::topology::{Touch, is_opaque, is_sensing, main_path};
+use crate::topology::{Touch, can_break_down, is_opaque, is_sensing, main_path};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
@@ -53,7 +53,7 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         let is_left = match element.letter {
             b'M' => !lead.drivers.is_empty() && !lead.is_held(),
             // a base takes current, so a driver that is off leaves it at rest
-            _ => lead.is_idle(circuit.node(id, 2)),
+            _ => lead.is_idle(circuit.node(id, 2), feeds(circuit, id)),
         };
         if !is_left {
             continue;
@@ -71,8 +71,10 @@ struct Lead {
     nodes: Vec<NodeId>,
     /// Transistors and switches there, with what they do to it when on.
     drivers: Vec<(ElementId, Pull)>,
-    /// Diodes there that are no clamps.
+    /// Diodes there that lead to no rail.
     diodes: Vec<Pull>,
+    /// Diodes to rails other than ground: clamps of a gate, perhaps the drive of a base.
+    rail_diodes: Vec<Pull>,
     /// Rails there.
     rails: Vec<NodeId>,
     /// A capacitor leads from there to what may drive it.
@@ -88,11 +90,13 @@ enum Pull {
 }
 
 impl Lead {
-    /// Nothing there drives the base of a transistor whose emitter is at `emitter`.
-    fn is_idle(&self, emitter: NodeId) -> bool {
+    /// Nothing there drives the base of a transistor whose emitter is at `emitter` and that what pulls `feeds` turns on.
+    /// A capacitor drives it only while no diode takes all that it brings.
+    fn is_idle(&self, emitter: NodeId, feeds: Pull) -> bool {
+        let mut diodes = self.diodes.iter().chain(&self.rail_diodes);
         self.drivers.is_empty()
-            && self.diodes.is_empty()
-            && !self.is_coupled
+            && !diodes.any(|&d| d == feeds || d == Pull::Either)
+            && (!self.is_coupled || !self.diodes.is_empty())
             && self.rails.iter().all(|&rail| rail == emitter)
     }
 
@@ -136,7 +140,15 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
                         lead.nodes.push(far);
                     }
                 }
-                Behaviour::Diode { .. } => lead.diodes.extend(diode_pull(evidence, touch)),
+                Behaviour::Diode { .. } => {
+                    let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
+                    match (far == NodeId::GROUND, evidence.wiring.rails.is_rail(far)) {
+                        // a clamp, which does not speak until the node leaves its limits
+                        (true, _) => {}
+                        (_, true) => lead.rail_diodes.push(diode_pull(evidence, touch)),
+                        _ => lead.diodes.push(diode_pull(evidence, touch)),
+                    }
+                }
                 Behaviour::Transistor { .. } => match transistor_pull(circuit, touch) {
                     Some(Some(pull)) => lead.drivers.push((touch.element, pull)),
                     Some(None) => {}
@@ -153,12 +165,28 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
     Some(lead)
 }
 
-/// A diode to a rail is a clamp and does not speak until the gate leaves its limits.
-fn diode_pull(evidence: &Evidence<'_>, touch: Touch) -> Option<Pull> {
-    let far = evidence.circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
-    let pull = if touch.pin == 0 { Pull::Down } else { Pull::Up };
-    (!evidence.wiring.rails.is_rail(far)).then_some(pull)
+/// Which way a base must be pulled to turn its transistor on.
+fn feeds(circuit: &Circuit, id: ElementId) -> Pull {
+    let is_pnp = |m| circuit.model(m).kind == ModelKind::Pnp;
+    match circuit.element(id).behaviour {
+        Behaviour::Transistor { model: Some(model) } if is_pnp(model) => Pull::Down,
+        _ => Pull::Up,
+    }
 }
+
+/// Which way a diode pulls: one that may break down, either way.
+fn diode_pull(evidence: &Evidence<'_>, touch: Touch) -> Pull {
+    match touch.pin {
+        _ if can_break_down(evidence.circuit, touch.element, evidence.wiring.available.min(ZENER)) => {
+            Pull::Either
+        }
+        0 => Pull::Down,
+        _ => Pull::Up,
+    }
+}
+
+/// Beyond this, in volts, a breakdown voltage is a limit.
+const ZENER: f64 = 60.0;
 
 /// `Some(None)` for a gate, which does nothing; `None` where the model does not tell.
 fn transistor_pull(circuit: &Circuit, touch: Touch) -> Option<Option<Pull>> {

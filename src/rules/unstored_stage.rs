@@ -98,6 +98,9 @@ fn judge(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<Finding> {
     if stored < 2 || !is_pumped(evidence, &nodes) {
         return None;
     }
+    if let Some(gap) = gap(evidence, chain) {
+        return Some(broken_ladder(evidence, chain, gap));
+    }
     let is_bare = |n: usize| match n + 1 == nodes.len() {
         // the last one is the output
         true => !evidence.wiring.rails.is_rail(nodes[n]),
@@ -118,6 +121,37 @@ fn judge(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<Finding> {
     }
     evidence.name_nodes(&mut finding, &chain[n..chain.len().min(n + 2)]);
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
+}
+
+/// In a ladder a capacitor joins each node of the chain to the next but one; the first pair without one, counted from the
+/// anode of the first diode, where most pairs have it.
+fn gap(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<(NodeId, NodeId)> {
+    let circuit = evidence.circuit;
+    let first = std::iter::once(circuit.node(*chain.first()?, 0));
+    let nodes: Vec<NodeId> = first.chain(chain.iter().map(|&id| circuit.node(id, 1))).collect();
+    let pairs: Vec<(NodeId, NodeId)> = nodes.windows(3).map(|w| (w[0], w[2])).collect();
+    let is_joined = |pair: &&(NodeId, NodeId)| capacitors(evidence, pair.1).any(|far| far == pair.0);
+    let joined = pairs.iter().filter(is_joined).count();
+    let missing: Vec<_> = pairs.iter().filter(|pair| !is_joined(pair)).collect();
+    match missing.as_slice() {
+        [one] if joined >= 3 => Some(**one),
+        _ => None,
+    }
+}
+
+fn broken_ladder(evidence: &Evidence<'_>, chain: &[ElementId], (lower, upper): (NodeId, NodeId)) -> Finding {
+    let circuit = evidence.circuit;
+    let (lower_name, upper_name) = (evidence.node(lower), evidence.node(upper));
+    let at = chain.iter().copied().find(|&id| circuit.node(id, 1) == upper).unwrap_or(chain[0]);
+    let message = format!(
+        "no capacitor joins `{lower_name}` and `{upper_name}`, though all other stages of the ladder have theirs"
+    );
+    let mut finding = evidence.about(&RULE, at, message).label("charges a node that stores nothing");
+    finding
+        .subjects
+        .extend([lower, upper].iter().filter(|&&n| n != NodeId::GROUND).map(|&n| evidence.node(n)));
+    evidence.name_nodes(&mut finding, &[at]);
+    finding.help(format!("{} {}", RULE.why, RULE.remedy))
 }
 
 fn capacitors<'e>(evidence: &'e Evidence<'_>, node: NodeId) -> impl Iterator<Item = NodeId> + 'e {

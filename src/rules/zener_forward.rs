@@ -1,7 +1,7 @@
 //! A Zener diode across a supply that conducts forward instead of breaking down.
 
 use super::{Check, Evidence, Rule, turn_round};
-use crate::circuit::{Behaviour, ElementId, State};
+use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
@@ -35,11 +35,68 @@ pub const RULE: Rule = Rule {
 const SILICON: f64 = 0.35;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
+    // what would stand without the diode is no more than sources give, but for amplifiers and current sources
+    let most = BEYOND * evidence.standing(operating).greatest_rail();
     let diodes = evidence.circuit.elements().filter(|(_, e)| matches!(e.behaviour, Behaviour::Diode { .. }));
-    diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
+    diodes
+        .filter_map(|(id, _)| {
+            judge(evidence, operating, id, most).or_else(|| at_follower(evidence, operating, id))
+        })
+        .collect()
 }
 
-fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
+/// A Zener diode that is to set the base of a follower, which no state judges because of the transistor.
+fn at_follower(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
+    let circuit = evidence.circuit;
+    let Behaviour::Diode { model: Some(model), .. } = circuit.element(id).behaviour else { return None };
+    let breakdown = circuit.model(model).parameter("bv")?.number.abs();
+    let seen = evidence.standing(operating).diode(id);
+    let is_zener = seen.is_none_or(|s| !s.is_led() && s.drop >= SILICON) && breakdown <= MOST;
+    if !is_zener || seen.is_some_and(|s| s.always.is_some()) {
+        return None;
+    }
+    let (anode, cathode) = (circuit.node(id, 0), circuit.node(id, 1));
+    let follower = follower_at(evidence, anode, cathode, ModelKind::Npn)
+        .or_else(|| follower_at(evidence, cathode, anode, ModelKind::Pnp))?;
+    let (name, transistor) = (evidence.name(id), evidence.name(follower));
+    let message = format!(
+        "{name} is to hold the base of {transistor} at its breakdown voltage of {}, but lies forward there and holds it \
+         one drop from `{}`",
+        quantity(breakdown, "V"),
+        evidence.node(if circuit.node(follower, 1) == anode { cathode } else { anode })
+    );
+    let mut finding = evidence
+        .about(&RULE, id, message)
+        .label("forward at the base")
+        .also(evidence.statement(follower), "the follower that it sets")
+        .about(transistor);
+    evidence.name_nodes(&mut finding, &[id]);
+    Some(turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
+}
+
+/// A transistor of that kind with its base at `base`, whose emitter is not at the rail `reference`.
+fn follower_at(
+    evidence: &Evidence<'_>,
+    base: NodeId,
+    reference: NodeId,
+    kind: ModelKind,
+) -> Option<ElementId> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    if rails.is_rail(base) || !rails.is_rail(reference) {
+        return None;
+    }
+    let follows = |id: ElementId| match circuit.element(id).behaviour {
+        Behaviour::Transistor { model: Some(model) } => {
+            circuit.model(model).kind == kind && circuit.node(id, 2) != reference
+        }
+        _ => false,
+    };
+    let at_base = evidence.wiring.touching.at(base).iter();
+    at_base.filter(|t| t.pin == 1 && follows(t.element)).map(|t| t.element).next()
+}
+
+fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId, most: f64) -> Option<Finding> {
     let seen = evidence.standing(operating).diode(id)?;
     let breakdown = seen.breakdown?;
     let rails = &evidence.wiring.rails;
@@ -47,7 +104,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     // one end on a rail, the other held by what lies around it
     let (low, high) = (circuit.node(id, 1), circuit.node(id, 0));
     let shunts = rails.is_rail(low) != rails.is_rail(high);
-    let pressed = (MARGIN * breakdown..ABSURD).contains(&seen.open_circuit);
+    let pressed = (MARGIN * breakdown..most).contains(&seen.open_circuit);
     let would_hold = pressed && breakdown <= MOST && seen.drop >= SILICON;
     if !seen.is_always(State::Conducting) || seen.is_led() || !shunts || !would_hold {
         return None;
@@ -77,7 +134,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
 
 /// A surge diode is chosen to break down somewhat above its supply.
 const MARGIN: f64 = 0.6;
-/// More than any source gives: an amplifier with the diode in its feedback, or a current source.
-const ABSURD: f64 = 10_000.0;
+/// So many times the greatest supply two supplies and a divider do not give.
+const BEYOND: f64 = 3.0;
 /// Beyond this a breakdown voltage is a rectifier's limit.
 const MOST: f64 = 60.0;

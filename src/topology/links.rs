@@ -1,7 +1,7 @@
 //! How each kind of element joins its pins: what passes a direct current, what only a changing one, what
 //! merely listens.
 
-use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId, NoteKind};
+use crate::circuit::{Behaviour, Circuit, ElementId, Model, ModelKind, NodeId, NoteKind};
 
 /// What passes between two pins.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -65,15 +65,23 @@ pub fn is_sensing(circuit: &Circuit, id: ElementId, pin: usize) -> bool {
     }
 }
 
-/// The diode may pass a reverse current: its model gives a breakdown voltage no greater than `available`, the most that
-/// the circuit's sources can bring about, or is not there to tell.
+/// The diode may be meant to pass a reverse current: its model gives a breakdown voltage no greater than `available`, the
+/// most that the circuit's sources can bring about, or is not there to tell. That of a light-emitting diode is a limit.
 pub fn can_break_down(circuit: &Circuit, id: ElementId, available: f64) -> bool {
     match circuit.element(id).behaviour {
         Behaviour::Diode { model: Some(model), .. } => {
-            circuit.model(model).parameter("bv").is_some_and(|bv| bv.number.abs() <= available)
+            let model = circuit.model(model);
+            !gives_light(model) && model.parameter("bv").is_some_and(|bv| bv.number.abs() <= available)
         }
         _ => true,
     }
+}
+
+/// By the voltage at which its model carries 1 mA: no silicon junction needs 1.2 V (common practice).
+fn gives_light(model: &Model) -> bool {
+    let (Some(saturation), emission) = (model.parameter("is"), model.parameter("n")) else { return false };
+    let emission = emission.map_or(1.0, |n| n.number);
+    saturation.number > 0.0 && emission * 0.02585 * (1e-3 / saturation.number).ln_1p() > 1.2
 }
 
 /// A diode that passes current one way only.
@@ -102,13 +110,17 @@ pub(super) fn arcs(circuit: &Circuit, id: ElementId, available: f64) -> Vec<(Nod
     }
 }
 
+/// Volts to which a switched coil may rise where a surge diode is to stop it.
+const KICKED: f64 = 60.0;
+
 /// The sum of the greatest values of all voltage sources and supplies, in volts, which no difference of potentials
-/// exceeds; without bound where a current, a controlled source or an inductor may raise more.
+/// exceeds, three times that where a coil may raise more; without bound where a current or a controlled source may.
 pub fn available_volts(circuit: &Circuit) -> f64 {
     let stop = circuit.transient.map(|t| t.stop);
     let mut sum = 0.0;
     let coils = super::cuts::coupled_coils(circuit);
     let (mut least, mut most) = (f64::INFINITY, 0.0_f64);
+    let mut kicks = false;
     for (id, element) in circuit.elements() {
         match &element.behaviour {
             Behaviour::VoltageSource(source) => {
@@ -125,6 +137,7 @@ pub fn available_volts(circuit: &Circuit) -> f64 {
             Behaviour::Inductor { henries, initial: None } if coils.contains(&id) => {
                 (least, most) = (least.min(henries.number), most.max(henries.number));
             }
+            Behaviour::Inductor { initial: None, .. } => kicks = true,
             _ => return f64::INFINITY,
         }
     }
@@ -141,5 +154,7 @@ pub fn available_volts(circuit: &Circuit) -> f64 {
     // windings transform by the root of their inductances at most
     let ratio = if most > 0.0 && least > 0.0 { 1.0 + (most / least).sqrt() } else { 1.0 };
     // a sweep names a source by name only
-    ratio * sum + circuit.sweeps.iter().map(|s| s.from.abs().max(s.to.abs())).sum::<f64>()
+    let sum = ratio * sum + circuit.sweeps.iter().map(|s| s.from.abs().max(s.to.abs())).sum::<f64>();
+    // what breaks down when a coil is switched off is a Zener or surge diode chosen for it, not a rectifier
+    if kicks { KICKED.max(3.0 * sum) } else { sum }
 }

@@ -91,9 +91,13 @@ pub fn is_needed_port(evidence: &Evidence<'_>, end: &LooseEnd) -> bool {
         return false;
     };
     let is_resistor = |t: &Touch| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_));
-    match ports_of(circuit, instance).len() {
+    let is_diode = |t: &Touch| matches!(circuit.element(t.element).behaviour, Behaviour::Diode { .. });
+    let ports = ports_of(circuit, instance);
+    match ports.len() {
         0..=2 => true,
         3 => !matches!(touches, [one] if is_resistor(one) && leads_to_resistors(evidence, one)),
+        // an output may well be left open, the supply of its clamps not
+        4 if ports.contains(&NodeId::GROUND) => touches.iter().all(is_diode),
         _ => false,
     }
 }

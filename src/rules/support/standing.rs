@@ -156,6 +156,11 @@ impl Standing {
         standing
     }
 
+    /// The greatest magnitude of any rail over all conditions, in volts.
+    pub fn greatest_rail(&self) -> f64 {
+        self.rails.iter().flatten().map(|(low, high)| low.abs().max(high.abs())).fold(0.0, f64::max)
+    }
+
     /// What was seen of a diode.
     pub fn diode(&self, id: ElementId) -> Option<&Seen> {
         self.diodes.get(&id)
