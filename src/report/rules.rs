@@ -3,14 +3,14 @@
 use super::paint::{Ink, Page, wrap};
 use super::table::{self, Cell};
 use super::terminal::ink;
-use crate::rules::{GROUPS, Rule};
+use crate::rules::{Group, Rule};
 
 /// Running text is broken at this width.
 const WIDTH: usize = 96;
 
 /// Writes one line for each rule, group by group.
 pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
-    for group in GROUPS {
+    for group in Group::ALL {
         let rows: Vec<Vec<Cell>> = rules
             .iter()
             .filter(|rule| rule.group == group)
@@ -23,7 +23,7 @@ pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
             })
             .collect();
         if !rows.is_empty() {
-            table::write(page, "  ", &[group, "", ""], &rows);
+            table::write(page, "  ", &[group.word(), "", ""], &rows);
             page.end();
         }
     }
@@ -34,7 +34,7 @@ pub fn rule_list(page: &mut Page, rules: &[&Rule]) {
 /// Writes one rule in full.
 pub fn rule(page: &mut Page, rule: &Rule) {
     page.ink(Ink::Strong, rule.name).plain("   ");
-    page.ink(ink(rule.worst()), &rule.severity_words()).plain(", ").plain(rule.group).end();
+    page.ink(ink(rule.worst()), &rule.severity_words()).plain(", ").plain(rule.group.word()).end();
     paragraph(page, rule.summary);
     paragraph(page, rule.why);
     paragraph(page, rule.remedy);

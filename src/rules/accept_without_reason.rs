@@ -1,12 +1,12 @@
 //! An `accept` note that does not say why.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::Note;
 use crate::finding::{Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "accept-without-reason",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: None,
     summary: "an `accept` note gives no reason, so it silences nothing",

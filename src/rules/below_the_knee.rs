@@ -1,14 +1,14 @@
 //! Zener diodes that carry less than their knee.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating};
 
 pub const RULE: Rule = Rule {
     name: "below-the-knee",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "a Zener diode carries too little current for its breakdown voltage to hold",

@@ -1,14 +1,14 @@
 //! Current sources that drive against diodes which do not let the current pass.
 
 use super::unlimited_current::is_current;
-use super::{Check, Evidence, Rule, Shown, causes, is_told};
+use super::{Check, Evidence, Group, Rule, Shown, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
 pub const RULE: Rule = Rule {
     name: "blocked-current",
-    group: "states",
+    group: Group::States,
     severity: Severity::Error,
     also: None,
     summary: "a current source drives a current that no diode lets pass",

@@ -1,13 +1,13 @@
 //! A two-terminal element with both ends on one node.
 
-use super::{Check, Evidence, LooseEnd, Rule};
+use super::{Check, Evidence, Group, LooseEnd, Rule};
 use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::dc_value;
 
 pub const RULE: Rule = Rule {
     name: "both-ends-on-one-node",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: Some(Severity::Error),
     summary: "both ends of an element are on one node",

@@ -1,7 +1,7 @@
 //! An `expect` note that the circuit does not meet.
 
 use super::{
-    About, Check, Claim, Evidence, Found, Outcome, Regions, Rivals, Rule, claims, expected, in_cases,
+    About, Check, Claim, Evidence, Found, Group, Outcome, Regions, Rivals, Rule, claims, expected, in_cases,
 };
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
@@ -9,7 +9,7 @@ use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "broken-expectation",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Error,
     also: None,
     summary: "a diode or a node is not as an `expect` note says",

@@ -1,6 +1,6 @@
 //! An `expect … over time` note that the circuit does not meet.
 
-use super::{About, Check, Claim, Evidence, Rule, claims, expected};
+use super::{About, Check, Claim, Evidence, Group, Rule, claims, expected};
 use crate::circuit::State;
 use crate::finding::{Finding, Severity, interval, quantity};
 use crate::operating::{Operating, apart};
@@ -8,7 +8,7 @@ use crate::swing::{OverTime, Swing};
 
 pub const RULE: Rule = Rule {
     name: "broken-over-time",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Error,
     also: None,
     summary: "a diode or a node does not do over time what an `expect … over time` note says",

@@ -1,12 +1,12 @@
 //! A capacitor straight across an alternating source.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, Shape};
 use crate::finding::{Finding, Severity, quantity};
 
 pub const RULE: Rule = Rule {
     name: "capacitor-across-source",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a capacitor lies straight across an alternating voltage source and takes amperes from it",

@@ -1,7 +1,7 @@
 //! Currents over time held against the current that the drop belongs to.
 
 use super::support::{by_diode, folded};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, ModelId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DropOrigin, Knee, Operating, Quantity};
@@ -10,7 +10,7 @@ use std::collections::BTreeSet;
 
 pub const RULE: Rule = Rule {
     name: "charge-beyond-drop",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: Some(Severity::Warning),
     summary: "most of a diode's charge flows at currents far from the one that its drop belongs to",

@@ -1,6 +1,6 @@
 //! A clamp or peak detector whose capacitor is charged and never discharged.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -9,7 +9,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "charge-without-discharge",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Note,
     also: None,
     summary: "a diode charges a capacitor that nothing discharges: the clamp or detector holds its first peak",

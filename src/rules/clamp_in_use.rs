@@ -1,6 +1,6 @@
 //! An input whose clamp conducts whatever happens: the input stands beyond its rails.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::is_lead;
 
 pub const RULE: Rule = Rule {
     name: "clamp-in-use",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "one of the two clamps of an input conducts in every condition",

@@ -1,6 +1,6 @@
 //! The rail that input clamps lead to is held by nothing but the clamps themselves.
 
-use super::{Check, Evidence, Regions, Rule, list};
+use super::{Check, Evidence, Group, Regions, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::is_lead;
@@ -8,7 +8,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "clamp-rail-unheld",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "the supply that input clamps lead to is held by nothing, so the inputs feed it",

@@ -1,12 +1,12 @@
 //! Lines that hang on a condition. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "conditional-lines",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "lines that hang on a condition are not read",

@@ -1,12 +1,12 @@
 //! Two notes of one kind on one name and level. Found where conditions and drops are laid out.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "conflicting-notes",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: None,
     summary: "two notes of one kind on one name and level",

@@ -1,12 +1,12 @@
 //! More ranges than can be examined in all combinations. Found where conditions and drops are laid out.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "corners-left-out",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Note,
     also: None,
     summary: "more ranges than can be examined in all combinations",

@@ -1,14 +1,14 @@
 //! Currents over the conditions held against the current that the drop belongs to.
 
 use super::support::{In, by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, DropOrigin, Knee, Operating, Trust};
 
 pub const RULE: Rule = Rule {
     name: "current-beyond-drop",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: Some(Severity::Warning),
     summary: "a diode's current lies more than a decade from the current that its drop belongs to",

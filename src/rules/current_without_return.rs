@@ -1,6 +1,6 @@
 //! Current sources that push into nodes which nothing else lets a direct current leave.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::NodeId;
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::{Cut, Sum};
@@ -8,7 +8,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "current-without-return",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Error,
     also: None,
     summary: "current sources push a direct current into nodes that it cannot leave",

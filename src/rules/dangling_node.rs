@@ -1,6 +1,6 @@
 //! A node that one element alone touches.
 
-use super::{Check, Evidence, LooseEnd, Rule};
+use super::{Check, Evidence, Group, LooseEnd, Rule};
 use crate::circuit::{Behaviour, ElementId, Note, NoteKind, ScopeId};
 use crate::finding::{Finding, Label, Severity};
 use crate::topology::is_sensing;
@@ -8,7 +8,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "dangling-node",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: Some(Severity::Note),
     summary: "a node has one connection only",

@@ -1,6 +1,6 @@
 //! A branch of resistors and diodes between two rails whose diodes point against the voltage, or need more than there is.
 
-use super::{Check, Evidence, Rule, Seen, list, turn_round};
+use super::{Check, Evidence, Group, Rule, Seen, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "dark-branch",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a branch between two supplies never carries current: its diodes lie the wrong way round or need more voltage",

@@ -1,12 +1,12 @@
 //! A number with a decimal comma. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "decimal-comma",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "a number with a decimal comma",

@@ -1,12 +1,12 @@
 //! Two different definitions of one model or subcircuit. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "defined-twice",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "two different definitions of one model or subcircuit",

@@ -1,6 +1,6 @@
 //! An envelope detector whose time constant does not fit its carrier and modulation.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId, Shape};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -9,7 +9,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "detector-time-constant",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "the R·C of an envelope detector is too long for its modulation, or too short for its carrier",

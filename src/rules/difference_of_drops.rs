@@ -1,14 +1,14 @@
 //! Voltages that come from drops that cancel: this model cannot tell them.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{NodeId, NoteKind, ScopeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DifferenceOf, DifferenceResult, Operating};
 
 pub const RULE: Rule = Rule {
     name: "difference-of-drops",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: Some(Severity::Warning),
     summary: "a voltage that matters is little more than a difference of drops",

@@ -1,12 +1,12 @@
 //! An expression divides by zero. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "division-by-zero",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "an expression divides by zero",

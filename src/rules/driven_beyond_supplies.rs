@@ -1,13 +1,13 @@
 //! A current source that drives a node far beyond all supplies, because what should take its current is not there.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "driven-beyond-supplies",
-    group: "states",
+    group: Group::States,
     severity: Severity::Warning,
     also: None,
     summary: "a current source drives a node to many times the voltage of all supplies",

@@ -1,14 +1,14 @@
 //! Drops that are the built-in potential.
 
 use super::support::by_diode;
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DropOrigin, Operating};
 
 pub const RULE: Rule = Rule {
     name: "drop-taken-from-vj",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "a drop is given that is the model's built-in potential",

@@ -1,12 +1,12 @@
 //! Two elements or two instances of one name. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "duplicate-name",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "two elements or two instances of one name",

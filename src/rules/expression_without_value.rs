@@ -1,12 +1,12 @@
 //! An expression that has no value, or one beyond all numbers. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "expression-without-value",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "an expression that has no value, or one beyond all numbers",

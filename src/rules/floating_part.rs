@@ -1,13 +1,13 @@
 //! A part of the circuit that nothing joins to ground.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "floating-part",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a part of the circuit is joined neither to ground nor to the rest",

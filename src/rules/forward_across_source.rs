@@ -1,13 +1,13 @@
 //! A diode forward across a source, with nothing to limit its current.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::{Loop, Step, Sum, span_of_values, total};
 
 pub const RULE: Rule = Rule {
     name: "forward-across-source",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Error,
     also: None,
     summary: "a diode lies forward across a voltage source, and no resistance limits its current",

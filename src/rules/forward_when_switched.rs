@@ -1,7 +1,7 @@
 //! A diode beside a transistor or switch that lies forward across the supply as soon as that one closes: a freewheel
 //! diode or a snubber the wrong way round.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -9,7 +9,7 @@ use crate::topology::{is_lead, main_path};
 
 pub const RULE: Rule = Rule {
     name: "forward-when-switched",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a diode at a switched node conducts whenever the switch closes: a freewheel diode the wrong way round",

@@ -1,6 +1,6 @@
 //! Voltages and stored energies that can hurt someone: a caution, never a verdict on safety.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{Case, Operating};
@@ -8,7 +8,7 @@ use crate::topology::{dc_value, span_of_values};
 
 pub const RULE: Rule = Rule {
     name: "hazardous-voltage",
-    group: "caution",
+    group: Group::Caution,
     severity: Severity::Note,
     also: None,
     summary: "a voltage passes the limits of extra-low voltage, or a capacitor stores a dangerous energy",

@@ -1,12 +1,12 @@
 //! An `accept` note that silences nothing.
 
-use super::{Check, Evidence, Rule, find};
+use super::{Check, Evidence, Group, Rule, find};
 use crate::circuit::Note;
 use crate::finding::{Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "idle-accept",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: None,
     summary: "an `accept` note silences nothing",

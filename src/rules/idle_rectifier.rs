@@ -1,7 +1,7 @@
 //! A rectifier leg that carries nothing in a whole period.
 
 use super::reversed_bridge_leg::legs;
-use super::{Check, Evidence, Regions, Rule, list};
+use super::{Check, Evidence, Group, Regions, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -10,7 +10,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "idle-rectifier",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "a rectifier diode carries nothing in a whole period",

@@ -1,12 +1,12 @@
 //! A file that includes itself, directly or through others. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "include-cycle",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "a file that includes itself, directly or through others",

@@ -1,13 +1,13 @@
 //! A light-emitting diode that gets some forward voltage in every condition, but never enough.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "indicator-never-lit",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a light-emitting diode stands at less than its drop in every condition, so it never lights",

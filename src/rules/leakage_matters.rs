@@ -1,14 +1,14 @@
 //! Leakage into nodes of high impedance.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::State;
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating, Trust};
 
 pub const RULE: Rule = Rule {
     name: "leakage-matters",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "a blocking diode's leakage moves a node of high impedance",

@@ -1,12 +1,12 @@
 //! A circuit, file, statement or expression that is too large or too deep. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "limit-reached",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: Some(Severity::Note),
     summary: "a circuit, file, statement or expression that is too large or too deep",

@@ -1,12 +1,12 @@
 //! A value such as `4M7`, in which M is mega. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "mega-in-letter-code",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Note,
     also: None,
     summary: "a value such as `4M7`, in which M is mega",

@@ -1,12 +1,12 @@
 //! A value whose letters mean something else than they seem to. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "misread-value",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: Some(Severity::Note),
     summary: "a value whose letters mean something else than they seem to",

@@ -1,14 +1,14 @@
 //! A bridge rectifier of three legs.
 
 use super::reversed_bridge_leg::{Leg, legs};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "missing-bridge-leg",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a bridge rectifier has three legs: one is missing",

@@ -1,12 +1,12 @@
 //! An instance of a subcircuit that is defined nowhere. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "missing-subcircuit",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "an instance of a subcircuit that is defined nowhere",

@@ -1,12 +1,12 @@
 //! A node with one connection whose name is one letter away from another node's.
 
-use super::{Check, Evidence, LooseEnd, Rule};
+use super::{Check, Evidence, Group, LooseEnd, Rule};
 use crate::circuit::NodeId;
 use crate::finding::{Edit, Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "near-miss-name",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a node's name is one letter away from another's, and it has one connection only",

@@ -1,6 +1,6 @@
 //! A diode so near to changing its state that the uncertainty of its drop decides.
 
-use super::{Check, Evidence, Rule, in_cases};
+use super::{Check, Evidence, Group, Rule, in_cases};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, DropOrigin, Operating};
@@ -8,7 +8,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "near-switching",
-    group: "states",
+    group: Group::States,
     severity: Severity::Note,
     also: None,
     summary: "a diode's state hangs on less than the uncertainty of its drop",

@@ -1,6 +1,6 @@
 //! A diode that no closed path lets conduct.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::Barred;
@@ -11,7 +11,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "never-conducts",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "no closed path lets a diode conduct, whatever the values are",

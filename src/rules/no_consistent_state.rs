@@ -1,13 +1,13 @@
 //! Contradictions that are neither a loop through diodes nor a blocked current: what controlled sources and
 //! negative resistances bring about, and sources that contradict one another once the states are known.
 
-use super::{Check, Evidence, Rule, blocked_current, causes, is_told, unlimited_current};
+use super::{Check, Evidence, Group, Rule, blocked_current, causes, is_told, unlimited_current};
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
 pub const RULE: Rule = Rule {
     name: "no-consistent-state",
-    group: "states",
+    group: Group::States,
     severity: Severity::Error,
     also: None,
     summary: "no set of states satisfies the circuit's laws",

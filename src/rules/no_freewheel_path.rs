@@ -1,6 +1,6 @@
 //! An inductor whose current has nowhere to go when the switch in its way opens.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::directory::Directory;
 use crate::circuit::{Behaviour, ElementId, Hold, NodeId, NoteKind};
 use crate::finding::{Finding, Severity, quantity};
@@ -11,7 +11,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "no-freewheel-path",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "an inductor is switched off and its current has no other path",

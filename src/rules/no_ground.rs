@@ -1,12 +1,12 @@
 //! A circuit in which nothing touches ground.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, Circuit};
 use crate::finding::{Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "no-ground",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Error,
     also: None,
     summary: "nothing in the circuit is joined to ground",

@@ -1,6 +1,6 @@
 //! Diodes through which a current can flow once, but not last: what they charge has no way to discharge.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId, NoteKind};
 use crate::finding::{Finding, Severity};
 use crate::topology::{Barred, is_opaque, is_sensing};
@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "no-lasting-current",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a diode charges a capacitor that nothing discharges, so it carries no lasting current",

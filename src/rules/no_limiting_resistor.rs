@@ -1,6 +1,6 @@
 //! Current around a loop of sources and diodes that nothing limits but the diodes' own series resistance.
 
-use super::{Check, Evidence, Rule, in_cases, list};
+use super::{Check, Evidence, Group, Rule, in_cases, list};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{Case, DiodeResult, Operating, Solution};
@@ -11,7 +11,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "no-limiting-resistor",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a source drives its current straight through diodes, with nothing but their own resistance to limit it",

@@ -1,6 +1,6 @@
 //! Diodes whose state could not be found because the model of something around them is not known.
 
-use super::{Check, Evidence, Rule, in_cases, list};
+use super::{Check, Evidence, Group, Rule, in_cases, list};
 use crate::circuit::ElementId;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Case, Operating, Verdict};
@@ -8,7 +8,7 @@ use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
     name: "not-evaluated",
-    group: "states",
+    group: Group::States,
     severity: Severity::Note,
     also: None,
     summary: "diodes could not be evaluated, since what is around them is not known to the model",
@@ -38,13 +38,13 @@ pub const RULE: Rule = Rule {
 
 /// Diodes with one reason, and the conditions in which it holds for the first of them.
 #[derive(Default)]
-struct Group {
+struct Lot {
     diodes: BTreeSet<ElementId>,
     cases: Vec<usize>,
 }
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
-    let mut groups: BTreeMap<String, Group> = BTreeMap::new();
+    let mut groups: BTreeMap<String, Lot> = BTreeMap::new();
     for (number, case) in operating.cases.iter().enumerate() {
         // a part without a solution, or with one that does not check, is told as such
         for diode in case.solutions.first().into_iter().flat_map(|s| &s.diodes).filter(|d| d.unmodelled) {
@@ -83,7 +83,7 @@ fn nothing(evidence: &Evidence<'_>, operating: &Operating) -> Option<Finding> {
     Some(evidence.about(&RULE, first, message).label("not modelled").help(RULE.remedy))
 }
 
-fn judge(evidence: &Evidence<'_>, operating: &Operating, why: &str, group: &Group) -> Option<Finding> {
+fn judge(evidence: &Evidence<'_>, operating: &Operating, why: &str, group: &Lot) -> Option<Finding> {
     let first = *group.diodes.first()?;
     let names: Vec<String> = group.diodes.iter().map(|&id| evidence.name(id)).collect();
     let verb = if names.len() == 1 { "is" } else { "are" };

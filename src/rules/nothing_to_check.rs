@@ -1,12 +1,12 @@
 //! A file without any element of its own. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "nothing-to-check",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Note,
     also: None,
     summary: "a file without any element of its own",

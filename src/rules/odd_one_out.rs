@@ -1,13 +1,13 @@
 //! A diode that points the other way than all its sisters in a matrix or at a gate.
 
-use super::{Check, Evidence, Rule, behind, list, turn_round};
+use super::{Check, Evidence, Group, Rule, behind, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId};
 use crate::finding::{Finding, Severity};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "odd-one-out",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "one diode of a matrix or a gate points the other way than all the others of its kind",

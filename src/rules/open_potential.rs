@@ -1,6 +1,6 @@
 //! Nodes whose voltage the model leaves open.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, interval};
 use crate::operating::{Case, Interval, Operating};
@@ -11,7 +11,7 @@ use std::collections::{BTreeMap, BTreeSet};
 
 pub const RULE: Rule = Rule {
     name: "open-potential",
-    group: "states",
+    group: Group::States,
     severity: Severity::Note,
     also: None,
     summary: "a node's voltage is left open, since only blocking diodes and current sources lead to it",

@@ -1,6 +1,6 @@
 //! Currents whose split the model leaves open.
 
-use super::{Check, Evidence, Rule, in_cases, is_told, list};
+use super::{Check, Evidence, Group, Rule, in_cases, is_told, list};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity, interval};
 use crate::operating::{Case, Interval, Operating};
@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "open-split",
-    group: "states",
+    group: Group::States,
     severity: Severity::Note,
     also: None,
     summary: "how a current splits between branches is left open by the constant-drop model",

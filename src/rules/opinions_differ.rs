@@ -1,14 +1,14 @@
 //! Diodes that the second opinion sees in another state.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::State;
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating};
 
 pub const RULE: Rule = Rule {
     name: "opinions-differ",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "the exponential law sees a diode in another state than its drop does",

@@ -1,6 +1,6 @@
 //! Two diodes in series that point against each other, with nothing else at their common node.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::can_break_down;
@@ -8,7 +8,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
     name: "opposed-in-series",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "two diodes in series point against each other, and nothing else joins their common node",

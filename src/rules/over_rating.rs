@@ -1,7 +1,7 @@
 //! Currents, reverse voltages and powers beyond what `rating` notes allow.
 
 use super::support::Limit;
-use super::{Check, Evidence, Rule, in_cases};
+use super::{Check, Evidence, Group, Rule, in_cases};
 use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{Case, Operating};
@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "over-rating",
-    group: "states",
+    group: Group::States,
     severity: Severity::Warning,
     also: None,
     summary: "a current, a reverse voltage or a power exceeds the rating that a note gives",

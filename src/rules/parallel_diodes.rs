@@ -1,13 +1,13 @@
 //! Diodes of one kind in parallel, pointing the same way, without a resistance of their own.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId, NoteKind};
 use crate::finding::{Finding, Severity};
 use crate::operating::thermal_voltage;
 
 pub const RULE: Rule = Rule {
     name: "parallel-diodes",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Note,
     also: None,
     summary: "diodes of one model share a current with nothing that makes them share it evenly",

@@ -1,6 +1,6 @@
 //! Where several supplies meet through diodes: a diode that points at its own source, or a source of the wrong sign.
 
-use super::{Check, Evidence, Regions, Rule, behind, turn_round};
+use super::{Check, Evidence, Group, Regions, Rule, behind, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::Walk;
 
 pub const RULE: Rule = Rule {
     name: "points-at-its-source",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "where diodes join supplies on one node, one of them cannot let its supply through",

@@ -1,12 +1,12 @@
 //! An instance with more or fewer nodes than its subcircuit has ports. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "port-count",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "an instance with more or fewer nodes than its subcircuit has ports",

@@ -1,13 +1,13 @@
 //! A pulse source whose first node is ground, so that its pulses go below ground where nothing else does.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId, Shape};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "pulse-below-ground",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a pulse source has ground as its first node, and its pulses alone go below ground",

@@ -1,12 +1,12 @@
 //! A range on a source that moves over time and has no DC value. Found where conditions and drops are laid out.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "range-without-value",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: None,
     summary: "a range on a source that moves over time and has no DC value",

@@ -1,12 +1,12 @@
 //! A subcircuit that holds an instance of itself. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "recursive-subcircuit",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "a subcircuit that holds an instance of itself",

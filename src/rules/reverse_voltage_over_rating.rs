@@ -1,7 +1,7 @@
 //! A diode whose peak inverse voltage over time passes what it is rated for.
 
 use super::over_rating::{self, BEYOND};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -10,7 +10,7 @@ use crate::text::Span;
 
 pub const RULE: Rule = Rule {
     name: "reverse-voltage-over-rating",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "over time a diode sees more reverse voltage than it is rated for",

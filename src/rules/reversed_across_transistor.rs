@@ -1,12 +1,12 @@
 //! A diode straight across a transistor's main path that conducts where the transistor is to block.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "reversed-across-transistor",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a diode across a transistor points the way the transistor's current flows, so the load is never off",

@@ -1,6 +1,6 @@
 //! A rectifier leg that points the wrong way: two diodes then lead straight from one end of the winding to another.
 
-use super::{Check, Evidence, Rule, list, turn_round};
+use super::{Check, Evidence, Group, Rule, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::Driven;
@@ -9,7 +9,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "reversed-bridge-leg",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a leg of a rectifier lies the wrong way round and shorts the winding through another",

@@ -1,6 +1,6 @@
 //! Clamp diodes between a node and two rails: one of them the wrong way round, or the rails in the wrong order.
 
-use super::{Check, Evidence, Regions, Rule, turn_round};
+use super::{Check, Evidence, Group, Regions, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::is_lead;
 
 pub const RULE: Rule = Rule {
     name: "reversed-clamp",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "of two clamp diodes at one node one lies the wrong way round, or its rail or its signal has the wrong sign",

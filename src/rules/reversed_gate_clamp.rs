@@ -1,12 +1,12 @@
 //! A diode between gate and source that holds the gate at a drop, so the transistor never turns on.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
 
 pub const RULE: Rule = Rule {
     name: "reversed-gate-clamp",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a diode from gate to source conducts forward before the transistor turns on",

@@ -1,6 +1,6 @@
 //! A watched node that ripples more than its note allows.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::directory::Directory;
 use crate::circuit::{NodeId, Note, NoteKind};
 use crate::finding::{Finding, Severity, quantity};
@@ -9,7 +9,7 @@ use crate::swing::Swing;
 
 pub const RULE: Rule = Rule {
     name: "ripple-beyond-limit",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "a watched node ripples more than its note allows",

@@ -1,14 +1,14 @@
 //! Diodes whose series resistance is no small thing at their current.
 
 use super::support::{by_diode, folded, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, ModelId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating};
 
 pub const RULE: Rule = Rule {
     name: "series-resistance-counts",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "a diode's series resistance adds more than 50 mV to its drop",

@@ -1,12 +1,12 @@
 //! Circuits with more than one consistent set of states.
 
-use super::{Check, Evidence, Rule, causes};
+use super::{Check, Evidence, Group, Rule, causes};
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
 pub const RULE: Rule = Rule {
     name: "several-states",
-    group: "states",
+    group: Group::States,
     severity: Severity::Note,
     also: None,
     summary: "more than one set of states satisfies the circuit's laws",

@@ -1,14 +1,14 @@
 //! Currents that hang on a small rest of the supply.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating, Trust};
 
 pub const RULE: Rule = Rule {
     name: "small-headroom",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "the voltage left over for a current is small against the uncertainty of the drops in its path",

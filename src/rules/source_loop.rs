@@ -1,13 +1,13 @@
 //! Closed loops of voltage sources, alone or with inductors and 0 Ω.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, Source};
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::{Loop, Sum};
 
 pub const RULE: Rule = Rule {
     name: "source-loop",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Error,
     also: Some(Severity::Warning),
     summary: "voltage sources form a closed loop without resistance",

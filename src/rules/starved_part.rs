@@ -1,6 +1,6 @@
 //! A diode that blocks in every condition, though the part behind it has no other feed.
 
-use super::{Check, Evidence, Regions, Rule, Seen, behind, list, turn_round};
+use super::{Check, Evidence, Group, Regions, Rule, Seen, behind, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "starved-part",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a diode holds off the feed in every condition, and what lies behind it has no other",

@@ -1,12 +1,12 @@
 //! A `+` line with nothing above it to continue. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "stray-continuation",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "a `+` line with nothing above it to continue",

@@ -1,12 +1,12 @@
 //! An `.ends` line that ends nothing, or something else than it says. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "stray-ends",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "an `.ends` line that ends nothing, or something else than it says",

@@ -1,6 +1,6 @@
 //! Two supplies of different voltage joined by nothing but leads.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::Touch;
 
 pub const RULE: Rule = Rule {
     name: "supplies-tied",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "two supplies of clearly different voltage are joined by a few ohms, with nothing that keeps them apart",

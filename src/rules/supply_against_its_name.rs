@@ -1,13 +1,13 @@
 //! A node whose name says what it stands at, held by a source that says otherwise.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "supply-against-its-name",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a supply stands at another polarity, or at another power of ten, than its name says",

@@ -1,12 +1,12 @@
 //! Words on an element's line that mean nothing there. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "surplus-word",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: Some(Severity::Note),
     summary: "words behind a complete element",

@@ -1,13 +1,13 @@
 //! A switch or a transistor that lies straight across a supply: closing it shorts the source.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::main_path;
 
 pub const RULE: Rule = Rule {
     name: "switch-across-supply",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a switch or a transistor lies straight across a voltage source, so closing it shorts the source",

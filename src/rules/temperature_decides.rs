@@ -1,14 +1,14 @@
 //! States that hang on the temperature.
 
 use super::support::{by_diode, in_case};
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::State;
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::{DiodeResult, Operating};
 
 pub const RULE: Rule = Rule {
     name: "temperature-decides",
-    group: "trust",
+    group: Group::Trust,
     severity: Severity::Note,
     also: None,
     summary: "temperature moves a drop by more than the margin of its state",

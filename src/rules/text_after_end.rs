@@ -1,12 +1,12 @@
 //! Statements behind `.end`. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "text-after-end",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Note,
     also: None,
     summary: "statements behind `.end`",

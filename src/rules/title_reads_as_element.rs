@@ -1,12 +1,12 @@
 //! Line 1 is taken as the title, yet reads as an element or a dot line. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "title-reads-as-element",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "line 1 is taken as the title, yet reads as an element or a dot line",

@@ -1,6 +1,6 @@
 //! A transistor whose supply, or whose drive, has the polarity of the other type.
 
-use super::{Check, Evidence, Rule, list, turn_round};
+use super::{Check, Evidence, Group, Rule, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::is_lead;
 
 pub const RULE: Rule = Rule {
     name: "transistor-fed-backwards",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "collector or base, drain or gate of a transistor are fed with the wrong polarity",

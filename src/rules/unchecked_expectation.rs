@@ -1,12 +1,12 @@
 //! An `expect` note that could not be checked.
 
-use super::{Check, Evidence, Outcome, Rivals, Rule, claims};
+use super::{Check, Evidence, Group, Outcome, Rivals, Rule, claims};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "unchecked-expectation",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: None,
     summary: "an `expect` note could not be checked",

@@ -1,12 +1,12 @@
 //! A `.subckt` without its `.ends`. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unclosed-subcircuit",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "a `.subckt` without its `.ends`",

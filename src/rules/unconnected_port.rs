@@ -1,12 +1,12 @@
 //! A port that nothing inside its subcircuit touches. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unconnected-port",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Note,
     also: None,
     summary: "a port that nothing inside its subcircuit touches",

@@ -1,7 +1,7 @@
 //! A base that nothing drives, and an insulated gate that only a transistor or a switch drives: with that one off,
 //! nothing holds it.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::{Touch, can_break_down, is_opaque, is_sensing, main_path};
@@ -9,7 +9,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "undriven-control",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "nothing drives a base, or holds an insulated gate while its driver is off",

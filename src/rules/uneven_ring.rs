@@ -1,6 +1,6 @@
 //! Four diodes in a ring of which one points so that three in series lie across the fourth.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId};
 use crate::finding::{Finding, Severity};
 use rustc_hash::FxHashMap;
@@ -8,7 +8,7 @@ use std::collections::BTreeSet;
 
 pub const RULE: Rule = Rule {
     name: "uneven-ring",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "in a ring of four diodes one lies the wrong way round: three in series lie across the fourth",

@@ -1,6 +1,6 @@
 //! Loops in which nothing drives a current.
 
-use super::{Check, Evidence, Rule, count, list};
+use super::{Check, Evidence, Group, Rule, count, list};
 use crate::circuit::{Behaviour, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::Unfed;
@@ -8,7 +8,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "unfed-part",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "elements form loops that no source drives, so they carry no current",

@@ -1,6 +1,6 @@
 //! A node that no direct-current path joins to ground.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::topology::{Cut, Sum, is_sensing};
@@ -8,7 +8,7 @@ use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "unheld-node",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "nothing that passes a direct current holds a node's voltage",

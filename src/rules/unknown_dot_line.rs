@@ -1,12 +1,12 @@
 //! A dot line that means nothing here. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unknown-dot-line",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Note,
     also: None,
     summary: "a dot line that means nothing here",

@@ -1,12 +1,12 @@
 //! An element whose letter is not known here. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unknown-element",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: Some(Severity::Note),
     summary: "an element whose letter is not known here",

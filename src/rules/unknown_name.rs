@@ -1,12 +1,12 @@
 //! A note, `.dc` line or option names nothing in this circuit. Found where conditions and drops are laid out.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unknown-name",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: Some(Severity::Error),
     summary: "a note, `.dc` line or option names nothing in this circuit",

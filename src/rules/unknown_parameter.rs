@@ -1,12 +1,12 @@
 //! An expression uses a parameter or function that is not known. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unknown-parameter",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Error,
     also: None,
     summary: "an expression uses a parameter or function that is not known",

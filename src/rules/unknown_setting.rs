@@ -1,12 +1,12 @@
 //! A key of `kneewise.toml` that is not known, found when that file is read.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule. Its examples are `kneewise.toml` files.
 pub const RULE: Rule = Rule {
     name: "unknown-setting",
-    group: "settings",
+    group: Group::Settings,
     severity: Severity::Warning,
     also: None,
     summary: "a key of `kneewise.toml` that is not known",

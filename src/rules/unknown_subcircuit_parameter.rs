@@ -1,12 +1,12 @@
 //! An instance sets a parameter that its subcircuit does not have. Found while reading.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unknown-subcircuit-parameter",
-    group: "reading",
+    group: Group::Reading,
     severity: Severity::Warning,
     also: None,
     summary: "an instance sets a parameter that its subcircuit does not have",

@@ -1,13 +1,13 @@
 //! A loop of sources and conducting diodes with a voltage left over and no resistance to take it.
 
-use super::{Check, Evidence, Rule, Shown, causes, is_told};
+use super::{Check, Evidence, Group, Rule, Shown, causes, is_told};
 use crate::circuit::Behaviour;
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
 pub const RULE: Rule = Rule {
     name: "unlimited-current",
-    group: "states",
+    group: Group::States,
     severity: Severity::Error,
     also: None,
     summary: "sources drive an unlimited current through diodes, since nothing in the loop has a resistance",

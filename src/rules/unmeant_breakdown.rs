@@ -1,6 +1,6 @@
 //! A diode that breaks down where nobody meant it to.
 
-use super::{Check, Evidence, Rule, in_cases};
+use super::{Check, Evidence, Group, Rule, in_cases};
 use crate::circuit::{ElementId, NoteKind, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
     name: "unmeant-breakdown",
-    group: "states",
+    group: Group::States,
     severity: Severity::Warning,
     also: None,
     summary: "a rectifier, signal diode or LED is driven into reverse breakdown",

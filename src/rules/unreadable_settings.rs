@@ -1,12 +1,12 @@
 //! A line of `kneewise.toml` that is no TOML, found when that file is read.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule. Its examples are `kneewise.toml` files.
 pub const RULE: Rule = Rule {
     name: "unreadable-settings",
-    group: "settings",
+    group: Group::Settings,
     severity: Severity::Error,
     also: None,
     summary: "a line of `kneewise.toml` that is no TOML",

@@ -1,13 +1,13 @@
 //! A stage of a diode pump that has no capacitor.
 
-use super::{Check, Evidence, Rule, list};
+use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
     name: "unstored-stage",
-    group: "wiring",
+    group: Group::Wiring,
     severity: Severity::Warning,
     also: None,
     summary: "a stage of a voltage multiplier or charge pump has no capacitor",

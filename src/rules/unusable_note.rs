@@ -1,12 +1,12 @@
 //! A note that cannot apply to what it names. Found where conditions and drops are laid out.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule.
 pub const RULE: Rule = Rule {
     name: "unusable-note",
-    group: "notes",
+    group: Group::Notes,
     severity: Severity::Warning,
     also: Some(Severity::Error),
     summary: "a note that cannot apply to what it names",

@@ -1,12 +1,12 @@
 //! A value of `kneewise.toml` that cannot be used, found when that file is read.
 
-use super::{Check, Rule};
+use super::{Check, Group, Rule};
 use crate::finding::Severity;
 
 /// The rule. Its examples are `kneewise.toml` files.
 pub const RULE: Rule = Rule {
     name: "unusable-setting",
-    group: "settings",
+    group: Group::Settings,
     severity: Severity::Warning,
     also: None,
     summary: "a value of `kneewise.toml` that cannot be used",

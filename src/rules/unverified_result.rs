@@ -1,12 +1,12 @@
 //! Results that do not satisfy the circuit's laws when put back into them.
 
-use super::{Check, Evidence, Rule, causes};
+use super::{Check, Evidence, Group, Rule, causes};
 use crate::finding::{Finding, Severity};
 use crate::operating::{Operating, Verdict};
 
 pub const RULE: Rule = Rule {
     name: "unverified-result",
-    group: "states",
+    group: Group::States,
     severity: Severity::Error,
     also: None,
     summary: "a result does not satisfy the circuit's laws when it is put back into them, so it is not given",

@@ -1,6 +1,6 @@
 //! A Zener diode that is to set a voltage, fed from less than that voltage.
 
-use super::{Check, Evidence, Rule};
+use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::topology::{is_lead, main_path};
 
 pub const RULE: Rule = Rule {
     name: "zener-below-breakdown",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a Zener diode that sets a voltage is fed from less than its breakdown voltage",

@@ -1,13 +1,13 @@
 //! A Zener diode across a supply that conducts forward instead of breaking down.
 
-use super::{Check, Evidence, Rule, turn_round};
+use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
 pub const RULE: Rule = Rule {
     name: "zener-forward",
-    group: "orientation",
+    group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
     summary: "a Zener or surge diode across a supply lies in its forward direction",

@@ -1,6 +1,6 @@
 //! A Zener diode behind a rectifier that conducts forward instead of breaking down: what the states cannot judge.
 
-use super::{Check, Evidence, Rule, behind, turn_round};
+use super::{Check, Evidence, Group, Rule, behind, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -8,7 +8,7 @@ use crate::swing::Swing;
 
 pub const RULE: Rule = Rule {
     name: "zener-forward-over-time",
-    group: "time",
+    group: Group::Time,
     severity: Severity::Warning,
     also: None,
     summary: "a Zener diode conducts forward over the whole period where its feed would let it break down",

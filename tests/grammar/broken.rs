@@ -5,7 +5,7 @@ use crate::files::folder;
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::config::Options;
 use kneewise::finding::Severity;
-use kneewise::rules;
+use kneewise::rules::{self, Group};
 use kneewise::text::Memory;
 use std::collections::BTreeSet;
 use std::fmt::Write as _;
@@ -92,7 +92,7 @@ fn every_reading_rule_has_a_broken_input() {
     }
     let missing: Vec<&str> = rules::all()
         .iter()
-        .filter(|rule| matches!(rule.group, "reading" | "notes") && !shown.contains(rule.name))
+        .filter(|rule| matches!(rule.group, Group::Reading | Group::Notes) && !shown.contains(rule.name))
         .map(|rule| rule.name)
         .collect();
     assert!(missing.is_empty(), "{missing:?}");

@@ -9,7 +9,7 @@ use kneewise::analysis::{Analysis, analyse};
 use kneewise::circuit::{self, Circuit};
 use kneewise::config::Options;
 use kneewise::finding::Finding;
-use kneewise::rules;
+use kneewise::rules::{self, Group};
 use kneewise::text::{Memory, Sources, Span};
 use std::collections::BTreeMap;
 use std::fmt::Write as _;
@@ -177,7 +177,7 @@ fn essence(analysis: &Analysis, rename: &BTreeMap<String, String>) -> Vec<String
     let contradictory = analysis.operating.iter().flat_map(|o| &o.cases).any(|c| !c.causes.is_empty());
     let is_judged = |f: &&Finding| {
         let rule = rules::find(f.rule).unwrap_or_else(|| panic!("no rule {}", f.rule));
-        !(contradictory && rule.group == "states")
+        !(contradictory && rule.group == Group::States)
     };
     for finding in analysis.findings.iter().filter(is_judged) {
         let mut subjects: Vec<String> = finding.subjects.iter().map(renamed).collect();

@@ -4,7 +4,7 @@
 use kneewise::analysis::{Analysis, analyse};
 use kneewise::config::{Options, settings};
 use kneewise::finding::{Finding, Severity};
-use kneewise::rules::{self, Rule};
+use kneewise::rules::{self, Group, Rule};
 use kneewise::text::{FileId, Memory};
 use std::path::Path;
 
@@ -47,7 +47,7 @@ fn settings_complaints(rule: &Rule) -> Vec<String> {
 
 /// What is wrong with a rule's examples.
 fn complaints(rule: &Rule) -> Vec<String> {
-    if rule.group == "settings" {
+    if rule.group == Group::Settings {
         return settings_complaints(rule);
     }
     let mut wrong = Vec::new();

@@ -112,7 +112,7 @@ fn descriptor(rule: &'static Rule) -> Descriptor<'static> {
         full_description: Text::of(rule.why),
         help: Rich { text, markdown },
         default_configuration: Configuration { level: level(rule.worst()) },
-        properties: Tags { tags: vec![rule.group] },
+        properties: Tags { tags: vec![rule.group.word()] },
     }
 }
 

@@ -23,7 +23,7 @@ pub use evidence::Evidence;
 pub use expect::{About, Claim, Found, Outcome, Rivals, claims, expected};
 pub use loose::{LooseEnd, is_needed_port};
 pub use ratings::Limit;
-pub use rule::{Check, GROUPS, Rule, Skipped};
+pub use rule::{Check, Group, Rule, Skipped};
 pub use run::{run, settle};
 pub use standing::{Regions, Seen, behind};
 pub use trusted::{In, by_diode, folded, in_case};

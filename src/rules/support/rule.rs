@@ -20,15 +20,64 @@ pub enum Check {
 }
 
 /// The groups of rules, in the order in which a file meets them.
-pub const GROUPS: [&str; 9] =
-    ["reading", "wiring", "orientation", "states", "trust", "time", "notes", "caution", "settings"];
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Group {
+    /// What could not be read, or is read otherwise than it looks.
+    Reading,
+    /// How elements are joined.
+    Wiring,
+    /// Which way round they lie.
+    Orientation,
+    /// What the states tell.
+    States,
+    /// How far the constant-drop answer may be believed.
+    Trust,
+    /// What happens over time.
+    Time,
+    /// What notes expect and allow.
+    Notes,
+    /// What may hurt somebody.
+    Caution,
+    /// What the user has set.
+    Settings,
+}
+
+impl Group {
+    /// All of them, in order.
+    pub const ALL: [Group; 9] = [
+        Group::Reading,
+        Group::Wiring,
+        Group::Orientation,
+        Group::States,
+        Group::Trust,
+        Group::Time,
+        Group::Notes,
+        Group::Caution,
+        Group::Settings,
+    ];
+
+    /// Its name in listings.
+    pub fn word(self) -> &'static str {
+        match self {
+            Group::Reading => "reading",
+            Group::Wiring => "wiring",
+            Group::Orientation => "orientation",
+            Group::States => "states",
+            Group::Trust => "trust",
+            Group::Time => "time",
+            Group::Notes => "notes",
+            Group::Caution => "caution",
+            Group::Settings => "settings",
+        }
+    }
+}
 
 /// One rule.
 pub struct Rule {
     /// Name, in words joined by hyphens.
     pub name: &'static str,
-    /// Group in the listing, one of [`GROUPS`].
-    pub group: &'static str,
+    /// Group in the listing.
+    pub group: Group,
     /// Its severity.
     pub severity: Severity,
     /// The severity of some of its findings, where they are worse or milder.
