@@ -110,11 +110,12 @@ pub(super) fn arcs(circuit: &Circuit, id: ElementId, available: f64) -> Vec<(Nod
     }
 }
 
-/// Volts to which a switched coil may rise where a surge diode is to stop it.
+/// Volts to which a switched coil, a current source or an amplifier may rise where a surge diode is to stop it.
 const KICKED: f64 = 60.0;
 
 /// The sum of the greatest values of all voltage sources and supplies, in volts, which no difference of potentials
-/// exceeds, three times that where a coil may raise more; without bound where a current or a controlled source may.
+/// exceeds, half as much again where a coil, a current source or an amplifier may raise more; without bound where it is not
+/// known what else may.
 pub fn available_volts(circuit: &Circuit) -> f64 {
     let stop = circuit.transient.map(|t| t.stop);
     let mut sum = 0.0;
@@ -137,7 +138,12 @@ pub fn available_volts(circuit: &Circuit) -> f64 {
             Behaviour::Inductor { henries, initial: None } if coils.contains(&id) => {
                 (least, most) = (least.min(henries.number), most.max(henries.number));
             }
-            Behaviour::Inductor { initial: None, .. } => kicks = true,
+            Behaviour::Inductor { initial: None, .. }
+            | Behaviour::CurrentSource(_)
+            | Behaviour::VoltageByVoltage { .. }
+            | Behaviour::VoltageByCurrent { .. }
+            | Behaviour::CurrentByVoltage { .. }
+            | Behaviour::CurrentByCurrent { .. } => kicks = true,
             _ => return f64::INFINITY,
         }
     }
@@ -155,6 +161,7 @@ pub fn available_volts(circuit: &Circuit) -> f64 {
     let ratio = if most > 0.0 && least > 0.0 { 1.0 + (most / least).sqrt() } else { 1.0 };
     // a sweep names a source by name only
     let sum = ratio * sum + circuit.sweeps.iter().map(|s| s.from.abs().max(s.to.abs())).sum::<f64>();
-    // what breaks down when a coil is switched off is a Zener or surge diode chosen for it, not a rectifier
-    if kicks { KICKED.max(3.0 * sum) } else { sum }
+    // what breaks down when a coil is switched off or an amplifier finds no feedback is a Zener or surge diode chosen for
+    // it, not a rectifier
+    if kicks { KICKED.max(1.5 * sum) } else { sum }
 }
