@@ -3,7 +3,7 @@
 use super::{
     About, Check, Claim, Evidence, Found, Group, Outcome, Regions, Rivals, Rule, claims, expected, in_cases,
 };
-use crate::circuit::{ElementId, NodeId};
+use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
 use crate::operating::Operating;
 
@@ -59,6 +59,10 @@ fn feeding(evidence: &Evidence<'_>, regions: &Regions, about: About) -> Vec<Elem
     };
     let mut sources: Vec<ElementId> = Vec::new();
     for node in nodes {
+        let is_source =
+            |id: ElementId| matches!(evidence.circuit.element(id).behaviour, Behaviour::CurrentSource(_));
+        let touches = evidence.wiring.touching.at(node).iter();
+        sources.extend(touches.map(|t| t.element).filter(|&id| node != NodeId::GROUND && is_source(id)));
         match rails.is_rail(node) {
             true => sources.extend(rails.source(node)),
             false => {

@@ -45,7 +45,10 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let sources = [one, two].into_iter().filter_map(|n| rails.source(n));
     let (source, slope) = sources.filter_map(|s| Some((s, slope(evidence, s)?))).next()?;
     let crest = slope * farads.number;
-    if crest < MOST {
+    let is_diode = |e: ElementId| matches!(circuit.element(e).behaviour, Behaviour::Diode { .. });
+    let hot = [one, two].into_iter().filter(|&n| n != crate::circuit::NodeId::GROUND);
+    let mut near = hot.flat_map(|n| evidence.wiring.touching.at(n));
+    if crest < MOST || !near.any(|t| is_diode(t.element)) {
         return None;
     }
     let message = format!(
@@ -68,7 +71,8 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
 fn slope(evidence: &Evidence<'_>, source: ElementId) -> Option<f64> {
     let Behaviour::VoltageSource(source) = &evidence.circuit.element(source).behaviour else { return None };
     match source.shape {
-        Some(Shape::Sine { amplitude, frequency, .. }) => {
+        // what rides on a steady voltage is ripple
+        Some(Shape::Sine { offset, amplitude, frequency, .. }) if offset.abs() < amplitude.abs() => {
             Some(std::f64::consts::TAU * frequency.abs() * amplitude.abs())
         }
         _ => None,

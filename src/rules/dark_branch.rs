@@ -1,7 +1,7 @@
 //! A branch of resistors and diodes between two rails whose diodes point against the voltage, or need more than there is.
 
 use super::{Check, Evidence, Group, Rule, Seen, list, turn_round};
-use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::circuit::{Behaviour, ElementId, NodeId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 use rustc_hash::FxHashSet;
@@ -30,7 +30,7 @@ pub const RULE: Rule = Rule {
 };
 
 /// Ohms through which a leakage is measured.
-const LEAKAGE: f64 = 1e6;
+const LEAKAGE: f64 = 10_000.0;
 /// Less than this across a branch is no supply.
 const SUPPLY: f64 = 1.0;
 
@@ -103,6 +103,14 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
         // anything else may clamp there; a light does not
         false => standing.node(node).filter(|_| lights && !is_timed(node)),
     };
+    // what comes in through a capacitor no source's value tells; the time pass may
+    let moves = |id: &ElementId| {
+        operating.left_to_time.binary_search(id).is_ok()
+            && !standing.diode(*id).is_some_and(|d| d.is_always(State::Blocking))
+    };
+    if branch.diodes.iter().any(moves) {
+        return None;
+    }
     let (above, below) = (volts(branch.anode_end)?, volts(branch.cathode_end)?);
     let most = above.1 - below.0;
     if seen.len() != branch.diodes.len()

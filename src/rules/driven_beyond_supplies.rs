@@ -34,7 +34,7 @@ pub const RULE: Rule = Rule {
 /// So many times the greatest supply is no compliance any more.
 const TIMES: f64 = 20.0;
 /// Nor is less than this, in volts, worth a word.
-const LEAST: f64 = 100.0;
+const LEAST: f64 = 300.0;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let standing = evidence.standing(operating);

@@ -74,6 +74,9 @@ fn switches(evidence: &Evidence<'_>) -> Vec<Switch> {
             Behaviour::Transistor { .. } | Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. }
         );
         let Some((one, two)) = main_path(circuit, id).filter(|_| is_switch) else { continue };
+        if is_mirror(evidence, id) {
+            continue;
+        }
         let (a, b) = (circuit.node(id, one), circuit.node(id, two));
         for (node, far) in [(a, b), (b, a)] {
             let end = evidence.wiring.touching.walk(circuit, rails, far, id, is_small);
@@ -83,6 +86,16 @@ fn switches(evidence: &Evidence<'_>) -> Vec<Switch> {
         }
     }
     switches
+}
+
+/// A transistor tied as a diode sets its base or gate: half of a current mirror, which passes a set current and is no
+/// switch.
+fn is_mirror(evidence: &Evidence<'_>, id: ElementId) -> bool {
+    let circuit = evidence.circuit;
+    let is_transistor = |e: ElementId| matches!(circuit.element(e).behaviour, Behaviour::Transistor { .. });
+    let sets = |e: ElementId| circuit.node(e, 0) == circuit.node(e, 1);
+    let at_control = evidence.wiring.touching.at(circuit.node(id, 1)).iter();
+    is_transistor(id) && at_control.filter(|t| is_transistor(t.element)).any(|t| sets(t.element))
 }
 
 /// What measures the current of a switch.
@@ -114,8 +127,9 @@ fn judge(
     // volts that stand across the diode, forward, when the switch is closed
     let forward = if pin == 0 { there.0 - here.1 } else { here.0 - there.1 };
     let drop = standing.diode(diode).map_or(0.7, |d| d.drop);
-    // a lamp beside the coil shows that the switch is closed
-    if through && standing.diode(diode).is_some_and(super::Seen::is_led) {
+    // a lamp shows that the switch is closed, and a diode alone at the switch is in series with it
+    let is_alone = !through && !leads_to(evidence, switch.node, diode, rail, |_| true);
+    if is_alone || standing.diode(diode).is_some_and(super::Seen::is_led) {
         return None;
     }
     if forward < drop + 0.5 {
@@ -150,9 +164,27 @@ fn judge(
     Some(turn_round(evidence, diode, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
 }
 
+/// A lead goes from a node to that rail beside the diode, by elements that are as wanted.
+fn leads_to(
+    evidence: &Evidence<'_>,
+    from: NodeId,
+    diode: ElementId,
+    rail: NodeId,
+    wanted: impl Fn(&[ElementId]) -> bool,
+) -> bool {
+    let circuit = evidence.circuit;
+    let (touching, rails) = (&evidence.wiring.touching, &evidence.wiring.rails);
+    touching.direct(circuit, from).filter(|t| t.element != diode).any(|t| {
+        let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
+        let mut walk = touching.walk(circuit, rails, far, t.element, is_lead);
+        walk.passed.push(t.element);
+        is_lead(&circuit.element(t.element).behaviour) && walk.end == rail && wanted(&walk.passed)
+    })
+}
+
 /// The rail to which a resistor alone leads from the far end of the diode, where a coil leads from the switch to the
 /// same one: the resistor makes its current die faster.
-fn freewheels_to(
+pub fn freewheels_to(
     evidence: &Evidence<'_>,
     switched: NodeId,
     diode: ElementId,
@@ -165,13 +197,7 @@ fn freewheels_to(
         return None;
     }
     let is_coil = |id: &ElementId| matches!(circuit.element(*id).behaviour, Behaviour::Inductor { .. });
-    let has_coil = touching.direct(circuit, switched).filter(|t| t.element != diode).any(|t| {
-        let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
-        let walk = touching.walk(circuit, rails, far, t.element, is_lead);
-        is_lead(&circuit.element(t.element).behaviour)
-            && walk.end == rail
-            && (is_coil(&t.element) || walk.passed.iter().any(is_coil))
-    });
+    let has_coil = leads_to(evidence, switched, diode, rail, |path| path.iter().any(is_coil));
     has_coil.then_some(rail)
 }
 

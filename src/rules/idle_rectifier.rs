@@ -11,11 +11,11 @@ use rustc_hash::FxHashSet;
 pub const RULE: Rule = Rule {
     name: "idle-rectifier",
     group: Group::Time,
-    severity: Severity::Warning,
+    severity: Severity::Note,
     also: None,
     summary: "a rectifier diode carries nothing in a whole period",
-    why: "Its end of the winding never rises above what the diode feeds: the diode is the wrong way round, or one of its \
-          nodes is not the one that was meant.",
+    why: "Its end of the winding never rises above what the diode feeds: the diode is the wrong way round, one of its \
+          nodes is not the one that was meant, or another generator serves the load alone.",
     remedy: "Look at the nodes of the diode and of what feeds it.",
     source: None,
     failing: "tide gauge buoy: bench supply\n\

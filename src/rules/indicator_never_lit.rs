@@ -1,6 +1,6 @@
 //! A light-emitting diode that gets some forward voltage in every condition, but never enough.
 
-use super::{Check, Evidence, Group, Rule};
+use super::{Check, Evidence, Group, Rule, behind};
 use crate::circuit::{Behaviour, ElementId, State};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
@@ -42,6 +42,22 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     diodes.filter_map(|(id, _)| judge(evidence, operating, id)).collect()
 }
 
+/// It and its resistor lie across a small resistance: they show that too much flows there.
+fn shows_overload(evidence: &Evidence<'_>, id: ElementId) -> bool {
+    let circuit = evidence.circuit;
+    let (one, two) = (behind(evidence, id, 0).end, behind(evidence, id, 1).end);
+    let joins = |other: ElementId| {
+        let ends = [circuit.node(other, 0), circuit.node(other, 1)];
+        matches!(&circuit.element(other).behaviour, Behaviour::Resistor(ohms) if ohms.number <= SHUNT)
+            && ends.contains(&one)
+            && ends.contains(&two)
+    };
+    one != two && evidence.wiring.touching.at(one).iter().any(|t| joins(t.element))
+}
+
+/// Ohms up to which a resistor measures a current.
+const SHUNT: f64 = 10.0;
+
 /// Another diode lies across it the other way round: the pair is driven both ways, one of them at a time, and three
 /// lines of such pairs leave some voltage across those that are not meant.
 fn has_partner(evidence: &Evidence<'_>, id: ElementId) -> bool {
@@ -55,8 +71,14 @@ fn has_partner(evidence: &Evidence<'_>, id: ElementId) -> bool {
 
 fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Option<Finding> {
     let seen = evidence.standing(operating).diode(id)?;
-    let is_dark = seen.is_led() && seen.is_always(State::Blocking) && seen.least >= SOME;
-    if !is_dark || seen.greatest >= seen.drop || has_partner(evidence, id) || evidence.is_told_near(id) {
+    let is_dark =
+        seen.is_led() && seen.is_always(State::Blocking) && seen.least.is_finite() && seen.least >= SOME;
+    if !is_dark
+        || seen.greatest >= seen.drop
+        || has_partner(evidence, id)
+        || shows_overload(evidence, id)
+        || evidence.is_told_near(id)
+    {
         return None;
     }
     let message = format!(

@@ -2,8 +2,9 @@
 
 use super::reversed_bridge_leg::{Leg, legs};
 use super::{Check, Evidence, Group, Rule};
-use crate::circuit::{ElementId, NodeId};
+use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
+use crate::topology::Driven;
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
@@ -40,7 +41,9 @@ pub const RULE: Rule = Rule {
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     let mut findings = Vec::new();
-    for driven in &evidence.wiring.driven {
+    // with a centre tap each half of the winding has a way back of its own
+    let is_tapped = |d: &Driven| d.ends.len() > 2 && d.ends.iter().any(|&n| evidence.wiring.rails.is_rail(n));
+    for driven in evidence.wiring.driven.iter().filter(|d| !is_tapped(d)) {
         let outputs = legs(evidence, driven);
         for (&whole, two) in &outputs {
             let [one, other] = two.as_slice() else { continue };
@@ -49,16 +52,33 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
             }
             for (&half, legs) in &outputs {
                 let [single] = legs.as_slice() else { continue };
-                let belongs = single.out != one.out && [one.end, other.end].contains(&single.end);
+                let belongs = single.out != one.out
+                    && [one.end, other.end].contains(&single.end)
+                    && are_of_one_kind(evidence, &[one.diode, other.diode, single.diode]);
                 let bridges = || has_load(evidence, &driven.ends, (whole, half), &[*one, *other, *single]);
                 if half != whole && belongs && !leads_elsewhere(evidence, half) && bridges() {
                     let bare = if single.end == one.end { other.end } else { one.end };
+                    if has_transistor(evidence, bare) {
+                        continue;
+                    }
                     findings.push(judge(evidence, (whole, [*one, *other]), (half, *single), bare));
                 }
             }
         }
     }
     findings
+}
+
+/// A transistor there may be the fourth leg.
+fn has_transistor(evidence: &Evidence<'_>, node: NodeId) -> bool {
+    let is_transistor = |id| matches!(evidence.circuit.element(id).behaviour, Behaviour::Transistor { .. });
+    node != NodeId::GROUND && evidence.wiring.touching.at(node).iter().any(|t| is_transistor(t.element))
+}
+
+/// A bridge is built of one kind of diode; a Zener diode, a clamp and a lamp are none.
+fn are_of_one_kind(evidence: &Evidence<'_>, diodes: &[ElementId]) -> bool {
+    let models: Vec<Option<&str>> = diodes.iter().map(|&id| evidence.model_name(id)).collect();
+    models.windows(2).all(|pair| pair[0] == pair[1])
 }
 
 /// The single leg is a clamp to a supply of its own, not the way back of the load.

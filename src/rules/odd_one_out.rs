@@ -3,6 +3,7 @@
 use super::{Check, Evidence, Group, Rule, behind, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelId, NodeId};
 use crate::finding::{Finding, Severity};
+use crate::topology::Touch;
 use rustc_hash::{FxHashMap, FxHashSet};
 
 pub const RULE: Rule = Rule {
@@ -110,6 +111,13 @@ fn hang_together(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> bool {
     let mut seen = FxHashSet::from_iter([start]);
     let mut queue = vec![start];
     while let Some(node) = queue.pop() {
+        // every other line of a matrix is one end of all its diodes
+        let mut pins = at.get(&node).into_iter().flatten().filter(|o| o.0 != id).map(|o| o.1);
+        if let Some(first) = pins.next()
+            && pins.any(|pin| pin != first)
+        {
+            return false;
+        }
         for &(other, pin) in at.get(&node).into_iter().flatten().filter(|o| o.0 != id) {
             let far = circuit.node(other, 1 - pin);
             if far == goal {
@@ -147,12 +155,36 @@ fn at_gate(evidence: &Evidence<'_>, at: &Meeting, id: ElementId) -> Option<Vec<E
             .filter(|o| o.0 != id)
             .filter_map(|o| Some((o.0, o.1, is_source(o.0, 1 - o.1)?)))
             .collect();
-        if others.len() >= 2 && others.iter().all(|o| o.1 != pin && o.2 != own) {
+        let stands_out = others.len() >= 2 && others.iter().all(|o| o.1 != pin && o.2 != own);
+        let is_clamp = rails.is_rail(circuit.node(id, 1 - pin))
+            && others.iter().all(|o| !rails.is_rail(circuit.node(o.0, 1 - o.1)));
+        if stands_out && !is_clamp && !leads_on(evidence, id, 1 - pin, &others) {
             return Some(others.iter().map(|o| o.0).collect());
         }
     }
     None
 }
+
+/// What it leads to is a base or a gate, or a source behind a much greater resistance than its sisters have: a battery
+/// that is charged.
+fn leads_on(
+    evidence: &Evidence<'_>,
+    id: ElementId,
+    pin: usize,
+    sisters: &[(ElementId, usize, NodeId)],
+) -> bool {
+    let circuit = evidence.circuit;
+    let is_control = |t: &Touch| {
+        t.pin == 1 && matches!(circuit.element(t.element).behaviour, Behaviour::Transistor { .. })
+    };
+    let far = circuit.node(id, pin);
+    let own = behind(evidence, id, pin).ohms;
+    let theirs = sisters.iter().map(|s| behind(evidence, s.0, 1 - s.1).ohms).fold(0.0, f64::max);
+    evidence.wiring.touching.at(far).iter().any(is_control) || (own >= CHARGING && own > 5.0 * theirs)
+}
+
+/// Ohms from which on a source may be there to be charged.
+const CHARGING: f64 = 10.0;
 
 /// The rail to which the only resistor at a node leads, whatever else is there.
 fn beside(evidence: &Evidence<'_>, node: NodeId) -> Option<NodeId> {

@@ -61,12 +61,28 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         if evidence.wiring.rails.is_rail(node) || diodes.filter(|t| is_diode(t.element)).count() < 2 {
             continue;
         }
+        // a node to which a signal is coupled is switched by what its diodes are biased with
+        if is_coupled(evidence, node) {
+            continue;
+        }
         let regions = regions.get_or_insert_with(|| Regions::of(evidence, |_| true));
         if regions.is_unfed(regions.region(node)) {
             findings.extend(judge(evidence, node, &feeds(evidence, operating, node)));
         }
     }
     findings
+}
+
+/// A capacitor leads to the node from what is neither ground nor a steady rail.
+pub fn is_coupled(evidence: &Evidence<'_>, node: NodeId) -> bool {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    let moves = |id: ElementId| matches!(&circuit.element(id).behaviour, Behaviour::VoltageSource(s) if s.shape.is_some());
+    evidence.wiring.touching.at(node).iter().any(|t| {
+        let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
+        matches!(circuit.element(t.element).behaviour, Behaviour::Capacitor { .. })
+            && (!rails.is_rail(far) || rails.source(far).is_some_and(moves))
+    })
 }
 
 /// The diodes at the node that have a rail other than ground behind them.
@@ -93,8 +109,16 @@ fn judge(evidence: &Evidence<'_>, node: NodeId, feeds: &[Feed]) -> Vec<Finding> 
         let feeding_pin = if sign > 0.0 { 1 } else { 0 };
         let best = feeds.iter().filter(|f| f.pin == feeding_pin && level(f).1 >= 0.0);
         let good = best.max_by(|a, b| level(a).1.total_cmp(&level(b).1));
+        let others = |f: &Feed| {
+            let own = f.diode;
+            feeds.iter().filter(move |o| o.pin == feeding_pin && o.diode != own)
+        };
+        // a clamp lies straight at its rail, a battery that is charged behind a much greater resistance
+        let is_charged = |f: &Feed| f.walk.ohms >= 10.0 && others(f).all(|o| f.walk.ohms > 5.0 * o.walk.ohms);
+        let is_clamp = |f: &Feed| f.walk.passed.is_empty() && others(f).all(|o| !o.walk.passed.is_empty());
+        let is_meant = |f: &Feed| others(f).count() >= 2 && (is_charged(f) || is_clamp(f));
         let turned: Vec<&Feed> =
-            feeds.iter().filter(|f| f.pin != feeding_pin && level(f).0 > SUPPLY).collect();
+            feeds.iter().filter(|f| f.pin != feeding_pin && level(f).0 > SUPPLY && !is_meant(f)).collect();
         let is_negative = |f: &&Feed| f.pin == feeding_pin && level(f).1 <= 0.0 && level(f).0 < -SUPPLY;
         let feeds_some = good.is_some_and(|g| level(g).1 > SUPPLY);
         let negative: Vec<&Feed> = feeds.iter().filter(is_negative).filter(|_| feeds_some).collect();

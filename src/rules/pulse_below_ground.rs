@@ -43,7 +43,13 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let standing = evidence.standing(operating);
     let mut others = (1..circuit.nodes.len()).map(NodeId::new).filter(|&n| n != node);
     let is_below = |n: NodeId| standing.rail(n).is_some_and(|(low, _)| low < 0.0);
-    if others.any(is_below) {
+    // a clamp that stops it at ground says that it is meant
+    let is_stopped = evidence.wiring.touching.at(node).iter().any(|t| {
+        t.pin == 1
+            && matches!(circuit.element(t.element).behaviour, Behaviour::Diode { .. })
+            && circuit.node(t.element, 0) == NodeId::GROUND
+    });
+    if is_stopped || others.any(is_below) {
         return Vec::new();
     }
     level(evidence, *one).map(|level| judge(evidence, *one, node, level)).into_iter().collect()

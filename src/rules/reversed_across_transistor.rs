@@ -3,6 +3,7 @@
 use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
+use crate::topology::gives_light;
 
 pub const RULE: Rule = Rule {
     name: "reversed-across-transistor",
@@ -48,12 +49,34 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
             let diode = touch.element;
             let is_diode = matches!(circuit.element(diode).behaviour, Behaviour::Diode { .. });
             let counted = touch.pin == u32::from(here == to);
-            if is_diode && counted && (circuit.node(diode, 0), circuit.node(diode, 1)) == (from, to) {
+            // a lamp across it is switched off by it
+            if is_diode
+                && !gives_light(circuit, diode)
+                && counted
+                && is_inductive(evidence, from, to)
+                && (circuit.node(diode, 0), circuit.node(diode, 1)) == (from, to)
+            {
                 findings.push(judge(evidence, diode, id));
             }
         }
     }
     findings
+}
+
+/// A coil lies at one of its ends, or behind one resistor: what such a diode is for. Across anything else it may be a
+/// junction that the transistor takes the current from.
+fn is_inductive(evidence: &Evidence<'_>, from: NodeId, to: NodeId) -> bool {
+    let circuit = evidence.circuit;
+    let is_coil = |id: ElementId| matches!(circuit.element(id).behaviour, Behaviour::Inductor { .. });
+    let has_coil = |n: NodeId| evidence.wiring.touching.at(n).iter().any(|t| is_coil(t.element));
+    let behind = |n: NodeId| {
+        let resistors = evidence.wiring.touching.at(n).iter();
+        let mut far = resistors
+            .filter(|t| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_)))
+            .map(|t| circuit.node(t.element, 1 - t.pin.min(1) as usize));
+        far.any(|n| !evidence.wiring.rails.is_rail(n) && has_coil(n))
+    };
+    [from, to].into_iter().filter(|&n| !evidence.wiring.rails.is_rail(n)).any(|n| has_coil(n) || behind(n))
 }
 
 /// From where to where a transistor's main current flows; `None` where its model does not tell.

@@ -78,7 +78,8 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         // where the legs of several outputs point both ways, they are meant to: a ring modulator, a sampling gate
         let mixed = outputs.values().filter(|legs| is_mixed(legs)).count() + between_ends(evidence, driven);
         for (&output, legs) in outputs.iter().filter(|_| mixed == 1) {
-            if is_mixed(legs) && has_load(evidence, output, legs) {
+            let is_driven = evidence.wiring.driven.iter().any(|d| d.ends.contains(&output));
+            if is_mixed(legs) && !is_driven && has_load(evidence, output, legs) {
                 let turned = turned(&outputs, output, legs);
                 let finding = judge(evidence, output, legs, turned);
                 found.entry(turned.unwrap_or(legs[0]).diode).or_insert(finding);
@@ -108,8 +109,12 @@ fn between_ends(evidence: &Evidence<'_>, driven: &Driven) -> usize {
     driven.ends.iter().filter(|&&end| end != NodeId::GROUND && is_mixed(&legs_at(end))).count()
 }
 
-/// Two of the legs lead from one end of the winding straight to another.
+/// Two of the legs lead from one end of the winding straight to another. Pairs of diodes across each other are meant to
+/// pass both ways.
 fn is_mixed(legs: &[Leg]) -> bool {
+    if legs.iter().any(|a| legs.iter().any(|b| a.end == b.end && a.out != b.out)) {
+        return false;
+    }
     let apart = |a: &Leg, b: &Leg| a.end != b.end && a.out != b.out;
     legs.iter().any(|a| legs.iter().any(|b| apart(a, b)))
 }

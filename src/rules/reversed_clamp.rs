@@ -68,6 +68,12 @@ fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
         if into.len() + out.len() < 2 {
             continue;
         }
+        // a lamp and its guard, the one by way of what measures its current, lie between one and the same potential
+        let mut levels = into.iter().chain(&out).map(|a| (a.low, a.high));
+        let first = levels.next();
+        if levels.all(|level| Some(level) == first) {
+            continue;
+        }
         let regions = regions.get_or_insert_with(|| Regions::of(evidence, |id| at_rail(evidence, id)));
         if !regions.is_unfed(regions.region(node)) {
             let wrong = same_way(evidence, operating, node, &into, &out)

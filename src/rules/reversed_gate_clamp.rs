@@ -3,6 +3,7 @@
 use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
+use crate::topology::gives_light;
 
 pub const RULE: Rule = Rule {
     name: "reversed-gate-clamp",
@@ -39,6 +40,15 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     for (id, element) in circuit.elements() {
         let Behaviour::Transistor { model: Some(model) } = element.behaviour else { continue };
         let (gate, source) = (circuit.node(id, 1), circuit.node(id, 2));
+        // a depletion channel conducts at 0 V: there the clamp is meant
+        let threshold = circuit.model(model).parameter("vto").map_or(0.0, |v| v.number);
+        let is_depletion = match circuit.model(model).kind {
+            ModelKind::Nmos => threshold < 0.0,
+            _ => threshold > 0.0,
+        };
+        if is_depletion {
+            continue;
+        }
         let forward = match circuit.model(model).kind {
             ModelKind::Nmos => (gate, source),
             ModelKind::Pmos => (source, gate),
@@ -48,6 +58,7 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         // two of them, one each way, are a matter of their own
         if let [diode] = at_gate.as_slice()
             && (circuit.node(*diode, 0), circuit.node(*diode, 1)) == forward
+            && !gives_light(circuit, *diode)
         {
             findings.push(judge(evidence, *diode, id));
         }

@@ -93,6 +93,16 @@ fn judge(
         return None;
     }
     let seen = *evidence.standing(operating).diode(id)?;
+    let nodes = fed.iter().flat_map(|&e| circuit.pins(e)).map(|p| p.node).filter(|&n| n != NodeId::GROUND);
+    let signal =
+        |n: NodeId| !evidence.wiring.rails.is_rail(n) && super::points_at_its_source::is_coupled(evidence, n);
+    if seen.clamps_near(-seen.least)
+        || is_sensor(evidence, &seen, fed)
+        || is_slowed(evidence, id, pin)
+        || nodes.into_iter().any(signal)
+    {
+        return None;
+    }
     let name = evidence.name(id);
     let names: Vec<String> = fed.iter().map(|&e| evidence.name(e)).collect();
     let verb = if names.len() == 1 { "has" } else { "have" };
@@ -125,6 +135,25 @@ fn judge(
     evidence.name_nodes(&mut finding, &feeders.iter().map(|f| f.0).collect::<Vec<_>>());
     let finding = finding.help(format!("{} {}", RULE.why, RULE.remedy));
     Some(if feeders.len() == 1 { turn_round(evidence, id, finding) } else { finding })
+}
+
+/// A junction held in reverse with one large resistor after it is read by what it leaks: a photodiode.
+fn is_sensor(evidence: &Evidence<'_>, seen: &Seen, fed: &[ElementId]) -> bool {
+    let ohms = |&id: &ElementId| match &evidence.circuit.element(id).behaviour {
+        Behaviour::Resistor(ohms) => ohms.number,
+        _ => 0.0,
+    };
+    !seen.is_led() && fed.len() == 1 && fed.iter().all(|id| ohms(id) >= LEAKAGE)
+}
+
+/// Ohms from which on a resistor is there for a leakage current.
+const LEAKAGE: f64 = 10_000.0;
+
+/// A freewheel diode whose resistor makes the current of its coil die faster.
+fn is_slowed(evidence: &Evidence<'_>, id: ElementId, pin: usize) -> bool {
+    let circuit = evidence.circuit;
+    let (inside, outside) = (circuit.node(id, pin), circuit.node(id, 1 - pin));
+    super::forward_when_switched::freewheels_to(evidence, outside, id, inside).is_some()
 }
 
 /// What lies in each starved region and takes current, in order; all elements gone through once.

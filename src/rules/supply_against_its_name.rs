@@ -1,7 +1,7 @@
 //! A node whose name says what it stands at, held by a source that says otherwise.
 
 use super::{Check, Evidence, Group, Rule, turn_round};
-use crate::circuit::{Behaviour, ElementId, NodeId};
+use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
 
@@ -31,11 +31,23 @@ pub const RULE: Rule = Rule {
 const SOME: f64 = 0.1;
 
 /// A name and a voltage this many times apart have no tolerance between them but a slip of the unit.
-const SLIP: f64 = 20.0;
+const SLIP: f64 = 100.0;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let nodes = (1..evidence.circuit.nodes.len()).map(NodeId::new);
-    nodes.filter_map(|node| judge(evidence, operating, node)).collect()
+    let mirrored = is_mirrored(evidence);
+    nodes.filter_map(|node| judge(evidence, operating, node, mirrored)).collect()
+}
+
+/// Only PNP and P-channel transistors: there VCC and VDD stand below ground by custom.
+fn is_mirrored(evidence: &Evidence<'_>) -> bool {
+    let circuit = evidence.circuit;
+    let mut kinds = circuit.elements().filter_map(|(_, element)| match element.behaviour {
+        Behaviour::Transistor { model: Some(model) } => Some(circuit.model(model).kind),
+        _ => None,
+    });
+    let is_p = |kind| matches!(kind, ModelKind::Pnp | ModelKind::Pmos | ModelKind::Pjf);
+    kinds.next().is_some_and(|first| is_p(first) && kinds.all(is_p))
 }
 
 /// What a name says.
@@ -50,18 +62,36 @@ struct Said {
 /// What the last part of a node's name says.
 fn said(name: &str) -> Option<Said> {
     let own = name.rsplit([':', '/']).next().unwrap_or(name).to_ascii_uppercase();
-    if let Some(volts) = own.split(['_', '.']).find_map(in_volts) {
-        let below = own.starts_with('-') || own.contains("NEG") || own.contains("MINUS");
-        return Some(Said { sign: if below { -1.0 } else { 1.0 }, volts: Some(volts) });
+    let words: Vec<&str> = own.split(['_', '.', '-']).filter(|w| !w.is_empty()).collect();
+    if words.iter().any(|w| SIGNALS.iter().any(|s| w.starts_with(s))) {
+        return None;
     }
-    let is_turned = own.starts_with('-') || own.ends_with('-') || own.contains("NEG");
-    let above = ["VCC", "VDD", "AVCC", "AVDD", "DVDD"].iter().any(|s| own.starts_with(s));
-    match (above, own.starts_with("VEE")) {
+    let is_turned = own.starts_with('-') || own.ends_with('-') || words.iter().any(|w| TURNED.contains(w));
+    let is_below = is_turned || words.iter().any(|w| is_word(w, "VEE"));
+    if let Some(volts) = words.iter().copied().find_map(in_volts) {
+        return Some(Said { sign: if is_below { -1.0 } else { 1.0 }, volts: Some(volts) });
+    }
+    let above = ["VCC", "VDD", "AVCC", "AVDD", "DVDD"].iter().any(|s| words.iter().any(|w| is_word(w, s)));
+    match (above, is_below) {
         _ if is_turned => None,
         (true, _) => Some(Said { sign: 1.0, volts: None }),
         (_, true) => Some(Said { sign: -1.0, volts: None }),
         _ => None,
     }
+}
+
+/// Words that turn what a supply's name says.
+const TURNED: [&str; 5] = ["N", "M", "NEG", "MINUS", "VSS"];
+/// Beginnings of words that make of a supply's name that of a signal about it.
+const SIGNALS: [&str; 20] = [
+    "EN", "PG", "OK", "GOOD", "SENS", "SNS", "MON", "SHUNT", "FB", "ADC", "DIV", "FLT", "FAULT", "CTRL",
+    "DET", "ON", "PWRGD", "RTN", "REF", "LOW",
+];
+
+/// The word itself, a number or the usual letters after it.
+fn is_word(word: &str, name: &str) -> bool {
+    let rest = word.strip_prefix(name);
+    rest.is_some_and(|r| r.bytes().all(|b| b.is_ascii_digit()) || ["A", "D", "IO", "Q"].contains(&r))
 }
 
 /// What a source's own name says of its first node, where its other one is ground: `VCC`; `V24` where it gives 24 V.
@@ -77,6 +107,9 @@ fn said_by(evidence: &Evidence<'_>, source: ElementId, node: NodeId, volts: f64)
     let node = node.rsplit([':', '/']).next().unwrap_or(&node);
     // V2 may be the second source; V2 at `v2`, or V24, is a voltage
     let is_pair = own.eq_ignore_ascii_case(node);
+    if node.to_ascii_uppercase().split(['_', '.', '-']).any(|w| TURNED.contains(&w)) {
+        return None;
+    }
     let counts = |word: &str| {
         let digits = word.strip_prefix(['V', 'v'])?;
         let is_number = digits.bytes().all(|b| b.is_ascii_digit()) && (is_pair || digits.len() > 1);
@@ -99,11 +132,14 @@ fn in_volts(word: &str) -> Option<f64> {
     format!("{whole}.{part}0").parse().ok().filter(|v: &f64| *v > 0.0)
 }
 
-fn judge(evidence: &Evidence<'_>, operating: &Operating, node: NodeId) -> Option<Finding> {
+fn judge(evidence: &Evidence<'_>, operating: &Operating, node: NodeId, mirrored: bool) -> Option<Finding> {
     let source = evidence.wiring.rails.source(node)?;
     let (low, high) = evidence.standing(operating).rail(node)?;
     let name = evidence.node(node);
     let said = said(&name).or_else(|| said_by(evidence, source, node, low.abs().max(high.abs())))?;
+    if mirrored && said.volts.is_none() {
+        return None;
+    }
     let is_opposite = if said.sign > 0.0 { high < -SOME } else { low > SOME };
     let most = low.abs().max(high.abs());
     let slipped = |volts: f64| most > 0.0 && (most > SLIP * volts || most * SLIP < volts);
@@ -154,6 +190,11 @@ mod tests {
             ("VCC_1V8", full(1.0, 1.8)),
             ("-5V", full(-1.0, 5.0)),
             ("5V_NEG", full(-1.0, 5.0)),
+            ("12V_N", full(-1.0, 12.0)),
+            ("VEE_5V", full(-1.0, 5.0)),
+            ("VEEPROM", None),
+            ("48V_EN", None),
+            ("12V_SENSE", None),
             ("v5", None),
             ("vin", None),
             ("12", None),

@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Group, Rule};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
-use crate::topology::main_path;
+use crate::topology::{dc_value, main_path};
 
 pub const RULE: Rule = Rule {
     name: "switch-across-supply",
@@ -33,7 +33,7 @@ pub const RULE: Rule = Rule {
 };
 
 /// A switch that holds more than this when closed stands for a load, in ohms.
-const LOAD: f64 = 10.0;
+const LOAD: f64 = 2.0;
 
 fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     evidence.circuit.elements().filter_map(|(id, _)| judge(evidence, id)).collect()
@@ -51,7 +51,12 @@ fn judge(evidence: &Evidence<'_>, id: ElementId) -> Option<Finding> {
     let (one, two) = main_path(circuit, id)?;
     let ends = [circuit.node(id, one), circuit.node(id, two)];
     let rails = &evidence.wiring.rails;
-    let holds = |n: NodeId| n == NodeId::GROUND || rails.source(n).is_some();
+    // a source of 0 V measures the current of what lies beyond
+    let gives = |id: ElementId| match &circuit.element(id).behaviour {
+        Behaviour::VoltageSource(source) => source.shape.is_some() || dc_value(source).0 != 0.0,
+        _ => false,
+    };
+    let holds = |n: NodeId| n == NodeId::GROUND || rails.source(n).is_some_and(gives);
     if ends[0] == ends[1] || !ends.iter().all(|&n| holds(n)) {
         return None;
     }
@@ -79,11 +84,26 @@ fn is_load(circuit: &Circuit, id: ElementId) -> bool {
     model.and_then(|m| circuit.model(m).parameter("ron")).is_some_and(|ron| ron.number >= LOAD)
 }
 
-/// Base or gate is driven by a source alone: so its characteristic is taken, and the source across it is meant.
+/// Its characteristic is taken: base or gate is driven by a source alone or by another transistor's, a source is swept, or
+/// the supply feeds nothing else.
 fn is_on_a_test_bench(evidence: &Evidence<'_>, id: ElementId) -> bool {
     let circuit = evidence.circuit;
     let control = circuit.node(id, 1);
-    let others = evidence.wiring.touching.at(control).iter().filter(|t| t.element != id);
-    let mut drivers = others.map(|t| &circuit.element(t.element).behaviour);
-    evidence.wiring.rails.is_rail(control) || drivers.all(|b| matches!(b, Behaviour::CurrentSource(_)))
+    let touching = &evidence.wiring.touching;
+    let is_transistor = |e: ElementId| matches!(circuit.element(e).behaviour, Behaviour::Transistor { .. });
+    let mut drivers = touching.at(control).iter().filter(|t| t.element != id).map(|t| t.element);
+    let by_current = |e: ElementId| matches!(circuit.element(e).behaviour, Behaviour::CurrentSource(_));
+    let feeds_only_it = |node: NodeId| {
+        node == NodeId::GROUND
+            || touching.at(node).iter().all(|t| {
+                is_transistor(t.element)
+                    || matches!(circuit.element(t.element).behaviour, Behaviour::VoltageSource(_))
+            })
+    };
+    let ends = main_path(circuit, id).map(|(a, b)| [circuit.node(id, a), circuit.node(id, b)]);
+    evidence.wiring.rails.is_rail(control)
+        || !circuit.sweeps.is_empty()
+        || touching.at(control).iter().any(|t| t.element != id && is_transistor(t.element))
+        || drivers.all(by_current)
+        || ends.is_some_and(|ends| ends.into_iter().all(feeds_only_it))
 }

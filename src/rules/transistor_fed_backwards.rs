@@ -11,8 +11,8 @@ pub const RULE: Rule = Rule {
     group: Group::Orientation,
     severity: Severity::Warning,
     also: None,
-    summary: "collector or base, drain or gate of a transistor are fed with the wrong polarity",
-    why: "NPN and N-channel transistors work with collector and base, drain and gate above emitter and source, PNP and \
+    summary: "the collector, base or drain of a transistor is fed with the wrong polarity",
+    why: "NPN and N-channel transistors work with collector and base, or drain, above emitter or source, PNP and \
           P-channel ones below. Fed the other way round they switch nothing, and their junctions break down.",
     remedy: "Turn the source round, or take the transistor of the other type.",
     source: Some("Polarities by transistor type, common practice"),
@@ -32,8 +32,8 @@ pub const RULE: Rule = Rule {
 
 /// Volts by which a terminal must stand on the wrong side.
 const COLLECTOR: f64 = 0.5;
-/// A base or gate may well be held a little beyond its emitter to be surely off.
-const BASE: f64 = 1.5;
+/// A base may well be held beyond its emitter to be surely off, but not further than its junction stands.
+const BASE: f64 = 6.0;
 
 fn check(evidence: &Evidence<'_>, operating: &Operating) -> Vec<Finding> {
     let elements = evidence.circuit.elements();
@@ -57,15 +57,17 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
         return None;
     }
     let words = if is_channel {
-        [("drain", "source"), ("gate", "source")]
+        [("drain", "source"), ("", "")]
     } else {
         [("collector", "emitter"), ("base", "emitter")]
     };
     if let Some(diode) = led_away(evidence, id, sign) {
         return Some(by_diode(evidence, id, words[0].0, diode));
     }
-    let tried = [(0, COLLECTOR, words[0]), (1, BASE, words[1])];
-    tried.into_iter().find_map(|(pin, margin, words)| {
+    // a gate may well be held far beyond its source, and a junction tied to its collector is used as a diode
+    let base = (!is_channel && circuit.node(id, 0) != circuit.node(id, 1)).then_some((1, BASE, words[1]));
+    let tried = [Some((0, COLLECTOR, words[0])), base];
+    tried.into_iter().flatten().find_map(|(pin, margin, words)| {
         let upper = rails_around(evidence, circuit.node(id, pin), comes)?;
         let own: Vec<NodeId> = upper.into_iter().filter(|n| !lower.contains(n)).collect();
         let (above, below) =
@@ -139,7 +141,7 @@ fn led_away(evidence: &Evidence<'_>, id: ElementId, sign: f64) -> Option<Element
         for touch in evidence.wiring.touching.at(node) {
             let far = || circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
             match &circuit.element(touch.element).behaviour {
-                Behaviour::Resistor(_) if far() == NodeId::GROUND => {}
+                Behaviour::Resistor(_) if far() == NodeId::GROUND && sign > 0.0 => {}
                 b if is_lead(b) && nodes.len() < WIDEST => {
                     if !nodes.contains(&far()) {
                         nodes.push(far());

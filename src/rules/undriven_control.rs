@@ -51,9 +51,13 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         }
         let Some(lead) = lead_of(evidence, gate) else { continue };
         let is_left = match element.letter {
-            b'M' => !lead.drivers.is_empty() && !lead.is_held(),
+            b'M' => !lead.drivers.is_empty() && !lead.is_held() && !lead.is_memory(evidence),
             // a base takes current, so a driver that is off leaves it at rest
-            _ => lead.is_idle(circuit.node(id, 2), feeds(circuit, id)),
+            _ => {
+                let emitter = circuit.node(id, 2);
+                let is_rail = evidence.wiring.rails.is_rail(emitter);
+                gate != emitter && lead.is_idle(emitter, is_rail, feeds(circuit, id))
+            }
         };
         if !is_left {
             continue;
@@ -73,12 +77,12 @@ struct Lead {
     drivers: Vec<(ElementId, Pull)>,
     /// Diodes there that lead to no rail.
     diodes: Vec<Pull>,
-    /// Diodes to rails other than ground: clamps of a gate, perhaps the drive of a base.
-    rail_diodes: Vec<Pull>,
+    /// Diodes to rails: clamps of a gate, perhaps the drive of a base.
+    rail_diodes: Vec<(NodeId, Pull)>,
     /// Rails there.
     rails: Vec<NodeId>,
-    /// A capacitor leads from there to what may drive it.
-    is_coupled: bool,
+    /// Where capacitors lead from there.
+    couplings: Vec<NodeId>,
 }
 
 /// Which way a driver takes the gate.
@@ -91,13 +95,31 @@ enum Pull {
 
 impl Lead {
     /// Nothing there drives the base of a transistor whose emitter is at `emitter` and that what pulls `feeds` turns on.
-    /// A capacitor drives it only while no diode takes all that it brings.
-    fn is_idle(&self, emitter: NodeId, feeds: Pull) -> bool {
-        let mut diodes = self.diodes.iter().chain(&self.rail_diodes);
-        self.drivers.is_empty()
-            && !diodes.any(|&d| d == feeds || d == Pull::Either)
-            && (!self.is_coupled || !self.diodes.is_empty())
-            && self.rails.iter().all(|&rail| rail == emitter)
+    fn is_idle(&self, emitter: NodeId, is_rail: bool, feeds: Pull) -> bool {
+        let helps = |pull: Pull| pull == feeds || pull == Pull::Either;
+        // nothing comes up from ground but to what lies below it
+        let reaches =
+            |rail: NodeId| rail != emitter && (rail != NodeId::GROUND || feeds == Pull::Down || is_rail);
+        let is_fed = self.diodes.iter().any(|&d| helps(d))
+            || self.rail_diodes.iter().any(|&(rail, d)| reaches(rail) && helps(d));
+        let is_coupled = self.couplings.iter().any(|&far| far != emitter);
+        self.drivers.is_empty() && !is_fed && !is_coupled && self.rails.iter().all(|&rail| rail == emitter)
+    }
+
+    /// The gate is a memory: its capacitor keeps what one switch has passed on to it.
+    fn is_memory(&self, evidence: &Evidence<'_>) -> bool {
+        let circuit = evidence.circuit;
+        let passes_on = |id: ElementId| {
+            let ends = main_path(circuit, id).map(|(a, b)| [circuit.node(id, a), circuit.node(id, b)]);
+            let far = ends.and_then(|ends| ends.into_iter().find(|n| !self.nodes.contains(n)));
+            far.is_some_and(|n| {
+                !evidence.wiring.rails.is_rail(n) || evidence.wiring.rails.source(n).is_some()
+            })
+        };
+        match self.drivers.as_slice() {
+            [(one, _)] => !self.couplings.is_empty() && passes_on(*one),
+            _ => false,
+        }
     }
 
     /// One of several is always on: a push-pull stage, a change-over switch, a gate of diodes with its pull.
@@ -132,8 +154,9 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
                 _ if is_sensing(circuit, touch.element, touch.pin as usize) => {}
                 Behaviour::Capacitor { .. } => {
                     let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
-                    lead.is_coupled |= far != NodeId::GROUND;
+                    lead.couplings.push(far);
                 }
+                Behaviour::Inductor { .. } if evidence.is_coupled(touch.element) => return None,
                 Behaviour::Resistor(_) | Behaviour::Inductor { .. } => {
                     let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
                     if !lead.nodes.contains(&far) {
@@ -142,11 +165,9 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
                 }
                 Behaviour::Diode { .. } => {
                     let far = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
-                    match (far == NodeId::GROUND, evidence.wiring.rails.is_rail(far)) {
-                        // a clamp, which does not speak until the node leaves its limits
-                        (true, _) => {}
-                        (_, true) => lead.rail_diodes.push(diode_pull(evidence, touch)),
-                        _ => lead.diodes.push(diode_pull(evidence, touch)),
+                    match evidence.wiring.rails.is_rail(far) {
+                        true => lead.rail_diodes.push((far, diode_pull(evidence, touch))),
+                        false => lead.diodes.push(diode_pull(evidence, touch)),
                     }
                 }
                 Behaviour::Transistor { .. } => match transistor_pull(circuit, touch) {
@@ -177,9 +198,7 @@ fn feeds(circuit: &Circuit, id: ElementId) -> Pull {
 /// Which way a diode pulls: one that may break down, either way.
 fn diode_pull(evidence: &Evidence<'_>, touch: Touch) -> Pull {
     match touch.pin {
-        _ if can_break_down(evidence.circuit, touch.element, evidence.wiring.available.min(ZENER)) => {
-            Pull::Either
-        }
+        _ if can_break_down(evidence.circuit, touch.element, ZENER) => Pull::Either,
         0 => Pull::Down,
         _ => Pull::Up,
     }

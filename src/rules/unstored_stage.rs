@@ -3,6 +3,7 @@
 use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
+use crate::topology::gives_light;
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
@@ -84,7 +85,11 @@ fn neighbour(evidence: &Evidence<'_>, id: ElementId, pin: u32) -> Option<Element
     let touches = evidence.wiring.touching.at(node).iter();
     let mut others = touches.filter(|t| t.element != id && is_diode(t.element));
     match (others.next(), others.next()) {
-        (Some(other), None) if other.pin == 1 - pin => Some(other.element),
+        // lamps and other kinds of diode are no stages of the pump
+        (Some(other), None) if other.pin == 1 - pin => {
+            let alike = evidence.model_name(other.element) == evidence.model_name(id);
+            Some(other.element).filter(|&o| alike && !gives_light(circuit, o))
+        }
         _ => None,
     }
 }
@@ -103,8 +108,8 @@ fn judge(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<Finding> {
     }
     let is_bare = |n: usize| match n + 1 == nodes.len() {
         // the last one is the output
-        true => !evidence.wiring.rails.is_rail(nodes[n]),
-        false => evidence.wiring.touching.at(nodes[n]).len() == 2,
+        true => is_loaded_only(evidence, chain[n], nodes[n]),
+        false => evidence.wiring.touching.at(nodes[n]).len() == 2 && stores[n..].contains(&true),
     };
     let n = (0..nodes.len()).find(|&n| !stores[n] && is_bare(n))?;
     let node = evidence.node(nodes[n]);
@@ -123,6 +128,17 @@ fn judge(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<Finding> {
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }
 
+/// Nothing but resistors to ground is there beside the diode.
+fn is_loaded_only(evidence: &Evidence<'_>, diode: ElementId, node: NodeId) -> bool {
+    let circuit = evidence.circuit;
+    let is_load = |id: ElementId| {
+        let ends = [circuit.node(id, 0), circuit.node(id, 1)];
+        matches!(circuit.element(id).behaviour, Behaviour::Resistor(_)) && ends.contains(&NodeId::GROUND)
+    };
+    let touches = evidence.wiring.touching.at(node);
+    !evidence.wiring.rails.is_rail(node) && touches.iter().all(|t| t.element == diode || is_load(t.element))
+}
+
 /// In a ladder a capacitor joins each node of the chain to the next but one; the first pair without one, counted from the
 /// anode of the first diode, where most pairs have it.
 fn gap(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<(NodeId, NodeId)> {
@@ -132,7 +148,11 @@ fn gap(evidence: &Evidence<'_>, chain: &[ElementId]) -> Option<(NodeId, NodeId)>
     let pairs: Vec<(NodeId, NodeId)> = nodes.windows(3).map(|w| (w[0], w[2])).collect();
     let is_joined = |pair: &&(NodeId, NodeId)| capacitors(evidence, pair.1).any(|far| far == pair.0);
     let joined = pairs.iter().filter(is_joined).count();
-    let missing: Vec<_> = pairs.iter().filter(|pair| !is_joined(pair)).collect();
+    // a capacitor to ground smooths as well
+    let smooths = |pair: &&(NodeId, NodeId)| {
+        capacitors(evidence, pair.1).any(|far| far == NodeId::GROUND || far == pair.0)
+    };
+    let missing: Vec<_> = pairs.iter().filter(|pair| !smooths(pair)).collect();
     match missing.as_slice() {
         [one] if joined >= 3 => Some(**one),
         _ => None,

@@ -9,7 +9,7 @@ use crate::topology::{is_lead, main_path};
 pub const RULE: Rule = Rule {
     name: "zener-below-breakdown",
     group: Group::Orientation,
-    severity: Severity::Warning,
+    severity: Severity::Note,
     also: None,
     summary: "a Zener diode that sets a voltage is fed from less than its breakdown voltage",
     why: "Below its breakdown voltage a Zener diode only leaks, so the voltage that a follower passes on is that of the feed \
@@ -45,10 +45,13 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     let standing = evidence.standing(operating);
     let (low, node) = (circuit.node(id, 0), circuit.node(id, 1));
     let rails = &evidence.wiring.rails;
-    if !rails.is_rail(low) || rails.is_rail(node) || !sets_a_voltage(evidence, id, node) {
+    if !rails.is_rail(low) || rails.is_rail(node) {
         return None;
     }
     let feed = feed(evidence, id, node)?;
+    if !sets_a_voltage(evidence, id, node, feed) {
+        return None;
+    }
     let (source, base) = (standing.rail(feed)?, standing.rail(low)?);
     let most = source.1 - base.0;
     // a source that is off or turned round is another matter
@@ -71,13 +74,14 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }
 
-/// A follower stands on the node. Where none does it may be a clamp, which only speaks beyond its voltage.
-fn sets_a_voltage(evidence: &Evidence<'_>, id: ElementId, node: NodeId) -> bool {
+/// A follower of the same feed stands on the node. Where none does it may be a clamp, which only speaks beyond its
+/// voltage; a limiter looks just like a follower, so this is no more than a note.
+fn sets_a_voltage(evidence: &Evidence<'_>, id: ElementId, node: NodeId, feed: NodeId) -> bool {
     let circuit = evidence.circuit;
     let is_follower = |other: ElementId, pin: u32| {
         let is_bipolar = circuit.element(other).letter == b'Q';
         let collector = main_path(circuit, other).map(|p| circuit.node(other, p.0));
-        is_bipolar && pin == 1 && other != id && collector.is_some_and(|c| evidence.wiring.rails.is_rail(c))
+        is_bipolar && pin == 1 && other != id && collector == Some(feed)
     };
     evidence.wiring.touching.at(node).iter().any(|t| is_follower(t.element, t.pin))
 }

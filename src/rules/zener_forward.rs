@@ -51,13 +51,13 @@ fn at_follower(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) ->
     let Behaviour::Diode { model: Some(model), .. } = circuit.element(id).behaviour else { return None };
     let breakdown = circuit.model(model).parameter("bv")?.number.abs();
     let seen = evidence.standing(operating).diode(id);
-    let is_zener = seen.is_none_or(|s| !s.is_led() && s.drop >= SILICON) && breakdown <= MOST;
+    let is_zener = seen.is_none_or(|s| (SILICON..LAMP).contains(&s.drop)) && breakdown <= RECTIFIER;
     if !is_zener || seen.is_some_and(|s| s.always.is_some()) {
         return None;
     }
     let (anode, cathode) = (circuit.node(id, 0), circuit.node(id, 1));
-    let follower = follower_at(evidence, anode, cathode, ModelKind::Npn)
-        .or_else(|| follower_at(evidence, cathode, anode, ModelKind::Pnp))?;
+    let follower = follower_at(evidence, operating, anode, cathode, ModelKind::Npn)
+        .or_else(|| follower_at(evidence, operating, cathode, anode, ModelKind::Pnp))?;
     let (name, transistor) = (evidence.name(id), evidence.name(follower));
     let message = format!(
         "{name} is to hold the base of {transistor} at its breakdown voltage of {}, but lies forward there and holds it \
@@ -74,21 +74,39 @@ fn at_follower(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) ->
     Some(turn_round(evidence, id, finding.help(format!("{} {}", RULE.why, RULE.remedy))))
 }
 
-/// A transistor of that kind with its base at `base`, whose emitter is not at the rail `reference`.
+/// A transistor of that kind with its base at `base` and its emitter at no rail, where `reference` is ground.
 fn follower_at(
     evidence: &Evidence<'_>,
+    operating: &Operating,
     base: NodeId,
     reference: NodeId,
     kind: ModelKind,
 ) -> Option<ElementId> {
     let circuit = evidence.circuit;
     let rails = &evidence.wiring.rails;
-    if rails.is_rail(base) || !rails.is_rail(reference) {
+    if rails.is_rail(base) || reference != NodeId::GROUND {
         return None;
     }
+    let sign = if kind == ModelKind::Npn { 1.0 } else { -1.0 };
+    // its load leads to ground, or further that way: the base stands on the other side
+    let loaded = |id: ElementId| {
+        let emitter = circuit.node(id, 2);
+        let leads = evidence
+            .wiring
+            .touching
+            .at(emitter)
+            .iter()
+            .filter(|t| matches!(circuit.element(t.element).behaviour, Behaviour::Resistor(_)));
+        let mut ends =
+            leads.map(|t| circuit.node(t.element, 1 - t.pin.min(1) as usize)).filter(|&n| rails.is_rail(n));
+        let stands = |n: NodeId| {
+            evidence.standing(operating).rail(n).is_some_and(|(l, h)| sign * l >= 0.0 && sign * h >= 0.0)
+        };
+        ends.all(stands)
+    };
     let follows = |id: ElementId| match circuit.element(id).behaviour {
         Behaviour::Transistor { model: Some(model) } => {
-            circuit.model(model).kind == kind && circuit.node(id, 2) != reference
+            circuit.model(model).kind == kind && !rails.is_rail(circuit.node(id, 2)) && loaded(id)
         }
         _ => false,
     };
@@ -103,10 +121,12 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId, most: f6
     let circuit = evidence.circuit;
     // one end on a rail, the other held by what lies around it
     let (low, high) = (circuit.node(id, 1), circuit.node(id, 0));
-    let shunts = rails.is_rail(low) != rails.is_rail(high);
-    let pressed = (MARGIN * breakdown..most).contains(&seen.open_circuit);
-    let would_hold = pressed && breakdown <= MOST && seen.drop >= SILICON;
-    if !seen.is_always(State::Conducting) || seen.is_led() || !shunts || !would_hold {
+    // at a supply it may lie in series with what that feeds
+    let shunts = [low, high].contains(&NodeId::GROUND) && rails.is_rail(low) != rails.is_rail(high);
+    let margin = if breakdown > RECTIFIER { 1.0 } else { MARGIN };
+    let pressed = (margin * breakdown..most).contains(&seen.open_circuit);
+    let would_hold = pressed && breakdown <= MOST && (SILICON..LAMP).contains(&seen.drop);
+    if !seen.is_always(State::Conducting) || !shunts || !would_hold {
         return None;
     }
     let free = if rails.is_rail(low) { high } else { low };
@@ -136,5 +156,9 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId, most: f6
 const MARGIN: f64 = 0.6;
 /// So many times the greatest supply two supplies and a divider do not give.
 const BEYOND: f64 = 3.0;
+/// From here on it may be a rectifier's limit as well as a Zener diode's voltage.
+const RECTIFIER: f64 = 40.0;
+/// No Zener diode drops so much forward; an infrared lamp does.
+const LAMP: f64 = 0.95;
 /// Beyond this a breakdown voltage is a rectifier's limit.
 const MOST: f64 = 60.0;

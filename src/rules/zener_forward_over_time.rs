@@ -49,6 +49,10 @@ pub const RULE: Rule = Rule {
 const MARGIN: f64 = 0.6;
 /// Beyond this a breakdown voltage is a rectifier's limit.
 const MOST: f64 = 60.0;
+/// From here on it may be a rectifier's limit as well as a Zener diode's voltage.
+const RECTIFIER: f64 = 40.0;
+/// No Zener diode drops so much forward; an infrared lamp does.
+const LAMP: f64 = 0.95;
 /// So much of its greatest value the feed may swing to the other side.
 const BACK: f64 = 0.05;
 /// A diode that conducts for less of the period clips something.
@@ -65,7 +69,7 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing, id: Elem
     let breakdown = circuit.model(model).parameter("bv")?.number.abs();
     let time = swing.diode(id)?.over_time.as_ref()?;
     let forward = time.breakdown_intervals.is_empty() && time.conducting_share > LASTING;
-    let is_led = evidence.standing(operating).diode(id).is_some_and(super::Seen::is_led);
+    let is_led = evidence.standing(operating).diode(id).is_some_and(|s| s.drop >= LAMP);
     if !forward || breakdown > MOST || is_led {
         return None;
     }
@@ -76,7 +80,8 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, swing: &Swing, id: Elem
     }
     let feed = feed(evidence, swing, id, free)?;
     let (low, high) = if free == 0 { (feed.1, feed.2) } else { (-feed.2, -feed.1) };
-    if high < MARGIN * breakdown || low < -BACK * high {
+    let margin = if breakdown > RECTIFIER { 1.0 } else { MARGIN };
+    if high < margin * breakdown || low < -BACK * high {
         return None;
     }
     let name = evidence.name(id);

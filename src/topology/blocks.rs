@@ -73,10 +73,17 @@ pub(super) fn unfed(circuit: &Circuit, noted: &Noted) -> Vec<Unfed> {
             nodes.dedup();
             Unfed { elements, nodes }
         })
-        .filter(|unfed| unfed.elements.len() > 1)
+        .filter(|unfed| unfed.elements.len() > 1 && !is_lone_junction(circuit, &unfed.elements))
         .collect();
     found.sort_by(|a, b| a.elements.cmp(&b.elements));
     found
+}
+
+/// One bipolar transistor and resistors only: the loop of its base, whatever its collector does.
+fn is_lone_junction(circuit: &Circuit, elements: &[ElementId]) -> bool {
+    let is_resistor = |id: &ElementId| matches!(circuit.element(*id).behaviour, Behaviour::Resistor(_));
+    let others: Vec<&ElementId> = elements.iter().filter(|id| !is_resistor(id)).collect();
+    matches!(others.as_slice(), [one] if circuit.element(**one).letter == b'Q')
 }
 
 /// The pins between which an element passes what a source drives. The junction from base to collector is there, but

@@ -1,7 +1,7 @@
 //! How each kind of element joins its pins: what passes a direct current, what only a changing one, what
 //! merely listens.
 
-use crate::circuit::{Behaviour, Circuit, ElementId, Model, ModelKind, NodeId, NoteKind};
+use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId, NoteKind};
 
 /// What passes between two pins.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -71,14 +71,17 @@ pub fn can_break_down(circuit: &Circuit, id: ElementId, available: f64) -> bool 
     match circuit.element(id).behaviour {
         Behaviour::Diode { model: Some(model), .. } => {
             let model = circuit.model(model);
-            !gives_light(model) && model.parameter("bv").is_some_and(|bv| bv.number.abs() <= available)
+            !gives_light(circuit, id) && model.parameter("bv").is_some_and(|bv| bv.number.abs() <= available)
         }
         _ => true,
     }
 }
 
-/// By the voltage at which its model carries 1 mA: no silicon junction needs 1.2 V (common practice).
-fn gives_light(model: &Model) -> bool {
+/// A diode that gives light, by the voltage at which its model carries 1 mA: no silicon junction needs 1.2 V (common
+/// practice).
+pub fn gives_light(circuit: &Circuit, id: ElementId) -> bool {
+    let Behaviour::Diode { model: Some(model), .. } = circuit.element(id).behaviour else { return false };
+    let model = circuit.model(model);
     let (Some(saturation), emission) = (model.parameter("is"), model.parameter("n")) else { return false };
     let emission = emission.map_or(1.0, |n| n.number);
     saturation.number > 0.0 && emission * 0.02585 * (1e-3 / saturation.number).ln_1p() > 1.2

@@ -23,7 +23,7 @@ pub use blocks::Unfed;
 pub use cuts::{Cut, coupled_coils};
 pub use decimal::{Sum, sum};
 pub use groups::Groups;
-pub use links::{Link, can_break_down, is_opaque, is_sensing, links};
+pub use links::{Link, can_break_down, gives_light, is_opaque, is_sensing, links};
 pub use loops::{Loop, Potentials, Step, dc_value, span_of_values, total};
 pub use noted::Noted;
 pub use ports::Driven;
