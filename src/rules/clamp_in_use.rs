@@ -55,9 +55,11 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     if !seen.is_always(State::Conducting) || seen.is_led() || !rails.is_rail(rail) {
         return None;
     }
-    let partner = partner(evidence, id, node, input as u32, rail)?;
+    let partners = partners(evidence, id, node, input as u32, rail);
     // what the one passes on to the other is no input
-    if evidence.is_told_near(id) || !evidence.standing(operating).diode(partner)?.is_always(State::Blocking) {
+    let standing = evidence.standing(operating);
+    let rests = |&p: &ElementId| standing.diode(p).is_some_and(|d| d.is_always(State::Blocking));
+    if partners.is_empty() || !partners.iter().all(rests) || evidence.is_told_near(id) {
         return None;
     }
     let (name, held) = (evidence.name(id), evidence.node(rail));
@@ -66,11 +68,10 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
         quantity(seen.current, "A"),
         evidence.node(node)
     );
-    let mut finding = evidence
-        .about(&RULE, id, message)
-        .label("always clamps")
-        .also(evidence.statement(partner), "its partner")
-        .about(evidence.name(partner));
+    let mut finding = evidence.about(&RULE, id, message).label("always clamps");
+    for &partner in &partners {
+        finding = finding.also(evidence.statement(partner), "its partner").about(evidence.name(partner));
+    }
     evidence.name_nodes(&mut finding, &[id]);
     let drivers = around(evidence, node);
     for &driver in &drivers {
@@ -80,17 +81,11 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     Some(finding.help(format!("{} {}", RULE.why, RULE.remedy)))
 }
 
-/// The diode of the pair that leads to, or from, another rail.
-fn partner(
-    evidence: &Evidence<'_>,
-    id: ElementId,
-    node: NodeId,
-    pin: u32,
-    rail: NodeId,
-) -> Option<ElementId> {
+/// The diodes that lead to, or from, another rail.
+fn partners(evidence: &Evidence<'_>, id: ElementId, node: NodeId, pin: u32, rail: NodeId) -> Vec<ElementId> {
     let circuit = evidence.circuit;
     let touches = evidence.wiring.touching.at(node).iter();
-    let mut others = touches.filter(|t| {
+    let others = touches.filter(|t| {
         let far = circuit.node(t.element, 1 - t.pin.min(1) as usize);
         t.element != id
             && t.pin != pin
@@ -98,7 +93,7 @@ fn partner(
             && matches!(circuit.element(t.element).behaviour, Behaviour::Diode { .. })
             && evidence.wiring.rails.is_rail(far)
     });
-    others.next().map(|t| t.element)
+    others.map(|t| t.element).collect()
 }
 
 /// Sources looked for this many nodes away.

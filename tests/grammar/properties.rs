@@ -208,9 +208,9 @@ fn essence(analysis: &Analysis, rename: &BTreeMap<String, String>) -> Vec<String
 fn neither_the_order_of_lines_nor_the_names_of_nodes_matter() {
     let mut seed = Seed(21);
     let plain: Vec<String> = ["0", "in", "out", "mid", "sense", "rail", "tap"].map(str::to_owned).to_vec();
-    // the same in what the rules look at in names: nothing resembles another
+    // the same in what the rules look at in names: nothing resembles another, and none says what it stands at
     let other: Vec<String> =
-        ["0", "zwölf/7", "+24V", "a[3]", "<probe>", "LONGER_NAME", "q.y#2"].map(str::to_owned).to_vec();
+        ["0", "zwölf/7", "+pin24", "a[3]", "<probe>", "LONGER_NAME", "q.y#2"].map(str::to_owned).to_vec();
     let back: BTreeMap<String, String> = other.iter().cloned().zip(plain.iter().cloned()).collect();
     for _ in 0..400 {
         let mut lines = random_circuit(&mut seed);
