@@ -5,15 +5,23 @@ use rustc_hash::FxHashMap;
 
 /// Rules from cause to consequence: of two findings that name one diode, the one whose rule stands first is the cause.
 /// Rules that are not listed are neither.
-const FROM_CAUSE: [&str; 38] = [
+const FROM_CAUSE: [&str; 52] = [
+    "supply-against-its-name",
+    "pulse-below-ground",
+    "switch-across-supply",
     "forward-across-source",
     "opposed-in-series",
     "reversed-bridge-leg",
     "missing-bridge-leg",
+    "reversed-across-transistor",
+    "reversed-gate-clamp",
+    "transistor-fed-backwards",
     "forward-when-switched",
     "reversed-clamp",
     "odd-one-out",
     "points-at-its-source",
+    "zener-bypassed",
+    "idle-source",
     "starved-part",
     "dark-branch",
     "indicator-never-lit",
@@ -21,12 +29,18 @@ const FROM_CAUSE: [&str; 38] = [
     "supplies-tied",
     "clamp-rail-unheld",
     "zener-forward",
+    "zener-forward-over-time",
+    "clamp-in-use",
+    "undriven-control",
     "unlimited-current",
     "no-limiting-resistor",
     "unfed-part",
     "blocked-current",
+    "driven-beyond-supplies",
     "never-conducts",
+    "unstored-stage",
     "no-lasting-current",
+    "idle-rectifier",
     "unmeant-breakdown",
     "over-rating",
     "near-switching",
@@ -156,6 +170,19 @@ mod tests {
         let by_own = finding("open-potential", Severity::Note, &["out", "R2"]);
         let neither = finding("open-potential", Severity::Note, &["R2", "out"]);
         assert_eq!(left(&[cause, by_cause, by_own, neither]), ["reversed-clamp", "open-potential"]);
+    }
+
+    #[test]
+    fn a_supply_on_its_head_explains_what_stands_on_it() {
+        let warning = Severity::Warning;
+        let supply = finding("supply-against-its-name", warning, &["V24", "v24"]);
+        let others = [
+            finding("forward-when-switched", warning, &["D1", "Q1", "V24"]),
+            finding("transistor-fed-backwards", warning, &["Q1", "V24"]),
+            finding("starved-part", warning, &["D7", "V5"]),
+        ];
+        let all = [&[supply][..], &others].concat();
+        assert_eq!(left(&all), ["supply-against-its-name", "starved-part"]);
     }
 
     #[test]
