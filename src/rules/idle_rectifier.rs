@@ -48,15 +48,19 @@ fn check(evidence: &Evidence<'_>, _operating: &Operating, swing: &Swing) -> Vec<
         return Vec::new();
     }
     let mut findings = Vec::new();
-    for driven in &evidence.wiring.driven {
-        let outputs = legs(evidence, driven);
-        let rectifiers: FxHashSet<ElementId> =
-            outputs.values().flatten().map(|leg| leg.diode).filter(|&id| is_plain(evidence, id)).collect();
-        if rectifiers.len() < 2 {
-            continue;
-        }
-        let regions = Regions::of(evidence, |id| rectifiers.contains(&id));
-        for (&output, legs) in &outputs {
+    let groups: Vec<_> = evidence.wiring.driven.iter().map(|driven| legs(evidence, driven)).collect();
+    let rectifiers: FxHashSet<ElementId> = groups
+        .iter()
+        .flat_map(|outputs| outputs.values().flatten())
+        .map(|leg| leg.diode)
+        .filter(|&id| is_plain(evidence, id))
+        .collect();
+    if rectifiers.len() < 2 {
+        return Vec::new();
+    }
+    let regions = Regions::of(evidence, |id| rectifiers.contains(&id));
+    for outputs in &groups {
+        for (&output, legs) in outputs {
             let takes = legs.len() > 1
                 && legs.iter().all(|l| l.out == legs[0].out && rectifiers.contains(&l.diode))
                 && !evidence.wiring.rails.is_rail(output)

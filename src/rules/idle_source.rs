@@ -5,6 +5,7 @@ use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::topology::span_of_values;
 use petgraph::unionfind::UnionFind;
+use rustc_hash::FxHashSet;
 use std::collections::BTreeMap;
 
 pub const RULE: Rule = Rule {
@@ -57,7 +58,11 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
     if !parts.values().any(has_diodes) || evidence.is_groundless() {
         return Vec::new();
     }
-    parts.values().filter(|part| is_idle(evidence, part)).map(|part| judge(evidence, part)).collect()
+    let sensed = circuit.elements().filter_map(|(_, e)| controls(&e.behaviour));
+    let loose = evidence.loose_ends().iter().map(|end| end.touch.element);
+    let used: FxHashSet<ElementId> = sensed.chain(loose).collect();
+    let idle = parts.values().filter(|part| is_idle(evidence, part, &used));
+    idle.map(|part| judge(evidence, part)).collect()
 }
 
 fn is_diode(evidence: &Evidence<'_>, id: ElementId) -> bool {
@@ -94,7 +99,7 @@ fn power(evidence: &Evidence<'_>, part: &[ElementId]) -> f64 {
     if count == 2 && ohms > 0.0 { volts * volts / ohms } else { 0.0 }
 }
 
-fn is_idle(evidence: &Evidence<'_>, part: &[ElementId]) -> bool {
+fn is_idle(evidence: &Evidence<'_>, part: &[ElementId], used: &FxHashSet<ElementId>) -> bool {
     let circuit = evidence.circuit;
     let noted = &evidence.wiring.noted;
     let is_plain = |&id: &ElementId| {
@@ -106,14 +111,12 @@ fn is_idle(evidence: &Evidence<'_>, part: &[ElementId]) -> bool {
         circuit.pins(id).iter().any(|p| noted.is_watched(p.node) || noted.is_supplied(p.node))
     };
     // a source alone is a loose end, and a current that others sense is used
-    let sensed = |&id: &ElementId| circuit.elements().any(|(_, e)| controls(&e.behaviour) == Some(id));
     part.len() > 1
         && power(evidence, part) >= HEAVY
         && part.iter().all(is_plain)
         && part.iter().any(|&id| is_source(evidence, id))
         && !part.iter().any(is_looked_at)
-        && !part.iter().filter(|&&id| is_source(evidence, id)).any(sensed)
-        && !part.iter().any(|&id| evidence.loose_ends().iter().any(|end| end.touch.element == id))
+        && !part.iter().any(|id| used.contains(id))
 }
 
 /// The source whose current an element senses.

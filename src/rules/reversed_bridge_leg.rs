@@ -78,8 +78,8 @@ fn check(evidence: &Evidence<'_>) -> Vec<Finding> {
         // where the legs of several outputs point both ways, they are meant to: a ring modulator, a sampling gate
         let mixed = outputs.values().filter(|legs| is_mixed(legs)).count() + between_ends(evidence, driven);
         for (&output, legs) in outputs.iter().filter(|_| mixed == 1) {
-            let is_driven = evidence.wiring.driven.iter().any(|d| d.ends.contains(&output));
-            if is_mixed(legs) && !is_driven && has_load(evidence, output, legs) {
+            let is_driven = || evidence.wiring.driven.iter().any(|d| d.ends.contains(&output));
+            if is_mixed(legs) && has_load(evidence, output, legs) && !is_driven() {
                 let turned = turned(&outputs, output, legs);
                 let finding = judge(evidence, output, legs, turned);
                 found.entry(turned.unwrap_or(legs[0]).diode).or_insert(finding);

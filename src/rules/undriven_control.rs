@@ -142,7 +142,9 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
     let mut at = 0;
     while let Some(&node) = lead.nodes.get(at) {
         at += 1;
-        if noted.is_supplied(node) || lead.nodes.len() > WIDEST {
+        // so many things join at a supply only
+        let many = evidence.wiring.touching.at(node).len() > WIDEST && !evidence.wiring.rails.is_rail(node);
+        if noted.is_supplied(node) || lead.nodes.len() > WIDEST || many {
             return None;
         }
         if evidence.wiring.rails.is_rail(node) {
