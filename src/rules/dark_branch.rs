@@ -103,6 +103,9 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
         // anything else may clamp there; a light does not
         false => standing.node(node).filter(|_| lights && !is_timed(node)),
     };
+    if lights && let Some(finding) = backwards_over_time(evidence, operating, branch, &seen) {
+        return Some(finding);
+    }
     // what comes in through a capacitor no source's value tells; the time pass may
     let moves = |id: &ElementId| {
         operating.left_to_time.binary_search(id).is_ok()
@@ -127,6 +130,31 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, branch: &Branch) -> Opt
     let finding = named(evidence, branch, evidence.about(&RULE, first, message).label(label));
     let single = branch.diodes.len() == 1 && most < 0.0;
     Some(if single { turn_round(evidence, first, finding) } else { finding })
+}
+
+/// A lamp and its resistor between ground and what only the time pass knows: it blocks all the time, and not for want of
+/// voltage.
+fn backwards_over_time(
+    evidence: &Evidence<'_>,
+    operating: &Operating,
+    branch: &Branch,
+    seen: &[&Seen],
+) -> Option<Finding> {
+    let ends = [branch.anode_end, branch.cathode_end];
+    let is_followed = |id: &ElementId| operating.left_to_time.binary_search(id).is_ok();
+    let blocks = |d: &&Seen| d.is_always(State::Blocking) && d.least <= -1.0 && d.greatest <= 0.0;
+    let [first] = branch.diodes.as_slice() else { return None };
+    if !ends.contains(&NodeId::GROUND) || !is_followed(first) || !seen.iter().all(blocks) {
+        return None;
+    }
+    let message = format!(
+        "{} never lights: it blocks all the time, against up to {}",
+        evidence.name(*first),
+        quantity(-seen.first()?.least, "V")
+    );
+    let finding =
+        named(evidence, branch, evidence.about(&RULE, *first, message).label("points the wrong way"));
+    Some(turn_round(evidence, *first, finding))
 }
 
 /// The message and the label, where the greatest voltage across the branch keeps it dark.

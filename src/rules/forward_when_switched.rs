@@ -23,11 +23,11 @@ pub const RULE: Rule = Rule {
               LCOIL bus mid 95m\n\
               RCOIL mid drain 180\n\
               D1 bus drain DRECT\n\
-              Q1 drain base 0 QSW\n\
-              VCTRL ctrl 0 3.3\n\
-              RB ctrl base 1k\n\
+              S1 drain 0 ctrl 0 SWM\n\
+              VCTRL ctrl 0 0\n\
+              RC ctrl 0 10k\n\
               .model DRECT D(IS=2.6n N=1.9)\n\
-              .model QSW NPN(IS=14f BF=200)\n",
+              .model SWM SW(RON=100m ROFF=10meg VT=1.5 VH=0)\n",
     passing: "tide gauge buoy: bus monitor\n\
               VBUS bus 0 12\n\
               R1 bus mon 47k\n\

@@ -71,9 +71,31 @@ fn odd_ones(evidence: &Evidence<'_>, diodes: &[ElementId]) -> Vec<(ElementId, Ve
         }
     }
     let odd = |&id: &ElementId| {
-        in_matrix(evidence, &at, id).or_else(|| at_gate(evidence, &at, id)).map(|sisters| (id, sisters))
+        in_matrix(evidence, &at, id)
+            .or_else(|| at_gate(evidence, &at, id))
+            .or_else(|| at_ground(evidence, diodes, id))
+            .map(|sisters| (id, sisters))
     };
     diodes.iter().filter_map(odd).collect()
+}
+
+/// Diodes of one kind of which all the others lead to ground: sensors and references stand so, and clamps come in pairs.
+const MOST_AT_GROUND: usize = 24;
+
+/// All its sisters lead from a node to ground, and it alone comes from there.
+fn at_ground(evidence: &Evidence<'_>, diodes: &[ElementId], id: ElementId) -> Option<Vec<ElementId>> {
+    let circuit = evidence.circuit;
+    let rails = &evidence.wiring.rails;
+    if diodes.len() > MOST_AT_GROUND
+        || circuit.node(id, 0) != NodeId::GROUND
+        || rails.is_rail(circuit.node(id, 1))
+    {
+        return None;
+    }
+    let sisters: Vec<ElementId> = diodes.iter().copied().filter(|&d| d != id).collect();
+    let leads_there =
+        |&d: &ElementId| circuit.node(d, 1) == NodeId::GROUND && !rails.is_rail(circuit.node(d, 0));
+    sisters.iter().all(leads_there).then_some(sisters)
 }
 
 /// Lines of a matrix that are gone through at most.

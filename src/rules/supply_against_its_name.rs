@@ -4,6 +4,7 @@ use super::{Check, Evidence, Group, Rule, turn_round};
 use crate::circuit::{Behaviour, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity, quantity};
 use crate::operating::Operating;
+use crate::topology::dc_value;
 
 pub const RULE: Rule = Rule {
     name: "supply-against-its-name",
@@ -80,6 +81,11 @@ fn said(name: &str) -> Option<Said> {
     }
 }
 
+/// Names of supplies that nobody gives to one below ground.
+const SUPPLIES: [&str; 14] = [
+    "BAT", "BATT", "VBAT", "VBATT", "BATTERY", "VBUS", "VIN", "VREF", "VSUP", "SUPPLY", "SUN", "PANEL",
+    "USB", "CELL",
+];
 /// Words that turn what a supply's name says.
 const TURNED: [&str; 5] = ["N", "M", "NEG", "MINUS", "VSS"];
 /// Beginnings of words that make of a supply's name that of a signal about it.
@@ -109,6 +115,12 @@ fn said_by(evidence: &Evidence<'_>, source: ElementId, node: NodeId, volts: f64)
     let is_pair = own.eq_ignore_ascii_case(node);
     if node.to_ascii_uppercase().split(['_', '.', '-']).any(|w| TURNED.contains(&w)) {
         return None;
+    }
+    // written as a positive source with its positive end at ground
+    let is_turned = ends[0] == NodeId::GROUND
+        && matches!(&circuit.element(source).behaviour, Behaviour::VoltageSource(s) if s.shape.is_none() && dc_value(s).0 > 0.0);
+    if is_turned && SUPPLIES.iter().any(|s| node.eq_ignore_ascii_case(s)) {
+        return Some(Said { sign: 1.0, volts: None });
     }
     let counts = |word: &str| {
         let digits = word.strip_prefix(['V', 'v'])?;

@@ -5,7 +5,7 @@ use rustc_hash::FxHashMap;
 
 /// Rules from cause to consequence: of two findings that name one diode, the one whose rule stands first is the cause.
 /// Rules that are not listed are neither.
-const FROM_CAUSE: [&str; 52] = [
+const FROM_CAUSE: [&str; 53] = [
     "supply-against-its-name",
     "pulse-below-ground",
     "switch-across-supply",
@@ -14,6 +14,7 @@ const FROM_CAUSE: [&str; 52] = [
     "reversed-bridge-leg",
     "missing-bridge-leg",
     "reversed-across-transistor",
+    "reversed-freewheel",
     "reversed-gate-clamp",
     "transistor-fed-backwards",
     "forward-when-switched",
