@@ -3,7 +3,7 @@
 use super::{Check, Evidence, Group, Rule, list, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity};
-use crate::topology::Driven;
+use crate::topology::{Driven, gives_light};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::collections::BTreeMap;
 
@@ -58,7 +58,8 @@ pub fn legs(evidence: &Evidence<'_>, driven: &Driven) -> BTreeMap<NodeId, Vec<Le
     let mut outputs: BTreeMap<NodeId, Vec<Leg>> = BTreeMap::new();
     for &end in &driven.ends {
         for touch in evidence.wiring.touching.at(end) {
-            if !matches!(circuit.element(touch.element).behaviour, Behaviour::Diode { .. }) {
+            let is_diode = matches!(circuit.element(touch.element).behaviour, Behaviour::Diode { .. });
+            if !is_diode || gives_light(circuit, touch.element) {
                 continue;
             }
             let output = circuit.node(touch.element, 1 - touch.pin.min(1) as usize);
