@@ -70,14 +70,13 @@ fn is_diode(evidence: &Evidence<'_>, id: ElementId) -> bool {
 }
 
 fn is_source(evidence: &Evidence<'_>, id: ElementId) -> bool {
-    let behaviour = &evidence.circuit.element(id).behaviour;
-    matches!(behaviour, Behaviour::VoltageSource(_) | Behaviour::CurrentSource(_))
+    matches!(evidence.circuit.element(id).behaviour, Behaviour::VoltageSource(_))
 }
 
 /// Watts that nobody spends on a load that does nothing else here.
 const HEAVY: f64 = 5.0;
 
-/// What the only source of the part spends in the only resistor, in watts.
+/// What the only source of the part spends in its only resistor, in watts; 0 where anything but capacitors is there too.
 fn power(evidence: &Evidence<'_>, part: &[ElementId]) -> f64 {
     let circuit = evidence.circuit;
     let (mut volts, mut ohms, mut count) = (0.0_f64, 0.0, 0);
@@ -100,21 +99,11 @@ fn power(evidence: &Evidence<'_>, part: &[ElementId]) -> f64 {
 }
 
 fn is_idle(evidence: &Evidence<'_>, part: &[ElementId], used: &FxHashSet<ElementId>) -> bool {
-    let circuit = evidence.circuit;
     let noted = &evidence.wiring.noted;
-    let is_plain = |&id: &ElementId| {
-        let plain =
-            matches!(circuit.element(id).behaviour, Behaviour::Resistor(_) | Behaviour::Capacitor { .. });
-        plain || is_source(evidence, id)
-    };
     let is_looked_at = |&id: &ElementId| {
-        circuit.pins(id).iter().any(|p| noted.is_watched(p.node) || noted.is_supplied(p.node))
+        evidence.circuit.pins(id).iter().any(|p| noted.is_watched(p.node) || noted.is_supplied(p.node))
     };
-    // a source alone is a loose end, and a current that others sense is used
-    part.len() > 1
-        && power(evidence, part) >= HEAVY
-        && part.iter().all(is_plain)
-        && part.iter().any(|&id| is_source(evidence, id))
+    power(evidence, part) >= HEAVY
         && !part.iter().any(is_looked_at)
         && !part.iter().any(|id| used.contains(id))
 }

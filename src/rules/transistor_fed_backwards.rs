@@ -56,17 +56,14 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId) -> Optio
     if is_channel && lower.iter().any(guards) {
         return None;
     }
-    let words = if is_channel {
-        [("drain", "source"), ("", "")]
-    } else {
-        [("collector", "emitter"), ("base", "emitter")]
-    };
+    let words = if is_channel { ("drain", "source") } else { ("collector", "emitter") };
     if let Some(diode) = led_away(evidence, id, sign) {
-        return Some(by_diode(evidence, id, words[0].0, diode));
+        return Some(by_diode(evidence, id, words.0, diode));
     }
     // a gate may well be held far beyond its source, and a junction tied to its collector is used as a diode
-    let base = (!is_channel && circuit.node(id, 0) != circuit.node(id, 1)).then_some((1, BASE, words[1]));
-    let tried = [Some((0, COLLECTOR, words[0])), base];
+    let base =
+        (!is_channel && circuit.node(id, 0) != circuit.node(id, 1)).then_some((1, BASE, ("base", words.1)));
+    let tried = [Some((0, COLLECTOR, words)), base];
     tried.into_iter().flatten().find_map(|(pin, margin, words)| {
         let upper = rails_around(evidence, circuit.node(id, pin), comes)?;
         let own: Vec<NodeId> = upper.into_iter().filter(|n| !lower.contains(n)).collect();

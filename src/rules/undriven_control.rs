@@ -4,7 +4,7 @@
 use super::{Check, Evidence, Group, Rule, list};
 use crate::circuit::{Behaviour, Circuit, ElementId, ModelKind, NodeId};
 use crate::finding::{Finding, Severity};
-use crate::topology::{Touch, can_break_down, is_opaque, is_sensing, main_path};
+use crate::topology::{Touch, can_break_down, is_sensing, main_path};
 use rustc_hash::FxHashSet;
 
 pub const RULE: Rule = Rule {
@@ -14,8 +14,9 @@ pub const RULE: Rule = Rule {
     also: None,
     summary: "nothing drives a base, or holds an insulated gate while its driver is off",
     why: "A gate takes no current, so it keeps what charge it has and leakage decides whether the transistor is on: a load \
-          that should be off then gets warm or stays on.",
-    remedy: "Join a base to what is to drive it. Put a resistor from a gate to the potential at which the transistor is off, usually its source.",
+          that should be off then gets warm or stays on. A base that nothing feeds never turns its transistor on.",
+    remedy: "Join a base to what is to drive it. Put a resistor from a gate to the potential at which the transistor is \
+             off, usually its source.",
     source: None,
     failing: "tide gauge buoy: high-side switch of the modem\n\
               VBUS bus 0 12\n\
@@ -180,7 +181,7 @@ fn lead_of(evidence: &Evidence<'_>, gate: NodeId) -> Option<Lead> {
                 Behaviour::VoltageSwitch { .. } | Behaviour::CurrentSwitch { .. } => {
                     lead.drivers.push((touch.element, Pull::Either));
                 }
-                _ if is_opaque(circuit, touch.element) => return None,
+                // a source holds it, and what is not known may
                 _ => return None,
             }
         }

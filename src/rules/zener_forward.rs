@@ -153,12 +153,12 @@ fn judge(evidence: &Evidence<'_>, operating: &Operating, id: ElementId, most: f6
 }
 
 /// A surge diode is chosen to break down somewhat above its supply.
-const MARGIN: f64 = 0.6;
+pub const MARGIN: f64 = 0.6;
 /// So many times the greatest supply two supplies and a divider do not give.
 const BEYOND: f64 = 3.0;
 /// From here on it may be a rectifier's limit as well as a Zener diode's voltage.
-const RECTIFIER: f64 = 40.0;
+pub const RECTIFIER: f64 = 40.0;
 /// No Zener diode drops so much forward; an infrared lamp does.
-const LAMP: f64 = 0.95;
+pub const LAMP: f64 = 0.95;
 /// Beyond this a breakdown voltage is a rectifier's limit.
-const MOST: f64 = 60.0;
+pub const MOST: f64 = 60.0;

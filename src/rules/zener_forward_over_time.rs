@@ -1,5 +1,6 @@
 //! A Zener diode behind a rectifier that conducts forward instead of breaking down: what the states cannot judge.
 
+use super::zener_forward::{LAMP, MARGIN, MOST, RECTIFIER};
 use super::{Check, Evidence, Group, Rule, behind, turn_round};
 use crate::circuit::{Behaviour, ElementId, NodeId};
 use crate::finding::{Finding, Severity, quantity};
@@ -45,14 +46,6 @@ pub const RULE: Rule = Rule {
     check: Check::Time(check),
 };
 
-/// The feed reaches at least so much of the breakdown voltage.
-const MARGIN: f64 = 0.6;
-/// Beyond this a breakdown voltage is a rectifier's limit.
-const MOST: f64 = 60.0;
-/// From here on it may be a rectifier's limit as well as a Zener diode's voltage.
-const RECTIFIER: f64 = 40.0;
-/// No Zener diode drops so much forward; an infrared lamp does.
-const LAMP: f64 = 0.95;
 /// So much of its greatest value the feed may swing to the other side.
 const BACK: f64 = 0.05;
 /// A diode that conducts for less of the period clips something.
